@@ -1,0 +1,209 @@
+import { z } from "zod";
+
+/** An instant with its offset or Z: a plan never holds a time that depends on where it is read. */
+const instant = z.iso
+  .datetime({ offset: true, error: 'write an instant with Z or an offset, like "2031-05-03T12:00:00Z"' })
+  .describe("an instant, ISO 8601 with Z or an offset");
+const duration = z
+  .string()
+  .regex(
+    /^P(?=\d|T\d)(\d+D)?(T(?=\d)(\d+H)?(\d+M)?(\d+S)?)?$/,
+    'write a duration like "PT1H", "PT5M" or "P1D"',
+  )
+  .describe("ISO 8601 duration");
+const zone = z.string().min(1).describe('"UTC", a fixed offset like "UTC+01:00", or an IANA zone');
+const dst = z
+  .enum(["follow", "never"])
+  .describe("follow: the zone's clock changes count; never: its standard time all year");
+
+/** A hail cap, given one way; the other is worked out for the relation in use and always shown beside it. */
+const cap = z.union([
+  z.strictObject({ dbz: z.number().min(30).max(80) }),
+  z.strictObject({ mmPerHour: z.number().min(1).max(1000) }),
+]);
+
+/** The name of a catalogue relation, or coefficients of the user's own. */
+const relation = z.union([
+  z.string().min(1),
+  z.strictObject({ a: z.number().positive(), b: z.number().positive(), source: z.string().min(1) }),
+]);
+
+const radar = z.strictObject({
+  id: z.string().min(1),
+  use: z.boolean().default(true),
+  /** Added to every dBZ of this radar before the relation. */
+  offsetDb: z.number().min(-20).max(20).default(0),
+  relation: relation.default("marshall-1955-200/1.6"),
+  /** Other relations for parts of the window; from is excluded, to is included. */
+  periods: z.array(z.strictObject({ from: instant, to: instant, relation })).default([]),
+  cap: cap.default({ dbz: 53 }),
+  /** Highest beam centre above the antenna at which a sweep still speaks for the ground. */
+  maxBeamHeightM: z.number().min(100).max(20000).default(3000),
+  /** Usual time between rounds, and the longest hole that is bridged. */
+  medianRoundMinutes: z.number().positive(),
+  maxGapMinutes: z.number().positive(),
+  /** Only where the files do not say. */
+  beamWidthDeg: z.number().positive().max(20).optional(),
+  wavelengthCm: z.number().positive().max(200).optional(),
+  /** The moment that rain is made from. */
+  moment: z.string().min(1).default("DBZH"),
+  /** Sectors where a hill or a building stands in the beam; sweeps up to that elevation do not speak there. */
+  blockedSectors: z
+    .array(
+      z.strictObject({
+        fromAzimuthDeg: z.number().min(0).max(360),
+        toAzimuthDeg: z.number().min(0).max(360),
+        upToElevationDeg: z.number().min(-2).max(90),
+        reason: z.string().min(1),
+      }),
+    )
+    .default([]),
+});
+
+const gaugeFiles = z.strictObject({
+  network: z.string().min(1),
+  files: z.array(z.string().min(1)).min(1),
+  stations: z.strictObject({
+    file: z.string().min(1),
+    /** Coordinate system of the stations' x and y; longitude and latitude where left out. */
+    crs: z.string().min(1).default("EPSG:4326"),
+    columns: z.strictObject({
+      id: z.string().min(1),
+      name: z.string().min(1).optional(),
+      x: z.string().min(1),
+      y: z.string().min(1),
+      elevation: z.string().min(1).optional(),
+    }),
+  }),
+  layout: z.enum(["long", "wide"]),
+  columns: z.strictObject({
+    gauge: z.string().min(1).optional(),
+    time: z.string().min(1),
+    value: z.string().min(1).optional(),
+    quality: z.string().min(1).optional(),
+  }),
+  kind: z.enum(["increments", "counter", "intensity", "tips"]),
+  unit: z.enum(["mm", "in", "mm/h", "in/h", "tips"]),
+  /** Depth of one tip, for tips. */
+  tipMm: z.number().positive().optional(),
+  stepMinutes: z.number().positive().optional(),
+  stamp: z.enum(["end", "start"]).default("end"),
+  zone: zone.default("UTC"),
+  dst: dst.default("follow"),
+  /** What no line means: dry, missing, or dry as long as something came within the time given. */
+  silence: z
+    .string()
+    .regex(/^(dry|missing|heartbeat P\S+)$/, 'write "dry", "missing" or "heartbeat PT60M"')
+    .default("missing"),
+  missing: z.array(z.string()).default(["", "NaN", "-999"]),
+  quality: z
+    .strictObject({
+      use: z.array(z.string()).default([]),
+      doubt: z.array(z.string()).default([]),
+      drop: z.array(z.string()).default([]),
+    })
+    .optional(),
+});
+
+/** The plan of a run: everything that decides a figure, and nothing that does not. */
+export const planSchema = z.strictObject({
+  title: z.string().min(1).max(200),
+  reference: z.string().max(200).default(""),
+  author: z.string().max(200).default(""),
+  status: z.enum(["provisional", "final"]).default("provisional"),
+  window: z.strictObject({ from: instant, to: instant, zone: zone.default("UTC") }),
+  scans: z.array(z.string().min(1)).min(1),
+  radars: z.array(radar).min(1),
+  gauges: z.array(gaugeFiles).default([]),
+  catchments: z
+    .strictObject({
+      file: z.string().min(1),
+      id: z.string().min(1),
+      name: z.string().min(1).optional(),
+      crs: z.string().min(1).optional(),
+    })
+    .optional(),
+  intervals: z
+    .strictObject({
+      grids: duration.default("PT1H"),
+      series: duration.default("PT5M"),
+      rainDay: z
+        .strictObject({
+          hour: z.number().int().min(0).max(23),
+          zone,
+          dst,
+          label: z.enum(["start", "end"]),
+        })
+        .optional(),
+    })
+    .prefault({}),
+  adjustment: z
+    .strictObject({
+      method: z.enum(["none", "mean-field-bias"]).default("mean-field-bias"),
+      minGauges: z.number().int().min(5).default(5),
+      minGaugeSumMm: z.number().min(10).default(10),
+      factorLimits: z.tuple([z.number().positive(), z.number().positive()]).default([0.1, 10]),
+    })
+    .prefault({}),
+  overrides: z
+    .array(
+      z.strictObject({
+        network: z.string().min(1),
+        gauge: z.string().min(1),
+        verdict: z.enum(["use", "leave-out"]),
+        reason: z.string().min(1),
+        by: z.string().min(1),
+        date: z.iso.date(),
+      }),
+    )
+    .default([]),
+  grid: z.strictObject({
+    crs: z.string().min(1),
+    westM: z.number(),
+    northM: z.number(),
+    cellM: z.number().min(50).max(50000),
+    nx: z.number().int().min(1).max(4000),
+    ny: z.number().int().min(1).max(4000),
+  }),
+  rain: z
+    .strictObject({
+      minRateMmPerHour: z.number().min(0).max(10).default(0.1),
+      effectiveRadiusFactor: z
+        .number()
+        .min(0.5)
+        .max(5)
+        .default(4 / 3),
+      minObserved: z.number().min(0).max(1).default(0.9),
+      /** Width over which a radar's weight falls to 0 at the end of its coverage. */
+      taperKm: z.number().min(0).max(100).default(10),
+      /** A sweep sent twice with different content: which one counts. */
+      resent: z.enum(["first", "last"]).default("last"),
+      /** Relations that the headline is also given under. */
+      headlineRelations: z
+        .array(z.string().min(1))
+        .default(["marshall-1955-200/1.6", "fulton-1998-300/1.4", "rosenfeld-1993-250/1.2"]),
+    })
+    .prefault({}),
+  pairs: z
+    .strictObject({
+      cell: z.enum(["nearest", "mean3x3"]).default("nearest"),
+      interval: duration.default("PT1H"),
+      thresholdMm: z.number().positive().default(0.2),
+      thresholdsMm: z.array(z.number().positive()).default([0.2, 1, 5]),
+      minCommonFraction: z.number().min(0.1).max(1).default(0.5),
+      rangeBandsKm: z.array(z.number().positive()).default([50, 100, 150]),
+    })
+    .prefault({}),
+  bootstrap: z
+    .strictObject({
+      seed: z.number().int().min(0).default(1),
+      samples: z.number().int().min(100).max(100000).default(1000),
+      blockMinutes: z.number().positive().default(60),
+      level: z.number().gt(0).lt(1).default(0.9),
+    })
+    .prefault({}),
+});
+
+export type Plan = z.output<typeof planSchema>;
+export type PlanRadar = Plan["radars"][number];
+export type PlanGaugeFiles = Plan["gauges"][number];
