@@ -1,1 +1,3 @@
-export {};
+export * from "./gauges/index.ts";
+export * from "./radar/index.ts";
+export * from "./write/index.ts";
