@@ -1,0 +1,235 @@
+import { findRelation, InputError } from "@rainreckon/core";
+import { durationMs } from "./duration.ts";
+import type { PlanFault } from "./faults.ts";
+import type { Plan, PlanGaugeFiles } from "./schema.ts";
+import type { PlanPath } from "./yaml-place.ts";
+import { findZone } from "./zone.ts";
+
+const DAY_MS = 86_400_000;
+
+/** What no single value of a plan can tell: values that contradict each other, and names that lead nowhere. */
+export function crossChecks(plan: Plan): PlanFault[] {
+  return [
+    ...windowFaults(plan),
+    ...durationFaults(plan),
+    ...relationFaults(plan),
+    ...radarFaults(plan),
+    ...plan.gauges.flatMap(gaugeFaults),
+    ...zoneFaults(plan),
+    ...limitFaults(plan),
+  ];
+}
+
+function windowFaults(plan: Plan): PlanFault[] {
+  const { from, to, zone } = plan.window;
+  const fromMs = Date.parse(from);
+  const toMs = Date.parse(to);
+  if (!(fromMs < toMs)) {
+    return [
+      {
+        path: ["window", "from"],
+        what: `the window ends (${to}) before it starts (${from})`,
+        fix: "put from before to",
+      },
+    ];
+  }
+  const stepMs = durationMs(plan.intervals.series);
+  const faults: PlanFault[] = [];
+  if ((toMs - fromMs) % stepMs !== 0) {
+    faults.push({
+      path: ["window", "to"],
+      what: `the window is no whole number of steps of ${plan.intervals.series}`,
+      fix: "move from or to, or change intervals.series",
+    });
+  }
+  // A step may be whole on the local clock and not in UTC (zones at half hours), or the other way round.
+  const localShiftMs = (findZone(zone)?.offset(fromMs) ?? 0) * 60_000;
+  if (fromMs % stepMs !== 0 && (fromMs + localShiftMs) % stepMs !== 0) {
+    faults.push({
+      path: ["window", "from"],
+      what: `the window starts in the middle of a step of ${plan.intervals.series}`,
+      fix: "start at a whole step after midnight, UTC or local",
+    });
+  }
+  return faults;
+}
+
+function durationFaults(plan: Plan): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const seriesMs = durationMs(plan.intervals.series);
+  const named: [PlanPath, string][] = [
+    [["intervals", "series"], plan.intervals.series],
+    [["intervals", "grids"], plan.intervals.grids],
+    [["pairs", "interval"], plan.pairs.interval],
+  ];
+  for (const [path, text] of named) {
+    const lengthMs = durationMs(text);
+    if (!(DAY_MS % lengthMs === 0)) {
+      faults.push({
+        path,
+        what: `${text} does not divide a day`,
+        fix: "write a length that fits whole into 24 hours",
+      });
+    } else if (lengthMs % seriesMs !== 0) {
+      faults.push({
+        path,
+        what: `${text} is no whole number of steps of ${plan.intervals.series} (intervals.series)`,
+        fix: "write a multiple of it, or a shorter intervals.series",
+      });
+    }
+  }
+  const { rainDay } = plan.intervals;
+  const zone = rainDay === undefined ? undefined : findZone(rainDay.zone);
+  if (zone !== undefined && (zone.offset(Date.parse(plan.window.from)) * 60_000) % seriesMs !== 0) {
+    faults.push({
+      path: ["intervals", "rainDay"],
+      what: `rain days in ${zone.name} start within a step of ${plan.intervals.series}`,
+      fix: "write a shorter intervals.series, such as PT15M",
+    });
+  }
+  return faults;
+}
+
+function relationFaults(plan: Plan): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const check = (name: Plan["radars"][number]["relation"], path: PlanPath) => {
+    if (typeof name !== "string") return;
+    try {
+      findRelation(name);
+    } catch (error) {
+      if (!(error instanceof InputError)) throw error;
+      faults.push({ path, what: error.what, fix: error.fix });
+    }
+  };
+  plan.radars.forEach((radar, index) => {
+    check(radar.relation, ["radars", index, "relation"]);
+    radar.periods.forEach((period, at) => {
+      const path = ["radars", index, "periods", at];
+      check(period.relation, [...path, "relation"]);
+      if (!(Date.parse(period.from) < Date.parse(period.to))) {
+        faults.push({
+          path: [...path, "from"],
+          what: "the period ends before it starts",
+          fix: "put from before to",
+        });
+      }
+      const earlier = radar.periods.slice(0, at);
+      if (earlier.some((other) => overlap(other, period))) {
+        faults.push({
+          path,
+          what: "two periods of one radar overlap",
+          fix: "let each end where the next starts",
+        });
+      }
+    });
+  });
+  plan.rain.headlineRelations.forEach((name, index) => {
+    check(name, ["rain", "headlineRelations", index]);
+  });
+  return faults;
+}
+
+interface Span {
+  readonly from: string;
+  readonly to: string;
+}
+
+function overlap(a: Span, b: Span): boolean {
+  return Date.parse(a.from) < Date.parse(b.to) && Date.parse(b.from) < Date.parse(a.to);
+}
+
+function radarFaults(plan: Plan): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const seen = new Set<string>();
+  plan.radars.forEach((radar, index) => {
+    if (seen.has(radar.id)) {
+      faults.push({
+        path: ["radars", index, "id"],
+        what: `radar "${radar.id}" stands in the plan twice`,
+        fix: "delete one of the two",
+      });
+    }
+    seen.add(radar.id);
+  });
+  if (plan.radars.every((radar) => !radar.use)) {
+    faults.push({ path: ["radars"], what: "no radar is in use", fix: "set use: true for one at least" });
+  }
+  return faults;
+}
+
+function gaugeFaults(files: PlanGaugeFiles, index: number): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const path = ["gauges", index];
+  if (
+    files.layout === "long" &&
+    (files.columns.gauge === undefined || (files.columns.value === undefined && files.kind !== "tips"))
+  ) {
+    faults.push({
+      path: [...path, "columns"],
+      what: "a long layout needs the columns that hold the gauge and the value",
+      fix: "add columns.gauge and columns.value, or write layout: wide",
+    });
+  }
+  const rateUnit = files.unit === "mm/h" || files.unit === "in/h";
+  if (rateUnit !== (files.kind === "intensity")) {
+    faults.push({
+      path: [...path, "unit"],
+      what: `kind ${files.kind} and unit ${files.unit} do not go together`,
+      fix: "intensity is in mm/h or in/h, everything else in mm, in or tips",
+    });
+  }
+  if (files.unit === "tips" && files.tipMm === undefined) {
+    faults.push({
+      path,
+      what: "tips are counted, but their depth is not given",
+      fix: "add tipMm, the depth of one tip in mm",
+    });
+  }
+  if (files.quality !== undefined && files.columns.quality === undefined) {
+    faults.push({
+      path: [...path, "quality"],
+      what: "quality codes are given, but no column that holds them",
+      fix: "add columns.quality, or delete quality",
+    });
+  }
+  const heartbeat = /^heartbeat (.+)$/.exec(files.silence)?.[1];
+  if (heartbeat !== undefined && Number.isNaN(durationMs(heartbeat))) {
+    faults.push({
+      path: [...path, "silence"],
+      what: `"${heartbeat}" is no duration`,
+      fix: 'write it like "heartbeat PT60M"',
+    });
+  }
+  return faults;
+}
+
+function zoneFaults(plan: Plan): PlanFault[] {
+  const named: [PlanPath, string | undefined][] = [
+    [["window", "zone"], plan.window.zone],
+    [["intervals", "rainDay", "zone"], plan.intervals.rainDay?.zone],
+    ...plan.gauges.map((files, index): [PlanPath, string] => [["gauges", index, "zone"], files.zone]),
+  ];
+  return named.flatMap(([path, name]) =>
+    name === undefined || findZone(name) !== undefined
+      ? []
+      : [
+          {
+            path,
+            what: `there is no zone "${name}"`,
+            fix: 'write "UTC", an offset like "UTC+01:00", or an IANA zone like "Europe/Oslo"',
+          },
+        ],
+  );
+}
+
+function limitFaults(plan: Plan): PlanFault[] {
+  const [low, high] = plan.adjustment.factorLimits;
+  if (low < high) return [];
+  return [
+    {
+      path: ["adjustment", "factorLimits"],
+      what: "the lower limit is not below the upper",
+      fix: "write them as [0.1, 10]",
+    },
+  ];
+}
