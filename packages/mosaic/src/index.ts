@@ -1,1 +1,14 @@
-export {};
+export { type BlendWeightInput, blendWeight } from "./blend-weight.ts";
+export { geodesicDirect, geodesicInverse } from "./geodesic.ts";
+export { MAX_GRID_CELLS, planGrid } from "./plan-grid.ts";
+export {
+  type BlockedSector,
+  type LookupRules,
+  type PolarLookup,
+  polarLookup,
+  type SweepGeometry,
+} from "./polar-lookup.ts";
+export { projectArea } from "./project-area.ts";
+export { type Projection, projection, projStringOf } from "./projection.ts";
+export { type GateRates, type RateLayer, RateLayerBuilder } from "./rate-layer.ts";
+export { type SiteCells, siteCells } from "./site-cells.ts";

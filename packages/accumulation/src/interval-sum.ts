@@ -1,0 +1,119 @@
+import type { Interval } from "@rainreckon/core";
+import type { BlendedStep } from "./blend.ts";
+
+/**
+ * One grid interval as it is stored: everything in float32, since the totals are sums of what is stored.
+ * Shapes [cells] unless said otherwise. Times are in milliseconds, heights in metres times milliseconds.
+ */
+export interface IntervalFields extends Interval {
+  /** Depth over the time observed; NaN where nothing was. */
+  readonly depthMm: Float32Array;
+  readonly observedMs: Float32Array;
+  readonly bridgedMs: Float32Array;
+  readonly edgeMs: Float32Array;
+  readonly cappedMm: Float32Array;
+  readonly heightMMs: Float32Array;
+  /** Shape [radars][cells]. */
+  readonly shareMs: readonly Float32Array[];
+  /** Shape [variants][headline cells]. */
+  readonly variantMm: readonly Float32Array[];
+}
+
+/** Sums in float64, made once per interval or total; NaN only where nothing was ever added. */
+export class FieldSum {
+  readonly depthMm: Float64Array;
+  readonly observedMs: Float64Array;
+  readonly bridgedMs: Float64Array;
+  readonly edgeMs: Float64Array;
+  readonly cappedMm: Float64Array;
+  readonly heightMMs: Float64Array;
+  readonly shareMs: readonly Float64Array[];
+  readonly variantMm: readonly Float64Array[];
+
+  constructor(cellCount: number, radarCount: number, variantCount: number, headlineCount: number) {
+    const zeros = () => new Float64Array(cellCount);
+    this.depthMm = zeros().fill(Number.NaN);
+    this.observedMs = zeros();
+    this.bridgedMs = zeros();
+    this.edgeMs = zeros();
+    this.cappedMm = zeros();
+    this.heightMMs = zeros();
+    this.shareMs = Array.from({ length: radarCount }, zeros);
+    this.variantMm = Array.from({ length: variantCount }, () =>
+      new Float64Array(headlineCount).fill(Number.NaN),
+    );
+  }
+
+  /** Adds a step, or a stored interval; call in time order, so that any split of a run adds up alike. */
+  add(part: BlendedStep | IntervalFields): void {
+    addKnown(this.depthMm, part.depthMm);
+    addKnown(this.observedMs, part.observedMs);
+    addKnown(this.bridgedMs, part.bridgedMs);
+    addKnown(this.edgeMs, part.edgeMs);
+    addKnown(this.cappedMm, part.cappedMm);
+    addKnown(this.heightMMs, part.heightMMs);
+    for (let r = 0; r < this.shareMs.length; r++) addKnown(this.shareMs[r], part.shareMs[r]);
+    for (let v = 0; v < this.variantMm.length; v++) addKnown(this.variantMm[v], part.variantMm[v]);
+  }
+
+  toInterval(interval: Interval): IntervalFields {
+    return {
+      startEpochMs: interval.startEpochMs,
+      endEpochMs: interval.endEpochMs,
+      depthMm: Float32Array.from(this.depthMm),
+      observedMs: Float32Array.from(this.observedMs),
+      bridgedMs: Float32Array.from(this.bridgedMs),
+      edgeMs: Float32Array.from(this.edgeMs),
+      cappedMm: Float32Array.from(this.cappedMm),
+      heightMMs: Float32Array.from(this.heightMMs),
+      shareMs: this.shareMs.map((share) => Float32Array.from(share)),
+      variantMm: this.variantMm.map((variant) => Float32Array.from(variant)),
+    };
+  }
+}
+
+/** sum += part where part is known; a sum that was NaN starts at the first known part. */
+function addKnown(sum: Float64Array, part: Float64Array | Float32Array): void {
+  for (let i = 0; i < sum.length; i++) {
+    const value = part[i];
+    if (Number.isNaN(value)) continue;
+    const before = sum[i];
+    sum[i] = Number.isNaN(before) ? value : before + value;
+  }
+}
+
+/** What stands beside the total. Shapes [cells]; NaN where nothing was observed, observedFraction excepted. */
+export interface TotalPlanes {
+  readonly totalMm: Float32Array;
+  readonly observedFraction: Float32Array;
+  readonly bridgedFraction: Float32Array;
+  readonly edgeFraction: Float32Array;
+  /** Depth-weighted: share of the total that came from gates at the cap. */
+  readonly cappedFraction: Float32Array;
+  /** Time-weighted. */
+  readonly beamHeightAslM: Float32Array;
+  /** Shape [radars][cells]: shares of the observed time, by weight; they sum to 1 where anything was observed. */
+  readonly radarShare: readonly Float32Array[];
+}
+
+/**
+ * The planes of a window from the sums of its intervals. Observed, bridged and edge fractions are shares of
+ * the whole window.
+ */
+export function totalPlanes(sum: FieldSum, windowMs: number): TotalPlanes {
+  const over = (part: Float64Array, whole: (i: number) => number) =>
+    Float32Array.from(part, (value, i) => value / whole(i));
+  const observed = (i: number) => (sum.observedMs[i] > 0 ? sum.observedMs[i] : Number.NaN);
+  return {
+    totalMm: Float32Array.from(sum.depthMm),
+    observedFraction: over(sum.observedMs, () => windowMs).map((value) => Math.min(1, value)),
+    bridgedFraction: over(sum.bridgedMs, (i) => (sum.observedMs[i] > 0 ? windowMs : Number.NaN)),
+    edgeFraction: over(sum.edgeMs, (i) => (sum.observedMs[i] > 0 ? windowMs : Number.NaN)),
+    cappedFraction: Float32Array.from(sum.cappedMm, (value, i) => {
+      if (!(sum.observedMs[i] > 0)) return Number.NaN;
+      return sum.depthMm[i] > 0 ? Math.min(1, value / sum.depthMm[i]) : 0;
+    }),
+    beamHeightAslM: over(sum.heightMMs, observed),
+    radarShare: sum.shareMs.map((share) => over(share, observed)),
+  };
+}

@@ -1,0 +1,39 @@
+import type { Interval } from "@rainreckon/core";
+
+const HOUR_MS = 3_600_000;
+const DAY_MS = 24 * HOUR_MS;
+
+/**
+ * Milliseconds of an ISO 8601 duration of days, hours, minutes and seconds ("PT5M", "PT1H", "P1D").
+ * A day here is 24 hours; a civil day that may have 23 or 25 is a rain day, see `rainDays`.
+ *
+ * @throws RangeError for anything else, and for a duration of 0
+ */
+export function durationMs(iso: string): number {
+  const parts = /^P(?:(\d+)D)?(?:T(?:(\d+)H)?(?:(\d+)M)?(?:(\d+)S)?)?$/.exec(iso);
+  const [days, hours, minutes, seconds] = (parts ?? []).slice(1).map((part) => Number(part ?? 0));
+  const ms = days * DAY_MS + hours * HOUR_MS + minutes * 60_000 + seconds * 1000;
+  if (parts === null || !(ms > 0)) throw new RangeError(`not a duration above 0: "${iso}"`);
+  return ms;
+}
+
+/**
+ * A window cut at the whole multiples of a step, counted from 1970-01-01T00:00Z: hours begin at full
+ * hours UTC wherever the window begins, and its first and last piece may be shorter.
+ *
+ * @throws RangeError where the window is empty or the step not above 0
+ */
+export function cutWindow(window: Interval, stepMs: number): Interval[] {
+  const { startEpochMs, endEpochMs } = window;
+  if (!(endEpochMs > startEpochMs) || !(stepMs > 0)) {
+    throw new RangeError(`cannot cut (${startEpochMs}, ${endEpochMs}] into steps of ${stepMs} ms`);
+  }
+  const pieces: Interval[] = [];
+  let from = startEpochMs;
+  while (from < endEpochMs) {
+    const to = Math.min(endEpochMs, (Math.floor(from / stepMs) + 1) * stepMs);
+    pieces.push({ startEpochMs: from, endEpochMs: to });
+    from = to;
+  }
+  return pieces;
+}
