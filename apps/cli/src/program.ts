@@ -1,0 +1,51 @@
+import { Command } from "commander";
+import { NothingLeft, speakPlainly } from "./command.ts";
+import { registerCompare } from "./commands/compare.ts";
+import { registerRelate } from "./commands/relate.ts";
+import { EXIT, errorText, exitStatusOf } from "./exit.ts";
+import { flags } from "./options.ts";
+import { version } from "./version.ts";
+
+/** The whole command line, without having read any argument. */
+export function buildProgram(): Command {
+  const program = new Command("rainreckon")
+    .description("Rain totals from weather-radar scans, checked against rain gauges.")
+    .version(version(), "--version", "print the version and stop")
+    .addOption(flags.json())
+    .addOption(flags.quiet())
+    .addOption(flags.debug())
+    .addOption(flags.noColour())
+    .configureHelp({ showGlobalOptions: true })
+    .helpOption("-h, --help", "print this help and stop")
+    .addHelpText("after", AFTER_HELP);
+  speakPlainly(program);
+  registerRelate(program);
+  registerCompare(program);
+  return program;
+}
+
+const AFTER_HELP = `
+Examples:
+  rainreckon survey data/
+  rainreckon plan data/ -o plan.yaml
+  rainreckon relate table --dbz 20..55
+
+Units: mm, mm/h, dBZ, km, degrees; instants are UTC unless a zone stands beside them.
+Exit status: 0 done, what was left out counted on stderr; 1 failed midway; 2 wrong usage or plan;
+3 no usable input; 130 interrupted.`;
+
+/**
+ * Runs one command line from its arguments to its exit status. Errors are told here and nowhere else.
+ *
+ * @param args - without the names of node and of the program
+ */
+export async function runProgram(args: readonly string[]): Promise<number> {
+  try {
+    await buildProgram().parseAsync(args, { from: "user" });
+    return Number(process.exitCode ?? EXIT.done);
+  } catch (error) {
+    if (error instanceof NothingLeft) return EXIT.done;
+    process.stderr.write(`${errorText(error, args.includes("--debug"))}\n`);
+    return exitStatusOf(error);
+  }
+}

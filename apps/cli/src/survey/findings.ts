@@ -1,0 +1,107 @@
+import { z } from "zod";
+import { manifestNotice } from "../manifest.ts";
+
+const instant = z.iso.datetime();
+
+const radarFinding = z.strictObject({
+  id: z.string(),
+  name: z.string().optional(),
+  lonDeg: z.number(),
+  latDeg: z.number(),
+  antennaHeightM: z.number(),
+  wavelengthCm: z.number().optional(),
+  /** Band of IEEE Std 521, where the files give a wavelength. */
+  band: z.string().optional(),
+  beamWidthDeg: z.number().optional(),
+  fileCount: z.number().int(),
+  sweepCount: z.number().int(),
+  roundCount: z.number().int(),
+  sweepsPerRound: z.strictObject({ least: z.number().int(), most: z.number().int() }),
+  /** Null with a single round. */
+  medianRoundMinutes: z.number().nullable(),
+  firstStart: instant,
+  lastEnd: instant,
+  /** Holes between successive rounds longer than two and a half median rounds. */
+  gaps: z.array(z.strictObject({ from: instant, to: instant, minutes: z.number() })),
+  quantities: z.array(z.strictObject({ name: z.string(), sweepCount: z.number().int() })),
+  elevationsDeg: z.array(z.number()),
+  /** Sweeps that came more than once: same site, start and elevation. */
+  resent: z.strictObject({ sameFile: z.number().int(), otherFile: z.number().int() }),
+  formats: z.array(z.string()),
+  files: z.array(z.string()),
+});
+
+const guess = z.strictObject({ value: z.string(), why: z.string() });
+
+const gaugeFinding = z.strictObject({
+  file: z.string(),
+  network: guess,
+  layout: z.enum(["long", "wide"]),
+  kind: guess,
+  unit: guess,
+  columns: z.strictObject({
+    gauge: z.string().optional(),
+    time: z.string(),
+    value: z.string().optional(),
+    quality: z.string().optional(),
+  }),
+  stepMinutes: z.number().optional(),
+  /** How the stamps name their zone: marked in every stamp, or not at all. */
+  zoneMarked: z.boolean(),
+  /** Read as UTC where no zone is marked. */
+  firstStamp: instant.optional(),
+  lastStamp: instant.optional(),
+  gaugeIds: z.array(z.string()),
+  /** False where the file is long and only its head was read for ids. */
+  allGaugeIdsSeen: z.boolean(),
+  stationsFile: z.string().optional(),
+  withoutStation: z.array(z.string()),
+});
+
+const stationFinding = z.strictObject({
+  file: z.string(),
+  columns: z.strictObject({
+    id: z.string(),
+    name: z.string().optional(),
+    x: z.string(),
+    y: z.string(),
+    elevation: z.string().optional(),
+  }),
+  stationCount: z.number().int(),
+  crs: guess,
+  /** Stations that no gauge file has readings of. */
+  withoutReadings: z.array(z.string()),
+});
+
+const mapFinding = z.strictObject({
+  file: z.string(),
+  polygonCount: z.number().int(),
+  idField: guess.optional(),
+  nameField: guess.optional(),
+  crs: z.string().optional(),
+});
+
+/** The result of `survey --json`: what lies there, what is wrong with it, what can be made of it. */
+export const surveySchema = z.strictObject({
+  format: z.literal("rainreckon-survey-1"),
+  paths: z.array(z.string()),
+  fileCount: z.number().int(),
+  radars: z.array(radarFinding),
+  gauges: z.array(gaugeFinding),
+  stations: z.array(stationFinding),
+  catchments: z.array(mapFinding),
+  otherFiles: z.array(z.strictObject({ kind: z.string(), count: z.number().int() })),
+  wrong: z.array(manifestNotice),
+  /** Time that radars cover; and the part of it that gauges cover as well, where there are any. */
+  window: z
+    .strictObject({ from: instant, to: instant, basis: z.enum(["radars and gauges", "radars"]) })
+    .nullable(),
+  possible: z.array(z.string()).describe("what can be made of it, one sentence each"),
+  next: z.string().describe("the command to type next"),
+});
+
+export type Findings = z.output<typeof surveySchema>;
+export type RadarFinding = z.output<typeof radarFinding>;
+export type GaugeFinding = z.output<typeof gaugeFinding>;
+export type StationFinding = z.output<typeof stationFinding>;
+export type MapFinding = z.output<typeof mapFinding>;

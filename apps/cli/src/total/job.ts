@@ -1,0 +1,90 @@
+import type { CellFractions, IntervalFields, TimeRules } from "@rainreckon/accumulation";
+import type { CapSetting, Grid, Interval, Notice, RadarSite, ZrRelation } from "@rainreckon/core";
+import type { LookupRules } from "@rainreckon/mosaic";
+
+/** A sweep as a unit of work needs it: where it is, and when it speaks. */
+export interface JobSweep {
+  /** Absolute path, and the name that people see. */
+  readonly path: string;
+  readonly name: string;
+  /** Index among the headers of its file. */
+  readonly index: number;
+  readonly elevationDeg: number;
+  readonly midEpochMs: number;
+}
+
+/** One round of one radar: sweeps in ascending elevation. */
+export interface JobRound {
+  readonly sweeps: readonly JobSweep[];
+  readonly firstMidEpochMs: number;
+  readonly lastMidEpochMs: number;
+  /** Whether this is the radar's first or last round in all the input. */
+  readonly isFirst: boolean;
+  readonly isLast: boolean;
+}
+
+/** A relation and the time it holds for: from is excluded, to is included. */
+export interface JobRelation extends Interval {
+  readonly relation: ZrRelation;
+}
+
+export interface JobRadar {
+  readonly site: RadarSite;
+  readonly moment: string;
+  readonly beamWidthDeg: number;
+  readonly offsetDb: number;
+  readonly cap: CapSetting;
+  readonly minRateMmPerHour: number;
+  /** Later entries win. The first one holds for all time. */
+  readonly relations: readonly JobRelation[];
+  readonly time: TimeRules;
+  readonly lookup: LookupRules;
+  readonly rounds: readonly JobRound[];
+}
+
+/** What all units of a run share. */
+export interface RunShape {
+  readonly grid: Grid;
+  readonly radars: readonly JobRadar[];
+  /** Relations of the headline other than the ones in use; their depths are kept at the headline's cells. */
+  readonly variants: readonly ZrRelation[];
+  readonly headlineCells: Int32Array;
+  /** Shape [gauges]: the cells that stand for each gauge. */
+  readonly gaugeCells: readonly (readonly number[])[];
+  readonly areas: readonly CellFractions[];
+}
+
+/** A run of whole grid intervals, with the steps they are made of. */
+export interface UnitJob {
+  readonly number: number;
+  readonly intervals: readonly Interval[];
+  readonly steps: readonly Interval[];
+}
+
+/** Depths and shares on the steps of a unit. Shapes [gauges or areas][steps]. */
+export interface StepSeries {
+  readonly depthMm: readonly Float64Array[];
+  readonly observedFraction: readonly Float64Array[];
+}
+
+export interface AreaStepSeries extends StepSeries {
+  readonly maxCellMm: readonly Float64Array[];
+  readonly cappedMm: readonly Float64Array[];
+}
+
+/** Sums over the sweeps that a unit owns: those whose mid-time lies in it, so that border scans count once. */
+export interface UnitCounts {
+  sweepsDecoded: number;
+  gatesRead: number;
+  gatesCapped: number;
+  cellsFilledByHigherSweep: number;
+}
+
+export interface UnitResult {
+  readonly intervals: readonly IntervalFields[];
+  readonly gauges: StepSeries;
+  readonly areas: AreaStepSeries;
+  readonly counts: UnitCounts;
+  /** Sweeps that could not be decoded. */
+  readonly notices: readonly Notice[];
+}

@@ -1,0 +1,231 @@
+import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@rainreckon/accumulation";
+import {
+  InputError,
+  momentRates,
+  type Notice,
+  type RateSettings,
+  type Rates,
+  rateTable,
+  resolveCap,
+  type Sweep,
+  type ZrRelation,
+} from "@rainreckon/core";
+import { formatsReady, openScan } from "@rainreckon/formats";
+import { type GateRates, type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
+import type {
+  AreaStepSeries,
+  JobRadar,
+  JobRound,
+  JobSweep,
+  RunShape,
+  StepSeries,
+  UnitCounts,
+  UnitJob,
+  UnitResult,
+} from "./job.ts";
+import { lookupShelf } from "./lookup-shelf.ts";
+
+/** Turns stored sweeps of one radar into gate rates, remembering tables: radars repeat their coding. */
+class RateMaker {
+  readonly #radar: JobRadar;
+  readonly #tables = new Map<string, Rates>();
+
+  constructor(radar: JobRadar) {
+    this.#radar = radar;
+  }
+
+  relationAt(epochMs: number): ZrRelation {
+    const { relations } = this.#radar;
+    for (let k = relations.length - 1; k >= 0; k--) {
+      if (epochMs > relations[k].startEpochMs && epochMs <= relations[k].endEpochMs)
+        return relations[k].relation;
+    }
+    return relations[0].relation;
+  }
+
+  /** @throws InputError where the sweep has no such moment, or a coding that means nothing */
+  rates(sweep: Sweep, relation: ZrRelation, where: string): GateRates {
+    const { moment: quantity, cap, minRateMmPerHour, offsetDb } = this.#radar;
+    const moment = sweep.moments.get(quantity);
+    if (moment === undefined)
+      throw new InputError(`no ${quantity}`, where, "name another moment in the plan");
+    const settings: RateSettings = {
+      relation,
+      cap: resolveCap(cap, relation),
+      minRateMmPerHour,
+      offsetDb,
+    };
+    const { stored, gain, offset, nodata, undetect } = moment;
+    if (!(stored instanceof Uint8Array || stored instanceof Uint16Array)) {
+      const { rate, capped } = momentRates(moment, settings, where);
+      return { codes: undefined, rateMmPerHour: rate, capped };
+    }
+    const key = [
+      stored.BYTES_PER_ELEMENT,
+      gain,
+      offset,
+      nodata,
+      undetect,
+      relation.a,
+      relation.b,
+      relation.phase,
+    ].join();
+    let table = this.#tables.get(key);
+    if (table === undefined) {
+      table = rateTable(moment, stored, settings, where);
+      this.#tables.set(key, table);
+    }
+    return { codes: stored, rateMmPerHour: table.rate, capped: table.capped };
+  }
+}
+
+/** Number of gates at or above the cap. */
+function countCapped({ codes, capped }: GateRates): number {
+  let count = 0;
+  if (codes === undefined) for (const flag of capped) count += flag;
+  else if (capped.includes(1)) for (const code of codes) count += capped[code];
+  return count;
+}
+
+/** One radar inside a unit: its rounds in time order, decoded one at a time. */
+class RadarFeed {
+  readonly integrator: RadarIntegrator;
+  readonly #radar: JobRadar;
+  readonly #rounds: readonly JobRound[];
+  readonly #rates: RateMaker;
+  readonly #shape: RunShape;
+  readonly #owned: (epochMs: number) => boolean;
+  #next = 0;
+
+  constructor(radar: JobRadar, shape: RunShape, job: UnitJob) {
+    const from = job.steps[0].startEpochMs;
+    const to = job.steps[job.steps.length - 1].endEpochMs;
+    const reachMs = Math.max(radar.time.maxGapMs, radar.time.medianRoundMs / 2);
+    this.#radar = radar;
+    this.#shape = shape;
+    this.#rates = new RateMaker(radar);
+    this.#owned = (epochMs) => epochMs > from && epochMs <= to;
+    this.#rounds = radar.rounds.filter(
+      (round) => round.lastMidEpochMs >= from - reachMs && round.firstMidEpochMs <= to + reachMs,
+    );
+    this.integrator = new RadarIntegrator(job.steps, radar.time, {
+      cellCount: shape.grid.nx * shape.grid.ny,
+      headlineCells: shape.headlineCells,
+      variantCount: shape.variants.length,
+    });
+  }
+
+  /** Earliest instant of the round that comes next; Infinity when there is none. */
+  get nextEpochMs(): number {
+    return this.#rounds[this.#next]?.firstMidEpochMs ?? Infinity;
+  }
+
+  /** Decodes the next round and adds it. */
+  advance(counts: UnitCounts, notices: Notice[]): void {
+    const round = this.#rounds[this.#next++];
+    const layer = this.#layer(round, counts, notices);
+    if (layer !== undefined) this.integrator.add(layer, round);
+  }
+
+  #layer(round: JobRound, counts: UnitCounts, notices: Notice[]): RateLayer | undefined {
+    const { grid, headlineCells, variants } = this.#shape;
+    const builder = new RateLayerBuilder(grid.nx * grid.ny, headlineCells, variants.length);
+    let spoken = 0;
+    for (const sweep of round.sweeps) {
+      try {
+        spoken += this.#addSweep(builder, sweep, spoken > 0, counts);
+      } catch (error) {
+        if (!(error instanceof InputError)) throw error;
+        notices.push({ what: error.what, where: error.where, fix: error.fix });
+      }
+    }
+    return spoken > 0 ? builder.finish() : undefined;
+  }
+
+  #addSweep(builder: RateLayerBuilder, sweep: JobSweep, higher: boolean, counts: UnitCounts): number {
+    const file = openScan(sweep.path);
+    try {
+      const shape = file.readSweep(sweep.index, []);
+      const lookup = lookupShelf(this.#shape.grid, this.#radar).forSweep(shape);
+      if (!builder.canFill(lookup)) return 0;
+      const decoded = file.readSweep(sweep.index, [this.#radar.moment]);
+      const where = `${sweep.name}, ${decoded.origin.dataset}`;
+      const relation = this.#rates.relationAt(sweep.midEpochMs);
+      const gates = this.#rates.rates(decoded, relation, where);
+      const others = this.#shape.variants.map((variant) => this.#rates.rates(decoded, variant, where));
+      const filled = builder.add(lookup, gates, others, sweep.midEpochMs);
+      if (this.#owned(sweep.midEpochMs)) {
+        counts.sweepsDecoded++;
+        counts.gatesRead += decoded.rayCount * decoded.gateCount;
+        counts.gatesCapped += countCapped(gates);
+        if (higher) counts.cellsFilledByHigherSweep += filled;
+      }
+      return filled;
+    } finally {
+      file.close();
+    }
+  }
+}
+
+/**
+ * Does one unit of work: decodes the rounds that can reach into it (those at its borders too), and returns
+ * complete depths for each of its intervals, and series at gauges and areas on its steps.
+ *
+ * A unit depends on nothing but its job, so units may run in any order and anywhere.
+ */
+export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult> {
+  await formatsReady();
+  const { grid, headlineCells, variants } = shape;
+  const cellCount = grid.nx * grid.ny;
+  const size = { cellCount, headlineCells, variantCount: variants.length };
+  const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
+  const notices: Notice[] = [];
+  const feeds = shape.radars.map((radar) => new RadarFeed(radar, shape, job));
+  const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
+  const areas: AreaStepSeries = {
+    ...emptySeries(shape.areas.length, job.steps.length),
+    maxCellMm: emptyRows(shape.areas.length, job.steps.length),
+    cappedMm: emptyRows(shape.areas.length, job.steps.length),
+  };
+  const intervals: UnitResult["intervals"][number][] = [];
+  let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
+
+  for (let step = 0; step < job.steps.length; step++) {
+    for (const feed of feeds) {
+      while (!feed.integrator.isSettled(step, feed.nextEpochMs)) feed.advance(counts, notices);
+    }
+    const span = job.steps[step];
+    const lengthMs = span.endEpochMs - span.startEpochMs;
+    // Integrators are asked for stretches of the step, so their layers are released only after blending.
+    const taken = feeds.map((feed) => ({ step: feed.integrator.take(step), integrator: feed.integrator }));
+    const blended = blendStep(span, step, taken, size);
+    for (const feed of feeds) feed.integrator.release();
+    for (let g = 0; g < shape.gaugeCells.length; g++) {
+      const point = pointDepth(shape.gaugeCells[g], blended, lengthMs);
+      gauges.depthMm[g][step] = point.depthMm;
+      gauges.observedFraction[g][step] = point.observedFraction;
+    }
+    for (let a = 0; a < shape.areas.length; a++) {
+      const areal = arealDepth(shape.areas[a], blended, lengthMs);
+      areas.depthMm[a][step] = areal.depthMm;
+      areas.observedFraction[a][step] = areal.observedFraction;
+      areas.maxCellMm[a][step] = areal.maxCellMm;
+      areas.cappedMm[a][step] = areal.cappedMm;
+    }
+    sum.add(blended);
+    const interval = job.intervals[intervals.length];
+    if (span.endEpochMs === interval.endEpochMs) {
+      intervals.push(sum.toInterval(interval));
+      sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
+    }
+  }
+  return { intervals, gauges, areas, counts, notices };
+}
+
+function emptyRows(rows: number, columns: number): Float64Array[] {
+  return Array.from({ length: rows }, () => new Float64Array(columns).fill(Number.NaN));
+}
+
+function emptySeries(rows: number, columns: number): StepSeries {
+  return { depthMm: emptyRows(rows, columns), observedFraction: emptyRows(rows, columns) };
+}

@@ -1,0 +1,65 @@
+import { DateTime } from "luxon";
+import { findZone } from "../plan/zone.ts";
+
+/** A count with its thousands set apart: 10,000. */
+export function countText(count: number): string {
+  return Math.round(count)
+    .toString()
+    .replace(/\B(?=(\d{3})+$)/g, ",");
+}
+
+/** A count with its noun: "1 file", "10,000 files". */
+export function counted(count: number, noun: string, plural = `${noun}s`): string {
+  return `${countText(count)} ${count === 1 ? noun : plural}`;
+}
+
+/** At most so many decimals, without trailing zeros; "–" where there is no number. */
+export function decimals(value: number | undefined, digits: number): string {
+  if (value === undefined || !Number.isFinite(value)) return "–";
+  const rounded = Number(value.toFixed(digits));
+  return String(rounded === 0 ? 0 : rounded);
+}
+
+/** A number with always so many decimals; "–" where there is none. */
+export function fixedDecimals(value: number | undefined | null, digits: number): string {
+  if (value === undefined || value === null || !Number.isFinite(value)) return "–";
+  return value.toFixed(digits);
+}
+
+/** Position for people: 51.2000° N, 4.1000° E. */
+export function placeText(lonDeg: number, latDeg: number): string {
+  const lat = `${Math.abs(latDeg).toFixed(4)}° ${latDeg < 0 ? "S" : "N"}`;
+  return `${lat}, ${Math.abs(lonDeg).toFixed(4)}° ${lonDeg < 0 ? "W" : "E"}`;
+}
+
+/** An instant in UTC as machines and plans read it, without empty fractions: 2031-05-03T12:00:00Z. */
+export function isoUtc(epochMs: number): string {
+  return new Date(epochMs).toISOString().replace(".000Z", "Z");
+}
+
+/** An instant in UTC for people: 2031-05-03 12:00:00 UTC, seconds only where they are not 0. */
+export function utcText(epochMs: number): string {
+  const iso = new Date(epochMs).toISOString();
+  const seconds = iso.slice(17, 19) === "00" ? "" : iso.slice(16, 19);
+  return `${iso.slice(0, 10)} ${iso.slice(11, 16)}${seconds} UTC`;
+}
+
+/** An instant on the clock of a zone, with that clock's offset: 2031-05-03 14:00 UTC+2. */
+export function localText(epochMs: number, zoneName: string): string {
+  const zone = findZone(zoneName);
+  return DateTime.fromMillis(epochMs, { zone: zone ?? "UTC" })
+    .setLocale("en")
+    .toFormat("yyyy-MM-dd HH:mm 'UTC'Z");
+}
+
+/** A length of time for people: 45 s, 5 min, 1 h 30 min. */
+export function lengthText(lengthMs: number): string {
+  const seconds = Math.round(lengthMs / 1000);
+  if (seconds < 60) return `${seconds} s`;
+  const minutes = Math.floor(seconds / 60);
+  const rest = seconds % 60;
+  if (minutes < 60) return rest === 0 ? `${minutes} min` : `${minutes} min ${rest} s`;
+  const hours = Math.floor(minutes / 60);
+  const restMinutes = Math.round(seconds / 60) % 60;
+  return restMinutes === 0 ? `${hours} h` : `${hours} h ${restMinutes} min`;
+}
