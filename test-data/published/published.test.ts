@@ -1,6 +1,6 @@
 import { expect, test } from "vitest";
 import { allCheckValues, type CheckValue, checkValues, isBinding } from "./entries.ts";
-import { fits } from "./suite.ts";
+import { fits, sortEntries } from "./suite.ts";
 import { differences, withinTolerance } from "./tolerance.ts";
 
 const entry = (expected: CheckValue["expected"], type: "absolute" | "relative" | "exact", value: number) => ({
@@ -82,4 +82,32 @@ test("patterns: an id, a run of characters, a regular expression", () => {
   expect(fits("cap-*-49", "cap-300-1.4-49")).toBe(true);
   expect(fits("cap-*", "snow-cap-1")).toBe(false);
   expect(fits(/^vip-/, "vip-dvip-L1-low")).toBe(true);
+});
+
+test("a suite finds entries that nothing answers, double answers, and patterns that fit nothing", () => {
+  const answer = () => 0;
+  const { sorted, faults } = sortEntries({
+    topics: ["c-zr-relations"],
+    except: "zr-*",
+    adapters: [
+      ["cap-300-*", answer],
+      ["cap-*-49", answer],
+      ["no-such-*", answer],
+    ],
+    notApplicable: [
+      { id: "cap-300-1.4-49", reason: "said twice" },
+      { id: /^nor-such/, reason: "said of nothing" },
+      { id: "vip-*", reason: "not ours" },
+    ],
+  });
+  expect(faults).toEqual([
+    "cap-300-1.4-49 is answered and excused",
+    "adapter no-such-* fits nothing",
+    "reason for /^nor-such/ fits nothing",
+  ]);
+  const open = sorted.filter(({ adapter, reason }) => adapter === undefined && reason === undefined);
+  expect(open.map(({ entry }) => entry.id)).toContain("cap-250-1.2-51");
+  expect(open.map(({ entry }) => entry.id)).not.toContain("cap-250-1.2-49");
+  expect(sorted.some(({ entry }) => entry.id.startsWith("zr-"))).toBe(false);
+  expect(sorted.find(({ entry }) => entry.id === "vip-glossary-L1-low")?.reason).toBe("not ours");
 });

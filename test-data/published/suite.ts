@@ -28,6 +28,7 @@ export interface ReferenceSuite {
 
 /** What the summary of `npm run reference` reads from the run: nothing is counted that did not run. */
 export const MEASURED_PREFIX = "published values: ";
+export const SANITY_PREFIX = "sanity range: ";
 
 declare module "vitest" {
   interface TaskMeta {
@@ -35,54 +36,73 @@ declare module "vitest" {
   }
 }
 
+/** A check value with what a suite does about it. */
+export interface SortedEntry {
+  readonly entry: CheckValue;
+  readonly adapter: Adapter | undefined;
+  readonly reason: string | undefined;
+}
+
+/**
+ * The entries of a suite's topics with their adapters and reasons, and what is wrong with the suite itself.
+ *
+ * @returns `faults`: entries that are both answered and excused, and patterns that fit no entry
+ */
+export function sortEntries(suite: ReferenceSuite): {
+  readonly sorted: readonly SortedEntry[];
+  readonly faults: readonly string[];
+} {
+  const answers = [...suite.adapters];
+  const excuses = suite.notApplicable ?? [];
+  const used = new Set<unknown>();
+  const faults: string[] = [];
+  const sorted = suite.topics
+    .flatMap((topic) => checkValues(topic))
+    .filter(({ id }) => suite.only === undefined || fits(suite.only, id))
+    .filter(({ id }) => suite.except === undefined || !fits(suite.except, id))
+    .map((entry) => {
+      const answer = answers.find(([pattern]) => fits(pattern, entry.id));
+      const excuse = excuses.find(({ id }) => fits(id, entry.id));
+      used.add(answer).add(excuse);
+      if (answer !== undefined && excuse !== undefined) faults.push(`${entry.id} is answered and excused`);
+      return { entry, adapter: answer?.[1], reason: excuse?.reason };
+    });
+  for (const answer of answers) if (!used.has(answer)) faults.push(`adapter ${answer[0]} fits nothing`);
+  for (const excuse of excuses) if (!used.has(excuse)) faults.push(`reason for ${excuse.id} fits nothing`);
+  return { sorted, faults };
+}
+
 /**
  * Registers one test per check value of some topics.
  *
- * A binding entry (see {@link isBinding}) that no adapter answers and no reason excuses is a failing
- * test; other kinds are tested only where an adapter answers, and are called sanity ranges. A pattern
- * that fits nothing, and an entry that is both answered and excused, fail too.
+ * A binding entry (see `isBinding`) that no adapter answers and no reason excuses is a failing test; other
+ * kinds are tested only where an adapter answers, and are called sanity ranges. The faults that
+ * {@link sortEntries} finds are failures too.
  */
 export function runReferenceSuite(suite: ReferenceSuite): void {
-  const adapters = [...suite.adapters];
-  const excuses = suite.notApplicable ?? [];
-  const entries = suite.topics
-    .flatMap((topic) => checkValues(topic))
-    .filter((entry) => suite.only === undefined || fits(suite.only, entry.id))
-    .filter((entry) => suite.except === undefined || !fits(suite.except, entry.id));
-  const excuseOf = (entry: CheckValue) => excuses.find((excuse) => fits(excuse.id, entry.id));
-  const answerOf = (entry: CheckValue) => adapters.find(([pattern]) => fits(pattern, entry.id));
-
-  for (const topic of new Set(entries.map((entry) => entry.topic))) {
-    const ofTopic = entries.filter((entry) => entry.topic === topic);
+  const { sorted, faults } = sortEntries(suite);
+  for (const topic of new Set(sorted.map(({ entry }) => entry.topic))) {
+    const ofTopic = sorted.filter(({ entry }) => entry.topic === topic);
     describe(`${MEASURED_PREFIX}${topic}`, () => {
-      for (const entry of ofTopic) {
-        const adapter = answerOf(entry)?.[1];
-        if (adapter === undefined && (excuseOf(entry) !== undefined || !isBinding(entry))) continue;
-        const title = isBinding(entry) ? entry.id : `sanity range (${entry.kind}): ${entry.id}`;
-        test(title, () => {
-          if (adapter === undefined) expect.fail("no adapter answers it and no reason excuses it");
-          expect(differences(entry, adapter(entry)), `${entry.quantity}; ${entry.source}`).toEqual([]);
-        });
-      }
-      test("every entry is answered or excused, not both", ({ task }) => {
-        const excused = ofTopic.filter((entry) => excuseOf(entry) !== undefined);
-        task.meta.notApplicable = excused.map((entry) => ({
-          id: entry.id,
-          reason: excuseOf(entry)?.reason ?? "",
-        }));
-        expect(excused.filter((entry) => answerOf(entry) !== undefined).map(({ id }) => id)).toEqual([]);
+      for (const item of ofTopic) registerEntry(item);
+      test("the suite answers or excuses each entry once, and has no idle pattern", ({ task }) => {
+        task.meta.notApplicable = ofTopic.flatMap(({ entry, reason }) =>
+          reason === undefined ? [] : [{ id: entry.id, reason }],
+        );
+        expect(faults).toEqual([]);
       });
     });
   }
+}
 
-  test(`every pattern fits a check value of ${suite.topics.join(", ")}`, () => {
-    const answering = new Set(entries.map(answerOf));
-    const idleAdapters = adapters.filter((answer) => !answering.has(answer));
-    const excusing = new Set(entries.map(excuseOf));
-    const idleExcuses = excuses.filter((excuse) => !excusing.has(excuse));
-    const idle = [...idleAdapters.map(([pattern]) => pattern), ...idleExcuses.map(({ id }) => id)];
-    expect(idle.map(String)).toEqual([]);
-  });
+function registerEntry({ entry, adapter, reason }: SortedEntry): void {
+  if (adapter !== undefined) {
+    test(isBinding(entry) ? entry.id : `${SANITY_PREFIX}${entry.id}`, () => {
+      expect(differences(entry, adapter(entry)), `${entry.quantity}; ${entry.source}`).toEqual([]);
+    });
+  } else if (isBinding(entry) && reason === undefined) {
+    test(entry.id, () => expect.fail("no adapter answers it and no reason excuses it"));
+  }
 }
 
 /** True where an id is the one, or of the kind, that a pattern names. */

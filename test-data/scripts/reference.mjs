@@ -7,6 +7,7 @@ import { join } from "node:path";
 import { fileURLToPath } from "node:url";
 
 const MEASURED_PREFIX = "published values: ";
+const SANITY_PREFIX = "sanity range: ";
 const BINDING = /^(published table|worked example|closed form|computed independently)/;
 
 const root = fileURLToPath(new URL("../..", import.meta.url));
@@ -41,16 +42,20 @@ for (const [book, entries] of books) {
         `${sanity.length} of ${ofTopic.length - binding.length} others as sanity ranges`,
     );
     for (const [reason, ids] of byReason(excused))
-      console.log(`    not applicable, ${ids.length}: ${reason} (${ids.join(", ")})`);
-    if (open.length > 0) console.log(`    unanswered: ${open.map(({ id }) => id).join(", ")}`);
+      console.log(`    not applicable, ${ids.length}: ${reason} (${some(ids)})`);
+    if (open.length > 0) console.log(`    unanswered: ${some(open.map(({ id }) => id))}`);
   }
   if (notDue.length > 0) console.log(`  not yet due: ${notDue.join("; ")}`);
 }
 
-const bindingCount = books.flatMap(([, entries]) => entries).filter(({ kind }) => BINDING.test(kind)).length;
+const isExercised = ({ id }) => measured.passed.has(id);
+const all = books.flatMap(([, entries]) => entries);
+const binding = all.filter(({ kind }) => BINDING.test(kind));
+const sanity = all.filter(({ kind }) => !BINDING.test(kind));
 console.log(
-  `\n${measured.passed.size} values exercised, ${measured.failed.size} failed, ${measured.notApplicable.size} not applicable, ` +
-    `${unanswered} due and unanswered; ${bindingCount} binding values in all`,
+  `\n${binding.filter(isExercised).length} of ${binding.length} binding values exercised ` +
+    `(and ${sanity.filter(isExercised).length} sanity ranges), ${measured.failed.size} failed, ` +
+    `${binding.filter(({ id }) => measured.notApplicable.has(id)).length} not applicable, ${unanswered} due and unanswered`,
 );
 for (const id of measured.failed) console.log(`failed: ${id}`);
 if (!run.success) console.log("the run of the suites did not pass; run `npm test` for its messages");
@@ -98,11 +103,17 @@ function readRun({ testResults }) {
   for (const test of testResults.flatMap((file) => file.assertionResults)) {
     if (!test.ancestorTitles.some((title) => title.startsWith(MEASURED_PREFIX))) continue;
     for (const { id, reason } of test.meta.notApplicable ?? []) notApplicable.set(id, reason);
-    const id = test.title.replace(/^sanity range \(.*?\): /, "");
-    if (id.startsWith("every entry ")) continue;
+    const id = test.title.replace(SANITY_PREFIX, "");
+    if (id.startsWith("the suite ")) continue;
     (test.status === "passed" ? passed : failed).add(id);
   }
   return { passed, failed, notApplicable };
+}
+
+/** The first few of many ids, and how many more. */
+function some(ids) {
+  const shown = ids.slice(0, 6).join(", ");
+  return ids.length > 6 ? `${shown} and ${ids.length - 6} more` : shown;
 }
 
 function byReason(entries) {
