@@ -1,1 +1,26 @@
-export {};
+export { svgHyetograph } from "./charts/hyetograph.ts";
+export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
+export type {
+  AccountLine,
+  AdjustmentStatement,
+  Caution,
+  ChangedSetting,
+  CrossValidationStatement,
+  DepthFigure,
+  GaugeRole,
+  Hyetograph,
+  MapLayer,
+  Provenance,
+  ProvenanceInput,
+  RelationFigure,
+  ReportCatchment,
+  ReportGauge,
+  ReportInput,
+  ReportRadar,
+  ReportScore,
+  ReportScores,
+  StepSeries,
+} from "./input.ts";
+export { palettePng, type Rgba } from "./map/png.ts";
+export { renderReport } from "./report.ts";
+export { escapeText, html, type Insert, Markup } from "./text/html.ts";

@@ -1,0 +1,29 @@
+import type { GaugeRole } from "../input.ts";
+import { html, type Markup } from "../text/html.ts";
+import { svgNumber } from "../text/numbers.ts";
+
+/** What a reader is told of a gauge's part in the figures. */
+export const ROLE_WORDS: Readonly<Record<GaugeRole, string>> = {
+  used: "used",
+  doubted: "doubted",
+  "left-out": "left out",
+};
+
+/** Shapes about the origin, ten units across: they stay apart without colour. */
+const SHAPES: Readonly<Record<GaugeRole, Markup>> = {
+  used: html`<circle r="5"/>`,
+  doubted: html`<path d="M0 -6.2L6 4.8H-6z"/>`,
+  "left-out": html`<path d="M-4.5 -4.5L4.5 4.5M4.5 -4.5L-4.5 4.5"/>`,
+};
+
+/** The mark of a gauge at a place of a chart or map, with its words on hover, if any. */
+export function gaugeMark(role: GaugeRole, x: number, y: number, words: string): Markup {
+  return html`<g class="gauge ${role}" transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}${
+    role === "left-out" && html`<path class="casing" d="M-4.5 -4.5L4.5 4.5M4.5 -4.5L-4.5 4.5"/>`
+  }${SHAPES[role]}</g>`;
+}
+
+/** The mark of a radar: two rings and a dot. */
+export function radarMark(x: number, y: number, words: string): Markup {
+  return html`<g class="radar" transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}<circle r="8" class="casing"/><circle r="8"/><circle r="4"/><circle r="1.2" class="dot"/></g>`;
+}

@@ -1,0 +1,127 @@
+import { hatchPattern, swatch } from "../charts/hatch.ts";
+import type { MapLayer, ReportRadar } from "../input.ts";
+import { html, type Markup } from "../text/html.ts";
+import { CATEGORY_COLOURS, categoryColour, categoryPattern, cssColour } from "./categories.ts";
+import {
+  CLEAR,
+  type ColourClasses,
+  classIndex,
+  depthClasses,
+  fractionClasses,
+  heightClasses,
+} from "./classes.ts";
+import { palettePng, type Rgba } from "./png.ts";
+import { type Picture, thin } from "./thin.ts";
+
+/** A layer ready to be drawn: its picture, what lies over it, and its legend. */
+export interface DrawnLayer {
+  readonly layer: MapLayer;
+  readonly picture: Picture;
+  /** Palette picture of the cells, one pixel a cell; not-observed cells are clear. */
+  readonly png: Uint8Array;
+  /** Patterns laid over the cells that a test picks: one per category. */
+  readonly overlays: readonly {
+    readonly id: string;
+    readonly category: number;
+    passes(index: number): boolean;
+  }[];
+  readonly legend: readonly { readonly swatch: Markup; readonly label: string }[];
+  readonly unit: string;
+}
+
+/** Each legend has a pattern of its own: one inside a hidden legend would draw nothing elsewhere. */
+function notObserved(layer: MapLayer): { swatch: Markup; label: string } {
+  const id = `legend-hatch-${layer.quantity}-${layer.id}`;
+  return {
+    swatch: swatch(
+      html`<defs>${hatchPattern(id)}</defs><rect class="swatch-frame" x="0.5" y="0.5" width="21" height="13"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#${id})"/>`,
+    ),
+    label: "not observed",
+  };
+}
+
+function colourSwatch(colour: Rgba): Markup {
+  return swatch(
+    html`<rect class="swatch-frame" x="0.5" y="0.5" width="21" height="13" fill="${colour[3] === 0 ? "none" : cssColour(colour)}"/>`,
+  );
+}
+
+/** Palette index of each cell: 0 is clear, for what was not observed; 1 + class for the rest. */
+function cellPng(picture: Picture, classOf: (value: number) => number, colours: readonly Rgba[]): Uint8Array {
+  const indices = Uint8Array.from(picture.values, (value) => (Number.isNaN(value) ? 0 : 1 + classOf(value)));
+  return palettePng(indices, picture.nx, picture.ny, [CLEAR, ...colours]);
+}
+
+function drawAmounts(layer: MapLayer, picture: Picture, classes: ColourClasses): DrawnLayer {
+  return {
+    layer,
+    picture,
+    png: cellPng(picture, (value) => classIndex(classes, value), classes.colours),
+    overlays: [],
+    legend: [
+      ...classes.labels.map((label, i) => ({ swatch: colourSwatch(classes.colours[i]), label })),
+      notObserved(layer),
+    ],
+    unit: classes.unit,
+  };
+}
+
+function drawRadars(layer: MapLayer, picture: Picture, radars: readonly ReportRadar[]): DrawnLayer {
+  const overlays = radars.map((_, radar) => ({
+    id: `radar-tile-${radar}`,
+    category: radar,
+    passes: (index: number) => picture.values[index] === radar,
+  }));
+  return {
+    layer,
+    picture,
+    png: cellPng(picture, (value) => value % CATEGORY_COLOURS.length, CATEGORY_COLOURS),
+    overlays,
+    legend: [
+      ...radars.map((radar, i) => ({
+        swatch: swatch(
+          html`<defs>${categoryPattern(`legend-tile-${i}`, i)}</defs><rect class="swatch-frame" x="0.5" y="0.5" width="21" height="13" fill="${cssColour(
+            categoryColour(i),
+          )}"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#legend-tile-${i})"/>`,
+        ),
+        label: radar.name === undefined || radar.name === radar.id ? radar.id : `${radar.id} · ${radar.name}`,
+      })),
+      notObserved(layer),
+    ],
+    unit: "radar that carries most weight",
+  };
+}
+
+/** Thins, classes and colours the layers; all depth layers share one set of classes. */
+export function drawLayers(
+  layers: readonly MapLayer[],
+  nx: number,
+  ny: number,
+  radars: readonly ReportRadar[],
+): DrawnLayer[] {
+  const pictures = layers.map((layer) =>
+    thin(layer.values, nx, ny, layer.quantity === "radarIndex" ? "most" : "mean"),
+  );
+  const depths = depthClasses(
+    pictures.filter((_, i) => layers[i].quantity === "depthMm").map((p) => p.values),
+  );
+  return layers.map((layer, i) => drawLayer(layer, pictures[i], depths, radars));
+}
+
+function drawLayer(
+  layer: MapLayer,
+  picture: Picture,
+  depths: ColourClasses,
+  radars: readonly ReportRadar[],
+): DrawnLayer {
+  switch (layer.quantity) {
+    case "depthMm":
+      return drawAmounts(layer, picture, depths);
+    case "fraction":
+      return drawAmounts(layer, picture, fractionClasses());
+    case "heightM":
+      return drawAmounts(layer, picture, heightClasses(picture.values));
+    case "radarIndex":
+      return drawRadars(layer, picture, radars);
+  }
+}

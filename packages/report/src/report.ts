@@ -1,0 +1,83 @@
+import { createHash } from "node:crypto";
+import type { ReportInput } from "./input.ts";
+import { catchmentSection, relationSection } from "./sections/catchments.ts";
+import { scatterSection, verdictSection } from "./sections/gauges.ts";
+import { hyetographSection } from "./sections/hyetographs.ts";
+import { mapSection } from "./sections/map-section.ts";
+import { firstCautions, headlineSentence, limitsSection, titleBlock, trustLine } from "./sections/opening.ts";
+import { accountSection, glossarySection, provenanceSection } from "./sections/records.ts";
+import { scoreSection } from "./sections/scores.ts";
+import { styleSheet } from "./styles.ts";
+import { html, Markup } from "./text/html.ts";
+
+/** What stands below the map, in order: the words of the list of contents, the id, and what writes it. */
+const SECTIONS: readonly {
+  readonly id: string;
+  readonly words: string;
+  readonly write: (input: ReportInput) => Markup;
+}[] = [
+  { id: "gauges-radar", words: "Gauge against radar", write: scatterSection },
+  { id: "time", words: "Rain against time", write: hyetographSection },
+  { id: "relations", words: "Other relations", write: relationSection },
+  { id: "catchments", words: "Catchments", write: catchmentSection },
+  { id: "gauges", words: "Gauge verdicts", write: verdictSection },
+  { id: "scores", words: "Scores", write: scoreSection },
+  { id: "accounts", words: "Left out and assumed", write: accountSection },
+  { id: "provenance", words: "Provenance", write: provenanceSection },
+  { id: "limits", words: "Cautions", write: limitsSection },
+  { id: "glossary", words: "Words", write: () => glossarySection() },
+];
+
+/** Digits of the run digest that are printed: enough to tell runs apart by eye. */
+const DIGEST_DIGITS = 16;
+
+/**
+ * The report as one HTML file that needs nothing else: no network, no script, no font.
+ *
+ * The content policy in its head forbids everything but pictures inside the file and its own style sheet.
+ * The same input gives the same bytes.
+ *
+ * @throws RangeError where the input contradicts itself: a layer that does not fill the grid, a zone that
+ * does not exist
+ */
+export function renderReport(input: ReportInput): string {
+  const footer = footerText(input);
+  const style = styleSheet(input.layers.length, footer);
+  const styleHash = createHash("sha256").update(style).digest("base64");
+  const policy = `default-src 'none'; img-src data:; style-src 'sha256-${styleHash}'; base-uri 'none'; form-action 'none'`;
+  const sections = SECTIONS.map((section) => ({ ...section, markup: section.write(input) })).filter(
+    ({ markup }) => markup.text !== "",
+  );
+  return html`<!doctype html>
+<html lang="en">
+<head>
+<meta charset="utf-8">
+<meta http-equiv="Content-Security-Policy" content="${policy}">
+<meta name="viewport" content="width=device-width, initial-scale=1">
+<meta name="referrer" content="no-referrer">
+<title>${input.title}</title>
+<style>${new Markup(style)}</style>
+</head>
+<body>
+<header>
+${titleBlock(input)}
+${headlineSentence(input)}
+${trustLine(input)}
+${firstCautions(input)}
+</header>
+<main>
+${mapSection(input)}
+<nav class="contents" aria-label="Contents"><ul>${sections.map(
+    ({ id, words }) => html`<li><a href="#${id}">${words}</a></li>`,
+  )}</ul></nav>
+${sections.map(({ markup }) => html`${markup}\n`)}</main>
+<footer>${footer}. ${input.provenance.software}.</footer>
+</body>
+</html>
+`.text;
+}
+
+function footerText(input: ReportInput): string {
+  const status = input.status === "final" ? "Final" : "Provisional";
+  return `${status}: run ${input.provenance.runDigest.slice(0, DIGEST_DIGITS)}`;
+}

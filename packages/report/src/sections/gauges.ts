@@ -1,0 +1,93 @@
+import { swatch } from "../charts/hatch.ts";
+import { gaugeMark, ROLE_WORDS } from "../charts/marks.ts";
+import { type ScatterPoint, scatterWords, svgScatter } from "../charts/scatter.ts";
+import type { ReportGauge, ReportInput } from "../input.ts";
+import { missing, orMissing } from "../text/figures.ts";
+import { html, type Markup } from "../text/html.ts";
+import { counted, mmText, percentText, ratioText } from "../text/numbers.ts";
+
+function points(
+  gauges: readonly ReportGauge[],
+  depth: (gauge: ReportGauge) => number,
+  side: string,
+): ScatterPoint[] {
+  return gauges
+    .filter((gauge) => Number.isFinite(gauge.gaugeMm) && Number.isFinite(depth(gauge)))
+    .map((gauge) => ({
+      label: gauge.id,
+      role: gauge.role,
+      gaugeMm: gauge.gaugeMm,
+      radarMm: depth(gauge),
+      words: scatterWords(`${gauge.id} (${gauge.network})`, gauge.gaugeMm, depth(gauge), side),
+    }));
+}
+
+function reasonFor(gauge: ReportGauge): string {
+  return gauge.reason === undefined || gauge.reason === ""
+    ? "gauge and radar observed no time together"
+    : gauge.reason;
+}
+
+function ratioCell(gauge: ReportGauge): Markup {
+  if (!Number.isFinite(gauge.gaugeMm) || !Number.isFinite(gauge.radarMm)) return missing(reasonFor(gauge));
+  if (gauge.gaugeMm === 0) return missing("the gauge measured no rain");
+  return html`${ratioText(gauge.radarMm / gauge.gaugeMm)}`;
+}
+
+function roleCell(gauge: ReportGauge): Markup {
+  return html`<td class="role">${swatch(gaugeMark(gauge.role, 8, 7, ""), 16)}${ROLE_WORDS[gauge.role]}</td>`;
+}
+
+function gaugeHead(gauge: ReportGauge): Markup {
+  return html`<th scope="row"><span class="id">${gauge.id}</span>${
+    gauge.name !== undefined && html` ${gauge.name}`
+  }<span class="sub">${gauge.network}</span></th>`;
+}
+
+function numbersTable(gauges: readonly ReportGauge[], adjusted: boolean): Markup {
+  return html`<div class="scroll tall" role="region" tabindex="0" aria-label="Gauge against radar, numbers"><table><caption>Over the time that gauge and radar both observed</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col" class="number">Gauge mm</th><th scope="col" class="number">Radar mm</th><th scope="col" class="number">radar/gauge</th>${
+    adjusted && html`<th scope="col" class="number">Left-out adjusted mm</th>`
+  }<th scope="col" class="number">Time shared</th></tr></thead><tbody>${gauges.map(
+    (gauge) =>
+      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td class="number">${orMissing(gauge.gaugeMm, mmText, reasonFor(gauge))}</td><td class="number">${orMissing(gauge.radarMm, mmText, reasonFor(gauge))}</td><td class="number">${ratioCell(gauge)}</td>${
+        adjusted &&
+        html`<td class="number">${orMissing(gauge.crossValidatedMm, mmText, "no adjusted value without this gauge")}</td>`
+      }<td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
+  )}</tbody></table></div>`;
+}
+
+/** Gauge against radar: the scatter with its table, before and after adjustment. */
+export function scatterSection(input: ReportInput): Markup {
+  const { gauges } = input;
+  if (gauges.length === 0) {
+    return html`<section id="gauges-radar" aria-labelledby="scatter-heading"><h2 id="scatter-heading">Gauge against radar</h2><p>The run had no gauges, so nothing here checks the radar.</p></section>`;
+  }
+  const radar = points(gauges, (gauge) => gauge.radarMm, "radar");
+  const adjusted = points(gauges, (gauge) => gauge.crossValidatedMm, "adjusted without it");
+  const dropped = gauges.length - radar.length;
+  return html`<section id="gauges-radar" aria-labelledby="scatter-heading"><h2 id="scatter-heading">Gauge against radar</h2><p class="lead">Each mark is one gauge and the radar cell over it. On the solid line they agree; outside the dashed lines they differ by more than a factor of two. Both axes follow the square root, so that small depths have room and zeros still show.</p><div class="beside"><div><figure>${svgScatter(
+    "scatter-radar",
+    "Gauge against radar",
+    "radar, mm",
+    radar,
+  )}<figcaption>Radar before adjustment.${dropped > 0 && html` ${counted(dropped, "gauge")} without both depths not drawn; the reasons are in the table.`}</figcaption></figure>${
+    adjusted.length > 0 &&
+    html`<figure>${svgScatter("scatter-adjusted", "Gauge against adjusted radar", "adjusted radar, mm", adjusted)}<figcaption>After adjustment, each gauge left out of the adjustment that it is held against.</figcaption></figure>`
+  }</div>${numbersTable(gauges, adjusted.length > 0)}</div></section>`;
+}
+
+/** What each gauge is worth, why, and on what evidence. */
+export function verdictSection(input: ReportInput): Markup {
+  const { gauges } = input;
+  if (gauges.length === 0) return html``;
+  const order = { doubted: 0, "left-out": 1, used: 2 };
+  const sorted = [...gauges].sort((a, b) => order[a.role] - order[b.role]);
+  return html`<section id="gauges" aria-labelledby="verdict-heading"><h2 id="verdict-heading">Gauges: verdict, cause, evidence</h2><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each gauge"><table><caption>Doubted gauges first</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th><th scope="col">Radar</th><th scope="col" class="number">Range km</th></tr></thead><tbody>${sorted.map(
+    (gauge) =>
+      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(gauge.cause, "no cause was found or looked for")}</td><td class="words">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td>${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td></tr>`,
+  )}</tbody></table></div></section>`;
+}
+
+function wordsOrDash(words: string, reason: string): Markup {
+  return words === "" ? missing(reason) : html`${words}`;
+}

@@ -1,0 +1,55 @@
+import { swatch } from "../charts/hatch.ts";
+import { gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
+import type { GaugeRole, ReportInput } from "../input.ts";
+import { type DrawnLayer, drawLayers } from "../map/layer.ts";
+import { isOnMap, mapFrame, svgMap } from "../map/map.ts";
+import { html, joined, type Markup } from "../text/html.ts";
+
+const ROLES: readonly GaugeRole[] = ["used", "doubted", "left-out"];
+
+/** The map with a plain button per layer: they work without any script. */
+export function mapSection(input: ReportInput): Markup {
+  const layers = drawLayers(input.layers, input.grid.nx, input.grid.ny, input.radars);
+  if (layers.length === 0) return html``;
+  const shown = Math.max(
+    0,
+    layers.findIndex(({ layer }) => layer.id === input.shownLayerId),
+  );
+  return html`<section id="map" aria-labelledby="map-heading"><h2 id="map-heading">Map</h2><fieldset class="map-block"><legend>Show</legend>${layers.map(
+    ({ layer }, index) =>
+      html`<input type="radio" name="map-layer" id="show-${index}"${index === shown && html` checked`}><label for="show-${index}">${layer.label}</label>`,
+  )}<div class="map-body"><div class="map-sheet">${svgMap(input, layers)}</div><div class="map-side">${layers.map(
+    (drawn, index) => legend(drawn, index),
+  )}${placesLegend(input)}${mapNotes(input, layers)}</div></div></fieldset></section>`;
+}
+
+function legend(drawn: DrawnLayer, index: number): Markup {
+  return html`<div class="legend layer-${index}"><h3>${drawn.layer.label}<span>${drawn.unit}</span></h3><ul>${drawn.legend.map(
+    (entry) => html`<li>${entry.swatch}${entry.label}</li>`,
+  )}</ul><p>${drawn.layer.what}</p></div>`;
+}
+
+function placesLegend(input: ReportInput): Markup {
+  const roles = ROLES.filter((role) => input.gauges.some((gauge) => gauge.role === role));
+  return html`<ul class="places-legend">${roles.map(
+    (role) => html`<li>${swatch(gaugeMark(role, 11, 7, ""))}gauge ${ROLE_WORDS[role]}</li>`,
+  )}${input.radars.length > 0 && html`<li>${swatch(html`<g transform="scale(0.75)">${radarMark(14.7, 9.3, "")}</g>`)}radar</li>`}${
+    input.catchments.length > 0 &&
+    html`<li>${swatch(html`<path class="outline" d="M2 11L7 3L16 4L20 11Z"/>`)}catchment</li>`
+  }</ul>`;
+}
+
+function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
+  const { grid } = input;
+  const frame = mapFrame(grid);
+  const outside = [
+    ...input.radars.filter((radar) => !isOnMap(frame, radar)).map(({ id }) => `radar ${id}`),
+    ...input.gauges.filter((gauge) => !isOnMap(frame, gauge)).map(({ id }) => `gauge ${id}`),
+  ];
+  const block = layers[0].picture.block;
+  const cellKm = grid.cellM / 1000;
+  return html`<p class="small">${grid.nx} × ${grid.ny} cells of ${cellKm} km. ${
+    block > 1 &&
+    html`Drawn thinned, ${block} × ${block} cells to one of ${block * cellKm} km: the mean of the observed ones (for radars the most frequent). Tables use every cell. `
+  }Axes: ${grid.crs}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
+}
