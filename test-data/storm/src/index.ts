@@ -1,0 +1,11 @@
+export { type BenchOptions, generateBenchVolumes } from "./bench.ts";
+export type { GaugeFault } from "./gauges.ts";
+export {
+  DISTRICT_CENTRE,
+  generateStorm,
+  type StormOptions,
+  type StormSummary,
+  TRUTH_RATE_STEP_MM_PER_HOUR,
+} from "./generate.ts";
+export { DEMO, PRESETS, SMALL, type StormPreset, TINY } from "./presets.ts";
+export type { RadarPlan } from "./radar.ts";

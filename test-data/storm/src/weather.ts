@@ -1,0 +1,329 @@
+import {
+  differentialReflectivityDb,
+  lnRateCoefficient,
+  lnReflectivityCoefficient,
+  phaseTimesWavelength,
+  RATE_EXPONENT,
+  waterGramPerM3,
+} from "./drops.ts";
+import type { RandomStream } from "./random.ts";
+import { textureAt, textureRow, wrappedTexture } from "./texture.ts";
+
+/** One shower: it grows, moves, and decays; its rain falls off like a stretched Gaussian. */
+interface Cell {
+  readonly midMinute: number;
+  readonly lifeMinutes: number;
+  /** Where it is at `midMinute`, and how it moves, km and km per minute. */
+  readonly xKm: number;
+  readonly yKm: number;
+  readonly xKmPerMinute: number;
+  readonly yKmPerMinute: number;
+  readonly peakMmPerHour: number;
+  readonly longSigmaKm: number;
+  readonly shortSigmaKm: number;
+  /** Direction of the long axis, radians from east towards north. */
+  readonly axisRad: number;
+}
+
+/** What the storm is to be like. Lengths are half sides of squares around the middle of the district. */
+export interface StormShape {
+  readonly minutes: number;
+  readonly districtHalfKm: number;
+  readonly surroundingsHalfKm: number;
+  /** Depth over the district and at its wettest place that the showers and the widespread rain are scaled to. */
+  readonly meanMm: number;
+  readonly maximumMm: number;
+}
+
+/** A square lattice of points 1 km apart, row 0 in the south. */
+export interface Lattice {
+  readonly westKm: number;
+  readonly southKm: number;
+  readonly nx: number;
+  readonly ny: number;
+}
+
+/** The air at ground level at one moment, on a lattice: shape [ny, nx], row 0 in the south. */
+export interface Moment {
+  readonly minute: number;
+  readonly rateMmPerHour: Float32Array;
+  /** Share of the rain that falls from showers, 0 to 1. */
+  readonly showerShare: Float32Array;
+  readonly zMm6PerM3: Float32Array;
+  /** One-way KDP times wavelength, deg/km times m. */
+  readonly phaseTimesWavelength: Float32Array;
+  readonly zdrDb: Float32Array;
+}
+
+const SHOWER_EDGE = 0.02;
+const DRY_DISTANCE2 = -2 * Math.log(SHOWER_EDGE);
+
+const MU_STEPS_PER_UNIT = 10;
+const MU_HIGHEST = 6;
+const LN_RATE = Float64Array.from({ length: MU_HIGHEST * MU_STEPS_PER_UNIT + 1 }, (_, i) =>
+  lnRateCoefficient(i / MU_STEPS_PER_UNIT),
+);
+const LN_Z = Float64Array.from(LN_RATE, (_, i) => lnReflectivityCoefficient(i / MU_STEPS_PER_UNIT));
+
+/** Wind that carries the storm, km per minute towards the east-north-east: 11.5 m/s. */
+export const STORM_X_KM_PER_MINUTE = 0.565;
+export const STORM_Y_KM_PER_MINUTE = 0.396;
+
+/**
+ * An invented storm: widespread rain with dry patches, and showers that grow and decay along a band
+ * south-east of the district's middle. Everything is a function of place and time; lattices are views of it.
+ */
+export class Weather {
+  readonly #shape: StormShape;
+  readonly #cells: readonly Cell[];
+  readonly #patches: Float32Array;
+  readonly #dropNumber: Float32Array;
+  readonly #dropShape: Float32Array;
+  readonly #showerFactor: number;
+  readonly #widespreadFactor: number;
+
+  constructor(random: RandomStream, shape: StormShape) {
+    this.#shape = shape;
+    this.#patches = wrappedTexture(random, [64, 32, 16, 8], 0.7);
+    this.#dropNumber = wrappedTexture(random, [64, 32, 16], 0.6);
+    this.#dropShape = wrappedTexture(random, [64, 32], 0.6);
+    this.#cells = makeCells(random, shape);
+    const factors = this.#fitFactors();
+    this.#showerFactor = factors.shower;
+    this.#widespreadFactor = factors.widespread;
+  }
+
+  /** Rain rate at the ground, mm/h, at a point and minute. */
+  rateAt(xKm: number, yKm: number, minute: number): number {
+    let showers = 0;
+    for (const cell of this.#cells) {
+      const rate = peakNow(cell, minute);
+      if (rate > 0) showers += rate * showerFall(stretchedDistance2(cell, xKm, yKm, minute));
+    }
+    return (
+      this.#showerFactor * showers +
+      this.#widespreadFactor * this.#swell(minute) * patchRate(this.#patch(xKm, yKm, minute))
+    );
+  }
+
+  /** Fills a lattice with the rain of one minute, and with its drops where `withDrops` asks for them. */
+  fill(lattice: Lattice, moment: Moment, withDrops: boolean): Moment {
+    const minute = moment.minute;
+    this.#addShowers(lattice, minute, moment.rateMmPerHour);
+    this.#addWidespread(lattice, minute, moment);
+    if (withDrops) this.#fillDrops(lattice, moment);
+    return moment;
+  }
+
+  #patch(xKm: number, yKm: number, minute: number): number {
+    return textureAt(
+      this.#patches,
+      xKm - STORM_X_KM_PER_MINUTE * minute,
+      yKm - STORM_Y_KM_PER_MINUTE * minute,
+    );
+  }
+
+  /** The widespread rain sets in, holds, and dies away. */
+  #swell(minute: number): number {
+    const share = Math.min(1, Math.max(0, minute / this.#shape.minutes));
+    return 0.35 + 0.65 * Math.sin(Math.PI * share) ** 2;
+  }
+
+  #addShowers(lattice: Lattice, minute: number, into: Float32Array): void {
+    into.fill(0);
+    for (const cell of this.#cells) {
+      const rate = this.#showerFactor * peakNow(cell, minute);
+      if (rate <= 0) continue;
+      const { xKm, yKm } = placeOf(cell, minute);
+      const reach = Math.sqrt(DRY_DISTANCE2) * cell.longSigmaKm;
+      const firstColumn = Math.max(0, Math.ceil(xKm - reach - lattice.westKm));
+      const lastColumn = Math.min(lattice.nx - 1, Math.floor(xKm + reach - lattice.westKm));
+      const firstRow = Math.max(0, Math.ceil(yKm - reach - lattice.southKm));
+      const lastRow = Math.min(lattice.ny - 1, Math.floor(yKm + reach - lattice.southKm));
+      for (let row = firstRow; row <= lastRow; row++) {
+        for (let column = firstColumn; column <= lastColumn; column++) {
+          const d2 = stretchedDistance2(cell, lattice.westKm + column, lattice.southKm + row, minute);
+          if (d2 < DRY_DISTANCE2) into[row * lattice.nx + column]! += rate * showerFall(d2);
+        }
+      }
+    }
+  }
+
+  #addWidespread(lattice: Lattice, minute: number, moment: Moment): void {
+    const factor = this.#widespreadFactor * this.#swell(minute);
+    const line = new Float32Array(lattice.nx);
+    for (let row = 0; row < lattice.ny; row++) {
+      textureRow(
+        this.#patches,
+        lattice.westKm - STORM_X_KM_PER_MINUTE * minute,
+        lattice.southKm + row - STORM_Y_KM_PER_MINUTE * minute,
+        line,
+      );
+      for (let column = 0; column < lattice.nx; column++) {
+        const index = row * lattice.nx + column;
+        const showers = moment.rateMmPerHour[index]!;
+        const rate = showers + factor * patchRate(line[column]!);
+        moment.rateMmPerHour[index] = rate;
+        moment.showerShare[index] = rate > 0 ? showers / rate : 0;
+      }
+    }
+  }
+
+  #fillDrops(lattice: Lattice, moment: Moment): void {
+    const number = new Float32Array(lattice.nx);
+    const shape = new Float32Array(lattice.nx);
+    for (let row = 0; row < lattice.ny; row++) {
+      const yKm = lattice.southKm + row;
+      // Drops change more slowly than the rain moves: their patterns drift at their own speeds.
+      textureRow(
+        this.#dropNumber,
+        lattice.westKm - 0.7 * STORM_X_KM_PER_MINUTE * moment.minute,
+        yKm - 0.7 * STORM_Y_KM_PER_MINUTE * moment.minute,
+        number,
+      );
+      textureRow(this.#dropShape, lattice.westKm - 0.4 * moment.minute, yKm, shape);
+      for (let column = 0; column < lattice.nx; column++) {
+        fillDropsOfCell(moment, row * lattice.nx + column, number[column]!, shape[column]!);
+      }
+    }
+  }
+
+  /** Scales showers and widespread rain so that the district's mean and maximum depth come out as asked. */
+  #fitFactors(): { shower: number; widespread: number } {
+    const { districtHalfKm, minutes, meanMm, maximumMm } = this.#shape;
+    const spacingKm = districtHalfKm / 16;
+    const stepMinutes = 2;
+    const shower: number[] = [];
+    const widespread: number[] = [];
+    for (let y = -districtHalfKm; y <= districtHalfKm; y += spacingKm) {
+      for (let x = -districtHalfKm; x <= districtHalfKm; x += spacingKm) {
+        let showerMm = 0;
+        let widespreadMm = 0;
+        for (let minute = stepMinutes / 2; minute < minutes; minute += stepMinutes) {
+          for (const cell of this.#cells) {
+            const peak = peakNow(cell, minute);
+            if (peak > 0) {
+              showerMm += (stepMinutes / 60) * peak * showerFall(stretchedDistance2(cell, x, y, minute));
+            }
+          }
+          widespreadMm += (stepMinutes / 60) * this.#swell(minute) * patchRate(this.#patch(x, y, minute));
+        }
+        shower.push(showerMm);
+        widespread.push(widespreadMm);
+      }
+    }
+    const mean = (values: readonly number[]): number => values.reduce((a, b) => a + b, 0) / values.length;
+    const meanShower = mean(shower);
+    const meanWidespread = mean(widespread);
+    const widespreadFor = (factor: number): number =>
+      Math.max(0.25 * meanMm, meanMm - factor * meanShower) / meanWidespread;
+    let low = 0;
+    let high = maximumMm / Math.max(...shower);
+    for (let round = 0; round < 40; round++) {
+      const middle = (low + high) / 2;
+      const other = widespreadFor(middle);
+      const maximum = Math.max(...shower.map((value, i) => middle * value + other * widespread[i]!));
+      if (maximum > maximumMm) high = middle;
+      else low = middle;
+    }
+    return { shower: low, widespread: widespreadFor(low) };
+  }
+}
+
+/** An empty moment for a lattice. */
+export function emptyMoment(lattice: Lattice, minute: number): Moment {
+  const cells = lattice.nx * lattice.ny;
+  return {
+    minute,
+    rateMmPerHour: new Float32Array(cells),
+    showerShare: new Float32Array(cells),
+    zMm6PerM3: new Float32Array(cells),
+    phaseTimesWavelength: new Float32Array(cells),
+    zdrDb: new Float32Array(cells),
+  };
+}
+
+/** From rain rate and the local drop population to what a radar would see of it. */
+function fillDropsOfCell(moment: Moment, index: number, numberTexture: number, shapeTexture: number): void {
+  const rate = moment.rateMmPerHour[index]!;
+  if (rate < 0.01) {
+    moment.zMm6PerM3[index] = 0;
+    moment.phaseTimesWavelength[index] = 0;
+    moment.zdrDb[index] = 0;
+    return;
+  }
+  // Nw around the 8000 m-3 mm-1 of Marshall and Palmer (1948), within a factor of about 2.5 either way.
+  const lnNw = Math.log(8000) + 0.8 * Math.max(-2.2, Math.min(2.2, numberTexture));
+  const mu = Math.max(0, Math.min(MU_HIGHEST, 2 + 1.5 * shapeTexture));
+  const muStep = Math.round(mu * MU_STEPS_PER_UNIT);
+  const lnDm = Math.min(Math.log(4), (Math.log(rate) - LN_RATE[muStep]! - lnNw) / RATE_EXPONENT);
+  const dmMm = Math.exp(lnDm);
+  moment.zMm6PerM3[index] = Math.exp(LN_Z[muStep]! + lnNw + 7 * lnDm);
+  moment.phaseTimesWavelength[index] = phaseTimesWavelength(waterGramPerM3(Math.exp(lnNw), dmMm), dmMm);
+  moment.zdrDb[index] = differentialReflectivityDb(lnDm);
+}
+
+/** Widespread rain from its pattern: more than half of the area is dry. Not yet scaled. */
+function patchRate(patch: number): number {
+  return patch > 0.2 ? Math.exp(0.8 * (patch - 0.2)) - 1 : 0;
+}
+
+/** How a shower's rain falls off from its middle: Gaussian, but dry from 2.8 sigma on. */
+function showerFall(distance2: number): number {
+  return distance2 < DRY_DISTANCE2 ? (Math.exp(-0.5 * distance2) - SHOWER_EDGE) / (1 - SHOWER_EDGE) : 0;
+}
+
+function placeOf(cell: Cell, minute: number): { xKm: number; yKm: number } {
+  const since = minute - cell.midMinute;
+  return { xKm: cell.xKm + cell.xKmPerMinute * since, yKm: cell.yKm + cell.yKmPerMinute * since };
+}
+
+function peakNow(cell: Cell, minute: number): number {
+  const share = (minute - cell.midMinute) / cell.lifeMinutes;
+  return Math.abs(share) >= 0.5 ? 0 : cell.peakMmPerHour * Math.cos(Math.PI * share) ** 2;
+}
+
+function stretchedDistance2(cell: Cell, xKm: number, yKm: number, minute: number): number {
+  const place = placeOf(cell, minute);
+  const east = xKm - place.xKm;
+  const north = yKm - place.yKm;
+  const cos = Math.cos(cell.axisRad);
+  const sin = Math.sin(cell.axisRad);
+  return (
+    ((east * cos + north * sin) / cell.longSigmaKm) ** 2 +
+    ((north * cos - east * sin) / cell.shortSigmaKm) ** 2
+  );
+}
+
+/** Two thirds of the showers follow one another along the band; the rest lie anywhere around. */
+function makeCells(random: RandomStream, shape: StormShape): Cell[] {
+  const { districtHalfKm, surroundingsHalfKm, minutes } = shape;
+  const speed = Math.hypot(STORM_X_KM_PER_MINUTE, STORM_Y_KM_PER_MINUTE);
+  const alongX = STORM_X_KM_PER_MINUTE / speed;
+  const alongY = STORM_Y_KM_PER_MINUTE / speed;
+  const cells: Cell[] = [];
+  const inBand = 8 + Math.round(minutes / 14);
+  const around = Math.round(minutes / 12);
+  for (let i = 0; i < inBand + around; i++) {
+    const band = i < inBand;
+    // Every fifth shower of the band is strong and hardly moves: that is where the totals grow.
+    const anchored = band && i % 5 === 0;
+    const pace = anchored ? 0.35 : 1;
+    const along = random.between(-1, 1) * districtHalfKm;
+    const across = districtHalfKm * (0.22 + 0.17 * random.normal());
+    const shortSigmaKm = random.between(2.2, 3.8);
+    cells.push({
+      midMinute: random.between(0.05, 0.95) * minutes,
+      lifeMinutes: random.between(40, 85),
+      xKm: band ? along * alongX + across * alongY : random.between(-1, 1) * surroundingsHalfKm,
+      yKm: band ? along * alongY - across * alongX : random.between(-1, 1) * surroundingsHalfKm,
+      xKmPerMinute: STORM_X_KM_PER_MINUTE * pace * random.between(0.85, 1.1),
+      yKmPerMinute: STORM_Y_KM_PER_MINUTE * pace * random.between(0.8, 1.15),
+      peakMmPerHour: (anchored ? 1.5 : 1) * random.between(20, 80),
+      longSigmaKm: shortSigmaKm * random.between(1, 1.9),
+      shortSigmaKm,
+      axisRad: random.between(0.2, 1.4),
+    });
+  }
+  return cells;
+}
