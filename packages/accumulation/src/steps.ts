@@ -18,12 +18,13 @@ export function durationMs(iso: string): number {
 }
 
 /**
- * A window cut at the whole multiples of a step, counted from 1970-01-01T00:00Z: hours begin at full
- * hours UTC wherever the window begins, and its first and last piece may be shorter.
+ * A window cut at the whole multiples of a step, counted from an anchor: hours begin at full hours UTC
+ * wherever the window begins, and its first and last piece may be shorter.
  *
+ * @param anchorEpochMs - an instant on which a piece begins or ends; 1970-01-01T00:00Z where left out
  * @throws RangeError where the window is empty or the step not above 0
  */
-export function cutWindow(window: Interval, stepMs: number): Interval[] {
+export function cutWindow(window: Interval, stepMs: number, anchorEpochMs = 0): Interval[] {
   const { startEpochMs, endEpochMs } = window;
   if (!(endEpochMs > startEpochMs) || !(stepMs > 0)) {
     throw new RangeError(`cannot cut (${startEpochMs}, ${endEpochMs}] into steps of ${stepMs} ms`);
@@ -31,7 +32,7 @@ export function cutWindow(window: Interval, stepMs: number): Interval[] {
   const pieces: Interval[] = [];
   let from = startEpochMs;
   while (from < endEpochMs) {
-    const to = Math.min(endEpochMs, (Math.floor(from / stepMs) + 1) * stepMs);
+    const to = Math.min(endEpochMs, anchorEpochMs + (Math.floor((from - anchorEpochMs) / stepMs) + 1) * stepMs);
     pieces.push({ startEpochMs: from, endEpochMs: to });
     from = to;
   }

@@ -140,7 +140,8 @@ export function polarLookup(
   const slantM = new Float32Array(cellCount);
   for (let cell = 0; cell < cellCount; cell++) {
     const distanceM = fromSite.distanceM[cell];
-    if (distanceM > reachM) continue;
+    // A cell whose centre lies just beyond the last gate may still hold the centres of some.
+    if (distanceM > reachM + grid.cellM) continue;
     const beam = beamAboveArc(distanceM, elevationDeg, radiusM);
     if (!(beam.heightM <= rules.maxBeamHeightM)) continue;
     slantM[cell] = beam.slantRangeM;

@@ -1,0 +1,119 @@
+import { describe, expect, test } from "vitest";
+import { blendWeight } from "./blend-weight.ts";
+import type { PolarLookup } from "./polar-lookup.ts";
+import { type GateRates, RateLayerBuilder } from "./rate-layer.ts";
+
+/** A lookup of three cells: two gates, one gate, no gate. */
+function lookupOf(gatesOfCell: readonly (readonly number[])[], heightM: number): PolarLookup {
+  const cells: number[] = [];
+  const start = [0];
+  const gates: number[] = [];
+  const position = new Int32Array(gatesOfCell.length).fill(-1);
+  gatesOfCell.forEach((own, cell) => {
+    if (own.length === 0) return;
+    position[cell] = cells.length;
+    cells.push(cell);
+    gates.push(...own);
+    start.push(gates.length);
+  });
+  return {
+    cells: Int32Array.from(cells),
+    start: Int32Array.from(start),
+    gates: Int32Array.from(gates),
+    position,
+    beamHeightAslM: new Float32Array(gatesOfCell.length).fill(heightM),
+    weight: new Float32Array(gatesOfCell.length).fill(0.5),
+    coverageM: 100_000,
+  };
+}
+
+const perGate = (rates: readonly number[], capped: readonly number[] = []): GateRates => ({
+  codes: undefined,
+  rateMmPerHour: Float32Array.from(rates),
+  capped: Uint8Array.from(rates, (_, gate) => capped[gate] ?? 0),
+});
+
+describe("RateLayerBuilder", () => {
+  test("a cell is the mean rain rate of its gates, nodata left out, undetect counted as 0", () => {
+    const builder = new RateLayerBuilder(4, new Int32Array(), 0);
+    builder.add(
+      lookupOf([[0, 1], [2, 3], [4], []], 300),
+      perGate([2, 4, Number.NaN, 6, Number.NaN]),
+      [],
+      1000,
+    );
+    const { rateMmPerHour, slot, cappedRateMmPerHour } = builder.finish();
+    expect([...rateMmPerHour]).toEqual([3, 6, Number.NaN, Number.NaN]);
+    expect(slot).toBeUndefined();
+    expect(cappedRateMmPerHour).toBeUndefined();
+  });
+
+  // Reference book, section j (closed form): mean of R(Z) of 30 and 50 dBZ with 200/1.6 is 25.68 mm/h;
+  // of the mean Z 31.73, of the mean dBZ 11.53. The table in codes holds those two rates (section c).
+  test("averages rates, not Z and not dBZ", () => {
+    const builder = new RateLayerBuilder(1, new Int32Array(), 0);
+    const table = {
+      codes: Uint8Array.of(0, 1),
+      rateMmPerHour: Float32Array.of(2.734, 48.62),
+      capped: new Uint8Array(2),
+    };
+    builder.add(lookupOf([[0, 1]], 300), table, [], 0);
+    expect(builder.finish().rateMmPerHour[0]).toBeCloseTo(25.68, 2);
+  });
+
+  test("the lowest sweep that observed speaks; the next fills only what is still not observed", () => {
+    const builder = new RateLayerBuilder(3, new Int32Array(), 0);
+    const low = lookupOf([[0], [1], []], 300);
+    const high = lookupOf([[0], [1], [2]], 900);
+    builder.add(low, perGate([0, Number.NaN]), [], 1000);
+    expect(builder.canFill(high)).toBe(true);
+    expect(builder.add(high, perGate([9, 5, 7]), [], 61_000)).toBe(2);
+    expect(builder.canFill(high)).toBe(false);
+    const layer = builder.finish();
+    expect([...layer.rateMmPerHour]).toEqual([0, 5, 7]);
+    expect([...(layer.slot ?? [])]).toEqual([0, 1, 1]);
+    expect(layer.sweepMidEpochMs).toEqual([1000, 61_000]);
+    expect([...layer.beamHeightAslM]).toEqual([300, 900, 900]);
+  });
+
+  test("keeps apart what met the cap, in the cell it fell in", () => {
+    const builder = new RateLayerBuilder(2, new Int32Array(), 0);
+    builder.add(lookupOf([[0, 1], [2]], 300), perGate([100, 20, 4], [1, 0, 0]), [], 0);
+    const { rateMmPerHour, cappedRateMmPerHour } = builder.finish();
+    expect([...rateMmPerHour]).toEqual([60, 4]);
+    expect([...(cappedRateMmPerHour ?? [])]).toEqual([50, 0]);
+  });
+
+  test("rates under another relation come from the same sweep, at the headline's cells only", () => {
+    const builder = new RateLayerBuilder(3, Int32Array.of(1, 2), 1);
+    builder.add(lookupOf([[0], [1], []], 300), perGate([1, 2]), [perGate([10, 20])], 0);
+    builder.add(lookupOf([[0], [1], [2]], 900), perGate([3, 4, 5]), [perGate([30, 40, 50])], 60_000);
+    expect([...builder.finish().variants[0]]).toEqual([20, 50]);
+  });
+});
+
+describe("blendWeight", () => {
+  const near = {
+    beamHeightM: 400,
+    groundDistanceM: 30_000,
+    coverageM: 150_000,
+    taperM: 10_000,
+    blockedFraction: 0,
+    twoWayLossDb: 0,
+  };
+  test.each([
+    ["height", { beamHeightM: 1500 }],
+    ["distance", { groundDistanceM: 90_000 }],
+    ["blockage", { blockedFraction: 0.4 }],
+    ["loss", { twoWayLossDb: 3 }],
+  ])("falls with %s", (_what, worse) => {
+    expect(blendWeight({ ...near, ...worse })).toBeLessThan(blendWeight(near));
+  });
+
+  test("falls linearly to 0 over the taper, so that no seam shows at the end of coverage", () => {
+    const at = (leftM: number) =>
+      blendWeight({ ...near, beamHeightM: 0, groundDistanceM: 150_000 - leftM, coverageM: 150_000 });
+    expect(at(5000) / at(10_000)).toBeCloseTo(0.5, 1);
+    expect(at(0)).toBeLessThan(2e-6);
+  });
+});
