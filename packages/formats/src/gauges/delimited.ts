@@ -47,6 +47,20 @@ export async function readTextEnds(path: string): Promise<TextEnds> {
   }
 }
 
+/**
+ * The first 64 KiB of any file as UTF-8 text, whatever they are.
+ *
+ * @throws InputError where it cannot be opened
+ */
+export async function readHeadText(path: string): Promise<string> {
+  const file = await openFile(path);
+  try {
+    return new TextDecoder("utf-8").decode(await readAt(file, 0, HEAD_BYTES));
+  } finally {
+    await file.close();
+  }
+}
+
 async function openFile(path: string): ReturnType<typeof open> {
   try {
     return await open(path, "r");

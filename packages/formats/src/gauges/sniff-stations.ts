@@ -1,0 +1,62 @@
+import { decimalOf } from "./decimal.ts";
+import { type Guess, guessed } from "./guess.ts";
+import type { StationColumns } from "./stations.ts";
+import { isNumeric, type TableSample } from "./table-sample.ts";
+
+const X_WORDS = /^(x|lon|long|longitude|lon_?deg|longitude_?deg|easting|east|eastings|x_?m|lng)$/i;
+const Y_WORDS = /^(y|lat|latitude|lat_?deg|latitude_?deg|northing|north|northings|y_?m)$/i;
+const ELEVATION_WORDS =
+  /^(z|elev|elevation|height|altitude|alt|masl|hoehe)([ _(-]?(m|masl|asl|above.*)\)?)?$/i;
+const NAME_WORDS = /name|place|location/i;
+export const GAUGE_WORDS =
+  /^(id|gauge|station|site|sensor|code|gauge[_ -]?(id|no|code)|station[_ -]?(id|no|code)|site[_ -]?(id|no|code)|sensor[_ -]?id|stn|nr|no|number)$/i;
+
+export interface StationsGuess {
+  readonly columns: Guess<StationColumns>;
+  /** "EPSG:4326" where x and y can be degrees; undefined where they are metres of a system nobody named. */
+  readonly crs: Guess<string | undefined>;
+  readonly ids: readonly string[];
+  readonly whole: boolean;
+}
+
+/** The table as a list of stations; undefined where it has no coordinates, or lists ids again and again. */
+export function guessStations(sample: TableSample): StationsGuess | undefined {
+  const { columns, rows } = sample;
+  const plain = columns.map((header) => header.replace(/\s*[[(].*$/, "").trim());
+  const xAt = plain.findIndex((header, at) => X_WORDS.test(header) && isNumeric(rows, at));
+  const yAt = plain.findIndex((header, at) => Y_WORDS.test(header) && isNumeric(rows, at));
+  if (xAt < 0 || yAt < 0) return undefined;
+  const free = columns.map((_, at) => at).filter((at) => at !== xAt && at !== yAt && at !== sample.timeAt);
+  const isUnique = (at: number) => new Set(rows.map((row) => row[at])).size >= 0.9 * rows.length;
+  const wordAt = free.find((at) => GAUGE_WORDS.test(plain[at]));
+  const idAt = wordAt ?? free.find(isUnique);
+  if (idAt === undefined || !isUnique(idAt)) return undefined;
+  const nameAt = free.find((at) => at !== idAt && NAME_WORDS.test(plain[at]));
+  const elevationAt = free.find(
+    (at) => at !== idAt && ELEVATION_WORDS.test(plain[at]) && isNumeric(rows, at),
+  );
+  const degrees = rows.every((row) => {
+    const x = decimalOf(row[xAt]);
+    const y = decimalOf(row[yAt]);
+    return !(Math.abs(x) > 360 || Math.abs(y) > 90);
+  });
+  return {
+    columns: guessed(
+      {
+        id: columns[idAt],
+        x: columns[xAt],
+        y: columns[yAt],
+        ...(nameAt === undefined ? {} : { name: columns[nameAt] }),
+        ...(elevationAt === undefined ? {} : { elevation: columns[elevationAt] }),
+      },
+      wordAt === undefined
+        ? "from the headers; the id is the first column without repeats"
+        : "from the headers",
+    ),
+    crs: degrees
+      ? guessed("EPSG:4326", "x and y lie within the range of longitude and latitude")
+      : guessed(undefined, "x and y are too large for degrees; the file does not name their system"),
+    ids: rows.map((row) => row[idAt]),
+    whole: sample.whole,
+  };
+}
