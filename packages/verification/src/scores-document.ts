@@ -1,0 +1,210 @@
+import type { ScoreInterval } from "@rainreckon/core";
+import { z } from "zod";
+import type { BootstrapSettings } from "./bootstrap.ts";
+import { SCORE_DEFINITIONS } from "./definitions.ts";
+import type { ContingencyScore, ScoreGroup, ScoreTable } from "./score-table.ts";
+
+/** A number, or null with the reason beside it. */
+const figure = z.number().nullable();
+const count = z.number().int().min(0);
+
+const interval = z
+  .strictObject({
+    low: figure,
+    high: figure,
+    reason: z.string().min(1).optional().describe("why there is no interval"),
+  })
+  .refine((limits) => (limits.low === null) === (limits.reason !== undefined), {
+    error: "an interval has limits or a reason, not both",
+  });
+
+const score = z
+  .strictObject({
+    name: z.string().min(1),
+    value: figure,
+    reason: z.string().min(1).optional().describe("why the value is null"),
+    n: count.describe("pairs it was worked out on"),
+    dropped: count.describe("used pairs that its rule dropped"),
+    timeBlocks: interval.describe("bootstrap over blocks of time, all gauges together"),
+    gauges: interval.describe("bootstrap over gauges, all times together"),
+    wilson: interval.optional().describe("Wilson interval of a share of counts, pairs as independent"),
+    standardError: figure.optional().describe("closed form, pairs as independent"),
+  })
+  .refine((entry) => (entry.value === null) === (entry.reason !== undefined), {
+    error: "a score has a value or a reason, not both",
+  });
+
+const group = {
+  pairs: count,
+  gauges: count,
+  intervals: count,
+  continuous: z.array(score),
+  thresholds: z.array(
+    z.strictObject({
+      thresholdMm: z.number().positive(),
+      counts: z.strictObject({ hits: count, falseAlarms: count, misses: count, correctNegatives: count }),
+      scores: z.array(score),
+    }),
+  ),
+};
+
+const table = z.strictObject({
+  pairCount: count,
+  usedCount: count,
+  unused: z.array(z.strictObject({ reason: z.string(), count })),
+  whole: z.strictObject(group),
+  byRange: z.array(
+    z.strictObject({ fromKm: z.number(), toKm: figure.describe("null: without end"), ...group }),
+  ),
+  byGauge: z.array(z.strictObject({ network: z.string(), gaugeId: z.string(), ...group })),
+  byInterval: z.array(
+    z.strictObject({ startEpochMs: z.number().int(), endEpochMs: z.number().int(), ...group }),
+  ),
+});
+
+/** The shape of `scores.json`. Units are UTC epoch milliseconds, mm per interval, km. */
+export const scoresSchema = z.strictObject({
+  format: z.literal("rainreckon-scores-1"),
+  definitions: z
+    .record(
+      z.string(),
+      z.strictObject({
+        title: z.string(),
+        unit: z.string(),
+        best: z.union([z.number(), z.literal("Infinity")]).nullable(),
+        rule: z.enum(["either", "both", "all"]),
+        definition: z.string(),
+        source: z.string().optional(),
+      }),
+    )
+    .describe("what each score means, by its name"),
+  settings: z.strictObject({
+    pairIntervalMinutes: z.number().positive(),
+    thresholdMm: z.number().positive().describe("depth from which a pair counts as wet"),
+    blockMinutes: z.number().positive(),
+    samples: count,
+    seed: count,
+    level: z.number().gt(0).lt(1).describe("level of confidence of every interval"),
+  }),
+  before: table.describe("radar as it is, against the gauges"),
+  after: z
+    .strictObject({
+      basis: z.literal("cross-validated"),
+      table: table.describe("each gauge against the radar adjusted by the other gauges only"),
+    })
+    .nullable(),
+  afterReason: z.string().min(1).optional().describe("why there is no score after adjustment"),
+});
+
+export type ScoresDocument = z.output<typeof scoresSchema>;
+
+export interface ScoresDocumentInput {
+  readonly pairIntervalMs: number;
+  readonly thresholdMm: number;
+  readonly bootstrap: BootstrapSettings & { readonly blockMinutes: number };
+  readonly before: ScoreTable;
+  /** Scores of cross-validated pairs, or why there are none. Never those of a gauge that shaped what it judges. */
+  readonly after: ScoreTable | { readonly reason: string };
+}
+
+/**
+ * The contents of `scores.json`, ready to be written: NaN has become null with its reason.
+ *
+ * An odds ratio without bound is null with the reason "unbounded".
+ */
+export function scoresDocument(input: ScoresDocumentInput): ScoresDocument {
+  const { before, after, bootstrap } = input;
+  const absent = "reason" in after;
+  return {
+    format: "rainreckon-scores-1",
+    definitions: Object.fromEntries(
+      Object.entries(SCORE_DEFINITIONS).map(([name, definition]) => [
+        name,
+        {
+          ...definition,
+          best: definition.best === Number.POSITIVE_INFINITY ? "Infinity" : finite(definition.best),
+        },
+      ]),
+    ),
+    settings: {
+      pairIntervalMinutes: input.pairIntervalMs / 60_000,
+      thresholdMm: input.thresholdMm,
+      blockMinutes: bootstrap.blockMinutes,
+      samples: bootstrap.samples,
+      seed: bootstrap.seed,
+      level: bootstrap.level,
+    },
+    before: plainTable(before),
+    after: absent ? null : { basis: "cross-validated", table: plainTable(after) },
+    ...(absent ? { afterReason: after.reason } : {}),
+  };
+}
+
+type PlainTable = ScoresDocument["before"];
+type PlainGroup = PlainTable["whole"];
+type PlainScore = PlainGroup["continuous"][number];
+
+function plainTable(scores: ScoreTable): PlainTable {
+  return {
+    pairCount: scores.pairCount,
+    usedCount: scores.usedCount,
+    unused: scores.unused.map(({ reason, count: times }) => ({ reason, count: times })),
+    whole: plainGroup(scores.whole),
+    byRange: scores.byRange.map((band) => ({
+      fromKm: band.fromKm,
+      toKm: finite(band.toKm),
+      ...plainGroup(band),
+    })),
+    byGauge: scores.byGauge.map((gauge) => ({
+      network: gauge.network,
+      gaugeId: gauge.gaugeId,
+      ...plainGroup(gauge),
+    })),
+    byInterval: scores.byInterval.map((span) => ({
+      startEpochMs: span.startEpochMs,
+      endEpochMs: span.endEpochMs,
+      ...plainGroup(span),
+    })),
+  };
+}
+
+function plainGroup(scores: ScoreGroup): PlainGroup {
+  return {
+    pairs: scores.pairs,
+    gauges: scores.gauges,
+    intervals: scores.intervals,
+    continuous: scores.continuous.map(plainScore),
+    thresholds: scores.thresholds.map((at) => ({
+      thresholdMm: at.thresholdMm,
+      counts: { ...at.counts },
+      scores: at.scores.map(plainScore),
+    })),
+  };
+}
+
+function plainScore(entry: ContingencyScore): PlainScore {
+  const reason = entry.reason ?? (Number.isFinite(entry.value) ? undefined : "unbounded");
+  return {
+    name: entry.name,
+    value: finite(entry.value),
+    ...(reason === undefined ? {} : { reason }),
+    n: entry.n,
+    dropped: entry.dropped,
+    timeBlocks: plainInterval(entry.intervals?.timeBlocks),
+    gauges: plainInterval(entry.intervals?.gauges),
+    ...(entry.wilson === undefined ? {} : { wilson: plainInterval(entry.wilson) }),
+    ...(entry.standardError === undefined ? {} : { standardError: finite(entry.standardError) }),
+  };
+}
+
+function plainInterval(limits: ScoreInterval | undefined): PlainScore["timeBlocks"] {
+  if (limits === undefined) return { low: null, high: null, reason: "not worked out" };
+  if (Number.isFinite(limits.low) && Number.isFinite(limits.high)) {
+    return { low: limits.low, high: limits.high };
+  }
+  return { low: null, high: null, reason: limits.reason ?? "a limit is unbounded" };
+}
+
+function finite(value: number): number | null {
+  return Number.isFinite(value) ? value : null;
+}
