@@ -32,7 +32,10 @@ export function cutWindow(window: Interval, stepMs: number, anchorEpochMs = 0): 
   const pieces: Interval[] = [];
   let from = startEpochMs;
   while (from < endEpochMs) {
-    const to = Math.min(endEpochMs, anchorEpochMs + (Math.floor((from - anchorEpochMs) / stepMs) + 1) * stepMs);
+    const to = Math.min(
+      endEpochMs,
+      anchorEpochMs + (Math.floor((from - anchorEpochMs) / stepMs) + 1) * stepMs,
+    );
     pieces.push({ startEpochMs: from, endEpochMs: to });
     from = to;
   }
