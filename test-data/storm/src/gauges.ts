@@ -48,7 +48,7 @@ export const GAUGES: readonly GaugePlan[] = [
   gauge("moor", "M10", "Reach Top", 33, 22),
   gauge("moor", "M11", "Reach Lock", 38, 3, "clock-60-min-late"),
   gauge("moor", "M12", "Mere Side", -33, -27),
-  gauge("moor", "M13", "Far Skerry", -30, 212, "outside-grid"),
+  gauge("moor", "M13", "Far Skerry", -30, 158, "outside-grid"),
   gauge("moor", "M14", "Heath Mast", 24, 27),
   gauge("saltwater", "SW-01", "Sluice One", -20, 25),
   gauge("saltwater", "SW-02", "Sluice Two", -39, 12),

@@ -11,6 +11,9 @@ export interface WrittenSweep {
 
 const QUANTITIES = ["DBZH", "TH", "VRADH", "ZDR", "RHOHV", "PHIDP"] as const;
 
+/** Above the ground's echo TH says what DBZH says, and is left out: not every sweep has every moment. */
+const TH_HIGHEST_DEG = 2;
+
 /** The instant that stands in object headers: the library writes the clock there, and bytes must not depend on it. */
 const PINNED_EPOCH_MS = Date.UTC(2031, 0, 1);
 
@@ -24,7 +27,7 @@ export async function writeHdf5(path: string, fill: (root: Group) => void): Prom
   const clock = Date.now;
   Date.now = () => PINNED_EPOCH_MS;
   try {
-    const file = new Hdf5File(path, "w", { libver: ["earliest", "v110"] });
+    const file = new Hdf5File(path, "w", { libver: ["v108", "v110"] });
     if (file.file_id < 0n) throw new Error(`cannot create ${path}`);
     try {
       fill(file);
@@ -116,7 +119,8 @@ function writeSweep(dataset: Group, radar: RadarPlan, sweep: WrittenSweep): void
   const how = dataset.create_group("how");
   putReal(how, "NI", radar.nyquistMPerS);
   if (radar.rayTimes) putRayTimes(how, radar, sweep);
-  QUANTITIES.forEach((quantity, i) => {
+  const written = QUANTITIES.filter((quantity) => quantity !== "TH" || sweep.elevationDeg <= TH_HIGHEST_DEG);
+  written.forEach((quantity, i) => {
     const group = dataset.create_group(`data${i + 1}`);
     const coding = codingOf(quantity, radar);
     const codes = group.create_group("what");

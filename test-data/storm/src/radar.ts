@@ -236,7 +236,7 @@ export function codingOf(quantity: keyof SweepMoments, radar: RadarPlan): Coding
     case "DBZH":
       return radar.reflectivityStorage === "uint8"
         ? { gain: 0.5, offset: -32, nodata: 255, undetect: 0 }
-        : { gain: 0.1, offset: -100, nodata: 65535, undetect: 0 };
+        : { gain: 0.25, offset: -100, nodata: 65535, undetect: 0 };
     case "VRADH":
       return { gain: 0.5, offset: -64, nodata: 255, undetect: 0 };
     case "ZDR":

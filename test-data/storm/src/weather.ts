@@ -55,6 +55,7 @@ export interface Moment {
   readonly zdrDb: Float32Array;
 }
 
+const FADE_KM = 100;
 const SHOWER_EDGE = 0.02;
 const DRY_DISTANCE2 = -2 * Math.log(SHOWER_EDGE);
 
@@ -102,7 +103,7 @@ export class Weather {
     }
     return (
       this.#showerFactor * showers +
-      this.#widespreadFactor * this.#swell(minute) * patchRate(this.#patch(xKm, yKm, minute))
+      this.#widespreadFactor * this.#swell(minute) * fade(xKm, yKm) * patchRate(this.#patch(xKm, yKm, minute))
     );
   }
 
@@ -162,7 +163,11 @@ export class Weather {
       for (let column = 0; column < lattice.nx; column++) {
         const index = row * lattice.nx + column;
         const showers = moment.rateMmPerHour[index]!;
-        const rate = showers + factor * patchRate(line[column]!);
+        const spread = patchRate(line[column]!);
+        const rate =
+          spread > 0
+            ? showers + factor * fade(lattice.westKm + column, lattice.southKm + row) * spread
+            : showers;
         moment.rateMmPerHour[index] = rate;
         moment.showerShare[index] = rate > 0 ? showers / rate : 0;
       }
@@ -206,7 +211,8 @@ export class Weather {
               showerMm += (stepMinutes / 60) * peak * showerFall(stretchedDistance2(cell, x, y, minute));
             }
           }
-          widespreadMm += (stepMinutes / 60) * this.#swell(minute) * patchRate(this.#patch(x, y, minute));
+          widespreadMm +=
+            (stepMinutes / 60) * this.#swell(minute) * fade(x, y) * patchRate(this.#patch(x, y, minute));
         }
         shower.push(showerMm);
         widespread.push(widespreadMm);
@@ -246,7 +252,7 @@ export function emptyMoment(lattice: Lattice, minute: number): Moment {
 /** From rain rate and the local drop population to what a radar would see of it. */
 function fillDropsOfCell(moment: Moment, index: number, numberTexture: number, shapeTexture: number): void {
   const rate = moment.rateMmPerHour[index]!;
-  if (rate < 0.01) {
+  if (rate < 0.03) {
     moment.zMm6PerM3[index] = 0;
     moment.phaseTimesWavelength[index] = 0;
     moment.zdrDb[index] = 0;
@@ -263,9 +269,16 @@ function fillDropsOfCell(moment: Moment, index: number, numberTexture: number, s
   moment.zdrDb[index] = differentialReflectivityDb(lnDm);
 }
 
-/** Widespread rain from its pattern: more than half of the area is dry. Not yet scaled. */
+/** Widespread rain from its pattern: more than half of the area is dry, and edges are sharp. Not yet scaled. */
 function patchRate(patch: number): number {
-  return patch > 0.2 ? Math.exp(0.8 * (patch - 0.2)) - 1 : 0;
+  return patch > 0.3 ? Math.exp(0.8 * (patch - 0.2)) - 1 : 0;
+}
+
+/** The widespread rain is some 200 km across: it fades away from the district. */
+function fade(xKm: number, yKm: number): number {
+  const ratio2 = (xKm * xKm + yKm * yKm) / (FADE_KM * FADE_KM);
+  const ratio4 = ratio2 * ratio2;
+  return 1 / (1 + ratio4 * ratio4);
 }
 
 /** How a shower's rain falls off from its middle: Gaussian, but dry from 2.8 sigma on. */
