@@ -20,14 +20,21 @@ const PINNED_EPOCH_MS = Date.UTC(2031, 0, 1);
 /**
  * Opens a new HDF5 file, lets `fill` write into it, and closes it; the same content gives the same bytes.
  *
+ * @param layout - compact groups with checksums, or the oldest layout, larger, that may be patched in place
  * @throws Error if the file cannot be created
  */
-export async function writeHdf5(path: string, fill: (root: Group) => void): Promise<void> {
+export async function writeHdf5(
+  path: string,
+  fill: (root: Group) => void,
+  layout: "compact" | "without checksums" = "compact",
+): Promise<void> {
   await ready;
   const clock = Date.now;
   Date.now = () => PINNED_EPOCH_MS;
   try {
-    const file = new Hdf5File(path, "w", { libver: ["v108", "v110"] });
+    const file = new Hdf5File(path, "w", {
+      libver: [layout === "compact" ? "v108" : "earliest", "v110"],
+    });
     if (file.file_id < 0n) throw new Error(`cannot create ${path}`);
     try {
       fill(file);
