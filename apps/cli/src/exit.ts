@@ -83,6 +83,17 @@ function asInputError(error: unknown): InputError {
       },
     );
   }
+  if (code === "ENOTDIR" || code === "EISDIR" || code === "EEXIST" || code === "ENOENT") {
+    return new InputError(
+      "there is no way to this file, or a folder stands in its place",
+      where,
+      "choose another path",
+      {
+        kind: "usage",
+        cause: error,
+      },
+    );
+  }
   const message = error instanceof Error ? error.message : String(error);
   return new InputError(
     `unexpected: ${message}`,

@@ -1,7 +1,9 @@
 import { Command } from "commander";
 import { NothingLeft, speakPlainly } from "./command.ts";
 import { registerCompare } from "./commands/compare.ts";
+import { registerPlan } from "./commands/plan.ts";
 import { registerRelate } from "./commands/relate.ts";
+import { registerSurvey } from "./commands/survey.ts";
 import { EXIT, errorText, exitStatusOf } from "./exit.ts";
 import { flags } from "./options.ts";
 import { version } from "./version.ts";
@@ -19,6 +21,8 @@ export function buildProgram(): Command {
     .helpOption("-h, --help", "print this help and stop")
     .addHelpText("after", AFTER_HELP);
   speakPlainly(program);
+  registerSurvey(program);
+  registerPlan(program);
   registerRelate(program);
   registerCompare(program);
   return program;

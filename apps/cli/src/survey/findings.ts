@@ -25,34 +25,45 @@ const radarFinding = z.strictObject({
   gaps: z.array(z.strictObject({ from: instant, to: instant, minutes: z.number() })),
   quantities: z.array(z.strictObject({ name: z.string(), sweepCount: z.number().int() })),
   elevationsDeg: z.array(z.number()),
+  /** Far edge of the farthest gate. */
+  maxRangeKm: z.number(),
   /** Sweeps that came more than once: same site, start and elevation. */
   resent: z.strictObject({ sameFile: z.number().int(), otherFile: z.number().int() }),
   formats: z.array(z.string()),
   files: z.array(z.string()),
 });
 
-const guess = z.strictObject({ value: z.string(), why: z.string() });
+/** What a look at a part of a file says, and how sure that is. */
+function guess<T extends z.ZodType>(value: T) {
+  return z.strictObject({ value, standing: z.enum(["found", "guessed"]), reason: z.string() });
+}
+const textGuess = guess(z.string());
 
 const gaugeFinding = z.strictObject({
   file: z.string(),
-  network: guess,
-  layout: z.enum(["long", "wide"]),
-  kind: guess,
-  unit: guess,
-  columns: z.strictObject({
-    gauge: z.string().optional(),
-    time: z.string(),
-    value: z.string().optional(),
-    quality: z.string().optional(),
-  }),
-  stepMinutes: z.number().optional(),
-  /** How the stamps name their zone: marked in every stamp, or not at all. */
-  zoneMarked: z.boolean(),
-  /** Read as UTC where no zone is marked. */
-  firstStamp: instant.optional(),
-  lastStamp: instant.optional(),
+  network: textGuess,
+  layout: guess(z.enum(["long", "wide"])),
+  kind: guess(z.enum(["increments", "counter", "intensity", "tips"])),
+  unit: guess(z.enum(["mm", "in", "mm/h", "in/h", "tips"])),
+  tipMm: guess(z.number()).optional(),
+  columns: guess(
+    z.strictObject({
+      gauge: z.string().optional(),
+      time: z.string(),
+      value: z.string().optional(),
+      quality: z.string().optional(),
+    }),
+  ),
+  stepMinutes: guess(z.number()).optional(),
+  /** Null where the stamps name no zone, or several. */
+  zone: guess(z.string().nullable()),
+  missing: guess(z.array(z.string())),
+  qualityCodes: z.array(z.string()),
+  /** As if UTC where the stamps name no zone; null where no stamp can be read. */
+  firstStamp: instant.nullable(),
+  lastStamp: instant.nullable(),
   gaugeIds: z.array(z.string()),
-  /** False where the file is long and only its head was read for ids. */
+  /** False where only the two ends of the file were read for ids. */
   allGaugeIdsSeen: z.boolean(),
   stationsFile: z.string().optional(),
   withoutStation: z.array(z.string()),
@@ -60,15 +71,18 @@ const gaugeFinding = z.strictObject({
 
 const stationFinding = z.strictObject({
   file: z.string(),
-  columns: z.strictObject({
-    id: z.string(),
-    name: z.string().optional(),
-    x: z.string(),
-    y: z.string(),
-    elevation: z.string().optional(),
-  }),
+  columns: guess(
+    z.strictObject({
+      id: z.string(),
+      name: z.string().optional(),
+      x: z.string(),
+      y: z.string(),
+      elevation: z.string().optional(),
+    }),
+  ),
   stationCount: z.number().int(),
-  crs: guess,
+  /** Null where x and y are metres of a system that nobody named. */
+  crs: guess(z.string().nullable()),
   /** Stations that no gauge file has readings of. */
   withoutReadings: z.array(z.string()),
 });
@@ -76,8 +90,8 @@ const stationFinding = z.strictObject({
 const mapFinding = z.strictObject({
   file: z.string(),
   polygonCount: z.number().int(),
-  idField: guess.optional(),
-  nameField: guess.optional(),
+  idField: textGuess.optional(),
+  nameField: textGuess.optional(),
   crs: z.string().optional(),
 });
 
@@ -104,4 +118,9 @@ export type Findings = z.output<typeof surveySchema>;
 export type RadarFinding = z.output<typeof radarFinding>;
 export type GaugeFinding = z.output<typeof gaugeFinding>;
 export type StationFinding = z.output<typeof stationFinding>;
+export type Guessed<T> = {
+  readonly value: T;
+  readonly standing: "found" | "guessed";
+  readonly reason: string;
+};
 export type MapFinding = z.output<typeof mapFinding>;

@@ -1,0 +1,160 @@
+import { existsSync, mkdirSync, readFileSync, renameSync, rmSync, writeFileSync } from "node:fs";
+import path from "node:path";
+import { InputError } from "@rainreckon/core";
+import type { Command } from "commander";
+import { z } from "zod";
+import { addCommand, addSchemaFlag, printJson } from "../command.ts";
+import { flags } from "../options.ts";
+import type { SurveyResult } from "../survey/survey-result.ts";
+import { noticeLine } from "../ui/left-out.ts";
+import { counted } from "../ui/numbers.ts";
+import { type Terminal, terminalOf } from "../ui/terminal.ts";
+
+/** The result of `plan --json`. */
+export const planReportSchema = z.strictObject({
+  format: z.literal("rainreckon-plan-1"),
+  file: z.string(),
+  action: z.enum(["written", "updated", "unchanged"]),
+  radars: z.array(z.string()),
+  gaugeCount: z.number().int(),
+  catchmentCount: z.number().int(),
+  changes: z.array(z.string()).describe("what --update added"),
+  remarks: z.array(z.string()).describe("what --update saw and left alone"),
+  wrongCount: z.number().int().describe("faults that survey would name"),
+  next: z.string(),
+});
+
+interface PlanFlags {
+  readonly out: string;
+  readonly title: string;
+  readonly update?: boolean;
+  readonly force?: boolean;
+}
+
+/** `plan PATH…`: writes a plan from what a survey finds. */
+export function registerPlan(program: Command): void {
+  const command = addCommand(
+    program,
+    "plan <path...>",
+    "Write a plan (YAML) for a rain total from what lies in files and folders. Every value says whether it was found, guessed or is a default.",
+    ["rainreckon plan data/ -o plan.yaml", "rainreckon plan data/ -o plan.yaml --update"],
+  )
+    .addOption(flags.planFile())
+    .addOption(flags.title())
+    .addOption(flags.update())
+    .addOption(flags.replacePlan());
+  addSchemaFlag(command, planReportSchema);
+  command.action(async (paths: string[]) => {
+    const options = command.opts<PlanFlags>();
+    const terminal = terminalOf(command);
+    refuseToOverwrite(options);
+    const { survey } = await import("../survey/survey.ts");
+    const result = await survey(paths, terminal, (files) => {
+      terminal.note(`${counted(files.length, "file")} under ${paths.join(", ")}`);
+    });
+    await requireTotal(result, paths);
+    const report = await writePlan(options, result);
+    tellPlan(terminal, report, result);
+  });
+}
+
+type PlanReport = z.output<typeof planReportSchema>;
+
+function refuseToOverwrite({ out, update, force }: PlanFlags): void {
+  if (!existsSync(out) || update === true || force === true) return;
+  throw new InputError(
+    "there is a plan already",
+    out,
+    "add --update to keep its edits and add what is new, or --force to write over it",
+    {
+      kind: "usage",
+    },
+  );
+}
+
+async function requireTotal({ findings }: SurveyResult, paths: readonly string[]): Promise<void> {
+  if (findings.window !== null) return;
+  const { RATE_NOT_TOTAL } = await import("../survey/possible.ts");
+  const what = findings.radars.length === 0 ? "there is no scan that can be read" : RATE_NOT_TOTAL;
+  const fix =
+    findings.radars.length === 0
+      ? "name folders that hold ODIM_H5 scans; survey says what is there"
+      : "add scans of at least a second round";
+  throw new InputError(what, paths.join(", "), fix, { kind: "no-input" });
+}
+
+async function writePlan({ out, title, update }: PlanFlags, result: SurveyResult): Promise<PlanReport> {
+  const { composePlan } = await import("../plan/compose.ts");
+  const { parsePlan } = await import("../plan/load.ts");
+  const folder = path.dirname(path.resolve(out));
+  let action: PlanReport["action"] = "written";
+  let changes: readonly string[] = [];
+  let remarks: readonly string[] = [];
+  if (update === true && existsSync(out)) {
+    const { updatePlan } = await import("../plan/update.ts");
+    const updated = await updatePlan(readFileSync(out, "utf8"), out, folder, result);
+    ({ changes, remarks } = updated);
+    action = changes.length === 0 ? "unchanged" : "updated";
+    if (action === "updated") replaceFile(out, updated.text);
+  } else {
+    const text = composePlan(result, folder, title);
+    parsePlan(text, out);
+    replaceFile(out, text);
+  }
+  const { findings } = result;
+  return {
+    format: "rainreckon-plan-1",
+    file: out,
+    action,
+    radars: findings.radars.map((radar) => radar.id),
+    gaugeCount: findings.gauges.reduce(
+      (sum, { gaugeIds, withoutStation }) => sum + gaugeIds.length - withoutStation.length,
+      0,
+    ),
+    catchmentCount: findings.catchments.reduce((sum, { polygonCount }) => sum + polygonCount, 0),
+    changes: [...changes],
+    remarks: [...remarks],
+    wrongCount: findings.wrong.length,
+    next: `rainreckon total ${out} --out ${runFolderFor(out)}`,
+  };
+}
+
+/** Whole or not at all: a plan that somebody edited is never left half written. */
+function replaceFile(file: string, text: string): void {
+  const fresh = `${file}.${process.pid}.part`;
+  try {
+    mkdirSync(path.dirname(path.resolve(file)), { recursive: true });
+    writeFileSync(fresh, text);
+    renameSync(fresh, file);
+  } catch (error) {
+    rmSync(fresh, { force: true });
+    throw error;
+  }
+}
+
+function runFolderFor(plan: string): string {
+  const name = path.basename(plan, path.extname(plan));
+  return name === "plan" ? "run" : `run-${name}`;
+}
+
+function tellPlan(terminal: Terminal, report: PlanReport, { findings }: SurveyResult): void {
+  for (const notice of findings.wrong.slice(0, 20)) terminal.note(noticeLine(notice));
+  if (findings.wrong.length > 20) terminal.note(`and ${findings.wrong.length - 20} more; survey lists them`);
+  if (terminal.json) {
+    printJson(terminal, planReportSchema, report);
+    return;
+  }
+  const { file, action, radars, gaugeCount, catchmentCount, changes, remarks, next } = report;
+  const lines = [
+    `${file} ${action}: ${counted(radars.length, "radar")}, ${counted(gaugeCount, "gauge")}, ${counted(catchmentCount, "catchment")}`,
+    ...changes.map((change) => `- ${change}`),
+    ...remarks.map((remark) => `- ${remark}`),
+    ...(action === "written"
+      ? ["Read its first lines: what is marked guessed or default is yours to confirm."]
+      : []),
+    "",
+    terminal.strong("Next"),
+    `  ${next}`,
+  ];
+  terminal.result(lines.join("\n"));
+}

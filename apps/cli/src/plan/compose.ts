@@ -1,0 +1,315 @@
+import path from "node:path";
+import { planGrid } from "@rainreckon/mosaic";
+import { Document, isCollection, type Node, YAMLMap, YAMLSeq } from "yaml";
+import type { GaugeFinding, Guessed, RadarFinding, StationFinding } from "../survey/findings.ts";
+import { GAP_ROUNDS } from "../survey/radars.ts";
+import type { SurveyResult } from "../survey/survey-result.ts";
+import { globsFor, relativePath } from "./globs.ts";
+import { planSchema } from "./schema.ts";
+
+const CELL_M = 1000;
+const MARGIN_M = 10_000;
+/** How far around the radars a map reaches where neither catchments nor gauges say what matters. */
+const RADAR_MARGIN_M = 150_000;
+const ROUND_MINUTES_UNKNOWN = 5;
+const BEAM_WIDTH_UNKNOWN_DEG = 1;
+
+/** A value of the plan with where it comes from. */
+interface Marked {
+  readonly value: unknown;
+  readonly mark: string;
+  /** True: on one line, in braces or brackets. */
+  readonly flow?: boolean;
+}
+type Entries = Readonly<Record<string, Marked | Node | undefined>>;
+
+const found = (value: unknown, why = ""): Marked => ({ value, mark: why === "" ? "found" : `found: ${why}` });
+const guessed = (value: unknown, why: string): Marked => ({ value, mark: `guessed: ${why}` });
+const byDefault = (value: unknown, why = ""): Marked => ({
+  value,
+  mark: why === "" ? "default" : `default: ${why}`,
+});
+const inline = (marked: Marked): Marked => ({ ...marked, flow: true });
+
+const SETTINGS = { version: "1.2", schema: "core" } as const;
+/** Makes nodes; itself it stays empty. */
+const factory = new Document(null, SETTINGS);
+
+/** A map with a remark behind each of its values. */
+function mapNode(entries: Entries): YAMLMap {
+  const map = new YAMLMap();
+  for (const [key, entry] of Object.entries(entries)) {
+    if (entry === undefined) continue;
+    map.set(factory.createNode(key), "mark" in entry ? markedNode(entry) : entry);
+  }
+  return map;
+}
+
+function listNode(items: readonly Node[]): YAMLSeq {
+  const list = new YAMLSeq();
+  list.flow = items.length === 0;
+  list.items.push(...items);
+  return list;
+}
+
+function markedNode({ value, mark, flow }: Marked): Node {
+  const node: Node = factory.createNode(value);
+  const remark = ` ${oneLine(mark)}`;
+  if (isCollection(node)) node.flow = flow === true || node.items.length === 0;
+  // Behind a block the remark would stand under its last line, so it goes above its first.
+  if (isCollection(node) && !node.flow) node.commentBefore = remark;
+  else node.comment = remark;
+  return node;
+}
+
+/** Remarks hold words from files: a line break in one would turn the rest of it into plan. */
+function oneLine(text: string): string {
+  return text.replace(/[\u0000-\u001f\u007f-\u009f\u2028\u2029]+/g, " ");
+}
+
+/**
+ * A new plan from what a survey found.
+ *
+ * @param folder - the folder that the plan will lie in: its paths count from there
+ * @returns YAML 1.2 with comments
+ */
+export function composePlan(result: SurveyResult, folder: string, title: string): string {
+  const { findings } = result;
+  const upper = mapNode({
+    title: byDefault(title),
+    reference: byDefault("", "your file number"),
+    author: byDefault(""),
+    status: byDefault("provisional", "provisional or final"),
+    window: windowNode(result),
+    radars: listNode(findings.radars.map((radar) => radarNode(radar, result.radarsInWindow.has(radar.id)))),
+    gauges: listNode(gaugeNodes(result, folder)),
+    catchments: catchmentsNode(result, folder),
+    intervals: mapNode({
+      grids: byDefault("PT1H", "step of the maps"),
+      series: byDefault("PT5M", "step of catchments and gauges"),
+    }),
+    adjustment: mapNode({
+      method: byDefault("mean-field-bias", "mean-field-bias or none"),
+      minGauges: byDefault(5, "trusted gauges, at least 5"),
+    }),
+    overrides: inline(byDefault([], "{network, gauge, verdict: use or leave-out, reason, by, date}")),
+  });
+  const scans = findings.radars.flatMap((radar) => radar.files.map((file) => path.resolve(file)));
+  upper.set(
+    factory.createNode("scans"),
+    markedNode(found(globsFor(scans, result.files, folder), "recognised by content")),
+  );
+  upper.set(factory.createNode("grid"), gridNode(result));
+  for (const section of ["rain", "pairs", "bootstrap"] as const) {
+    upper.set(factory.createNode(section), defaultsNode(section));
+  }
+  ruleBefore(upper, "scans");
+  const document = new Document(upper, SETTINGS);
+  document.commentBefore = HEADER;
+  return document.toString({ lineWidth: 0 });
+}
+
+const HEADER = ` Plan of a rain total. Change what you know better; each remark says where a value comes from:
+ found (in the files), guessed (and why), default (nobody has chosen it yet).`;
+
+const RULE = ` ---- The rest: what seldom has to change -----------------------------------------------`;
+
+function ruleBefore(map: YAMLMap, key: string): void {
+  const pair = map.items.find((item) => String(item.key) === key);
+  const node = pair?.key as Node | undefined;
+  if (node === undefined) return;
+  node.commentBefore = RULE;
+  node.spaceBefore = true;
+}
+
+function windowNode({ findings }: SurveyResult): Node {
+  const { window } = findings;
+  if (window === null) throw new RangeError("a plan needs a window");
+  const why =
+    window.basis === "radars and gauges"
+      ? "time that radars and gauges share, to whole steps"
+      : "time of the scans, to whole steps";
+  return mapNode({
+    from: found(window.from, why),
+    to: found(window.to, why),
+    zone: byDefault("UTC", "clock that people read beside UTC, such as Europe/Oslo"),
+  });
+}
+
+/** One entry of `radars`. */
+export function radarNode(radar: RadarFinding, inWindow: boolean): Node {
+  const round = radar.medianRoundMinutes ?? ROUND_MINUTES_UNKNOWN;
+  const roundMark: Marked =
+    radar.medianRoundMinutes === null
+      ? byDefault(round, "there is one round only")
+      : found(round, "median time between rounds");
+  const rain = radar.quantities.some((quantity) => quantity.name === "DBZH");
+  const other = radar.quantities.find((quantity) => quantity.name === "TH");
+  const name = radar.name === undefined ? "" : radar.name;
+  return mapNode({
+    id: found(radar.id, name),
+    use: inWindow
+      ? byDefault(true)
+      : guessed(false, "its scans lie outside the window, or there is one round only"),
+    offsetDb: byDefault(0, "dB, added to every reflectivity"),
+    relation: byDefault(
+      "marshall-1955-200/1.6",
+      "it was not chosen by anyone; compare: rainreckon relate table",
+    ),
+    cap: inline(byDefault({ dbz: 53 }, "or {mmPerHour: 100}")),
+    maxBeamHeightM: byDefault(3000, "m above the antenna"),
+    medianRoundMinutes: roundMark,
+    maxGapMinutes: guessed(
+      Number((GAP_ROUNDS * round).toFixed(3)),
+      `${GAP_ROUNDS} median rounds; longer holes are not bridged`,
+    ),
+    moment: rain || other === undefined ? undefined : guessed("TH", "the files offer no DBZH"),
+    beamWidthDeg:
+      radar.beamWidthDeg === undefined ? byDefault(BEAM_WIDTH_UNKNOWN_DEG, "the files give none") : undefined,
+  });
+}
+
+/** Entries of `gauges`: one for each network whose stations are known. */
+export function gaugeNodes({ findings }: SurveyResult, folder: string): Node[] {
+  return gaugeGroups(findings.gauges, findings.stations).map((group) => gaugeNode(group, folder));
+}
+
+/** One entry of `gauges`. */
+export function gaugeNode({ files, stations }: GaugeGroup, folder: string): Node {
+  const first = files[0]!;
+  const crs = stations.crs.value ?? "WRITE ITS EPSG CODE";
+  return mapNode({
+    network: by(first.network),
+    files: inline(found(files.map((file) => relativePath(path.resolve(file.file), folder)))),
+    stations: inline(
+      guessed(
+        { file: relativePath(path.resolve(stations.file), folder), crs, columns: stations.columns.value },
+        `it names these gauges; ${stations.crs.reason}`,
+      ),
+    ),
+    layout: by(first.layout),
+    columns: inline(by(first.columns)),
+    kind: by(first.kind),
+    unit: by(first.unit),
+    tipMm: first.tipMm === undefined ? undefined : by(first.tipMm),
+    stepMinutes: first.stepMinutes === undefined ? undefined : by(first.stepMinutes),
+    stamp: byDefault("end", "end or start of the time that a reading covers"),
+    zone:
+      first.zone.value === null
+        ? guessed("UTC", "the stamps name no zone: ask the network")
+        : found(first.zone.value, first.zone.reason),
+    dst: byDefault("follow", "never: the zone's standard time all year"),
+    silence: silenceMark(first),
+    missing: inline(by(first.missing)),
+    quality: first.qualityCodes.length === 0 ? undefined : inline(qualityMark(first.qualityCodes)),
+  });
+}
+
+function by(guess: Guessed<unknown>): Marked {
+  return { value: guess.value, mark: `${guess.standing}: ${guess.reason}` };
+}
+
+/** Tips come only while it rains, so no line must mean dry; everywhere else it means that nothing is known. */
+function silenceMark(gauge: GaugeFinding): Marked {
+  return gauge.kind.value === "tips"
+    ? guessed("dry", "no tip, no rain; or heartbeat PT60M where the gauge reports in between")
+    : byDefault("missing", "what no line means: dry, missing, or heartbeat PT60M");
+}
+
+const GOOD = /^(ok|good|g|valid|v|pass|passed|use|used|checked|normal|0)$/i;
+const BAD = /^(bad|b|drop|dropped|invalid|missing|m|fail|failed|error|reject|rejected|x)$/i;
+
+/** The network's codes by their words; a code that says nothing is doubted, never used unseen. */
+function qualityMark(codes: readonly string[]): Marked {
+  const use = codes.filter((code) => GOOD.test(code.trim()));
+  const drop = codes.filter((code) => BAD.test(code.trim()));
+  const doubt = codes.filter((code) => !use.includes(code) && !drop.includes(code));
+  return guessed({ use, doubt, drop }, "by the words; ask the network what its codes mean");
+}
+
+/** Gauge files that make one entry of `gauges`. */
+export interface GaugeGroup {
+  readonly files: readonly GaugeFinding[];
+  readonly stations: StationFinding;
+}
+
+/** Gauge files that go together: one network, one form, one table of stations. */
+export function gaugeGroups(
+  gauges: readonly GaugeFinding[],
+  stations: readonly StationFinding[],
+): GaugeGroup[] {
+  const groups = new Map<string, { files: GaugeFinding[]; stations: StationFinding }>();
+  for (const gauge of gauges) {
+    const table = stations.find((one) => one.file === gauge.stationsFile);
+    if (table === undefined) continue;
+    const key = JSON.stringify([
+      gauge.network.value,
+      gauge.layout.value,
+      gauge.kind.value,
+      gauge.unit.value,
+      gauge.columns.value,
+      table.file,
+    ]);
+    const group = groups.get(key) ?? { files: [], stations: table };
+    groups.set(key, group);
+    group.files.push(gauge);
+  }
+  return [...groups.values()];
+}
+
+/** The entry `catchments`, where there is a map of them. */
+export function catchmentsNode({ findings }: SurveyResult, folder: string): Node | undefined {
+  const map = findings.catchments.find((one) => one.idField !== undefined);
+  if (map?.idField === undefined) return undefined;
+  return mapNode({
+    file: found(relativePath(path.resolve(map.file), folder), `${map.polygonCount} areas`),
+    id: by(map.idField),
+    name: map.nameField === undefined ? undefined : by(map.nameField),
+  });
+}
+
+function gridNode(result: SurveyResult): Node {
+  const interest = [...result.catchmentPoints, ...result.gaugePoints];
+  const radars = result.findings.radars.filter((radar) => result.radarsInWindow.has(radar.id));
+  const grid =
+    interest.length > 0
+      ? planGrid(interest, { marginM: MARGIN_M, cellM: CELL_M })
+      : planGrid(radars, { marginM: RADAR_MARGIN_M, cellM: CELL_M });
+  const why =
+    interest.length > 0
+      ? `${MARGIN_M / 1000} km around catchments and gauges`
+      : `${RADAR_MARGIN_M / 1000} km around the radars`;
+  return mapNode({
+    crs: guessed(grid.crs, "equal areas; centre to a tenth of a degree"),
+    westM: guessed(grid.westM, why),
+    northM: guessed(grid.northM, why),
+    cellM: byDefault(grid.cellM, "m"),
+    nx: guessed(grid.nx, why),
+    ny: guessed(grid.ny, why),
+  });
+}
+
+const REMARKS: Readonly<Record<string, string>> = {
+  minRateMmPerHour: "mm/h; less counts as dry",
+  effectiveRadiusFactor: "refraction: effective over true earth radius",
+  minObserved: "share of time below which a table leaves the depth empty",
+  taperKm: "km over which a radar's weight falls to 0 at the end of its coverage",
+  resent: "which of two differing sweeps of one instant counts: first or last",
+  headlineRelations: "the headline is also given under these",
+  cell: "nearest or mean3x3",
+  interval: "length of the pairs",
+  thresholdMm: "mm; wet from here on",
+  minCommonFraction: "share of the interval that both must have observed",
+  seed: "same seed, same intervals",
+  level: "confidence of the intervals",
+};
+
+/** A section as the schema fills it in. */
+function defaultsNode(section: "rain" | "pairs" | "bootstrap"): Node {
+  const defaults = planSchema.shape[section].parse({}) as Record<string, unknown>;
+  const entries = Object.entries(defaults).map(([key, value]): [string, Marked] => [
+    key,
+    inline(byDefault(value, REMARKS[key] ?? "")),
+  ]);
+  return mapNode(Object.fromEntries(entries));
+}

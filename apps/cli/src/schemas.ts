@@ -1,0 +1,15 @@
+import type { z } from "zod";
+import { planReportSchema } from "./commands/plan.ts";
+import { compareSchema } from "./compare/compare-runs.ts";
+import { manifestSchema } from "./manifest.ts";
+import { relationTableSchema } from "./relate/relation-table.ts";
+import { surveySchema } from "./survey/findings.ts";
+
+/** The schema of each command's --json, and of the manifest that total leaves; --schema prints them as JSON Schema. */
+export const schemas = {
+  survey: surveySchema,
+  plan: planReportSchema,
+  "relate table": relationTableSchema,
+  compare: compareSchema,
+  manifest: manifestSchema,
+} as const satisfies Record<string, z.ZodType>;

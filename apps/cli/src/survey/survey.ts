@@ -1,0 +1,250 @@
+import { readFileSync } from "node:fs";
+import path from "node:path";
+import { setImmediate } from "node:timers/promises";
+import { InputError, type Interval, type Notice } from "@rainreckon/core";
+import {
+  formatsReady,
+  type GeoJsonGuess,
+  openScan,
+  recogniseScan,
+  sniffGeoJson,
+  sniffTable,
+} from "@rainreckon/formats";
+import { projection } from "@rainreckon/mosaic";
+import { sha256Hex } from "../digest.ts";
+import { type LeftOutLog, leftOutLog } from "../ui/left-out.ts";
+import { isoUtc } from "../ui/numbers.ts";
+import { progressBar } from "../ui/progress.ts";
+import type { Terminal } from "../ui/terminal.ts";
+import { fileKind } from "./file-kind.ts";
+import type { Findings, GaugeFinding, MapFinding, RadarFinding } from "./findings.ts";
+import { possibleTexts } from "./possible.ts";
+import { radarFindings, type SeenSweep } from "./radars.ts";
+import type { Point, SurveyResult } from "./survey-result.ts";
+import { readSeenStations, type SeenReadings, type SeenStations, tableFindings } from "./tables.ts";
+import { type FoundFile, walkFiles } from "./walk.ts";
+import { chooseWindow, commonSpan, wholeSpan } from "./window.ts";
+
+/** What was recognised, file by file. */
+interface Seen {
+  readonly sweeps: SeenSweep[];
+  readonly readings: SeenReadings[];
+  readonly stations: SeenStations[];
+  readonly maps: { readonly file: string; readonly guess: GeoJsonGuess }[];
+  readonly others: Map<string, number>;
+}
+
+/**
+ * Looks at files and folders: headers of scans, both ends of tables, whole maps.
+ *
+ * @param onFiles - called as soon as the files are counted, before any of them is opened
+ * @throws InputError (kind "usage") where a path does not exist
+ */
+export async function survey(
+  paths: readonly string[],
+  terminal: Terminal,
+  onFiles: (files: readonly FoundFile[]) => void,
+): Promise<SurveyResult> {
+  // Faults are findings here: they are printed with the rest, not on the way.
+  const wrong = leftOutLog({ ...terminal, note: () => undefined });
+  const walk = walkFiles(paths, (notice) => wrong.add("folder left out", notice));
+  onFiles(walk.files);
+  if (walk.linkCount > 0) {
+    wrong.add(
+      "link left out",
+      { what: "links are not followed", where: paths.join(", "), fix: "name what they lead to" },
+      walk.linkCount,
+    );
+  }
+  await formatsReady();
+  const seen = await lookAt(walk.files, terminal, wrong);
+  if (walk.hiddenCount > 0) seen.others.set("hidden", walk.hiddenCount);
+
+  const tell = (kind: string) => (notice: Notice) => wrong.add(kind, notice);
+  const { radars } = radarFindings(hashResent(seen.sweeps), tell("radar"));
+  const { gauges, stations, points } = tableFindings(seen.readings, seen.stations, radars, tell("gauge"));
+  const catchments = seen.maps.map(({ file, guess }) => mapFinding(file, guess, tell("catchment")));
+  const radarsInWindow = radarsOfOneTime(radars);
+  const window = windowOf(radars, radarsInWindow, gauges);
+  const part = { radars: [...radars], gauges: [...gauges], stations: [...stations], catchments, window };
+  const findings: Findings = {
+    format: "rainreckon-survey-1",
+    paths: [...paths],
+    fileCount: walk.files.length,
+    ...part,
+    otherFiles: [...seen.others]
+      .map(([kind, count]) => ({ kind, count }))
+      .sort((a, b) => b.count - a.count || (a.kind < b.kind ? -1 : 1)),
+    wrong: [...wrong.all],
+    possible: possibleTexts(part, radarsInWindow),
+    next: nextCommand(paths, window !== null),
+  };
+  const catchmentPoints = seen.maps.flatMap(({ guess }) => cornersOf(guess));
+  return { findings, files: walk.files, radarsInWindow, gaugePoints: points, catchmentPoints };
+}
+
+const FILES_BETWEEN_BREATHS = 20;
+
+async function lookAt(files: readonly FoundFile[], terminal: Terminal, wrong: LeftOutLog): Promise<Seen> {
+  const seen: Seen = { sweeps: [], readings: [], stations: [], maps: [], others: new Map() };
+  const progress = progressBar(terminal, files.length, "files");
+  for (const [index, file] of files.entries()) {
+    try {
+      await lookAtFile(file.path, seen, wrong);
+    } catch (error) {
+      if (!(error instanceof InputError)) throw error;
+      wrong.add("file left out", error);
+    }
+    progress.advance();
+    // Opening scans never waits, so an interrupt would go unheard without this.
+    if (index % FILES_BETWEEN_BREATHS === 0) await setImmediate();
+  }
+  progress.end();
+  return seen;
+}
+
+async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<void> {
+  if (recogniseScan(file) !== undefined) {
+    const scan = openScan(file);
+    try {
+      for (const header of scan.headers) seen.sweeps.push({ header, format: scan.format });
+    } finally {
+      scan.close();
+    }
+    return;
+  }
+  const map = await sniffGeoJson(file);
+  if (map !== undefined) {
+    seen.maps.push({ file, guess: map });
+    return;
+  }
+  const table = await sniffTable(file);
+  if (table.kind === "readings") seen.readings.push({ file, guess: table.readings });
+  else if (table.kind === "stations") {
+    seen.stations.push(
+      await readSeenStations(file, table.stations, (notice) => wrong.add("station left out", notice)),
+    );
+  } else {
+    const kind = fileKind(file);
+    seen.others.set(kind, (seen.others.get(kind) ?? 0) + 1);
+    if (path.extname(file).toLowerCase() === ".csv") {
+      wrong.add("file left out", { what: table.reason, where: file, fix: "mend the table, or leave it out" });
+    }
+  }
+}
+
+/** Reads the files that hold one instant twice, to tell a copy from a correction. */
+function hashResent(sweeps: readonly SeenSweep[]): SeenSweep[] {
+  const key = ({ header }: SeenSweep) =>
+    `${header.site.id} ${header.startEpochMs} ${header.elevationDeg.toFixed(1)}`;
+  const counts = new Map<string, number>();
+  for (const sweep of sweeps) counts.set(key(sweep), (counts.get(key(sweep)) ?? 0) + 1);
+  const hashes = new Map<string, string>();
+  const hashOf = (file: string) => {
+    const known = hashes.get(file) ?? sha256Hex(readFileSync(file));
+    hashes.set(file, known);
+    return known;
+  };
+  return sweeps.map((sweep) =>
+    counts.get(key(sweep)) === 1 ? sweep : { ...sweep, contentHash: hashOf(sweep.header.origin.path) },
+  );
+}
+
+function spanOf(radar: RadarFinding): Interval {
+  return { startEpochMs: Date.parse(radar.firstStart), endEpochMs: Date.parse(radar.lastEnd) };
+}
+
+/** The radar with most rounds, and those whose time meets its time; nobody with a single round. */
+function radarsOfOneTime(radars: readonly RadarFinding[]): ReadonlySet<string> {
+  const able = radars.filter((radar) => radar.roundCount >= 2);
+  const leader = [...able].sort((a, b) => b.roundCount - a.roundCount)[0];
+  if (leader === undefined) return new Set();
+  return new Set(
+    able.filter((radar) => commonSpan(spanOf(radar), spanOf(leader)) !== undefined).map((radar) => radar.id),
+  );
+}
+
+function windowOf(
+  radars: readonly RadarFinding[],
+  inWindow: ReadonlySet<string>,
+  gauges: readonly GaugeFinding[],
+): Findings["window"] {
+  const used = radars.filter((radar) => inWindow.has(radar.id));
+  const span = wholeSpan(used.map(spanOf));
+  if (span === undefined) return null;
+  const gaugeSpan = wholeSpan(
+    gauges.flatMap(({ firstStamp, lastStamp, stepMinutes, stationsFile }) => {
+      if (firstStamp === null || lastStamp === null || stationsFile === undefined) return [];
+      // The first stamp ends a reading, which began a step earlier.
+      const startEpochMs = Date.parse(firstStamp) - (stepMinutes?.value ?? 0) * 60_000;
+      return [{ startEpochMs, endEpochMs: Date.parse(lastStamp) }];
+    }),
+  );
+  const roundMs = Math.max(...used.map((radar) => (radar.medianRoundMinutes ?? 0) * 60_000));
+  const { window, basis } = chooseWindow(span, gaugeSpan, roundMs);
+  return { from: isoUtc(window.startEpochMs), to: isoUtc(window.endEpochMs), basis };
+}
+
+function mapFinding(file: string, guess: GeoJsonGuess, onNotice: (notice: Notice) => void): MapFinding {
+  const [id] = guess.idFields;
+  const name = guess.nameFields.find((field) => field !== id);
+  if (guess.polygonCount < guess.featureCount) {
+    onNotice({
+      what: `${guess.featureCount - guess.polygonCount} of ${guess.featureCount} features are no areas`,
+      where: file,
+      fix: "nothing, if that is right; only polygons become catchments",
+    });
+  }
+  if (id === undefined) {
+    onNotice({
+      what: "no property tells the areas apart",
+      where: file,
+      fix: "give every area an id of its own",
+    });
+  }
+  return {
+    file,
+    polygonCount: guess.polygonCount,
+    ...(id === undefined
+      ? {}
+      : {
+          idField: {
+            value: id,
+            standing: "guessed" as const,
+            reason: "filled in and different for each area",
+          },
+        }),
+    ...(name === undefined
+      ? {}
+      : { nameField: { value: name, standing: "guessed" as const, reason: "it holds words" } }),
+    ...(guess.crs === undefined ? {} : { crs: guess.crs }),
+  };
+}
+
+function cornersOf(guess: GeoJsonGuess): Point[] {
+  if (guess.bounds === undefined || guess.polygonCount === 0) return [];
+  const [west, south, east, north] = guess.bounds;
+  const { inverse } = projection(guess.crs ?? "EPSG:4326");
+  const corners = [
+    [west, south],
+    [west, north],
+    [east, south],
+    [east, north],
+  ] as const;
+  return corners.map(([x, y]) => {
+    const [lonDeg, latDeg] = inverse(x, y);
+    return { lonDeg, latDeg };
+  });
+}
+
+function nextCommand(paths: readonly string[], possible: boolean): string {
+  const words = paths.map(shellWord).join(" ");
+  return possible
+    ? `rainreckon plan ${words} -o plan.yaml`
+    : `rainreckon survey ${words} (again, once there are scans of two rounds and more)`;
+}
+
+/** A path as a shell takes it for one word. */
+function shellWord(text: string): string {
+  return /^[\w./@%+,:=-]+$/.test(text) ? text : `'${text.replaceAll("'", "'\\''")}'`;
+}

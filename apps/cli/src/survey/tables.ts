@@ -1,0 +1,223 @@
+import type { Notice } from "@rainreckon/core";
+import {
+  looksSwapped,
+  type ReadingsGuess,
+  readStations,
+  type StationRow,
+  type StationsGuess,
+} from "@rainreckon/formats";
+import { geodesicInverse, projection } from "@rainreckon/mosaic";
+import { counted, isoUtc } from "../ui/numbers.ts";
+import type { GaugeFinding, RadarFinding, StationFinding } from "./findings.ts";
+import { networkName } from "./network-name.ts";
+import type { Point } from "./survey-result.ts";
+
+export interface SeenReadings {
+  readonly file: string;
+  readonly guess: ReadingsGuess;
+}
+
+export interface SeenStations {
+  readonly file: string;
+  readonly guess: StationsGuess;
+  readonly rows: readonly StationRow[];
+}
+
+/** A table of stations with all its rows; the faults of the rows go to `onNotice`. */
+export async function readSeenStations(
+  file: string,
+  guess: StationsGuess,
+  onNotice: (notice: Notice) => void,
+): Promise<SeenStations> {
+  return { file, guess, rows: await readStations(file, guess.columns.value, onNotice) };
+}
+
+export interface TableFindings {
+  readonly gauges: readonly GaugeFinding[];
+  readonly stations: readonly StationFinding[];
+  /** Where gauges with readings stand, within the reach of a radar. */
+  readonly points: readonly Point[];
+}
+
+/** Brings readings and stations together; what does not fit goes to `onNotice`. */
+export function tableFindings(
+  readings: readonly SeenReadings[],
+  tables: readonly SeenStations[],
+  radars: readonly RadarFinding[],
+  onNotice: (notice: Notice) => void,
+): TableFindings {
+  const gauges = readings.map((seen) => gaugeFinding(seen, tables));
+  for (const gauge of gauges) tellGaugeFaults(gauge, onNotice);
+  const stations = tables.map((table) => stationFinding(table, gauges));
+  const points = tables.flatMap((table) => stationPoints(table, gauges, radars, onNotice));
+  return { gauges, stations, points };
+}
+
+function gaugeFinding({ file, guess }: SeenReadings, tables: readonly SeenStations[]): GaugeFinding {
+  const table = stationsFor(guess.gaugeIds, file, tables);
+  const known = new Set(table?.rows.map((row) => row.id));
+  return {
+    file,
+    network: networkName(file),
+    layout: guess.layout,
+    kind: guess.kind,
+    unit: guess.unit,
+    ...(guess.tipMm === undefined ? {} : { tipMm: guess.tipMm }),
+    columns: guess.columns,
+    ...(guess.stepMinutes === undefined ? {} : { stepMinutes: guess.stepMinutes }),
+    zone: { ...guess.zone, value: guess.zone.value ?? null },
+    missing: { ...guess.missing, value: [...guess.missing.value] },
+    qualityCodes: [...guess.qualityCodes],
+    firstStamp: stampOrNull(guess.firstEpochMs),
+    lastStamp: stampOrNull(guess.lastEpochMs),
+    gaugeIds: [...guess.gaugeIds],
+    allGaugeIdsSeen: guess.allGaugesSeen,
+    ...(table === undefined ? {} : { stationsFile: table.file }),
+    withoutStation: table === undefined ? [...guess.gaugeIds] : guess.gaugeIds.filter((id) => !known.has(id)),
+  };
+}
+
+function stampOrNull(epochMs: number): string | null {
+  return Number.isFinite(epochMs) ? isoUtc(epochMs) : null;
+}
+
+/** The table that names most of the gauges; of equals, the one whose file is named most like the readings'. */
+function stationsFor(
+  ids: readonly string[],
+  file: string,
+  tables: readonly SeenStations[],
+): SeenStations | undefined {
+  const network = networkName(file).value;
+  const scored = tables.map((table) => {
+    const known = new Set(table.rows.map((row) => row.id));
+    return {
+      table,
+      named: ids.filter((id) => known.has(id)).length,
+      alike: table.file.includes(network) ? 1 : 0,
+    };
+  });
+  const best = scored
+    .filter(({ named }) => named > 0)
+    .sort((a, b) => b.named - a.named || b.alike - a.alike)[0];
+  return best?.table;
+}
+
+function tellGaugeFaults(gauge: GaugeFinding, onNotice: (notice: Notice) => void): void {
+  const where = gauge.file;
+  if (gauge.stationsFile === undefined) {
+    onNotice({
+      what: "no table of stations names its gauges",
+      where,
+      fix: "add a CSV with id, name and coordinates",
+    });
+  } else {
+    for (const id of gauge.withoutStation) {
+      onNotice({
+        what: `gauge ${id} has readings and no station`,
+        where,
+        fix: `add it to ${gauge.stationsFile}`,
+      });
+    }
+  }
+  if (gauge.zone.value === null) {
+    onNotice({
+      what: "the stamps name no zone",
+      where,
+      fix: "ask the network, and write zone and dst in the plan",
+    });
+  }
+}
+
+function stationFinding(
+  { file, guess, rows }: SeenStations,
+  gauges: readonly GaugeFinding[],
+): StationFinding {
+  const users = gauges.filter((gauge) => gauge.stationsFile === file);
+  const withReadings = new Set(users.flatMap((gauge) => gauge.gaugeIds));
+  const complete = users.every((gauge) => gauge.allGaugeIdsSeen);
+  const { id, name, x, y, elevation } = guess.columns.value;
+  return {
+    file,
+    columns: {
+      ...guess.columns,
+      value: {
+        id,
+        ...(name === undefined ? {} : { name }),
+        x,
+        y,
+        ...(elevation === undefined ? {} : { elevation }),
+      },
+    },
+    stationCount: rows.length,
+    crs: { ...guess.crs, value: guess.crs.value ?? null },
+    withoutReadings: complete
+      ? rows.map((row) => row.id).filter((stationId) => !withReadings.has(stationId))
+      : [],
+  };
+}
+
+function stationPoints(
+  { file, guess, rows }: SeenStations,
+  gauges: readonly GaugeFinding[],
+  radars: readonly RadarFinding[],
+  onNotice: (notice: Notice) => void,
+): Point[] {
+  const users = gauges.filter((gauge) => gauge.stationsFile === file);
+  if (users.length === 0) {
+    onNotice({
+      what: "no gauge file has readings of these stations",
+      where: file,
+      fix: "add the readings, or leave the table out",
+    });
+    return [];
+  }
+  if (guess.crs.value === undefined) {
+    onNotice({
+      what: "x and y are not degrees, and the file does not say what they are",
+      where: file,
+      fix: "write the EPSG code of their coordinate system in the plan: gauges, stations, crs",
+    });
+    return [];
+  }
+  const { inverse } = projection(guess.crs.value);
+  const withReadings = new Set(users.flatMap((gauge) => gauge.gaugeIds));
+  const complete = users.every((gauge) => gauge.allGaugeIdsSeen);
+  const points: Point[] = [];
+  for (const row of rows) {
+    if (complete && !withReadings.has(row.id)) continue;
+    const [lonDeg, latDeg] = inverse(row.x, row.y);
+    const fault = placeFault({ lonDeg, latDeg }, radars);
+    if (fault === undefined) points.push({ lonDeg, latDeg });
+    else
+      onNotice({
+        what: `station ${row.id} ${fault.what}`,
+        where: `${file}, line ${row.line}`,
+        fix: fault.fix,
+      });
+  }
+  return points;
+}
+
+function placeFault(
+  point: Point,
+  radars: readonly RadarFinding[],
+): { what: string; fix: string } | undefined {
+  if (!(Math.abs(point.latDeg) <= 90 && Math.abs(point.lonDeg) <= 360)) {
+    return {
+      what: "has coordinates that are nowhere on earth",
+      fix: "mend its coordinates, or their coordinate system in the plan",
+    };
+  }
+  if (radars.length === 0) return undefined;
+  const kmBeyond = Math.min(
+    ...radars.map((radar) => geodesicInverse(radar, point).distanceM / 1000 - radar.maxRangeKm),
+  );
+  if (kmBeyond <= 0) return undefined;
+  if (looksSwapped(point.lonDeg, point.latDeg, radars)) {
+    return { what: "looks as if longitude and latitude were swapped", fix: "exchange the two numbers" };
+  }
+  return {
+    what: `lies ${counted(Math.ceil(kmBeyond), "km", "km")} beyond the reach of every radar`,
+    fix: "nothing, if that is right; the map will not reach out to it",
+  };
+}
