@@ -21,9 +21,20 @@ export const ELLIPSOIDS: Readonly<Record<string, Ellipsoid>> = {
   bessel: { name: "Bessel 1841", epsg: 7004, semiMajorM: 6377397.155, inverseFlattening: 299.1528128 },
   intl: { name: "International 1924", epsg: 7022, semiMajorM: 6378388, inverseFlattening: 297 },
   krass: { name: "Krassowsky 1940", epsg: 7024, semiMajorM: 6378245, inverseFlattening: 298.3 },
-  airy: ellipsoidOfAxes("Airy 1830", 7001, 6377563.396, 6356256.909237285),
-  mod_airy: ellipsoidOfAxes("Airy Modified 1849", 7002, 6377340.189, 6356034.447938534),
-  clrk66: ellipsoidOfAxes("Clarke 1866", 7008, 6378206.4, 6356583.8),
+  airy: { name: "Airy 1830", epsg: 7001, semiMajorM: 6377563.396, inverseFlattening: 299.3249646 },
+  mod_airy: {
+    name: "Airy Modified 1849",
+    epsg: 7002,
+    semiMajorM: 6377340.189,
+    inverseFlattening: 299.3249646,
+  },
+  // EPSG defines this one by its two half axes.
+  clrk66: {
+    name: "Clarke 1866",
+    epsg: 7008,
+    semiMajorM: 6378206.4,
+    inverseFlattening: inverseFlatteningOf(6378206.4, 6356583.8),
+  },
   clrk80ign: {
     name: "Clarke 1880 (IGN)",
     epsg: 7011,
@@ -38,10 +49,6 @@ export const ELLIPSOIDS: Readonly<Record<string, Ellipsoid>> = {
   },
   helmert: { name: "Helmert 1906", epsg: 7020, semiMajorM: 6378200, inverseFlattening: 298.3 },
 };
-
-function ellipsoidOfAxes(name: string, epsg: number, semiMajorM: number, semiMinorM: number): Ellipsoid {
-  return { name, epsg, semiMajorM, inverseFlattening: inverseFlatteningOf(semiMajorM, semiMinorM) };
-}
 
 /** Inverse flattening from the two half axes; 0 when they are equal. */
 export function inverseFlatteningOf(semiMajorM: number, semiMinorM: number): number {

@@ -125,9 +125,10 @@ function fieldsOf({ grid, description, unit }: GeoTiffSpec, keys: GeoKeyTags): T
   return fields;
 }
 
+/** Texts are escaped twice, because the tag's own readers undo it twice. */
 function bandMetadata(description: string, unit: string): string {
   const item = (name: string, role: string, text: string) =>
-    `<Item name="${name}" sample="0" role="${role}">${escapedXml(text)}</Item>`;
+    `<Item name="${name}" sample="0" role="${role}">${escapedXml(escapedXml(text))}</Item>`;
   return `<GDALMetadata>${item("DESCRIPTION", "description", description)}${item("UNITTYPE", "unittype", unit)}</GDALMetadata>`;
 }
 

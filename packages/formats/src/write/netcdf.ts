@@ -4,6 +4,7 @@ import { Hdf5Output } from "./hdf5-output.ts";
 import { epsgCodeOf, type MapReference } from "./map-reference.ts";
 import { parseProjection } from "./projection.ts";
 import type { TotalsVariable } from "./totals-variables.ts";
+import { wellKnownText } from "./wkt.ts";
 
 /** All that a totals file needs before its first value. */
 export interface TotalsSpec extends MapReference {
@@ -134,11 +135,14 @@ function checkSpec(spec: TotalsSpec): void {
 }
 
 function mappingAttributes(spec: TotalsSpec): Record<string, AttributeValue> {
+  const projection = parseProjection(spec.projString);
   const code = epsgCodeOf(spec.grid.crs);
+  const text = spec.crsWkt ?? wellKnownText(projection);
   return {
-    ...gridMappingAttributes(parseProjection(spec.projString)),
-    // Not CF, but what tools look for where CF has no name for a projection.
-    ...(spec.crsWkt === undefined ? {} : { crs_wkt: spec.crsWkt, spatial_ref: spec.crsWkt }),
+    ...gridMappingAttributes(projection),
+    ...(spec.crsWkt === undefined ? {} : { crs_wkt: spec.crsWkt }),
+    // Not CF, but what tools look for where CF has no name for a projection or no place for its shift.
+    ...(text === undefined ? {} : { spatial_ref: text }),
     ...(code === undefined ? {} : { epsg_code: `EPSG:${code}` }),
     proj4: spec.projString,
   };
