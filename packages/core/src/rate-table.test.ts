@@ -42,6 +42,12 @@ test("the calibration offset comes before relation and cap", () => {
   expect(gateRate(Number.NEGATIVE_INFINITY, shifted)).toEqual({ rate: 0, capped: 0 });
 });
 
+test("a rate of exactly the cut-off counts", () => {
+  const { rate } = gateRate(20, settings);
+  expect(gateRate(20, { ...settings, minRateMmPerHour: rate }).rate).toBe(rate);
+  expect(gateRate(19.5, { ...settings, minRateMmPerHour: rate }).rate).toBe(0);
+});
+
 test("a cut-off of 0 lets the weakest echo count", () => {
   expect(gateRate(-31.5, { ...settings, minRateMmPerHour: 0 }).rate).toBeGreaterThan(0);
 });

@@ -48,6 +48,8 @@ test("antennas that come down start rounds too, and elevations equal within 0.05
     [2.4, 1.5, 0.5],
     [2.35, 1.52],
   ]);
+  // 0.55 - 0.5 is a little more than 0.05 in binary.
+  expect(groupIntoRounds([sweep(0, 0.5), sweep(1, 0.55)], options)).toHaveLength(2);
   expect(groupIntoRounds([sweep(0, 0.5), sweep(1, 0.56)], options)).toHaveLength(1);
 });
 
@@ -58,8 +60,8 @@ test("two cuts at one elevation are two instants", () => {
 
 test("a gap starts a round only when it is longer than allowed, from end to start", () => {
   // The first sweep ends at 20 s, so a silence of 4 minutes ends at 4 min 20 s.
-  const atLimit = sweep(4 + 20 / 60, 1.5);
-  const pastLimit = sweep(4 + 21 / 60, 1.5);
+  const atLimit = { ...sweep(4, 1.5), startEpochMs: 260_000, endEpochMs: 280_000 };
+  const pastLimit = { ...atLimit, startEpochMs: 260_001 };
   expect(groupIntoRounds([sweep(0, 0.5), atLimit], options)).toHaveLength(1);
   expect(groupIntoRounds([sweep(0, 0.5), pastLimit], options)).toHaveLength(2);
 });
@@ -84,8 +86,12 @@ test("nothing in, nothing out; two sites are a mistake", () => {
 
 test("the median round is between the mid-times of lowest sweeps", () => {
   // Lowest sweeps at 0, 5, 10, 16 and 30 min: differences 5, 5, 6, 14; the median is 5.5.
+  // Higher sweeps follow them at uneven distances, so that their times would give another median.
   const starts = [0, 5, 10, 16, 30];
-  const sweeps = starts.flatMap((start) => [sweep(start, 2.4), sweep(start + 1, 0.5)]);
+  const sweeps = starts.flatMap((start, round) => [
+    sweep(start, 0.5),
+    sweep(start + [1, 3, 1, 3, 1][round]!, 2.4),
+  ]);
   expect(medianRoundMs(groupIntoRounds(sweeps, options))).toBe(5.5 * MINUTE);
   expect(medianRoundMs(groupIntoRounds(sweeps.slice(0, 6), options))).toBe(5 * MINUTE);
   expect(medianRoundMs(groupIntoRounds(sweeps.slice(0, 2), options))).toBeUndefined();
