@@ -128,8 +128,8 @@ export function parseLines(text: string, delimiter: string): string[][] {
 export interface RowHandler {
   header(cells: readonly string[], line: number): void;
   row(cells: readonly string[], line: number): void;
-  /** A quotation mark that is never closed, or closed in the middle of a cell. */
-  quoteFault(line: number): void;
+  /** A quotation mark that is never closed, or closed in the middle of a cell: it swallows whole lines. */
+  quoteFault(line: number, lineCount: number): void;
 }
 
 /**
@@ -167,13 +167,16 @@ export async function streamRows(path: string, handler: RowHandler): Promise<voi
           for (let index = 0; index < data.length; index++) {
             const cells = data[index];
             const startLine = line;
+            let lineCount = 1;
             line += 1;
             for (let at = 0; at < cells.length; at++) {
               const cell = cells[at];
               line += lineEndsIn(cell);
               cells[at] = trimCell(cell);
+              // Not the line end before the end of the file, which an open quotation mark holds too.
+              lineCount += lineEndsIn(cells[at]);
             }
-            if (faulty.has(index)) handler.quoteFault(startLine);
+            if (faulty.has(index)) handler.quoteFault(startLine, lineCount);
             else if (isBlank(cells)) continue;
             else if (headerSeen) handler.row(cells, startLine);
             else {

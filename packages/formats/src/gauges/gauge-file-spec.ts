@@ -1,4 +1,4 @@
-import { InputError } from "@rainreckon/core";
+import { InputError, MM_PER_INCH } from "@rainreckon/core";
 import { Duration } from "luxon";
 import type { DstRule } from "./zone-clock.ts";
 
@@ -50,7 +50,6 @@ export type Silence =
   | { readonly rule: "missing" }
   | { readonly rule: "heartbeat"; readonly heartbeatMs: number };
 
-const MM_PER_INCH = 25.4;
 const UNITS_OF_KIND: Record<GaugeKind, readonly GaugeUnit[]> = {
   increments: ["mm", "in", "tips"],
   counter: ["mm", "in", "tips"],

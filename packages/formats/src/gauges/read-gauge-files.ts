@@ -77,7 +77,7 @@ export async function readGaugeFiles(
   const pieces = new Map<string, GaugePiece[]>();
   for (const path of paths) {
     for (const track of await collector.collect(path)) {
-      const times = settleTimes(track, counts, notices);
+      const times = settleTimes(track, spec.kind !== "tips", counts, notices);
       for (const column of track.columns) {
         const sofar = pieces.get(column.id);
         if (sofar === undefined) pieces.set(column.id, [{ track, column, times }]);
@@ -194,12 +194,14 @@ class RowCollector {
         this.#counts.rows += 1;
         if (this.#hasWidth(cells, width, path, line)) reader.row(cells, line);
       },
-      quoteFault: (line) => {
-        this.#counts.rows += 1;
-        this.#counts.malformedRows += 1;
+      quoteFault: (line, lineCount) => {
+        this.#counts.rows += lineCount;
+        this.#counts.malformedRows += lineCount;
         this.#notices.tell(
           "rows with a stray quotation mark",
-          "a quotation mark is not closed, or closed within a cell: the row is left out",
+          `a quotation mark is not closed, or closed within a cell: ${
+            lineCount === 1 ? "the row is" : `${lineCount} lines from here on are`
+          } left out`,
           path,
           [line],
           'write a quotation mark within a cell as ""',

@@ -20,11 +20,18 @@ export interface SettledTimes {
  * second. In hourly data the same stamp twice running says as much. Everything else is left out.
  *
  * A file that runs from the newest row to the oldest is as good as one in order.
+ *
+ * @param coversStep - whether a row covers a step of time, and is not an instant
  */
-export function settleTimes(track: Track, counts: GaugeFileCounts, notices: FileNotices): SettledTimes {
+export function settleTimes(
+  track: Track,
+  coversStep: boolean,
+  counts: GaugeFileCounts,
+  notices: FileNotices,
+): SettledTimes {
   const epochMs = track.epochMs.view().slice();
   const visit = visitingOrder(epochMs);
-  resolveRepeatedHours(track, epochMs, visit, counts, notices);
+  resolveRepeatedHours(track, epochMs, visit, coversStep, counts, notices);
 
   const kept = visit.filter((row) => !Number.isNaN(epochMs[row]));
   let latest = Number.NEGATIVE_INFINITY;
@@ -67,6 +74,7 @@ function resolveRepeatedHours(
   track: Track,
   epochMs: Float64Array,
   visit: Uint32Array,
+  coversStep: boolean,
   counts: GaugeFileCounts,
   notices: FileNotices,
 ): void {
@@ -80,7 +88,7 @@ function resolveRepeatedHours(
   for (const run of runsOfRepeatedStamps(track, epochMs, visit)) {
     const secondPass = inOrder ? startOfSecondPass(run, track, epochMs, stepMs) : undefined;
     if (secondPass === undefined) {
-      leaveOut(run, track, epochMs, stepMs, counts, notices);
+      leaveOut(run, track, epochMs, coversStep ? stepMs : 0, counts, notices);
       continue;
     }
     counts.repeatedHourResolved += run.length;
@@ -130,7 +138,7 @@ function leaveOut(
   run: readonly number[],
   track: Track,
   epochMs: Float64Array,
-  stepMs: number,
+  reachMs: number,
   counts: GaugeFileCounts,
   notices: FileNotices,
 ): void {
@@ -138,8 +146,8 @@ function leaveOut(
   let startEpochMs = Number.POSITIVE_INFINITY;
   let endEpochMs = Number.NEGATIVE_INFINITY;
   for (const row of run) {
-    startEpochMs = Math.min(startEpochMs, epochMs[row] - Math.max(stepMs, 1));
-    endEpochMs = Math.max(endEpochMs, track.laterMs.get(row)! + stepMs);
+    startEpochMs = Math.min(startEpochMs, epochMs[row] - Math.max(reachMs, 1));
+    endEpochMs = Math.max(endEpochMs, track.laterMs.get(row)! + reachMs);
     epochMs[row] = Number.NaN;
     notices.tell(
       "stamps in an hour that the clock repeats",

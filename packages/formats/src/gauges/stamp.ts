@@ -23,7 +23,7 @@ export class StampScanner {
   /** Why the last stamp could not be read. */
   problem = "";
 
-  #lastText = "";
+  #lastText: string | undefined;
   #lastRead = false;
 
   /** Reads one stamp. @returns false where it cannot be read; `problem` then says why */

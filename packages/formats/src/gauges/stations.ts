@@ -71,8 +71,13 @@ export async function readStations(
       if (columns.name !== undefined) at.name = columnIndex(cells, columns.name, path);
       if (columns.elevation !== undefined) at.elevation = columnIndex(cells, columns.elevation, path);
     },
-    quoteFault: (line) =>
-      leftOut("rows with a stray quotation mark", "a quotation mark is not closed", line, "close it"),
+    quoteFault: (line, lineCount) =>
+      leftOut(
+        "rows with a stray quotation mark",
+        `a quotation mark is not closed, or closed within a cell, and swallows ${lineCount} lines`,
+        line,
+        'write a quotation mark within a cell as ""',
+      ),
     row: (cells, line) => {
       rows += 1;
       if (rows > MAX_STATIONS) {
