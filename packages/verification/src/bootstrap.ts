@@ -30,12 +30,11 @@ export function addCircularBlock(weights: Float64Array, start: number, length: n
 }
 
 /**
- * Intervals of confidence of scores, by resampling units in circular blocks.
+ * Scores of random samples of the same size, drawn from a sample's units in circular blocks.
  *
  * Each resample holds as many units as the sample: whole blocks from random starts, the last one cut
  * short where the block length does not divide the number of units. With blocks of length 1 this is the
- * ordinary bootstrap, for units without an order (gauges). Limits are type 7 percentiles of the scores
- * of the resamples. A score undefined in more than 5 % of the resamples has no interval, with the reason.
+ * ordinary bootstrap, for units without an order (gauges).
  *
  * Sources: Efron (1979), Annals of Statistics 7, 1-26; Politis and Romano (1992), A circular
  * block-resampling procedure for stationary data, in Exploring the Limits of Bootstrap, Wiley.
@@ -43,14 +42,15 @@ export function addCircularBlock(weights: Float64Array, start: number, length: n
  * @param evaluator - scores for given weights of the units
  * @param unitCount - number of units, at least 1
  * @param blockLength - units in a block, 1 to unitCount
- * @returns by score
+ * @returns by score: shape [samples], NaN where a resample leaves the score undefined
+ * @throws RangeError if the block length is outside its range
  */
-export function bootstrapIntervals<Name extends string>(
+export function resampledScores<Name extends string>(
   evaluator: Evaluator<Name>,
   unitCount: number,
   blockLength: number,
-  { seed, samples, level }: BootstrapSettings,
-): Record<Name, ScoreInterval> {
+  { seed, samples }: Pick<BootstrapSettings, "seed" | "samples">,
+): Record<Name, Float64Array> {
   if (!(blockLength >= 1 && blockLength <= unitCount)) {
     throw new RangeError(`a block holds 1 to ${unitCount} units, got ${blockLength}`);
   }
@@ -68,7 +68,22 @@ export function bootstrapIntervals<Name extends string>(
     evaluator.evaluate(weights, out);
     for (let k = 0; k < names.length; k++) scores[k][sample] = out[k];
   }
-  const entries = names.map((name, k) => [name, limits(scores[k], level)]);
+  return Object.fromEntries(names.map((name, k) => [name, scores[k]])) as Record<Name, Float64Array>;
+}
+
+/**
+ * Intervals of confidence of scores: type 7 percentiles of {@link resampledScores}.
+ *
+ * A score undefined in more than 5 % of the resamples has no interval, with the reason.
+ */
+export function bootstrapIntervals<Name extends string>(
+  evaluator: Evaluator<Name>,
+  unitCount: number,
+  blockLength: number,
+  settings: BootstrapSettings,
+): Record<Name, ScoreInterval> {
+  const scores = resampledScores(evaluator, unitCount, blockLength, settings);
+  const entries = evaluator.names.map((name) => [name, limits(scores[name], settings.level)]);
   return Object.fromEntries(entries) as Record<Name, ScoreInterval>;
 }
 

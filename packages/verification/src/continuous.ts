@@ -48,7 +48,8 @@ const SQUARED = 4;
 const GAUGE_SQUARED = 5;
 const RADAR_SQUARED = 6;
 const PRODUCT = 7;
-const SUMS = 8;
+const ERROR_SQUARED = 8;
+const SUMS = 9;
 
 /** The same scores for any weights of the units. */
 export function additiveEvaluator(pairs: DepthPairs, units: Units): Evaluator<AdditiveScoreName> {
@@ -71,6 +72,7 @@ export function additiveEvaluator(pairs: DepthPairs, units: Units): Evaluator<Ad
     byUnit[at + GAUGE_SQUARED] += gauge * gauge;
     byUnit[at + RADAR_SQUARED] += radar * radar;
     byUnit[at + PRODUCT] += gauge * radar;
+    byUnit[at + ERROR_SQUARED] += (radar - gauge) ** 2;
   }
   const spearman = rankCorrelator(gaugeMm, radarMm);
   const pairWeights = new Float64Array(gaugeMm.length);
@@ -111,6 +113,7 @@ function additiveFromSums(
   const rootMeanSquareErrorMm = Math.sqrt(meanSquare);
   const gaugeSpread = centred(sums[GAUGE_SQUARED], sums[GAUGE], n);
   const radarSpread = centred(sums[RADAR_SQUARED], sums[RADAR], n);
+  const errorSpread = centred(sums[ERROR_SQUARED], sums[RADAR] - sums[GAUGE], n);
   const covariation = sums[PRODUCT] - quotient(sums[GAUGE] * sums[RADAR], n);
   const pearsonCorrelation = quotient(covariation, Math.sqrt(gaugeSpread * radarSpread));
   const variationGauge = quotient(Math.sqrt(gaugeSpread), sumGauge);
@@ -124,8 +127,7 @@ function additiveFromSums(
     meanAbsoluteErrorMm: quotient(sums[ABSOLUTE], n),
     relativeMeanAbsoluteError: quotient(sums[ABSOLUTE], sumGauge),
     rootMeanSquareErrorMm,
-    // Rounding may leave a hair below 0 where every error is the same.
-    errorSpreadMm: Math.sqrt(Math.max(0, meanSquare - meanErrorMm ** 2)),
+    errorSpreadMm: Math.sqrt(quotient(errorSpread, n)),
     fractionalStandardError: quotient(rootMeanSquareErrorMm, meanGauge),
     pearsonCorrelation,
     spearmanCorrelation: Number.NaN,
