@@ -1,10 +1,13 @@
 import { spawnSync } from "node:child_process";
-import { mkdtempSync } from "node:fs";
+import { existsSync, mkdtempSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 
 /** For tests: true where the tools of others must be there, so that their absence is a failure. */
 export const FOREIGN_TOOLS = process.env.RAINRECKON_FOREIGN_TOOLS === "1";
+
+/** For tests: true where the system has a device that is always full. */
+export const FULL_DEVICE = existsSync("/dev/full");
 
 /** For tests: what a tool prints. @throws Error when it is not installed or does not succeed */
 export function outputOf(tool: string, args: readonly string[], input = ""): string {

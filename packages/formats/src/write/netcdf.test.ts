@@ -4,6 +4,7 @@ import { join } from "node:path";
 import { afterEach, expect, test, vi } from "vitest";
 import {
   FOREIGN_TOOLS,
+  FULL_DEVICE,
   lonLatByProj,
   outputOf,
   PROJECTIONS,
@@ -117,7 +118,9 @@ test("a write that fails alone, whichever one, ends the file with one clear faul
 });
 
 test("after a fault the file is let go of: further calls say the same, and no descriptor stays open", async () => {
-  const descriptors = () => fs.readdirSync("/proc/self/fd").length;
+  // Where the system keeps no such list, only the first half is seen.
+  const list = "/proc/self/fd";
+  const descriptors = () => (fs.existsSync(list) ? fs.readdirSync(list).length : 0);
   await writeAll(join(folder, "warm.nc"));
   const before = descriptors();
   for (let time = 0; time < 5; time++) {
@@ -134,8 +137,11 @@ test("after a fault the file is let go of: further calls say the same, and no de
   expect(descriptors()).toBe(before);
 });
 
-test("a device that is always full, a missing folder, a folder in the file's place", async () => {
+test.skipIf(!FULL_DEVICE)("a device that is always full is a failure midway", async () => {
   await expect(createTotalsFile("/dev/full", spec())).rejects.toMatchObject({ kind: "midway" });
+});
+
+test("a missing folder, or a folder in the file's place, is wrong usage", async () => {
   await expect(createTotalsFile(join(folder, "no", "a.nc"), spec())).rejects.toMatchObject({ kind: "usage" });
   await expect(createTotalsFile(folder, spec())).rejects.toMatchObject({ kind: "usage", where: folder });
 });
@@ -289,13 +295,23 @@ function depthsByGdal({ raster, places }: PlacedFile): number[] {
 test.skipIf(!FOREIGN_TOOLS).each(Object.entries(PROJECTIONS))(
   "GDAL finds the one wet cell by longitude and latitude: %s (RAINRECKON_FOREIGN_TOOLS=1)",
   async (name, projString) => {
-    const file = await placedFile(name, projString);
-    expect(depthsByGdal(file)).toEqual([43.75, 7.25]);
-    if (/towgs84|sterea/.test(projString)) return;
-    // What CF itself can say must do without the text that is not CF.
-    const script = "import h5py, sys; del h5py.File(sys.argv[1], 'r+')['crs'].attrs['spatial_ref']";
-    outputOf("/usr/bin/python3", ["-c", script, file.raster]);
-    expect(depthsByGdal(file)).toEqual([43.75, 7.25]);
+    expect(depthsByGdal(await placedFile(name, projString))).toEqual([43.75, 7.25]);
+  },
+);
+
+test.skipIf(!FOREIGN_TOOLS)(
+  "and finds it by what CF alone can say, without the text that is not CF (RAINRECKON_FOREIGN_TOOLS=1)",
+  async () => {
+    const files: PlacedFile[] = [];
+    for (const [name, projString] of Object.entries(PROJECTIONS)) {
+      if (!/towgs84|sterea/.test(projString)) files.push(await placedFile(`${name}, CF alone`, projString));
+    }
+    const script = `
+import h5py, sys
+for path in sys.argv[1:]:
+    with h5py.File(path, 'r+') as f: del f['crs'].attrs['spatial_ref']`;
+    outputOf("/usr/bin/python3", ["-c", script, ...files.map((file) => file.raster)]);
+    for (const file of files) expect(depthsByGdal(file), file.raster).toEqual([43.75, 7.25]);
   },
 );
 
