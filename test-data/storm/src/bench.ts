@@ -100,7 +100,7 @@ class Scene {
 
   constructor(seed: number, sweeps: number, rays: number, gates: number) {
     const random = new RandomStream(seed);
-    this.#texture = wrappedTexture(random, [64, 32, 16, 8], 0.6);
+    this.#texture = wrappedTexture(random, [64, 32, 16, 8, 4, 2], 0.7);
     this.#noise = noiseTable(random);
     this.#sweeps = sweeps;
     this.#rays = rays;
@@ -145,9 +145,9 @@ class Scene {
         const km = ground[gate]!;
         const pattern = this.#patternAt(km * east, km * north, field);
         // Higher sweeps look into thinner echo.
-        const above = pattern - this.#dryBelow - 0.05 * (elevationDeg - 0.5);
+        const above = pattern - this.#dryBelow - 0.02 * (elevationDeg - 0.5);
         if (above <= 0) continue;
-        const dbz = 12 + 14 * above + 1.6 * this.#noise[dice++ & (NOISE_LENGTH - 1)]!;
+        const dbz = 12 + 14 * above + 2.5 * this.#noise[dice++ & (NOISE_LENGTH - 1)]!;
         stored[ray * this.#gates + gate] = Math.max(1, Math.min(254, Math.round((dbz - OFFSET) / GAIN)));
       }
     }

@@ -75,7 +75,7 @@ const MOOR_RADAR: RadarPlan = {
   reflectivityStorage: "uint16",
   noiseDbzAt1Km: -40,
   calibrationOffsetDb: 1.5,
-  lossDbPerDeg: 0.08,
+  lossDbPerDeg: 0.06,
   differentialLossDbPerDeg: 0.016,
   systemPhaseDeg: 65,
   clutterSeed: 23,

@@ -176,17 +176,40 @@ function meetTerrain(radar: RadarPlan, geometry: SweepGeometry, ray: number, rid
   let blocked = 0;
   for (let gate = 0; gate < radar.gateCount; gate++) {
     const index = ray * radar.gateCount + gate;
-    const rangeKm = rangeKmOf(radar, gate);
-    const radiusM = rangeKm * radar.beamWidthDeg * DEG * 500;
-    const groundM = terrainM(geometry.xKm[index]!, geometry.yKm[index]!, ridges);
-    const edge = (groundM - geometry.heightKm[gate]! * 1000) / radiusM;
-    blocked = Math.max(blocked, blockedShare(edge));
+    const hidden = blocked;
+    const hillside = hillsideShare(radar, geometry, ridges, index, gate);
+    blocked = Math.max(blocked, hillside);
     geometry.open[index] = 1 - blocked;
-    const clutter = clutterAt(radar, geometry.elevationDeg, ray, gate, rangeKm, edge);
+    const clutter = clutterAt(radar, geometry.elevationDeg, ray, gate, hillside);
     // What is behind a ridge is hidden from the radar, clutter too.
-    geometry.clutterZ[index] = clutter.z * (1 - blocked + blockedShare(edge));
+    geometry.clutterZ[index] = clutter.z * (1 - hidden);
     geometry.residualClutterZ[index] = geometry.clutterZ[index]! * clutter.left;
   }
+}
+
+/** Share of the beam that the ground within a gate cuts off: a crest may lie between the gates' middles. */
+function hillsideShare(
+  radar: RadarPlan,
+  geometry: SweepGeometry,
+  ridges: readonly Ridge[],
+  index: number,
+  gate: number,
+): number {
+  const steps = Math.ceil(radar.gateM / 200);
+  const middleKm = rangeKmOf(radar, gate);
+  let share = 0;
+  for (let step = 0; step < steps; step++) {
+    const rangeKm = middleKm + ((step + 0.5) / steps - 0.5) * (radar.gateM / 1000);
+    const along = rangeKm / middleKm;
+    const groundM = terrainM(
+      radar.xKm + along * (geometry.xKm[index]! - radar.xKm),
+      radar.yKm + along * (geometry.yKm[index]! - radar.yKm),
+      ridges,
+    );
+    const centreM = beamPosition(rangeKm, geometry.elevationDeg).heightKm * 1000 + radar.antennaHeightM;
+    share = Math.max(share, blockedShare((groundM - centreM) / (rangeKm * radar.beamWidthDeg * DEG * 500)));
+  }
+  return share;
 }
 
 /** Clutter in patches of 3 rays by 2 gates: a hash of the place decides, so it never changes. */
@@ -195,13 +218,11 @@ function clutterAt(
   elevationDeg: number,
   ray: number,
   gate: number,
-  rangeKm: number,
-  edge: number,
+  hillside: number,
 ): { z: number; left: number } {
   const patch = mixBits(radar.clutterSeed + Math.floor(ray / 3) * 7919 + Math.floor(gate / 2) * 104729);
   const own = mixBits(patch + ray * 31 + gate);
-  const hillside = blockedShare(edge);
-  const chance = Math.max(hillside > 0.02 ? 0.95 : 0, 0.4 * Math.exp(-rangeKm / 9));
+  const chance = Math.max(hillside > 0.02 ? 0.95 : 0, 0.4 * Math.exp(-rangeKmOf(radar, gate) / 9));
   if (patch / 2 ** 32 >= chance) return { z: 0, left: 0 };
   const steepnessDb = hillside > 0.02 ? 20 + 10 * Math.log10(hillside) : 0;
   const heightLossDb = 11 * (elevationDeg - 0.5);
