@@ -2,6 +2,7 @@ import { displayText } from "./display-text.ts";
 import type { FileNotices } from "./file-notices.ts";
 import { place } from "./file-notices.ts";
 import type { GaugeFileCounts } from "./gauge-file-counts.ts";
+import { indices, pick } from "./picking.ts";
 import type { SettledTimes } from "./settle-times.ts";
 import type { Track, TrackColumn } from "./track.ts";
 
@@ -14,7 +15,7 @@ export interface GaugeRows {
   readonly quality: Uint8Array;
   readonly line: Float64Array;
   /** Shape [n]: which of `paths`. */
-  readonly pathIndex: Uint16Array;
+  readonly pathIndex: Float64Array;
   readonly paths: readonly string[];
   readonly decimals: number;
   readonly uncertain: Track["uncertain"];
@@ -43,9 +44,9 @@ export function joinPieces(
   const total = pieces.reduce((sum, piece) => sum + piece.times.rows.length, 0);
   const epochMs = new Float64Array(total);
   const values = new Float64Array(total);
-  const quality = new Uint8Array(total);
+  const quality = new Float64Array(total);
   const line = new Float64Array(total);
-  const pathIndex = new Uint16Array(total);
+  const pathIndex = new Float64Array(total);
   let filled = 0;
   for (const { track, column, times } of pieces) {
     const pieceValues = column.values.view();
@@ -63,7 +64,7 @@ export function joinPieces(
     }
   }
 
-  const order = Uint32Array.from(epochMs, (_, index) => index);
+  const order = indices(total);
   if (!isAscending(epochMs)) order.sort((a, b) => epochMs[a] - epochMs[b] || a - b);
   let kept = 0;
   for (let index = 0; index < total; index++) {
@@ -99,11 +100,11 @@ export function joinPieces(
   const chosen = order.subarray(0, kept);
   return {
     id,
-    epochMs: Float64Array.from(chosen, (row) => epochMs[row]),
-    values: Float64Array.from(chosen, (row) => values[row]),
-    quality: Uint8Array.from(chosen, (row) => quality[row]),
-    line: Float64Array.from(chosen, (row) => line[row]),
-    pathIndex: Uint16Array.from(chosen, (row) => pathIndex[row]),
+    epochMs: pick(epochMs, chosen),
+    values: pick(values, chosen),
+    quality: new Uint8Array(pick(quality, chosen)),
+    line: pick(line, chosen),
+    pathIndex: pick(pathIndex, chosen),
     paths,
     decimals: pieces.reduce((most, piece) => Math.max(most, piece.column.decimals), 0),
     uncertain: pieces.flatMap((piece) => piece.track.uncertain),

@@ -112,7 +112,7 @@ export async function readGaugeFiles(
       startEpochMs: filled.startEpochMs.view().slice(),
       endEpochMs: filled.endEpochMs.view().slice(),
       depthMm: filled.depthMm.view().slice(),
-      quality: Uint8Array.from(filled.quality.view()),
+      quality: new Uint8Array(filled.quality.view()),
     };
   });
   counts.files = paths.length;

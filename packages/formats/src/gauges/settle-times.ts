@@ -1,5 +1,6 @@
 import type { FileNotices } from "./file-notices.ts";
 import type { GaugeFileCounts } from "./gauge-file-counts.ts";
+import { indices, pick, placesOfNumbers } from "./picking.ts";
 import type { Track } from "./track.ts";
 import { usualStepMs } from "./usual-step.ts";
 
@@ -33,10 +34,11 @@ export function settleTimes(
   const visit = visitingOrder(epochMs);
   resolveRepeatedHours(track, epochMs, visit, coversStep, counts, notices);
 
-  const kept = visit.filter((row) => !Number.isNaN(epochMs[row]));
+  const kept = placesOfNumbers(epochMs, visit);
   let latest = Number.NEGATIVE_INFINITY;
   let disorder = false;
-  for (const row of kept) {
+  for (let index = 0; index < kept.length; index++) {
+    const row = kept[index];
     if (epochMs[row] >= latest) {
       latest = epochMs[row];
       continue;
@@ -56,7 +58,7 @@ export function settleTimes(
     const direction = visit[0] > visit[visit.length - 1] ? -1 : 1;
     kept.sort((a, b) => epochMs[a] - epochMs[b] || direction * (a - b));
   }
-  return { rows: kept, epochMs: Float64Array.from(kept, (row) => epochMs[row]) };
+  return { rows: kept, epochMs: pick(epochMs, kept) };
 }
 
 function visitingOrder(epochMs: Float64Array): Uint32Array {
@@ -66,7 +68,7 @@ function visitingOrder(epochMs: Float64Array): Uint32Array {
     if (epochMs[row] > epochMs[row - 1]) rises++;
     else if (epochMs[row] < epochMs[row - 1]) falls++;
   }
-  const order = Uint32Array.from(epochMs, (_, row) => row);
+  const order = indices(epochMs.length);
   return falls > rises ? order.reverse() : order;
 }
 
@@ -79,10 +81,9 @@ function resolveRepeatedHours(
   notices: FileNotices,
 ): void {
   if (track.laterMs.size === 0) return;
-  const certain = Float64Array.from(
-    visit.filter((row) => !track.laterMs.has(row)),
-    (row) => epochMs[row],
-  );
+  const certainMs = epochMs.slice();
+  for (const row of track.laterMs.keys()) certainMs[row] = Number.NaN;
+  const certain = pick(certainMs, placesOfNumbers(certainMs, visit));
   const inOrder = certain.every((time, index) => index === 0 || time >= certain[index - 1]);
   const stepMs = usualStepMs(certain) ?? 0;
   for (const run of runsOfRepeatedStamps(track, epochMs, visit)) {
