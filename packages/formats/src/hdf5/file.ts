@@ -118,6 +118,7 @@ class OpenFile implements Hdf5File {
   readonly #full: string;
   readonly #id: bigint;
   readonly #attributeNames = new Map<string, ReadonlySet<string>>();
+  readonly #datasets = new Map<string, Metadata>();
   #heapsChecked = false;
   #open = true;
 
@@ -199,8 +200,14 @@ class OpenFile implements Hdf5File {
 
   #datasetMetadata(dataset: string): Metadata | undefined {
     this.#mustBeOpen();
+    const known = this.#datasets.get(dataset);
+    if (known !== undefined) return known;
     try {
-      return callLibrary(this.#full, (library) => library.get_dataset_metadata(this.#id, dataset));
+      const metadata = callLibrary(this.#full, (library) =>
+        library.get_dataset_metadata(this.#id, dataset),
+      );
+      this.#datasets.set(dataset, metadata);
+      return metadata;
     } catch (error) {
       if (this.#isAbsent(dataset)) return undefined;
       throw damaged("this array cannot be opened", this.#at(dataset), error);

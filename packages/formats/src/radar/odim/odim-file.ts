@@ -150,7 +150,7 @@ function readSweepHeader(file: Hdf5File, root: Level, name: string, site: RadarS
   const { moments, remarks } = momentsOf(file, dataset, root);
   const [first] = moments.values();
   if (first === undefined) throw new InputError("the dataset holds no moment", where, "leave it out");
-  const header = sweepHeader(new LevelAttributes(file, [first.level, dataset, root]), {
+  const header = sweepHeader(new LevelAttributes(file, [aboutSweep(first.level), dataset, root]), {
     site,
     origin: { path: file.path, dataset: name },
     quantities: [...moments.keys()].sort(),
@@ -161,6 +161,11 @@ function readSweepHeader(file: Hdf5File, root: Level, name: string, site: RadarS
     moments,
     levels: [dataset, root],
   };
+}
+
+/** A data group as far as it may speak of the whole sweep: its "what" is about the moment alone. */
+function aboutSweep({ path, children }: Level): Level {
+  return { path, children: new Set([...children].filter((name) => name !== "what")) };
 }
 
 function momentsOf(
@@ -271,7 +276,7 @@ function momentNamed({ header, moments }: StoredSweep, quantity: string): Stored
 
 function raysOf(file: Hdf5File, { header, moments, levels }: StoredSweep): SortedRays {
   const [first] = moments.values();
-  const attributes = new LevelAttributes(file, first === undefined ? levels : [first.level, ...levels]);
+  const attributes = new LevelAttributes(file, first === undefined ? levels : [aboutSweep(first.level), ...levels]);
   const firstRay = attributes.number("where", "a1gate") ?? 0;
   const isRay = Number.isInteger(firstRay) && firstRay >= 0 && firstRay < header.rayCount;
   const arrays: { -readonly [K in keyof StoredRays]?: StoredRays[K] } = {};
