@@ -1,7 +1,8 @@
 import { type GaugeSeries, gaugeKey, type Pair } from "@rainreckon/core";
+import { median } from "simple-statistics";
 import { decibels, fromDecibels } from "./numbers.ts";
 import { findImpossibleReading, findSpike } from "./reading-checks.ts";
-import { findUnitMistake, isNearOne, type Reference, referenceOf, unitMistakes } from "./unit-checks.ts";
+import { findUnitMistake, isNearOne, referenceOf, unitMistakes } from "./unit-checks.ts";
 
 /** Radar depth over the window from which a gauge can be judged by it. */
 const JUDGE_MM = 5;
@@ -218,9 +219,18 @@ function doubtOfUnit(gauge: GaugeEvidence, others: readonly GaugeEvidence[]): Do
     [others, "other gauges"],
     [elsewhere, "gauges of other networks"],
   ] as const) {
-    const reference = referenceAmong(peers);
-    if (reference === undefined) continue;
-    const found = findUnitMistake(ratioDb(whole), intervalRatios, reference, mistakes);
+    const wet = peers.filter((peer) => peer.whole.radarMm >= JUDGE_MM && peer.whole.gaugeMm > 0);
+    if (wet.length < LEAST_REFERENCES) continue;
+    const reference = referenceOf(wet.map((peer) => ratioDb(peer.whole)));
+    const found = findUnitMistake(
+      {
+        ratioDb: ratioDb(whole),
+        intervalRatiosDb: intervalRatios,
+        depthDb: decibels(whole.gaugeMm / median(wet.map((peer) => peer.whole.gaugeMm))),
+      },
+      reference,
+      mistakes,
+    );
     if (found === undefined) continue;
     const cause = `unit looks wrong: ${found.mistakes.map((mistake) => mistake.words).join(", or ")}`;
     const middle = fromDecibels(reference.medianDb).toFixed(2);
@@ -228,11 +238,6 @@ function doubtOfUnit(gauge: GaugeEvidence, others: readonly GaugeEvidence[]): Do
     return [cause, evidence];
   }
   return undefined;
-}
-
-function referenceAmong(peers: readonly GaugeEvidence[]): Reference | undefined {
-  const wet = peers.filter(({ whole }) => whole.radarMm >= JUDGE_MM && whole.gaugeMm > 0);
-  return wet.length < LEAST_REFERENCES ? undefined : referenceOf(wet.map(({ whole }) => ratioDb(whole)));
 }
 
 function withOverride(judgement: Judgement, override: GaugeOverride | undefined): GaugeVerdict {
