@@ -24,3 +24,4 @@ export type {
 export { palettePng, type Rgba } from "./map/png.ts";
 export { renderReport } from "./report.ts";
 export { escapeText, html, type Insert, Markup } from "./text/html.ts";
+export { WORDED_SCORES } from "./text/score-words.ts";

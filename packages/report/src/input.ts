@@ -145,6 +145,8 @@ export interface RelationFigure {
 /** A score with what its words need. */
 export interface ReportScore {
   readonly score: Score;
+  /** The trade's name, printed where the report has no sentence for the score. */
+  readonly title?: string;
   /** For scores of yes and no: the depth from which it counts as rain. */
   readonly thresholdMm?: number;
 }

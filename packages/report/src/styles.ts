@@ -32,7 +32,7 @@ const BASE = `:root{color-scheme:light dark;--page:#fbfaf8;--panel:#fff;--ink:#1
 *{box-sizing:border-box}
 html{-webkit-text-size-adjust:100%;text-size-adjust:100%}
 body{margin:0;background:var(--page);color:var(--ink);font:16px/1.5 ${FONT};font-variant-numeric:tabular-nums;overflow-wrap:anywhere}
-header,main,footer,.contents{max-width:1180px;margin:0 auto;padding:0 24px}
+header,main,footer{max-width:1180px;margin:0 auto;padding:0 24px}
 header{padding-top:36px}
 section{margin:56px 0 0;min-width:0}
 h1{font-size:1.7rem;line-height:1.2;font-weight:650;letter-spacing:-.01em;margin:0}
@@ -49,7 +49,7 @@ a{color:var(--accent)}
 .standing{display:flex;flex-wrap:wrap;align-items:center;gap:4px 16px;margin:0;font-size:.9rem;color:var(--soft)}
 .badge{border:1.5px solid currentColor;border-radius:4px;padding:1px 9px;font-weight:650;font-size:.8rem;color:var(--warn)}
 .badge.final{color:var(--final)}
-.headline{font-size:1.32rem;line-height:1.45;margin:22px 0 20px;max-width:62ch}
+.headline{font-size:1.32rem;line-height:1.45;margin:22px 0 20px;max-width:74ch}
 .headline .aside{font-size:1rem}
 .headline strong{font-weight:700;white-space:nowrap}
 .trust{display:grid;grid-template-columns:repeat(4,1fr);gap:0;margin:0;border:1px solid var(--line);border-radius:8px;background:var(--panel)}
@@ -61,7 +61,7 @@ a{color:var(--accent)}
 .trust span{display:block;font-size:.85rem;line-height:1.4;color:var(--soft)}
 .cautions{margin:18px 0 0;padding:12px 18px;border:1px solid var(--warn-line);border-left-width:4px;border-radius:8px;background:var(--warn-bg)}
 .cautions h2{font-size:1rem;margin:0 0 4px;color:var(--warn)}
-.cautions ol,.cautions p{margin:0;padding-left:20px}
+.cautions ol,.cautions p{margin:0;padding-left:20px;max-width:110ch}
 .cautions li{margin:3px 0}
 .cautions p{padding-left:0;margin-top:6px;font-size:.9rem}
 .cautions strong,#limits strong{font-weight:600}
@@ -71,20 +71,20 @@ a{color:var(--accent)}
 .map-block{border:0;margin:0;padding:0;min-width:0}
 .map-block>legend{float:left;padding:0;margin-right:14px;color:var(--soft);font-size:.9rem}
 .map-block>input{margin:0 6px 0 0;vertical-align:-1px;accent-color:var(--accent)}
-.map-block>label{margin-right:18px;font-size:.9rem}
+.map-block>label{margin-right:18px;font-size:.9rem;display:inline-block;max-width:calc(100% - 40px)}
 .map-body{clear:both;margin-top:12px;display:grid;grid-template-columns:minmax(0,1fr) 230px;gap:24px}
 .map-sheet{background:#fdfdfb;border:1px solid var(--line);border-radius:8px;padding:6px;align-self:start}
 .map-side h3{margin:0 0 6px;display:flex;justify-content:space-between;gap:8px}
-.map-side h3 span{font-weight:400;color:var(--soft);text-align:right}
+.map-side h3 span{white-space:nowrap;font-weight:400;color:var(--soft);text-align:right}
 .map-side p{font-size:.85rem;color:var(--soft);margin:8px 0 14px}
 .layer,.legend{display:none}
 .legend ul,.places-legend,.key,.tally{list-style:none;margin:0;padding:0}
 .legend li,.places-legend li{display:flex;align-items:center;gap:8px;font-size:.88rem;line-height:1.65}
 .places-legend{border-top:1px solid var(--line);padding-top:10px}
 .legend .swatch{background:#fdfdfb}
-.swatch{flex:none;vertical-align:-2px;overflow:visible}
+.swatch{flex:none;max-width:none;vertical-align:-2px;overflow:visible}
 .swatch-frame{stroke:#8b9297;stroke-width:1}
-.key .swatch-frame{fill:none}
+.swatch-frame.hollow{fill:none}
 svg{display:block;max-width:100%}
 svg.map,svg.chart{width:100%;height:auto}
 svg.swatch{display:inline-block}
@@ -130,7 +130,8 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .equal{stroke:var(--ink);stroke-width:1.4;fill:none}
 .factor{stroke:var(--soft);stroke-width:1.2;stroke-dasharray:5 4;fill:none}
 .multiples{display:grid;grid-template-columns:repeat(auto-fill,minmax(min(100%,320px),1fr));gap:22px 28px;margin-top:14px}
-.multiple figcaption{display:flex;flex-wrap:wrap;justify-content:space-between;gap:0 10px;margin:0 0 2px}
+.multiple figcaption{margin:0 0 2px}
+.multiple span{display:block}
 .multiple b{color:var(--ink);font-weight:600}
 .key,.tally{display:flex;flex-wrap:wrap;gap:2px 20px;font-size:.85rem;color:var(--soft)}
 .key li{display:flex;align-items:center;gap:7px}
@@ -142,12 +143,14 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .step-line.radar{stroke:var(--radar)}
 .step-line.adjusted{stroke:var(--adjusted)}
 .step-line.gauge{stroke:var(--gauge)}
-.scroll{overflow:auto;max-width:100%;border:1px solid var(--line);border-radius:8px;background:var(--panel);overflow-wrap:normal}
-.scroll.tall{max-height:560px}
+.scroll{position:relative;overflow:auto;max-width:100%;border:1px solid var(--line);border-radius:8px;background:var(--panel);overflow-wrap:normal}
+.scroll.tall{max-height:480px}
+.beside .tall{max-height:1060px}
 table{border-collapse:collapse;width:100%;font-size:.88rem;line-height:1.4}
 caption{text-align:left;padding:9px 12px;font-size:.85rem}
 th,td{text-align:left;vertical-align:top;padding:6px 12px;border-top:1px solid var(--line);font-weight:400}
-thead th{font-size:.8rem;color:var(--soft);font-weight:600;vertical-align:bottom;white-space:nowrap}
+thead th{font-size:.8rem;color:var(--soft);font-weight:600;vertical-align:bottom}
+thead .number{white-space:normal}
 .tall thead th{position:sticky;top:0;background:var(--panel);box-shadow:inset 0 -1px var(--line)}
 .number{text-align:right;white-space:nowrap}
 .main,.id{font-weight:650}
@@ -156,7 +159,7 @@ thead th{font-size:.8rem;color:var(--soft);font-weight:600;vertical-align:bottom
 .words{min-width:16ch;overflow-wrap:anywhere}
 .scores th[scope=row]{min-width:24ch}
 .scores td{min-width:16ch}
-.role{white-space:nowrap}
+.role,.name{white-space:nowrap}
 .role .swatch{margin-right:6px}
 .mark{font-size:.75rem;font-weight:600;color:var(--warn);border:1px solid var(--warn-line);border-radius:3px;padding:0 4px;white-space:nowrap}
 .missing{color:var(--soft)}
@@ -174,7 +177,7 @@ thead th{font-size:.8rem;color:var(--soft);font-weight:600;vertical-align:bottom
 summary{cursor:pointer;font-size:.85rem;color:var(--accent);padding:4px 0;width:fit-content}
 footer{margin-top:56px;padding-top:14px;padding-bottom:36px;font-size:.85rem;color:var(--soft)}
 @media (max-width:900px){.map-body,.beside{grid-template-columns:minmax(0,1fr)}.trust{grid-template-columns:1fr 1fr}.trust div:nth-child(3){border-left:0}.trust div:nth-child(n+3){border-top:1px solid var(--line)}.legend ul,.places-legend{display:flex;flex-wrap:wrap;gap:0 18px}}
-@media (max-width:560px){header,main,footer,.contents{padding-left:16px;padding-right:16px}header{padding-top:22px}section{margin-top:44px}h1{font-size:1.4rem}.headline{font-size:1.14rem}.trust div{padding:10px 12px}.map-block>legend{float:none;margin-bottom:2px}.map-sheet{margin:0 -8px;padding:2px}svg.map text{font-size:22px}.map .gauge-label{display:none}.map .catchment-names text{font-size:22px}.map .radar-label{font-size:20px}.scatter text{font-size:14px}.facts div{grid-template-columns:1fr;gap:0}}`;
+@media (max-width:560px){header,main,footer{padding-left:16px;padding-right:16px}header{padding-top:22px}section{margin-top:44px}h1{font-size:1.4rem}.headline{font-size:1.14rem}.trust div{padding:10px 12px}.map-block>legend{float:none;margin-bottom:2px}.map-block>input{float:left;clear:left;margin-top:5px}.map-block>label{display:block;margin-left:24px;line-height:1.75}.map-sheet{margin:0 -8px;padding:2px}svg.map text{font-size:22px}.map .gauge-label,.map .axis-title{display:none}.map .gauge>*,.map .radar>*{transform:scale(1.7)}.map .catchment-names text{font-size:22px}.map .radar-label{font-size:20px}.scatter text{font-size:14px}.facts div{grid-template-columns:1fr;gap:0}}`;
 
 const PRINT = `@media print{:root{color-scheme:light;--page:#fff;--panel:#fff;--ink:#111;--soft:#444;--line:#c9c9c9;--accent:#111;--warn:#6b3a05;--warn-bg:#fff;--warn-line:#b98436;--gauge:#2f6f86;--radar:#c4620a;--adjusted:#8b3f7f;--hatch:#8e9498;--final:#1f6b45}
 body{font-size:9.5pt;line-height:1.4;-webkit-print-color-adjust:exact;print-color-adjust:exact}
@@ -189,11 +192,15 @@ h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
 .trust div:first-child{border-left:0}
 .trust b{font-size:11pt}
 .cautions{padding:6pt 10pt;margin-top:9pt;break-inside:avoid}
-#map{margin-top:12pt}
-.map-body{grid-template-columns:minmax(0,1fr) 128pt;gap:12pt;margin-top:4pt;break-inside:avoid}
-.map-side p{font-size:8pt}
+#map{margin-top:10pt;break-inside:avoid}
+.lead,.key,caption,thead,tbody tr:first-child{break-after:avoid}
+p,li{break-inside:avoid}
+.map-body{grid-template-columns:minmax(0,1fr) 112pt;gap:10pt;margin-top:2pt}
+.map-side p{font-size:7pt;margin:3pt 0 5pt}
+.map-side h3{font-size:9pt;margin:0 0 2pt}
+.places-legend{padding-top:4pt}
 .legend ul,.places-legend{display:block}
-.legend li,.places-legend li{font-size:8.5pt;line-height:1.5}
+.legend li,.places-legend li{font-size:7.5pt;line-height:1.35;gap:5pt}
 .beside{display:block}
 .beside>div:first-child{display:grid;grid-template-columns:1fr 1fr;gap:14pt;break-inside:avoid;margin-bottom:10pt}
 .beside figure+figure{margin-top:0}
@@ -203,6 +210,6 @@ h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
 .tall thead th{position:static;box-shadow:none}
 thead{display:table-header-group}
 table{font-size:8.5pt}
-th,td,caption{padding:3pt 6pt 3pt 0}
-.words{min-width:0}.scores th[scope=row],.scores td{min-width:0}
+th,td,caption{padding:3pt 8pt 3pt 0}
+.words{min-width:13ch}.scores th[scope=row],.scores td{min-width:0}
 .glossary{grid-template-columns:1fr 1fr}}`;

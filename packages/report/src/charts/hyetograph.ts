@@ -79,7 +79,7 @@ export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm
   const floor = HEIGHT - MARGIN.bottom;
   const x = (step: number) => MARGIN.left + (innerWidth * step) / Math.max(1, count);
   const y = (mm: number) => floor - ((floor - MARGIN.top) * mm) / topMm;
-  const times = timeTicks(window, zone, 6);
+  const times = timeTicks(window, zone, 4);
   const sums = graph.sides.map((side) => {
     const sum = observedSumMm(side);
     return `${SIDE_WORDS[side.role]} ${Number.isNaN(sum) ? "not observed" : `${mmText(sum)} mm`}`;

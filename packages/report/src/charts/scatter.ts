@@ -16,7 +16,7 @@ export interface ScatterPoint {
 }
 
 const SIDE = 440;
-const MARGIN = { left: 56, right: 16, top: 16, bottom: 48 };
+const MARGIN = { left: 56, right: 40, top: 24, bottom: 48 };
 const LABEL_PX = 11;
 /** Round depths on both axes; those that a square-root axis leaves room for are drawn. */
 const TICKS_MM = [0, 1, 2, 5, 10, 20, 40, 60, 80, 100, 150, 200, 300, 400, 600, 800, 1200, 1600, 2400];
@@ -60,7 +60,7 @@ export function svgScatter(
   return html`<svg class="chart scatter" role="img" aria-labelledby="${id}-title ${id}-desc" viewBox="0 0 ${SIDE} ${height}"><title id="${id}-title">${title}</title><desc id="${id}-desc">${points.length} gauges on square-root axes. Above the line of equality radar saw more than the gauge. The numbers are in the table of gauges.</desc><g class="axis">${ticksMm.map(
     (mm) =>
       html`<path class="grid-line" d="M${svgNumber(across(mm))} ${MARGIN.top}V${bottom}M${MARGIN.left} ${svgNumber(upwards(mm))}H${right}"/><text x="${svgNumber(across(mm))}" y="${bottom + 18}" text-anchor="middle">${mm}</text><text x="${MARGIN.left - 8}" y="${svgNumber(upwards(mm) + 4)}" text-anchor="end">${mm}</text>`,
-  )}<rect class="frame" x="${MARGIN.left}" y="${MARGIN.top}" width="${inner}" height="${inner}"/><text x="${MARGIN.left + inner / 2}" y="${height - 8}" text-anchor="middle">gauge, mm</text><text transform="translate(14 ${MARGIN.top + inner / 2}) rotate(-90)" text-anchor="middle">${radarAxis}</text></g><path class="equal" d="${line(1)}"/><path class="factor" d="${line(2)}${line(0.5)}"/><g class="line-names"><text x="${svgNumber(across(most / 2) - 5)}" y="${MARGIN.top + 13}" text-anchor="end">2 : 1 radar/gauge</text><text x="${right - 4}" y="${svgNumber(upwards(most / 2) + 15)}" text-anchor="end">1 : 2</text><text x="${right - 18}" y="${MARGIN.top + 13}" text-anchor="end">1 : 1</text></g>${marks.map(
+  )}<rect class="frame" x="${MARGIN.left}" y="${MARGIN.top}" width="${inner}" height="${inner}"/><text x="${MARGIN.left + inner / 2}" y="${height - 8}" text-anchor="middle">gauge, mm</text><text transform="translate(14 ${MARGIN.top + inner / 2}) rotate(-90)" text-anchor="middle">${radarAxis}</text></g><path class="equal" d="${line(1)}"/><path class="factor" d="${line(2)}${line(0.5)}"/><g class="line-names"><text x="${svgNumber(across(most / 2))}" y="${MARGIN.top - 8}" text-anchor="middle">radar/gauge 2</text><text x="${right + 6}" y="${svgNumber(upwards(most / 2) + 4)}">½</text><text x="${right + 6}" y="${MARGIN.top + 4}">1 : 1</text></g>${marks.map(
     ({ role, x, y, words }) => gaugeMark(role, x, y, words),
   )}${labels.map(
     ({ text, x, y, anchor }) =>

@@ -40,6 +40,15 @@ function sample(ramp: (t: number) => string, from: number, to: number, count: nu
   );
 }
 
+/** The light end mixed with the paper, so that little rain looks little; lightness keeps its order. */
+function paled(colours: readonly Rgba[]): Rgba[] {
+  return colours.map(([r, g, b], i) => {
+    const paper = 0.6 * (1 - i / Math.max(1, colours.length - 1)) ** 2;
+    const mix = (channel: number) => Math.round(channel + (255 - channel) * paper);
+    return [mix(r), mix(g), mix(b), 255];
+  });
+}
+
 function spanLabels(edges: readonly number[], text: (edge: number) => string): string[] {
   return edges.map((edge, i) =>
     i + 1 < edges.length ? `${text(edge)} – ${text(edges[i + 1])}` : `≥ ${text(edge)}`,
@@ -61,11 +70,13 @@ function upperEnd(fields: readonly Float32Array[]): number {
  */
 export function depthClasses(fields: readonly Float32Array[]): ColourClasses {
   const round = ticks(0, Math.max(1, upperEnd(fields)), 7).filter((edge) => edge > LEAST_DRAWN_MM);
-  const edges = [0, LEAST_DRAWN_MM, ...round];
+  // Most of a field is usually in the lowest class: it is cut once more where that leaves a round edge.
+  const low = round[0] / 5 >= 4 * LEAST_DRAWN_MM ? [round[0] / 5] : [];
+  const edges = [0, LEAST_DRAWN_MM, ...low, ...round];
   const labels = spanLabels(edges, (mm) => mmText(mm).replace(/\.0$/, ""));
   return {
     edges,
-    colours: [CLEAR, ...sample(interpolateCividis, 0.97, 0, edges.length - 1)],
+    colours: [CLEAR, ...paled(sample(interpolateCividis, 0.97, 0, edges.length - 1))],
     labels: [`none, or below ${LEAST_DRAWN_MM}`, ...labels.slice(1)],
     unit: "mm",
   };
@@ -78,7 +89,7 @@ export function fractionClasses(): ColourClasses {
     edges,
     colours: sample(interpolateMagma, 0.12, 0.97, edges.length),
     labels: ["0 – 25", "25 – 50", "50 – 75", "75 – 90", "90 – 99", "99 – 100"],
-    unit: "% observed",
+    unit: "%",
   };
 }
 

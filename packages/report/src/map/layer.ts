@@ -30,11 +30,11 @@ export interface DrawnLayer {
 }
 
 /** Each legend has a pattern of its own: one inside a hidden legend would draw nothing elsewhere. */
-function notObserved(layer: MapLayer): { swatch: Markup; label: string } {
-  const id = `legend-hatch-${layer.quantity}-${layer.id}`;
+function notObserved(layer: number): { swatch: Markup; label: string } {
+  const id = `legend-hatch-${layer}`;
   return {
     swatch: swatch(
-      html`<defs>${hatchPattern(id)}</defs><rect class="swatch-frame" x="0.5" y="0.5" width="21" height="13"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#${id})"/>`,
+      html`<defs>${hatchPattern(id)}</defs><rect class="swatch-frame hollow" x="0.5" y="0.5" width="21" height="13"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#${id})"/>`,
     ),
     label: "not observed",
   };
@@ -52,7 +52,7 @@ function cellPng(picture: Picture, classOf: (value: number) => number, colours: 
   return palettePng(indices, picture.nx, picture.ny, [CLEAR, ...colours]);
 }
 
-function drawAmounts(layer: MapLayer, picture: Picture, classes: ColourClasses): DrawnLayer {
+function drawAmounts(layer: MapLayer, index: number, picture: Picture, classes: ColourClasses): DrawnLayer {
   return {
     layer,
     picture,
@@ -60,13 +60,18 @@ function drawAmounts(layer: MapLayer, picture: Picture, classes: ColourClasses):
     overlays: [],
     legend: [
       ...classes.labels.map((label, i) => ({ swatch: colourSwatch(classes.colours[i]), label })),
-      notObserved(layer),
+      notObserved(index),
     ],
     unit: classes.unit,
   };
 }
 
-function drawRadars(layer: MapLayer, picture: Picture, radars: readonly ReportRadar[]): DrawnLayer {
+function drawRadars(
+  layer: MapLayer,
+  index: number,
+  picture: Picture,
+  radars: readonly ReportRadar[],
+): DrawnLayer {
   const overlays = radars.map((_, radar) => ({
     id: `radar-tile-${radar}`,
     category: radar,
@@ -86,9 +91,9 @@ function drawRadars(layer: MapLayer, picture: Picture, radars: readonly ReportRa
         ),
         label: radar.name === undefined || radar.name === radar.id ? radar.id : `${radar.id} · ${radar.name}`,
       })),
-      notObserved(layer),
+      notObserved(index),
     ],
-    unit: "radar that carries most weight",
+    unit: "",
   };
 }
 
@@ -105,23 +110,24 @@ export function drawLayers(
   const depths = depthClasses(
     pictures.filter((_, i) => layers[i].quantity === "depthMm").map((p) => p.values),
   );
-  return layers.map((layer, i) => drawLayer(layer, pictures[i], depths, radars));
+  return layers.map((layer, i) => drawLayer(layer, i, pictures[i], depths, radars));
 }
 
 function drawLayer(
   layer: MapLayer,
+  index: number,
   picture: Picture,
   depths: ColourClasses,
   radars: readonly ReportRadar[],
 ): DrawnLayer {
   switch (layer.quantity) {
     case "depthMm":
-      return drawAmounts(layer, picture, depths);
+      return drawAmounts(layer, index, picture, depths);
     case "fraction":
-      return drawAmounts(layer, picture, fractionClasses());
+      return drawAmounts(layer, index, picture, fractionClasses());
     case "heightM":
-      return drawAmounts(layer, picture, heightClasses(picture.values));
+      return drawAmounts(layer, index, picture, heightClasses(picture.values));
     case "radarIndex":
-      return drawRadars(layer, picture, radars);
+      return drawRadars(layer, index, picture, radars);
   }
 }

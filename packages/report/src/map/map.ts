@@ -93,7 +93,7 @@ function axes(frame: MapFrame): Markup {
   })}${upwards.map((km) => {
     const { y } = toDrawing(frame, grid.westM, km * 1000);
     return html`<path d="M${left} ${svgNumber(y)}h-5"/><path class="grid-line" d="M${left} ${svgNumber(y)}h${svgNumber(width)}"/><text x="${left - 8}" y="${svgNumber(y + 4)}" text-anchor="end">${text(km)}</text>`;
-  })}<rect class="frame" x="${left}" y="${top}" width="${svgNumber(width)}" height="${svgNumber(height)}"/><text x="${svgNumber(left + width / 2)}" y="${svgNumber(top + height + 38)}" text-anchor="middle">km east</text><text transform="translate(13 ${svgNumber(top + height / 2)}) rotate(-90)" text-anchor="middle">km north</text></g>`;
+  })}<rect class="frame" x="${left}" y="${top}" width="${svgNumber(width)}" height="${svgNumber(height)}"/><text class="axis-title" x="${svgNumber(left + width / 2)}" y="${svgNumber(top + height + 38)}" text-anchor="middle">km east</text><text class="axis-title" transform="translate(13 ${svgNumber(top + height / 2)}) rotate(-90)" text-anchor="middle">km north</text></g>`;
 }
 
 function scaleBar(frame: MapFrame): Markup {

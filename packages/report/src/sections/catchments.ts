@@ -15,7 +15,7 @@ export function catchmentSection(input: ReportInput): Markup {
   const cell = (figure: DepthFigure) => html`<td class="number">${depthCell(figure, minObserved)}</td>`;
   return html`<section id="catchments" aria-labelledby="catchments-heading"><h2 id="catchments-heading">Catchments</h2><div class="scroll" role="region" tabindex="0" aria-label="Depth by catchment"><table><caption>Mean depth over the window, mm. “≥” where less than ${percentText(minObserved)} of area and time was observed.</caption><thead><tr><th scope="col">Catchment</th><th scope="col" class="number">Depth mm</th><th scope="col" class="number">Observed</th><th scope="col" class="number">Radar mm</th><th scope="col" class="number">Adjusted mm</th><th scope="col" class="number">Wettest cell mm</th><th scope="col" class="number">Area km²</th><th scope="col">Note</th></tr></thead><tbody>${catchments.map(
     (catchment) =>
-      html`<tr><th scope="row"><span class="id">${catchment.id}</span> ${catchment.name}</th><td class="number main">${depthCell(catchment.depth, minObserved)}</td><td class="number">${percentText(catchment.depth.observedFraction)}</td>${cell(catchment.radar)}${
+      html`<tr><th scope="row"><span class="id">${catchment.name}</span><span class="sub">${catchment.id}</span></th><td class="number main">${depthCell(catchment.depth, minObserved)}</td><td class="number">${percentText(catchment.depth.observedFraction)}</td>${cell(catchment.radar)}${
         catchment.adjusted === undefined
           ? html`<td class="number">${missing(noAdjustment)}</td>`
           : cell(catchment.adjusted)

@@ -39,20 +39,19 @@ function roleCell(gauge: ReportGauge): Markup {
 }
 
 function gaugeHead(gauge: ReportGauge): Markup {
-  return html`<th scope="row"><span class="id">${gauge.id}</span>${
-    gauge.name !== undefined && html` ${gauge.name}`
-  }<span class="sub">${gauge.network}</span></th>`;
+  const name = gauge.name === undefined ? "" : `${gauge.name}, `;
+  return html`<th scope="row"><span class="id">${gauge.id}</span><span class="sub">${name}${gauge.network}</span></th>`;
 }
 
 function numbersTable(gauges: readonly ReportGauge[], adjusted: boolean): Markup {
   return html`<div class="scroll tall" role="region" tabindex="0" aria-label="Gauge against radar, numbers"><table><caption>Over the time that gauge and radar both observed</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col" class="number">Gauge mm</th><th scope="col" class="number">Radar mm</th><th scope="col" class="number">radar/gauge</th>${
-    adjusted && html`<th scope="col" class="number">Left-out adjusted mm</th>`
-  }<th scope="col" class="number">Time shared</th></tr></thead><tbody>${gauges.map(
+    adjusted && html`<th scope="col" class="number">Adjusted without it mm</th>`
+  }</tr></thead><tbody>${gauges.map(
     (gauge) =>
       html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td class="number">${orMissing(gauge.gaugeMm, mmText, reasonFor(gauge))}</td><td class="number">${orMissing(gauge.radarMm, mmText, reasonFor(gauge))}</td><td class="number">${ratioCell(gauge)}</td>${
         adjusted &&
         html`<td class="number">${orMissing(gauge.crossValidatedMm, mmText, "no adjusted value without this gauge")}</td>`
-      }<td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
+      }</tr>`,
   )}</tbody></table></div>`;
 }
 
@@ -65,12 +64,13 @@ export function scatterSection(input: ReportInput): Markup {
   const radar = points(gauges, (gauge) => gauge.radarMm, "radar");
   const adjusted = points(gauges, (gauge) => gauge.crossValidatedMm, "adjusted without it");
   const dropped = gauges.length - radar.length;
+  const dry = radar.filter((point) => point.gaugeMm === 0 && point.radarMm === 0).length;
   return html`<section id="gauges-radar" aria-labelledby="scatter-heading"><h2 id="scatter-heading">Gauge against radar</h2><p class="lead">Each mark is one gauge and the radar cell over it. On the solid line they agree; outside the dashed lines they differ by more than a factor of two. Both axes follow the square root, so that small depths have room and zeros still show.</p><div class="beside"><div><figure>${svgScatter(
     "scatter-radar",
     "Gauge against radar",
     "radar, mm",
     radar,
-  )}<figcaption>Radar before adjustment.${dropped > 0 && html` ${counted(dropped, "gauge")} without both depths not drawn; the reasons are in the table.`}</figcaption></figure>${
+  )}<figcaption>Radar before adjustment.${dry > 1 && ` ${counted(dry, "gauge")} without rain on either side share the corner.`}${dropped > 0 && html` ${counted(dropped, "gauge")} without both depths not drawn; the reasons are in the table.`}</figcaption></figure>${
     adjusted.length > 0 &&
     html`<figure>${svgScatter("scatter-adjusted", "Gauge against adjusted radar", "adjusted radar, mm", adjusted)}<figcaption>After adjustment, each gauge left out of the adjustment that it is held against.</figcaption></figure>`
   }</div>${numbersTable(gauges, adjusted.length > 0)}</div></section>`;
@@ -82,9 +82,9 @@ export function verdictSection(input: ReportInput): Markup {
   if (gauges.length === 0) return html``;
   const order = { doubted: 0, "left-out": 1, used: 2 };
   const sorted = [...gauges].sort((a, b) => order[a.role] - order[b.role]);
-  return html`<section id="gauges" aria-labelledby="verdict-heading"><h2 id="verdict-heading">Gauges: verdict, cause, evidence</h2><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each gauge"><table><caption>Doubted gauges first</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th><th scope="col">Radar</th><th scope="col" class="number">Range km</th></tr></thead><tbody>${sorted.map(
+  return html`<section id="gauges" aria-labelledby="verdict-heading"><h2 id="verdict-heading">Gauges: verdict, cause, evidence</h2><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each gauge"><table><caption>Doubted gauges first</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th><th scope="col">Radar</th><th scope="col" class="number">Range km</th><th scope="col" class="number">Time shared</th></tr></thead><tbody>${sorted.map(
     (gauge) =>
-      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(gauge.cause, "no cause was found or looked for")}</td><td class="words">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td>${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td></tr>`,
+      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(gauge.cause, "no cause was found or looked for")}</td><td class="words">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td class="name">${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
   )}</tbody></table></div></section>`;
 }
 

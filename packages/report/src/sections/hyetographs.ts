@@ -23,20 +23,42 @@ export function hyetographSection(input: ReportInput): Markup {
 }
 
 function chartGroup(id: string, heading: string, graphs: readonly Hyetograph[], zone: string): Markup {
-  const shown = graphs.slice(0, MOST_CHARTS).map((graph) => coarsen(graph));
+  const dry = graphs.filter(isDryThroughout);
+  const wet = graphs.filter((graph) => !isDryThroughout(graph));
+  const shown = wet.slice(0, MOST_CHARTS).map((graph) => coarsen(graph));
   const topMm = Math.max(0.5, deepestStepMm(shown));
   const minutes = [...new Set(shown.map((graph) => graph.stepMs / 60_000))];
-  const left = graphs.length - shown.length;
+  const left = wet.length - shown.length;
+  const dryLine =
+    dry.length > 0 &&
+    html`<p class="small">Dry on every side throughout, and so not drawn: ${joined(
+      dry.map(({ label }) => label),
+      ", ",
+    )}.</p>`;
+  if (shown.length === 0) return html`<h3>${heading}</h3>${dryLine}`;
   return html`<h3>${heading}</h3><p class="lead">mm per ${joined(minutes, " or ")} minutes, all on one scale. ${zone === "UTC" ? "" : `Upper row of times: ${zone}. `}${
     left > 0 && `The first ${counted(shown.length, "chart")}; ${counted(left, "more series")} not drawn. `
-  }</p>${key(shown)}<div class="multiples">${shown.map((graph, index) => chart(`${id}-chart-${index}`, graph, zone, topMm))}</div>`;
+  }</p>${key(shown)}<div class="multiples">${shown.map((graph, index) => chart(`${id}-chart-${index}`, graph, zone, topMm))}</div>${dryLine}`;
+}
+
+/** True where every step of every side was fully seen and held no rain. */
+function isDryThroughout({ sides }: Hyetograph): boolean {
+  return sides.every(
+    ({ depthMm, observedFraction }) =>
+      Array.from(depthMm).every((mm) => mm === 0) && Array.from(observedFraction).every(isSeen),
+  );
+}
+
+/** Shares a hair below one come from float32, not from a hole. */
+function isSeen(fraction: number): boolean {
+  return fraction >= 0.9995;
 }
 
 function key(graphs: readonly Hyetograph[]): Markup {
   const [first, second] = (graphs.find((graph) => graph.sides.length > 1) ?? graphs[0]).sides;
   const gap = (side: StepSeries, slant: "rising" | "falling") =>
     html`<li>${swatch(
-      html`<defs>${hatchPattern(`key-${side.role}-${slant}`, slant)}</defs><rect x="0.5" y="0.5" width="21" height="13" class="swatch-frame"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#key-${side.role}-${slant})"/>`,
+      html`<defs>${hatchPattern(`key-${side.role}-${slant}`, slant)}</defs><rect class="swatch-frame hollow" x="0.5" y="0.5" width="21" height="13"/><rect x="0.5" y="0.5" width="21" height="13" fill="url(#key-${side.role}-${slant})"/>`,
     )}${SIDE_WORDS[side.role]} not observed</li>`;
   return html`<ul class="key">${
     first &&
@@ -76,8 +98,7 @@ function stepCell(side: StepSeries, step: number): Markup {
   const mm = side.depthMm[step];
   const share = side.observedFraction[step];
   if (mm === undefined || !Number.isFinite(mm)) return missing("not observed");
-  // Shares a hair below one come from float32, not from a hole.
-  return share < 0.9995
+  return !isSeen(share)
     ? html`≥\u00a0${mmText(mm)} <span class="sub">${percentText(share)} seen</span>`
     : html`${mmText(mm)}`;
 }

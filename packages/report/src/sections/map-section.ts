@@ -51,5 +51,5 @@ function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
   return html`<p class="small">${grid.nx} × ${grid.ny} cells of ${cellKm} km. ${
     block > 1 &&
     html`Drawn thinned, ${block} × ${block} cells to one of ${block * cellKm} km: the mean of the observed ones (for radars the most frequent). Tables use every cell. `
-  }Axes: ${grid.crs}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
+  }Axes: km east and north in ${grid.crs}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
 }

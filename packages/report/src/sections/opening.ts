@@ -57,7 +57,7 @@ function wettestCatchment(input: ReportInput) {
 export function trustLine(input: ReportInput): Markup {
   return html`<dl class="trust"><div><dt>Observed</dt><dd><b>${percentText(
     input.headline.depth.observedFraction,
-  )}</b><span>of the district's area and time</span></dd></div><div><dt>Gauges</dt>${gaugeFact(
+  )}</b><span>of area and time</span></dd></div><div><dt>Gauges</dt>${gaugeFact(
     input,
   )}</div><div><dt>Adjustment</dt>${adjustmentFact(input)}</div><div><dt>Cross-validated error</dt>${errorFact(
     input,

@@ -2,7 +2,7 @@ import type { ReportInput, ReportScore } from "../input.ts";
 import { missing } from "../text/figures.ts";
 import { html, type Markup } from "../text/html.ts";
 import { counted, countText } from "../text/numbers.ts";
-import { intervalWords, scoreSubject, scoreWords } from "../text/score-words.ts";
+import { intervalWords, missingIntervalWords, scoreSubject, scoreWords } from "../text/score-words.ts";
 
 /** Scores in plain words, each with its number, count and intervals, before and after adjustment. */
 export function scoreSection(input: ReportInput): Markup {
@@ -18,7 +18,9 @@ export function scoreSection(input: ReportInput): Markup {
       (other) => other.score.name === entry.score.name && other.thresholdMm === entry.thresholdMm,
     );
     return row(entry, after, same);
-  })}</tbody></table></div></section>`;
+  })}</tbody></table></div>${missingIntervalWords(
+    [...radar, ...crossValidated].map(({ score }) => score),
+  ).map((line) => html`<p class="small">${line}</p>`)}</section>`;
 }
 
 function row(entry: ReportScore, after: boolean, same: ReportScore | undefined): Markup {

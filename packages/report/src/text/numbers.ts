@@ -17,9 +17,16 @@ export function mmText(mm: number): string {
   return mm < 0 ? `${MINUS}${digits}` : digits;
 }
 
+/** An error in mm: hundredths below 10 mm, where a mean over many pairs can tell them apart. */
+export function errorMmText(mm: number): string {
+  const digits = Math.abs(mm) < 9.995 ? Math.abs(mm).toFixed(2) : Math.abs(mm).toFixed(1);
+  return mm < 0 && Number(digits) !== 0 ? `${MINUS}${digits}` : digits;
+}
+
 /** A difference in mm with its sign. */
-export function signedMmText(mm: number): string {
-  return mm > 0 ? `+${mmText(mm)}` : mmText(mm);
+export function signedErrorMmText(mm: number): string {
+  const text = errorMmText(mm);
+  return mm > 0 && text !== "0.00" ? `+${text}` : text;
 }
 
 /** A share of 0 to 1 in per cent. "100 %" and "0 %" are said only where they are exact. */

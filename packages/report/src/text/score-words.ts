@@ -1,6 +1,6 @@
 import type { Score, ScoreInterval } from "@rainreckon/core";
 import type { ReportScore } from "../input.ts";
-import { mmText, percentText, ratioText, signedMmText } from "./numbers.ts";
+import { counted, errorMmText, mmText, percentText, ratioText, signedErrorMmText } from "./numbers.ts";
 
 /** A score as a sentence, and its number with its unit. */
 export interface ScoreWords {
@@ -10,106 +10,180 @@ export interface ScoreWords {
   readonly bound: (value: number) => string;
 }
 
-type Writer = (
-  value: number,
-  threshold: string,
-) => Omit<ScoreWords, "bound"> & { bound?: (value: number) => string };
+interface Wording {
+  /** What the score is about, for when it has no value. */
+  readonly subject: string;
+  /** The sentence for a value; `rain` is "rain" with its threshold. */
+  readonly sentence: (value: number, rain: string) => string;
+  readonly figure: (value: number) => string;
+  /** A bound of an interval, where it is not written as the bare ratio. */
+  readonly bound?: (value: number) => string;
+}
 
 /** Within half a per cent a ratio reads as equal. */
 const EQUAL = 0.005;
 
 function lessOrMore(ratio: number): string {
   if (Math.abs(ratio - 1) < EQUAL) return "Radar saw as much rain as the gauges";
-  const share = percentText(Math.abs(ratio - 1));
-  return `Radar saw ${share} ${ratio < 1 ? "less" : "more"} rain than the gauges`;
+  return `Radar saw ${percentText(Math.abs(ratio - 1))} ${ratio < 1 ? "less" : "more"} rain than the gauges`;
 }
 
-const mmBound = (value: number) => `${mmText(value)} mm`;
+const mm = (value: number) => `${errorMmText(value)} mm`;
+const signedMm = (value: number) => `${signedErrorMmText(value)} mm`;
+const radarPerGauge = (value: number) => `${ratioText(value)} radar/gauge`;
+const decibels = (value: number) => `${ratioText(value)} dB`;
 
-/** Words by the name of the score. A score without words here is printed with its definition. */
-const WRITERS: Readonly<Record<string, Writer>> = {
-  biasRatio: (value) => ({ sentence: lessOrMore(value), figure: `${ratioText(value)} radar/gauge` }),
-  biasDb: (value) => ({
-    sentence: `The same in decibels: ${value < 0 ? "radar too dry" : "radar too wet"}`,
-    figure: `${ratioText(value)} dB, radar/gauge`,
-  }),
-  meanErrorMm: (value) => ({
-    sentence: `On average a pair's radar depth is ${mmText(Math.abs(value))} mm ${value < 0 ? "below" : "above"} its gauge`,
-    figure: `${signedMmText(value)} mm, radar minus gauge`,
-    bound: (bound) => `${signedMmText(bound)} mm`,
-  }),
-  meanAbsoluteErrorMm: (value) => ({
-    sentence: "The usual miss of a pair, whichever way (mean absolute error)",
-    figure: mmBound(value),
-    bound: mmBound,
-  }),
-  rootMeanSquareErrorMm: (value) => ({
-    sentence: "The miss with large ones weighing more (root mean square error)",
-    figure: mmBound(value),
-    bound: mmBound,
-  }),
-  fractionalStandardError: (value) => ({
-    sentence: "Root mean square error as a share of the mean gauge depth",
-    figure: percentText(value),
-    bound: percentText,
-  }),
-  pearsonCorrelation: (value) => ({
-    sentence:
-      "How closely radar follows the gauges along a straight line; 1 is perfectly (Pearson correlation)",
-    figure: ratioText(value),
-  }),
-  spearmanCorrelation: (value) => ({
-    sentence: "How well radar ranks the wet and the dry; 1 is perfectly (Spearman rank correlation)",
-    figure: ratioText(value),
-  }),
-  nashSutcliffeEfficiency: (value) => ({
-    sentence:
-      value > 0
-        ? "Radar tells more than the gauges' plain mean would; 1 is perfect (Nash–Sutcliffe efficiency)"
-        : "Radar tells no more than the gauges' plain mean would; 1 is perfect (Nash–Sutcliffe efficiency)",
-    figure: ratioText(value),
-  }),
-  klingGuptaEfficiency: (value) => ({
-    sentence:
-      "Correlation, total and spread taken together; 1 is perfect (Kling–Gupta efficiency, 2012 form)",
-    figure: ratioText(value),
-  }),
-  probabilityOfDetection: (value, threshold) => ({
-    sentence: `Of the gauge intervals with rain${threshold}, radar also saw rain in`,
-    figure: percentText(value),
-    bound: percentText,
-  }),
-  falseAlarmRatio: (value, threshold) => ({
-    sentence: `Of the radar intervals with rain${threshold}, the gauge stayed below it in`,
-    figure: percentText(value),
-    bound: percentText,
-  }),
-  criticalSuccessIndex: (value, threshold) => ({
-    sentence: `Where gauge or radar saw rain${threshold}, both did in`,
-    figure: percentText(value),
-    bound: percentText,
-  }),
-  frequencyBias: (value, threshold) => ({
-    sentence: `How often radar saw rain${threshold}, for each time that a gauge did`,
-    figure: `${ratioText(value)} radar/gauge`,
-  }),
+/** A score whose sentence does not depend on its value. */
+function plain(
+  sentence: string,
+  figure: (value: number) => string,
+  bound?: (value: number) => string,
+): Wording {
+  return { subject: sentence, sentence: () => sentence, figure, ...(bound === undefined ? {} : { bound }) };
+}
+
+/** A score of yes and no, whose sentence names its threshold. */
+function yesOrNo(
+  sentence: (rain: string) => string,
+  figure: (value: number) => string,
+  bound?: (value: number) => string,
+): Wording {
+  return {
+    subject: sentence("rain"),
+    sentence: (_, rain) => sentence(rain),
+    figure,
+    ...(bound === undefined ? {} : { bound }),
+  };
+}
+
+/** Words by the name of the score. A score without words here is printed with its title or definition. */
+const WORDINGS: Readonly<Record<string, Wording>> = {
+  biasRatio: {
+    subject: "Rain that radar saw, against the gauges",
+    sentence: lessOrMore,
+    figure: radarPerGauge,
+  },
+  biasRatioDb: {
+    subject: "The ratio of sums in decibels",
+    sentence: (value) =>
+      value === 0
+        ? "The same ratio in decibels"
+        : `The same ratio in decibels: radar too ${value < 0 ? "dry" : "wet"}`,
+    figure: (value) => `${decibels(value)}, radar/gauge`,
+    bound: decibels,
+  },
+  meanErrorMm: {
+    subject: "Mean of radar minus gauge",
+    sentence: (value) =>
+      value === 0
+        ? "On average the radar depth of a pair equals its gauge"
+        : `On average the radar depth of a pair is ${mm(Math.abs(value))} ${value < 0 ? "below" : "above"} its gauge`,
+    figure: (value) => `${signedMm(value)}, radar minus gauge`,
+    bound: signedMm,
+  },
+  meanAbsoluteErrorMm: plain("The usual miss of a pair, whichever way (mean absolute error)", mm, mm),
+  rootMeanSquareErrorMm: plain("The miss with large ones weighing more (root mean square error)", mm, mm),
+  fractionalStandardError: plain(
+    "Root mean square error as a share of the mean gauge depth",
+    percentText,
+    percentText,
+  ),
+  pearsonCorrelation: plain(
+    "How closely radar follows the gauges along a straight line; 1 is perfect (Pearson correlation)",
+    ratioText,
+  ),
+  spearmanCorrelation: plain(
+    "How well radar ranks the wet and the dry; 1 is perfect (Spearman rank correlation)",
+    ratioText,
+  ),
+  nashSutcliffe: {
+    subject: "Radar against the gauges' plain mean (Nash–Sutcliffe efficiency)",
+    sentence: (value) =>
+      `Radar tells ${value > 0 ? "more" : "no more"} than the gauges' plain mean would; 1 is perfect (Nash–Sutcliffe efficiency)`,
+    figure: ratioText,
+  },
+  klingGupta2012: plain(
+    "Correlation, total and spread taken together; 1 is perfect (Kling–Gupta efficiency, 2012 form)",
+    ratioText,
+  ),
+  klingGuptaBeta: plain("Its part for the total: ratio of means", radarPerGauge),
+  klingGuptaGamma: plain("Its part for the spread: ratio of coefficients of variation", radarPerGauge),
+  meanLogRatioDb: plain(
+    "Mean log ratio, every pair weighing the same",
+    (value) => `${decibels(value)}, radar/gauge`,
+    decibels,
+  ),
+  logRatioSpreadDb: plain("Scatter of the log ratio, without the bias", decibels, decibels),
+  shareWithinFactor2: plain(
+    "Pairs in which radar and gauge lie within a factor of two",
+    percentText,
+    percentText,
+  ),
+  probabilityOfDetection: yesOrNo(
+    (rain) => `Of the gauge intervals with ${rain}, radar saw it too in`,
+    percentText,
+    percentText,
+  ),
+  falseAlarmRatio: yesOrNo(
+    (rain) => `Of the radar intervals with ${rain}, the gauge stayed below it in`,
+    percentText,
+    percentText,
+  ),
+  criticalSuccessIndex: yesOrNo(
+    (rain) => `Where gauge or radar saw ${rain}, both did in`,
+    percentText,
+    percentText,
+  ),
+  frequencyBias: yesOrNo(
+    (rain) => `How often radar saw ${rain}, for each time that a gauge did`,
+    radarPerGauge,
+  ),
+  equitableThreatScore: yesOrNo(
+    (rain) => `Agreement on ${rain} beyond chance; 1 is perfect (equitable threat score)`,
+    ratioText,
+  ),
+  heidkeSkillScore: yesOrNo(
+    (rain) => `Right calls on ${rain} beyond chance; 1 is perfect (Heidke skill score)`,
+    ratioText,
+  ),
+  peirceSkillScore: yesOrNo(
+    (rain) => `Detection of ${rain} less false detection; 1 is perfect (Peirce skill score)`,
+    ratioText,
+  ),
 };
 
-/** The words for a score whose value is finite. */
-export function scoreWords({ score, thresholdMm }: ReportScore): ScoreWords {
-  const threshold = thresholdMm === undefined ? "" : ` of ${mmText(thresholdMm)} mm or more`;
-  const writer = WRITERS[score.name];
-  const words = writer?.(score.value, threshold) ?? {
-    sentence: `${score.definition}${threshold === "" ? "" : `, rain${threshold}`}`,
-    figure: `${ratioText(score.value)}${score.unit === "" || score.unit === "1" ? "" : ` ${score.unit}`}`,
-  };
-  return { bound: ratioText, ...words };
+/** Names of the scores that the report has words for, in the order in which they read best. */
+export const WORDED_SCORES: readonly string[] = Object.keys(WORDINGS);
+
+function rainOf(thresholdMm: number | undefined): string {
+  return thresholdMm === undefined ? "rain" : `rain of ${mmText(thresholdMm)} mm or more`;
 }
 
-/** The sentence of a score that has no value: what it would have said. */
-export function scoreSubject({ score, thresholdMm }: ReportScore): string {
-  const threshold = thresholdMm === undefined ? "" : ` (rain of ${mmText(thresholdMm)} mm or more)`;
-  return `${score.definition}${threshold}`;
+function withThreshold(words: string, thresholdMm: number | undefined): string {
+  return thresholdMm === undefined ? words : `${words} (${rainOf(thresholdMm)})`;
+}
+
+/** The words for a score whose value is finite. */
+export function scoreWords({ score, title, thresholdMm }: ReportScore): ScoreWords {
+  const wording = WORDINGS[score.name];
+  if (wording === undefined) {
+    const unit = score.unit === "" || score.unit === "1" ? "" : ` ${score.unit}`;
+    return {
+      sentence: withThreshold(title ?? score.definition, thresholdMm),
+      figure: `${ratioText(score.value)}${unit}`,
+      bound: ratioText,
+    };
+  }
+  return {
+    sentence: wording.sentence(score.value, rainOf(thresholdMm)),
+    figure: wording.figure(score.value),
+    bound: wording.bound ?? ratioText,
+  };
+}
+
+/** The sentence of a score that has no value: what it would have told. */
+export function scoreSubject({ score, title, thresholdMm }: ReportScore): string {
+  return withThreshold(WORDINGS[score.name]?.subject ?? title ?? score.definition, thresholdMm);
 }
 
 const RESAMPLED: Readonly<Record<"timeBlocks" | "gauges", string>> = {
@@ -117,15 +191,31 @@ const RESAMPLED: Readonly<Record<"timeBlocks" | "gauges", string>> = {
   gauges: "over gauges",
 };
 
-/** "90 % interval 0.80 to 0.97 over blocks of time", for each kind of resampling; or why there is none. */
-export function intervalWords(score: Score, bound: (value: number) => string): string[] {
-  const { intervals } = score;
+const KINDS = ["timeBlocks", "gauges"] as const;
+
+function isKnown({ low, high }: ScoreInterval): boolean {
+  return Number.isFinite(low) && Number.isFinite(high);
+}
+
+/** "90 % interval 0.80 to 0.97 over gauges", for each kind of resampling that gave one. */
+export function intervalWords({ intervals }: Score, bound: (value: number) => string): string[] {
   if (intervals === undefined) return [];
-  return (["timeBlocks", "gauges"] as const).map((kind) => {
-    const interval: ScoreInterval = intervals[kind];
-    if (!Number.isFinite(interval.low) || !Number.isFinite(interval.high)) {
-      return `no interval ${RESAMPLED[kind]}: ${interval.reason ?? "it cannot be worked out"}`;
-    }
-    return `${percentText(interval.level)} interval ${bound(interval.low)} to ${bound(interval.high)} ${RESAMPLED[kind]}`;
+  return KINDS.filter((kind) => isKnown(intervals[kind])).map((kind) => {
+    const { low, high, level } = intervals[kind];
+    return `${percentText(level)} interval ${bound(low)} to ${bound(high)} ${RESAMPLED[kind]}`;
   });
+}
+
+/** Why intervals are missing, each reason once with the number of scores that it befell. */
+export function missingIntervalWords(scores: readonly Score[]): string[] {
+  const tally = new Map<string, number>();
+  for (const { value, intervals } of scores) {
+    // A score without a value says why itself.
+    if (intervals === undefined || !Number.isFinite(value)) continue;
+    for (const kind of KINDS.filter((each) => !isKnown(intervals[each]))) {
+      const words = `${RESAMPLED[kind]}: ${intervals[kind].reason ?? "it cannot be worked out"}`;
+      tally.set(words, (tally.get(words) ?? 0) + 1);
+    }
+  }
+  return [...tally].map(([words, count]) => `${counted(count, "score")} without an interval ${words}.`);
 }

@@ -21,9 +21,12 @@ export function offsetText(time: DateTime): string {
   return `UTC${time.offset < 0 ? "\u2212" : "+"}${Math.floor(minutes / 60)}${rest}`;
 }
 
+/** No-break spaces hold a date together. */
+const DATE_AND_TIME = "d\u00a0LLLL\u00a0yyyy HH:mm";
+
 function span(start: DateTime, end: DateTime): string {
-  const to = start.hasSame(end, "day") ? end.toFormat("HH:mm") : end.toFormat("d LLLL yyyy HH:mm");
-  return `${start.toFormat("d LLLL yyyy HH:mm")} to ${to}`;
+  const to = start.hasSame(end, "day") ? end.toFormat("HH:mm") : end.toFormat(DATE_AND_TIME);
+  return `${start.toFormat(DATE_AND_TIME)} to ${to}`;
 }
 
 /** A window in words: on the local clock with its zone and offset, and in UTC. */
@@ -42,11 +45,18 @@ export function windowWords(window: Interval, zone: string): WindowWords {
   const localIsUtc = start.offset === 0 && end.offset === 0 && /^(utc|etc\/utc)$/i.test(zone);
   const offsets =
     start.offset === end.offset ? offsetText(start) : `${offsetText(start)}, then ${offsetText(end)}`;
+  const utcStart = start.toUTC();
+  const utcEnd = end.toUTC();
+  // On the same one day as the local clock the date is not said twice.
+  const isOneDay = [end, utcStart, utcEnd].every((time) => time.toISODate() === start.toISODate());
   const zoneName = /^utc/i.test(zone) ? offsets : `${zone}, ${offsets}`;
   return {
     local: span(start, end),
     zone: zoneName,
-    utc: span(start.toUTC(), end.toUTC()),
+    utc:
+      isOneDay && !localIsUtc
+        ? `${utcStart.toFormat("HH:mm")} to ${utcEnd.toFormat("HH:mm")}`
+        : span(utcStart, utcEnd),
     localIsUtc,
   };
 }
