@@ -5,6 +5,8 @@ import { displayText } from "./display-text.ts";
 
 /** Largest GeoJSON file that is opened, bytes. */
 const MAX_GEOJSON_BYTES = 200 * 1024 ** 2;
+/** Longest text in which a fault is searched for that the engine does not place, characters. */
+const MAX_SEARCHED_LENGTH = 20_000_000;
 
 const properties = z.record(z.string(), z.unknown()).nullish();
 
@@ -89,17 +91,52 @@ function parseJson(text: string, path: string): unknown {
   try {
     return JSON.parse(text);
   } catch (cause) {
-    const position = Number(/position (\d+)/.exec(String(cause))?.[1] ?? text.length);
+    const position = faultPosition(text, cause);
     const before = text.slice(0, position);
-    const line = before.split("\n").length;
-    const column = position - before.lastIndexOf("\n");
-    throw new InputError(
-      "this is not valid JSON",
-      `${path}, line ${line}, column ${column}`,
-      "write the file again; it may have been cut off",
-      { cause },
+    const where =
+      position === undefined
+        ? path
+        : `${path}, line ${before.split("\n").length}, column ${position - before.lastIndexOf("\n")}`;
+    throw new InputError("this is not valid JSON", where, "write the file again; it may have been cut off", {
+      cause,
+    });
+  }
+}
+
+/**
+ * Where JSON goes wrong. The engine does not always say; the shortest beginning of the text that is wrong
+ * in another way than by ending too early ends there.
+ *
+ * @returns undefined in a text too long to look for it
+ */
+function faultPosition(text: string, fault: unknown): number | undefined {
+  const said = statedPosition(fault);
+  if (said !== undefined) return said;
+  if (text.length > MAX_SEARCHED_LENGTH) return undefined;
+  let sound = 0;
+  let broken = text.length + 1;
+  while (broken - sound > 1) {
+    const middle = (sound + broken) >> 1;
+    if (isSoundSoFar(text.slice(0, middle))) sound = middle;
+    else broken = middle;
+  }
+  return sound;
+}
+
+function isSoundSoFar(beginning: string): boolean {
+  try {
+    JSON.parse(beginning);
+    return true;
+  } catch (fault) {
+    return (
+      /end of JSON input|Unterminated/.test(String(fault)) || (statedPosition(fault) ?? 0) >= beginning.length
     );
   }
+}
+
+function statedPosition(fault: unknown): number | undefined {
+  const position = /position (\d+)/.exec(String(fault))?.[1];
+  return position === undefined ? undefined : Number(position);
 }
 
 /**

@@ -10,9 +10,13 @@ type Position = readonly [number, number];
  * axis in which they are the shorter, compared only where their boxes meet.
  *
  * @param ring - first position equal to the last
+ * @param maxComparisons - pairs of edges after which the comparison is given up
  * @returns a position on the fault; or "too-intricate" where the comparison was given up
  */
-export function ringCrossing(ring: readonly Position[]): Position | "too-intricate" | undefined {
+export function ringCrossing(
+  ring: readonly Position[],
+  maxComparisons = MAX_COMPARISONS,
+): Position | "too-intricate" | undefined {
   const points = withoutRepeats(ring);
   const count = points.length;
   if (count < 3) return undefined;
@@ -36,7 +40,7 @@ export function ringCrossing(ring: readonly Position[]): Position | "too-intrica
     const aHigh = Math.max(a0[other], a1[other]);
     for (let second = first + 1; second < count && low[order[second]] <= high[a]; second++) {
       comparisons += 1;
-      if (comparisons > MAX_COMPARISONS) return "too-intricate";
+      if (comparisons > maxComparisons) return "too-intricate";
       const b = order[second];
       const b0 = points[b];
       const b1 = points[(b + 1) % count];

@@ -8,8 +8,10 @@ const Y_WORDS = /^(y|lat|latitude|lat_?deg|latitude_?deg|northing|north|northing
 const ELEVATION_WORDS =
   /^(z|elev|elevation|height|altitude|alt|masl|hoehe)([ _(-]?(m|masl|asl|above.*)\)?)?$/i;
 const NAME_WORDS = /name|place|location/i;
-export const GAUGE_WORDS =
-  /^(id|gauge|station|site|sensor|code|gauge[_ -]?(id|no|code)|station[_ -]?(id|no|code)|site[_ -]?(id|no|code)|sensor[_ -]?id|stn|nr|no|number)$/i;
+/** Headers of a column of ids. */
+export const GAUGE_WORDS = /^(id|code|stn|(gauge|station|site|sensor)([_ -]?(id|no|nr|number|code))?)$/i;
+/** Headers of ids in a table of stations; among readings, "NO" may well be a gauge. */
+const NUMBER_WORDS = /^(nr|no|number)$/i;
 
 export interface StationsGuess {
   readonly columns: Guess<StationColumns>;
@@ -28,7 +30,7 @@ export function guessStations(sample: TableSample): StationsGuess | undefined {
   if (xAt < 0 || yAt < 0) return undefined;
   const free = columns.map((_, at) => at).filter((at) => at !== xAt && at !== yAt && at !== sample.timeAt);
   const isUnique = (at: number) => new Set(rows.map((row) => row[at])).size >= 0.9 * rows.length;
-  const wordAt = free.find((at) => GAUGE_WORDS.test(plain[at]));
+  const wordAt = free.find((at) => GAUGE_WORDS.test(plain[at]) || NUMBER_WORDS.test(plain[at]));
   const idAt = wordAt ?? free.find(isUnique);
   if (idAt === undefined || !isUnique(idAt)) return undefined;
   const nameAt = free.find((at) => at !== idAt && NAME_WORDS.test(plain[at]));
