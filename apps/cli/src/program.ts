@@ -4,6 +4,7 @@ import { registerCompare } from "./commands/compare.ts";
 import { registerPlan } from "./commands/plan.ts";
 import { registerRelate } from "./commands/relate.ts";
 import { registerSurvey } from "./commands/survey.ts";
+import { registerTotal } from "./commands/total.ts";
 import { EXIT, errorText, exitStatusOf } from "./exit.ts";
 import { flags } from "./options.ts";
 import { version } from "./version.ts";
@@ -23,6 +24,7 @@ export function buildProgram(): Command {
   speakPlainly(program);
   registerSurvey(program);
   registerPlan(program);
+  registerTotal(program);
   registerRelate(program);
   registerCompare(program);
   return program;

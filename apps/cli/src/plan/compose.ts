@@ -45,9 +45,11 @@ function mapNode(entries: Entries): YAMLMap {
   return map;
 }
 
-function listNode(items: readonly Node[]): YAMLSeq {
+/** @param whyEmpty - what to say where there is no item */
+function listNode(items: readonly Node[], whyEmpty = ""): YAMLSeq {
   const list = new YAMLSeq();
   list.flow = items.length === 0;
+  if (items.length === 0) list.comment = ` ${whyEmpty}`;
   list.items.push(...items);
   return list;
 }
@@ -82,7 +84,7 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     status: byDefault("provisional", "provisional or final"),
     window: windowNode(result),
     radars: listNode(findings.radars.map((radar) => radarNode(radar, result.radarsInWindow.has(radar.id)))),
-    gauges: listNode(gaugeNodes(result, folder)),
+    gauges: listNode(gaugeNodes(result, folder), "found: none with readings and stations"),
     catchments: catchmentsNode(result, folder),
     intervals: mapNode({
       grids: byDefault("PT1H", "step of the maps"),
@@ -91,6 +93,8 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     adjustment: mapNode({
       method: byDefault("mean-field-bias", "mean-field-bias or none"),
       minGauges: byDefault(5, "trusted gauges, at least 5"),
+      minGaugeSumMm: byDefault(10, "mm summed over them, at least 10"),
+      factorLimits: inline(byDefault([0.1, 10], "gauge over radar; beyond them nothing is adjusted")),
     }),
     overrides: inline(byDefault([], "{network, gauge, verdict: use or leave-out, reason, by, date}")),
   });
@@ -200,7 +204,7 @@ export function gaugeNode({ files, stations }: GaugeGroup, folder: string): Node
         : found(first.zone.value, first.zone.reason),
     dst: byDefault("follow", "never: the zone's standard time all year"),
     silence: silenceMark(first),
-    missing: inline(by(first.missing)),
+    missing: inline(missingMark(first)),
     quality: first.qualityCodes.length === 0 ? undefined : inline(qualityMark(first.qualityCodes)),
   });
 }
@@ -214,6 +218,13 @@ function silenceMark(gauge: GaugeFinding): Marked {
   return gauge.kind.value === "tips"
     ? guessed("dry", "no tip, no rain; or heartbeat PT60M where the gauge reports in between")
     : byDefault("missing", "what no line means: dry, missing, or heartbeat PT60M");
+}
+
+/** What the files write for "no value", added to what commonly stands for it. */
+function missingMark(gauge: GaugeFinding): Marked {
+  const usual = ["", "NaN", "-999"];
+  const met = gauge.missing.value.filter((cell) => !usual.includes(cell));
+  return met.length === 0 ? byDefault(usual) : guessed([...usual, ...met], gauge.missing.reason);
 }
 
 const GOOD = /^(ok|good|g|valid|v|pass|passed|use|used|checked|normal|0)$/i;

@@ -11,8 +11,10 @@ import type { JobRadar } from "./job.ts";
 
 /** Lookups kept per radar; a radar has a handful of elevations, each with one geometry unless its rays wander. */
 const KEPT_PER_RADAR = 16;
-/** Azimuths that differ by less share a lookup: a twentieth of a degree is 90 m at 100 km. */
-const AZIMUTH_STEP_DEG = 0.1;
+/** Rays this near to a regular fan are taken to be it, so that an antenna's jitter does not cost a lookup a scan. */
+const FAN_SLACK_DEG = 0.15;
+/** Otherwise azimuths are rounded to this: 90 m at 100 km. Rounding, not the first scan seen, makes the lookup. */
+const AZIMUTH_STEP_DEG = 0.05;
 
 /** Lookups of one radar on one grid, built once per geometry. */
 export interface LookupShelf {
@@ -43,15 +45,13 @@ function buildShelf(grid: Grid, radar: JobRadar): LookupShelf {
   const lookups = new Map<string, PolarLookup>();
   return {
     forSweep(sweep) {
-      const azimuthKey = Array.from(sweep.azimuthDeg, (azimuth) =>
-        Math.round(azimuth / AZIMUTH_STEP_DEG),
-      ).join();
+      const azimuthDeg = settledAzimuths(sweep.azimuthDeg);
       const key = [
         sweep.elevationDeg.toFixed(2),
         sweep.gateCount,
         sweep.firstGateCentreM,
         sweep.gateLengthM,
-        azimuthKey,
+        azimuthDeg.join(),
       ].join("|");
       let lookup = lookups.get(key);
       if (lookup === undefined) {
@@ -62,10 +62,8 @@ function buildShelf(grid: Grid, radar: JobRadar): LookupShelf {
           cells,
           {
             site: radar.site,
-            elevationDeg: sweep.elevationDeg,
-            azimuthDeg: sweep.azimuthDeg.map(
-              (azimuth) => Math.round(azimuth / AZIMUTH_STEP_DEG) * AZIMUTH_STEP_DEG,
-            ),
+            elevationDeg: Number(sweep.elevationDeg.toFixed(2)),
+            azimuthDeg,
             gateCount: sweep.gateCount,
             firstGateCentreM: sweep.firstGateCentreM,
             gateLengthM: sweep.gateLengthM,
@@ -79,4 +77,15 @@ function buildShelf(grid: Grid, radar: JobRadar): LookupShelf {
       return lookup;
     },
   };
+}
+
+/** The azimuths that a lookup is built for: a regular fan where the rays are one, else rounded. Ascending. */
+function settledAzimuths(azimuthDeg: Float64Array): Float64Array {
+  const spacing = 360 / azimuthDeg.length;
+  for (const first of [0, spacing / 2]) {
+    if (azimuthDeg.every((azimuth, ray) => Math.abs(azimuth - first - ray * spacing) <= FAN_SLACK_DEG)) {
+      return azimuthDeg.map((_, ray) => first + ray * spacing);
+    }
+  }
+  return azimuthDeg.map((azimuth) => Math.round(azimuth / AZIMUTH_STEP_DEG) * AZIMUTH_STEP_DEG);
 }

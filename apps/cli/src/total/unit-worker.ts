@@ -1,4 +1,4 @@
-import { workerData } from "node:worker_threads";
+import { workerData } from "piscina";
 import type { RunShape, UnitJob } from "./job.ts";
 import { runUnit } from "./run-unit.ts";
 import { unitStore } from "./unit-store.ts";
@@ -9,8 +9,7 @@ export interface WorkerShare {
   readonly folder: string;
 }
 
-// The pool hands its own workerData along as the second element.
-const [, share] = workerData as [unknown, WorkerShare];
+const share = workerData as WorkerShare;
 const store = unitStore(share.folder);
 
 /** Works on one unit and leaves its result on disk; only the numbers that the run counts travel back. */

@@ -1,0 +1,82 @@
+import path from "node:path";
+import type { Command } from "commander";
+import { z } from "zod";
+import { addCommand, addSchemaFlag, printJson } from "../command.ts";
+import { EXIT } from "../exit.ts";
+import { manifestSchema } from "../manifest.ts";
+import { flags } from "../options.ts";
+import { runTotal, type TotalOutcome } from "../total/run-total.ts";
+import { totalText } from "../total/total-text.ts";
+import { terminalOf } from "../ui/terminal.ts";
+
+/** What `total --json` prints. */
+export const totalSchema = z.strictObject({
+  outcome: z.enum(["done", "already there", "dry run"]),
+  folder: z.string(),
+  runDigest: z.string(),
+  leftOutCount: z.number().int().min(0).describe("how many things were left out, doubted or assumed"),
+  headline: manifestSchema.shape.headline.optional(),
+  counts: manifestSchema.shape.counts.optional(),
+  estimate: z.record(z.string(), z.number()).optional(),
+});
+
+interface TotalFlags {
+  readonly out: string;
+  readonly dryRun?: boolean;
+  readonly workers: number;
+  readonly force?: boolean;
+  readonly strict?: boolean;
+}
+
+/** `total PLAN --out DIR`: the main job. */
+export function registerTotal(program: Command): void {
+  const command = addCommand(
+    program,
+    "total <plan>",
+    "Rain totals from scans, with gauges beside them: maps, depths by catchment, scores and a report in one folder.",
+    [
+      "rainreckon total plan.yaml --out run",
+      "rainreckon total plan.yaml --out run --dry-run",
+      "rainreckon total plan.yaml --out run --workers 2 --strict",
+    ],
+  )
+    .addOption(flags.runFolder())
+    .addOption(flags.dryRun())
+    .addOption(flags.workers())
+    .addOption(flags.moveAside())
+    .addOption(flags.strict());
+  addSchemaFlag(command, totalSchema);
+  command.action(async (plan: string, options: TotalFlags) => {
+    const terminal = terminalOf(command);
+    const { outcome, noticeCount } = await runTotal(
+      plan,
+      {
+        out: options.out,
+        workers: options.workers,
+        force: options.force === true,
+        dryRun: options.dryRun === true,
+      },
+      terminal,
+    );
+    if (terminal.json) printJson(terminal, totalSchema, jsonOf(outcome, options.out, noticeCount));
+    else
+      terminal.result(
+        totalText(outcome, path.relative(process.cwd(), path.resolve(options.out)) || ".", terminal),
+      );
+    if (noticeCount > 0) {
+      terminal.note(
+        `${noticeCount} things were left out, doubted or assumed; all of them stand in manifest.json`,
+      );
+    }
+    if (options.strict === true && noticeCount > 0) process.exitCode = EXIT.failed;
+  });
+}
+
+function jsonOf(outcome: TotalOutcome, folder: string, leftOutCount: number): z.output<typeof totalSchema> {
+  const common = { outcome: outcome.kind, folder, runDigest: outcome.run.runDigest, leftOutCount };
+  if (outcome.kind === "done") {
+    const { headline, counts } = outcome.manifest;
+    return { ...common, headline, counts };
+  }
+  return outcome.kind === "dry run" ? { ...common, estimate: { ...outcome.estimate } } : common;
+}

@@ -1,0 +1,79 @@
+import { FieldSum, type TotalPlanes, totalPlanes } from "@rainreckon/accumulation";
+import type { Notice } from "@rainreckon/core";
+import type { AreaStepSeries, RunShape, StepSeries, UnitCounts, UnitJob, UnitResult } from "./job.ts";
+import type { UnitStore } from "./unit-store.ts";
+
+/** A run put together from its units, but for the depth of each interval, which stays on disk. */
+export interface AssembledRun {
+  readonly planes: TotalPlanes;
+  /** Shape [variants][headline cells]: window depth under each other relation; NaN where not observed. */
+  readonly variantMm: readonly Float64Array[];
+  /** Sums in float64 that areal figures of the window are made from. */
+  readonly sum: FieldSum;
+  /** Shapes [gauges or areas][steps of the window]. */
+  readonly gauges: StepSeries;
+  readonly areas: AreaStepSeries;
+  readonly counts: UnitCounts;
+  readonly notices: readonly Notice[];
+}
+
+/**
+ * Adds up the results of all units in time order, holding one unit at a time.
+ *
+ * Totals are sums of the stored intervals in float64, so they do not depend on how a run was cut or who did
+ * which part.
+ */
+export function assemble(
+  shape: RunShape,
+  jobs: readonly UnitJob[],
+  store: UnitStore,
+  windowMs: number,
+): AssembledRun {
+  const sum = new FieldSum(
+    shape.grid.nx * shape.grid.ny,
+    shape.radars.length,
+    shape.variants.length,
+    shape.headlineCells.length,
+  );
+  const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
+  const notices = new Map<string, Notice>();
+  const pieces: UnitResult[] = [];
+  for (const job of jobs) {
+    const { intervals, ...rest } = store.load(job);
+    for (const interval of intervals) sum.add(interval);
+    for (const key of Object.keys(counts) as (keyof UnitCounts)[]) counts[key] += rest.counts[key];
+    // A border scan that fails to decode is met by two units, and told once.
+    for (const notice of rest.notices) notices.set(`${notice.where}|${notice.what}`, notice);
+    pieces.push({ ...rest, intervals: [] });
+  }
+  const joined = (rowsOf: (piece: UnitResult) => readonly Float64Array[], rows: number): Float64Array[] =>
+    Array.from({ length: rows }, (_, row) => {
+      const parts = pieces.map((piece) => rowsOf(piece)[row]);
+      const whole = new Float64Array(parts.reduce((length, part) => length + part.length, 0));
+      let at = 0;
+      for (const part of parts) {
+        whole.set(part, at);
+        at += part.length;
+      }
+      return whole;
+    });
+  const gaugeCount = shape.gaugeCells.length;
+  const areaCount = shape.areas.length;
+  return {
+    planes: totalPlanes(sum, windowMs),
+    variantMm: sum.variantMm,
+    sum,
+    gauges: {
+      depthMm: joined((piece) => piece.gauges.depthMm, gaugeCount),
+      observedFraction: joined((piece) => piece.gauges.observedFraction, gaugeCount),
+    },
+    areas: {
+      depthMm: joined((piece) => piece.areas.depthMm, areaCount),
+      observedFraction: joined((piece) => piece.areas.observedFraction, areaCount),
+      maxCellMm: joined((piece) => piece.areas.maxCellMm, areaCount),
+      cappedMm: joined((piece) => piece.areas.cappedMm, areaCount),
+    },
+    counts,
+    notices: [...notices.values()].sort((a, b) => (a.where < b.where ? -1 : 1)),
+  };
+}

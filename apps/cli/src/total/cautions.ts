@@ -1,0 +1,139 @@
+import { relationCaution } from "@rainreckon/core";
+import { isMap, isScalar, isSeq } from "yaml";
+import { parsePlanDocument } from "../plan/load.ts";
+import type { Comparison } from "./against-gauges.ts";
+import type { AssembledRun } from "./assemble.ts";
+import type { ArealFigure } from "./figures.ts";
+import { isAtCap } from "./figures.ts";
+import type { PreparedRun } from "./prepare.ts";
+
+/** Something that could change a figure, in words that stand alone. */
+export interface RunCaution {
+  readonly kind: "relation-not-chosen" | "other";
+  readonly text: string;
+  readonly detail?: string;
+}
+
+/** A beam higher than this above the sea tells little of what reaches the ground; common practice. */
+const HIGH_BEAM_M = 2000;
+/** Fewer trusted gauges than this make any adjustment a matter of luck. House rule. */
+const FEW_GAUGES = 10;
+/** Share of the window that may be bridged or lie at its edges before it is said. */
+const MUCH_BRIDGED = 0.05;
+
+/** The cautions that travel with every figure, whatever a run found. */
+export const STANDING_CAUTIONS: readonly string[] = [
+  "Radar rain is an estimate from echo aloft, not a measurement at the ground.",
+  "Totals do not replace official warnings, local codes or the judgement of a licensed practitioner.",
+  "Not for dam-safety or warning decisions alone.",
+];
+
+/**
+ * True where a plan still has the relation that was written into it: the value is marked "default", or is
+ * not there at all. A relation that was looked at and kept must be marked by hand to count as chosen.
+ */
+export function relationWasNotChosen(planText: string): boolean {
+  const { document } = parsePlanDocument(planText, "plan");
+  const radars = document.get("radars");
+  if (!isSeq(radars)) return true;
+  return radars.items.some((item) => {
+    if (!isMap(item) || item.get("use") === false) return false;
+    const relation = item.get("relation", true);
+    if (relation === undefined) return true;
+    return isScalar(relation) && /^\s*default\b/.test(relation.comment ?? "");
+  });
+}
+
+/** What could change the headline of a run, most important first. */
+export function runCautions(
+  run: PreparedRun,
+  total: AssembledRun,
+  comparison: Comparison,
+  district: ArealFigure,
+): RunCaution[] {
+  const { plan, text } = run.loaded;
+  const cautions: RunCaution[] = [];
+  const say = (caution: string, detail?: string) =>
+    cautions.push({ kind: "other", text: caution, ...(detail === undefined ? {} : { detail }) });
+  if (relationWasNotChosen(text)) {
+    cautions.push({
+      kind: "relation-not-chosen",
+      text: "Nobody chose the relation between echo and rain: it is the one the plan was written with.",
+      detail: "The headline under other relations stands below; set radars, relation in the plan.",
+    });
+  }
+  for (const radar of run.shape.radars) {
+    for (const { relation } of radar.relations) {
+      const caution = relationCaution(relation);
+      if (caution !== undefined) say(`Radar ${radar.site.id}: ${caution}.`);
+    }
+  }
+  if (district.observedFraction < plan.rain.minObserved) {
+    say(
+      `Only ${percent(district.observedFraction)} of the district and window was observed: its depth is a lower bound.`,
+      "What was not seen adds nothing; nothing is scaled up.",
+    );
+  }
+  const bridged = districtMean(run, total.planes.bridgedFraction);
+  const edge = districtMean(run, total.planes.edgeFraction);
+  if (bridged > MUCH_BRIDGED)
+    say(`${percent(bridged)} of the window was bridged between scans further apart than usual.`);
+  if (edge > MUCH_BRIDGED)
+    say(
+      `${percent(edge)} of the window lies before the first or after the last scan and rests on that one scan.`,
+    );
+  const { bias } = comparison;
+  if (!bias.applied) {
+    say(
+      run.gauges.gauges.length === 0
+        ? "There are no gauges beside this total: nothing checks it."
+        : `The total is not adjusted to the gauges: ${bias.reason}.`,
+    );
+  } else {
+    if (bias.gaugeCount < FEW_GAUGES) say(`The adjustment rests on ${bias.gaugeCount} gauges only.`);
+    if (bias.clipped)
+      say(
+        `The adjustment's factor met its limit: ${bias.unlimitedFactor.toFixed(2)} was cut to ${bias.factor.toFixed(2)} (gauge/radar).`,
+      );
+  }
+  const doubted = comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length;
+  if (doubted > 0) {
+    say(
+      `${doubted} of ${comparison.gauges.length} gauges are doubted and shape nothing unless the plan says so.`,
+    );
+  }
+  if (isAtCap(district)) {
+    say(
+      `${percent(district.cappedFraction)} of the district's depth met the hail cap.`,
+      "Where it was heavy rain and not hail, the true depth is larger.",
+    );
+  }
+  const height = districtMean(run, total.planes.beamHeightAslM);
+  if (height > HIGH_BEAM_M) {
+    say(
+      `The beam stands ${Math.round(height)} m above the sea over the district on average: it may miss what forms or fades below.`,
+    );
+  }
+  if (plan.status === "provisional") say("The status of this run is provisional.");
+  return cautions;
+}
+
+/** Mean of a plane over the district's observed cells. */
+function districtMean(run: PreparedRun, plane: Float32Array): number {
+  let sum = 0;
+  let weight = 0;
+  const { cells, fraction } = run.district;
+  for (let k = 0; k < cells.length; k++) {
+    const value = plane[cells[k]];
+    if (Number.isNaN(value)) continue;
+    sum += fraction[k] * value;
+    weight += fraction[k];
+  }
+  return weight > 0 ? sum / weight : 0;
+}
+
+function percent(share: number): string {
+  const value = 100 * share;
+  if (value > 0 && value < 1) return "under 1 %";
+  return `${value > 99 && value < 100 ? 99 : Math.round(value)} %`;
+}

@@ -1,0 +1,52 @@
+import type { Plan } from "../plan/schema.ts";
+import { planSchema } from "../plan/schema.ts";
+
+/** A setting that is not at its default. */
+export interface ChangedSetting {
+  readonly path: string;
+  readonly value: string;
+  readonly defaultValue: string;
+}
+
+/**
+ * Settings of a plan that differ from what they would be had nobody written them.
+ * Values that have no default (title, window, files, grid …) are not settings in this sense.
+ */
+export function changedSettings(plan: Plan): ChangedSetting[] {
+  const bare = planSchema.parse({
+    title: plan.title,
+    window: { from: plan.window.from, to: plan.window.to },
+    scans: plan.scans,
+    radars: plan.radars.map(({ id, medianRoundMinutes, maxGapMinutes }) => ({
+      id,
+      medianRoundMinutes,
+      maxGapMinutes,
+    })),
+    grid: plan.grid,
+  });
+  const changed: ChangedSetting[] = [];
+  const walk = (value: unknown, standard: unknown, path: string): void => {
+    if (standard === undefined) return;
+    if (isRecord(value) && isRecord(standard)) {
+      for (const key of Object.keys(standard))
+        walk(value[key], standard[key], path === "" ? key : `${path}.${key}`);
+      return;
+    }
+    if (Array.isArray(value) && Array.isArray(standard) && path === "radars") {
+      for (const [k, item] of value.entries()) walk(item, standard[k], `${path}[${k}]`);
+      return;
+    }
+    if (JSON.stringify(value) === JSON.stringify(standard)) return;
+    if (NEVER_STANDARD.has(path)) return;
+    changed.push({ path, value: JSON.stringify(value), defaultValue: JSON.stringify(standard) });
+  };
+  walk(plan, bare, "");
+  return changed;
+}
+
+/** Found or given for each run, so that "differs from its default" says nothing. */
+const NEVER_STANDARD = new Set(["gauges", "reference", "author", "status", "overrides", "window.zone"]);
+
+function isRecord(value: unknown): value is Record<string, unknown> {
+  return typeof value === "object" && value !== null && !Array.isArray(value);
+}

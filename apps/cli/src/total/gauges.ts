@@ -1,0 +1,167 @@
+import path from "node:path";
+import {
+  type GaugeSeries,
+  type GaugeStation,
+  type Grid,
+  gaugeKey,
+  InputError,
+  type Interval,
+  type Notice,
+} from "@rainreckon/core";
+import {
+  displayText,
+  type GaugeFileCounts,
+  looksSwapped,
+  readGaugeFiles,
+  readStations,
+  type StationRow,
+} from "@rainreckon/formats";
+import { type Projection, projection } from "@rainreckon/mosaic";
+import type { ManifestInput } from "../manifest.ts";
+import type { LoadedGaugeFiles, LoadedPlan } from "../plan/load.ts";
+import type { LeftOutLog } from "../ui/left-out.ts";
+import { hashFile } from "./inputs.ts";
+import { placePoint } from "./places.ts";
+
+/** A gauge that can be compared: it has readings, a place, and a cell of the grid. */
+export interface GaugeInput {
+  readonly series: GaugeSeries;
+  readonly station: GaugeStation;
+  readonly xM: number;
+  readonly yM: number;
+  readonly cell: number;
+  /** The cells that stand for it. */
+  readonly cells: readonly number[];
+}
+
+/** What the gauge files of a plan came to. */
+export interface GaugeInputs {
+  readonly gauges: readonly GaugeInput[];
+  readonly counts: readonly { readonly network: string; readonly counts: GaugeFileCounts }[];
+}
+
+/**
+ * Reads all gauge files of a plan and puts the gauges on the grid. A gauge without a station, or outside
+ * the grid, is left out and named; a network whose files cannot be read at all likewise.
+ *
+ * @param near - the radars, to tell coordinates that look swapped
+ */
+export async function readGauges(
+  loaded: LoadedPlan,
+  grid: Grid,
+  map: Projection,
+  window: Interval,
+  near: readonly { readonly lonDeg: number; readonly latDeg: number }[],
+  log: LeftOutLog,
+  seen: (input: ManifestInput) => void,
+): Promise<GaugeInputs> {
+  const gauges: GaugeInput[] = [];
+  const counts: { network: string; counts: GaugeFileCounts }[] = [];
+  for (const entry of loaded.gaugeFiles) {
+    const network = entry.spec.network;
+    const relative = (text: string) => text.replaceAll(`${loaded.folder}${path.sep}`, "");
+    const onNotice = (notice: Notice) =>
+      log.add(`gauge data of ${network}`, { ...notice, where: relative(notice.where) });
+    const used = new Map<string, "used" | "left out">();
+    try {
+      const contents = await readGaugeFiles(entry.files, entry.spec, onNotice, { window });
+      for (const file of entry.files) used.set(file, "used");
+      counts.push({ network, counts: contents.counts });
+      const stations = await stationsOf(entry, onNotice);
+      used.set(entry.stationsFile, "used");
+      const toWgs84 = projection(entry.spec.stations.crs);
+      for (const series of contents.series) {
+        const placed = placeGauge(series, stations, toWgs84, {
+          grid,
+          map,
+          near,
+          rule: loaded.plan.pairs.cell,
+        });
+        if ("what" in placed)
+          log.add("gauge left out", { ...placed, where: `${network} ${displayText(series.id)}` });
+        else gauges.push(placed);
+      }
+    } catch (error) {
+      if (!(error instanceof InputError)) throw error;
+      log.add("gauge files left out", { what: error.what, where: relative(error.where), fix: error.fix });
+    }
+    for (const file of [...entry.files, entry.stationsFile]) {
+      try {
+        const { name, sha256, bytes } = await hashFile(loaded.folder, file);
+        const kind = file === entry.stationsFile ? "stations" : "gauge readings";
+        seen({ path: name, kind, sha256, bytes, use: used.get(file) ?? "left out" });
+      } catch (error) {
+        if (!(error instanceof InputError)) throw error;
+      }
+    }
+  }
+  const byKey = new Map<string, GaugeInput>();
+  for (const gauge of gauges) {
+    const key = gaugeKey(gauge.series);
+    if (byKey.has(key)) {
+      log.add("gauge left out", {
+        what: "two entries of the plan give readings of this gauge; the first counts",
+        where: `${gauge.series.network} ${displayText(gauge.series.id)}`,
+        fix: "put the files of one network into one entry of gauges",
+      });
+    } else byKey.set(key, gauge);
+  }
+  const sorted = [...byKey.values()].sort((a, b) => (gaugeKey(a.series) < gaugeKey(b.series) ? -1 : 1));
+  return { gauges: sorted, counts };
+}
+
+async function stationsOf(
+  { spec, stationsFile }: LoadedGaugeFiles,
+  onNotice: (notice: Notice) => void,
+): Promise<ReadonlyMap<string, StationRow>> {
+  const rows = await readStations(stationsFile, spec.stations.columns, onNotice);
+  return new Map(rows.map((row) => [row.id, row]));
+}
+
+interface Surroundings {
+  readonly grid: Grid;
+  readonly map: Projection;
+  readonly near: readonly { readonly lonDeg: number; readonly latDeg: number }[];
+  readonly rule: "nearest" | "mean3x3";
+}
+
+function placeGauge(
+  series: GaugeSeries,
+  stations: ReadonlyMap<string, StationRow>,
+  toWgs84: Projection,
+  { grid, map, near, rule }: Surroundings,
+): GaugeInput | { readonly what: string; readonly fix: string } {
+  const row = stations.get(series.id);
+  if (row === undefined) {
+    return {
+      what: "it has readings but no station",
+      fix: "add it to the stations file, or check its id there",
+    };
+  }
+  const [lonDeg, latDeg] = toWgs84.geographic ? [row.x, row.y] : toWgs84.inverse(row.x, row.y);
+  if (looksSwapped(lonDeg, latDeg, near)) {
+    return {
+      what: `its coordinates ${row.x}, ${row.y} look swapped: latitude and longitude exchanged lie near the radars`,
+      fix: "exchange them in the stations file, or name the columns the other way round in the plan",
+    };
+  }
+  if (!(Math.abs(latDeg) <= 90 && Math.abs(lonDeg) <= 360)) {
+    return {
+      what: `its coordinates ${row.x}, ${row.y} are no place on Earth`,
+      fix: "check them, and stations.crs in the plan",
+    };
+  }
+  const { xM, yM, cell, cells } = placePoint(grid, map, { lonDeg, latDeg }, rule);
+  if (cell < 0) {
+    return { what: "it lies outside the grid", fix: "run plan --update for a grid that holds it" };
+  }
+  const station: GaugeStation = {
+    network: series.network,
+    id: series.id,
+    lonDeg,
+    latDeg,
+    ...(row.name === undefined ? {} : { name: row.name }),
+    ...(row.elevationM === undefined ? {} : { elevationM: row.elevationM }),
+  };
+  return { series, station, xM, yM, cell, cells };
+}

@@ -1,0 +1,270 @@
+import { statSync } from "node:fs";
+import path from "node:path";
+import {
+  bandOfWavelength,
+  dropResent,
+  groupIntoRounds,
+  InputError,
+  midEpochMs,
+  type SweepHeader,
+  type Volume,
+} from "@rainreckon/core";
+import { formatsReady, openScan, sha256OfFile } from "@rainreckon/formats";
+import { geodesicInverse } from "@rainreckon/mosaic";
+import type { ManifestInput } from "../manifest.ts";
+import type { LoadedPlan } from "../plan/load.ts";
+import type { PlanRadar } from "../plan/schema.ts";
+import type { LeftOutLog } from "../ui/left-out.ts";
+import type { Progress } from "../ui/progress.ts";
+
+/** Two sites this far apart cannot be the same radar, whatever their id says. */
+const SAME_SITE_M = 2000;
+
+/** One file, hashed. `name` is relative to the plan's folder, with forward slashes. */
+export interface HashedFile {
+  readonly path: string;
+  readonly name: string;
+  readonly sha256: string;
+  readonly bytes: number;
+}
+
+export async function hashFile(folder: string, file: string): Promise<HashedFile> {
+  const name = path.relative(folder, file).split(path.sep).join("/");
+  try {
+    return { path: file, name, sha256: await sha256OfFile(file), bytes: statSync(file).size };
+  } catch (cause) {
+    if (cause instanceof InputError) throw cause;
+    throw new InputError("cannot be read", name, "check that it is there and its permissions", { cause });
+  }
+}
+
+/** A sweep of a radar that takes part in the run, with where it lies. */
+export interface IndexedSweep {
+  readonly header: SweepHeader;
+  readonly file: HashedFile;
+  /** Index among the headers of its file. */
+  readonly index: number;
+  readonly contentHash: string;
+}
+
+/** The rounds of one radar of the plan, in time order, and its median round. */
+export interface RadarInput {
+  readonly radar: PlanRadar;
+  readonly sweeps: readonly IndexedSweep[];
+  readonly rounds: readonly Volume[];
+  readonly sweepOf: ReadonlyMap<SweepHeader, IndexedSweep>;
+  readonly beamWidthDeg: number;
+}
+
+/** Beam width that is taken where neither file nor plan gives one: the usual one of weather radars; common practice. */
+export const DEFAULT_BEAM_WIDTH_DEG = 1;
+
+/**
+ * Opens every scan file for its headers, and sorts its sweeps by radar and round.
+ *
+ * A file that cannot be read is left out and named; what is sent twice counts once.
+ *
+ * @param seen - is told what became of each file
+ * @throws InputError (no-input) when nothing usable is left
+ */
+export async function indexScans(
+  loaded: LoadedPlan,
+  log: LeftOutLog,
+  seen: (input: ManifestInput) => void,
+  progress: Progress,
+): Promise<RadarInput[]> {
+  await formatsReady();
+  const bySite = new Map<string, IndexedSweep[]>();
+  const uses = new Map<string, { file: HashedFile; used: number; reasons: string[] }>();
+  const contents = new Map<string, string>();
+  for (const scan of loaded.scanFiles) {
+    progress.advance();
+    let file: HashedFile;
+    try {
+      file = await hashFile(loaded.folder, scan);
+    } catch (error) {
+      if (!(error instanceof InputError)) throw error;
+      log.add("scan left out", error);
+      continue;
+    }
+    const twin = contents.get(file.sha256);
+    if (twin !== undefined) {
+      log.add("scan left out", {
+        what: `same bytes as ${twin}`,
+        where: file.name,
+        fix: "nothing to do: it counts once",
+      });
+      seen({ ...manifestFile(file), use: "duplicate", reason: `same bytes as ${twin}` });
+      continue;
+    }
+    contents.set(file.sha256, file.name);
+    const entry = { file, used: 0, reasons: [] as string[] };
+    uses.set(file.name, entry);
+    try {
+      const opened = openScan(scan);
+      try {
+        for (const [index, header] of opened.headers.entries()) {
+          const sweeps = bySite.get(header.site.id) ?? [];
+          bySite.set(header.site.id, sweeps);
+          sweeps.push({ header, file, index, contentHash: file.sha256 });
+        }
+      } finally {
+        opened.close();
+      }
+    } catch (error) {
+      if (!(error instanceof InputError)) throw error;
+      const where = error.where.replace(scan, file.name);
+      log.add("scan left out", { what: error.what, where, fix: error.fix });
+      entry.reasons.push(error.what);
+    }
+  }
+  const inputs = loaded.plan.radars
+    .filter((radar) => radar.use)
+    .map((radar) => radarInput(radar, bySite.get(radar.id) ?? [], loaded, log, uses))
+    .filter((input) => input !== undefined);
+  for (const [id, sweeps] of bySite) {
+    const planned = loaded.plan.radars.find((radar) => radar.id === id);
+    if (planned?.use) continue;
+    const why = planned === undefined ? "is not in the plan" : "is switched off in the plan";
+    if (planned === undefined) {
+      log.add("radar left out", {
+        what: `radar "${id}" ${why} (${sweeps.length} sweeps)`,
+        where: sweeps[0].file.name,
+        fix: "run plan --update to add it",
+      });
+    }
+    for (const { file } of sweeps) uses.get(file.name)?.reasons.push(`radar ${id} ${why}`);
+  }
+  for (const { file, used, reasons } of uses.values()) {
+    const use = used > 0 ? "used" : "left out";
+    const reason = reasons.length > 0 ? { reason: [...new Set(reasons)].join("; ") } : {};
+    seen({ ...manifestFile(file), use, ...reason });
+  }
+  if (inputs.length === 0) {
+    throw new InputError(
+      "no usable scan is left",
+      `${loaded.scanFiles.length} files under ${loaded.plan.scans.join(", ")}`,
+      "see the lines above, or run survey on the folder",
+      { kind: "no-input" },
+    );
+  }
+  return inputs;
+}
+
+function manifestFile(file: HashedFile): { path: string; kind: string; sha256: string; bytes: number } {
+  return { path: file.name, kind: "scan", sha256: file.sha256, bytes: file.bytes };
+}
+
+function radarInput(
+  radar: PlanRadar,
+  found: readonly IndexedSweep[],
+  loaded: LoadedPlan,
+  log: LeftOutLog,
+  uses: ReadonlyMap<string, { file: HashedFile; used: number; reasons: string[] }>,
+): RadarInput | undefined {
+  if (found.length === 0) {
+    log.add("radar without scans", {
+      what: `no scan of radar "${radar.id}" was found`,
+      where: "plan, radars",
+      fix: "check its id with survey, or set use: false",
+    });
+    return undefined;
+  }
+  const leaveOut = (sweep: IndexedSweep, what: string, fix: string) => {
+    log.add("sweep left out", { what, where: `${sweep.file.name}, ${sweep.header.origin.dataset}`, fix });
+    uses.get(sweep.file.name)?.reasons.push(what);
+  };
+  const home = found[0].header.site;
+  const atHome = found.filter((sweep) => {
+    const away = geodesicInverse(home, sweep.header.site).distanceM;
+    if (away <= SAME_SITE_M) return true;
+    leaveOut(
+      sweep,
+      `radar id "${radar.id}" stands ${(away / 1000).toFixed(1)} km from where ${found[0].file.name} has it: two sites with one id`,
+      "keep the files of one site in this run",
+    );
+    return false;
+  });
+  const withMoment = atHome.filter((sweep) => {
+    const offers = sweep.header.quantities;
+    if (offers.includes(radar.moment)) return true;
+    const unfiltered =
+      offers.includes("TH") && radar.moment === "DBZH" ? "; TH is there (unfiltered): set moment: TH" : "";
+    leaveOut(
+      sweep,
+      `no ${radar.moment}; the sweep offers ${offers.join(", ") || "no moment at all"}${unfiltered}`,
+      `set moment of radar ${radar.id} in the plan`,
+    );
+    return false;
+  });
+  const { kept, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
+  for (const { item, reason, content } of dropped) {
+    leaveOut(
+      item,
+      reason,
+      content === "different" ? "see rain.resent in the plan" : "nothing to do: it counts once",
+    );
+  }
+  const reachMs = Math.max(radar.maxGapMinutes, radar.medianRoundMinutes / 2) * 60_000;
+  const from = Date.parse(loaded.plan.window.from) - reachMs;
+  const to = Date.parse(loaded.plan.window.to) + reachMs;
+  const sweepOf = new Map(kept.map((sweep) => [sweep.header, sweep]));
+  const rounds = groupIntoRounds(
+    kept.map((sweep) => sweep.header),
+    { maxSilenceMs: radar.medianRoundMinutes * 60_000 },
+  );
+  let inside = 0;
+  let outside = 0;
+  for (const { header, file } of kept) {
+    const mid = midEpochMs(header);
+    const entry = uses.get(file.name);
+    if (mid < from || mid > to) {
+      outside++;
+      entry?.reasons.push("outside the window");
+    } else {
+      inside++;
+      if (entry !== undefined) entry.used++;
+    }
+  }
+  if (outside > 0) {
+    log.add(
+      "sweep outside the window",
+      {
+        what: `${outside} sweeps lie outside the window`,
+        where: `radar ${radar.id}`,
+        fix: "nothing to do, or widen the window in the plan",
+      },
+      outside,
+    );
+  }
+  if (inside === 0) return undefined;
+  return { radar, sweeps: kept, rounds, sweepOf, beamWidthDeg: beamWidth(radar, home.id, kept, log) };
+}
+
+/** The beam width to work with: the plan's, else the files', else a named default; and the band, for a warning. */
+function beamWidth(radar: PlanRadar, id: string, sweeps: readonly IndexedSweep[], log: LeftOutLog): number {
+  const header = sweeps[0]?.header;
+  const wavelengthM = radar.wavelengthCm === undefined ? header?.wavelengthM : radar.wavelengthCm / 100;
+  if (wavelengthM === undefined) {
+    log.add("assumed", {
+      what: "no wavelength in file or plan: attenuation at short wavelengths cannot be judged",
+      where: `radar ${id}`,
+      fix: "set wavelengthCm in the plan",
+    });
+  } else if (["Ka", "V", "W", "K", "Ku"].includes(bandOfWavelength(wavelengthM)?.letter ?? "")) {
+    log.add("doubted", {
+      what: `a wavelength of ${(wavelengthM * 100).toFixed(2)} cm: rain itself takes so much of this signal that totals mean little`,
+      where: `radar ${id}`,
+      fix: "set use: false for this radar",
+    });
+  }
+  const fromFile = header?.beamWidthDeg?.horizontal;
+  if (radar.beamWidthDeg === undefined && fromFile === undefined) {
+    log.add("assumed", {
+      what: `no beam width in file or plan: ${DEFAULT_BEAM_WIDTH_DEG} degree is taken`,
+      where: `radar ${id}`,
+      fix: "set beamWidthDeg in the plan",
+    });
+  }
+  return radar.beamWidthDeg ?? fromFile ?? DEFAULT_BEAM_WIDTH_DEG;
+}

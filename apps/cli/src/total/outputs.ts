@@ -1,0 +1,365 @@
+import { durationMs, isohyetLevels, isohyets } from "@rainreckon/accumulation";
+import { applyFactor, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
+import { gaugeKey, type Pair } from "@rainreckon/core";
+import {
+  type CsvColumn,
+  createTotalsFile,
+  type JsonValue,
+  TOTALS_VARIABLES,
+  type TotalsVariable,
+  writeCsv,
+  writeGeoTiff,
+  writeIsohyets,
+  writeJson,
+  writeText,
+} from "@rainreckon/formats";
+import { type GaugeRow, gaugeRows, scoresDocument, scoresSchema } from "@rainreckon/verification";
+import { isoUtc } from "../ui/numbers.ts";
+import { version } from "../version.ts";
+import type { Comparison } from "./against-gauges.ts";
+import type { AssembledRun } from "./assemble.ts";
+import { STANDING_CAUTIONS } from "./cautions.ts";
+import { bestMm, type CatchmentFigure, catchmentFigures, factorOf, isAtCap } from "./figures.ts";
+import type { PreparedRun } from "./prepare.ts";
+import type { UnitStore } from "./unit-store.ts";
+
+/** What every writer of an output needs. */
+export interface OutputSources {
+  readonly run: PreparedRun;
+  readonly total: AssembledRun;
+  readonly comparison: Comparison;
+  readonly store: UnitStore;
+  /** The adjusted total; undefined where there is no adjustment. */
+  readonly adjustedTotalMm: Float32Array | undefined;
+  readonly cautions: readonly string[];
+  /** Where a file is to be written. */
+  readonly draft: (file: string) => string;
+}
+
+/**
+ * The adjusted total: the sum of the adjusted depths of the intervals as they are stored, in time order.
+ */
+export function sumAdjusted(run: PreparedRun, store: UnitStore, factor: number): Float32Array {
+  const sum = new Float64Array(run.grid.nx * run.grid.ny).fill(Number.NaN);
+  for (const job of run.jobs) {
+    for (const { depthMm } of store.load(job).intervals) {
+      const adjusted = applyFactor(depthMm, factor);
+      for (let cell = 0; cell < sum.length; cell++) {
+        const value = adjusted[cell];
+        if (Number.isNaN(value)) continue;
+        sum[cell] = Number.isNaN(sum[cell]) ? value : sum[cell] + value;
+      }
+    }
+  }
+  return Float32Array.from(sum);
+}
+
+/** `totals.nc`: planes of the window, and the depth of each interval, written one at a time. */
+export async function writeTotals(sources: OutputSources): Promise<void> {
+  const { run, total, comparison, store, adjustedTotalMm } = sources;
+  const { planes } = total;
+  const factor = factorOf(comparison);
+  const V = TOTALS_VARIABLES;
+  const variables: TotalsVariable[] = [
+    V.radar_total,
+    ...(adjustedTotalMm === undefined ? [] : [V.adjusted_total]),
+    V.observed_fraction,
+    V.bridged_fraction,
+    V.edge_fraction,
+    V.beam_height,
+    V.cap_share,
+    V.radar_share,
+    V.radar_depth,
+    ...(adjustedTotalMm === undefined ? [] : [V.adjusted_depth]),
+  ];
+  const file = await createTotalsFile(sources.draft("totals.nc"), {
+    grid: run.grid,
+    projString: run.map.projString,
+    lonLat: lonLatOf(run),
+    title: run.loaded.plan.title,
+    cautions: sources.cautions,
+    window: run.window,
+    intervals: run.intervals,
+    radarIds: run.shape.radars.map(({ site }) => site.id),
+    variables,
+    attributes: {
+      source: `weather radar, rainreckon ${version()}`,
+      status: run.loaded.plan.status,
+      run_digest: run.runDigest,
+      adjustment: comparison.bias.applied
+        ? `mean-field bias, factor ${comparison.bias.factor.toPrecision(6)} (gauge/radar)`
+        : `none: ${comparison.bias.reason}`,
+      depths_not_given: `adjusted_total_standard_error: ${NO_TOTAL_STANDARD_ERROR}`,
+    },
+  });
+  try {
+    file.writeField2d("radar_total", planes.totalMm);
+    if (adjustedTotalMm !== undefined) file.writeField2d("adjusted_total", adjustedTotalMm);
+    file.writeField2d("observed_fraction", planes.observedFraction);
+    file.writeField2d("bridged_fraction", planes.bridgedFraction);
+    file.writeField2d("edge_fraction", planes.edgeFraction);
+    file.writeField2d("beam_height", planes.beamHeightAslM);
+    file.writeField2d("cap_share", planes.cappedFraction);
+    for (const [r, share] of planes.radarShare.entries()) file.writeShares("radar_share", r, share);
+    let k = 0;
+    for (const job of run.jobs) {
+      for (const { depthMm } of store.load(job).intervals) {
+        file.writeInterval("radar_depth", k, depthMm);
+        if (adjustedTotalMm !== undefined)
+          file.writeInterval("adjusted_depth", k, applyFactor(depthMm, factor));
+        k++;
+      }
+    }
+  } catch (error) {
+    file.abandon();
+    throw error;
+  }
+  file.close();
+}
+
+function lonLatOf({ grid, map }: PreparedRun): (index: number) => { lonDeg: number; latDeg: number } {
+  return (index) => {
+    const column = index % grid.nx;
+    const row = (index - column) / grid.nx;
+    const [lonDeg, latDeg] = map.inverse(
+      grid.westM + (column + 0.5) * grid.cellM,
+      grid.northM - (row + 0.5) * grid.cellM,
+    );
+    return { lonDeg, latDeg };
+  };
+}
+
+/** The two GeoTIFFs and the isohyets. @returns the names of the files written */
+export async function writeMaps(sources: OutputSources): Promise<string[]> {
+  const { run, total, adjustedTotalMm } = sources;
+  const { grid, map } = run;
+  const written = ["radar_total.tif", "isohyets.geojson"];
+  await writeGeoTiff(sources.draft("radar_total.tif"), {
+    grid,
+    projString: map.projString,
+    values: total.planes.totalMm,
+    description: "radar_total",
+    unit: "mm",
+  });
+  if (adjustedTotalMm !== undefined) {
+    await writeGeoTiff(sources.draft("adjusted_total.tif"), {
+      grid,
+      projString: map.projString,
+      values: adjustedTotalMm,
+      description: "adjusted_total",
+      unit: "mm",
+    });
+    written.push("adjusted_total.tif");
+  }
+  const values = adjustedTotalMm ?? total.planes.totalMm;
+  let maxMm = 0;
+  for (const value of values) if (value > maxMm) maxMm = value;
+  const lines = isohyets({ grid, quantity: "depthMm", values }, isohyetLevels(maxMm)).map((isohyet) => ({
+    depthMm: isohyet.depthMm,
+    lines: isohyet.lines.map((line) => line.map(([x, y]) => map.inverse(x, y))),
+  }));
+  await writeIsohyets(sources.draft("isohyets.geojson"), lines, {
+    title: run.loaded.plan.title,
+    of: adjustedTotalMm === undefined ? "radar_total" : "adjusted_total",
+    unit: "mm",
+    start: isoUtc(run.window.startEpochMs),
+    end: isoUtc(run.window.endEpochMs),
+    cautions: [...sources.cautions],
+  });
+  return written;
+}
+
+/** Makers of columns for rows of one kind. */
+function columnsOf<Row>() {
+  return {
+    text: (name: string, of: (row: Row) => string | undefined): CsvColumn<Row> => ({
+      kind: "text",
+      name,
+      of,
+    }),
+    number: (name: string, decimals: number, of: (row: Row) => number | undefined): CsvColumn<Row> => ({
+      kind: "number",
+      name,
+      decimals,
+      of,
+    }),
+  };
+}
+
+/** `catchments.csv`: the window, rain days and every step. */
+export async function writeCatchments(sources: OutputSources): Promise<void> {
+  const { minObserved } = sources.run.loaded.plan.rain;
+  const whole = ({ figure }: CatchmentFigure) => figure.observedFraction >= minObserved;
+  const none = Number.NaN;
+  const { text, number } = columnsOf<CatchmentFigure>();
+  await writeCsv(
+    sources.draft("catchments.csv"),
+    [
+      text("catchment_id", ({ catchment }) => catchment.id),
+      text("name", ({ catchment }) => catchment.name),
+      text("start", ({ startEpochMs }) => isoUtc(startEpochMs)),
+      text("end", ({ endEpochMs }) => isoUtc(endEpochMs)),
+      number("depth_mm", 3, (row) => (whole(row) ? bestMm(row.figure) : none)),
+      number("depth_observed_mm", 3, ({ figure }) => bestMm(figure)),
+      text("reason", (row) => reasonOf(row, minObserved)),
+      number("radar_mm", 3, (row) => (whole(row) ? row.figure.radarMm : none)),
+      number("adjusted_mm", 3, (row) => (whole(row) ? row.figure.adjustedMm : none)),
+      number("gauges_only_mm", 3, () => none),
+      number("p10_mm", 3, () => none),
+      number("p90_mm", 3, () => none),
+      number("observed_fraction", 4, ({ figure }) => figure.observedFraction),
+      number("max_cell_mm", 3, ({ figure }) => figure.maxCellMm),
+      number("area_km2", 3, ({ catchment }) => catchment.areaKm2),
+    ],
+    catchmentFigures(sources),
+  );
+}
+
+/** Why a depth is missing, a lower bound, or at the cap; empty where it is plain. */
+export function reasonOf({ figure }: Pick<CatchmentFigure, "figure">, minObserved: number): string {
+  const reasons: string[] = [];
+  if (figure.observedFraction === 0) reasons.push("not observed");
+  else if (figure.observedFraction < minObserved) {
+    reasons.push(
+      `observed only ${Math.floor(100 * figure.observedFraction)} %: the depth seen is a lower bound`,
+    );
+  }
+  if (isAtCap(figure)) reasons.push("at cap");
+  return reasons.join("; ");
+}
+
+/** `pairs.csv`: by interval, by whole rain day, and over the window. */
+export async function writePairs(sources: OutputSources): Promise<void> {
+  const { comparison } = sources;
+  const factor = factorOf(comparison);
+  const heldOut = new Map(
+    comparison.crossValidation?.gauges.map((gauge) => [
+      gaugeKey({ network: gauge.network, id: gauge.gaugeId }),
+      gauge.factor,
+    ]),
+  );
+  const all: Pair[] = [
+    ...comparison.pairs,
+    ...comparison.gauges.flatMap(({ rainDays }) => rainDays),
+    ...comparison.gauges.map(({ whole }) => whole),
+  ];
+  const { text, number } = columnsOf<Pair>();
+  await writeCsv(
+    sources.draft("pairs.csv"),
+    [
+      text("network", ({ network }) => network),
+      text("gauge_id", ({ gaugeId }) => gaugeId),
+      text("start", ({ startEpochMs }) => isoUtc(startEpochMs)),
+      text("end", ({ endEpochMs }) => isoUtc(endEpochMs)),
+      number("gauge_mm", 3, ({ gaugeMm }) => gaugeMm),
+      number("radar_mm", 3, ({ radarMm }) => radarMm),
+      number("adjusted_mm", 3, ({ radarMm }) => radarMm * factor),
+      // Of a gauge that shaped the factor: the factor of the others. Any other gauge never shaped it.
+      number(
+        "cross_validated_mm",
+        3,
+        ({ network, gaugeId, radarMm }) =>
+          radarMm * (heldOut.get(gaugeKey({ network, id: gaugeId })) ?? factor),
+      ),
+      text("radar_id", ({ radarId }) => radarId),
+      number("gauge_observed_fraction", 4, (pair) => pair.gaugeObservedFraction),
+      number("radar_observed_fraction", 4, (pair) => pair.radarObservedFraction),
+      number("range_km", 2, ({ rangeKm }) => rangeKm),
+      number("beam_height_asl_m", 0, ({ beamHeightAslM }) => beamHeightAslM),
+      text("used", ({ used }) => (used ? "yes" : "no")),
+      text("reason", ({ reason }) => reason),
+    ],
+    all,
+  );
+}
+
+export async function writeGauges(sources: OutputSources): Promise<void> {
+  const { gauges } = sources.comparison;
+  const rows = gaugeRows(
+    gauges.map(({ whole }) => whole),
+    gauges.map(({ verdict }) => verdict),
+  );
+  const { text, number } = columnsOf<GaugeRow>();
+  await writeCsv(
+    sources.draft("gauges.csv"),
+    [
+      text("network", (row) => row.network),
+      text("gauge_id", (row) => row.gauge_id),
+      number("total_mm", 3, (row) => row.total_mm),
+      number("radar_total_mm", 3, (row) => row.radar_total_mm),
+      number("ratio_db", 3, (row) => row.ratio_db),
+      text("verdict", (row) => row.verdict),
+      text("cause", (row) => row.cause),
+      text("evidence", (row) => row.evidence),
+    ],
+    rows,
+  );
+}
+
+export async function writeScores(sources: OutputSources): Promise<void> {
+  const { plan } = sources.run.loaded;
+  const { before, after } = sources.comparison;
+  const document = scoresDocument({
+    pairIntervalMs: durationMs(plan.pairs.interval),
+    thresholdMm: plan.pairs.thresholdMm,
+    bootstrap: plan.bootstrap,
+    before,
+    after,
+  });
+  await writeJson(sources.draft("scores.json"), scoresSchema.parse(document) as JsonValue);
+}
+
+/** `README.txt`: how to read the files of a run. CSVs hold no comment lines, so this stands beside them. */
+export async function writeReadme(sources: OutputSources, files: readonly string[]): Promise<void> {
+  const { run, comparison } = sources;
+  const { plan } = run.loaded;
+  const adjustment = comparison.bias.applied
+    ? `Adjusted depths are radar depths times one factor, ${comparison.bias.factor.toFixed(3)} (gauge/radar): the ratio of sums over the pairs of ${comparison.bias.gaugeCount} trusted gauges, constant in time.`
+    : `There are no adjusted depths: ${comparison.bias.reason}.`;
+  const lines = [
+    plan.title,
+    `Status: ${plan.status}. Run digest: ${run.runDigest}. Made by rainreckon ${version()}.`,
+    "",
+    "Window and stamps",
+    `  (${isoUtc(run.window.startEpochMs)}, ${isoUtc(run.window.endEpochMs)}], UTC everywhere. An interval is (start, end]: what is stamped on a border belongs`,
+    "  to the interval ending there.",
+    "",
+    "Units",
+    "  Depths in mm, shares from 0 to 1, heights in m above mean sea level, ranges in km, areas in km2.",
+    `  Grid: ${run.grid.nx} x ${run.grid.ny} cells of ${run.grid.cellM} m, ${run.map.projString}; row 0 is the northernmost.`,
+    "",
+    "Missing is empty (CSV), null (JSON) or NaN (NetCDF, GeoTIFF): not observed, never 0.",
+    "",
+    "Definitions",
+    "  depth_mm            the figure to use: adjusted where there is an adjustment, else radar; empty where less than",
+    `                      ${Math.round(100 * plan.rain.minObserved)} % of area and time was observed`,
+    "  depth_observed_mm   from the part that was observed, over the whole area: a lower bound; nothing is scaled up",
+    "  observed_fraction   share of area and time that at least one radar observed",
+    "  bridged_fraction    share of the window between scans more than 1.5 median rounds apart, bridged all the same",
+    "  edge_fraction       share of the window before the first or after the last scan, for which that scan speaks",
+    "  radar_share         share of the observed time that each radar spoke for, by blend weight",
+    '  cap_share           share of the depth that came from gates at the hail cap; "at cap" says that it is not 0',
+    "  max_cell_mm         deepest cell of a catchment, over the window or in one step",
+    "  ratio_db            10 log10(radar/gauge): positive is radar wetter than gauge",
+    "  factor              gauge/radar: what radar depths are multiplied by",
+    "  cross_validated_mm  the adjusted depth at a gauge that this gauge had no part in",
+    "",
+    "Adjustment",
+    `  ${adjustment}`,
+    "",
+    "Columns without a method yet, therefore empty",
+    "  gauges_only_mm      interpolation of gauges alone is not built",
+    "  p10_mm, p90_mm      an error model of areal depths is not built",
+    `  adjusted_total_standard_error is not in totals.nc: ${NO_TOTAL_STANDARD_ERROR}.`,
+    "  The verdicts in gauges.csv are first doubts only (unit, spike, silence, impossible values).",
+    "",
+    "Cautions",
+    ...sources.cautions.map((caution) => `  - ${caution}`),
+    ...STANDING_CAUTIONS.map((caution) => `  - ${caution}`),
+    "",
+    "Files",
+    ...files.toSorted().map((file) => `  ${file}`),
+    "",
+  ];
+  await writeText(sources.draft("README.txt"), lines.join("\n"));
+}

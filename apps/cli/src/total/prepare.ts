@@ -1,0 +1,245 @@
+import { existsSync } from "node:fs";
+import path from "node:path";
+import { type CellFractions, cutWindow, durationMs } from "@rainreckon/accumulation";
+import {
+  findRelation,
+  type Grid,
+  InputError,
+  type Interval,
+  midEpochMs,
+  type Notice,
+  relationCaution,
+  resolveCap,
+  type ZrRelation,
+  zrRelation,
+} from "@rainreckon/core";
+import { readCatchments } from "@rainreckon/formats";
+import { type Projection, projection } from "@rainreckon/mosaic";
+import { canonicalJson, sha256Hex } from "../digest.ts";
+import type { ManifestInput } from "../manifest.ts";
+import type { LoadedPlan } from "../plan/load.ts";
+import type { PlanRadar } from "../plan/schema.ts";
+import type { LeftOutLog } from "../ui/left-out.ts";
+import type { Progress } from "../ui/progress.ts";
+import { version } from "../version.ts";
+import { type GaugeInputs, readGauges } from "./gauges.ts";
+import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
+import type { JobRadar, JobRelation, JobRound, RunShape, UnitJob } from "./job.ts";
+import { type PlacedCatchment, placeCatchments, unionOfAreas, wholeGrid } from "./places.ts";
+import { cutIntoUnits } from "./units.ts";
+
+/** All that a run needs before the first scan is decoded. */
+export interface PreparedRun {
+  readonly loaded: LoadedPlan;
+  readonly window: Interval;
+  readonly stepMs: number;
+  readonly intervals: readonly Interval[];
+  readonly steps: readonly Interval[];
+  readonly grid: Grid;
+  readonly map: Projection;
+  readonly radars: readonly RadarInput[];
+  readonly gauges: GaugeInputs;
+  readonly catchments: readonly PlacedCatchment[];
+  /** What the headline speaks of: all catchments together, or the whole grid. */
+  readonly district: CellFractions;
+  readonly headlineRelations: readonly { readonly name: string; readonly relation: ZrRelation }[];
+  readonly shape: RunShape;
+  readonly jobs: readonly UnitJob[];
+  readonly inputs: readonly ManifestInput[];
+  /** SHA-256 of plan, inputs and program: the same digest means the same bytes. */
+  readonly runDigest: string;
+}
+
+const FOREVER: Interval = { startEpochMs: Number.NEGATIVE_INFINITY, endEpochMs: Number.POSITIVE_INFINITY };
+
+/** A relation of the plan: from the catalogue by name, or coefficients of the user's own. */
+export function relationOf(relation: PlanRadar["relation"]): ZrRelation {
+  return typeof relation === "string"
+    ? findRelation(relation)
+    : zrRelation(relation.a, relation.b, relation.source);
+}
+
+/**
+ * Reads and sorts everything that a plan names, and cuts the run into units of work.
+ *
+ * @throws InputError (no-input) when no usable scan is left, or each radar has but one instant
+ */
+export async function prepareRun(
+  loaded: LoadedPlan,
+  log: LeftOutLog,
+  progressOf: (total: number, noun: string) => Progress,
+): Promise<PreparedRun> {
+  const { plan } = loaded;
+  const window: Interval = {
+    startEpochMs: Date.parse(plan.window.from),
+    endEpochMs: Date.parse(plan.window.to),
+  };
+  const stepMs = durationMs(plan.intervals.series);
+  const anchor = window.startEpochMs % stepMs;
+  const intervals = cutWindow(window, durationMs(plan.intervals.grids), anchor);
+  const steps = cutWindow(window, stepMs, anchor);
+  const grid: Grid = plan.grid;
+  const map = projection(grid.crs);
+
+  const inputs: ManifestInput[] = [];
+  const seen = (input: ManifestInput) => inputs.push(input);
+  const indexing = progressOf(loaded.scanFiles.length, "scans");
+  const radars = await indexScans(loaded, log, seen, indexing);
+  indexing.end();
+  refuseSingleInstants(radars, plan.window);
+  const sites = radars.map(({ sweeps }) => sweeps[0].header.site);
+  const gauges = await readGauges(loaded, grid, map, window, sites, log, seen);
+  const catchments = await catchmentsOf(loaded, grid, map, log, seen);
+  const district = catchments.length > 0 ? unionOfAreas(catchments, grid) : wholeGrid(grid);
+  const headlineRelations = plan.rain.headlineRelations.map((name) => ({
+    name,
+    relation: findRelation(name),
+  }));
+
+  const jobRadars = radars.map((radar) => jobRadar(radar, loaded, log));
+  const shape: RunShape = {
+    grid,
+    radars: jobRadars,
+    variants: headlineRelations.map(({ relation }) => relation),
+    headlineCells: district.cells,
+    gaugeCells: gauges.gauges.map((gauge) => gauge.cells),
+    areas: catchments.map((catchment) => catchment.cells),
+  };
+  const sorted = inputs.toSorted((a, b) => (a.path < b.path ? -1 : a.path > b.path ? 1 : 0));
+  const runDigest = sha256Hex(
+    canonicalJson({
+      version: version(),
+      node: process.versions.node.split(".")[0],
+      plan,
+      inputs: sorted.map(({ path: name, sha256 }) => [name, sha256]),
+    }),
+  );
+  return {
+    loaded,
+    window,
+    stepMs,
+    intervals,
+    steps,
+    grid,
+    map,
+    radars,
+    gauges,
+    catchments,
+    district,
+    headlineRelations,
+    shape,
+    jobs: cutIntoUnits(intervals, stepMs, jobRadars),
+    inputs: sorted,
+    runDigest,
+  };
+}
+
+/** One instant of a radar is a rate, and no number of minutes can be made of it. */
+function refuseSingleInstants(radars: readonly RadarInput[], window: { from: string; to: string }): void {
+  if (radars.some(({ rounds }) => rounds.length > 1)) return;
+  throw new InputError(
+    "one instant per site is a rate, not a total",
+    `radars ${radars.map(({ radar }) => radar.id).join(", ")}, window ${window.from} to ${window.to}`,
+    "add the scans before or after it: a total needs at least two rounds of one radar",
+    { kind: "no-input" },
+  );
+}
+
+async function catchmentsOf(
+  loaded: LoadedPlan,
+  grid: Grid,
+  map: Projection,
+  log: LeftOutLog,
+  seen: (input: ManifestInput) => void,
+): Promise<PlacedCatchment[]> {
+  const { plan, catchmentsFile } = loaded;
+  if (catchmentsFile === undefined || plan.catchments === undefined) return [];
+  const relative = (text: string) => text.replaceAll(`${loaded.folder}${path.sep}`, "");
+  const onNotice = (notice: Notice) =>
+    log.add("catchment left out", { ...notice, where: relative(notice.where) });
+  let use: ManifestInput["use"] = "left out";
+  let placed: PlacedCatchment[] = [];
+  try {
+    const { id, name, crs } = plan.catchments;
+    const read = await readCatchments(catchmentsFile, { id, name, crs }, onNotice);
+    placed = placeCatchments(read, grid, map, plan.catchments.file, log);
+    use = "used";
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    log.add("catchments left out", { what: error.what, where: relative(error.where), fix: error.fix });
+  }
+  if (existsSync(catchmentsFile)) {
+    const { name, sha256, bytes } = await hashFile(loaded.folder, catchmentsFile);
+    seen({ path: name, kind: "catchments", sha256, bytes, use });
+  }
+  return placed;
+}
+
+function jobRadar(
+  { radar, rounds, sweepOf, beamWidthDeg }: RadarInput,
+  loaded: LoadedPlan,
+  log: LeftOutLog,
+): JobRadar {
+  const { plan } = loaded;
+  const relations: JobRelation[] = [
+    { ...FOREVER, relation: relationOf(radar.relation) },
+    ...radar.periods.map(({ from, to, relation }) => ({
+      startEpochMs: Date.parse(from),
+      endEpochMs: Date.parse(to),
+      relation: relationOf(relation),
+    })),
+  ];
+  for (const { relation } of relations) {
+    const where = `radar ${radar.id}, Z = ${relation.a} R^${relation.b}`;
+    const caution = relationCaution(relation);
+    if (caution !== undefined)
+      log.add("doubted", { what: caution, where, fix: "choose a relation for rain" });
+    const { warning } = resolveCap(radar.cap, relation);
+    if (warning !== undefined) log.add("doubted", { what: warning, where, fix: "set the cap in the plan" });
+  }
+  const site = rounds[0].sweeps[0].site;
+  const jobRounds = rounds.map((round, k): JobRound => {
+    const sweeps = round.sweeps
+      .map((header) => {
+        const indexed = sweepOf.get(header);
+        if (indexed === undefined) throw new RangeError("a round holds a sweep that was not indexed");
+        const { file, index } = indexed;
+        return {
+          path: file.path,
+          name: file.name,
+          index,
+          elevationDeg: header.elevationDeg,
+          midEpochMs: midEpochMs(header),
+        };
+      })
+      .toSorted((a, b) => a.elevationDeg - b.elevationDeg || a.midEpochMs - b.midEpochMs);
+    const mids = sweeps.map((sweep) => sweep.midEpochMs);
+    return {
+      sweeps,
+      firstMidEpochMs: Math.min(...mids),
+      lastMidEpochMs: Math.max(...mids),
+      isFirst: k === 0,
+      isLast: k === rounds.length - 1,
+    };
+  });
+  return {
+    site,
+    moment: radar.moment,
+    beamWidthDeg,
+    offsetDb: radar.offsetDb,
+    cap: radar.cap,
+    minRateMmPerHour: plan.rain.minRateMmPerHour,
+    relations,
+    time: {
+      medianRoundMs: radar.medianRoundMinutes * 60_000,
+      maxGapMs: radar.maxGapMinutes * 60_000,
+    },
+    lookup: {
+      effectiveRadiusFactor: plan.rain.effectiveRadiusFactor,
+      maxBeamHeightM: radar.maxBeamHeightM,
+      taperM: plan.rain.taperKm * 1000,
+      blockedSectors: radar.blockedSectors,
+    },
+    rounds: jobRounds,
+  };
+}

@@ -1,0 +1,376 @@
+import { durationMs } from "@rainreckon/accumulation";
+import { gaugeKey, RELATIONS } from "@rainreckon/core";
+import { displayText } from "@rainreckon/formats";
+import type {
+  AccountLine,
+  DepthFigure,
+  Hyetograph,
+  MapLayer,
+  RelationFigure,
+  ReportCatchment,
+  ReportGauge,
+  ReportInput,
+  ReportScore,
+} from "@rainreckon/report";
+import type { ScoreTable } from "@rainreckon/verification";
+import { gaugeSteps } from "@rainreckon/verification";
+import type { ManifestNotice } from "../manifest.ts";
+import { lengthText } from "../ui/numbers.ts";
+import { version } from "../version.ts";
+import type { ComparedGauge, Comparison } from "./against-gauges.ts";
+import type { AssembledRun } from "./assemble.ts";
+import type { RunCaution } from "./cautions.ts";
+import { changedSettings } from "./changed-settings.ts";
+import {
+  type ArealFigure,
+  bestMm,
+  districtFigure,
+  factorOf,
+  headlineUnderRelations,
+  isAtCap,
+  spanFigure,
+} from "./figures.ts";
+import { reasonOf } from "./outputs.ts";
+import { type PreparedRun, relationOf } from "./prepare.ts";
+
+interface ReportSources {
+  readonly run: PreparedRun;
+  readonly total: AssembledRun;
+  readonly comparison: Comparison;
+  readonly cautions: readonly RunCaution[];
+  readonly adjustedTotalMm: Float32Array | undefined;
+  readonly notices: readonly ManifestNotice[];
+}
+
+/** All that the report says, from what a run came to. */
+export function reportInput(sources: ReportSources): ReportInput {
+  const { run, total, comparison, cautions } = sources;
+  const { plan } = run.loaded;
+  const { bias, crossValidation } = comparison;
+  const district = districtFigure(sources);
+  const figure = (areal: ArealFigure, mm: number): DepthFigure => {
+    const reason = reasonOf({ figure: areal }, plan.rain.minObserved);
+    return {
+      mm,
+      observedFraction: areal.observedFraction,
+      atCap: isAtCap(areal),
+      ...(reason === "" ? {} : { reason }),
+    };
+  };
+  return {
+    title: plan.title,
+    reference: plan.reference,
+    author: plan.author,
+    status: plan.status,
+    window: run.window,
+    zone: plan.window.zone,
+    minObserved: plan.rain.minObserved,
+    headline: {
+      place: run.catchments.length > 0 ? "The catchments together" : "The map",
+      depth: figure(district, bestMm(district)),
+      basis: bias.applied ? "adjusted" : "radar",
+    },
+    adjustment: bias.applied
+      ? { applied: true, method: "mean-field bias", factor: bias.factor, limited: bias.clipped }
+      : { applied: false, reason: bias.reason },
+    crossValidation:
+      crossValidation === undefined
+        ? { reason: bias.applied ? "not worked out" : `no adjustment: ${bias.reason}` }
+        : Number.isFinite(crossValidation.errorMm)
+          ? {
+              errorMm: crossValidation.errorMm,
+              errorPercent: crossValidation.errorPercent,
+              what: "root mean square error of window depths at gauges, each gauge left out in turn",
+            }
+          : { reason: "no gauge could be left out" },
+    cautions,
+    grid: run.grid,
+    layers: layersOf(sources),
+    shownLayerId: sources.adjustedTotalMm === undefined ? "radar-total" : "adjusted-total",
+    radars: run.shape.radars.map(({ site }) => {
+      const [xM, yM] = run.map.forward(site.lonDeg, site.latDeg);
+      return { id: site.id, xM, yM, ...(site.name === undefined ? {} : { name: site.name }) };
+    }),
+    gauges: comparison.gauges.map((gauge) => reportGauge(gauge, comparison)),
+    catchments: run.catchments.map((catchment, a): ReportCatchment => {
+      const areal = catchmentWindow(a, sources);
+      return {
+        id: catchment.id,
+        name: catchment.name,
+        polygons: catchment.polygons,
+        depth: figure(areal, bestMm(areal)),
+        radar: figure(areal, areal.radarMm),
+        ...(bias.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
+        maxCell: figure(areal, areal.maxCellMm),
+        areaKm2: catchment.areaKm2,
+      };
+    }),
+    gaugeHyetographs: comparison.gauges.map((gauge, g) => gaugeHyetograph(gauge, g, sources)),
+    catchmentHyetographs: run.catchments.map((catchment, a): Hyetograph => {
+      const factor = factorOf(comparison);
+      const radar = total.areas.depthMm[a];
+      return {
+        id: catchment.id,
+        label: catchment.name,
+        startEpochMs: run.window.startEpochMs,
+        stepMs: run.stepMs,
+        sides: [
+          {
+            role: bias.applied ? "adjusted" : "radar",
+            depthMm: bias.applied ? radar.map((mm) => mm * factor) : radar,
+            observedFraction: total.areas.observedFraction[a],
+          },
+        ],
+      };
+    }),
+    relations: relationFigures(sources, district),
+    scores: {
+      pairs: `pairs over ${lengthText(durationMs(plan.pairs.interval))}, on the time that gauge and radar both observed`,
+      radar: reportScores(comparison.before),
+      crossValidated: "whole" in comparison.after ? reportScores(comparison.after) : [],
+    },
+    accounts: accountsOf(sources),
+    provenance: {
+      software: `rainreckon ${version()}`,
+      runDigest: run.runDigest,
+      planDigest: run.loaded.digest,
+      inputs: run.inputs.map(({ path, kind, sha256, use, reason }) => ({
+        path,
+        kind,
+        sha256,
+        use: reason === undefined ? use : `${use}: ${reason}`,
+      })),
+      changedSettings: changedSettings(plan),
+    },
+  };
+}
+
+function catchmentWindow(area: number, { run, total, comparison }: ReportSources): ArealFigure {
+  return spanFigure(area, run.window, { run, total, comparison });
+}
+
+function layersOf({ run, total, adjustedTotalMm }: ReportSources): MapLayer[] {
+  const { planes } = total;
+  const loudest = new Float32Array(planes.totalMm.length).fill(Number.NaN);
+  for (let cell = 0; cell < loudest.length; cell++) {
+    let most = 0;
+    for (let r = 0; r < run.shape.radars.length; r++) {
+      if (planes.radarShare[r][cell] > most) {
+        most = planes.radarShare[r][cell];
+        loudest[cell] = r;
+      }
+    }
+  }
+  const layers: MapLayer[] = [
+    {
+      quantity: "depthMm",
+      id: "radar-total",
+      label: "Radar total",
+      what: "Depth from radar alone over the observed part of the window, mm.",
+      values: planes.totalMm,
+    },
+  ];
+  if (adjustedTotalMm !== undefined) {
+    layers.unshift({
+      quantity: "depthMm",
+      id: "adjusted-total",
+      label: "Adjusted total",
+      what: "Depth from radar adjusted to the gauges over the observed part of the window, mm.",
+      values: adjustedTotalMm,
+    });
+  }
+  layers.push(
+    {
+      quantity: "fraction",
+      id: "observed",
+      label: "Observed",
+      what: "Share of the window that at least one radar observed.",
+      values: planes.observedFraction,
+    },
+    {
+      quantity: "heightM",
+      id: "beam-height",
+      label: "Beam height",
+      what: "Height of the beam centre above mean sea level, averaged over the observed time, m.",
+      values: planes.beamHeightAslM,
+    },
+    {
+      quantity: "radarIndex",
+      id: "who-spoke",
+      label: "Who spoke",
+      what: "The radar that carries most of the weight in each cell.",
+      values: loudest,
+    },
+  );
+  return layers;
+}
+
+function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGauge {
+  const { gauge, verdict, whole } = compared;
+  const { series, station } = gauge;
+  const heldOut = comparison.crossValidation?.gauges.find(
+    (one) => one.network === series.network && one.gaugeId === series.id,
+  );
+  const factor = heldOut?.factor ?? factorOf(comparison);
+  return {
+    network: series.network,
+    id: series.id,
+    ...(station.name === undefined ? {} : { name: station.name }),
+    xM: gauge.xM,
+    yM: gauge.yM,
+    role: whole.used ? "used" : verdict.verdict === "doubt" ? "doubted" : "left-out",
+    gaugeMm: whole.gaugeMm,
+    radarMm: whole.radarMm,
+    crossValidatedMm: whole.radarMm * factor,
+    commonFraction: whole.commonFraction,
+    ...(whole.radarId === "" ? {} : { radarId: whole.radarId }),
+    ...(Number.isNaN(whole.rangeKm) ? {} : { rangeKm: whole.rangeKm }),
+    verdict: verdict.verdict,
+    cause: verdict.cause,
+    evidence: verdict.evidence,
+    ...(whole.reason === "" ? {} : { reason: whole.reason }),
+  };
+}
+
+function gaugeHyetograph({ gauge }: ComparedGauge, g: number, { run, total }: ReportSources): Hyetograph {
+  const { series, station } = gauge;
+  // A gauge that reports less often than the series step is drawn on its own step.
+  const own = series.stepMs ?? run.stepMs;
+  const perStep = Math.max(1, Math.ceil(own / run.stepMs));
+  const stepMs = perStep * run.stepMs;
+  const count = Math.floor(run.steps.length / perStep);
+  const measured = gaugeSteps(series, run.window.startEpochMs, stepMs, Math.max(1, count));
+  const depthMm = new Float64Array(count).fill(Number.NaN);
+  const observedFraction = new Float64Array(count);
+  for (let step = 0; step < count * perStep; step++) {
+    const mm = total.gauges.depthMm[g][step];
+    if (Number.isNaN(mm)) continue;
+    const into = Math.floor(step / perStep);
+    depthMm[into] = Number.isNaN(depthMm[into]) ? mm : depthMm[into] + mm;
+    observedFraction[into] += total.gauges.observedFraction[g][step] / perStep;
+  }
+  return {
+    id: gaugeKey(series),
+    label: station.name === undefined ? `${series.network} ${series.id}` : `${series.id} ${station.name}`,
+    startEpochMs: run.window.startEpochMs,
+    stepMs,
+    sides: [
+      { role: "gauge", depthMm: measured.depthMm, observedFraction: measured.observedFraction },
+      { role: "radar", depthMm, observedFraction },
+    ],
+  };
+}
+
+/** The headline under the catalogue relations of the plan, and under its own where that is another. */
+function relationFigures(sources: ReportSources, district: ArealFigure): RelationFigure[] {
+  const { run } = sources;
+  const { plan } = run.loaded;
+  const used = run.loaded.plan.radars.filter(({ use }) => use).map(({ relation }) => relation);
+  const onlyOne = new Set(used.map((relation) => JSON.stringify(relation))).size === 1;
+  const own = used[0];
+  const figures = headlineUnderRelations(sources).map(({ name, mm, observedFraction }): RelationFigure => {
+    const known = RELATIONS.find((relation) => relation.name === name);
+    if (known === undefined) throw new RangeError(`no relation ${name} in the catalogue`);
+    const { a, b, regime } = known;
+    return { name, a, b, regime, depth: { mm, observedFraction }, inUse: onlyOne && own === name };
+  });
+  if (onlyOne && !figures.some(({ inUse }) => inUse)) {
+    const { a, b } = relationOf(own);
+    const known = typeof own === "string" ? RELATIONS.find((relation) => relation.name === own) : undefined;
+    figures.unshift({
+      name: typeof own === "string" ? own : `the plan's own (${displayText(own.source)})`,
+      a,
+      b,
+      regime: known?.regime ?? "as the plan says",
+      depth: { mm: district.radarMm, observedFraction: district.observedFraction },
+      inUse: plan.radars.every(({ periods }) => periods.length === 0),
+    });
+  }
+  return figures;
+}
+
+function reportScores(table: ScoreTable): ReportScore[] {
+  return [
+    ...table.whole.continuous.map((score) => ({ score })),
+    ...table.whole.thresholds.flatMap(({ thresholdMm, scores }) =>
+      scores.map((score) => ({ score, thresholdMm })),
+    ),
+  ];
+}
+
+/** Which deed a notice's kind stands for. */
+function deedOf(kind: string): AccountLine["deed"] {
+  if (kind === "assumed") return "assumed";
+  if (kind === "doubted") return "flagged";
+  if (kind.startsWith("gauge data")) return "flagged";
+  return "left out";
+}
+
+/** What the run did to its input, counted: from its own counters and from every notice. */
+function accountsOf({ run, total, comparison, notices }: ReportSources): AccountLine[] {
+  const { counts } = total;
+  const lines: AccountLine[] = [];
+  const add = (deed: AccountLine["deed"], what: string, count: number, unit: string, why: string) => {
+    if (count > 0) lines.push({ deed, what, count, unit, why });
+  };
+  for (const { kind, what, where, fix, count } of notices) {
+    add(deedOf(kind), `${kind}: ${what}`, count, "times", `${where}; ${fix}`);
+  }
+  add(
+    "capped",
+    "rain rate held at the hail cap",
+    counts.gatesCapped,
+    "gates",
+    `of ${counts.gatesRead} gates read`,
+  );
+  add(
+    "filled",
+    "a cell spoken for by a higher sweep, since the lowest did not observe it",
+    counts.cellsFilledByHigherSweep,
+    "cells",
+    "summed over all rounds",
+  );
+  if (comparison.splitMm > 0) {
+    lines.push({
+      deed: "assumed",
+      what: `${comparison.splitMm.toFixed(1)} mm of gauge readings cross a border of steps and were shared out by time`,
+      count: 1,
+      unit: "times",
+      why: "rain is taken to be even within one reading",
+    });
+  }
+  for (const { network, counts: c } of run.gauges.counts) {
+    const where = `network ${network}`;
+    add("left out", "gauge readings missing in their files", c.missing, "readings", where);
+    add("left out", "gauge readings that cannot be true", c.impossible, "readings", where);
+    add(
+      "left out",
+      "gauge rows given twice with other values: the first counts",
+      c.duplicatesDifferent,
+      "readings",
+      where,
+    );
+    add("left out", "gauge rows given twice alike: counted once", c.duplicatesSame, "readings", where);
+    add("left out", "stamps in an hour that the clock skipped", c.skippedHour, "stamps", where);
+    add(
+      "left out",
+      "stamps in an hour that the clock repeated, not told apart",
+      c.repeatedHourLeftOut,
+      "stamps",
+      where,
+    );
+    add(
+      "assumed",
+      "stamps in an hour that the clock repeated, told apart by their order",
+      c.repeatedHourResolved,
+      "stamps",
+      where,
+    );
+    add("flagged", "gauge readings that their network doubts", c.qualityDoubt, "readings", where);
+    add("left out", "gauge readings that their network drops", c.qualityDrop, "readings", where);
+    add("corrected", "counter resets", c.counterResets, "readings", where);
+    add("corrected", "counter jitter", c.counterJitter, "readings", where);
+    add("assumed", "silent hours taken to be dry", Math.round(c.silentDryHours), "gauge hours", where);
+  }
+  return lines;
+}

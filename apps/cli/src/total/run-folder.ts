@@ -1,0 +1,146 @@
+import { createHash } from "node:crypto";
+import {
+  existsSync,
+  lstatSync,
+  mkdirSync,
+  readdirSync,
+  readFileSync,
+  renameSync,
+  rmSync,
+  writeFileSync,
+} from "node:fs";
+import path from "node:path";
+import { InputError } from "@rainreckon/core";
+import { manifestSchema } from "../manifest.ts";
+
+/** Where an unfinished run keeps its units and its outputs until all are whole. */
+const UNFINISHED = ".unfinished";
+const RUN_FILE = "run.json";
+/** Written last: a folder that has it is finished. */
+export const MANIFEST = "manifest.json";
+/** The one file that may differ from run to run. */
+export const RUN_LOG = "run-log.json";
+
+/** What a folder holds when a run comes to it. */
+export type FolderState = "new" | "unfinished" | "finished";
+
+/** The folder of a run. Outputs are made under `.unfinished` and moved into place when all are whole. */
+export interface RunFolder {
+  readonly state: FolderState;
+  readonly folder: string;
+  readonly unitsFolder: string;
+  /** Path under which an output is made. */
+  draft(file: string): string;
+  /** Moves the drafts into place, the manifest last, and clears what was scratch. */
+  publish(files: readonly string[]): void;
+}
+
+/**
+ * Opens a folder for a run.
+ *
+ * A folder with an unfinished run of the same digest is resumed; a finished one of the same digest is left
+ * as it is; anything else is refused, or moved aside under `force`. Nothing is ever deleted but scratch.
+ *
+ * @throws InputError (usage) where the folder holds something else, or cannot be written
+ */
+export function openRunFolder(folder: string, runDigest: string, force: boolean): RunFolder {
+  const state = stateOf(folder, runDigest);
+  if (typeof state !== "string") {
+    if (!force) throw state;
+    moveAside(folder);
+    return openRunFolder(folder, runDigest, false);
+  }
+  const scratch = path.join(folder, UNFINISHED);
+  const run: RunFolder = {
+    state,
+    folder,
+    unitsFolder: path.join(scratch, "units"),
+    draft: (file) => path.join(scratch, "out", file),
+    publish(files) {
+      const ordered = [...files.filter((file) => file !== MANIFEST), MANIFEST];
+      for (const file of ordered) renameSync(run.draft(file), path.join(folder, file));
+      rmSync(scratch, { recursive: true, force: true });
+    },
+  };
+  if (state === "finished") return run;
+  try {
+    mkdirSync(run.unitsFolder, { recursive: true });
+    mkdirSync(path.join(scratch, "out"), { recursive: true });
+    writeFileSync(path.join(scratch, RUN_FILE), `${JSON.stringify({ runDigest })}\n`);
+  } catch (cause) {
+    throw new InputError(
+      "this folder cannot be written",
+      folder,
+      "choose another --out, or change its permissions",
+      {
+        kind: "usage",
+        cause,
+      },
+    );
+  }
+  return run;
+}
+
+function stateOf(folder: string, runDigest: string): FolderState | InputError {
+  const stat = lstatSync(folder, { throwIfNoEntry: false });
+  if (stat === undefined) return "new";
+  const refuse = (what: string, fix: string) => new InputError(what, folder, fix, { kind: "usage" });
+  if (!stat.isDirectory()) return refuse("the output is not a folder", "choose another --out");
+  const names = readdirSync(folder);
+  if (names.length === 0) return "new";
+  const unfinished = path.join(folder, UNFINISHED);
+  if (existsSync(path.join(folder, MANIFEST))) {
+    const found = manifestSchema.safeParse(readJson(path.join(folder, MANIFEST)));
+    if (!found.success || found.data.runDigest !== runDigest) {
+      return refuse(
+        "this folder holds another run",
+        "choose another --out, or add --force to move the old run aside",
+      );
+    }
+    const changed = found.data.outputs.find(
+      ({ file, sha256 }) => file !== RUN_LOG && hashOf(path.join(folder, path.basename(file))) !== sha256,
+    );
+    if (changed !== undefined) {
+      return refuse(
+        `the run in this folder is the same, but its ${changed.file} was changed or removed since`,
+        "add --force to move it aside and make it again",
+      );
+    }
+    return "finished";
+  }
+  if (lstatSync(unfinished, { throwIfNoEntry: false })?.isDirectory()) {
+    const held = readJson(path.join(unfinished, RUN_FILE)) as { runDigest?: unknown } | undefined;
+    if (held?.runDigest === runDigest) return "unfinished";
+    return refuse(
+      "this folder holds an unfinished run of another plan or other inputs",
+      "choose another --out, or add --force to move it aside",
+    );
+  }
+  return refuse(
+    "this folder holds other files",
+    "choose another --out, or add --force to move the whole folder aside",
+  );
+}
+
+/** Renames the folder to the first free name beside it: "out.before-1". */
+function moveAside(folder: string): void {
+  for (let n = 1; ; n++) {
+    const aside = `${folder}.before-${n}`;
+    if (existsSync(aside)) continue;
+    renameSync(folder, aside);
+    return;
+  }
+}
+
+function readJson(file: string): unknown {
+  try {
+    return JSON.parse(readFileSync(file, "utf8"));
+  } catch {
+    return undefined;
+  }
+}
+
+function hashOf(file: string): string | undefined {
+  if (!lstatSync(file, { throwIfNoEntry: false })?.isFile()) return undefined;
+  return createHash("sha256").update(readFileSync(file)).digest("hex");
+}

@@ -1,0 +1,224 @@
+import { statSync } from "node:fs";
+import os from "node:os";
+import path from "node:path";
+import { type JsonValue, sha256OfFile, writeJson, writeText } from "@rainreckon/formats";
+import { renderReport } from "@rainreckon/report";
+import type { Manifest } from "../manifest.ts";
+import { loadPlan } from "../plan/load.ts";
+import { leftOutLog } from "../ui/left-out.ts";
+import { progressBar } from "../ui/progress.ts";
+import type { Terminal } from "../ui/terminal.ts";
+import { version } from "../version.ts";
+import { compareWithGauges } from "./against-gauges.ts";
+import { assemble } from "./assemble.ts";
+import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
+import { estimate, type RunEstimate } from "./estimate.ts";
+import {
+  type ArealFigure,
+  bestMm,
+  districtFigure,
+  factorOf,
+  headlineUnderRelations,
+  spanFigure,
+} from "./figures.ts";
+import {
+  type OutputSources,
+  sumAdjusted,
+  writeCatchments,
+  writeGauges,
+  writeMaps,
+  writePairs,
+  writeReadme,
+  writeScores,
+  writeTotals,
+} from "./outputs.ts";
+import { type PreparedRun, prepareRun } from "./prepare.ts";
+import { reportInput } from "./report-input.ts";
+import { MANIFEST, openRunFolder, RUN_LOG } from "./run-folder.ts";
+import { workUnits } from "./work.ts";
+
+export interface TotalOptions {
+  readonly out: string;
+  readonly workers: number;
+  readonly force: boolean;
+  readonly dryRun: boolean;
+}
+
+/** What a run came to, for the terminal and for --json. */
+export type TotalOutcome =
+  | { readonly kind: "dry run"; readonly run: PreparedRun; readonly estimate: RunEstimate }
+  | { readonly kind: "already there"; readonly run: PreparedRun }
+  | {
+      readonly kind: "done";
+      readonly run: PreparedRun;
+      readonly manifest: Manifest;
+      readonly resumedUnits: number;
+    };
+
+/** The outcome, and how many inputs or parts of them were left out or doubted. */
+export interface TotalResult {
+  readonly outcome: TotalOutcome;
+  readonly noticeCount: number;
+}
+
+/** Scans, gauges and catchments of a plan in; a folder of totals, figures, report and manifest out. */
+export async function runTotal(
+  planPath: string,
+  options: TotalOptions,
+  terminal: Terminal,
+): Promise<TotalResult> {
+  const started = performance.now();
+  const startedAt = new Date().toISOString();
+  const loaded = await loadPlan(planPath);
+  const log = leftOutLog(terminal);
+  for (const notice of loaded.notices) log.add("file not found", notice);
+  const run = await prepareRun(loaded, log, (count, noun) => progressBar(terminal, count, noun));
+  if (options.dryRun) {
+    log.finish();
+    return { outcome: { kind: "dry run", run, estimate: estimate(run) }, noticeCount: log.count };
+  }
+  const folder = openRunFolder(path.resolve(options.out), run.runDigest, options.force);
+  if (folder.state === "finished") {
+    log.finish();
+    return { outcome: { kind: "already there", run }, noticeCount: log.count };
+  }
+  const indexedMs = performance.now() - started;
+
+  const progress = progressBar(terminal, run.jobs.length, "units of work");
+  const { store, resumed } = await workUnits(run, folder.unitsFolder, options.workers, progress);
+  progress.end();
+  const workedMs = performance.now() - started;
+  const total = assemble(run.shape, run.jobs, store, run.window.endEpochMs - run.window.startEpochMs);
+  for (const notice of total.notices) log.add("sweep left out", notice);
+  const comparison = compareWithGauges(run, total);
+  const adjustedTotalMm = comparison.bias.applied
+    ? sumAdjusted(run, store, comparison.bias.factor)
+    : undefined;
+  const district = districtFigure({ run, total, comparison });
+  const cautions = runCautions(run, total, comparison, district);
+  const sources: OutputSources = {
+    run,
+    total,
+    comparison,
+    store,
+    adjustedTotalMm,
+    cautions: cautions.map((caution) => caution.text),
+    draft: folder.draft,
+  };
+  await writeTotals(sources);
+  const maps = await writeMaps(sources);
+  await writeCatchments(sources);
+  await writePairs(sources);
+  await writeGauges(sources);
+  await writeScores(sources);
+  const report = renderReport(
+    reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all }),
+  );
+  await writeText(folder.draft("report.html"), report);
+  const files = [
+    "totals.nc",
+    ...maps,
+    "catchments.csv",
+    "pairs.csv",
+    "gauges.csv",
+    "scores.json",
+    "report.html",
+  ];
+  await writeReadme(sources, [...files, "README.txt", MANIFEST, RUN_LOG]);
+  files.push("README.txt");
+
+  const manifest = await manifestOf(sources, files, log.all, district);
+  await writeJson(folder.draft(MANIFEST), manifest as JsonValue);
+  await writeJson(folder.draft(RUN_LOG), {
+    startedAt,
+    finishedAt: new Date().toISOString(),
+    host: os.hostname(),
+    node: process.versions.node,
+    workers: options.workers,
+    resumedUnits: resumed,
+    units: run.jobs.length,
+    indexSeconds: seconds(indexedMs),
+    workSeconds: seconds(workedMs - indexedMs),
+    handOverSeconds: seconds(performance.now() - started - workedMs),
+  });
+  folder.publish([...files, RUN_LOG]);
+  log.finish();
+  return { outcome: { kind: "done", run, manifest, resumedUnits: resumed }, noticeCount: log.count };
+}
+
+function seconds(ms: number): number {
+  return Math.round(ms) / 1000;
+}
+
+async function manifestOf(
+  { run, total, comparison, draft, cautions }: OutputSources,
+  files: readonly string[],
+  notices: readonly Manifest["notices"][number][],
+  district: ArealFigure,
+): Promise<Manifest> {
+  const outputs = await Promise.all(
+    files.toSorted().map(async (file) => ({
+      file,
+      sha256: await sha256OfFile(draft(file)),
+      bytes: statSync(draft(file)).size,
+    })),
+  );
+  const { plan, digest } = run.loaded;
+  const known = (value: number): number | null => (Number.isFinite(value) ? value : null);
+  const factor = factorOf(comparison);
+  const sources = { run, total, comparison };
+  return {
+    format: "rainreckon-manifest-1",
+    version: version(),
+    status: plan.status,
+    title: plan.title,
+    runDigest: run.runDigest,
+    plan: JSON.parse(JSON.stringify(plan)) as Record<string, unknown>,
+    planDigest: digest,
+    inputs: [...run.inputs],
+    outputs,
+    counts: {
+      radars: run.radars.length,
+      rounds: run.radars.reduce((sum, { rounds }) => sum + rounds.length, 0),
+      sweepsDecoded: total.counts.sweepsDecoded,
+      gatesRead: total.counts.gatesRead,
+      gatesCapped: total.counts.gatesCapped,
+      cellsFilledByHigherSweep: total.counts.cellsFilledByHigherSweep,
+      gauges: comparison.gauges.length,
+      gaugesUsed: comparison.gauges.filter(({ whole }) => whole.used).length,
+      gaugesDoubted: comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length,
+      pairs: comparison.pairs.length,
+      pairsUsed: comparison.before.usedCount,
+      catchments: run.catchments.length,
+      units: run.jobs.length,
+    },
+    notices: [...notices],
+    headline: {
+      window: { start: plan.window.from, end: plan.window.to },
+      districtMm: known(bestMm(district)),
+      districtRadarMm: known(district.radarMm),
+      districtAdjustedMm: known(district.adjustedMm),
+      observedFraction: district.observedFraction,
+      cappedFraction: district.cappedFraction,
+      factorGaugeOverRadar: known(factor),
+      adjustmentReason: comparison.bias.applied ? null : comparison.bias.reason,
+      crossValidatedErrorMm: known(comparison.crossValidation?.errorMm ?? Number.NaN),
+      crossValidatedErrorPercent: known(comparison.crossValidation?.errorPercent ?? Number.NaN),
+      underRelations: headlineUnderRelations(sources).map(({ name, mm, observedFraction }) => ({
+        name,
+        mm: known(mm),
+        observedFraction,
+      })),
+      catchments: run.catchments.map((catchment, a) => {
+        const figure = spanFigure(a, run.window, sources);
+        return {
+          id: catchment.id,
+          name: catchment.name,
+          mm: known(bestMm(figure)),
+          observedFraction: figure.observedFraction,
+        };
+      }),
+      cautions: [...cautions, ...STANDING_CAUTIONS],
+    },
+  };
+}

@@ -1,0 +1,67 @@
+import { displayText } from "@rainreckon/formats";
+import { counted, countText, fixedDecimals, localText, utcText } from "../ui/numbers.ts";
+import type { Terminal } from "../ui/terminal.ts";
+import type { TotalOutcome } from "./run-total.ts";
+
+/** What a run tells people on the terminal: the headline, how far to trust it, and where the rest is. */
+export function totalText(outcome: TotalOutcome, folder: string, terminal: Terminal): string {
+  const { run } = outcome;
+  if (outcome.kind === "already there") {
+    return `${displayText(folder)} holds this run already, finished and unchanged: nothing was done.`;
+  }
+  if (outcome.kind === "dry run") {
+    const { hours, scanFiles, rounds, gauges, catchments, units, memoryMb, diskMb, minutes } =
+      outcome.estimate;
+    return [
+      `This run would take about ${counted(minutes, "minute")} on one core, ${countText(memoryMb)} MB of memory and ${countText(diskMb)} MB of disk:`,
+      `  ${hours} h, ${counted(scanFiles, "scan file")}, ${counted(rounds, "round")} in ${counted(units, "unit")} of work`,
+      `  ${counted(gauges, "gauge")}, ${counted(catchments, "catchment")}, ${run.grid.nx} × ${run.grid.ny} cells of ${run.grid.cellM} m`,
+      "Nothing was written.",
+    ].join("\n");
+  }
+  const { headline, counts } = outcome.manifest;
+  const { minObserved } = run.loaded.plan.rain;
+  const observed = Number(headline.observedFraction);
+  const atLeast = observed < minObserved ? "at least " : "";
+  const basis = headline.districtAdjustedMm === null ? "radar alone" : "radar adjusted to gauges";
+  const { startEpochMs, endEpochMs } = run.window;
+  const zone = run.loaded.plan.window.zone;
+  const local =
+    zone === "UTC" ? "" : `\n  ${localText(startEpochMs, zone)} to ${localText(endEpochMs, zone)}`;
+  const place = run.catchments.length > 0 ? "all catchments together" : "the whole map";
+  const minutesSeen = Math.round((observed * (endEpochMs - startEpochMs)) / 6000) / 10;
+  const minutes = Math.round((endEpochMs - startEpochMs) / 60_000);
+  const catchments = headline.catchments as { name: string; mm: number | null; observedFraction: number }[];
+  const width = Math.max(0, ...catchments.map(({ name }) => displayText(name).length));
+  const error =
+    headline.crossValidatedErrorMm === null
+      ? ""
+      : `; error at gauges left out in turn ${fixedDecimals(headline.crossValidatedErrorMm as number, 1)} mm (${fixedDecimals(headline.crossValidatedErrorPercent as number, 0)} %)`;
+  const relations = headline.underRelations as { name: string; mm: number | null }[];
+  return [
+    terminal.strong(displayText(run.loaded.plan.title)),
+    `  ${utcText(startEpochMs)} to ${utcText(endEpochMs)}${local}`,
+    "",
+    terminal.strong(
+      `${atLeast}${fixedDecimals(headline.districtMm as number | null, 1)} mm over ${place} (${basis})`,
+    ),
+    `  observed ${minutesSeen} of ${minutes} minutes on average (${fixedDecimals(100 * observed, 0)} %)`,
+    ...catchments.map(
+      ({ name, mm, observedFraction }) =>
+        `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${fixedDecimals(mm, 1).padStart(6)} mm`,
+    ),
+    "",
+    `gauges: ${counts.gaugesUsed} used, ${counts.gaugesDoubted} doubted, of ${counts.gauges}`,
+    headline.factorGaugeOverRadar === null
+      ? `not adjusted: ${headline.adjustmentReason}`
+      : `mean-field bias ${fixedDecimals(headline.factorGaugeOverRadar as number, 2)} (gauge/radar)${error}`,
+    `before adjustment, under other relations: ${relations.map(({ name, mm }) => `${name} ${fixedDecimals(mm, 1)} mm`).join(", ")}`,
+    "",
+    ...(headline.cautions as string[]).slice(0, 3).map((caution) => `! ${caution}`),
+    "",
+    `report: ${displayText(folder)}/report.html`,
+    ...(outcome.resumedUnits > 0
+      ? [`(${counted(outcome.resumedUnits, "unit")} of work was there from before)`]
+      : []),
+  ].join("\n");
+}
