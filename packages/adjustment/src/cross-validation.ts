@@ -1,5 +1,11 @@
-import { gaugeKey, type Pair } from "@rainreckon/core";
-import { factorFromSums, type GaugeSum, type MeanFieldBiasOptions, sumsByGauge } from "./mean-field-bias.ts";
+import { gaugeKey } from "@rainreckon/core";
+import {
+  type FactorPair,
+  factorFromSums,
+  type GaugeSum,
+  type MeanFieldBiasOptions,
+  sumsByGauge,
+} from "./mean-field-bias.ts";
 
 /** What the other gauges make of one gauge. */
 export interface HeldOutGauge {
@@ -14,13 +20,13 @@ export interface HeldOutGauge {
 }
 
 /** Leave-one-gauge-out cross-validation of a mean-field bias. */
-export interface CrossValidation {
+export interface CrossValidation<P extends FactorPair> {
   readonly gauges: readonly HeldOutGauge[];
   /**
    * The pairs that were given, the radar depth of used ones multiplied by the factor of the other
    * gauges: what scores after adjustment are worked out on. A pair whose factor is undefined is unused.
    */
-  readonly pairs: readonly Pair[];
+  readonly pairs: readonly P[];
   /** Root mean square over gauges of cross-validated minus gauge window depth, mm; NaN without a gauge. */
   readonly errorMm: number;
   /** The same in per cent of the gauges' mean window depth; NaN where that is 0. */
@@ -42,10 +48,10 @@ export interface CrossValidation {
  *
  * @param pairs - the pairs that the factor was made from
  */
-export function crossValidate(
-  pairs: readonly Pair[],
+export function crossValidate<P extends FactorPair>(
+  pairs: readonly P[],
   { factorLimits }: Pick<MeanFieldBiasOptions, "factorLimits">,
-): CrossValidation {
+): CrossValidation<P> {
   const sums = sumsByGauge(pairs);
   const heldOut = sums.map((sum, left) => holdOut(sum, sums.toSpliced(left, 1), factorLimits));
   const factors = new Map(heldOut.map((gauge) => [keyOf(gauge), gauge.factor]));
@@ -84,7 +90,7 @@ function holdOut(
   };
 }
 
-function adjustedByOthers(pair: Pair, factor: number | undefined): Pair {
+function adjustedByOthers<P extends FactorPair>(pair: P, factor: number | undefined): P {
   if (!pair.used || factor === undefined) return pair;
   if (Number.isNaN(factor)) {
     return { ...pair, used: false, reason: "the radar saw no rain at the other gauges: no factor" };

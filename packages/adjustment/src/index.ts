@@ -3,6 +3,7 @@ export {
   type AppliedBias,
   applyFactor,
   type FactorBasis,
+  type FactorPair,
   factorFromSums,
   type GaugeSum,
   type LimitedFactor,

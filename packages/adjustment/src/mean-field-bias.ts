@@ -1,6 +1,9 @@
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import { decibels, quotient, ratioStandardError } from "@rainreckon/verification";
 
+/** What a factor needs of a pair. */
+export type FactorPair = Pick<Pair, "network" | "gaugeId" | "gaugeMm" | "radarMm" | "used" | "reason">;
+
 /** Rules of a mean-field bias, as the plan gives them. */
 export interface MeanFieldBiasOptions {
   /** Fewest gauges with usable pairs. */
@@ -80,7 +83,7 @@ export interface GaugeSum {
 }
 
 /** Sums by gauge over used pairs, in the order in which gauges first appear. */
-export function sumsByGauge(pairs: readonly Pair[]): GaugeSum[] {
+export function sumsByGauge(pairs: readonly FactorPair[]): GaugeSum[] {
   const sums = new Map<string, GaugeSum>();
   for (const pair of pairs) {
     if (!pair.used) continue;
@@ -110,7 +113,7 @@ export function sumsByGauge(pairs: readonly Pair[]): GaugeSum[] {
  *
  * @param pairs - pairs of any intervals of the window; each time of each gauge in one pair only
  */
-export function meanFieldBias(pairs: readonly Pair[], options: MeanFieldBiasOptions): MeanFieldBias {
+export function meanFieldBias(pairs: readonly FactorPair[], options: MeanFieldBiasOptions): MeanFieldBias {
   const sums = sumsByGauge(pairs);
   const gauges = sums.map((sum) => sum.gaugeMm);
   const radars = sums.map((sum) => sum.radarMm);
