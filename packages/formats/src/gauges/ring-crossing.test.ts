@@ -30,7 +30,7 @@ describe("rings that cross themselves", () => {
     [
       "crossing in a vertex that both parts have",
       close([0, 0], [1, 1], [2, 2], [2, 0], [1, 1], [0, 2]),
-      [1, 1],
+      [[1, 1]],
     ],
     ["an edge through a vertex", close([0, 0], [2, 2], [2, 0], [1, 1], [0, 2]), [[1, 1]]],
     ["two edges along each other", close([0, 0], [4, 0], [4, 2], [3, 0], [1, 0], [0, 2]), [[1, 0]]],
