@@ -3,7 +3,7 @@ import { checkValue, checkValues, differences, inputNumber } from "../../publish
 import { beamMean, beamPosition, blockedShare, type EchoProfile, profileDb } from "./beam.ts";
 
 const beams = checkValues("g-beam").filter(
-  ({ id, inputs }) => /^beam-[hs]-[\d.]+deg-\d+km$/.test(id) && inputs["earth_radius_km"] === 6371,
+  ({ id, inputs }) => /^beam-[hs]-[\d.]+deg-\d+km$/.test(id) && inputs.earth_radius_km === 6371,
 );
 
 describe("the beam over a 4/3 earth (published/radar-physics.json, topic g)", () => {

@@ -249,12 +249,17 @@ function writeDistrict(
   put("gauges/tideway_stations.csv", gauges.tidewayStations);
   put("catchments.geojson", catchmentsGeoJson(catchments, plane));
   put("terrain.tif", terrainTiff(options.sizeKm, plane, ground));
-  put(
-    "README.txt",
-    "Invented data. Saltermoor is no place; its radars, gauges, catchments and storm do not exist.\n" +
-      "truth/truth.json tells what truly fell and every fault that was planted.\n",
-  );
+  put("README.txt", DISTRICT_NOTE);
 }
+
+/** What the people of the district would tell along with their files. */
+const DISTRICT_NOTE = `Invented data. Saltermoor is no place; its radars, gauges, catchments and storm do not exist.
+
+gauges/moor.csv          5-minute depths in mm, stamped at the end, UTC
+gauges/saltwater.csv     10-minute depths in mm, stamped at the end, local standard time all year (UTC+1)
+gauges/tideway_tips.csv  one line a tip of 0.2 mm, UTC; no line means no tip
+truth/truth.json         what truly fell, and every fault that was planted
+`;
 
 /** The ground on a longitude-latitude grid that covers the truth grid, about 300 m a cell. */
 function terrainTiff(sizeKm: number, plane: Plane, ground: (xKm: number, yKm: number) => number): Buffer {

@@ -7,7 +7,7 @@ import {
   waterGramPerM3,
 } from "./drops.ts";
 import type { RandomStream } from "./random.ts";
-import { textureAt, textureRow, wrappedTexture } from "./texture.ts";
+import { TEXTURE_SIDE, textureAt, textureRow, wrappedTexture } from "./texture.ts";
 
 /** One shower: it grows, moves, and decays; its rain falls off like a stretched Gaussian. */
 interface Cell {
@@ -78,6 +78,7 @@ export class Weather {
   readonly #shape: StormShape;
   readonly #cells: readonly Cell[];
   readonly #patches: Float32Array;
+  #patchOrigin: { readonly xKm: number; readonly yKm: number } = { xKm: 0, yKm: 0 };
   readonly #dropNumber: Float32Array;
   readonly #dropShape: Float32Array;
   readonly #showerFactor: number;
@@ -89,6 +90,7 @@ export class Weather {
     this.#dropNumber = wrappedTexture(random, [64, 32, 16], 0.6);
     this.#dropShape = wrappedTexture(random, [64, 32], 0.6);
     this.#cells = makeCells(random, shape);
+    this.#patchOrigin = this.#choosePatchOrigin(random);
     const factors = this.#fitFactors();
     this.#showerFactor = factors.shower;
     this.#widespreadFactor = factors.widespread;
@@ -119,9 +121,30 @@ export class Weather {
   #patch(xKm: number, yKm: number, minute: number): number {
     return textureAt(
       this.#patches,
-      xKm - STORM_X_KM_PER_MINUTE * minute,
-      yKm - STORM_Y_KM_PER_MINUTE * minute,
+      this.#patchOrigin.xKm + xKm - STORM_X_KM_PER_MINUTE * minute,
+      this.#patchOrigin.yKm + yKm - STORM_Y_KM_PER_MINUTE * minute,
     );
+  }
+
+  /** Of a hundred places of the pattern, the one whose wet share over the district comes nearest to a half. */
+  #choosePatchOrigin(random: RandomStream): { xKm: number; yKm: number } {
+    const { districtHalfKm, minutes } = this.#shape;
+    const places = Array.from({ length: 100 }, () => ({
+      xKm: random.between(0, TEXTURE_SIDE),
+      yKm: random.between(0, TEXTURE_SIDE),
+    }));
+    const distance = places.map((place) => {
+      this.#patchOrigin = place;
+      let wet = 0;
+      for (let i = 0; i < 192; i++) {
+        const xKm = districtHalfKm * (((i % 8) - 3.5) / 4);
+        const yKm = districtHalfKm * (((Math.floor(i / 8) % 8) - 3.5) / 4);
+        const minute = minutes * (0.25 + 0.25 * Math.floor(i / 64));
+        if (patchRate(this.#patch(xKm, yKm, minute)) > 0) wet += 1;
+      }
+      return Math.abs(wet / 192 - 0.5);
+    });
+    return places[distance.indexOf(Math.min(...distance))]!;
   }
 
   /** The widespread rain sets in, holds, and dies away. */
@@ -156,8 +179,8 @@ export class Weather {
     for (let row = 0; row < lattice.ny; row++) {
       textureRow(
         this.#patches,
-        lattice.westKm - STORM_X_KM_PER_MINUTE * minute,
-        lattice.southKm + row - STORM_Y_KM_PER_MINUTE * minute,
+        this.#patchOrigin.xKm + lattice.westKm - STORM_X_KM_PER_MINUTE * minute,
+        this.#patchOrigin.yKm + lattice.southKm + row - STORM_Y_KM_PER_MINUTE * minute,
         line,
       );
       for (let column = 0; column < lattice.nx; column++) {
