@@ -37,8 +37,8 @@ const DIGEST_DIGITS = 16;
  * The content policy in its head forbids everything but pictures inside the file and its own style sheet.
  * The same input gives the same bytes.
  *
- * @throws RangeError where the input contradicts itself: a layer that does not fill the grid, a zone that
- * does not exist
+ * @throws RangeError where the input contradicts itself: a layer that does not fill the grid or names a
+ * radar that is not there, a zone that does not exist
  */
 export function renderReport(input: ReportInput): string {
   const footer = footerText(input);

@@ -147,21 +147,23 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .scroll.tall{max-height:480px}
 .beside .tall{max-height:1060px}
 table{border-collapse:collapse;width:100%;font-size:.88rem;line-height:1.4}
-caption{text-align:left;padding:9px 12px;font-size:.85rem}
+caption{text-align:left;padding:9px 12px;font-size:.97em}
 th,td{text-align:left;vertical-align:top;padding:6px 12px;border-top:1px solid var(--line);font-weight:400}
-thead th{font-size:.8rem;color:var(--soft);font-weight:600;vertical-align:bottom}
+thead th{font-size:.92em;color:var(--soft);font-weight:600;vertical-align:bottom}
 thead .number{white-space:normal}
 .tall thead th{position:sticky;top:0;background:var(--panel);box-shadow:inset 0 -1px var(--line)}
+tbody th{min-width:8.5em}
 .number{text-align:right;white-space:nowrap}
 .main,.id{font-weight:650}
-.sub{display:block;font-size:.8rem}
+.sub{display:block;font-size:.9em}
 .number .sub,.id+.sub{white-space:nowrap}
 .words{min-width:16ch;overflow-wrap:anywhere}
 .scores th[scope=row]{min-width:24ch}
 .scores td{min-width:16ch}
 .role,.name{white-space:nowrap}
+.evidence{width:36%}
 .role .swatch{margin-right:6px}
-.mark{font-size:.75rem;font-weight:600;color:var(--warn);border:1px solid var(--warn-line);border-radius:3px;padding:0 4px;white-space:nowrap}
+.mark{font-size:.85em;font-weight:600;color:var(--warn);border:1px solid var(--warn-line);border-radius:3px;padding:0 4px;white-space:nowrap}
 .missing{color:var(--soft)}
 .chart-column{width:28%;min-width:90px}
 .bar-cell{width:100%;height:14px;margin-top:3px}
@@ -188,7 +190,7 @@ section{margin-top:22pt}
 h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
 .headline{font-size:12.5pt;margin:10pt 0}
 .trust{grid-template-columns:repeat(4,1fr)}
-.trust div,.trust div:nth-child(3){border-top:0;border-left:1px solid var(--line);padding:5pt 8pt}
+.trust div,.trust div:nth-child(n+3){border-top:0;border-left:1px solid var(--line);padding:5pt 8pt}
 .trust div:first-child{border-left:0}
 .trust b{font-size:11pt}
 .cautions{padding:6pt 10pt;margin-top:9pt;break-inside:avoid}

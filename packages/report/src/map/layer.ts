@@ -72,6 +72,8 @@ function drawRadars(
   picture: Picture,
   radars: readonly ReportRadar[],
 ): DrawnLayer {
+  const stray = picture.values.find((value) => !Number.isNaN(value) && radars[value] === undefined);
+  if (stray !== undefined) throw new RangeError(`layer ${layer.id} names radar ${stray} of ${radars.length}`);
   const overlays = radars.map((_, radar) => ({
     id: `radar-tile-${radar}`,
     category: radar,

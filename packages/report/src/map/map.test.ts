@@ -95,6 +95,17 @@ test("radars share out the cells: each has its own pattern over its own cells", 
   expect(svg).toContain('<path d="M30 0h10v20h-10z" fill="url(#map-hatch)"/>');
 });
 
+test("a layer that names a radar that is not there is refused", () => {
+  const who = {
+    quantity: "radarIndex",
+    id: "who",
+    label: "Who",
+    what: "",
+    values: Float32Array.of(2),
+  } as const;
+  expect(() => drawLayers([who], 1, 1, inventedInput().radars)).toThrow("layer who names radar 2 of 2");
+});
+
 test("what lies off the map is not drawn on it", () => {
   const input = place(oneWetCell(), grid);
   const svg = svgMap(

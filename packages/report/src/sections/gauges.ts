@@ -70,7 +70,7 @@ export function scatterSection(input: ReportInput): Markup {
     "Gauge against radar",
     "radar, mm",
     radar,
-  )}<figcaption>Radar before adjustment.${dry > 1 && ` ${counted(dry, "gauge")} without rain on either side share the corner.`}${dropped > 0 && html` ${counted(dropped, "gauge")} without both depths not drawn; the reasons are in the table.`}</figcaption></figure>${
+  )}<figcaption>Radar before adjustment.${dry > 1 && ` ${counted(dry, "gauge")} without rain on either side share the corner.`}${dropped > 0 && html` ${counted(dropped, "gauge")} without both depths not drawn; the reasons are with the verdicts below.`}</figcaption></figure>${
     adjusted.length > 0 &&
     html`<figure>${svgScatter("scatter-adjusted", "Gauge against adjusted radar", "adjusted radar, mm", adjusted)}<figcaption>After adjustment, each gauge left out of the adjustment that it is held against.</figcaption></figure>`
   }</div>${numbersTable(gauges, adjusted.length > 0)}</div></section>`;
@@ -84,8 +84,13 @@ export function verdictSection(input: ReportInput): Markup {
   const sorted = [...gauges].sort((a, b) => order[a.role] - order[b.role]);
   return html`<section id="gauges" aria-labelledby="verdict-heading"><h2 id="verdict-heading">Gauges: verdict, cause, evidence</h2><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each gauge"><table><caption>Doubted gauges first</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th><th scope="col">Radar</th><th scope="col" class="number">Range km</th><th scope="col" class="number">Time shared</th></tr></thead><tbody>${sorted.map(
     (gauge) =>
-      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(gauge.cause, "no cause was found or looked for")}</td><td class="words">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td class="name">${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
+      html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(causeOf(gauge), "no cause was found or looked for")}</td><td class="words evidence">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td class="name">${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
   )}</tbody></table></div></section>`;
+}
+
+/** The cause that was found; for a gauge without one, why it could not take part. */
+function causeOf(gauge: ReportGauge): string {
+  return gauge.cause === "" ? (gauge.reason ?? "") : gauge.cause;
 }
 
 function wordsOrDash(words: string, reason: string): Markup {
