@@ -88,8 +88,12 @@ export function bootstrapIntervals<Name extends string>(
 }
 
 function limits(scores: Float64Array, level: number): ScoreInterval {
-  const defined = scores.filter((score) => !Number.isNaN(score)).sort();
-  const undefinedCount = scores.length - defined.length;
+  // The standard sorts NaN to the end.
+  const ascending = scores.slice().sort();
+  let definedCount = ascending.length;
+  while (definedCount > 0 && Number.isNaN(ascending[definedCount - 1])) definedCount--;
+  const defined = ascending.subarray(0, definedCount);
+  const undefinedCount = scores.length - definedCount;
   if (undefinedCount > MAX_UNDEFINED_SHARE * scores.length) {
     const reason = `undefined in ${undefinedCount} of ${scores.length} resamples`;
     return { low: Number.NaN, high: Number.NaN, level, reason };

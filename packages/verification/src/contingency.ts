@@ -139,9 +139,7 @@ export function contingencyEvaluator(
         for (let k = 0; k < 4; k++) cells[k] += weight * byUnit[unit * 4 + k];
       }
       const scores = fromCells(cells[0], cells[1], cells[2], cells[3]);
-      names.forEach((name, k) => {
-        out[k] = scores[name];
-      });
+      for (let k = 0; k < names.length; k++) out[k] = scores[names[k]];
     },
   };
 }

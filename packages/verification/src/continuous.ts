@@ -90,9 +90,7 @@ export function additiveEvaluator(pairs: DepthPairs, units: Units): Evaluator<Ad
       for (let i = 0; i < pairWeights.length; i++) pairWeights[i] = unitWeights[unitOf[i]];
       const scores = additiveFromSums(sums, meanGauge, meanRadar);
       scores.spearmanCorrelation = spearman(pairWeights);
-      names.forEach((name, k) => {
-        out[k] = scores[name];
-      });
+      for (let k = 0; k < names.length; k++) out[k] = scores[names[k]];
     },
   };
 }
@@ -192,9 +190,7 @@ export function ratioEvaluator({ gaugeMm, radarMm }: DepthPairs, units: Units): 
         rootMeanSquareFactor: 10 ** (Math.sqrt(meanSquareDb) / 10),
         shareWithinFactor2: quotient(within, n),
       };
-      names.forEach((name, k) => {
-        out[k] = scores[name];
-      });
+      for (let k = 0; k < names.length; k++) out[k] = scores[names[k]];
     },
   };
 }

@@ -136,8 +136,8 @@ describe("intervals of confidence", () => {
     const few = scoreOf(sevenHours.whole.continuous, "biasRatio");
     expect(few).toMatchObject({
       intervals: {
-        timeBlocks: { low: Number.NaN, high: Number.NaN, reason: "pairs in 7 blocks of time, 8 needed" },
-        gauges: { low: Number.NaN, high: Number.NaN, reason: "pairs of 1 gauges, 8 needed" },
+        timeBlocks: { low: Number.NaN, high: Number.NaN, reason: "fewer than 8 blocks of time hold pairs" },
+        gauges: { low: Number.NaN, high: Number.NaN, reason: "pairs of fewer than 8 gauges" },
       },
     });
     const { whole } = scorePairs(pairs24, options);
@@ -151,7 +151,7 @@ describe("intervals of confidence", () => {
   test("a longer block makes fewer blocks", () => {
     const blocks = { ...options, bootstrap: { ...options.bootstrap, blockMinutes: 240 } };
     expect(scoreOf(scorePairs(pairs24, blocks).whole.continuous, "biasRatio")).toMatchObject({
-      intervals: { timeBlocks: { reason: "pairs in 6 blocks of time, 8 needed" } },
+      intervals: { timeBlocks: { reason: "fewer than 8 blocks of time hold pairs" } },
     });
   });
 
@@ -188,9 +188,11 @@ describe("scores.json", () => {
       value: null,
       reason: "there was no false alarm: the logarithm has no value",
     });
-    expect(scoreOf(read.before.whole.continuous, "biasRatio")).toMatchObject({
-      gauges: { low: null, high: null, reason: "pairs of 1 gauges, 8 needed" },
-    });
+    // One gauge only: said once for the group, and by no score.
+    expect(read.before.whole.noGauges).toBe("pairs of fewer than 8 gauges");
+    const biasRatio = scoreOf(read.before.whole.continuous, "biasRatio");
+    expect(biasRatio.gauges).toBeUndefined();
+    expect(biasRatio.timeBlocks?.low).toBeLessThan(biasRatio.value ?? 0);
     for (const { name } of [...read.before.whole.continuous, ...at1mm.scores]) {
       expect(read.definitions[name]?.definition.length, name).toBeGreaterThan(5);
     }

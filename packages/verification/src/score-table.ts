@@ -226,11 +226,11 @@ function intervalsOf<Name extends string>(
   return {
     timeBlocks:
       blocks < MIN_BOOTSTRAP_UNITS
-        ? none(`pairs in ${blocks} blocks of time, ${MIN_BOOTSTRAP_UNITS} needed`)
+        ? none(`fewer than ${MIN_BOOTSTRAP_UNITS} blocks of time hold pairs`)
         : resampled(timeOf, timeIndex.size, blockLength),
     gauges:
       gauges.length < MIN_BOOTSTRAP_UNITS
-        ? none(`pairs of ${gauges.length} gauges, ${MIN_BOOTSTRAP_UNITS} needed`)
+        ? none(`pairs of fewer than ${MIN_BOOTSTRAP_UNITS} gauges`)
         : resampled(gaugeOf, gauges.length, 1),
   };
 }

@@ -25,8 +25,8 @@ const score = z
     reason: z.string().min(1).optional().describe("why the value is null"),
     n: count.describe("pairs it was worked out on"),
     dropped: count.describe("used pairs that its rule dropped"),
-    timeBlocks: interval.describe("bootstrap over blocks of time, all gauges together"),
-    gauges: interval.describe("bootstrap over gauges, all times together"),
+    timeBlocks: interval.optional().describe("bootstrap over blocks of time, all gauges together"),
+    gauges: interval.optional().describe("bootstrap over gauges, all times together"),
     wilson: interval.optional().describe("Wilson interval of a share of counts, pairs as independent"),
     standardError: figure.optional().describe("closed form, pairs as independent"),
   })
@@ -35,6 +35,8 @@ const score = z
   });
 
 const group = {
+  noTimeBlocks: z.string().min(1).optional().describe("why no score of the group has timeBlocks"),
+  noGauges: z.string().min(1).optional().describe("why no score of the group has gauges"),
   pairs: count,
   gauges: count,
   intervals: count,
@@ -143,6 +145,7 @@ export function scoresDocument(input: ScoresDocumentInput): ScoresDocument {
 type PlainTable = ScoresDocument["before"];
 type PlainGroup = PlainTable["whole"];
 type PlainScore = PlainGroup["continuous"][number];
+type PlainInterval = z.output<typeof interval>;
 
 function plainTable(scores: ScoreTable): PlainTable {
   return {
@@ -169,20 +172,39 @@ function plainTable(scores: ScoreTable): PlainTable {
 }
 
 function plainGroup(scores: ScoreGroup): PlainGroup {
+  const all = [...scores.continuous, ...scores.thresholds.flatMap((at) => at.scores)];
+  const noTimeBlocks = sharedReason(all, "timeBlocks");
+  const noGauges = sharedReason(all, "gauges");
+  const plain = (entry: ContingencyScore): PlainScore => ({
+    ...plainValue(entry),
+    ...(noTimeBlocks === undefined ? { timeBlocks: plainInterval(entry.intervals?.timeBlocks) } : {}),
+    ...(noGauges === undefined ? { gauges: plainInterval(entry.intervals?.gauges) } : {}),
+  });
   return {
+    ...(noTimeBlocks === undefined ? {} : { noTimeBlocks }),
+    ...(noGauges === undefined ? {} : { noGauges }),
     pairs: scores.pairs,
     gauges: scores.gauges,
     intervals: scores.intervals,
-    continuous: scores.continuous.map(plainScore),
+    continuous: scores.continuous.map(plain),
     thresholds: scores.thresholds.map((at) => ({
       thresholdMm: at.thresholdMm,
       counts: { ...at.counts },
-      scores: at.scores.map(plainScore),
+      scores: at.scores.map(plain),
     })),
   };
 }
 
-function plainScore(entry: ContingencyScore): PlainScore {
+/** The reason why none of the scores has an interval, where it is the same for all: said once, not sixty times. */
+function sharedReason(
+  scores: readonly ContingencyScore[],
+  kind: "timeBlocks" | "gauges",
+): string | undefined {
+  const reason = scores[0]?.intervals?.[kind].reason;
+  return scores.every((entry) => entry.intervals?.[kind].reason === reason) ? reason : undefined;
+}
+
+function plainValue(entry: ContingencyScore): PlainScore {
   const reason = entry.reason ?? (Number.isFinite(entry.value) ? undefined : "unbounded");
   return {
     name: entry.name,
@@ -190,14 +212,12 @@ function plainScore(entry: ContingencyScore): PlainScore {
     ...(reason === undefined ? {} : { reason }),
     n: entry.n,
     dropped: entry.dropped,
-    timeBlocks: plainInterval(entry.intervals?.timeBlocks),
-    gauges: plainInterval(entry.intervals?.gauges),
     ...(entry.wilson === undefined ? {} : { wilson: plainInterval(entry.wilson) }),
     ...(entry.standardError === undefined ? {} : { standardError: finite(entry.standardError) }),
   };
 }
 
-function plainInterval(limits: ScoreInterval | undefined): PlainScore["timeBlocks"] {
+function plainInterval(limits: ScoreInterval | undefined): PlainInterval {
   if (limits === undefined) return { low: null, high: null, reason: "not worked out" };
   if (Number.isFinite(limits.low) && Number.isFinite(limits.high)) {
     return { low: limits.low, high: limits.high };
