@@ -10,6 +10,6 @@ export {
 } from "./integrate.ts";
 export { FieldSum, type IntervalFields, type TotalPlanes, totalPlanes } from "./interval-sum.ts";
 export { type Isohyet, isohyetLevels, isohyets } from "./isohyet.ts";
-export { cellsForPoint, closestOf3x3, pointDepth } from "./point.ts";
+export { cellsForPoint, pointDepth } from "./point.ts";
 export { clockZone, type RainDay, type RainDayRule, rainDays } from "./rain-day.ts";
 export { cutWindow, durationMs } from "./steps.ts";

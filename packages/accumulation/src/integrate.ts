@@ -89,6 +89,10 @@ export class RadarIntegrator {
   readonly #previous: Int32Array;
   #taken = 0;
   #released = 0;
+  /** The stretch asked about last, and its parts; forgotten whenever a layer is added, since steps may have been taken. */
+  #partsFrom = Number.NaN;
+  #partsTo = Number.NaN;
+  #parts: readonly Part[] = [];
 
   /** @param steps - contiguous, in time order */
   constructor(
@@ -114,9 +118,7 @@ export class RadarIntegrator {
     const { medianRoundMs, maxGapMs } = this.#rules;
     const bridgedAboveMs = BRIDGED_ABOVE_ROUNDS * medianRoundMs;
 
-    let parts: Part[] = [];
-    let partsFrom = Number.NaN;
-    let partsTo = Number.NaN;
+    this.#partsFrom = Number.NaN;
     for (let cell = 0; cell < this.#cellCount; cell++) {
       const rate1 = rateMmPerHour[cell];
       if (!(rate1 >= 0)) continue;
@@ -130,11 +132,8 @@ export class RadarIntegrator {
       // A released layer lies further back than any gap that is bridged.
       if (previous === undefined) continue;
       const from = previous.sweepMidEpochMs[previous.slot === undefined ? 0 : previous.slot[cell]];
-      if (from !== partsFrom || to !== partsTo) {
-        partsFrom = from;
-        partsTo = to;
-        parts = to - from <= maxGapMs ? this.#partsOf(from, to) : [];
-      }
+      if (to - from > maxGapMs) continue;
+      const parts = this.#partsOf(from, to);
       const rate0 = previous.rateMmPerHour[cell];
       const bridged = to - from > bridgedAboveMs;
       for (const { step, hours0, hours1, ms } of parts) {
@@ -262,7 +261,9 @@ export class RadarIntegrator {
     }
   }
 
-  #partsOf(from: number, to: number): Part[] {
+  /** The parts of a stretch in the open steps. Most cells share their stretch with the one before. */
+  #partsOf(from: number, to: number): readonly Part[] {
+    if (from === this.#partsFrom && to === this.#partsTo) return this.#parts;
     const parts: Part[] = [];
     for (let step = this.#firstStepAfter(from); step < this.#steps.length; step++) {
       const { startEpochMs, endEpochMs } = this.#steps[step];
@@ -271,6 +272,9 @@ export class RadarIntegrator {
       const end = Math.min(to, endEpochMs);
       if (end > begin) parts.push({ step, ...trapezoidHours(from, to, begin, end) });
     }
+    this.#partsFrom = from;
+    this.#partsTo = to;
+    this.#parts = parts;
     return parts;
   }
 

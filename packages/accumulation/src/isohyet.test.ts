@@ -1,7 +1,7 @@
 import type { Field, Grid } from "@rainreckon/core";
 import { describe, expect, test } from "vitest";
 import { isohyetLevels, isohyets } from "./isohyet.ts";
-import { closestOf3x3, pointDepth } from "./point.ts";
+import { cellsForPoint, pointDepth } from "./point.ts";
 
 const grid: Grid = { crs: "plane", westM: -10_000, northM: 20_000, cellM: 500, nx: 80, ny: 60 };
 const field = (value: (xM: number, yM: number) => number): Field<"depthMm"> => ({
@@ -57,8 +57,9 @@ describe("points", () => {
     expect(point.observedFraction).toBeCloseTo(8 / 9, 12);
   });
 
-  test("the closest of 3 × 3 skips what was not observed", () => {
-    expect(closestOf3x3(small, 4, values, 7.8)).toBe(7);
-    expect(closestOf3x3(small, 4, new Float64Array(9).fill(Number.NaN), 7.8)).toBeNaN();
+  test("a gauge at the grid's corner is stood for by the cells there are, one outside by none", () => {
+    expect(cellsForPoint(small, 0, "mean3x3")).toEqual([0, 1, 3, 4]);
+    expect(cellsForPoint(small, 4, "nearest")).toEqual([4]);
+    expect(cellsForPoint(small, -1, "mean3x3")).toEqual([]);
   });
 });

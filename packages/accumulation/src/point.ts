@@ -39,17 +39,3 @@ export function pointDepth(
   if (seen === 0) return { depthMm: Number.NaN, observedFraction: 0 };
   return { depthMm: depth / seen, observedFraction: Math.min(1, observed / cells.length / lengthMs) };
 }
-
-/**
- * The cell value among the 3 × 3 that comes closest to what a gauge measured: a diagnostic of displacement.
- * It makes any field look good (it picks by the answer), so it must never enter a score.
- */
-export function closestOf3x3(grid: Grid, cell: number, field: ArrayLike<number>, gaugeMm: number): number {
-  let closest = Number.NaN;
-  for (const near of cellsForPoint(grid, cell, "mean3x3")) {
-    const value = field[near];
-    if (Number.isNaN(value)) continue;
-    if (!(Math.abs(value - gaugeMm) >= Math.abs(closest - gaugeMm))) closest = value;
-  }
-  return closest;
-}
