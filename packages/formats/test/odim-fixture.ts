@@ -74,8 +74,12 @@ export function oneSweep(
  *
  * @returns path of the new file, in a temporary folder of its own
  */
-export function writeOdim(content: OdimContent, path = temporaryPath("scan.h5")): string {
-  const file = new h5wasm.File(path, "w", { libver: ["earliest", "v110"] });
+export function writeOdim(
+  content: OdimContent,
+  path: string = temporaryPath("scan.h5"),
+  layout: readonly ["earliest" | "v110", "v110"] = ["earliest", "v110"],
+): string {
+  const file = new h5wasm.File(path, "w", { libver: [...layout] });
   if (content.conventions !== undefined) {
     file.create_attribute("Conventions", content.conventions, null, textType(content.conventions));
   }

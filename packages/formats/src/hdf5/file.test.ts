@@ -63,6 +63,30 @@ test("a chunk that fails to decode throws; what an earlier read left in memory i
   }
 });
 
+test("an array that was never written is refused, not handed out as the fill value", () => {
+  const path = writeOdim(oneSweep());
+  // The dataset's chunks are found through a version 1 B-tree of node type 1 (HDF5 File Format Specification,
+  // section III.A.1): with "entries used" at 0 the library finds none.
+  const bytes = readFileSync(path);
+  for (let at = bytes.indexOf("TREE"); at >= 0; at = bytes.indexOf("TREE", at + 1)) {
+    if (bytes[at + 4] === 1) bytes.writeUInt16LE(0, at + 6);
+  }
+  writeFileSync(path, bytes);
+  const file = openHdf5(path);
+  expect(fault(() => file.read("/dataset1/data1/data")).what).toBe(
+    "the file is damaged: nothing of this array is stored",
+  );
+  file.close();
+});
+
+test("an array of one value throughout is read like any other", () => {
+  const dry = new Uint8Array(MOMENT.values.length);
+  const file = openHdf5(writeOdim(oneSweep({}, { values: dry })));
+  expect(file.read("/dataset1/data1/data")).toEqual(dry);
+  expect(file.read("/dataset1/data1/data")).toEqual(dry);
+  file.close();
+});
+
 test.each([
   ["uint8", Uint8Array.of(0, 255)],
   ["uint16", Uint16Array.of(0, 65535)],

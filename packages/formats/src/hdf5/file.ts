@@ -3,7 +3,7 @@ import { resolve } from "node:path";
 import { InputError, type StoredValues } from "@rainreckon/core";
 import type { Metadata } from "h5wasm/node";
 import { globalHeapsAreSound } from "./global-heap.ts";
-import { callLibrary, callLibraryForNames, readBytes } from "./library.ts";
+import { callLibrary, countFileReads, readBytes } from "./library.ts";
 import { HEAD_BYTES, readSuperblock, signatureOffset } from "./superblock.ts";
 import { decodeText } from "./text.ts";
 
@@ -131,7 +131,7 @@ class OpenFile implements Hdf5File {
   children(group: string): readonly string[] | undefined {
     this.#mustBeOpen();
     try {
-      return callLibraryForNames(this.#full, (library) => library.get_names(this.#id, group, false));
+      return callLibrary(this.#full, (library) => library.get_names(this.#id, group, false));
     } catch (error) {
       if (this.#isAbsent(group)) return undefined;
       throw damaged("this group cannot be listed", this.#at(group), error);
@@ -143,9 +143,7 @@ class OpenFile implements Hdf5File {
     const known = this.#attributeNames.get(object);
     if (known !== undefined) return known;
     try {
-      const names = callLibraryForNames(this.#full, (library) =>
-        library.get_attribute_names(this.#id, object),
-      );
+      const names = callLibrary(this.#full, (library) => library.get_attribute_names(this.#id, object));
       const set = new Set(names);
       this.#attributeNames.set(object, set);
       return set;
@@ -179,9 +177,28 @@ class OpenFile implements Hdf5File {
       throw new InputError("there is no such array", this.#at(dataset), "ask for one that the file holds");
     }
     const { elementCount, type } = this.#checkedShape(dataset, metadata);
+    const byteCount = elementCount * metadata.size;
+    const values = typedArray(type, this.#arrayBytes(dataset, byteCount).buffer);
+    if (metadata.chunks !== null && values.every((value) => value === values[0])) {
+      this.#mustBeStored(dataset, byteCount);
+    }
+    return values;
+  }
+
+  /**
+   * Where the index of an array's chunks is lost, or they were never written, the library hands out the fill value
+   * without a word: a sweep of echo would become one of none. The first read has brought the index into memory, so
+   * a second one goes to the file for the chunks alone, and not at all where there are none.
+   */
+  #mustBeStored(dataset: string, byteCount: number): void {
+    if (countFileReads(() => this.#arrayBytes(dataset, byteCount)) > 0) return;
+    throw damaged("nothing of this array is stored", this.#at(dataset));
+  }
+
+  #arrayBytes(dataset: string, byteCount: number): Uint8Array<ArrayBuffer> {
     let bytes: Uint8Array<ArrayBuffer> | undefined;
     try {
-      bytes = readBytes(this.#full, elementCount * metadata.size, (library, address) =>
+      bytes = readBytes(this.#full, byteCount, (library, address) =>
         library.get_dataset_data(this.#id, dataset, null, null, null, BigInt(address)),
       );
     } catch (error) {
@@ -189,7 +206,7 @@ class OpenFile implements Hdf5File {
       throw damaged("this array cannot be decoded", this.#at(dataset), error);
     }
     if (bytes === undefined) throw damaged("this array cannot be decoded", this.#at(dataset));
-    return typedArray(type, bytes.buffer);
+    return bytes;
   }
 
   close(): void {
@@ -203,9 +220,7 @@ class OpenFile implements Hdf5File {
     const known = this.#datasets.get(dataset);
     if (known !== undefined) return known;
     try {
-      const metadata = callLibrary(this.#full, (library) =>
-        library.get_dataset_metadata(this.#id, dataset),
-      );
+      const metadata = callLibrary(this.#full, (library) => library.get_dataset_metadata(this.#id, dataset));
       this.#datasets.set(dataset, metadata);
       return metadata;
     } catch (error) {

@@ -13,6 +13,7 @@ interface FileLayer {
     length: number,
     at?: number,
   ) => number;
+  read: (stream: unknown, bytes: unknown, offset: number, length: number, at?: number) => number;
   readonly ErrnoError: new (code: number) => Error;
 }
 
@@ -22,6 +23,8 @@ const DIAGNOSTICS_DESCRIPTOR = 2;
 let library: Hdf5Library | undefined;
 /** While a call of ours runs, the only file that the library may open. */
 let onlyPath: string | undefined;
+/** How often the library has read from a file. */
+let fileReads = 0;
 
 /** Loads the HDF5 library once; everything else here is synchronous afterwards. */
 export async function hdf5Ready(): Promise<void> {
@@ -47,10 +50,25 @@ function confine(files: FileLayer): void {
   const write = files.write.bind(files);
   files.write = (stream, bytes, offset, length, at) =>
     stream.fd === DIAGNOSTICS_DESCRIPTOR ? length : write(stream, bytes, offset, length, at);
+  const read = files.read.bind(files);
+  files.read = (stream, bytes, offset, length, at) => {
+    fileReads += 1;
+    return read(stream, bytes, offset, length, at);
+  };
+}
+
+/** How often the library reads from a file while `work` runs. */
+export function countFileReads(work: () => void): number {
+  const before = fileReads;
+  work();
+  return fileReads - before;
 }
 
 /**
  * Runs one call of the library, with file access confined to `path`.
+ *
+ * The library's loader warns on stderr about names that are not UTF-8 and about memory that it cannot get, as
+ * damaged files bring about; the call reports its failure itself. Nothing else can run or write meanwhile.
  *
  * Some calls throw out of the compiled code, and each such throw loses a piece of the library's stack: after
  * some 15,000 of them it aborts for good. `ccall` notes the stack's height before it converts its arguments and
@@ -75,29 +93,18 @@ export function callLibrary<T>(path: string, call: (library: Hdf5Library) => T):
       return 1;
     },
   };
+  const { stderr } = process;
+  const { write } = stderr;
+  stderr.write = () => true;
   onlyPath = path;
   try {
     loaded.ccall("strlen", "number", ["array"], [oneZeroByte as unknown as number[]]);
   } finally {
     onlyPath = undefined;
+    stderr.write = write;
   }
   if (result === undefined) throw thrown?.error;
   return result.value;
-}
-
-/**
- * Like {@link callLibrary}, for calls that bring names out of the file: the library's loader prints a warning of
- * its own about every name that is not UTF-8, which a damaged file has. Nothing else can run meanwhile.
- */
-export function callLibraryForNames<T>(path: string, call: (library: Hdf5Library) => T): T {
-  const { stderr } = process;
-  const { write } = stderr;
-  stderr.write = () => true;
-  try {
-    return callLibrary(path, call);
-  } finally {
-    stderr.write = write;
-  }
 }
 
 /**

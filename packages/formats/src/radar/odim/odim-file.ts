@@ -276,7 +276,10 @@ function momentNamed({ header, moments }: StoredSweep, quantity: string): Stored
 
 function raysOf(file: Hdf5File, { header, moments, levels }: StoredSweep): SortedRays {
   const [first] = moments.values();
-  const attributes = new LevelAttributes(file, first === undefined ? levels : [aboutSweep(first.level), ...levels]);
+  const attributes = new LevelAttributes(
+    file,
+    first === undefined ? levels : [aboutSweep(first.level), ...levels],
+  );
   const firstRay = attributes.number("where", "a1gate") ?? 0;
   const isRay = Number.isInteger(firstRay) && firstRay >= 0 && firstRay < header.rayCount;
   const arrays: { -readonly [K in keyof StoredRays]?: StoredRays[K] } = {};
