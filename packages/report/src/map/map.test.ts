@@ -64,6 +64,20 @@ test("the cell that was not observed is hatched, and only it", () => {
   expect(svg).toContain('<path d="M0 0h1v1h-1z" fill="url(#map-hatch)"/>');
 });
 
+// A height has no class that is left clear, so a hole painted as a class would show as a low beam.
+test.each(["depthMm", "fraction", "heightM"] as const)(
+  "a hole in a layer of %s has no colour of its own",
+  (quantity) => {
+    const values = Float32Array.of(Number.NaN, 0, 1, 900);
+    const [drawn] = drawLayers([{ quantity, id: "a", label: "A", what: "", values }], 2, 2, []);
+    const { indices, palette } = readPalettePng(drawn.png);
+    expect([...indices.entries()].filter(([, index]) => index === indices[0]).map(([cell]) => cell)).toEqual([
+      0,
+    ]);
+    expect(palette[indices[0]][3]).toBe(0);
+  },
+);
+
 test("thinned, the wet cell lies in its block and the gauge still over it", () => {
   // The same place in cells of 25 m: 800 x 400 cells, drawn by blocks of three.
   const fine: Grid = { ...grid, cellM: 25, nx: 800, ny: 400 };
