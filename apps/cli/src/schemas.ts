@@ -1,5 +1,6 @@
 import type { z } from "zod";
 import { planReportSchema } from "./commands/plan.ts";
+import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
 import { manifestSchema } from "./manifest.ts";
 import { relationTableSchema } from "./relate/relation-table.ts";
@@ -9,6 +10,7 @@ import { surveySchema } from "./survey/findings.ts";
 export const schemas = {
   survey: surveySchema,
   plan: planReportSchema,
+  total: totalSchema,
   "relate table": relationTableSchema,
   compare: compareSchema,
   manifest: manifestSchema,

@@ -20,6 +20,7 @@ import { loadPlan } from "../src/plan/load.ts";
 import { type Findings, surveySchema } from "../src/survey/findings.ts";
 import { radarFindings, type SeenSweep } from "../src/survey/radars.ts";
 import { survey } from "../src/survey/survey.ts";
+import { walkFiles } from "../src/survey/walk.ts";
 import type { Terminal } from "../src/ui/terminal.ts";
 import { cli, ensureBuilt } from "./run-cli.ts";
 
@@ -59,7 +60,7 @@ const SILENT: Terminal = {
 
 /** What the command finds, without a process of its own: those take their time to start. */
 async function surveyed(...paths: string[]): Promise<Findings> {
-  return surveySchema.parse((await survey(paths, SILENT, () => undefined)).findings);
+  return surveySchema.parse((await survey(paths, walkFiles(paths), SILENT)).findings);
 }
 
 const toldOf = (findings: Findings) =>

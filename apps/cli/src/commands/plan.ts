@@ -6,6 +6,7 @@ import { z } from "zod";
 import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { flags } from "../options.ts";
 import type { SurveyResult } from "../survey/survey-result.ts";
+import { walkFiles } from "../survey/walk.ts";
 import { noticeLine } from "../ui/left-out.ts";
 import { counted } from "../ui/numbers.ts";
 import { type Terminal, terminalOf } from "../ui/terminal.ts";
@@ -48,10 +49,10 @@ export function registerPlan(program: Command): void {
     const options = command.opts<PlanFlags>();
     const terminal = terminalOf(command);
     refuseToOverwrite(options);
+    const walk = walkFiles(paths);
+    terminal.note(`${counted(walk.files.length, "file")} under ${paths.join(", ")}`);
     const { survey } = await import("../survey/survey.ts");
-    const result = await survey(paths, terminal, (files) => {
-      terminal.note(`${counted(files.length, "file")} under ${paths.join(", ")}`);
-    });
+    const result = await survey(paths, walk, terminal);
     await requireTotal(result, paths);
     const report = await writePlan(options, result);
     tellPlan(terminal, report, result);

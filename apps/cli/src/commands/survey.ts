@@ -2,6 +2,7 @@ import { InputError } from "@rainreckon/core";
 import type { Command } from "commander";
 import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { surveySchema } from "../survey/findings.ts";
+import { walkFiles } from "../survey/walk.ts";
 import { counted } from "../ui/numbers.ts";
 import { terminalOf } from "../ui/terminal.ts";
 
@@ -16,14 +17,14 @@ export function registerSurvey(program: Command): void {
   addSchemaFlag(command, surveySchema);
   command.action(async (paths: string[]) => {
     const terminal = terminalOf(command);
-    // HDF5 and projections take a while to load, and nobody who asks for help should wait for them.
+    const walk = walkFiles(paths);
+    const line = `${counted(walk.files.length, "file")} under ${paths.join(", ")}`;
+    if (terminal.json) terminal.note(line);
+    else terminal.result(`${line}\n`);
+    // HDF5 and projections take a while to load: the first line does not wait for them, nor does help.
     const { survey } = await import("../survey/survey.ts");
     const { surveyText } = await import("../survey/survey-text.ts");
-    const { findings } = await survey(paths, terminal, (files) => {
-      const line = `${counted(files.length, "file")} under ${paths.join(", ")}`;
-      if (terminal.json) terminal.note(line);
-      else terminal.result(`${line}\n`);
-    });
+    const { findings } = await survey(paths, walk, terminal);
     if (terminal.json) printJson(terminal, surveySchema, findings);
     else terminal.result(surveyText(findings, terminal));
     const nothing =

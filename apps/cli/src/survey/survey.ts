@@ -22,7 +22,7 @@ import { possibleTexts } from "./possible.ts";
 import { radarFindings, type SeenSweep } from "./radars.ts";
 import type { Point, SurveyResult } from "./survey-result.ts";
 import { readSeenStations, type SeenReadings, type SeenStations, tableFindings } from "./tables.ts";
-import { type FoundFile, walkFiles } from "./walk.ts";
+import type { FoundFile, Walk } from "./walk.ts";
 import { chooseWindow, commonSpan, wholeSpan } from "./window.ts";
 
 /** What was recognised, file by file. */
@@ -37,22 +37,22 @@ interface Seen {
 /**
  * Looks at files and folders: headers of scans, both ends of tables, whole maps.
  *
- * @param onFiles - called as soon as the files are counted, before any of them is opened
- * @throws InputError (kind "usage") where a path does not exist
+ * @param paths - as they were given
+ * @param walk - the files under them
  */
 export async function survey(
   paths: readonly string[],
+  walk: Walk,
   terminal: Terminal,
-  onFiles: (files: readonly FoundFile[]) => void,
 ): Promise<SurveyResult> {
   // Faults are findings here: they are printed with the rest, not on the way.
   const wrong = leftOutLog({ ...terminal, note: () => undefined });
-  const walk = walkFiles(paths, (notice) => wrong.add("folder left out", notice));
-  onFiles(walk.files);
+  for (const notice of walk.notices) wrong.add("folder left out", notice);
   if (walk.linkCount > 0) {
+    const where = paths.join(", ");
     wrong.add(
       "link left out",
-      { what: "links are not followed", where: paths.join(", "), fix: "name what they lead to" },
+      { what: "links are not followed", where, fix: "name what they lead to" },
       walk.linkCount,
     );
   }

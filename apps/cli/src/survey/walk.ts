@@ -14,6 +14,8 @@ export interface Walk {
   readonly files: readonly FoundFile[];
   readonly linkCount: number;
   readonly hiddenCount: number;
+  /** Folders that could not be read. */
+  readonly notices: readonly Notice[];
 }
 
 /**
@@ -24,7 +26,8 @@ export interface Walk {
  *
  * @throws InputError (kind "usage") where a root does not exist
  */
-export function walkFiles(roots: readonly string[], onNotice: (notice: Notice) => void): Walk {
+export function walkFiles(roots: readonly string[]): Walk {
+  const notices: Notice[] = [];
   const files = new Map<string, FoundFile>();
   let linkCount = 0;
   let hiddenCount = 0;
@@ -33,7 +36,7 @@ export function walkFiles(roots: readonly string[], onNotice: (notice: Notice) =
     try {
       entries = readEntries(folder);
     } catch {
-      onNotice({
+      notices.push({
         what: "the folder cannot be read",
         where: folder,
         fix: "change its permissions to read what lies in it",
@@ -63,7 +66,7 @@ export function walkFiles(roots: readonly string[], onNotice: (notice: Notice) =
       });
   }
   const sorted = [...files.values()].sort((a, b) => (a.path < b.path ? -1 : 1));
-  return { files: sorted, linkCount, hiddenCount };
+  return { files: sorted, linkCount, hiddenCount, notices };
 }
 
 function readEntries(folder: string) {
