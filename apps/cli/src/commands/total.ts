@@ -7,6 +7,7 @@ import { manifestSchema } from "../manifest.ts";
 import { flags } from "../options.ts";
 import { runTotal, type TotalOutcome } from "../total/run-total.ts";
 import { totalText } from "../total/total-text.ts";
+import { countText } from "../ui/numbers.ts";
 import { terminalOf } from "../ui/terminal.ts";
 
 /** What `total --json` prints. */
@@ -64,9 +65,9 @@ export function registerTotal(program: Command): void {
         totalText(outcome, path.relative(process.cwd(), path.resolve(options.out)) || ".", terminal),
       );
     if (noticeCount > 0) {
-      terminal.note(
-        `${noticeCount} things were left out, doubted or assumed; all of them stand in manifest.json`,
-      );
+      const what = noticeCount === 1 ? "1 thing was" : `${countText(noticeCount)} things were`;
+      const where = outcome.kind === "dry run" ? "" : "; all of it stands in manifest.json";
+      terminal.note(`${what} left out, doubted or assumed${where}`);
     }
     if (options.strict === true && noticeCount > 0) process.exitCode = EXIT.failed;
   });

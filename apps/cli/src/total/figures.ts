@@ -51,7 +51,11 @@ export function districtFigure({ run, total, comparison }: Sources): ArealFigure
   return windowFigure(run.district, { run, total, comparison });
 }
 
-function windowFigure(area: PreparedRun["district"], { run, total, comparison }: Sources): ArealFigure {
+/** The depth of an area over the window; its deepest cell is known, as it is not over a run of steps. */
+export function windowFigure(
+  area: PreparedRun["district"],
+  { run, total, comparison }: Sources,
+): ArealFigure {
   const windowMs = run.window.endEpochMs - run.window.startEpochMs;
   const { depthMm, observedFraction, maxCellMm, cappedMm } = arealDepth(area, total.sum, windowMs);
   const factor = factorOf(comparison);

@@ -6,6 +6,7 @@ import {
   groupIntoRounds,
   InputError,
   midEpochMs,
+  type RadarSite,
   type SweepHeader,
   type Volume,
 } from "@rainreckon/core";
@@ -15,6 +16,7 @@ import type { ManifestInput } from "../manifest.ts";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { PlanRadar } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
+import { counted } from "../ui/numbers.ts";
 import type { Progress } from "../ui/progress.ts";
 
 /** Two sites this far apart cannot be the same radar, whatever their id says. */
@@ -103,6 +105,14 @@ export async function indexScans(
     try {
       const opened = openScan(scan);
       try {
+        for (const remark of opened.remarks) {
+          log.add("assumed", { ...remark, where: remark.where.replace(scan, file.name) });
+        }
+        for (const fault of opened.leftOut) {
+          const where = fault.where.replace(scan, file.name);
+          log.add("sweep left out", { what: fault.what, where, fix: fault.fix });
+          entry.reasons.push(fault.what);
+        }
         for (const [index, header] of opened.headers.entries()) {
           const sweeps = bySite.get(header.site.id) ?? [];
           bySite.set(header.site.id, sweeps);
@@ -174,13 +184,13 @@ function radarInput(
     log.add("sweep left out", { what, where: `${sweep.file.name}, ${sweep.header.origin.dataset}`, fix });
     uses.get(sweep.file.name)?.reasons.push(what);
   };
-  const home = found[0].header.site;
+  const home = homeOf(found);
   const atHome = found.filter((sweep) => {
     const away = geodesicInverse(home, sweep.header.site).distanceM;
     if (away <= SAME_SITE_M) return true;
     leaveOut(
       sweep,
-      `radar id "${radar.id}" stands ${(away / 1000).toFixed(1)} km from where ${found[0].file.name} has it: two sites with one id`,
+      `radar id "${radar.id}" stands ${(away / 1000).toFixed(1)} km from where most of its sweeps have it: two sites with one id`,
       "keep the files of one site in this run",
     );
     return false;
@@ -197,6 +207,7 @@ function radarInput(
     );
     return false;
   });
+  tellRemarks(radar, withMoment, log);
   const { kept, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
   for (const { item, reason, content } of dropped) {
     leaveOut(
@@ -239,6 +250,32 @@ function radarInput(
   }
   if (inside === 0) return undefined;
   return { radar, sweeps: kept, rounds, sweepOf, beamWidthDeg: beamWidth(radar, home.id, kept, log) };
+}
+
+/** Where most sweeps have the radar; of places with as many, the one met first. */
+function homeOf(sweeps: readonly IndexedSweep[]): RadarSite {
+  const places = new Map<string, { site: RadarSite; count: number }>();
+  for (const { header } of sweeps) {
+    const key = `${header.site.lonDeg},${header.site.latDeg}`;
+    const place = places.get(key) ?? { site: header.site, count: 0 };
+    place.count++;
+    places.set(key, place);
+  }
+  return [...places.values()].reduce((home, place) => (place.count > home.count ? place : home)).site;
+}
+
+/** What the readers had to assume of a radar's sweeps, each remark once with the number of its sweeps. */
+function tellRemarks(radar: PlanRadar, sweeps: readonly IndexedSweep[], log: LeftOutLog): void {
+  const counts = new Map<string, number>();
+  for (const remark of sweeps.flatMap(({ header }) => header.remarks))
+    counts.set(remark, (counts.get(remark) ?? 0) + 1);
+  for (const [remark, count] of counts) {
+    log.add("assumed", {
+      what: `${remark.replace(/\.$/, "")} (${counted(count, "sweep")})`,
+      where: `radar ${radar.id}`,
+      fix: "nothing to do, if that is right",
+    });
+  }
 }
 
 /** The beam width to work with: the plan's, else the files', else a named default; and the band, for a warning. */

@@ -4,6 +4,7 @@ import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   type CsvColumn,
   createTotalsFile,
+  displayText,
   type JsonValue,
   TOTALS_VARIABLES,
   type TotalsVariable,
@@ -317,7 +318,7 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     ? `Adjusted depths are radar depths times one factor, ${comparison.bias.factor.toFixed(3)} (gauge/radar): the ratio of sums over the pairs of ${comparison.bias.gaugeCount} trusted gauges, constant in time.`
     : `There are no adjusted depths: ${comparison.bias.reason}.`;
   const lines = [
-    plan.title,
+    displayText(plan.title),
     `Status: ${plan.status}. Run digest: ${run.runDigest}. Made by rainreckon ${version()}.`,
     "",
     "Window and stamps",
@@ -354,7 +355,7 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "  The verdicts in gauges.csv are first doubts only (unit, spike, silence, impossible values).",
     "",
     "Cautions",
-    ...sources.cautions.map((caution) => `  - ${caution}`),
+    ...sources.cautions.map((caution) => `  - ${displayText(caution, 600)}`),
     ...STANDING_CAUTIONS.map((caution) => `  - ${caution}`),
     "",
     "Files",

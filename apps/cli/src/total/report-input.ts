@@ -28,7 +28,7 @@ import {
   factorOf,
   headlineUnderRelations,
   isAtCap,
-  spanFigure,
+  windowFigure,
 } from "./figures.ts";
 import { reasonOf } from "./outputs.ts";
 import { type PreparedRun, relationOf } from "./prepare.ts";
@@ -92,8 +92,8 @@ export function reportInput(sources: ReportSources): ReportInput {
       return { id: site.id, xM, yM, ...(site.name === undefined ? {} : { name: site.name }) };
     }),
     gauges: comparison.gauges.map((gauge) => reportGauge(gauge, comparison)),
-    catchments: run.catchments.map((catchment, a): ReportCatchment => {
-      const areal = catchmentWindow(a, sources);
+    catchments: run.catchments.map((catchment): ReportCatchment => {
+      const areal = windowFigure(catchment.cells, sources);
       return {
         id: catchment.id,
         name: catchment.name,
@@ -143,10 +143,6 @@ export function reportInput(sources: ReportSources): ReportInput {
       changedSettings: changedSettings(plan),
     },
   };
-}
-
-function catchmentWindow(area: number, { run, total, comparison }: ReportSources): ArealFigure {
-  return spanFigure(area, run.window, { run, total, comparison });
 }
 
 function layersOf({ run, total, adjustedTotalMm }: ReportSources): MapLayer[] {

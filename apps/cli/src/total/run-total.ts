@@ -19,7 +19,7 @@ import {
   districtFigure,
   factorOf,
   headlineUnderRelations,
-  spanFigure,
+  windowFigure,
 } from "./figures.ts";
 import {
   type OutputSources,
@@ -209,8 +209,8 @@ async function manifestOf(
         mm: known(mm),
         observedFraction,
       })),
-      catchments: run.catchments.map((catchment, a) => {
-        const figure = spanFigure(a, run.window, sources);
+      catchments: run.catchments.map((catchment) => {
+        const figure = windowFigure(catchment.cells, sources);
         return {
           id: catchment.id,
           name: catchment.name,
