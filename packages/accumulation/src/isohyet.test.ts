@@ -1,4 +1,5 @@
 import type { Field, Grid } from "@rainreckon/core";
+import { checkValue } from "@rainreckon/test-data/published";
 import { describe, expect, test } from "vitest";
 import { isohyetLevels, isohyets } from "./isohyet.ts";
 import { cellsForPoint, pointDepth } from "./point.ts";
@@ -49,6 +50,18 @@ describe("isohyets", () => {
 describe("points", () => {
   const small: Grid = { crs: "plane", westM: 0, northM: 3, cellM: 1, nx: 3, ny: 3 };
   const values = Float64Array.of(1, 2, 3, 4, 5, 6, 7, Number.NaN, 9);
+
+  // Check value d-matching: an invented field of 5 x 5, the answers worked out independently.
+  test("the nearest cell and the mean of 3 x 3 are those worked out elsewhere", () => {
+    const { inputs, expected } = checkValue("d-matching");
+    const field = Float64Array.from((inputs.grid_mm as number[][]).flat());
+    const part = { depthMm: field, observedMs: new Float64Array(25).fill(1000) };
+    const known = expected as { nearest: number; mean3x3: number };
+    const at = (rule: "nearest" | "mean3x3") =>
+      pointDepth(cellsForPoint({ nx: 5, ny: 5 }, 12, rule), part, 1000).depthMm;
+    expect(at("nearest")).toBe(known.nearest);
+    expect(at("mean3x3")).toBeCloseTo(known.mean3x3, 9);
+  });
 
   test("a mean over cells leaves out what was not observed and says how much was", () => {
     const observedMs = Float64Array.from(values, (value) => (Number.isNaN(value) ? 0 : 1000));

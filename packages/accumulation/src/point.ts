@@ -2,7 +2,11 @@ import type { Grid } from "@rainreckon/core";
 import type { ArealSource } from "./areal.ts";
 
 /** The cells that stand for a gauge: its own cell, or the 3 × 3 around it (fewer at the grid's edge). */
-export function cellsForPoint(grid: Grid, cell: number, rule: "nearest" | "mean3x3"): number[] {
+export function cellsForPoint(
+  grid: Pick<Grid, "nx" | "ny">,
+  cell: number,
+  rule: "nearest" | "mean3x3",
+): number[] {
   if (cell < 0) return [];
   if (rule === "nearest") return [cell];
   const column = cell % grid.nx;

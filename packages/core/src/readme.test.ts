@@ -1,17 +1,7 @@
-import { readFileSync } from "node:fs";
-import { expect, test } from "vitest";
+import { expectExampleToHold } from "@rainreckon/test-data/readme";
+import { test } from "vitest";
 import * as core from "./index.ts";
 
-test("the README's example prints what it says it prints", () => {
-  const readme = readFileSync(new URL("../README.md", import.meta.url), "utf8");
-  const example = /```ts\n(.*?)```/s.exec(readme)?.[1] ?? "";
-  const promised = [...example.matchAll(/^console\.log.*; \/\/ (.*)$/gm)].map(([, line]) => line);
-  expect(promised.length).toBeGreaterThan(0);
-
-  // The example is plain JavaScript but for its import, which becomes the same names of the same module.
-  const body = example.replace(/^import (\{.*\}) from "@rainreckon\/core";$/m, "const $1 = core;");
-  const printed: string[] = [];
-  const run = new Function("core", "console", body);
-  run(core, { log: (line: string) => printed.push(line) });
-  expect(printed).toEqual(promised);
+test("the README's example prints what it says it prints", async () => {
+  await expectExampleToHold(new URL("../README.md", import.meta.url), { "@rainreckon/core": core });
 });

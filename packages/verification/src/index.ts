@@ -1,5 +1,5 @@
 export { type BootstrapSettings, MIN_BOOTSTRAP_UNITS } from "./bootstrap.ts";
-export { type CellChoice, cellsAround, closestOf3x3, type GridShape, radarAtGauge } from "./cell.ts";
+export { closestOf3x3, type GridShape } from "./cell.ts";
 export { type DepthPairs, keptBy, pick } from "./conditioning.ts";
 export {
   type ContingencyCounts,
@@ -29,7 +29,6 @@ export {
   makePairs,
   type PairInput,
   type RadarSteps,
-  splitWindow,
 } from "./pairs.ts";
 export { type RatioStandardError, ratioStandardError } from "./ratio-error.ts";
 export {

@@ -1,6 +1,7 @@
+import { cutWindow } from "@rainreckon/accumulation";
 import type { GaugeSeries } from "@rainreckon/core";
 import { describe, expect, test } from "vitest";
-import { leaveOut, makePairs, type PairInput, type RadarSteps, splitWindow } from "./pairs.ts";
+import { leaveOut, makePairs, type PairInput, type RadarSteps } from "./pairs.ts";
 
 const MINUTE = 60_000;
 const HOUR = 60 * MINUTE;
@@ -37,7 +38,7 @@ function input(series: GaugeSeries, steps: RadarSteps, hours = 1): PairInput {
   return {
     series,
     radar: steps,
-    intervals: splitWindow({ startEpochMs: START, endEpochMs: START + hours * HOUR }, HOUR),
+    intervals: cutWindow({ startEpochMs: START, endEpochMs: START + hours * HOUR }, HOUR),
     minCommonFraction: 0.5,
     radarId: "sabird",
     rangeKm: 42,
@@ -112,7 +113,7 @@ describe("a coarser gauge", () => {
   test("readings longer than the interval are not cut up, but the whole window is compared", () => {
     const base = input(gauge(60, [3, 4]), radar(same(24, 0.5)), 2);
     const window = { startEpochMs: START, endEpochMs: START + 2 * HOUR };
-    const pairs = makePairs({ ...base, intervals: splitWindow(window, 15 * MINUTE) });
+    const pairs = makePairs({ ...base, intervals: cutWindow(window, 15 * MINUTE) });
     expect(pairs.byInterval).toHaveLength(8);
     expect(pairs.byInterval.every((pair) => !pair.used && Number.isNaN(pair.gaugeMm))).toBe(true);
     expect(pairs.byInterval[0].reason).toBe("gauge reports every 60 min, longer than the interval");
@@ -155,15 +156,6 @@ describe("why a pair is not used", () => {
     ]);
     expect(left[0].gaugeMm).toBe(12);
   });
-});
-
-test("a window is split into whole steps, the last one cut at its end", () => {
-  const spans = splitWindow({ startEpochMs: 0, endEpochMs: 10 }, 4);
-  expect(spans.map((span) => [span.startEpochMs, span.endEpochMs])).toEqual([
-    [0, 4],
-    [4, 8],
-    [8, 10],
-  ]);
 });
 
 test("intervals off the radar's steps or beyond them are a caller's mistake", () => {

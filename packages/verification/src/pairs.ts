@@ -47,16 +47,6 @@ export interface GaugePairs {
   readonly splitMm: number;
 }
 
-/** Whole steps from the start of a window; the last one is cut at the window's end. */
-export function splitWindow(window: Interval, stepMs: number): Interval[] {
-  if (!(stepMs > 0)) throw new RangeError(`a window is split into steps above 0, got ${stepMs} ms`);
-  const intervals: Interval[] = [];
-  for (let startEpochMs = window.startEpochMs; startEpochMs < window.endEpochMs; startEpochMs += stepMs) {
-    intervals.push({ startEpochMs, endEpochMs: Math.min(startEpochMs + stepMs, window.endEpochMs) });
-  }
-  return intervals;
-}
-
 /**
  * Puts one gauge beside its radar cell, interval by interval and over the whole span.
  *

@@ -39,13 +39,17 @@ export function findImpossibleReading(series: GaugeSeries, window: Interval): Re
 const SPIKE_MAX_MS = 15 * 60_000;
 const SPIKE_MIN_MM = 5;
 const SPIKE_FACTOR = 10;
+/** A rate that only a handful of bursts on record reach; from here on less contradiction by the radar is enough. House rule. */
+const EXTREME_MM_PER_HOUR = 300;
+const EXTREME_FACTOR = 3;
 
 /**
  * A single reading that neither the readings beside it nor the radar know of.
  *
  * It is of at least 5 mm, more than ten times the larger of its two neighbours in time (house rule of
  * this project), and more than ten times what the radar saw over the gauge in the whole interval
- * around it. The radar's say keeps a true burst from being taken for a fault.
+ * around it; three times is enough at a rate above 300 mm/h. The radar's say keeps a true burst from being
+ * taken for a fault: it sees at least a part of it.
  *
  * @param pairs - the gauge's pairs by interval
  */
@@ -63,9 +67,9 @@ export function findSpike(
     const around = pairs.find(
       (pair) => reading.endEpochMs > pair.startEpochMs && reading.endEpochMs <= pair.endEpochMs,
     );
-    if (around?.used && reading.depthMm > SPIKE_FACTOR * around.radarMm) {
-      return { ...reading, limitMm: SPIKE_FACTOR * around.radarMm, radarMm: around.radarMm };
-    }
+    const rate = (3_600_000 * reading.depthMm) / (reading.endEpochMs - reading.startEpochMs);
+    const limitMm = (rate > EXTREME_MM_PER_HOUR ? EXTREME_FACTOR : SPIKE_FACTOR) * (around?.radarMm ?? 0);
+    if (around?.used && reading.depthMm > limitMm) return { ...reading, limitMm, radarMm: around.radarMm };
   }
   return undefined;
 }

@@ -1,17 +1,11 @@
-import { readFileSync } from "node:fs";
-import { expect, test } from "vitest";
+import * as accumulation from "@rainreckon/accumulation";
+import { expectExampleToHold } from "@rainreckon/test-data/readme";
+import { test } from "vitest";
 import * as verification from "./index.ts";
 
-test("the example in the README runs and gives what it says", () => {
-  const readme = readFileSync(new URL("../README.md", import.meta.url), "utf8");
-  const example = /```ts\n([\s\S]*?)```/.exec(readme)?.[1] ?? "";
-  let checked = 0;
-  const body = example
-    .replace(/import (\{[^}]*\}) from "@rainreckon\/verification";/, "const $1 = verification;")
-    .replace(/^(\S.*); \/\/ ("[^"]*").*$/gm, (_, expression, said) => {
-      checked++;
-      return `expect(${expression}).toBe(${said});`;
-    });
-  new Function("verification", "expect", body)(verification, expect);
-  expect(checked).toBe(4);
+test("the README's example prints what it says it prints", async () => {
+  await expectExampleToHold(new URL("../README.md", import.meta.url), {
+    "@rainreckon/accumulation": accumulation,
+    "@rainreckon/verification": verification,
+  });
 });

@@ -1,9 +1,10 @@
+import { cutWindow } from "@rainreckon/accumulation";
 import { type GaugeSeries, QUALITY_DROP } from "@rainreckon/core";
 import { checkValue, inputNumbers } from "@rainreckon/test-data/published";
 import fc from "fast-check";
 import { describe, expect, test } from "vitest";
 import { gaugeRows } from "./gauge-table.ts";
-import { makePairs, splitWindow } from "./pairs.ts";
+import { makePairs } from "./pairs.ts";
 import { uniformStream } from "./random.ts";
 import { impossibleDepthMm } from "./reading-checks.ts";
 import { type GaugeEvidence, type GaugeVerdict, judgeGauges, leftOutReasons } from "./suspect.ts";
@@ -65,7 +66,7 @@ function evidence(network: string, id: string, depthMm: Float64Array, radarMm: F
       depthMm: radarMm,
       observedFraction: new Float64Array(STEPS).fill(1),
     },
-    intervals: splitWindow({ startEpochMs: START, endEpochMs: START + HOURS * 60 * MINUTE }, 60 * MINUTE),
+    intervals: cutWindow({ startEpochMs: START, endEpochMs: START + HOURS * 60 * MINUTE }, 60 * MINUTE),
     minCommonFraction: 0.5,
     radarId: "sabird",
     rangeKm: 42,
@@ -154,6 +155,21 @@ describe("a planted fault is found, named, and found alone", () => {
     expect(doubted(verdicts)).toEqual(["g2"]);
     expect(verdicts[2].cause).toBe("single spike");
     expect(verdicts[2].evidence).toMatch(/^45\.0 mm in 5 min to 2031-05-03T12:35Z/);
+  });
+
+  test("a single reading at a rate hardly ever seen, in an hour of ordinary rain", () => {
+    const verdicts = judgeGauges(
+      storm({
+        seed: 6,
+        gauges: 8,
+        scatterDb: 1.5,
+        spoil: (g, readings) => {
+          if (g === 2) readings[30] = 87;
+        },
+      }),
+    );
+    expect(doubted(verdicts)).toEqual(["g2"]);
+    expect(verdicts[2].cause).toBe("single spike");
   });
 
   test("a reading beyond every record", () => {
@@ -254,6 +270,20 @@ describe("what is only unusual is not doubted", () => {
         radar.fill(0.05, 0, 12);
         readings[6] = 20;
         radar[6] = 4;
+      },
+    });
+    expect(doubted(judgeGauges(gauges))).toEqual([]);
+  });
+
+  test("a cloudburst on one gauge has a rise and a fall, and is no spike", () => {
+    const gauges = storm({
+      seed: 4,
+      gauges: 8,
+      scatterDb: 1,
+      spoil: (g, readings, radar) => {
+        if (g !== 2) return;
+        readings.set([3, 12, 30, 14, 4], 28);
+        radar.set([2, 6, 8.6, 6, 2], 28);
       },
     });
     expect(doubted(judgeGauges(gauges))).toEqual([]);
