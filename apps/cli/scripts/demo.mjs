@@ -28,12 +28,23 @@ if (!existsSync(path.join(storm, "truth/truth.json"))) {
 }
 const plan = path.join(storm, "plan.yaml");
 if (!existsSync(plan)) {
-  run(program, ["plan", shown(storm), "-o", shown(plan), "--title", "Invented storm over Saltermoor, 20 May 2031", "--quiet"]);
+  run(program, [
+    "plan",
+    shown(storm),
+    "-o",
+    shown(plan),
+    "--title",
+    "Invented storm over Saltermoor, 20 May 2031",
+    "--quiet",
+  ]);
   // What a hydrologist would mend by hand: this network's loggers keep standard time, one hour ahead of UTC.
   const text = readFileSync(plan, "utf8");
   const mended = text
     .replace(/^( {2}zone: )UTC # default.*$/m, "$1Europe/Amsterdam # the clock of the district's staff")
-    .replace(/zone: UTC # guessed: the stamps name no zone: ask the network/, "zone: UTC+01:00 # said by the network");
+    .replace(
+      /zone: UTC # guessed: the stamps name no zone: ask the network/,
+      "zone: UTC+01:00 # said by the network",
+    );
   if (mended === text) throw new Error("the plan is not written as the demo expects");
   writeFileSync(plan, mended);
 }
