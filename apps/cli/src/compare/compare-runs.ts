@@ -27,6 +27,8 @@ export const compareSchema = z.strictObject({
         table: z.enum(["headline", "catchments", "gauges", "scores"]),
         /** What the figure belongs to, as words: ids, and instants where the table has them. */
         of: z.string(),
+        /** True for what speaks of the whole run or window; false for one step or part of it. */
+        whole: z.boolean(),
         /** Column, with its unit. */
         figure: z.string(),
         a: plainValue,
@@ -75,10 +77,14 @@ function side(run: Run): Comparison["a"] {
   return { folder: run.folder, title, status, version, runDigest };
 }
 
+/** Scores by gauge, interval or range band are parts; the score of all pairs is the whole. */
+const PARTS_OF_SCORES = /\bby[A-Z]\w*\[/;
+
 function fromDifferences(table: Figure["table"], found: readonly Difference[]): Figure[] {
   return found.map(({ path, a, b }) => ({
     table,
     of: "whole run",
+    whole: !PARTS_OF_SCORES.test(path),
     figure: path,
     a,
     b,
@@ -92,13 +98,16 @@ function tableFigures(table: Figure["table"], keys: readonly string[], a: Rows =
   const figures: Figure[] = [];
   const rowsOfA = byKey(a, keys);
   const rowsOfB = byKey(b, keys);
+  const longestMs = Math.max(...[...a, ...b].map(lengthMs));
   for (const key of new Set([...rowsOfA.keys(), ...rowsOfB.keys()])) {
     const rowA = rowsOfA.get(key);
     const rowB = rowsOfB.get(key);
+    const whole = lengthMs((rowA ?? rowB)!) === longestMs;
     if (rowA === undefined || rowB === undefined) {
       figures.push({
         table,
         of: key,
+        whole,
         figure: "row",
         a: rowA ? "there" : null,
         b: rowB ? "there" : null,
@@ -110,10 +119,16 @@ function tableFigures(table: Figure["table"], keys: readonly string[], a: Rows =
       const [cellA, cellB] = [cellValue(rowA[column]), cellValue(rowB[column])];
       if (keys.includes(column) || cellA === cellB) continue;
       const change = typeof cellA === "number" && typeof cellB === "number" ? cellB - cellA : null;
-      figures.push({ table, of: key, figure: column, a: cellA, b: cellB, change });
+      figures.push({ table, of: key, whole, figure: column, a: cellA, b: cellB, change });
     }
   }
   return figures;
+}
+
+/** Length of the interval that a row is about; 0 for rows without one, which then are all of one length. */
+function lengthMs(row: Readonly<Record<string, string>>): number {
+  const length = Date.parse(row.end ?? "") - Date.parse(row.start ?? "");
+  return Number.isFinite(length) ? length : 0;
 }
 
 function byKey(rows: Rows, keys: readonly string[]): Map<string, Readonly<Record<string, string>>> {
