@@ -24,7 +24,7 @@ const LIBRARIES: Readonly<Record<string, readonly string[]>> = {
   verification: ["simple-statistics", "zod"],
   adjustment: ["simple-statistics"],
   report: ["d3-array", "d3-interpolate", "d3-scale", "d3-scale-chromatic", "d3-shape", "luxon"],
-  formats: ["h5wasm", "luxon", "papaparse", "zod"],
+  formats: ["h5wasm", "luxon", "netcdfjs", "papaparse", "zod"],
   "test-data": ["h5wasm", "vitest"],
   cli: [
     "cli-progress",
@@ -164,6 +164,15 @@ test("the root holds what it must, and nothing else but dot files", () => {
     "test-data",
     "turbo.json",
   ]);
+});
+
+test.each(PACKAGES)("%s has a README with an example that a test of its own runs", (name) => {
+  const home = path.join(ROOT, "packages", name);
+  expect(readFileSync(path.join(home, "README.md"), "utf8")).toMatch(/```ts\n[\s\S]+?```/);
+  const readers = readdirSync(path.join(home, "src"), { recursive: true, encoding: "utf8" })
+    .filter((file) => file.endsWith(".test.ts"))
+    .filter((file) => readFileSync(path.join(home, "src", file), "utf8").includes("README.md"));
+  expect(readers).not.toEqual([]);
 });
 
 test("every dependency is pinned to one version", () => {

@@ -52,14 +52,15 @@ export function localText(epochMs: number, zoneName: string): string {
     .toFormat("yyyy-MM-dd HH:mm 'UTC'Z");
 }
 
-/** A length of time for people: 45 s, 5 min, 1 h 30 min. */
+/** A length of time for people: 45 s, 5 min, 1 h 30 min; from an hour on to the minute. */
 export function lengthText(lengthMs: number): string {
   const seconds = Math.round(lengthMs / 1000);
   if (seconds < 60) return `${seconds} s`;
-  const minutes = Math.floor(seconds / 60);
-  const rest = seconds % 60;
-  if (minutes < 60) return rest === 0 ? `${minutes} min` : `${minutes} min ${rest} s`;
-  const hours = Math.floor(minutes / 60);
-  const restMinutes = Math.round(seconds / 60) % 60;
-  return restMinutes === 0 ? `${hours} h` : `${hours} h ${restMinutes} min`;
+  if (seconds < 3600) return withRest(Math.floor(seconds / 60), "min", seconds % 60, "s");
+  const minutes = Math.round(seconds / 60);
+  return withRest(Math.floor(minutes / 60), "h", minutes % 60, "min");
+}
+
+function withRest(count: number, unit: string, rest: number, restUnit: string): string {
+  return rest === 0 ? `${count} ${unit}` : `${count} ${unit} ${rest} ${restUnit}`;
 }
