@@ -3,14 +3,45 @@ import type { NotApplicable } from "./suite.ts";
 /** Positions of gates on the ellipsoid: the package that projects answers for them, not the one that knows beams. */
 export const GEODESIC_ENTRIES = /^(geod-.*|gate-full-(lon|lat))$/;
 
-const FALL_SPEEDS = "no command computes fall speeds; due with the drop sizes of part B";
-const SNOW_SPECTRUM = "the spectrum of snow; due with the drop sizes of part B";
+const PART_D = "attenuation correction: not applicable until part D builds it";
+const SNOW_SPECTRUM = "no command works with the drop-size spectrum of snow";
 const NO_CONVERSION = "no command converts this unit";
 
 /** Check values of the core's topics that no function answers, and why. */
 export const CORE_NOT_APPLICABLE = {
+  "a-radar-equation": [
+    {
+      id: "bw70-*",
+      reason: "a rule of thumb; the width of a dish comes from the 1.27 of a tapered one",
+    },
+  ],
+  "b-reflectivity-and-dsd": [
+    { id: "avg-db-*", reason: "the wrong way to average, which nothing here may do" },
+  ],
+  "e-rain-attenuation": [
+    { id: /^hb-(uniform-(bracket|recovered)|cell-.*|blowup-.*|error-growth.*)$/, reason: PART_D },
+    { id: "gbg-*", reason: PART_D },
+    { id: "phidp-*", reason: PART_D },
+    { id: "zphi-*", reason: PART_D },
+    {
+      id: "darwin-c-2way",
+      reason:
+        "a relation of one place, tropical rain with its cloud; rain attenuation is that of ITU-R P.838-3",
+    },
+    { id: "gunn-east-*", reason: "an older law from memory; rain attenuation is that of ITU-R P.838-3" },
+    {
+      id: "radome-*",
+      reason: "measured at single radomes; the loss of a wet radome is a number that the user gives",
+    },
+  ],
+  "f-gaseous-attenuation": [
+    {
+      id: "gas-dz10cm-*",
+      reason: "a fit for one wavelength, from memory; losses by gases are summed line by line",
+    },
+  ],
   "c-zr-relations": [
-    { id: "sekhon-srivastava-*", reason: SNOW_SPECTRUM },
+    { id: /^sekhon-srivastava-(n0|lambda)$/, reason: SNOW_SPECTRUM },
     { id: "vip-*", reason: "levels of one national display; no command speaks in them" },
   ],
   "g-beam-geometry": [
@@ -20,14 +51,9 @@ export const CORE_NOT_APPLICABLE = {
     },
   ],
   "l-units-and-facts": [
-    { id: "gk49-*", reason: FALL_SPEEDS },
-    { id: "au77-*", reason: FALL_SPEEDS },
-    { id: "atlas73-*", reason: FALL_SPEEDS },
-    { id: "foote-dutoit", reason: FALL_SPEEDS },
-    { id: /^unit-n0-(si|cm)$/, reason: "unit of drop-size spectra; due with part B" },
-    { id: "unit-rainconv", reason: "factor of the rain integral over drop sizes; due with part B" },
-    { id: "unit-dbkm-nepers", reason: "unit of attenuation; due with part B" },
-    { id: "unit-kdp-rad", reason: "unit of differential phase; due with part B" },
+    { id: /^unit-n0-(si|cm)$/, reason: "other units of N0; all spectra here are per m3 and mm" },
+    { id: "unit-kdp-rad", reason: "unit of differential phase: not applicable until part D" },
+    { id: "brandes-*", reason: "a polynomial from memory; fall speeds are measured or of two other laws" },
     { id: /^unit-(knot|nmi|mile|foot)$/, reason: NO_CONVERSION },
     { id: "unit-mm-m2", reason: NO_CONVERSION },
   ],

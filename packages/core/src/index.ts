@@ -1,3 +1,21 @@
+export {
+  antennaGainDb,
+  beamPatternDb,
+  beamWidthOfDishDeg,
+  beamWidthOfGainDeg,
+  gaussianBeamGainDb,
+  TWO_WAY_WIDTH_RATIO,
+} from "./antenna.ts";
+export {
+  type Air,
+  airAbove,
+  airOf,
+  checkSurfaceAir,
+  REFERENCE_SURFACE,
+  type SurfaceAir,
+  saturationDensityGPerM3,
+  vapourPressureHPa,
+} from "./atmosphere.ts";
 export { bandOfWavelength, RADAR_BANDS, type RadarBand } from "./bands.ts";
 export {
   arcDistanceM,
@@ -18,8 +36,49 @@ export {
   gaussianBlockedFraction,
   uniformBlockedFraction,
 } from "./blockage.ts";
+export { rateFactorOfErrorDb } from "./calibration-error.ts";
 export { type CapSetting, CUSTOMARY_CAP_MM_PER_HOUR, type ResolvedCap, resolveCap } from "./cap.ts";
+export {
+  type Complex,
+  dielectricFactor,
+  equivalentOffsetDb,
+  ICE_DIELECTRIC_FACTOR,
+  refractiveIndex,
+  WATER_DIELECTRIC_FACTOR,
+  waterPermittivity,
+} from "./dielectric.ts";
+export {
+  type DropSpectrum,
+  diameterAtShareMm,
+  dropSpectrum,
+  marshallPalmerSpectrum,
+  massWeightedDiameterMm,
+  normalisedSpectrum,
+  RAIN_RATE_PER_D3,
+  shareBelow,
+  spectrumMoment,
+  spectrumRateMmPerHour,
+  spectrumZMm6PerM3,
+  waterContentGPerM3,
+  waterOfEqualDropsGPerM3,
+  zOfEqualDropsMm6PerM3,
+} from "./drop-sizes.ts";
 export { errorFunction } from "./error-function.ts";
+export {
+  ATLAS_SRIVASTAVA_SEKHON_1973,
+  ATLAS_ULBRICH_1977,
+  type FallLaw,
+  fallSpeedFactor,
+  fallSpeedMPerS,
+  measuredFallSpeedMPerS,
+} from "./fall-speed.ts";
+export { gamma, logGamma, lowerGammaShare } from "./gamma-function.ts";
+export { type GasAttenuation, gasAttenuationOneWay } from "./gas-attenuation.ts";
+export { gasLossTwoWayDb } from "./gas-loss.ts";
+export { type GroundHit, groundHit, type TerrainProfile } from "./ground-hit.ts";
+export { layerShare } from "./layer-overlap.ts";
+export { LowestEcho, type MeasuredSensitivity, measuredDetectableDbz, RANGE_BAND_M } from "./lowest-echo.ts";
+export { type DropScattering, mieEfficiency, type ScatteringEfficiency, scatteringOfDrop } from "./mie.ts";
 export * from "./model/catchment.ts";
 export * from "./model/errors.ts";
 export * from "./model/gauge.ts";
@@ -36,6 +95,34 @@ export {
   momentValues,
 } from "./moment-values.ts";
 export { nearestNames } from "./nearest-names.ts";
+export { type GasLine, OXYGEN_LINES, VAPOUR_LINES } from "./p676-lines.ts";
+export { pathLossTwoWayDb } from "./path-loss.ts";
+export {
+  effectiveVolumeM3,
+  geometricVolumeM3,
+  nyquistVelocityMPerS,
+  rangeResolutionM,
+  unambiguousRangeM,
+} from "./pulse.ts";
+export {
+  checkRadarSystem,
+  type RadarSystem,
+  radarConstantDb,
+  receivedPowerDbm,
+  reflectivityOfPowerDbz,
+} from "./radar-equation.ts";
+export {
+  type AttenuationLaw,
+  attenuationOfZLaw,
+  attenuationOfZOneWayDbPerKm,
+  HORIZONTAL,
+  rainAttenuationLaw,
+  rainAttenuationOneWayDbPerKm,
+  rainLossTwoWayDb,
+  shareOfZLost,
+  VERTICAL,
+  type WavePath,
+} from "./rain-attenuation.ts";
 export {
   gateRate,
   momentRates,
@@ -44,6 +131,7 @@ export {
   rateConverter,
   rateTable,
 } from "./rate-table.ts";
+export { LARGEST_RAIN_DROP_MM, rayleighCaution, rayleighLimitMm } from "./rayleigh.ts";
 export { type PublishedRelation, RELATIONS, type Standing } from "./relation-catalogue.ts";
 export {
   findRelation,
@@ -54,6 +142,15 @@ export {
   SNOW_EQUIVALENT_TO_MELTED_DB,
 } from "./relations.ts";
 export { type DroppedSweep, dropResent, groupIntoRounds, medianRoundMs, type SentSweep } from "./rounds.ts";
+export {
+  detectableAt1KmDbz,
+  detectableDbz,
+  lightestVisibleRainMmPerHour,
+  NOISE_REFERENCE_K,
+  noisePowerDbm,
+  smallestVisibleDropMm,
+} from "./sensitivity.ts";
+export { type ClassSettings, DB_PER_NEPER, type DropClass, dropClasses } from "./spectrum-scattering.ts";
 export {
   decibels,
   frequencyHz,

@@ -17,7 +17,16 @@ import {
 } from "./beam.ts";
 import { blockageCorrectionDb, gaussianBlockedFraction, uniformBlockedFraction } from "./blockage.ts";
 import { resolveCap } from "./cap.ts";
+import { dropSpectrum, RAIN_RATE_PER_D3, spectrumZMm6PerM3 } from "./drop-sizes.ts";
+import {
+  ATLAS_SRIVASTAVA_SEKHON_1973,
+  ATLAS_ULBRICH_1977,
+  fallSpeedFactor,
+  fallSpeedMPerS,
+  measuredFallSpeedMPerS,
+} from "./fall-speed.ts";
 import { findRelation, rainRateMmPerHour, reflectivityDbz } from "./relations.ts";
+import { DB_PER_NEPER } from "./spectrum-scattering.ts";
 import { heldDepthMm, MM_PER_INCH, waterFlowM3PerS, waterVolumeM3, wavelengthM, zM3 } from "./units.ts";
 import { type ZrRelation, zrRelation } from "./zr-relation.ts";
 
@@ -98,6 +107,13 @@ runReferenceSuite({
   topics: ["c-zr-relations"],
   notApplicable: CORE_NOT_APPLICABLE["c-zr-relations"],
   adapters: [
+    [
+      "sekhon-srivastava-z-untruncated",
+      (entry) =>
+        spectrumZMm6PerM3(
+          dropSpectrum(inputNumber(entry, "N0_per_m3_mm"), 0, inputNumber(entry, "lambda_per_mm")),
+        ),
+    ],
     [/^zr-.*-A$/, (entry) => catalogueRelation(entry).a],
     [/^zr-.*-b$/, (entry) => catalogueRelation(entry).b],
     // The entries give the reflectivity of melted drops; a radar shows 6.5 dB less.
@@ -127,6 +143,17 @@ runReferenceSuite({
     ],
   ],
 });
+
+/** Where the exponential fall law leaves 0: by halving, on the function that is held at 0 below. */
+function firstFallingDiameterMm(): number {
+  let [still, falling] = [0, 1];
+  while (falling - still > 1e-9) {
+    const middle = (still + falling) / 2;
+    if (fallSpeedMPerS(middle, ATLAS_SRIVASTAVA_SEKHON_1973) > 0) falling = middle;
+    else still = middle;
+  }
+  return falling;
+}
 
 runReferenceSuite({
   topics: ["g-beam-geometry"],
@@ -177,6 +204,20 @@ runReferenceSuite({
     [
       "unit-accum",
       (entry) => heldDepthMm(inputNumber(entry, "rain_rate_mm_h"), 60_000 * inputNumber(entry, "minutes")),
+    ],
+    ["unit-rainconv", () => RAIN_RATE_PER_D3],
+    ["unit-dbkm-nepers", (entry) => inputNumber(entry, "extinction_per_km") * DB_PER_NEPER],
+    ["gk49-*", (entry) => measuredFallSpeedMPerS(inputNumber(entry, "diameter_mm"))],
+    ["au77-*", (entry) => fallSpeedMPerS(inputNumber(entry, "diameter_mm"), ATLAS_ULBRICH_1977)],
+    ["atlas73-zero", firstFallingDiameterMm],
+    [
+      "atlas73-*mm",
+      (entry) => fallSpeedMPerS(inputNumber(entry, "diameter_mm"), ATLAS_SRIVASTAVA_SEKHON_1973),
+    ],
+    [
+      "foote-dutoit",
+      (entry) =>
+        fallSpeedFactor(inputNumber(entry, "density_kg_m3"), inputNumber(entry, "reference_density_kg_m3")),
     ],
     ["ieee521-*-low", (entry) => bandOf(entry)?.lowGHz],
     ["ieee521-*-high", (entry) => bandOf(entry)?.highGHz],
