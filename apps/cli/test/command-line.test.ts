@@ -5,15 +5,21 @@ import path from "node:path";
 import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { z } from "zod";
 import { schemas } from "../src/schemas.ts";
-import { cli, ensureBuilt, MAIN } from "./run-cli.ts";
+import { type CliResult, cli, ensureBuilt, inProcess, MAIN } from "./run-cli.ts";
 
 const scratch = mkdtempSync(path.join(tmpdir(), "rainreckon-line-"));
 beforeAll(ensureBuilt);
 afterAll(() => rmSync(scratch, { recursive: true }));
 
 /** Three lines: what, where, what to do. Nothing on stdout. */
-function expectFault(args: readonly string[], status: number, what: RegExp, fix: RegExp) {
-  const result = cli(args, scratch);
+async function expectFault(
+  args: readonly string[],
+  status: number,
+  what: RegExp,
+  fix: RegExp,
+  run: (args: readonly string[]) => CliResult | Promise<CliResult> = inProcess,
+) {
+  const result = await run(args);
   expect(result.stderr).toMatch(/^error: .+\n {2}where: .+\n {2}fix: {3}.+\n$/);
   const [first, , third] = result.stderr.split("\n");
   expect(first).toMatch(what);
@@ -45,22 +51,25 @@ describe("wrong usage: exit 2, three lines, the nearest thing that exists", () =
     [["plan", "nowhere"], /no such file or folder/, /that exist/],
     [["plan", ".", "--out"], /argument missing/, /plan --help/],
   ] as const)("%j", (args, what, fix) => expectFault(args, 2, what, fix));
+
+  test("and so does the built command", () =>
+    expectFault(["surwey"], 2, /no command "surwey"/, /"survey"/, cli));
 });
 
-test("no usable input is exit 3", () => {
+test("no usable input is exit 3", async () => {
   const empty = path.join(scratch, "empty");
   mkdirSync(empty, { recursive: true });
   writeFileSync(path.join(empty, "note.txt"), "nothing to see\n");
-  expectFault(["plan", empty, "-o", "never.yaml", "--quiet"], 3, /no scan that can be read/, /ODIM_H5/);
-  const surveyed = cli(["survey", empty]);
+  await expectFault(["plan", empty, "-o", "never.yaml", "--quiet"], 3, /no scan that can be read/, /ODIM_H5/);
+  const surveyed = await inProcess(["survey", empty]);
   expect(surveyed.status).toBe(3);
   expect(surveyed.stdout).toContain("1 file under");
   expect(surveyed.stderr).toContain("error: nothing here can be read");
 });
 
-test("the stack is shown under --debug and only there", () => {
-  expect(cli(["survey", "nowhere", "--debug"], scratch).stderr).toMatch(/\n {4}at /);
-  expect(cli(["survey", "nowhere"], scratch).stderr).not.toMatch(/\n {4}at /);
+test("the stack is shown under --debug and only there", async () => {
+  expect((await inProcess(["survey", "nowhere", "--debug"])).stderr).toMatch(/\n {4}at /);
+  expect((await inProcess(["survey", "nowhere"])).stderr).not.toMatch(/\n {4}at /);
 });
 
 test("--version is the package's version", () => {
@@ -70,11 +79,11 @@ test("--version is the package's version", () => {
   expect(cli(["--version"])).toEqual({ status: 0, stdout: `${card.version}\n`, stderr: "" });
 });
 
-describe.each([["survey"], ["plan"], ["compare"], ["relate", "table"]])("%s %s", (...name) => {
+describe.each([["survey"], ["plan"], ["total"], ["compare"], ["relate", "table"]])("%s %s", (...name) => {
   const command = name.filter((word) => word !== undefined);
 
-  test("helps on stdout, with examples and the flags of all commands", () => {
-    const { status, stdout, stderr } = cli([...command, "--help"]);
+  test("helps on stdout, with examples and the flags of all commands", async () => {
+    const { status, stdout, stderr } = await inProcess([...command, "--help"]);
     expect(status).toBe(0);
     expect(stderr).toBe("");
     expect(stdout).toMatch(new RegExp(`Examples:\n {2}rainreckon ${command.join(" ")}\\b`));
@@ -82,17 +91,17 @@ describe.each([["survey"], ["plan"], ["compare"], ["relate", "table"]])("%s %s",
       expect(stdout).toContain(flag);
   });
 
-  test("prints the schema of its JSON, as it is exported", () => {
-    const { status, stdout } = cli([...command, "--schema"]);
+  test("prints the schema of its JSON, as it is exported", async () => {
+    const { status, stdout } = await inProcess([...command, "--schema"]);
     expect(status).toBe(0);
     const exported = schemas[command.join(" ") as keyof typeof schemas];
     expect(JSON.parse(stdout)).toEqual(JSON.parse(JSON.stringify(z.toJSONSchema(exported))));
   });
 });
 
-test("a flag of all commands may stand before the command or behind it", () => {
-  const before = cli(["--json", "relate", "table"]);
-  const behind = cli(["relate", "table", "--json"]);
+test("a flag of all commands may stand before the command or behind it", async () => {
+  const before = await inProcess(["--json", "relate", "table"]);
+  const behind = await inProcess(["relate", "table", "--json"]);
   expect(before.stdout).toBe(behind.stdout);
   expect(JSON.parse(before.stdout)).toHaveProperty("relations");
 });

@@ -4,7 +4,7 @@ import path from "node:path";
 import { afterAll, beforeAll, expect, test } from "vitest";
 import { compareSchema } from "../src/compare/compare-runs.ts";
 import type { Manifest } from "../src/manifest.ts";
-import { cli, ensureBuilt } from "./run-cli.ts";
+import { cli, ensureBuilt, inProcess } from "./run-cli.ts";
 
 const scratch = mkdtempSync(path.join(tmpdir(), "rainreckon-compare-"));
 beforeAll(ensureBuilt);
@@ -52,7 +52,7 @@ function run(name: string, manifest: Manifest, catchments: string): string {
   return folder;
 }
 
-test("tells which figures changed, by how much, and what stands behind them", () => {
+test("tells which figures changed, by how much, and what stands behind them", async () => {
   const a = run("a", MANIFEST, CATCHMENTS);
   const b = run(
     "b",
@@ -111,16 +111,16 @@ test("tells which figures changed, by how much, and what stands behind them", ()
     ["radar/2.h5", "removed"],
     ["radar/3.h5", "added"],
   ]);
-  const text = cli(["compare", a, b]).stdout;
+  const text = (await inProcess(["compare", a, b])).stdout;
   expect(text).toMatch(/007 2031-05-03T12:00:00Z 2031-05-03T13:00:00Z +depth_mm +12\.5 +14 +\+1\.5\n/);
   expect(text).toContain("besides: 1 value of single steps or parts");
   expect(text).toMatch(/radars\[two\]\.offsetDb +0 +1\.5\n/);
 });
 
-test("two equal runs are the same figures from the same plan and inputs", () => {
+test("two equal runs are the same figures from the same plan and inputs", async () => {
   const one = run("one", MANIFEST, CATCHMENTS);
   const other = run("other", MANIFEST, CATCHMENTS);
-  const { status, stdout } = cli(["compare", one, other]);
+  const { status, stdout } = await inProcess(["compare", one, other]);
   expect(status).toBe(0);
   expect(stdout).toContain("Same figures, same plan, same inputs.");
 });
@@ -129,11 +129,11 @@ test.each([
   ["no-manifest", undefined, /no finished run/],
   ["no-json", "{", /no JSON/],
   ["another-program", JSON.stringify({ format: "else" }), /no manifest of a run/],
-] as const)("refuses a folder that is no run: %s", (name, content, what) => {
+] as const)("refuses a folder that is no run: %s", async (name, content, what) => {
   const folder = path.join(scratch, name);
   mkdirSync(folder);
   if (content !== undefined) writeFileSync(path.join(folder, "manifest.json"), content);
-  const { status, stdout, stderr } = cli(["compare", folder, folder]);
+  const { status, stdout, stderr } = await inProcess(["compare", folder, folder]);
   expect(status).toBe(2);
   expect(stdout).toBe("");
   expect(stderr).toMatch(/^error: .+\n {2}where: .+\n {2}fix: {3}.+\n$/);

@@ -1,5 +1,7 @@
 import { spawnSync } from "node:child_process";
 import { fileURLToPath } from "node:url";
+import { vi } from "vitest";
+import { runProgram } from "../src/program.ts";
 
 /** The built command, as it is installed. */
 export const MAIN = fileURLToPath(new URL("../dist/main.js", import.meta.url));
@@ -26,4 +28,24 @@ export function cli(args: readonly string[], cwd?: string, env: NodeJS.ProcessEn
     maxBuffer: 64 * 1024 * 1024,
   });
   return { status, stdout, stderr };
+}
+
+/**
+ * The same command line without a process of its own, which takes most of a second to start: for the many
+ * cases whose point is the message and the status.
+ */
+export async function inProcess(args: readonly string[]): Promise<CliResult> {
+  const said = { stdout: "", stderr: "" };
+  const listen = (stream: "stdout" | "stderr") =>
+    vi.spyOn(process[stream], "write").mockImplementation((text) => {
+      said[stream] += String(text);
+      return true;
+    });
+  const spies = [listen("stdout"), listen("stderr")];
+  try {
+    const status = await runProgram(args);
+    return { status, ...said };
+  } finally {
+    for (const spy of spies) spy.mockRestore();
+  }
 }

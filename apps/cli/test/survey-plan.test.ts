@@ -22,7 +22,7 @@ import { radarFindings, type SeenSweep } from "../src/survey/radars.ts";
 import { survey } from "../src/survey/survey.ts";
 import { walkFiles } from "../src/survey/walk.ts";
 import type { Terminal } from "../src/ui/terminal.ts";
-import { cli, ensureBuilt } from "./run-cli.ts";
+import { cli, ensureBuilt, inProcess } from "./run-cli.ts";
 
 const scratch = mkdtempSync(path.join(tmpdir(), "rainreckon-survey-"));
 const storm = path.join(scratch, "storm");
@@ -182,14 +182,14 @@ describe("survey of spoilt input tells one line each and goes on", () => {
     ]);
   });
 
-  test("names that hold control characters come out harmless", () => {
+  test("names that hold control characters come out harmless", async () => {
     const folder = path.join(scratch, "names");
     mkdirSync(folder);
     writeFileSync(
       path.join(folder, "\u001b[31mred\u0007.csv"),
       "time,<b>=1+1\n2031-05-20T12:05:00Z,0.2\n2031-05-20T12:10:00Z,0.4\n",
     );
-    const { stdout, stderr } = cli(["survey", folder]);
+    const { stdout, stderr } = await inProcess(["survey", folder]);
     expect(stdout).toContain("[31mred.csv");
     expect(stdout + stderr).not.toMatch(/[\u0000-\u0009\u000b-\u001f\u007f-\u009f]/);
   });
@@ -199,7 +199,7 @@ describe("survey of spoilt input tells one line each and goes on", () => {
     expect((await surveyed(files[0]!)).possible.join()).toContain(
       "one instant per site is a rate, not a total",
     );
-    const planned = cli(["plan", files[0]!, "-o", path.join(scratch, "single.yaml"), "--quiet"]);
+    const planned = await inProcess(["plan", files[0]!, "-o", path.join(scratch, "single.yaml"), "--quiet"]);
     expect(planned.status).toBe(3);
     expect(planned.stderr).toMatch(/^error: one instant per site is a rate, not a total\n/);
   });
@@ -245,17 +245,17 @@ describe("plan", () => {
     expect(text).toMatch(/\n# ---- The rest/);
   });
 
-  test("is not written over without being told to", () => {
+  test("is not written over without being told to", async () => {
     const before = readFileSync(planFile, "utf8");
-    const { status, stderr } = cli(["plan", storm, "-o", planFile]);
+    const { status, stderr } = await inProcess(["plan", storm, "-o", planFile]);
     expect(status).toBe(2);
     expect(stderr).toMatch(/error: there is a plan already\n {2}where: .*\n {2}fix: .*--update.*--force/);
     expect(readFileSync(planFile, "utf8")).toBe(before);
   });
 
-  test("stays byte for byte the same when --update finds nothing new", () => {
+  test("stays byte for byte the same when --update finds nothing new", async () => {
     const before = readFileSync(planFile, "utf8");
-    const { status, stdout } = cli(["plan", storm, "-o", planFile, "--update", "--json"]);
+    const { status, stdout } = await inProcess(["plan", storm, "-o", planFile, "--update", "--json"]);
     expect(status).toBe(0);
     expect(planReportSchema.parse(JSON.parse(stdout))).toMatchObject({ action: "unchanged", changes: [] });
     expect(readFileSync(planFile, "utf8")).toBe(before);
@@ -271,7 +271,7 @@ describe("plan", () => {
       .toString({ lineWidth: 0 })
       .replace("title: Rain total", "# Asked for on the telephone.\ntitle: My own title");
     writeFileSync(planFile, text);
-    const { status, stdout, stderr } = cli(["plan", storm, "-o", planFile, "--update", "--json"]);
+    const { status, stdout, stderr } = await inProcess(["plan", storm, "-o", planFile, "--update", "--json"]);
     expect(status, stderr).toBe(0);
     expect(planReportSchema.parse(JSON.parse(stdout)).changes).toEqual([
       `radar ${radar!.node} added`,
@@ -289,17 +289,17 @@ describe("plan", () => {
     expect(plan.title).toBe("My own title");
   });
 
-  test("that has a fault is not updated but told of, and left as it is", () => {
+  test("that has a fault is not updated but told of, and left as it is", async () => {
     const broken = path.join(scratch, "broken.yaml");
     writeFileSync(broken, "title: x\nwidnow: {}\n");
-    const { status, stderr } = cli(["plan", storm, "-o", broken, "--update", "--quiet"]);
+    const { status, stderr } = await inProcess(["plan", storm, "-o", broken, "--update", "--quiet"]);
     expect(status).toBe(2);
     expect(stderr).toContain(`where: ${broken}, line 2, widnow`);
     expect(stderr).toContain('did you mean "window"?');
     expect(readFileSync(broken, "utf8")).toBe("title: x\nwidnow: {}\n");
   });
 
-  test("goes nowhere where nothing can be written", () => {
+  test("goes nowhere where nothing can be written", async () => {
     writeFileSync(path.join(scratch, "a-file"), "");
     const { status, stderr } = cli([
       "plan",
@@ -323,7 +323,7 @@ describe.skipIf(REAL === undefined)("real scans", () => {
       .map((name) => path.join(REAL!, name));
     expect(ten).toHaveLength(10);
     const plan = path.join(scratch, "ten.yaml");
-    const { status, stderr } = cli(["plan", ...ten, "-o", plan]);
+    const { status, stderr } = await inProcess(["plan", ...ten, "-o", plan]);
     expect(status, stderr).toBe(0);
     const loaded = await loadPlan(plan);
     expect(loaded.plan.window).toMatchObject({ from: "2023-04-20T06:50:00Z", to: "2023-04-20T07:00:00Z" });
