@@ -81,7 +81,7 @@ function runSuites() {
         config,
         "--reporter=json",
         `--outputFile=${outputFile}`,
-        "src/reference.test.ts",
+        "src/reference",
       ],
       { cwd: root, encoding: "utf8" },
     );
