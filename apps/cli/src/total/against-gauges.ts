@@ -40,7 +40,7 @@ export interface Comparison {
   readonly pairs: readonly Pair[];
   readonly bias: MeanFieldBias;
   /** Undefined where there is no adjustment. */
-  readonly crossValidation: CrossValidation | undefined;
+  readonly crossValidation: CrossValidation<Pair> | undefined;
   readonly scoreOptions: ScoreOptions;
   readonly before: ScoreTable;
   readonly after: ScoreTable | { readonly reason: string };

@@ -113,9 +113,6 @@ export async function indexScans(
           log.add("sweep left out", { what: fault.what, where, fix: fault.fix });
           entry.reasons.push(fault.what);
         }
-        for (const { what, where, fix } of opened.remarks) {
-          log.add("scan with something odd", { what, where: where.replace(scan, file.name), fix });
-        }
         for (const [index, header] of opened.headers.entries()) {
           const sweeps = bySite.get(header.site.id) ?? [];
           bySite.set(header.site.id, sweeps);
@@ -222,16 +219,6 @@ function radarInput(
   const reachMs = Math.max(radar.maxGapMinutes, radar.medianRoundMinutes / 2) * 60_000;
   const from = Date.parse(loaded.plan.window.from) - reachMs;
   const to = Date.parse(loaded.plan.window.to) + reachMs;
-  // What had to be assumed of single sweeps is told once a radar, with how many sweeps it concerns.
-  for (const { header } of kept) {
-    for (const what of header.remarks) {
-      log.add("assumed", {
-        what,
-        where: `sweeps of radar ${radar.id}`,
-        fix: "nothing to do, if that is right",
-      });
-    }
-  }
   const sweepOf = new Map(kept.map((sweep) => [sweep.header, sweep]));
   const rounds = groupIntoRounds(
     kept.map((sweep) => sweep.header),

@@ -1,3 +1,4 @@
+import { setImmediate as breathe } from "node:timers/promises";
 import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@rainreckon/accumulation";
 import {
   InputError,
@@ -191,6 +192,8 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
   let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
 
   for (let step = 0; step < job.steps.length; step++) {
+    // Lets signals through: without it, work of hours on one processor could not be interrupted.
+    await breathe();
     for (const feed of feeds) {
       while (!feed.integrator.isSettled(step, feed.nextEpochMs)) feed.advance(counts, notices);
     }
