@@ -18,6 +18,8 @@ const NUMBER_CLASS = 0;
 const FLOAT_CLASS = 1;
 const STRING_CLASS = 3;
 const NOTHING_THERE = -1;
+const GROUP_OBJECT = 0;
+const ARRAY_OBJECT = 1;
 
 /** One value is a number or a text; several are an array, in storage order. */
 export type AttributeValue = number | string | Float64Array | readonly string[];
@@ -46,6 +48,14 @@ export interface Hdf5File {
   attributeNames(object: string): ReadonlySet<string>;
   /** An attribute's value, or undefined where the object or the attribute is absent. */
   attribute(object: string, name: string): AttributeValue | undefined;
+  /** Whether a name is a group or an array; undefined where there is neither. */
+  kindOf(object: string): "group" | "array" | undefined;
+  /** Shape of an array of any numbers, or undefined where there is no array of that name or it holds no numbers. */
+  numericShape(dataset: string): readonly number[] | undefined;
+  /** Name of the type that an array is stored in, "int8" say; undefined where there is no array of that name. */
+  elementTypeName(dataset: string): string | undefined;
+  /** An array of whole or floating numbers of any width as float64. Throws `InputError` as {@link Hdf5File.read}. */
+  readNumbers(dataset: string): Float64Array;
   /** Shape and type of an array, or undefined where there is none of that name. */
   describe(dataset: string): DatasetShape | undefined;
   /** The whole array in storage order, a copy of its own. Throws `InputError` where it is absent or fails to decode. */
@@ -171,6 +181,47 @@ class OpenFile implements Hdf5File {
     return metadata === undefined ? undefined : this.#checkedShape(dataset, metadata);
   }
 
+  kindOf(object: string): "group" | "array" | undefined {
+    this.#mustBeOpen();
+    const code = callLibrary(this.#full, (library) => library.get_type(this.#id, object));
+    if (code === GROUP_OBJECT) return "group";
+    return code === ARRAY_OBJECT ? "array" : undefined;
+  }
+
+  numericShape(dataset: string): readonly number[] | undefined {
+    if (this.kindOf(dataset) !== "array") return undefined;
+    const metadata = this.#datasetMetadata(dataset);
+    if (metadata === undefined || numberReader(metadata) === undefined) return undefined;
+    return metadata.shape ?? undefined;
+  }
+
+  elementTypeName(dataset: string): string | undefined {
+    const metadata = this.#datasetMetadata(dataset);
+    return metadata === undefined ? undefined : typeName(metadata);
+  }
+
+  readNumbers(dataset: string): Float64Array {
+    const metadata = this.#datasetMetadata(dataset);
+    const where = this.#at(dataset);
+    if (metadata === undefined) {
+      throw new InputError("there is no such array", where, "ask for one that the file holds");
+    }
+    const { elementCount } = this.#boundedShape(dataset, metadata);
+    if (numberReader(metadata) === undefined) {
+      throw new InputError(
+        `the array holds ${typeName(metadata)}, not numbers`,
+        where,
+        "store it as numbers",
+      );
+    }
+    const byteCount = elementCount * metadata.size;
+    const values = numbers(this.#arrayBytes(dataset, byteCount), metadata, where);
+    if (metadata.chunks !== null && values.every((value) => value === values[0])) {
+      this.#mustBeStored(dataset, byteCount);
+    }
+    return values;
+  }
+
   read(dataset: string): StoredValues {
     const metadata = this.#datasetMetadata(dataset);
     if (metadata === undefined) {
@@ -230,6 +281,20 @@ class OpenFile implements Hdf5File {
   }
 
   #checkedShape(dataset: string, metadata: Metadata): DatasetShape {
+    const bounded = this.#boundedShape(dataset, metadata);
+    const type = elementType(metadata);
+    if (type === undefined) {
+      throw new InputError(
+        `the array holds ${typeName(metadata)}, which is not read`,
+        this.#at(dataset),
+        "store it as uint8, uint16, int16, int32, float32 or float64",
+      );
+    }
+    return { ...bounded, type };
+  }
+
+  /** Size of an array, known to be small enough before anything is allocated. */
+  #boundedShape(dataset: string, metadata: Metadata): Omit<DatasetShape, "type"> {
     const where = this.#at(dataset);
     const { shape, total_size: elementCount } = metadata;
     if (shape === null) throw damaged("this array has no shape", where);
@@ -243,18 +308,10 @@ class OpenFile implements Hdf5File {
         "check the file; no radar sweep is that large",
       );
     }
-    const type = elementType(metadata);
-    if (type === undefined) {
-      throw new InputError(
-        `the array holds ${typeName(metadata)}, which is not read`,
-        where,
-        "store it as uint8, uint16, int16, int32, float32 or float64",
-      );
-    }
     if (metadata.virtual_sources !== undefined) {
       throw new InputError("the array's data lie in other files", where, "join them into one file");
     }
-    return { shape, elementCount, type };
+    return { shape, elementCount };
   }
 
   #attributeValue(object: string, name: string, metadata: Metadata): AttributeValue {

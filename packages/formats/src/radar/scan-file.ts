@@ -1,4 +1,4 @@
-import type { InputError, Notice, Sweep, SweepHeader } from "@rainreckon/core";
+import type { InputError, Notice, RadarSite, Sweep, SweepHeader } from "@rainreckon/core";
 
 /** A file of radar scans, open for reading. */
 export interface ScanFile {
@@ -29,11 +29,20 @@ export interface ScanFile {
   close(): void;
 }
 
+/** What a reader may be told that a file does not say. */
+export interface ScanOptions {
+  /** Where radars stand, by site id: for formats that leave that out. */
+  readonly places?: ReadonlyMap<string, Omit<RadarSite, "id" | "name">>;
+}
+
 /** A format of radar scans: how it is told from others, and how it is opened. */
 export interface ScanFormat {
   readonly name: string;
   /** @param head - the first bytes of the file: all of a short file, else a few thousand */
   recognise(head: Uint8Array, path: string): boolean;
-  /** @throws InputError where nothing in the file can be used */
-  open(path: string): ScanFile;
+  /**
+   * @returns undefined where a look inside shows that the file is of another format
+   * @throws InputError where nothing in the file can be used
+   */
+  open(path: string, options?: ScanOptions): ScanFile | undefined;
 }

@@ -1,5 +1,7 @@
-import { InputError, type Moment, type StoredValues, type SweepHeader } from "@rainreckon/core";
+import { InputError, type Moment, type SweepHeader } from "@rainreckon/core";
 import type { Hdf5File } from "../../hdf5/index.ts";
+import { type Scaling, toPhysical } from "../physical.ts";
+import { takeRows } from "../take-rows.ts";
 import { type Level, LevelAttributes } from "./levels.ts";
 
 /** A moment of a sweep: where it is stored, and how to make numbers of it. */
@@ -7,8 +9,6 @@ export interface StoredMoment {
   readonly quantity: string;
   readonly level: Level;
 }
-
-type Scaling = Omit<Moment, "quantity" | "stored">;
 
 /**
  * Whether a moment can be read, without decoding it.
@@ -112,27 +112,4 @@ export function readMoment(
     return { quantity: moment.quantity, stored, ...toPhysical(stored, scale) };
   }
   return { quantity: moment.quantity, stored, ...scale };
-}
-
-function takeRows(stored: StoredValues, rows: Int32Array, gateCount: number): StoredValues {
-  const taken = stored.slice(0, rows.length * gateCount);
-  rows.forEach((row, ray) => {
-    taken.set(stored.subarray(row * gateCount, (row + 1) * gateCount), ray * gateCount);
-  });
-  return taken;
-}
-
-/**
- * Floating types hold physical values in our own terms. A file that scales them all the same is brought to that
- * in place; its codes then have no place among the values, so they become NaN and -Infinity themselves.
- */
-function toPhysical(stored: Float32Array | Float64Array, scale: Scaling): Scaling {
-  if (scale.gain === 1 && scale.offset === 0) return scale;
-  for (let i = 0; i < stored.length; i++) {
-    const value = stored[i];
-    if (value === scale.nodata) stored[i] = Number.NaN;
-    else if (value === scale.undetect) stored[i] = Number.NEGATIVE_INFINITY;
-    else stored[i] = value * scale.gain + scale.offset;
-  }
-  return { gain: 1, offset: 0 };
 }

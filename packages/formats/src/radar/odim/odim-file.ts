@@ -39,23 +39,27 @@ interface StoredSweep {
 /**
  * Opens an ODIM_H5 file, versions 2.0 to 2.4, holding a polar volume (PVOL) or a scan (SCAN).
  *
- * @throws InputError where the file is damaged, is no ODIM_H5, is no polar scan, or has no sweep that can be used
+ * @returns undefined where it is an HDF5 file that says nothing of an ODIM_H5 object
+ * @throws InputError where the file is damaged, is no polar scan, or has no sweep that can be used
  * @see ODIM_H5 2.3, OPERA Data Information Model for HDF5, EUMETNET OPERA (2019)
  */
-export function openOdim(path: string): ScanFile {
+export function openOdim(path: string): ScanFile | undefined {
   const file = openHdf5(path);
   try {
-    return readStructure(file);
+    const root: Level = { path: "", children: new Set(file.children("/")) };
+    const object = new LevelAttributes(file, [root]).text("what", "object");
+    if (object !== undefined) return readStructure(file, root, object);
+    file.close();
+    return undefined;
   } catch (error) {
     file.close();
     throw error;
   }
 }
 
-function readStructure(file: Hdf5File): ScanFile {
-  const root: Level = { path: "", children: new Set(file.children("/")) };
+function readStructure(file: Hdf5File, root: Level, object: string): ScanFile {
   const attributes = new LevelAttributes(file, [root]);
-  checkObject(file, attributes);
+  checkObject(file, object);
   const remarks: Notice[] = [];
   checkVersion(file, attributes, remarks);
   const names = numbered(root, "dataset");
@@ -85,15 +89,7 @@ function readStructure(file: Hdf5File): ScanFile {
   return new OdimFile(file, sweeps, remarks, leftOut);
 }
 
-function checkObject(file: Hdf5File, attributes: LevelAttributes): void {
-  const object = attributes.text("what", "object");
-  if (object === undefined) {
-    throw new InputError(
-      "an HDF5 file, but not ODIM_H5: nothing says what object it is",
-      file.path,
-      "leave it out, or store it as ODIM_H5 with what/object",
-    );
-  }
+function checkObject(file: Hdf5File, object: string): void {
   if (object === "PVOL" || object === "SCAN") return;
   const meaning = OTHER_OBJECTS[object] ?? "an object that is not known here";
   throw new InputError(
