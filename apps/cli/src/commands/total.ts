@@ -5,8 +5,7 @@ import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { EXIT } from "../exit.ts";
 import { manifestSchema } from "../manifest.ts";
 import { flags } from "../options.ts";
-import { runTotal, type TotalOutcome } from "../total/run-total.ts";
-import { totalText } from "../total/total-text.ts";
+import type { TotalOutcome } from "../total/run-total.ts";
 import { countText } from "../ui/numbers.ts";
 import { terminalOf } from "../ui/terminal.ts";
 
@@ -49,6 +48,9 @@ export function registerTotal(program: Command): void {
   addSchemaFlag(command, totalSchema);
   command.action(async (plan: string, options: TotalFlags) => {
     const terminal = terminalOf(command);
+    // Loaded here, so that no other command waits for charts, projections and the rest.
+    const { runTotal } = await import("../total/run-total.ts");
+    const { totalText } = await import("../total/total-text.ts");
     const { outcome, noticeCount } = await runTotal(
       plan,
       {
