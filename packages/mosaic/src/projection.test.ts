@@ -28,6 +28,15 @@ describe("projection", () => {
     expect(Math.hypot(lon - lonDeg, lat - latDeg)).toBeLessThan(1e-8);
   });
 
+  // Expected: cs2cs of PROJ 9.1 for 3.1 E 52.6 N, from +proj=longlat +datum=WGS84.
+  test.each([
+    ["+proj=laea +lat_0=52.5 +lon_0=3 +ellps=GRS80 +units=m", 6775.6177, 11132.4468],
+    ["+proj=aea +lat_1=40 +lat_2=50 +lat_0=45 +lon_0=3 +ellps=GRS80 +units=m", 6814.8719, 845861.2795],
+  ])("takes a false origin of 0 where none is named: %s", (crs, xM, yM) => {
+    const [x, y] = projection(crs).forward(3.1, 52.6);
+    expect(Math.hypot(x - xM, y - yM)).toBeLessThan(0.002);
+  });
+
   test.skipIf(!foreign)("agrees with PROJ's own program to 2 mm (RAINRECKON_FOREIGN_TOOLS)", () => {
     const crs = "+proj=laea +lat_0=52 +lon_0=4 +x_0=0 +y_0=0 +ellps=GRS80 +units=m +no_defs";
     const map = projection(crs);

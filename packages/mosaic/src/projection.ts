@@ -72,6 +72,15 @@ export function projStringOf(crs: string): string {
 }
 
 /**
+ * A PROJ string with the false origin that PROJ takes where none is named, 0 and 0 (PROJ manual, cartographic
+ * projections): some projections of the library give NaN without it.
+ */
+function withOrigin(projString: string): string {
+  const missing = ["x_0", "y_0"].filter((name) => !new RegExp(`\\+${name}=`).test(projString));
+  return [projString, ...missing.map((name) => `+${name}=0`)].join(" ");
+}
+
+/**
  * A projection between WGS 84 and a named coordinate system.
  *
  * Positions agree with PROJ to better than 1 mm for the projections tested here (see projection.test.ts).
@@ -82,7 +91,7 @@ export function projection(crs: string): Projection {
   const projString = projStringOf(crs);
   let converter: { forward(p: [number, number]): number[]; inverse(p: [number, number]): number[] };
   try {
-    converter = proj4("+proj=longlat +datum=WGS84 +no_defs", projString);
+    converter = proj4("+proj=longlat +datum=WGS84 +no_defs", withOrigin(projString));
   } catch (cause) {
     throw new InputError(
       "a coordinate system that cannot be built",

@@ -16,7 +16,7 @@ import type { ManifestInput } from "../manifest.ts";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { PlanRadar } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
-import { counted } from "../ui/numbers.ts";
+import { counted, countText } from "../ui/numbers.ts";
 import type { Progress } from "../ui/progress.ts";
 
 /** Two sites this far apart cannot be the same radar, whatever their id says. */
@@ -138,7 +138,7 @@ export async function indexScans(
     const why = planned === undefined ? "is not in the plan" : "is switched off in the plan";
     if (planned === undefined) {
       log.add("radar left out", {
-        what: `radar "${id}" ${why} (${sweeps.length} sweeps)`,
+        what: `radar "${id}" ${why} (${counted(sweeps.length, "sweep")})`,
         where: sweeps[0].file.name,
         fix: "run plan --update to add it",
       });
@@ -241,7 +241,7 @@ function radarInput(
     log.add(
       "sweep outside the window",
       {
-        what: `${outside} sweeps lie outside the window`,
+        what: `${outside === 1 ? "1 sweep lies" : `${countText(outside)} sweeps lie`} outside the window`,
         where: `radar ${radar.id}`,
         fix: "nothing to do, or widen the window in the plan",
       },

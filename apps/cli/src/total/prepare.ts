@@ -80,6 +80,7 @@ export async function prepareRun(
   const steps = cutWindow(window, stepMs, anchor);
   const grid: Grid = plan.grid;
   const map = projection(grid.crs);
+  refuseGridNowhere(grid, map);
 
   const inputs: ManifestInput[] = [];
   const seen = (input: ManifestInput) => inputs.push(input);
@@ -132,6 +133,18 @@ export async function prepareRun(
     inputs: sorted,
     runDigest,
   };
+}
+
+/** A grid whose middle is no place on Earth would hold nothing, and every gauge would lie outside it. */
+function refuseGridNowhere({ crs, westM, northM, cellM, nx, ny }: Grid, map: Projection): void {
+  const [lonDeg, latDeg] = map.inverse(westM + (nx * cellM) / 2, northM - (ny * cellM) / 2);
+  if (Number.isFinite(lonDeg) && Number.isFinite(latDeg)) return;
+  throw new InputError(
+    "the middle of the grid is no place on Earth",
+    `plan, grid: crs ${crs}`,
+    "check crs, westM and northM, or let plan --update write the grid",
+    { kind: "usage" },
+  );
 }
 
 /** One instant of a radar is a rate, and no number of minutes can be made of it. */

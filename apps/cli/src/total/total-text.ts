@@ -43,7 +43,9 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     `  ${utcText(startEpochMs)} to ${utcText(endEpochMs)}${local}`,
     "",
     terminal.strong(
-      `${atLeast}${fixedDecimals(headline.districtMm as number | null, 1)} mm over ${place} (${basis})`,
+      headline.districtMm === null
+        ? `no depth: nothing of ${place} was observed`
+        : `${atLeast}${fixedDecimals(headline.districtMm as number, 1)} mm over ${place} (${basis})`,
     ),
     `  observed ${minutesSeen} of ${minutes} minutes on average (${fixedDecimals(100 * observed, 0)} %)`,
     ...catchments.map(
