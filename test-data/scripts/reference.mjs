@@ -74,15 +74,7 @@ function runSuites() {
     const config = join(root, "packages", "config", "vitest.config.ts");
     const { stderr } = spawnSync(
       process.execPath,
-      [
-        vitest,
-        "run",
-        "--config",
-        config,
-        "--reporter=json",
-        `--outputFile=${outputFile}`,
-        "src/reference",
-      ],
+      [vitest, "run", "--config", config, "--reporter=json", `--outputFile=${outputFile}`, "src/reference"],
       { cwd: root, encoding: "utf8" },
     );
     if (!existsSync(outputFile)) {
