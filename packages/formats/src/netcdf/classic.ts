@@ -78,10 +78,14 @@ class Classic implements NetcdfFile {
   attribute(object: string, name: string): AttributeValue | undefined {
     const attributes =
       object === "" ? this.#reader.globalAttributes : (this.#variables.get(object)?.attributes ?? []);
-    const value: unknown = attributes?.find((attribute) => attribute.name === name)?.value;
+    const found = attributes?.find((attribute) => attribute.name === name);
+    const value: unknown = found?.value;
     if (typeof value === "string") return value.split("\0")[0]?.trim();
-    if (typeof value === "number") return value;
-    return Array.isArray(value) ? Float64Array.from(value, Number) : undefined;
+    if (typeof value !== "number" && !Array.isArray(value)) return undefined;
+    const numbers = Float64Array.from([value].flat(), Number);
+    // The library hands bytes out unsigned; in classic NetCDF they are signed.
+    const signed = found?.type === "byte" ? numbers.map((byte) => (byte > 127 ? byte - 256 : byte)) : numbers;
+    return signed.length === 1 ? signed[0] : signed;
   }
 
   numbers(variable: string): Float64Array {

@@ -186,9 +186,7 @@ export function radialSweep(block: RadialBlock, frame: SweepFrame): SweepSource 
     remarks,
   };
   const variableOf = (quantity: string) => variablePath(block.group, block.variables.get(quantity) as string);
-  if (
-    [...block.variables.keys()].some((quantity) => packingOrNone(file, variableOf(quantity)) === undefined)
-  ) {
+  if (REFLECTIVITIES.some((quantity) => tellsNoUndetect(block, quantity))) {
     remarks.push(
       "The file has no code for 'observed, below detection': gates without a value count as not observed.",
     );
@@ -201,9 +199,14 @@ export function radialSweep(block: RadialBlock, frame: SweepFrame): SweepSource 
   };
 }
 
-/** The code for "below detection" of a moment; undefined where it has none. */
-function packingOrNone(file: NetcdfFile, variable: string): number | undefined {
-  return numberAttribute(file, variable, "_Undetect");
+/** What rain is made from: here a dry gate and one that was not looked at must not be mixed up. */
+const REFLECTIVITIES = ["DBZH", "TH"] as const;
+
+function tellsNoUndetect({ file, group, variables }: RadialBlock, quantity: string): boolean {
+  const variable = variables.get(quantity);
+  return (
+    variable !== undefined && numberAttribute(file, variablePath(group, variable), "_Undetect") === undefined
+  );
 }
 
 function readMoment(
