@@ -6,6 +6,10 @@ export interface GaugeStation {
   readonly lonDeg: number;
   readonly latDeg: number;
   readonly elevationM?: number;
+  /** What the network says of the gauge, where it does: depth of one tip, heating, corrections applied already. */
+  readonly tipMm?: number;
+  readonly heated?: boolean;
+  readonly corrections?: string;
 }
 
 /** What a network says of a reading, or what a check made of it. */
