@@ -54,6 +54,46 @@ const capValue = z.string().transform((text, context): { dbz: number } | { mmPer
   return inDbz ? { dbz: value } : { mmPerHour: value };
 });
 
+/** A number between two ends, both allowed; an end that is open says so in words. */
+function numberFrom(least: number, most: number, words: string): (value: string) => number {
+  return through(
+    z
+      .string()
+      .regex(/^[-+]?(\d+\.?\d*|\.\d+)(e[-+]?\d+)?$/i, words)
+      .transform(Number)
+      .refine((value) => value >= least && value <= most, words),
+  );
+}
+
+/** A list of numbers with commas, ascending and each once, between two ends. */
+function ascendingList(least: number, most: number, words: string): (value: string) => readonly number[] {
+  return through(
+    z
+      .string()
+      .regex(/^\d+(\.\d+)?(,\d+(\.\d+)?)*$/, words)
+      .transform((text) => [...new Set(text.split(",").map(Number))].sort((a, b) => a - b))
+      .refine((list) => list.every((value) => value >= least && value <= most), words),
+  );
+}
+
+const bandLetters = z
+  .string()
+  .regex(/^(S|C|X)(,(S|C|X))*$/i, 'write S, C or X, or several with commas: "S,C,X"')
+  .transform((text) => [...new Set(text.toUpperCase().split(","))]);
+
+/** Heights of a layer, "1800..2300". */
+const layerHeights = z
+  .string()
+  .regex(/^\d+(\.\d+)?\.\.\d+(\.\d+)?$/, 'write bottom..top in m, like "1800..2300"')
+  .transform((text) => {
+    const [bottomM, topM] = text.split("..").map(Number) as [number, number];
+    return { bottomM, topM };
+  })
+  .refine(({ bottomM, topM }) => bottomM < topM && topM <= 20_000, "the top must lie above the bottom");
+
+/** A file that a chart is written to; its ending says what it holds. */
+const chartFile = z.string().regex(/\.(svg|html)$/i, "name a file that ends in .svg or .html");
+
 /** Every flag of every command, each once: name, unit, default, help text. */
 export const flags = {
   // All commands
@@ -97,4 +137,115 @@ export const flags = {
     new Option("--cap <cap>", "hail cap, in dBZ or mm/h: 53dBZ, 100mm/h")
       .argParser(through(capValue))
       .default({ dbz: 53 }, "53dBZ"),
+
+  // budget
+  band: () =>
+    new Option("--band <list>", "an example radar of a band, or several side by side: S, C, X").argParser(
+      through(bandLetters),
+    ),
+  peakPower: () =>
+    new Option("--peak-power <W>", "peak transmitted power, W").argParser(
+      numberFrom(1e-3, 1e8, "write a power above 0 in W, up to 1e8"),
+    ),
+  gain: () =>
+    new Option("--gain <dB>", "antenna gain, dB; from the beam width where left out").argParser(
+      numberFrom(0, 80, "write a gain from 0 to 80 dB"),
+    ),
+  beamWidth: () =>
+    new Option(
+      "--beam-width <deg>",
+      "half-power beam width, degrees; from gain or dish where left out",
+    ).argParser(numberFrom(0.05, 20, "write a width from 0.05 to 20 degrees")),
+  dish: () =>
+    new Option("--dish <m>", "diameter of the dish, m: gives the beam width").argParser(
+      numberFrom(0.1, 50, "write a diameter from 0.1 to 50 m"),
+    ),
+  pulse: () =>
+    new Option("--pulse <us>", "pulse length, microseconds").argParser(
+      numberFrom(0.01, 500, "write a length from 0.01 to 500 microseconds"),
+    ),
+  frequency: () =>
+    new Option("--frequency <GHz>", "frequency, GHz").argParser(
+      numberFrom(1, 110, "write a frequency from 1 to 110 GHz"),
+    ),
+  wavelength: () =>
+    new Option("--wavelength <cm>", "wavelength, cm, in place of the frequency").argParser(
+      numberFrom(0.28, 29.9, "write a wavelength from 0.28 to 29.9 cm"),
+    ),
+  noiseFigure: () =>
+    new Option("--noise-figure <dB>", "noise figure of the receiver, dB").argParser(
+      numberFrom(0, 30, "write a noise figure from 0 to 30 dB"),
+    ),
+  bandwidth: () =>
+    new Option(
+      "--bandwidth <MHz>",
+      "bandwidth of the receiver, MHz; 1 over the pulse length where left out",
+    ).argParser(numberFrom(1e-3, 1000, "write a bandwidth above 0 in MHz, up to 1000")),
+  detection: () =>
+    new Option(
+      "--detection <dB>",
+      "signal over noise that a detection needs, dB; below 0 where many pulses are averaged",
+    )
+      .argParser(numberFrom(-30, 30, "write a ratio from -30 to 30 dB"))
+      .default(0),
+  losses: () =>
+    new Option("--losses <dB>", "losses inside the radar, transmit and receive together, dB").argParser(
+      numberFrom(0, 60, "write a loss from 0 to 60 dB"),
+    ),
+  radome: () =>
+    new Option(
+      "--radome <dB>",
+      "loss of the wet radome, BOTH ways, dB; measured ones: 3 dB dirty at C band and 15 mm/h, up to 5 dB at 50 mm/h",
+    )
+      .argParser(numberFrom(0, 40, "write a loss from 0 to 40 dB"))
+      .default(0),
+  prf: () =>
+    new Option(
+      "--prf <Hz>",
+      "pulse repetition frequency, Hz: gives range and velocity without folding",
+    ).argParser(numberFrom(1, 1e5, "write a frequency from 1 to 100000 Hz")),
+  antennaHeight: () =>
+    new Option("--antenna-height <m>", "height of the antenna above mean sea level, m").argParser(
+      numberFrom(-450, 6000, "write a height from -450 to 6000 m"),
+    ),
+  elevation: () =>
+    new Option("--elevation <deg>", "elevation of the beam, degrees; of a file its lowest sweep").argParser(
+      numberFrom(-2, 90, "write an elevation from -2 to 90 degrees"),
+    ),
+  temperature: () =>
+    new Option("--temperature <C>", "air at the antenna: temperature, degrees Celsius")
+      .argParser(numberFrom(-60, 60, "write a temperature from -60 to 60 degrees Celsius"))
+      .default(15),
+  pressure: () =>
+    new Option("--pressure <hPa>", "air at the antenna: total pressure, hPa")
+      .argParser(numberFrom(300, 1100, "write a pressure from 300 to 1100 hPa"))
+      .default(1013.25),
+  humidity: () =>
+    new Option("--humidity <percent>", "air at the antenna: relative humidity over water, %")
+      .argParser(numberFrom(0, 100, "write a humidity from 0 to 100 %: above 100 air is beyond saturation"))
+      .default(60),
+  budgetRelation: () =>
+    new Option("--relation <name>", "relation between Z and R, by name or as A,b (Z = A R^b)").default(
+      "marshall-1955-200/1.6",
+    ),
+  rainKm: () =>
+    new Option("--rain-km <km>", "length of the path through rain, km")
+      .argParser(numberFrom(0.1, 300, "write a length from 0.1 to 300 km"))
+      .default(20),
+  ranges: () =>
+    new Option("--ranges <list>", "slant ranges, km, with commas")
+      .argParser(ascendingList(1, 500, 'write ranges from 1 to 500 km with commas, like "20,60,120"'))
+      .default([10, 25, 50, 75, 100, 125, 150, 200, 250], "10,25,50,75,100,125,150,200,250"),
+  meltingLayer: () =>
+    new Option(
+      "--melting-layer <m>",
+      "bottom..top of the melting layer, m above mean sea level: adds the share of the echo that comes from it",
+    ).argParser(through(layerHeights)),
+  terrain: () =>
+    new Option(
+      "--terrain <file>",
+      "terrain along one azimuth, CSV with the columns distance_km and height_asl_m in even steps: where the beam meets the ground",
+    ),
+  chart: () =>
+    new Option("--chart <file>", "draw it: a file that ends in .svg or .html").argParser(through(chartFile)),
 } as const;

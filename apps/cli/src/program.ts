@@ -1,5 +1,6 @@
 import { Command } from "commander";
 import { NothingLeft, speakPlainly } from "./command.ts";
+import { registerBudget } from "./commands/budget.ts";
 import { registerCompare } from "./commands/compare.ts";
 import { registerPlan } from "./commands/plan.ts";
 import { registerRelate } from "./commands/relate.ts";
@@ -26,6 +27,7 @@ export function buildProgram(): Command {
   registerPlan(program);
   registerTotal(program);
   registerRelate(program);
+  registerBudget(program);
   registerCompare(program);
   return program;
 }
@@ -35,6 +37,7 @@ Examples:
   rainreckon survey data/
   rainreckon plan data/ -o plan.yaml
   rainreckon relate table --dbz 20..55
+  rainreckon budget --band S,C,X
 
 Units: mm, mm/h, dBZ, km, degrees; instants are UTC unless a zone stands beside them.
 Exit status: 0 done, what was left out counted on stderr; 1 failed midway; 2 wrong usage or plan;

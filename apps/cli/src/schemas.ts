@@ -1,4 +1,5 @@
 import type { z } from "zod";
+import { budgetSchema } from "./budget/schema.ts";
 import { planReportSchema } from "./commands/plan.ts";
 import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
@@ -12,6 +13,7 @@ export const schemas = {
   plan: planReportSchema,
   total: totalSchema,
   "relate table": relationTableSchema,
+  budget: budgetSchema,
   compare: compareSchema,
   manifest: manifestSchema,
 } as const satisfies Record<string, z.ZodType>;

@@ -38,6 +38,30 @@ test("the weakest echo by range, and the square law through it", () => {
   }
 });
 
+test("bands that hold strong rain only do not pass for a deaf radar", () => {
+  const echo = new LowestEcho();
+  echo.add(
+    SWEEP,
+    noisySweep((_ray, gate, dbz) => (gate % 3 === 0 ? dbz : Math.max(dbz, 20))),
+    "x",
+  );
+  const measured = echo.measure()!;
+  expect(measured.lowestDbz[1]).toBe(20);
+  expect(Math.abs(measured.at1KmDbz + 36)).toBeLessThanOrEqual(0.5);
+});
+
+test("where weak echo was taken out of the files, sight ends there at every range", () => {
+  const echo = new LowestEcho();
+  echo.add(
+    SWEEP,
+    noisySweep((_ray, _gate, dbz) => (dbz < 5 ? -999 : dbz)),
+    "x",
+  );
+  const measured = echo.measure()!;
+  expect(measuredDetectableDbz(3000, measured)).toBe(5);
+  expect(measuredDetectableDbz(90_000, measured)).toBe(5);
+});
+
 test("nodata and undetect are no echo; a band without enough echo follows the law", () => {
   const echo = new LowestEcho();
   echo.add(

@@ -15,13 +15,22 @@ const ENOUGH_GATES = 200;
  * any real echo at that range could show. House rule.
  */
 const PASSED_OVER = 0.002;
+const PASSED_OVER_AT_LEAST = 2;
+
+/**
+ * Many bands hold no echo as weak as the radar could see there, only rain: the weakest tenth of them speaks for
+ * all. House rule.
+ */
+const SPEAKING_SHARE = 0.1;
 
 /** The weakest echo seen by range, as a stand-in where nobody says how sensitive a radar is. */
 export interface MeasuredSensitivity {
   /** Shape [bands]: lowest valid reflectivity in bands of {@link RANGE_BAND_M}, dBZ; NaN where too little was seen. */
   readonly lowestDbz: Float64Array;
-  /** The same brought to 1 km by the square of the range: median over the bands. */
+  /** The same brought to 1 km by the square of the range: what the weakest tenth of the bands comes to. */
   readonly at1KmDbz: number;
+  /** Lowest of all bands: below it nothing is written, at any range. */
+  readonly floorDbz: number;
   /** How many gates with echo it was measured from. */
   readonly gateCount: number;
 }
@@ -79,7 +88,15 @@ export class LowestEcho {
       (sum, counts) => sum + counts.reduce((inBand, count) => inBand + count, 0),
       0,
     );
-    return { lowestDbz, at1KmDbz: at1Km[Math.floor(at1Km.length / 2)] as number, gateCount };
+    return {
+      lowestDbz,
+      at1KmDbz: at1Km[Math.floor(SPEAKING_SHARE * at1Km.length)] as number,
+      floorDbz: lowestDbz.reduce(
+        (low, dbz) => (Number.isNaN(dbz) ? low : Math.min(low, dbz)),
+        Number.POSITIVE_INFINITY,
+      ),
+      gateCount,
+    };
   }
 
   #bandAt(rangeM: number): Uint32Array {
@@ -93,7 +110,7 @@ export class LowestEcho {
 function lowestOf(counts: Uint32Array): number {
   const gates = counts.reduce((sum, count) => sum + count, 0);
   if (gates < ENOUGH_GATES) return Number.NaN;
-  let left = gates * PASSED_OVER;
+  let left = Math.max(PASSED_OVER_AT_LEAST, gates * PASSED_OVER);
   for (let place = 0; place < counts.length; place++) {
     left -= counts[place] as number;
     if (left < 0) return LOWEST_DBZ + place * CLASS_DB;
@@ -102,10 +119,13 @@ function lowestOf(counts: Uint32Array): number {
 }
 
 /**
- * Smallest reflectivity seen at a range: the band's own where enough echo was seen there, else the square law
- * through the other bands.
+ * Smallest reflectivity seen at a range: the square law through what was measured, and never below the floor.
+ *
+ * So it holds for a radar that its noise limits and for files from which weak echo was taken out.
  */
-export function measuredDetectableDbz(rangeM: number, measured: MeasuredSensitivity): number {
-  const own = measured.lowestDbz[Math.floor(rangeM / RANGE_BAND_M)];
-  return own === undefined || Number.isNaN(own) ? detectableDbz(rangeM, measured.at1KmDbz) : own;
+export function measuredDetectableDbz(
+  rangeM: number,
+  { at1KmDbz, floorDbz }: Pick<MeasuredSensitivity, "at1KmDbz" | "floorDbz">,
+): number {
+  return Math.max(floorDbz, detectableDbz(rangeM, at1KmDbz));
 }

@@ -1,3 +1,4 @@
+export { type BudgetChart, type BudgetCurve, budgetPage, svgBudget } from "./charts/budget-chart.ts";
 export { svgHyetograph } from "./charts/hyetograph.ts";
 export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
 export type {
