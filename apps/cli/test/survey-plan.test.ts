@@ -230,9 +230,9 @@ describe("plan", () => {
     expect(loaded.plan.gauges.map(({ network }) => network)).toEqual(["moor", "saltwater", "tideway"]);
     expect(loaded.plan.grid).toMatchObject({ cellM: 1000 });
     expect(loaded.plan.grid.crs).toMatch(/^\+proj=laea \+lat_0=52\.5 \+lon_0=3 /);
-    for (const { files, stationsFile } of loaded.gaugeFiles) {
+    for (const { files, stationsFiles } of loaded.gaugeFiles) {
       expect(files).toHaveLength(1);
-      expect(readFileSync(stationsFile, "utf8")).toMatch(/^id,/);
+      expect(readFileSync(stationsFiles[0]!, "utf8")).toMatch(/^id,/);
     }
   });
 

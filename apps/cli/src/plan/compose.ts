@@ -86,6 +86,7 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     radars: listNode(findings.radars.map((radar) => radarNode(radar, result.radarsInWindow.has(radar.id)))),
     gauges: listNode(gaugeNodes(result, folder), "found: none with readings and stations"),
     catchments: catchmentsNode(result, folder),
+    assets: assetsNode(result, folder),
     intervals: mapNode({
       grids: byDefault("PT1H", "step of the maps"),
       series: byDefault("PT5M", "step of catchments and gauges"),
@@ -181,32 +182,75 @@ export function gaugeNodes({ findings }: SurveyResult, folder: string): Node[] {
 /** One entry of `gauges`. */
 export function gaugeNode({ files, stations }: GaugeGroup, folder: string): Node {
   const first = files[0]!;
-  const crs = stations.crs.value ?? "WRITE ITS EPSG CODE";
+  const isWaterMl = first.layout.value === "waterml2";
   return mapNode({
     network: by(first.network),
     files: inline(found(files.map((file) => relativePath(path.resolve(file.file), folder)))),
-    stations: inline(
-      guessed(
-        { file: relativePath(path.resolve(stations.file), folder), crs, columns: stations.columns.value },
-        `it names these gauges; ${stations.crs.reason}`,
-      ),
-    ),
+    stations: stations.file === first.file ? undefined : inline(stationsMark(stations, folder)),
     layout: by(first.layout),
-    columns: inline(by(first.columns)),
+    columns: isWaterMl ? undefined : inline(by(first.columns)),
+    ...idEntries(first),
     kind: by(first.kind),
     unit: by(first.unit),
     tipMm: first.tipMm === undefined ? undefined : by(first.tipMm),
     stepMinutes: first.stepMinutes === undefined ? undefined : by(first.stepMinutes),
-    stamp: byDefault("end", "end or start of the time that a reading covers"),
+    stamp:
+      first.stamp === undefined
+        ? byDefault("end", "end or start of the time that a reading covers")
+        : by(first.stamp),
     zone:
       first.zone.value === null
         ? guessed("UTC", "the stamps name no zone: ask the network")
         : found(first.zone.value, first.zone.reason),
     dst: byDefault("follow", "never: the zone's standard time all year"),
+    ...writtenEntries(first),
     silence: silenceMark(first),
     missing: inline(missingMark(first)),
     quality: first.qualityCodes.length === 0 ? undefined : inline(qualityMark(first.qualityCodes)),
+    status: byDefault("unknown", "provisional or final, as the network says; retrieved: the day of fetching"),
   });
+}
+
+function stationsMark(stations: StationFinding, folder: string): Marked {
+  return guessed(
+    {
+      file: relativePath(path.resolve(stations.file), folder),
+      crs: stations.crs.value ?? "WRITE ITS EPSG CODE",
+      columns: stations.columns.value,
+      ...tableForm(stations),
+    },
+    `it names these gauges; ${stations.crs.reason}`,
+  );
+}
+
+/** How a table of points is written, where it is not as most are. */
+function tableForm({ encoding, headerLine, decimal }: StationFinding): Record<string, unknown> {
+  return {
+    ...(encoding === undefined || encoding.value === "utf-8" ? {} : { encoding: encoding.value }),
+    ...(headerLine === undefined ? {} : { headerLine }),
+    ...(decimal === "point" ? {} : { decimal }),
+  };
+}
+
+/** Where a gauge's id is found, where no column names it. */
+function idEntries({ idFrom, fileName, label }: GaugeFinding): Entries {
+  if (idFrom.value === "column") return {};
+  return {
+    idFrom: by(idFrom),
+    fileName: fileName === undefined ? undefined : guessed(fileName, "{id} is the id, * anything"),
+    label: label === undefined ? undefined : guessed(label, "the text before the id"),
+  };
+}
+
+/** How dates, numbers and characters are written, where it is not as most do. */
+function writtenEntries({ dates, dateOnly, encoding, headerLine, decimal }: GaugeFinding): Entries {
+  return {
+    dates: dates.value === "ymd" ? undefined : by(dates),
+    dayHour: dateOnly ? guessed("ask", "stamps are days: ask at which hour they begin, 0 to 23") : undefined,
+    encoding: encoding.value === "utf-8" ? undefined : by(encoding),
+    headerLine: headerLine === undefined ? undefined : found(headerLine, "other lines stand above it"),
+    decimal: decimal.value === "point" ? undefined : by(decimal),
+  };
 }
 
 function by(guess: Guessed<unknown>): Marked {
@@ -259,7 +303,17 @@ export function gaugeGroups(
       gauge.kind.value,
       gauge.unit.value,
       gauge.columns.value,
-      table.file,
+      gauge.dates.value,
+      gauge.dateOnly,
+      gauge.encoding.value,
+      gauge.headerLine,
+      gauge.decimal.value,
+      gauge.idFrom.value,
+      gauge.fileName,
+      gauge.label,
+      gauge.stamp?.value,
+      // WaterML files with positions of their own go together.
+      table.file === gauge.file ? "" : table.file,
     ]);
     const group = groups.get(key) ?? { files: [], stations: table };
     groups.set(key, group);
@@ -276,6 +330,25 @@ export function catchmentsNode({ findings }: SurveyResult, folder: string): Node
     file: found(relativePath(path.resolve(map.file), folder), `${map.polygonCount} areas`),
     id: by(map.idField),
     name: map.nameField === undefined ? undefined : by(map.nameField),
+    layer:
+      map.layers === undefined || map.layer === undefined
+        ? undefined
+        : map.layers.length > 1
+          ? guessed(map.layer, `the first of ${map.layers.join(", ")}`)
+          : found(map.layer),
+    crs: map.crsKnown ? undefined : guessed("WRITE ITS EPSG CODE", "the file does not name it"),
+  });
+}
+
+/** The entry `assets`, where there is a table that looks like one. */
+export function assetsNode({ findings }: SurveyResult, folder: string): Node | undefined {
+  const table = findings.stations.find(({ assets }) => assets);
+  if (table === undefined) return undefined;
+  const { id, name, x, y } = table.columns.value;
+  return mapNode({
+    file: found(relativePath(path.resolve(table.file), folder), `${table.stationCount} points`),
+    crs: guessed(table.crs.value ?? "WRITE ITS EPSG CODE", table.crs.reason),
+    columns: inline(by({ ...table.columns, value: { id, ...(name === undefined ? {} : { name }), x, y } })),
   });
 }
 

@@ -160,9 +160,38 @@ function radarFaults(plan: Plan): PlanFault[] {
 function gaugeFaults(files: PlanGaugeFiles, index: number): PlanFault[] {
   const faults: PlanFault[] = [];
   const path = ["gauges", index];
+  if (files.layout !== "waterml2" && files.columns.time === undefined) {
+    faults.push({
+      path: [...path, "columns"],
+      what: "a table needs the column that holds the time",
+      fix: "add columns.time, or write layout: waterml2",
+    });
+  }
+  if (files.layout !== "waterml2" && files.stations === undefined) {
+    faults.push({
+      path,
+      what: "nothing says where the gauges stand",
+      fix: "add stations: {file, columns: {id, x, y}}",
+    });
+  }
+  if (files.idFrom !== "column" && files.layout !== "long") {
+    faults.push({
+      path: [...path, "idFrom"],
+      what: `idFrom: ${files.idFrom} and layout: ${files.layout} do not go together`,
+      fix: "write layout: long, or take idFrom out",
+    });
+  }
+  if (files.idFrom === "label" && files.label === undefined) {
+    faults.push({
+      path: [...path, "idFrom"],
+      what: "idFrom: label needs the text before the id",
+      fix: "add label",
+    });
+  }
+  const namesGauges = files.columns.gauge !== undefined || files.idFrom !== "column";
   if (
     files.layout === "long" &&
-    (files.columns.gauge === undefined || (files.columns.value === undefined && files.kind !== "tips"))
+    (!namesGauges || (files.columns.value === undefined && files.kind !== "tips"))
   ) {
     faults.push({
       path: [...path, "columns"],

@@ -1,6 +1,7 @@
 import { readFileSync, statSync } from "node:fs";
 import path from "node:path";
 import { InputError, type Notice } from "@rainreckon/core";
+import type { ShapefileParts } from "@rainreckon/formats";
 import { type Document, LineCounter, parseDocument } from "yaml";
 import { canonicalJson, sha256Hex } from "../digest.ts";
 import { nearest } from "../text/nearest.ts";
@@ -8,6 +9,7 @@ import { crossChecks } from "./cross-checks.ts";
 import { faultsOfIssues, planError } from "./faults.ts";
 import { namesBeside, resolveFiles } from "./resolve.ts";
 import { type Plan, type PlanGaugeFiles, planSchema } from "./schema.ts";
+import { shapefileParts } from "./shapefile-parts.ts";
 import { lineOfPath, type PlanPath, pathText } from "./yaml-place.ts";
 
 /** A plan is written by people; what is longer than this is not a plan. */
@@ -19,7 +21,8 @@ const MAX_ALIASES = 100;
 export interface LoadedGaugeFiles {
   readonly spec: PlanGaugeFiles;
   readonly files: readonly string[];
-  readonly stationsFile: string;
+  /** The table of stations; of WaterML files that give the positions themselves, these. */
+  readonly stationsFiles: readonly string[];
 }
 
 /** A plan that was read and checked. All paths are absolute. */
@@ -37,6 +40,8 @@ export interface LoadedPlan {
   /** In the order of the plan. */
   readonly gaugeFiles: readonly LoadedGaugeFiles[];
   readonly catchmentsFile?: string;
+  /** The files that belong to it where it is a Shapefile. */
+  readonly catchmentsParts: ShapefileParts;
   /** Paths and globs that match nothing. */
   readonly notices: readonly Notice[];
 }
@@ -58,12 +63,12 @@ export async function loadPlan(planPath: string): Promise<LoadedPlan> {
   const scanFiles = await resolveFiles(plan.scans, folder, onNotice);
   const gaugeFiles: LoadedGaugeFiles[] = [];
   for (const spec of plan.gauges) {
-    gaugeFiles.push({
-      spec,
-      files: await resolveFiles(spec.files, folder, onNotice),
-      stationsFile: path.resolve(folder, spec.stations.file),
-    });
+    const files = await resolveFiles(spec.files, folder, onNotice);
+    const stationsFiles = spec.stations === undefined ? files : [path.resolve(folder, spec.stations.file)];
+    gaugeFiles.push({ spec, files, stationsFiles });
   }
+  const catchmentsFile =
+    plan.catchments === undefined ? undefined : path.resolve(folder, plan.catchments.file);
   return {
     path: absolute,
     folder,
@@ -72,7 +77,8 @@ export async function loadPlan(planPath: string): Promise<LoadedPlan> {
     digest: sha256Hex(canonicalJson(plan)),
     scanFiles,
     gaugeFiles,
-    ...(plan.catchments === undefined ? {} : { catchmentsFile: path.resolve(folder, plan.catchments.file) }),
+    ...(catchmentsFile === undefined ? {} : { catchmentsFile }),
+    catchmentsParts: catchmentsFile === undefined ? {} : shapefileParts(catchmentsFile),
     notices,
   };
 }

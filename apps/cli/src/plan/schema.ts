@@ -45,6 +45,8 @@ const radar = z.strictObject({
   /** Only where the files do not say. */
   beamWidthDeg: z.number().positive().max(20).optional(),
   wavelengthCm: z.number().positive().max(200).optional(),
+  /** True takes a radar of Ku band or shorter waves into the total all the same. */
+  acceptShortWavelength: z.boolean().default(false),
   /** The moment that rain is made from. */
   moment: z.string().min(1).default("DBZH"),
   /** Sectors where a hill or a building stands in the beam; sweeps up to that elevation do not speak there. */
@@ -60,28 +62,71 @@ const radar = z.strictObject({
     .default([]),
 });
 
+/** The columns of a table of stations; a WaterML file has none. */
+const stationColumns = z.strictObject({
+  id: z.string().min(1),
+  name: z.string().min(1).optional(),
+  x: z.string().min(1),
+  y: z.string().min(1),
+  elevation: z.string().min(1).optional(),
+  /** Dates between which an entry holds, for gauges that moved. */
+  validFrom: z.string().min(1).optional(),
+  validTo: z.string().min(1).optional(),
+  tipMm: z.string().min(1).optional(),
+  heated: z.string().min(1).optional(),
+  /** What the network has corrected already. */
+  corrections: z.string().min(1).optional(),
+});
+
+const encoding = z
+  .enum(["utf-8", "utf-16le", "utf-16be", "windows-1252"])
+  .optional()
+  .describe("how characters are written; found from the bytes where left out; Latin-1 is windows-1252");
+const headerLine = z
+  .number()
+  .int()
+  .min(1)
+  .max(200)
+  .optional()
+  .describe("line with the names of the columns, from 1; the first one with text where left out");
+const decimal = z.enum(["point", "comma"]).default("point");
+
 const gaugeFiles = z.strictObject({
   network: z.string().min(1),
   files: z.array(z.string().min(1)).min(1),
-  stations: z.strictObject({
-    file: z.string().min(1),
-    /** Coordinate system of the stations' x and y; longitude and latitude where left out. */
-    crs: z.string().min(1).default("EPSG:4326"),
-    columns: z.strictObject({
-      id: z.string().min(1),
-      name: z.string().min(1).optional(),
-      x: z.string().min(1),
-      y: z.string().min(1),
-      elevation: z.string().min(1).optional(),
-    }),
-  }),
-  layout: z.enum(["long", "wide"]),
-  columns: z.strictObject({
-    gauge: z.string().min(1).optional(),
-    time: z.string().min(1),
-    value: z.string().min(1).optional(),
-    quality: z.string().min(1).optional(),
-  }),
+  /** May be left out for WaterML files that give the positions themselves. */
+  stations: z
+    .strictObject({
+      file: z.string().min(1),
+      /** Coordinate system of the stations' x and y; longitude and latitude where left out. */
+      crs: z.string().min(1).default("EPSG:4326"),
+      columns: stationColumns,
+      encoding,
+      headerLine,
+      decimal,
+      dates: z.enum(["ymd", "dmy", "mdy", "serial-1900"]).default("ymd"),
+    })
+    .optional(),
+  layout: z.enum(["long", "wide", "waterml2"]),
+  columns: z
+    .strictObject({
+      gauge: z.string().min(1).optional(),
+      /** Column of dates, where the time column holds the time of day alone. */
+      date: z.string().min(1).optional(),
+      time: z.string().min(1).optional(),
+      value: z.string().min(1).optional(),
+      quality: z.string().min(1).optional(),
+    })
+    .prefault({}),
+  /** Where the gauge's id stands: in a column (or the headers), the file's name, or above the header. */
+  idFrom: z.enum(["column", "file", "label"]).default("column"),
+  fileName: z
+    .string()
+    .regex(/^[^{}]*\{id\}[^{}]*$/, 'write a pattern with one {id}, like "rain_{id}_*"')
+    .optional()
+    .describe("the file's name without its ending: {id} is the id, * anything"),
+  /** Text before the id in a line above the header. */
+  label: z.string().min(1).max(100).optional(),
   kind: z.enum(["increments", "counter", "intensity", "tips"]),
   unit: z.enum(["mm", "in", "mm/h", "in/h", "tips"]),
   /** Depth of one tip, for tips. */
@@ -90,19 +135,61 @@ const gaugeFiles = z.strictObject({
   stamp: z.enum(["end", "start"]).default("end"),
   zone: zone.default("UTC"),
   dst: dst.default("follow"),
+  dates: z
+    .enum(["ymd", "dmy", "mdy", "serial-1900", "ask"])
+    .default("ymd")
+    .describe(
+      "order of the dates: ymd, dmy, mdy, or serial-1900 for day numbers of a spreadsheet; ask: not settled, nothing is read",
+    ),
+  dayHour: z
+    .union([z.number().int().min(0).max(23), z.literal("ask")])
+    .optional()
+    .describe("hour from 0 to 23 at which days begin, for stamps without a time of day"),
+  encoding,
+  headerLine,
+  decimal,
   /** What no line means: dry, missing, or dry as long as something came within the time given. */
   silence: z
     .string()
     .regex(/^(dry|missing|heartbeat P\S+)$/, 'write "dry", "missing" or "heartbeat PT60M"')
     .default("missing"),
   missing: z.array(z.string()).default(["", "NaN", "-999"]),
+  /** What "<0.2" counts as. */
+  below: z.enum(["zero", "missing"]).default("zero"),
+  /** Cells that mean rain too little to measure: 0 mm, and counted. */
+  trace: z.array(z.string().min(1)).default(["T", "Tr"]),
   quality: z
     .strictObject({
       use: z.array(z.string()).default([]),
       doubt: z.array(z.string()).default([]),
       drop: z.array(z.string()).default([]),
+      /** Readings that cover all the time since the gauge's last value. */
+      accumulated: z.array(z.string()).default([]),
     })
     .optional(),
+  /** Fall of a counter, in mm, that is taken for jitter and not for a reset. */
+  counterJitterMm: z.number().min(0).max(10).default(0.3),
+  /** Level, in the file's unit, at which the counter starts again from 0; never where left out. */
+  counterRollsOverAt: z.number().positive().optional(),
+  /** What the network calls its readings, and the day on which they were fetched. */
+  status: z.enum(["provisional", "final", "unknown"]).default("unknown"),
+  retrieved: z.iso.date().optional().describe("a day like 2031-05-03"),
+});
+
+/** Points that figures are asked for, such as pumps and works. */
+const assets = z.strictObject({
+  file: z.string().min(1),
+  /** Coordinate system of x and y; longitude and latitude where left out. */
+  crs: z.string().min(1).default("EPSG:4326"),
+  columns: z.strictObject({
+    id: z.string().min(1),
+    name: z.string().min(1).optional(),
+    x: z.string().min(1),
+    y: z.string().min(1),
+  }),
+  encoding,
+  headerLine,
+  decimal,
 });
 
 /** The plan of a run: everything that decides a figure, and nothing that does not. */
@@ -121,8 +208,11 @@ export const planSchema = z.strictObject({
       id: z.string().min(1),
       name: z.string().min(1).optional(),
       crs: z.string().min(1).optional(),
+      /** Of a GeoPackage; needed where it has several of polygons. */
+      layer: z.string().min(1).optional(),
     })
     .optional(),
+  assets: assets.optional(),
   intervals: z
     .strictObject({
       grids: duration.default("PT1H"),

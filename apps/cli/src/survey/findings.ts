@@ -1,3 +1,4 @@
+import { TEXT_ENCODINGS } from "@rainreckon/formats";
 import { z } from "zod";
 import { manifestNotice } from "../manifest.ts";
 
@@ -42,14 +43,15 @@ const textGuess = guess(z.string());
 const gaugeFinding = z.strictObject({
   file: z.string(),
   network: textGuess,
-  layout: guess(z.enum(["long", "wide"])),
+  layout: guess(z.enum(["long", "wide", "waterml2"])),
   kind: guess(z.enum(["increments", "counter", "intensity", "tips"])),
   unit: guess(z.enum(["mm", "in", "mm/h", "in/h", "tips"])),
   tipMm: guess(z.number()).optional(),
   columns: guess(
     z.strictObject({
       gauge: z.string().optional(),
-      time: z.string(),
+      date: z.string().optional(),
+      time: z.string().optional(),
       value: z.string().optional(),
       quality: z.string().optional(),
     }),
@@ -59,6 +61,18 @@ const gaugeFinding = z.strictObject({
   zone: guess(z.string().nullable()),
   missing: guess(z.array(z.string())),
   qualityCodes: z.array(z.string()),
+  encoding: guess(z.enum(TEXT_ENCODINGS)),
+  /** Where lines of introduction stand above the header: its line, from 1. */
+  headerLine: z.number().int().optional(),
+  decimal: guess(z.enum(["point", "comma"])),
+  /** "ask" where nothing tells day and month apart. */
+  dates: guess(z.enum(["ymd", "dmy", "mdy", "serial-1900", "ask"])),
+  /** Whether stamps are dates without a time of day. */
+  dateOnly: z.boolean(),
+  idFrom: guess(z.enum(["column", "file", "label"])),
+  fileName: z.string().optional(),
+  label: z.string().optional(),
+  stamp: guess(z.enum(["end", "start"])).optional(),
   /** As if UTC where the stamps name no zone; null where no stamp can be read. */
   firstStamp: instant.nullable(),
   lastStamp: instant.nullable(),
@@ -78,8 +92,18 @@ const stationFinding = z.strictObject({
       x: z.string(),
       y: z.string(),
       elevation: z.string().optional(),
+      validFrom: z.string().optional(),
+      validTo: z.string().optional(),
+      tipMm: z.string().optional(),
+      heated: z.string().optional(),
+      corrections: z.string().optional(),
     }),
   ),
+  encoding: guess(z.enum(TEXT_ENCODINGS)).optional(),
+  headerLine: z.number().int().optional(),
+  decimal: z.enum(["point", "comma"]),
+  /** Guessed: points that figures are wanted for, not gauges. */
+  assets: z.boolean(),
   stationCount: z.number().int(),
   /** Null where x and y are metres of a system that nobody named. */
   crs: guess(z.string().nullable()),
@@ -89,10 +113,16 @@ const stationFinding = z.strictObject({
 
 const mapFinding = z.strictObject({
   file: z.string(),
+  format: z.enum(["GeoJSON", "Shapefile", "GeoPackage"]),
+  /** The layer that was looked at, and all that may hold areas. */
+  layer: z.string().optional(),
+  layers: z.array(z.string()).optional(),
   polygonCount: z.number().int(),
   idField: textGuess.optional(),
   nameField: textGuess.optional(),
   crs: z.string().optional(),
+  /** False where nothing says what the coordinates are. */
+  crsKnown: z.boolean(),
 });
 
 /** The result of `survey --json`: what lies there, what is wrong with it, what can be made of it. */

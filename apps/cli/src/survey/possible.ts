@@ -26,7 +26,7 @@ export function possibleTexts(
   sentences.push(
     areas > 0
       ? `depths by catchment: ${counted(areas, "area")}`
-      : "no depths by catchment: there is no map of them (GeoJSON)",
+      : "no depths by catchment: there is no map of them (GeoJSON, Shapefile, GeoPackage)",
   );
   const placed = gauges.reduce(
     (sum, file) =>

@@ -13,16 +13,16 @@ export function surveyText(findings: Findings, terminal: Pick<Terminal, "strong"
   const have: string[] = [
     ...radars.map(radarText),
     ...gauges.map(gaugeText),
-    ...stations.map(({ file, stationCount, crs, withoutReadings }) =>
-      block(`Stations ${file}`, [
+    ...stations.map(({ file, stationCount, crs, withoutReadings, assets }) =>
+      block(`${assets ? "Assets" : "Stations"} ${file}`, [
         `${counted(stationCount, "station")}, ${crs.value ?? "coordinates of an unknown system"} (${standing(crs)})`,
-        ...(withoutReadings.length === 0 ? [] : [`without readings: ${names(withoutReadings)}`]),
+        ...(assets || withoutReadings.length === 0 ? [] : [`without readings: ${names(withoutReadings)}`]),
       ]),
     ),
-    ...catchments.map(({ file, polygonCount, idField, nameField, crs }) =>
+    ...catchments.map(({ file, format, layer, polygonCount, idField, nameField, crs, crsKnown }) =>
       block(`Catchments ${file}`, [
-        `${counted(polygonCount, "area")}, id in ${idField?.value ?? "no field that tells them apart"}, ` +
-          `name in ${nameField?.value ?? "no field"}${crs === undefined ? "" : `, ${crs}`}`,
+        `${format}${layer === undefined ? "" : `, layer ${layer}`}: ${counted(polygonCount, "area")}, id in ${idField?.value ?? "no field that tells them apart"}, ` +
+          `name in ${nameField?.value ?? "no field"}${crsKnown ? systemText(crs) : ", coordinates of an unknown system"}`,
       ]),
     ),
   ];
@@ -106,18 +106,45 @@ function gaugeText(gauge: GaugeFinding): string {
     gauge.firstStamp === null || gauge.lastStamp === null
       ? "no time that can be read"
       : `${utcText(Date.parse(gauge.firstStamp))} to ${utcText(Date.parse(gauge.lastStamp))}${clock}`;
+  const form = layout.value === "waterml2" ? "WaterML 2.0" : `${layout.value} table`;
   const body = [
-    `${count}, ${layout.value} table, ${step}; network ${network.value} (${standing(network)})`,
+    `${count}, ${form}, ${step}; network ${network.value} (${standing(network)})`,
     `${kind.value} (${standing(kind)}) in ${unit.value} (${standing(unit)})`,
     span,
     gauge.stationsFile === undefined
       ? "stations: no table names these gauges"
       : `stations: ${gauge.stationsFile}`,
   ];
+  const oddities = writtenText(gauge);
+  if (oddities.length > 0) body.push(oddities.join("; "));
   if (gauge.stationsFile !== undefined && gauge.withoutStation.length > 0) {
     body.push(`without station: ${names(gauge.withoutStation)}`);
   }
   return block(`Gauges ${gauge.file}`, body);
+}
+
+/** How a table is written, where it is not as most are. */
+function writtenText(gauge: GaugeFinding): string[] {
+  const { encoding, headerLine, decimal, dates, dateOnly, idFrom, fileName, label } = gauge;
+  return [
+    ...(encoding.value === "utf-8" ? [] : [`${encoding.value} (${standing(encoding)})`]),
+    ...(headerLine === undefined ? [] : [`header in line ${headerLine}`]),
+    ...(decimal.value === "point" ? [] : [`decimal comma (${standing(decimal)})`]),
+    ...(dates.value === "ymd" ? [] : [`dates ${dates.value} (${standing(dates)})`]),
+    ...(dateOnly ? ["stamps are days"] : []),
+    ...(idFrom.value === "column"
+      ? []
+      : [
+          `one gauge, its id from ${idFrom.value === "file" ? `the file's name ${fileName}` : `"${label}"`} (${standing(idFrom)})`,
+        ]),
+  ];
+}
+
+/** The name of a system: a code, or what well-known text calls it. */
+function systemText(crs: string | undefined): string {
+  if (crs === undefined) return "";
+  const name = /^[A-Z_]+\s*[[(]\s*"([^"]*)"/i.exec(crs)?.[1];
+  return `, ${name ?? crs}`;
 }
 
 function standing(guess: Guessed<unknown>): string {

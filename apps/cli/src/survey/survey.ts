@@ -4,14 +4,15 @@ import { setImmediate } from "node:timers/promises";
 import { InputError, type Interval, type Notice } from "@rainreckon/core";
 import {
   formatsReady,
-  type GeoJsonGuess,
+  type MapGuess,
   openScan,
   recogniseScan,
-  sniffGeoJson,
+  sniffMap,
   sniffTable,
 } from "@rainreckon/formats";
-import { projection } from "@rainreckon/mosaic";
+import { type Projection, projection } from "@rainreckon/mosaic";
 import { sha256Hex } from "../digest.ts";
+import { shapefileParts } from "../plan/shapefile-parts.ts";
 import { type LeftOutLog, leftOutLog } from "../ui/left-out.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
@@ -21,7 +22,13 @@ import type { Findings, GaugeFinding, MapFinding, RadarFinding } from "./finding
 import { possibleTexts } from "./possible.ts";
 import { radarFindings, type SeenSweep } from "./radars.ts";
 import type { Point, SurveyResult } from "./survey-result.ts";
-import { readSeenStations, type SeenReadings, type SeenStations, tableFindings } from "./tables.ts";
+import {
+  readSeenStations,
+  readWaterMlPoints,
+  type SeenReadings,
+  type SeenStations,
+  tableFindings,
+} from "./tables.ts";
 import type { FoundFile, Walk } from "./walk.ts";
 import { chooseWindow, commonSpan, wholeSpan } from "./window.ts";
 
@@ -30,7 +37,7 @@ interface Seen {
   readonly sweeps: SeenSweep[];
   readonly readings: SeenReadings[];
   readonly stations: SeenStations[];
-  readonly maps: { readonly file: string; readonly guess: GeoJsonGuess }[];
+  readonly maps: { readonly file: string; readonly guess: MapGuess }[];
   readonly others: Map<string, number>;
 }
 
@@ -64,6 +71,7 @@ export async function survey(
   const { radars } = radarFindings(hashResent(seen.sweeps), tell("radar"));
   const { gauges, stations, points } = tableFindings(seen.readings, seen.stations, radars, tell("gauge"));
   const catchments = seen.maps.map(({ file, guess }) => mapFinding(file, guess, tell("catchment")));
+  const catchmentPoints = seen.maps.flatMap(({ file, guess }) => cornersOf(file, guess, tell("catchment")));
   const radarsInWindow = radarsOfOneTime(radars);
   const window = windowOf(radars, radarsInWindow, gauges);
   const part = { radars: [...radars], gauges: [...gauges], stations: [...stations], catchments, window };
@@ -79,7 +87,6 @@ export async function survey(
     possible: possibleTexts(part, radarsInWindow),
     next: nextCommand(paths, window !== null),
   };
-  const catchmentPoints = seen.maps.flatMap(({ guess }) => cornersOf(guess));
   return { findings, files: walk.files, radarsInWindow, gaugePoints: points, catchmentPoints };
 }
 
@@ -88,19 +95,30 @@ const FILES_BETWEEN_BREATHS = 20;
 async function lookAt(files: readonly FoundFile[], terminal: Terminal, wrong: LeftOutLog): Promise<Seen> {
   const seen: Seen = { sweeps: [], readings: [], stations: [], maps: [], others: new Map() };
   const progress = progressBar(terminal, files.length, "files");
+  const shapefiles = new Set(
+    files.filter(({ path: name }) => /\.shp$/i.test(name)).map(({ path: name }) => name.slice(0, -4)),
+  );
   for (const [index, file] of files.entries()) {
     try {
+      if (belongsToShapefile(file.path, shapefiles)) continue;
       await lookAtFile(file.path, seen, wrong);
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
       wrong.add("file left out", error);
+    } finally {
+      progress.advance();
     }
-    progress.advance();
     // Opening scans never waits, so an interrupt would go unheard without this.
     if (index % FILES_BETWEEN_BREATHS === 0) await setImmediate();
   }
   progress.end();
   return seen;
+}
+
+/** Whether a file is a part of a Shapefile that is read with its .shp. */
+function belongsToShapefile(file: string, shapefiles: ReadonlySet<string>): boolean {
+  const part = /\.(dbf|shx|prj|cpg|qix|sbn|sbx|shp\.xml)$/i.exec(file)?.[0];
+  return part !== undefined && shapefiles.has(file.slice(0, -part.length));
 }
 
 async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<void> {
@@ -113,14 +131,16 @@ async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<
     }
     return;
   }
-  const map = await sniffGeoJson(file);
+  const map = await sniffMap(file, { parts: shapefileParts(file) });
   if (map !== undefined) {
     seen.maps.push({ file, guess: map });
     return;
   }
   const table = await sniffTable(file);
-  if (table.kind === "readings") seen.readings.push({ file, guess: table.readings });
-  else if (table.kind === "stations") {
+  if (table.kind === "readings") {
+    seen.readings.push({ file, guess: table.readings });
+    if (table.readings.layout.value === "waterml2") await lookAtWaterMlPoints(file, seen, wrong);
+  } else if (table.kind === "stations") {
     seen.stations.push(
       await readSeenStations(file, table.stations, (notice) => wrong.add("station left out", notice)),
     );
@@ -130,6 +150,16 @@ async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<
     if (path.extname(file).toLowerCase() === ".csv") {
       wrong.add("file left out", { what: table.reason, where: file, fix: "mend the table, or leave it out" });
     }
+  }
+}
+
+/** The monitoring points of a WaterML file: where they have positions, they need no table of stations. */
+async function lookAtWaterMlPoints(file: string, seen: Seen, wrong: LeftOutLog): Promise<void> {
+  try {
+    seen.stations.push(await readWaterMlPoints(file, (notice) => wrong.add("station left out", notice)));
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    wrong.add("station left out", error);
   }
 }
 
@@ -185,7 +215,7 @@ function windowOf(
   return { from: isoUtc(window.startEpochMs), to: isoUtc(window.endEpochMs), basis };
 }
 
-function mapFinding(file: string, guess: GeoJsonGuess, onNotice: (notice: Notice) => void): MapFinding {
+function mapFinding(file: string, guess: MapGuess, onNotice: (notice: Notice) => void): MapFinding {
   const [id] = guess.idFields;
   const name = guess.nameFields.find((field) => field !== id);
   if (guess.polygonCount < guess.featureCount) {
@@ -202,8 +232,28 @@ function mapFinding(file: string, guess: GeoJsonGuess, onNotice: (notice: Notice
       fix: "give every area an id of its own",
     });
   }
+  if (!guess.crsKnown && guess.polygonCount > 0) {
+    onNotice({
+      what: "nothing says what system the coordinates are in",
+      where: file,
+      fix:
+        guess.format === "Shapefile"
+          ? "put its .prj beside it, or write catchments.crs in the plan"
+          : "write catchments.crs in the plan",
+    });
+  }
+  if (guess.layers !== undefined && guess.layers.length > 1) {
+    onNotice({
+      what: `it holds several layers of areas: ${guess.layers.join(", ")}; ${guess.layer} was looked at`,
+      where: file,
+      fix: "write catchments.layer in the plan",
+    });
+  }
   return {
     file,
+    format: guess.format,
+    ...(guess.layer === undefined ? {} : { layer: guess.layer }),
+    ...(guess.layers === undefined ? {} : { layers: [...guess.layers] }),
     polygonCount: guess.polygonCount,
     ...(id === undefined
       ? {}
@@ -218,13 +268,21 @@ function mapFinding(file: string, guess: GeoJsonGuess, onNotice: (notice: Notice
       ? {}
       : { nameField: { value: name, standing: "guessed" as const, reason: "it holds words" } }),
     ...(guess.crs === undefined ? {} : { crs: guess.crs }),
+    crsKnown: guess.crsKnown,
   };
 }
 
-function cornersOf(guess: GeoJsonGuess): Point[] {
-  if (guess.bounds === undefined || guess.polygonCount === 0) return [];
+function cornersOf(file: string, guess: MapGuess, onNotice: (notice: Notice) => void): Point[] {
+  if (guess.bounds === undefined || guess.polygonCount === 0 || !guess.crsKnown) return [];
   const [west, south, east, north] = guess.bounds;
-  const { inverse } = projection(guess.crs ?? "EPSG:4326");
+  let map: Projection;
+  try {
+    map = projection(guess.crs ?? "EPSG:4326");
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    onNotice({ what: error.what, where: file, fix: error.fix });
+    return [];
+  }
   const corners = [
     [west, south],
     [west, north],
@@ -232,7 +290,7 @@ function cornersOf(guess: GeoJsonGuess): Point[] {
     [east, north],
   ] as const;
   return corners.map(([x, y]) => {
-    const [lonDeg, latDeg] = inverse(x, y);
+    const [lonDeg, latDeg] = map.geographic ? [x, y] : map.inverse(x, y);
     return { lonDeg, latDeg };
   });
 }

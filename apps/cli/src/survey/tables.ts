@@ -1,3 +1,4 @@
+import path from "node:path";
 import type { Notice } from "@rainreckon/core";
 import {
   looksSwapped,
@@ -29,7 +30,28 @@ export async function readSeenStations(
   guess: StationsGuess,
   onNotice: (notice: Notice) => void,
 ): Promise<SeenStations> {
-  return { file, guess, rows: await readStations(file, guess.columns.value, onNotice) };
+  const { columns, encoding, headerLine, decimal } = guess;
+  const form = { encoding: encoding.value, headerLine, decimal };
+  return { file, guess, rows: await readStations(file, columns.value, onNotice, form) };
+}
+
+/** The monitoring points of a WaterML file, as a table of stations in longitude and latitude. */
+export async function readWaterMlPoints(
+  file: string,
+  onNotice: (notice: Notice) => void,
+): Promise<SeenStations> {
+  const columns = { id: "id", x: "lon", y: "lat" };
+  const rows = await readStations(file, columns, onNotice);
+  const reason = "WaterML gives the positions itself";
+  const guess: StationsGuess = {
+    columns: { value: columns, standing: "found", reason },
+    crs: { value: "EPSG:4326", standing: "found", reason },
+    decimal: "point",
+    encoding: { value: "utf-8", standing: "found", reason },
+    ids: rows.map((row) => row.id),
+    whole: true,
+  };
+  return { file, guess, rows };
 }
 
 export interface TableFindings {
@@ -46,15 +68,52 @@ export function tableFindings(
   radars: readonly RadarFinding[],
   onNotice: (notice: Notice) => void,
 ): TableFindings {
-  const gauges = readings.map((seen) => gaugeFinding(seen, tables));
+  const gauges = settleDates(readings.map((seen) => gaugeFinding(seen, tables)));
   for (const gauge of gauges) tellGaugeFaults(gauge, onNotice);
   const stations = tables.map((table) => stationFinding(table, gauges));
   const points = tables.flatMap((table) => stationPoints(table, gauges, radars, onNotice));
   return { gauges, stations, points };
 }
 
+/**
+ * Files of one network and form write dates alike: what a day above 12 tells in one of them holds for those
+ * in which nothing does.
+ */
+function settleDates(gauges: readonly GaugeFinding[]): GaugeFinding[] {
+  const form = ({ network, layout, columns }: GaugeFinding) =>
+    JSON.stringify([network.value, layout.value, columns.value]);
+  return gauges.map((gauge) => {
+    if (gauge.dates.value !== "ask") return gauge;
+    const alike = gauges.filter((other) => form(other) === form(gauge) && other.dates.value !== "ask");
+    const orders = new Set(alike.map((other) => other.dates.value));
+    if (orders.size !== 1) return gauge;
+    const [teller] = alike as [GaugeFinding];
+    return { ...gauge, dates: { ...teller.dates, reason: `${teller.dates.reason} (in ${teller.file})` } };
+  });
+}
+
+/** What the name of the file of one gauge is, with {id} for the id that a table of stations knows. */
+function nameWithId(file: string, tables: readonly SeenStations[]): { id: string; fileName: string } {
+  const stem = path.basename(file, path.extname(file));
+  const parts = new Set([stem, ...stem.split(/[\s_.-]+/)]);
+  const known = tables
+    .flatMap((table) => table.rows.map((row) => row.id))
+    .filter((id) => parts.has(id))
+    .sort((a, b) => b.length - a.length)[0];
+  if (known === undefined) return { id: stem, fileName: "{id}" };
+  const at = stem.indexOf(known);
+  // Dates and numbers change from file to file.
+  const anyNumber = (text: string) => text.replace(/\d+/g, "*").replace(/\*([\s_.-]\*)+/g, "*");
+  return {
+    id: known,
+    fileName: `${anyNumber(stem.slice(0, at))}{id}${anyNumber(stem.slice(at + known.length))}`,
+  };
+}
+
 function gaugeFinding({ file, guess }: SeenReadings, tables: readonly SeenStations[]): GaugeFinding {
-  const table = stationsFor(guess.gaugeIds, file, tables);
+  const named = guess.idFrom.value === "file" ? nameWithId(file, tables) : undefined;
+  const gaugeIds = named === undefined ? guess.gaugeIds : [named.id];
+  const table = stationsFor(gaugeIds, file, tables);
   const known = new Set(table?.rows.map((row) => row.id));
   return {
     file,
@@ -70,12 +129,24 @@ function gaugeFinding({ file, guess }: SeenReadings, tables: readonly SeenStatio
     qualityCodes: [...guess.qualityCodes],
     firstStamp: stampOrNull(guess.firstEpochMs),
     lastStamp: stampOrNull(guess.lastEpochMs),
-    gaugeIds: [...guess.gaugeIds],
+    encoding: guess.encoding,
+    ...(guess.headerLine === undefined ? {} : { headerLine: guess.headerLine }),
+    decimal: guess.decimal,
+    dates: guess.dates,
+    dateOnly: guess.dateOnly,
+    idFrom: guess.idFrom,
+    ...(named === undefined ? {} : { fileName: named.fileName }),
+    ...(guess.label === undefined ? {} : { label: guess.label }),
+    ...(guess.stamp === undefined ? {} : { stamp: guess.stamp }),
+    gaugeIds: [...gaugeIds],
     allGaugeIdsSeen: guess.allGaugesSeen,
     ...(table === undefined ? {} : { stationsFile: table.file }),
-    withoutStation: table === undefined ? [...guess.gaugeIds] : guess.gaugeIds.filter((id) => !known.has(id)),
+    withoutStation: table === undefined ? [...gaugeIds] : gaugeIds.filter((id) => !known.has(id)),
   };
 }
+
+/** A table of points without readings is one of assets where its name says so. */
+const ASSET_NAME = /asset/i;
 
 function stampOrNull(epochMs: number): string | null {
   return Number.isFinite(epochMs) ? isoUtc(epochMs) : null;
@@ -119,6 +190,20 @@ function tellGaugeFaults(gauge: GaugeFinding, onNotice: (notice: Notice) => void
       });
     }
   }
+  if (gauge.dates.value === "ask") {
+    onNotice({
+      what: `day and month cannot be told apart: ${gauge.dates.reason}`,
+      where,
+      fix: "write dates: dmy or dates: mdy in the plan",
+    });
+  }
+  if (gauge.dateOnly) {
+    onNotice({
+      what: "its stamps are dates without a time of day",
+      where,
+      fix: "ask when the network's days begin, and write dayHour and stamp (start or end) in the plan",
+    });
+  }
   if (gauge.zone.value === null) {
     onNotice({
       what: "the stamps name no zone",
@@ -135,20 +220,17 @@ function stationFinding(
   const users = gauges.filter((gauge) => gauge.stationsFile === file);
   const withReadings = new Set(users.flatMap((gauge) => gauge.gaugeIds));
   const complete = users.every((gauge) => gauge.allGaugeIdsSeen);
-  const { id, name, x, y, elevation } = guess.columns.value;
+  const columns = Object.fromEntries(
+    Object.entries(guess.columns.value).filter(([, header]) => header !== undefined),
+  ) as StationFinding["columns"]["value"];
   return {
     file,
-    columns: {
-      ...guess.columns,
-      value: {
-        id,
-        ...(name === undefined ? {} : { name }),
-        x,
-        y,
-        ...(elevation === undefined ? {} : { elevation }),
-      },
-    },
-    stationCount: rows.length,
+    columns: { ...guess.columns, value: columns },
+    ...(guess.encoding === undefined ? {} : { encoding: guess.encoding }),
+    ...(guess.headerLine === undefined ? {} : { headerLine: guess.headerLine }),
+    decimal: guess.decimal,
+    assets: users.length === 0 && ASSET_NAME.test(path.basename(file)),
+    stationCount: new Set(rows.map((row) => row.id)).size,
     crs: { ...guess.crs, value: guess.crs.value ?? null },
     withoutReadings: complete
       ? rows.map((row) => row.id).filter((stationId) => !withReadings.has(stationId))
@@ -163,6 +245,7 @@ function stationPoints(
   onNotice: (notice: Notice) => void,
 ): Point[] {
   const users = gauges.filter((gauge) => gauge.stationsFile === file);
+  if (users.length === 0 && ASSET_NAME.test(path.basename(file))) return [];
   if (users.length === 0) {
     onNotice({
       what: "no gauge file has readings of these stations",

@@ -18,6 +18,9 @@ export interface RunCaution {
 const HIGH_BEAM_M = 2000;
 /** Fewer trusted gauges than this make any adjustment a matter of luck. House rule. */
 const FEW_GAUGES = 10;
+/** Unseen rain is said where it could change the figure: so many mm, and so large a share of it. House rules. */
+const MUCH_UNSEEN_MM = 0.2;
+const MUCH_UNSEEN_SHARE = 0.05;
 /** Share of the window that may be bridged or lie at its edges before it is said. */
 const MUCH_BRIDGED = 0.05;
 
@@ -102,10 +105,23 @@ export function runCautions(
       `${doubted} of ${comparison.gauges.length} gauges are doubted and shape nothing unless the plan says so.`,
     );
   }
+  for (const { network, status, retrieved } of plan.gauges) {
+    if (status !== "provisional") continue;
+    say(
+      `The readings of network ${network} are provisional${retrieved === undefined ? "" : `, as fetched on ${retrieved}`}: the network may still change them.`,
+    );
+  }
   if (isAtCap(district)) {
     say(
       `${percent(district.cappedFraction)} of the district's depth met the hail cap.`,
       "Where it was heavy rain and not hail, the true depth is larger.",
+    );
+  }
+  const unseenMm = districtMean(run, total.unseenMm);
+  if (unseenMm > MUCH_UNSEEN_MM && unseenMm > MUCH_UNSEEN_SHARE * district.radarMm) {
+    say(
+      `Rain too light or too far for the radars to see may be missing: up to ${unseenMm.toFixed(1)} mm over the district.`,
+      "It is what an echo just below detection would have added, the most that may be missing and no estimate.",
     );
   }
   const height = districtMean(run, total.planes.beamHeightAslM);
@@ -119,7 +135,7 @@ export function runCautions(
 }
 
 /** Mean of a plane over the district's observed cells. */
-function districtMean(run: PreparedRun, plane: Float32Array): number {
+export function districtMean(run: PreparedRun, plane: Float32Array): number {
   let sum = 0;
   let weight = 0;
   const { cells, fraction } = run.district;

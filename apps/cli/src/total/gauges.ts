@@ -15,10 +15,12 @@ import {
   readGaugeFiles,
   readStations,
   type StationRow,
+  stationsDuring,
 } from "@rainreckon/formats";
 import { type Projection, projection } from "@rainreckon/mosaic";
 import type { ManifestInput } from "../manifest.ts";
 import type { LoadedGaugeFiles, LoadedPlan } from "../plan/load.ts";
+import type { PlanGaugeFiles } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { hashFile } from "./inputs.ts";
 import { placePoint } from "./places.ts";
@@ -67,9 +69,10 @@ export async function readGauges(
       const contents = await readGaugeFiles(entry.files, entry.spec, onNotice, { window });
       for (const file of entry.files) used.set(file, "used");
       counts.push({ network, counts: contents.counts });
-      const stations = await stationsOf(entry, onNotice);
-      used.set(entry.stationsFile, "used");
-      const toWgs84 = projection(entry.spec.stations.crs);
+      if (entry.spec.status === "provisional") log.add("doubted", provisional(entry.spec));
+      const stations = await stationsOf(entry, window, onNotice);
+      for (const file of entry.stationsFiles) used.set(file, "used");
+      const toWgs84 = projection(entry.spec.stations?.crs ?? "EPSG:4326");
       for (const series of contents.series) {
         const placed = placeGauge(series, stations, toWgs84, {
           grid,
@@ -85,10 +88,10 @@ export async function readGauges(
       if (!(error instanceof InputError)) throw error;
       log.add("gauge files left out", { what: error.what, where: relative(error.where), fix: error.fix });
     }
-    for (const file of [...entry.files, entry.stationsFile]) {
+    for (const file of new Set([...entry.files, ...entry.stationsFiles])) {
       try {
         const { name, sha256, bytes } = await hashFile(loaded.folder, file);
-        const kind = file === entry.stationsFile ? "stations" : "gauge readings";
+        const kind = entry.files.includes(file) ? "gauge readings" : "stations";
         seen({ path: name, kind, sha256, bytes, use: used.get(file) ?? "left out" });
       } catch (error) {
         if (!(error instanceof InputError)) throw error;
@@ -110,13 +113,36 @@ export async function readGauges(
   return { gauges: sorted, counts };
 }
 
-async function stationsOf(
-  { spec, stationsFile }: LoadedGaugeFiles,
-  onNotice: (notice: Notice) => void,
-): Promise<ReadonlyMap<string, StationRow>> {
-  const rows = await readStations(stationsFile, spec.stations.columns, onNotice);
-  return new Map(rows.map((row) => [row.id, row]));
+/** What has to be said of a network that may still change its readings. */
+function provisional({ network, retrieved }: PlanGaugeFiles): Notice {
+  return {
+    what: `the readings are provisional${retrieved === undefined ? "" : `, as fetched on ${retrieved}`}: the network may still change them`,
+    where: `network ${network}`,
+    fix: "run again once they are final, and write status: final",
+  };
 }
+
+/** The stations of a network: the entries that hold in the window, and the ids that have others only. */
+interface Stations {
+  readonly byId: ReadonlyMap<string, StationRow>;
+  readonly otherTimes: ReadonlySet<string>;
+}
+
+async function stationsOf(
+  { spec, stationsFiles }: LoadedGaugeFiles,
+  window: Interval,
+  onNotice: (notice: Notice) => void,
+): Promise<Stations> {
+  const rows: StationRow[] = [];
+  for (const file of stationsFiles) {
+    rows.push(...(await readStations(file, spec.stations?.columns ?? NO_COLUMNS, onNotice, spec.stations)));
+  }
+  const byId = stationsDuring(rows, window, stationsFiles.join(", "), onNotice);
+  return { byId, otherTimes: new Set(rows.map((row) => row.id).filter((id) => !byId.has(id))) };
+}
+
+/** A WaterML file has none. */
+const NO_COLUMNS = { id: "id", x: "x", y: "y" } as const;
 
 interface Surroundings {
   readonly grid: Grid;
@@ -127,11 +153,17 @@ interface Surroundings {
 
 function placeGauge(
   series: GaugeSeries,
-  stations: ReadonlyMap<string, StationRow>,
+  stations: Stations,
   toWgs84: Projection,
   { grid, map, near, rule }: Surroundings,
 ): GaugeInput | { readonly what: string; readonly fix: string } {
-  const row = stations.get(series.id);
+  const row = stations.byId.get(series.id);
+  if (row === undefined && stations.otherTimes.has(series.id)) {
+    return {
+      what: "its entries among the stations hold at other times than the window",
+      fix: "check the dates in the stations file",
+    };
+  }
   if (row === undefined) {
     return {
       what: "it has readings but no station",
@@ -162,6 +194,9 @@ function placeGauge(
     latDeg,
     ...(row.name === undefined ? {} : { name: row.name }),
     ...(row.elevationM === undefined ? {} : { elevationM: row.elevationM }),
+    ...(row.tipMm === undefined ? {} : { tipMm: row.tipMm }),
+    ...(row.heated === undefined ? {} : { heated: row.heated }),
+    ...(row.corrections === undefined ? {} : { corrections: row.corrections }),
   };
   return { series, station, xM, yM, cell, cells };
 }

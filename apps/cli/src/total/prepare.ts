@@ -24,8 +24,9 @@ import type { Progress } from "../ui/progress.ts";
 import { version } from "../version.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
-import type { JobRadar, JobRelation, JobRound, RunShape, UnitJob } from "./job.ts";
+import type { JobRadar, JobRelation, JobRound, JobSensitivity, RunShape, UnitJob } from "./job.ts";
 import { type PlacedCatchment, placeCatchments, unionOfAreas, wholeGrid } from "./places.ts";
+import { learnSensitivity } from "./sensitivity.ts";
 import { cutIntoUnits } from "./units.ts";
 
 /** All that a run needs before the first scan is decoded. */
@@ -97,7 +98,11 @@ export async function prepareRun(
     relation: findRelation(name),
   }));
 
-  const jobRadars = radars.map((radar) => jobRadar(radar, loaded, log));
+  const jobRadars: JobRadar[] = [];
+  for (const radar of radars) {
+    const sensitivity = await learnSensitivity(radar, (notice) => log.add("doubted", notice));
+    jobRadars.push(jobRadar(radar, loaded, sensitivity, log));
+  }
   const shape: RunShape = {
     grid,
     radars: jobRadars,
@@ -173,16 +178,18 @@ async function catchmentsOf(
   let use: ManifestInput["use"] = "left out";
   let placed: PlacedCatchment[] = [];
   try {
-    const { id, name, crs } = plan.catchments;
-    const read = await readCatchments(catchmentsFile, { id, name, crs }, onNotice);
+    const fields = { ...plan.catchments, parts: loaded.catchmentsParts };
+    const read = await readCatchments(catchmentsFile, fields, onNotice);
     placed = placeCatchments(read, grid, map, plan.catchments.file, log);
     use = "used";
   } catch (error) {
     if (!(error instanceof InputError)) throw error;
     log.add("catchments left out", { what: error.what, where: relative(error.where), fix: error.fix });
   }
-  if (existsSync(catchmentsFile)) {
-    const { name, sha256, bytes } = await hashFile(loaded.folder, catchmentsFile);
+  const { dbf, prj, cpg } = loaded.catchmentsParts;
+  for (const file of [catchmentsFile, dbf, prj, cpg]) {
+    if (file === undefined || !existsSync(file)) continue;
+    const { name, sha256, bytes } = await hashFile(loaded.folder, file);
     seen({ path: name, kind: "catchments", sha256, bytes, use });
   }
   return placed;
@@ -191,6 +198,7 @@ async function catchmentsOf(
 function jobRadar(
   { radar, rounds, sweepOf, beamWidthDeg }: RadarInput,
   loaded: LoadedPlan,
+  sensitivity: JobSensitivity | undefined,
   log: LeftOutLog,
 ): JobRadar {
   const { plan } = loaded;
@@ -240,6 +248,7 @@ function jobRadar(
     moment: radar.moment,
     beamWidthDeg,
     offsetDb: radar.offsetDb,
+    sensitivity,
     cap: radar.cap,
     minRateMmPerHour: plan.rain.minRateMmPerHour,
     relations,

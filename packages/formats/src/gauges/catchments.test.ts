@@ -3,7 +3,7 @@ import { InputError, type Notice } from "@rainreckon/core";
 import { describe, expect, test } from "vitest";
 import { scratchFolder } from "../../test/scratch.ts";
 import { type CatchmentFields, readCatchments } from "./catchments.ts";
-import { sniffGeoJson } from "./sniff-geojson.ts";
+import { sniffMap } from "./sniff-map.ts";
 
 const folder = scratchFolder();
 let files = 0;
@@ -266,7 +266,9 @@ describe("a look at a GeoJSON file", () => {
         feature({ kind: "outlet" }, { type: "Point", coordinates: [90, 10] }),
       ]),
     );
-    expect(await sniffGeoJson(path)).toEqual({
+    expect(await sniffMap(path)).toEqual({
+      format: "GeoJSON",
+      crsKnown: true,
       featureCount: 3,
       polygonCount: 2,
       fields: [
@@ -282,10 +284,10 @@ describe("a look at a GeoJSON file", () => {
   });
 
   test("other files are no GeoJSON; a broken one is an error that says where", async () => {
-    expect(await sniffGeoJson(write('{"a": 1}'))).toBeUndefined();
-    expect(await sniffGeoJson(write("time,gauge,value"))).toBeUndefined();
-    expect(await sniffGeoJson(write(""))).toBeUndefined();
-    await expect(sniffGeoJson(write('{"type": "FeatureCollection", "features": ['))).rejects.toBeInstanceOf(
+    expect(await sniffMap(write('{"a": 1}'))).toBeUndefined();
+    expect(await sniffMap(write("time,gauge,value"))).toBeUndefined();
+    expect(await sniffMap(write(""))).toBeUndefined();
+    await expect(sniffMap(write('{"type": "FeatureCollection", "features": ['))).rejects.toBeInstanceOf(
       InputError,
     );
   });

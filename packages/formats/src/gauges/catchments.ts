@@ -2,8 +2,10 @@ import { type Catchment, InputError, type Ring } from "@rainreckon/core";
 import { z } from "zod";
 import { displayText } from "./display-text.ts";
 import { FileNotices, type OnNotice } from "./file-notices.ts";
-import { type GeoJsonFeature, readGeoJson } from "./geojson.ts";
+import type { GeoJsonFeature } from "./geojson.ts";
+import { readMapFeatures } from "./map-features.ts";
 import { ringCrossing } from "./ring-crossing.ts";
+import type { ShapefileParts } from "./shapefile.ts";
 
 /** Most positions in one file. */
 const MAX_VERTICES = 5_000_000;
@@ -15,6 +17,10 @@ export interface CatchmentFields {
   readonly name?: string | undefined;
   /** Coordinate system of the rings, over whatever the file says. */
   readonly crs?: string | undefined;
+  /** Layer of a GeoPackage; needed where it has several of polygons. */
+  readonly layer?: string | undefined;
+  /** The files that belong to a Shapefile, where they are there; without its .dbf there are no ids. */
+  readonly parts?: ShapefileParts | undefined;
 }
 
 /** Why one catchment cannot be used: what is wrong, what to do. */
@@ -31,22 +37,32 @@ const polygonCoordinates = z.array(z.array(z.array(z.unknown())));
 const multiPolygonCoordinates = z.array(polygonCoordinates);
 
 /**
- * Reads the catchments of a GeoJSON file.
+ * Reads the catchments of a map: GeoJSON, the .shp of a Shapefile, or a layer of a GeoPackage.
  *
  * A feature that cannot stand for a catchment (no polygon, no id, a ring that crosses itself, an id that
  * another shape has too) is left out and told. Open rings are closed and told. Which way round a ring runs
  * does not matter.
  *
- * @param path - FeatureCollection or Feature, at most 200 MiB and 5 million positions
+ * @param path - of at most 5 million positions; GeoJSON of at most 200 MiB
  * @returns catchments in the order of the file; `crs` undefined is longitude, latitude
- * @throws InputError where the file cannot be read at all, or no catchment is left
+ * @throws InputError where the file cannot be read at all, neither it nor `fields` names the coordinate
+ * system, or no catchment is left
  */
 export async function readCatchments(
   path: string,
   fields: CatchmentFields,
   onNotice: OnNotice,
 ): Promise<readonly Catchment[]> {
-  const document = await readGeoJson(path);
+  const document = await readMapFeatures(path, fields);
+  if (!document.crsKnown && fields.crs === undefined) {
+    throw new InputError(
+      "nothing says what system the coordinates are in",
+      path,
+      document.format === "Shapefile"
+        ? "put its .prj beside it, or write catchments.crs in the plan"
+        : "write catchments.crs in the plan",
+    );
+  }
   const notices = new FileNotices(onNotice);
   const crs = fields.crs ?? document.crs;
   const reader = new PolygonReader(path, crs === undefined);

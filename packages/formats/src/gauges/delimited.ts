@@ -1,8 +1,10 @@
 import { createReadStream } from "node:fs";
 import { open } from "node:fs/promises";
+import { Readable } from "node:stream";
 import { InputError } from "@rainreckon/core";
 import Papa from "papaparse";
 import { displayText } from "./display-text.ts";
+import { guessEncoding, settleEncoding, type TextEncodingName } from "./text-encoding.ts";
 
 /** Largest table that is opened, bytes. */
 const MAX_TABLE_BYTES = 4 * 1024 ** 3;
@@ -16,14 +18,16 @@ export interface TextEnds {
   /** The last lines; empty where the head already holds the whole file. */
   readonly tailLines: string;
   readonly byteLength: number;
+  readonly encoding: TextEncodingName;
 }
 
 /**
  * Reads the first and last 64 KiB of a text file.
  *
- * @throws InputError where it cannot be opened, is empty, is not text or is not UTF-8
+ * @param planned - the encoding, found from the bytes where left out
+ * @throws InputError where it cannot be opened, is empty, is not text, or is not in the encoding named
  */
-export async function readTextEnds(path: string): Promise<TextEnds> {
+export async function readTextEnds(path: string, planned?: TextEncodingName): Promise<TextEnds> {
   const file = await openFile(path);
   try {
     const { size } = await file.stat();
@@ -31,16 +35,19 @@ export async function readTextEnds(path: string): Promise<TextEnds> {
       throw new InputError(`${size} bytes are too many for one table`, path, "split the file by time");
     }
     const head = await readAt(file, 0, Math.min(size, HEAD_BYTES));
-    const tailFrom = Math.max(HEAD_BYTES, size - HEAD_BYTES);
+    // An even place, so that pairs of bytes stay pairs.
+    const tailFrom = Math.max(HEAD_BYTES, 2 * Math.ceil((size - HEAD_BYTES) / 2));
     const tail = size > HEAD_BYTES ? await readAt(file, tailFrom, size - tailFrom) : new Uint8Array(0);
-    refuseOtherThanUtf8(head, path);
-    const headText = new TextDecoder("utf-8").decode(head);
-    const tailText = new TextDecoder("utf-8").decode(tail);
-    if (tail.length === 0) return { headLines: headText, tailLines: "", byteLength: size };
+    if (head.length === 0) throw new InputError("the file is empty", path, "leave it out or fetch it again");
+    const encoding = settleEncoding(head, tail, planned, path);
+    const headText = new TextDecoder(encoding).decode(head);
+    const tailText = new TextDecoder(encoding).decode(tail);
+    if (tail.length === 0) return { headLines: headText, tailLines: "", byteLength: size, encoding };
     return {
       headLines: headText.slice(0, headText.lastIndexOf("\n") + 1),
       tailLines: tailText.slice(tailText.indexOf("\n") + 1),
       byteLength: size,
+      encoding,
     };
   } finally {
     await file.close();
@@ -48,14 +55,24 @@ export async function readTextEnds(path: string): Promise<TextEnds> {
 }
 
 /**
- * The first 64 KiB of any file as UTF-8 text, whatever they are.
+ * The first 64 KiB of any file as text, whatever they are.
  *
  * @throws InputError where it cannot be opened
  */
 export async function readHeadText(path: string): Promise<string> {
+  const head = await readHeadBytes(path);
+  return new TextDecoder(guessEncoding(head, new Uint8Array(0))?.value ?? "utf-8").decode(head);
+}
+
+/**
+ * The first 64 KiB of any file.
+ *
+ * @throws InputError where it cannot be opened
+ */
+export async function readHeadBytes(path: string): Promise<Uint8Array> {
   const file = await openFile(path);
   try {
-    return new TextDecoder("utf-8").decode(await readAt(file, 0, HEAD_BYTES));
+    return await readAt(file, 0, HEAD_BYTES);
   } finally {
     await file.close();
   }
@@ -84,13 +101,6 @@ async function readAt(
     filled += bytesRead;
   }
   return buffer.subarray(0, filled);
-}
-
-function refuseOtherThanUtf8(head: Uint8Array, path: string): void {
-  if (head.length === 0) throw new InputError("the file is empty", path, "leave it out or fetch it again");
-  const utf16 = (head[0] === 0xff && head[1] === 0xfe) || (head[0] === 0xfe && head[1] === 0xff);
-  if (utf16) throw new InputError("the text is UTF-16", path, "save it as UTF-8");
-  if (head.includes(0)) throw new InputError("this is not a text file", path, "give a CSV file");
 }
 
 /**
@@ -124,36 +134,54 @@ export function parseLines(text: string, delimiter: string): string[][] {
   return data.filter((cells) => !isBlank(cells)).map((cells) => cells.map(trimCell));
 }
 
+/** How the text of a table is to be taken apart; what is left out is found from the file. */
+export interface TableForm {
+  readonly encoding?: TextEncodingName | undefined;
+  /** Line that holds the names of the columns, from 1; the first one with text in it where left out. */
+  readonly headerLine?: number | undefined;
+}
+
 /** What `streamRows` hands over. Cells are trimmed; blank lines are left out; lines count from 1. */
 export interface RowHandler {
+  /** The lines above the header, where `headerLine` says that there are some. */
+  above?(lines: readonly string[]): void;
   header(cells: readonly string[], line: number): void;
   row(cells: readonly string[], line: number): void;
   /** A quotation mark that is never closed, or closed in the middle of a cell: it swallows whole lines. */
   quoteFault(line: number, lineCount: number): void;
+  /** A row with a character that the encoding does not have. */
+  undecoded(line: number, encoding: TextEncodingName): void;
 }
 
 /**
  * Reads a delimited file row by row, never the whole of it at once.
  *
- * The first line with text in it is the header. BOM, CRLF, LF and quoted cells (RFC 4180) are understood.
+ * BOM, CRLF, LF and quoted cells (RFC 4180) are understood.
  *
- * @throws InputError where the file is empty or not UTF-8 text, or where no delimiter can be found;
- * whatever `handler` throws
+ * @throws InputError where the file is empty or no text, where no delimiter can be found, or where the
+ * header cannot be decoded; whatever `handler` throws
  */
-export async function streamRows(path: string, handler: RowHandler): Promise<void> {
-  const { headLines } = await readTextEnds(path);
-  const delimiter = guessDelimiter(headLines);
+export async function streamRows(path: string, form: TableForm, handler: RowHandler): Promise<void> {
+  const { headLines, encoding } = await readTextEnds(path, form.encoding);
+  const linesAbove = (form.headerLine ?? 1) - 1;
+  const parts = headLines.split("\n", linesAbove + 51);
+  if (parts.length <= linesAbove) {
+    throw new InputError(`there is no line ${linesAbove + 1}`, path, "check headerLine");
+  }
+  const delimiter = guessDelimiter(parts.slice(linesAbove).join("\n"));
   if (delimiter === undefined) {
     throw new InputError(
       "the header holds only one column",
       path,
-      "part the cells by comma, semicolon, tab or |",
+      "part the cells by comma, semicolon, tab or |, and write headerLine where lines stand above the header",
     );
   }
-  let line = 1;
+  handler.above?.(parts.slice(0, linesAbove).map((text) => text.trim()));
+  const text = new DecodedText(path, encoding, linesAbove);
+  let line = linesAbove + 1;
   let headerSeen = false;
   await new Promise<void>((resolve, reject) => {
-    const stream = createReadStream(path, { encoding: "utf8", highWaterMark: 1 << 20 });
+    const stream = Readable.from(text.chunks());
     const fail = (cause: unknown) => {
       stream.destroy();
       reject(cause);
@@ -176,10 +204,18 @@ export async function streamRows(path: string, handler: RowHandler): Promise<voi
               // Not the line end before the end of the file, which an open quotation mark holds too.
               lineCount += lineEndsIn(cells[at]);
             }
+            const undecoded = text.sawUndecoded && cells.some((cell) => cell.includes(UNDECODED));
             if (faulty.has(index)) handler.quoteFault(startLine, lineCount);
             else if (isBlank(cells)) continue;
+            else if (headerSeen && undecoded) handler.undecoded(startLine, encoding);
             else if (headerSeen) handler.row(cells, startLine);
-            else {
+            else if (undecoded) {
+              throw new InputError(
+                `the header holds a character that is not ${encoding}`,
+                `${path}, line ${startLine}`,
+                "name the encoding of the file: encoding: windows-1252, say",
+              );
+            } else {
               headerSeen = true;
               handler.header(cells, startLine);
             }
@@ -192,6 +228,47 @@ export async function streamRows(path: string, handler: RowHandler): Promise<voi
       error: fail,
     });
   });
+}
+
+/** What decoders put in the place of bytes that are no character. */
+const UNDECODED = "\ufffd";
+
+/** The text of a file from some line on. */
+class DecodedText {
+  /** Whether bytes that are no character were met so far. */
+  sawUndecoded = false;
+  readonly #path: string;
+  readonly #encoding: TextEncodingName;
+  #linesToSkip: number;
+
+  constructor(path: string, encoding: TextEncodingName, linesToSkip: number) {
+    this.#path = path;
+    this.#encoding = encoding;
+    this.#linesToSkip = linesToSkip;
+  }
+
+  async *chunks(): AsyncGenerator<string> {
+    const decoder = new TextDecoder(this.#encoding);
+    for await (const bytes of createReadStream(this.#path, { highWaterMark: 1 << 20 })) {
+      const text = this.#below(decoder.decode(bytes as Uint8Array, { stream: true }));
+      if (text !== "") yield text;
+    }
+    const rest = this.#below(decoder.decode());
+    if (rest !== "") yield rest;
+  }
+
+  #below(text: string): string {
+    let from = 0;
+    while (this.#linesToSkip > 0) {
+      const end = text.indexOf("\n", from);
+      if (end < 0) return "";
+      from = end + 1;
+      this.#linesToSkip -= 1;
+    }
+    const below = text.slice(from);
+    this.sawUndecoded ||= below.includes(UNDECODED);
+    return below;
+  }
 }
 
 function lineEndsIn(cell: string): number {

@@ -15,6 +15,14 @@ export interface GaugeFileCounts {
   duplicatesSame: number;
   duplicatesDifferent: number;
   outOfOrder: number;
+  /** Stamps less than 10 ms off a whole minute, taken for it. */
+  stampsSnapped: number;
+  /** Values like "<0.2", taken as 0 (or as missing, where the plan says so). */
+  belowDetection: number;
+  /** Values like "T", rain too little to measure, taken as 0. */
+  traces: number;
+  /** Readings that the network marks as covering all the time since the gauge's last value. */
+  accumulated: number;
   /** Stamps in an hour that the clock skipped: left out. */
   skippedHour: number;
   /** Stamps in an hour that the clock repeated: told apart by their order, or left out. */
@@ -54,6 +62,10 @@ export function noGaugeFileCounts(): GaugeFileCounts {
     duplicatesSame: 0,
     duplicatesDifferent: 0,
     outOfOrder: 0,
+    stampsSnapped: 0,
+    belowDetection: 0,
+    traces: 0,
+    accumulated: 0,
     skippedHour: 0,
     repeatedHourResolved: 0,
     repeatedHourLeftOut: 0,

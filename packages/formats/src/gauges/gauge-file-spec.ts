@@ -1,20 +1,27 @@
 import { InputError, MM_PER_INCH } from "@rainreckon/core";
 import { Duration } from "luxon";
+import type { DecimalMark } from "./decimal.ts";
+import type { DateForm } from "./stamp.ts";
+import type { TextEncodingName } from "./text-encoding.ts";
 import type { DstRule } from "./zone-clock.ts";
 
-export type GaugeLayout = "long" | "wide";
+export type GaugeLayout = "long" | "wide" | "waterml2";
 export type GaugeKind = "increments" | "counter" | "intensity" | "tips";
 export type GaugeUnit = "mm" | "in" | "mm/h" | "in/h" | "tips";
 
 /** How the files of one gauge network are to be read. */
 export interface GaugeFileSpec {
   readonly network: string;
-  /** long: one row per gauge and time; wide: one row per time, one column per gauge. */
+  /** long: one row per gauge and time; wide: one row per time, one column per gauge; waterml2: WaterML 2.0. */
   readonly layout: GaugeLayout;
+  /** Not for WaterML, which names its parts itself. */
   readonly columns: {
-    /** Long layout only, and needed there. */
+    /** Long layout only, and needed there unless `idFrom` says otherwise. */
     readonly gauge?: string | undefined;
-    readonly time: string;
+    /** Column of dates, where the time column holds the time of day alone. */
+    readonly date?: string | undefined;
+    /** Not for WaterML; needed elsewhere. */
+    readonly time?: string | undefined;
     /** Long layout only; may be left out for tips, where a row is then one tip. */
     readonly value?: string | undefined;
     /** In the wide layout the code holds for the whole row. */
@@ -37,13 +44,44 @@ export interface GaugeFileSpec {
   readonly missing: readonly string[];
   /** The network's own codes; one that is in no list is reported and treated as doubt. */
   readonly quality?:
-    | { readonly use: readonly string[]; readonly doubt: readonly string[]; readonly drop: readonly string[] }
+    | {
+        readonly use: readonly string[];
+        readonly doubt: readonly string[];
+        readonly drop: readonly string[];
+        /** Codes of readings that cover all the time since the gauge's last value, to be used. */
+        readonly accumulated?: readonly string[] | undefined;
+      }
     | undefined;
   /** Fall of a counter, in mm, that is taken for jitter and not for a reset; 0.3 where left out. */
   readonly counterJitterMm?: number | undefined;
   /** Level, in the file's unit, at which the counter starts again from 0; never where left out. */
   readonly counterRollsOverAt?: number | undefined;
+  /** Found from the bytes where left out. */
+  readonly encoding?: TextEncodingName | undefined;
+  /** Line with the names of the columns, from 1; the first one with text in it where left out. */
+  readonly headerLine?: number | undefined;
+  /** point where left out. */
+  readonly decimal?: DecimalMark | undefined;
+  /** Order of the dates, ymd where left out; "ask" where nobody has settled it yet: nothing is read then. */
+  readonly dates?: DateForm | "ask" | undefined;
+  /** Hour at which days begin; needed where stamps are dates without a time of day. "ask" as in `dates`. */
+  readonly dayHour?: number | "ask" | undefined;
+  /**
+   * Long layout, one file per gauge: the id is taken from the file's name (`fileName`) or from a line above
+   * the header (`label`). "column" where left out.
+   */
+  readonly idFrom?: "column" | "file" | "label" | undefined;
+  /** The file's name without its ending as a pattern: {id} is the id, * anything; "{id}" where left out. */
+  readonly fileName?: string | undefined;
+  /** Text before the id in a line above the header, as in "Station: 0042". */
+  readonly label?: string | undefined;
+  /** What "<0.2" counts as; zero where left out. */
+  readonly below?: "zero" | "missing" | undefined;
+  /** Cells that mean rain too little to measure: 0 mm, and counted; "T" and "Tr" where left out. */
+  readonly trace?: readonly string[] | undefined;
 }
+
+export const DEFAULT_TRACE: readonly string[] = ["T", "Tr"];
 
 export type Silence =
   | { readonly rule: "dry" }
@@ -69,11 +107,39 @@ export function checkGaugeFileSpec(spec: GaugeFileSpec): void {
   if (!UNITS_OF_KIND[spec.kind].includes(spec.unit)) {
     refuse(`${spec.kind} cannot be in ${spec.unit}`, `unit: one of ${UNITS_OF_KIND[spec.kind].join(", ")}`);
   }
+  if (spec.dates === "ask") {
+    refuse("the order of day and month is not settled", "dates: dmy, or dates: mdy; ask the network");
+  }
+  if (spec.dayHour === "ask") {
+    refuse(
+      "the hour at which the network's days begin is not settled",
+      "dayHour: 0 to 23, and stamp: start or end; ask the network",
+    );
+  }
+  if (spec.layout !== "waterml2" && spec.columns.time === undefined) {
+    refuse("a table needs a time column", "columns.time: the header above the stamps");
+  }
   if (spec.layout === "wide" && spec.kind === "tips") {
     refuse("tips cannot stand in a wide table", "write one row per tip: gauge, time");
   }
-  if (spec.layout === "long" && spec.columns.gauge === undefined) {
-    refuse("the long layout needs a gauge column", "columns.gauge: the header above the gauges' ids");
+  const idFrom = spec.idFrom ?? "column";
+  if (spec.layout === "long" && idFrom === "column" && spec.columns.gauge === undefined) {
+    refuse(
+      "the long layout needs a gauge column",
+      "columns.gauge: the header above the gauges' ids; or idFrom: file, where each file is a gauge",
+    );
+  }
+  if (spec.layout !== "long" && idFrom !== "column") {
+    refuse(`idFrom: ${idFrom} goes with the long layout only`, "layout: long, or leave idFrom out");
+  }
+  if (idFrom === "label" && (spec.label ?? "") === "") {
+    refuse("the label before the id is not known", 'label: the text before the id, "Station" say');
+  }
+  if (idFrom === "file" && (spec.fileName ?? "{id}").split("{id}").length !== 2) {
+    refuse(
+      `"${spec.fileName}" does not say where the id is`,
+      'fileName: a pattern with one {id}, "rain_{id}_*" say',
+    );
   }
   if (spec.layout === "long" && spec.columns.value === undefined && spec.kind !== "tips") {
     refuse("the long layout needs a value column", "columns.value: the header above the readings");

@@ -245,8 +245,8 @@ describe("faults are named by file and line, and the rest goes on", () => {
     );
     expect(counts.unreadableStamps).toBe(2);
     expect(told).toEqual([
-      'gauges, line 2: the stamp "03/05/2031 12:05" cannot be read (day and month can be mistaken for each other): the row is left out; write it like 2031-05-03T12:05',
-      'gauges, line 3: the stamp "soon[31m" cannot be read (not a time like 2031-05-03T12:05): the row is left out; write it like 2031-05-03T12:05',
+      'gauges, line 2: the stamp "03/05/2031 12:05" cannot be read (day and month can be mistaken for each other): the row is left out; write it like 2031-05-03T12:05, or say in the plan how dates are written (dates)',
+      'gauges, line 3: the stamp "soon[31m" cannot be read (not a time like 2031-05-03T12:05): the row is left out; write it like 2031-05-03T12:05, or say in the plan how dates are written (dates)',
     ]);
   });
 
@@ -430,12 +430,12 @@ describe("files that cannot be read at all", () => {
     });
   });
 
-  test("UTF-16, binary and absent files", async () => {
+  test("a mark of another encoding than planned, binary and absent files", async () => {
     const utf16 = folder.write("utf16.csv", Buffer.from("\ufeffgauge,time,value\n", "utf16le"));
     const binary = folder.write("binary.csv", new Uint8Array([0x89, 0x48, 0x44, 0x46, 0, 1]));
     const read1 = (path: string) => readGaugeFile(path, LONG, () => {});
-    await expect(read1(utf16)).rejects.toMatchObject({
-      what: "the text is UTF-16",
+    await expect(readGaugeFile(utf16, { ...LONG, encoding: "utf-8" }, () => {})).rejects.toMatchObject({
+      what: "the text is utf-16le by its byte order mark, not utf-8",
       where: utf16,
       kind: "input",
     });

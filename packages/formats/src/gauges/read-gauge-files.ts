@@ -2,23 +2,31 @@ import {
   type GaugeSeries,
   InputError,
   type Interval,
+  MM_PER_INCH,
   QUALITY_DOUBT,
   QUALITY_DROP,
   QUALITY_USE,
-  type ReadingQuality,
 } from "@rainreckon/core";
-import { decimalOf, decimalsOf, whyNoNumber } from "./decimal.ts";
+import { belowOf, type DecimalMark, decimalOf, decimalsOf, whyNoNumber } from "./decimal.ts";
 import { columnIndex, type RowHandler, streamRows } from "./delimited.ts";
 import { displayText } from "./display-text.ts";
 import { FileNotices, type OnNotice } from "./file-notices.ts";
 import { type GaugeFileCounts, noGaugeFileCounts } from "./gauge-file-counts.ts";
-import { checkGaugeFileSpec, type GaugeFileSpec, mmPerUnit, silenceOf } from "./gauge-file-spec.ts";
+import {
+  checkGaugeFileSpec,
+  DEFAULT_TRACE,
+  type GaugeFileSpec,
+  mmPerUnit,
+  silenceOf,
+} from "./gauge-file-spec.ts";
+import { idOfWholeFile } from "./gauge-of-file.ts";
 import { type GaugePiece, type GaugeRows, joinPieces, utcText } from "./gauge-rows.ts";
 import { readingsOf } from "./readings.ts";
 import { settleTimes } from "./settle-times.ts";
 import { fillSilence } from "./silence.ts";
 import { StampScanner } from "./stamp.ts";
-import { Track, TrackColumn } from "./track.ts";
+import { ACCUMULATED, Track, TrackColumn } from "./track.ts";
+import { readWaterMl, type WaterMlSeries } from "./waterml.ts";
 import { ZoneClock } from "./zone-clock.ts";
 
 const HOUR_MS = 3_600_000;
@@ -59,7 +67,7 @@ export function readGaugeFile(
  * them. Depths are in mm. A value that is missing, cannot be read or cannot be true becomes a NaN reading,
  * never 0; rows whose time cannot be told are left out. All of it is counted and named by file and line.
  *
- * @param paths - CSV in UTF-8, in the order in which the first of two differing rows is to win
+ * @param paths - CSV or WaterML 2.0, in the order in which the first of two differing rows is to win
  * @param onNotice - told of each fault, at most ten of a kind, then of how many more there were
  * @throws InputError where a file cannot be read at all, or (usage) where the spec contradicts itself
  */
@@ -73,7 +81,8 @@ export async function readGaugeFiles(
   const silence = silenceOf(spec);
   const counts = noGaugeFileCounts();
   const notices = new FileNotices(onNotice);
-  const collector = new RowCollector(spec, counts, notices);
+  const clock = new ZoneClock(spec.zone, spec.dst);
+  const collector = new RowCollector(spec, clock, counts, notices);
   const pieces = new Map<string, GaugePiece[]>();
   for (const path of paths) {
     for (const track of await collector.collect(path)) {
@@ -98,7 +107,7 @@ export async function readGaugeFiles(
       "end the window there, or fetch the newer rows",
     );
   }
-  const context = { spec, silence, counts, notices };
+  const context = { spec, silence, counts, notices, clock };
   const series = gauges.map((rows) => {
     const { readings, stepMs } = readingsOf(rows, context);
     const { readings: filled, dryMs } = fillSilence(readings, silence, span, rows.uncertain);
@@ -156,38 +165,60 @@ class RowCollector {
   readonly #counts: GaugeFileCounts;
   readonly #notices: FileNotices;
   readonly #clock: ZoneClock;
-  readonly #stamps = new StampScanner();
+  readonly #stamps: StampScanner;
+  readonly #decimal: DecimalMark;
+  readonly #traceTexts: ReadonlySet<string>;
   readonly #mmPerUnit: number;
   readonly #missingTexts: ReadonlySet<string>;
   readonly #missingNumbers: ReadonlySet<number>;
-  readonly #qualityOfCode: ReadonlyMap<string, ReadingQuality>;
+  readonly #qualityOfCode: ReadonlyMap<string, number>;
   readonly #unmappedCodes = new Set<string>();
   #cells = 0;
 
-  constructor(spec: GaugeFileSpec, counts: GaugeFileCounts, notices: FileNotices) {
+  constructor(spec: GaugeFileSpec, clock: ZoneClock, counts: GaugeFileCounts, notices: FileNotices) {
     this.#spec = spec;
     this.#counts = counts;
     this.#notices = notices;
-    this.#clock = new ZoneClock(spec.zone, spec.dst);
+    this.#clock = clock;
+    const dates = spec.dates === "ask" ? "ymd" : spec.dates;
+    this.#stamps = new StampScanner({
+      ...(dates === undefined ? {} : { dates }),
+      dayHour: spec.dayHour === "ask" ? undefined : spec.dayHour,
+      snapToMinute: spec.kind !== "tips",
+    });
+    this.#decimal = spec.decimal ?? "point";
+    const measuresDepth = spec.kind === "increments" || spec.kind === "intensity";
+    this.#traceTexts = new Set(measuresDepth ? (spec.trace ?? DEFAULT_TRACE).map((text) => text.trim()) : []);
     this.#mmPerUnit = mmPerUnit(spec);
     this.#missingTexts = new Set(spec.missing.map((text) => text.trim()));
-    this.#missingNumbers = new Set(spec.missing.map(decimalOf).filter((number) => !Number.isNaN(number)));
-    const codes = (list: readonly string[] | undefined, quality: ReadingQuality) =>
+    this.#missingNumbers = new Set(
+      spec.missing.map((text) => decimalOf(text)).filter((number) => !Number.isNaN(number)),
+    );
+    const codes = (list: readonly string[] | undefined, quality: number) =>
       (list ?? []).map((code) => [code.trim(), quality] as const);
     this.#qualityOfCode = new Map([
       ...codes(spec.quality?.use, QUALITY_USE),
       ...codes(spec.quality?.doubt, QUALITY_DOUBT),
       ...codes(spec.quality?.drop, QUALITY_DROP),
+      ...codes(spec.quality?.accumulated, QUALITY_USE + ACCUMULATED),
     ]);
   }
 
   async collect(path: string): Promise<Track[]> {
-    const reader = this.#spec.layout === "long" ? this.#longReader(path) : this.#wideReader(path);
+    if (this.#spec.layout === "waterml2") return this.#collectWaterMl(path);
+    let linesAbove: readonly string[] = [];
+    let wholeFileId: string | undefined;
+    const reader =
+      this.#spec.layout === "long" ? this.#longReader(path, () => wholeFileId) : this.#wideReader(path);
     let width = 0;
     const rowsBefore = this.#counts.rows;
-    await streamRows(path, {
+    await streamRows(path, this.#spec, {
+      above: (lines) => {
+        linesAbove = lines;
+      },
       header: (cells, line) => {
         width = cells.length;
+        wholeFileId = idOfWholeFile(this.#spec, path, linesAbove);
         reader.header(cells, line);
       },
       row: (cells, line) => {
@@ -207,6 +238,17 @@ class RowCollector {
           'write a quotation mark within a cell as ""',
         );
       },
+      undecoded: (line, encoding) => {
+        this.#counts.rows += 1;
+        this.#counts.malformedRows += 1;
+        this.#notices.tell(
+          "rows with a character that cannot be decoded",
+          `the row holds a character that is not ${encoding}: left out`,
+          path,
+          [line],
+          "name the encoding of the file: encoding: windows-1252, say",
+        );
+      },
     });
     if (this.#counts.rows === rowsBefore) {
       throw new InputError("there is no row under the header", path, "leave the file out or fetch it again");
@@ -214,22 +256,96 @@ class RowCollector {
     return reader.tracks();
   }
 
-  #longReader(path: string): TrackReader {
+  /** The series of a WaterML file: its own units hold, its interpolation types must be what the plan says. */
+  async #collectWaterMl(path: string): Promise<Track[]> {
+    const tracks: Track[] = [];
+    for (const series of await readWaterMl(path)) {
+      this.#counts.rows += series.times.length;
+      const unfit = whyUnfit(series, this.#spec);
+      if (unfit !== undefined) {
+        this.#counts.malformedRows += series.times.length;
+        this.#notices.tell(
+          "series that are left out",
+          `the series of "${displayText(series.gaugeId, 60)}" ${unfit.what}: left out`,
+          path,
+          [series.line],
+          unfit.fix,
+        );
+        continue;
+      }
+      const track = new Track(path);
+      const column = new TrackColumn(series.gaugeId);
+      track.columns.push(column);
+      const mmPerUom = MM_PER_UOM.get(series.uom) ?? this.#mmPerUnit;
+      for (let index = 0; index < series.times.length; index++) {
+        const line = series.lines[index];
+        if (!this.#pushStamp(track, series.times[index], path, line)) continue;
+        const code = series.qualities[index];
+        const quality =
+          code === "" || this.#spec.quality === undefined ? QUALITY_USE : this.#quality(code, path, line);
+        column.push(this.#waterMlValue(series, index, mmPerUom, column, path), quality);
+      }
+      tracks.push(track);
+    }
+    this.#boundGauges(tracks.length, path);
+    return tracks;
+  }
+
+  #waterMlValue(
+    series: WaterMlSeries,
+    index: number,
+    mmPerUom: number,
+    column: TrackColumn,
+    path: string,
+  ): number {
+    const reason = series.nilReasons[index];
+    if (/BelowDetection/i.test(reason)) return this.#below();
+    if (reason !== "") {
+      this.#counts.missing += 1;
+      return Number.NaN;
+    }
+    const text = series.texts[index];
+    // XML Schema writes a decimal point, whatever the plan says of tables.
+    const number = this.#missingTexts.has(text) ? Number.NaN : decimalOf(text);
+    if (this.#missingTexts.has(text) || this.#missingNumbers.has(number)) {
+      this.#counts.missing += 1;
+      return Number.NaN;
+    }
+    if (Number.isNaN(number)) {
+      this.#counts.unreadableValues += 1;
+      this.#notices.tell(
+        "values that cannot be read",
+        `the value "${displayText(text, 40)}" of gauge "${displayText(series.gaugeId, 60)}" is no number: taken as missing`,
+        path,
+        [series.lines[index]],
+        "fetch the file again, or list it under missing",
+      );
+      return Number.NaN;
+    }
+    this.#counts.values += 1;
+    column.decimals = Math.max(column.decimals, decimalsOf(text));
+    return number * mmPerUom;
+  }
+
+  /** @param wholeFileId - the id of the file's one gauge, where the spec says so; known once the header is */
+  #longReader(path: string, wholeFileId: () => string | undefined): TrackReader {
     const { columns } = this.#spec;
     const tracks = new Map<string, Track>();
     let gaugeAt = -1;
+    let dateAt = -1;
     let timeAt = -1;
     let valueAt = -1;
     let qualityAt = -1;
     return {
       header: (cells) => {
-        gaugeAt = columnIndex(cells, columns.gauge ?? "", path);
-        timeAt = columnIndex(cells, columns.time, path);
+        if (wholeFileId() === undefined) gaugeAt = columnIndex(cells, columns.gauge ?? "", path);
+        if (columns.date !== undefined) dateAt = columnIndex(cells, columns.date, path);
+        timeAt = columnIndex(cells, columns.time ?? "", path);
         if (columns.value !== undefined) valueAt = columnIndex(cells, columns.value, path);
         if (columns.quality !== undefined) qualityAt = columnIndex(cells, columns.quality, path);
       },
       row: (cells, line) => {
-        const id = cells[gaugeAt];
+        const id = wholeFileId() ?? cells[gaugeAt];
         if (id === "") {
           this.#counts.malformedRows += 1;
           this.#notices.tell(
@@ -248,7 +364,7 @@ class RowCollector {
           track.columns.push(new TrackColumn(id));
           tracks.set(id, track);
         }
-        if (!this.#pushStamp(track, cells[timeAt], path, line)) return;
+        if (!this.#pushStamp(track, stampText(cells, dateAt, timeAt), path, line)) return;
         const quality = qualityAt < 0 ? QUALITY_USE : this.#quality(cells[qualityAt], path, line);
         const column = track.columns[0];
         if (valueAt >= 0) column.push(this.#value(cells[valueAt], column, path, line), quality);
@@ -265,15 +381,17 @@ class RowCollector {
     const { columns } = this.#spec;
     const track = new Track(path);
     const cellOf: number[] = [];
+    let dateAt = -1;
     let timeAt = -1;
     let qualityAt = -1;
     return {
       header: (cells, line) => {
-        timeAt = columnIndex(cells, columns.time, path);
+        if (columns.date !== undefined) dateAt = columnIndex(cells, columns.date, path);
+        timeAt = columnIndex(cells, columns.time ?? "", path);
         if (columns.quality !== undefined) qualityAt = columnIndex(cells, columns.quality, path);
         const ids = new Set<string>();
         for (let at = 0; at < cells.length; at++) {
-          if (at === timeAt || at === qualityAt) continue;
+          if (at === timeAt || at === qualityAt || at === dateAt) continue;
           const id = cells[at];
           if (id === "" || ids.has(id)) {
             // A delimiter at the end of the header line makes a last column of no meaning.
@@ -303,7 +421,7 @@ class RowCollector {
         }
       },
       row: (cells, line) => {
-        if (!this.#pushStamp(track, cells[timeAt], path, line)) return;
+        if (!this.#pushStamp(track, stampText(cells, dateAt, timeAt), path, line)) return;
         const quality = qualityAt < 0 ? QUALITY_USE : this.#quality(cells[qualityAt], path, line);
         for (let index = 0; index < cellOf.length; index++) {
           const column = track.columns[index];
@@ -353,10 +471,15 @@ class RowCollector {
         `the stamp "${displayText(text, 40)}" cannot be read (${stamps.problem}): the row is left out`,
         path,
         [line],
-        "write it like 2031-05-03T12:05",
+        stamps.problem === "no time of day"
+          ? "write dayHour, the hour at which the network's days begin, or add the time of day"
+          : this.#spec.dates === undefined || this.#spec.dates === "ymd"
+            ? "write it like 2031-05-03T12:05, or say in the plan how dates are written (dates)"
+            : `check dates: ${this.#spec.dates} in the plan`,
       );
       return false;
     }
+    if (stamps.snapped) this.#counts.stampsSnapped += 1;
     if (!Number.isNaN(stamps.offsetMinutes)) {
       const epochMs = stamps.clockMs - stamps.offsetMinutes * 60_000;
       if (this.#clock.offsetMinutesAt(epochMs) !== stamps.offsetMinutes) {
@@ -399,15 +522,23 @@ class RowCollector {
       this.#counts.missing += 1;
       return Number.NaN;
     }
-    const number = decimalOf(cell);
+    if (this.#traceTexts.has(cell)) {
+      this.#counts.values += 1;
+      this.#counts.traces += 1;
+      return 0;
+    }
+    if (cell.startsWith("<") && !Number.isNaN(belowOf(cell, this.#decimal))) return this.#below();
+    const number = decimalOf(cell, this.#decimal);
     if (Number.isNaN(number)) {
       this.#counts.unreadableValues += 1;
       this.#notices.tell(
         "values that cannot be read",
-        `the value "${displayText(cell, 40)}" of gauge "${displayText(column.id, 60)}" ${whyNoNumber(cell)}: taken as missing`,
+        `the value "${displayText(cell, 40)}" of gauge "${displayText(column.id, 60)}" ${whyNoNumber(cell, this.#decimal)}: taken as missing`,
         path,
         [line],
-        "write it like 0.2, or list it under missing",
+        this.#decimal === "point"
+          ? "write it like 0.2, or list it under missing"
+          : "write it like 0,2, or list it under missing",
       );
       return Number.NaN;
     }
@@ -416,12 +547,23 @@ class RowCollector {
       return Number.NaN;
     }
     this.#counts.values += 1;
-    const decimals = decimalsOf(cell);
+    const decimals = decimalsOf(cell, this.#decimal);
     if (decimals > column.decimals) column.decimals = decimals;
     return number * this.#mmPerUnit;
   }
 
-  #quality(code: string, path: string, line: number): ReadingQuality {
+  /** A value below what the gauge can tell. */
+  #below(): number {
+    this.#counts.belowDetection += 1;
+    if (this.#spec.below === "missing") {
+      this.#counts.missing += 1;
+      return Number.NaN;
+    }
+    this.#counts.values += 1;
+    return 0;
+  }
+
+  #quality(code: string, path: string, line: number): number {
     let quality = this.#qualityOfCode.get(code);
     if (quality === undefined) {
       quality = QUALITY_DOUBT;
@@ -441,6 +583,48 @@ class RowCollector {
     if (quality === QUALITY_DROP) this.#counts.qualityDrop += 1;
     return quality;
   }
+}
+
+/** UCUM codes of depths and rates of rain. */
+const MM_PER_UOM: ReadonlyMap<string, number> = new Map([
+  ["mm", 1],
+  ["cm", 10],
+  ["[in_i]", MM_PER_INCH],
+  ["in", MM_PER_INCH],
+  ["mm/h", 1],
+  ["mm h-1", 1],
+  ["[in_i]/h", MM_PER_INCH],
+  ["in/h", MM_PER_INCH],
+]);
+const NOT_RAIN = /evapo|transpir|snow|level|stage|discharge|runoff|humid|soil|temperature|wind/i;
+
+/** Why a series cannot be read as the plan says. */
+function whyUnfit(series: WaterMlSeries, spec: GaugeFileSpec): { what: string; fix: string } | undefined {
+  if (NOT_RAIN.test(series.property)) {
+    return { what: `observes "${displayText(series.property, 80)}"`, fix: "nothing, if that is no rain" };
+  }
+  if (series.uom !== "") {
+    const isRate = series.uom.endsWith("/h") || series.uom.endsWith("h-1");
+    if (!MM_PER_UOM.has(series.uom) || isRate !== (spec.kind === "intensity")) {
+      return {
+        what: `is in "${displayText(series.uom, 40)}", which does not go with kind: ${spec.kind}`,
+        fix: "check kind, or fetch it in mm",
+      };
+    }
+  }
+  const { interpolation } = series;
+  if (interpolation === undefined || spec.kind === "tips" || spec.kind === "counter") return undefined;
+  const wanted = `${spec.stamp === "end" ? "preceding" : "succeeding"}-${spec.kind === "intensity" ? "average" : "total"}`;
+  if (interpolation === wanted) return undefined;
+  return {
+    what: `holds values of the type ${interpolation}, where stamp: ${spec.stamp} and kind: ${spec.kind} would be ${wanted}`,
+    fix: "check stamp and kind in the plan; other types are no depths",
+  };
+}
+
+/** The stamp of a row; of two columns, the date and the time of day with a blank between them. */
+function stampText(cells: readonly string[], dateAt: number, timeAt: number): string {
+  return dateAt < 0 ? cells[timeAt] : `${cells[dateAt]} ${cells[timeAt]}`;
 }
 
 interface TrackReader extends Pick<RowHandler, "header" | "row"> {

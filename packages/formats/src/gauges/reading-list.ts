@@ -22,4 +22,13 @@ export class ReadingList {
     this.depthMm.push(depthMm);
     this.quality.push(quality);
   }
+  /** Takes readings without a value off the end, as far as they go. */
+  dropMissingTail(): void {
+    let length = this.length;
+    const depths = this.depthMm.view();
+    while (length > 0 && Number.isNaN(depths[length - 1])) length -= 1;
+    for (const column of [this.startEpochMs, this.endEpochMs, this.depthMm, this.quality]) {
+      column.length = length;
+    }
+  }
 }

@@ -7,10 +7,13 @@ import type { GaugeFileSpec, Silence } from "./gauge-file-spec.ts";
 import { mmPerUnit } from "./gauge-file-spec.ts";
 import type { GaugeRows } from "./gauge-rows.ts";
 import { ReadingList } from "./reading-list.ts";
+import { ACCUMULATED } from "./track.ts";
 import { usualStepMs } from "./usual-step.ts";
+import type { ZoneClock } from "./zone-clock.ts";
 
 const MINUTE_MS = 60_000;
 const HOUR_MS = 3_600_000;
+const DAY_MS = 24 * HOUR_MS;
 /**
  * More than this in a minute is no rain. Common practice: a margin above the world-record class of about
  * 38 mm in one minute.
@@ -26,6 +29,8 @@ export interface ReadingContext {
   readonly silence: Silence;
   readonly counts: GaugeFileCounts;
   readonly notices: FileNotices;
+  /** The clock of the stamps: days are counted on it. */
+  readonly clock: ZoneClock;
 }
 
 export interface GaugeReadings {
@@ -75,27 +80,62 @@ export function readingsOf(rows: GaugeRows, context: ReadingContext): GaugeReadi
   return { readings: stepReadings(rows, stepMs, context), stepMs };
 }
 
-/** Increments and intensities: each reading covers a step, or less where the one before ended within it. */
+/**
+ * Increments and intensities: each reading covers a step, or less where the one before ended within it.
+ *
+ * A reading that the network marks as accumulated covers the time since the gauge's last value instead. Days
+ * are counted on the clock of the stamps, so that one on which the clock changes has 23 or 25 hours.
+ */
 function stepReadings(rows: GaugeRows, stepMs: number, context: ReadingContext): ReadingList {
   const { spec, counts } = context;
   const readings = new ReadingList();
   const count = rows.epochMs.length;
+  const isRate = spec.kind === "intensity";
   for (let index = 0; index < count; index++) {
     const stamp = rows.epochMs[index];
-    let start = spec.stamp === "end" ? stamp - stepMs : stamp;
-    let end = start + stepMs;
+    let start = spec.stamp === "end" ? stepAway(stamp, -stepMs, context) : stamp;
+    let end = spec.stamp === "end" ? stamp : stepAway(stamp, stepMs, context);
+    const fullMs = end - start;
+    let value = rows.values[index];
+    const accumulated = (rows.quality[index] & ACCUMULATED) !== 0 && !isRate && !Number.isNaN(value);
+    if (accumulated) {
+      readings.dropMissingTail();
+      counts.accumulated += 1;
+      if (readings.length === 0) {
+        tellRow(
+          rows,
+          index,
+          context,
+          "accumulated readings without a value before",
+          "accumulates since a time that the files do not reach back to: not observed",
+          "add the file before",
+        );
+        value = Number.NaN;
+      } else start = Math.min(readings.lastEndEpochMs, end);
+    }
     if (spec.stamp === "end" && start < readings.lastEndEpochMs) start = readings.lastEndEpochMs;
     if (spec.stamp === "start" && index + 1 < count && end > rows.epochMs[index + 1]) {
       end = rows.epochMs[index + 1];
     }
-    if (end - start < stepMs) counts.overlapping += 1;
-    const value = rows.values[index];
-    const isRate = spec.kind === "intensity";
+    if (!accumulated && end - start < fullMs) counts.overlapping += 1;
     const minutes = isRate ? 60 : (end - start) / MINUTE_MS;
     const possible = refuseImpossible(value, MAX_MM_PER_MINUTE * minutes, rows, index, context);
-    readings.add(start, end, isRate ? (possible * (end - start)) / HOUR_MS : possible, rows.quality[index]);
+    readings.add(
+      start,
+      end,
+      isRate ? (possible * (end - start)) / HOUR_MS : possible,
+      rows.quality[index] & ~ACCUMULATED,
+    );
   }
   return readings;
+}
+
+/** A step later or earlier; a day on the clock of the stamps where these are dates. */
+function stepAway(stamp: number, byMs: number, { spec, clock }: ReadingContext): number {
+  if (spec.dayHour === undefined || Math.abs(byMs) !== DAY_MS) return stamp + byMs;
+  const clockMs = stamp + clock.offsetMinutesAt(stamp) * MINUTE_MS;
+  clock.resolve(clockMs + byMs);
+  return clock.earlierMs;
 }
 
 /**
@@ -109,7 +149,12 @@ function tipReadings(rows: GaugeRows, context: ReadingContext): ReadingList {
     const end = rows.epochMs[index];
     const depth = refuseImpossible(rows.values[index], MAX_MM_PER_MINUTE, rows, index, context);
     const unknown = Number.isNaN(depth) && index > 0;
-    readings.add(unknown ? readings.lastEndEpochMs : end - TIP_MS, end, depth, rows.quality[index]);
+    readings.add(
+      unknown ? readings.lastEndEpochMs : end - TIP_MS,
+      end,
+      depth,
+      rows.quality[index] & ~ACCUMULATED,
+    );
   }
   return readings;
 }
@@ -127,7 +172,7 @@ function counterReadings(
   const { spec, silence, counts } = context;
   const jitterMm = spec.counterJitterMm ?? DEFAULT_JITTER_MM;
   const levels = Float64Array.from(rows.values, (level, index) => {
-    if (rows.quality[index] === QUALITY_DROP) return Number.NaN;
+    if ((rows.quality[index] & ~ACCUMULATED) === QUALITY_DROP) return Number.NaN;
     return level >= -jitterMm || Number.isNaN(level)
       ? level
       : refuseImpossible(level, Number.POSITIVE_INFINITY, rows, index, context);
@@ -153,7 +198,7 @@ function counterReadings(
       const start = reportedOnChange ? Math.max(since, end - (plannedMs ?? TIP_MS)) : since;
       const longest = 1.5 * (plannedMs ?? ownStepMs ?? Number.POSITIVE_INFINITY);
       if (!reportedOnChange && (passedOver || end - since > longest)) counts.counterGapTotals += 1;
-      let quality = Math.max(rows.quality[index], rows.quality[from]);
+      let quality = Math.max(rows.quality[index] & ~ACCUMULATED, rows.quality[from] & ~ACCUMULATED);
       if (outcome === "doubtful-reset") quality = Math.max(quality, QUALITY_DOUBT);
       readings.add(start, end, incrementMm[index], quality);
     }

@@ -1,14 +1,22 @@
-import { decimalOf } from "./decimal.ts";
+import { type DecimalMark, decimalOf } from "./decimal.ts";
 import type { GaugeKind, GaugeLayout, GaugeUnit } from "./gauge-file-spec.ts";
+import { idOfFileName, idOfLabel } from "./gauge-of-file.ts";
 import { found, type Guess, guessed } from "./guess.ts";
 import { GAUGE_WORDS } from "./sniff-stations.ts";
-import { StampScanner } from "./stamp.ts";
+import type { TimesGuess } from "./sniff-times.ts";
+import { type DateForm, StampScanner } from "./stamp.ts";
 import { isMissingWord, isNumeric, type TableSample } from "./table-sample.ts";
+import type { TextEncodingName } from "./text-encoding.ts";
 import { usualStepMs } from "./usual-step.ts";
 
 const MINUTE_MS = 60_000;
 const VALUE_WORDS =
   /value|rain|precip|depth|amount|intensity|rate|tips|level|counter|cumul|total|accum|^rr|^mm|\bmm\b|inch/i;
+/** What stands beside rain in the file of one gauge. */
+const OTHER_WEATHER_WORDS = /temp|wind|humid|press|volt|batt|snow|°C|hpa/i;
+/** A line above a header that gives the gauge's id; one with its name does not. */
+const ID_LABEL =
+  /^[\s#"';,/*-]*((?:station|gauge|site|sensor|id|code)(?:[ _-]?(?:id|no|nr|number|code))?)["\s]*[:=;,\t|]["\s]*[^\s:=;,\t|"]/i;
 const QUALITY_WORDS = /^(q|qc|qf|qual|quality|flag|flags|status)([_ -]?(code|flag|control|id))?$/i;
 const RATE_WORDS = /mm\s*(\/|per)\s*h|mm_per_h|mm\s?h-1|in\s*\/\s*h|inch(es)?\s*per\s*h|intensity|\brate/i;
 /** A column with more rises than this, and hardly a fall, is a level. */
@@ -20,7 +28,8 @@ export interface ReadingsGuess {
   readonly layout: Guess<GaugeLayout>;
   readonly columns: Guess<{
     readonly gauge?: string;
-    readonly time: string;
+    readonly date?: string;
+    readonly time?: string;
     readonly value?: string;
     readonly quality?: string;
   }>;
@@ -40,10 +49,34 @@ export interface ReadingsGuess {
   readonly missing: Guess<readonly string[]>;
   /** Codes met in the quality column. */
   readonly qualityCodes: readonly string[];
+  readonly encoding: Guess<TextEncodingName>;
+  /** Line of the header, where it is not the first with text in it. */
+  readonly headerLine?: number;
+  readonly decimal: Guess<DecimalMark>;
+  /** How dates are written; "ask" where nothing tells day and month apart. */
+  readonly dates: Guess<DateForm | "ask">;
+  /** Whether stamps are dates without a time of day, so that somebody must say when days begin. */
+  readonly dateOnly: boolean;
+  /** Where a gauge's id is found; with "label", the text before it in a line above the header. */
+  readonly idFrom: Guess<"column" | "file" | "label">;
+  readonly label?: string;
+  /** For "succeeding" totals; "end" where nothing says so. */
+  readonly stamp?: Guess<"end" | "start">;
+}
+
+/** What is known of a table beside its cells. */
+export interface TableSurroundings {
+  readonly encoding: Guess<TextEncodingName>;
+  readonly headerLine?: number;
+  readonly times: TimesGuess;
+  readonly linesAbove: readonly string[];
+  readonly path: string;
 }
 
 interface Roles {
   readonly layout: Guess<GaugeLayout>;
+  /** The one gauge of the file, where neither a column nor headers name it. */
+  readonly whole?: { readonly id: string; readonly idFrom: Guess<"file" | "label">; readonly label?: string };
   readonly gaugeAt: number;
   readonly valueAts: readonly number[];
   readonly qualityAt: number;
@@ -56,23 +89,30 @@ interface Strand {
 }
 
 /** What the readings of a table with a column of stamps look like. */
-export function guessReadings(sample: TableSample): ReadingsGuess {
-  const { columns, rows, timeAt } = sample;
-  const roles = guessRoles(sample);
-  const { times, zone } = readTimes(sample);
+export function guessReadings(sample: TableSample, around: TableSurroundings): ReadingsGuess {
+  const { columns, rows, timeAt, dateAt } = sample;
+  const roles = guessRoles(sample, around);
+  const { times, zone } = readTimes(sample, around.times);
   const missing = missingMarks(sample, roles.valueAts);
-  const strands = strandsOf(sample, roles, times, new Set(missing.value.map(decimalOf)));
+  const strands = strandsOf(
+    sample,
+    roles,
+    times,
+    new Set(missing.value.map((cell) => decimalOf(cell, sample.decimal))),
+  );
   const isLong = roles.layout.value === "long";
   const valueHeader = isLong && roles.valueAts.length > 0 ? columns[roles.valueAts[0]] : "";
   const headers = isLong ? valueHeader : columns.join(" ");
   const step = guessStep(strands);
   const kind = guessKind(strands, headers, step?.regular ?? false, roles.valueAts.length === 0);
   const tipMm = kind.value === "tips" ? guessTip(strands) : undefined;
-  const finite = times.filter((time) => !Number.isNaN(time));
+  // Days and months that may be exchanged give steps, but no dates.
+  const finite = around.times.dates.value === "ask" ? [] : times.filter((time) => !Number.isNaN(time));
   return {
     layout: roles.layout,
     columns: guessed(
       {
+        ...(dateAt === undefined ? {} : { date: columns[dateAt] }),
         time: columns[timeAt],
         ...(isLong && roles.gaugeAt >= 0 ? { gauge: columns[roles.gaugeAt] } : {}),
         ...(valueHeader === "" ? {} : { value: valueHeader }),
@@ -89,22 +129,39 @@ export function guessReadings(sample: TableSample): ReadingsGuess {
     zone,
     firstEpochMs: finite.reduce((least, time) => Math.min(least, time), Number.POSITIVE_INFINITY),
     lastEpochMs: finite.reduce((most, time) => Math.max(most, time), Number.NEGATIVE_INFINITY),
-    gaugeIds: isLong ? [...strands.keys()] : roles.valueAts.map((at) => columns[at]),
-    allGaugesSeen: !isLong || sample.whole,
+    gaugeIds:
+      roles.whole !== undefined
+        ? [roles.whole.id]
+        : isLong
+          ? [...strands.keys()]
+          : roles.valueAts.map((at) => columns[at]),
+    allGaugesSeen: !isLong || sample.whole || roles.whole !== undefined,
     missing,
     qualityCodes:
       roles.qualityAt < 0
         ? []
         : [...new Set(rows.map((row) => row[roles.qualityAt]))].sort().slice(0, MAX_QUALITY_CODES),
+    encoding: around.encoding,
+    ...(around.headerLine === undefined ? {} : { headerLine: around.headerLine }),
+    decimal:
+      sample.decimal === "comma"
+        ? guessed("comma", "more cells are numbers with a decimal comma than with a point")
+        : found("point", "cells are numbers with a decimal point, or whole"),
+    dates: around.times.dates,
+    dateOnly: around.times.dateOnly,
+    idFrom: roles.whole?.idFrom ?? found("column", "a column or the headers name the gauges"),
+    ...(roles.whole?.label === undefined ? {} : { label: roles.whole.label }),
   };
 }
 
-function guessRoles(sample: TableSample): Roles {
-  const { columns, rows, timeAt } = sample;
-  const free = columns.map((_, at) => at).filter((at) => at !== timeAt && columns[at] !== "");
+function guessRoles(sample: TableSample, around: TableSurroundings): Roles {
+  const { columns, rows, timeAt, dateAt } = sample;
+  const free = columns
+    .map((_, at) => at)
+    .filter((at) => at !== timeAt && at !== dateAt && columns[at] !== "");
   const qualityAt = free.find((at) => QUALITY_WORDS.test(columns[at])) ?? -1;
   const others = free.filter((at) => at !== qualityAt);
-  const numeric = others.filter((at) => isNumeric(rows, at));
+  const numeric = others.filter((at) => isNumeric(sample, at));
   const gaugeByWord = others.find((at) => GAUGE_WORDS.test(columns[at]));
   const textual = others.find((at) => !numeric.includes(at) && rows.some((row) => row[at] !== ""));
   const repeated = rows.some((row, index) => index > 0 && row[timeAt] === rows[index - 1][timeAt]);
@@ -125,6 +182,23 @@ function guessRoles(sample: TableSample): Roles {
   if (repeated && numeric.length === 2 && numeric.length === others.length) {
     return long(numeric[0], "stamps repeat from row to row");
   }
+  const rain = numeric.filter((at) => VALUE_WORDS.test(columns[at]));
+  const besides = numeric.filter((at) => !VALUE_WORDS.test(columns[at]));
+  if (!repeated && rain.length === 1 && besides.every((at) => OTHER_WEATHER_WORDS.test(columns[at]))) {
+    const whole = gaugeOfFile(around);
+    if (whole !== undefined) {
+      return {
+        layout: guessed(
+          "long",
+          `"${columns[rain[0]]}" names a quantity, not a gauge: the file is of one gauge`,
+        ),
+        whole,
+        gaugeAt: -1,
+        valueAts: rain,
+        qualityAt,
+      };
+    }
+  }
   if (textual !== undefined && numeric.length <= 1) {
     return long(textual, `column "${columns[textual]}" holds text`);
   }
@@ -142,15 +216,35 @@ function guessRoles(sample: TableSample): Roles {
   };
 }
 
+/** The id of the one gauge of a file: behind a label above the header, else the file's name. */
+function gaugeOfFile({ linesAbove, path }: TableSurroundings): Roles["whole"] {
+  for (const line of linesAbove) {
+    const label = ID_LABEL.exec(line)?.[1];
+    if (label === undefined) continue;
+    return {
+      id: idOfLabel(linesAbove, label, path),
+      idFrom: guessed("label", `the line "${line.slice(0, 80)}" stands above the header`),
+      label,
+    };
+  }
+  return {
+    id: idOfFileName(path, "{id}"),
+    idFrom: guessed("file", "nothing in the file names the gauge"),
+  };
+}
+
 function isNoNumber(cell: string): boolean {
   return cell === "" || isMissingWord(cell);
 }
 
-function readTimes(sample: TableSample): { times: number[]; zone: Guess<string | undefined> } {
-  const stamps = new StampScanner();
+function readTimes(
+  { rows, timeAt, dateAt }: TableSample,
+  { dates }: TimesGuess,
+): { times: number[]; zone: Guess<string | undefined> } {
+  const stamps = new StampScanner({ dates: dates.value === "ask" ? "dmy" : dates.value, dayHour: 0 });
   const offsets = new Set<number>();
-  const times = sample.rows.map((row) => {
-    if (!stamps.scan(row[sample.timeAt])) return Number.NaN;
+  const times = rows.map((row) => {
+    if (!stamps.scan(dateAt === undefined ? row[timeAt] : `${row[dateAt]} ${row[timeAt]}`)) return Number.NaN;
     offsets.add(stamps.offsetMinutes);
     return stamps.clockMs - (Number.isNaN(stamps.offsetMinutes) ? 0 : stamps.offsetMinutes * MINUTE_MS);
   });
@@ -179,7 +273,7 @@ function missingMarks(sample: TableSample, valueAts: readonly number[]): Guess<r
     for (const at of valueAts) {
       const cell = row[at];
       // Rain is never negative, and nobody writes -99 by accident.
-      if (isNoNumber(cell) || decimalOf(cell) <= -99) marks.add(cell);
+      if (isNoNumber(cell) || decimalOf(cell, sample.decimal) <= -99) marks.add(cell);
     }
   }
   return guessed([...marks].sort(), "cells met that hold no depth");
@@ -205,10 +299,12 @@ function strandsOf(
     if (Number.isNaN(times[index])) return;
     if (roles.layout.value === "long") {
       const [valueAt] = roles.valueAts;
-      const id = row[roles.gaugeAt];
-      if (id !== "") add(id, times[index], valueAt === undefined ? Number.NaN : decimalOf(row[valueAt]));
+      const id = roles.whole?.id ?? row[roles.gaugeAt];
+      if (id !== "")
+        add(id, times[index], valueAt === undefined ? Number.NaN : decimalOf(row[valueAt], sample.decimal));
     } else {
-      for (const at of roles.valueAts) add(sample.columns[at], times[index], decimalOf(row[at]));
+      for (const at of roles.valueAts)
+        add(sample.columns[at], times[index], decimalOf(row[at], sample.decimal));
     }
   });
   return strands;

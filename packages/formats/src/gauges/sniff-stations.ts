@@ -1,7 +1,8 @@
-import { decimalOf } from "./decimal.ts";
+import { type DecimalMark, decimalOf } from "./decimal.ts";
 import { type Guess, guessed } from "./guess.ts";
 import type { StationColumns } from "./stations.ts";
 import { isNumeric, type TableSample } from "./table-sample.ts";
+import type { TextEncodingName } from "./text-encoding.ts";
 
 const X_WORDS = /^(x|lon|long|longitude|lon_?deg|longitude_?deg|easting|east|eastings|x_?m|lng)$/i;
 const Y_WORDS = /^(y|lat|latitude|lat_?deg|latitude_?deg|northing|north|northings|y_?m)$/i;
@@ -13,33 +14,58 @@ export const GAUGE_WORDS = /^(id|code|stn|(gauge|station|site|sensor)([_ -]?(id|
 /** Headers of ids in a table of stations; among readings, "NO" may well be a gauge. */
 const NUMBER_WORDS = /^(nr|no|number)$/i;
 
+const VALID_FROM_WORDS = /^(valid|open|opened|start|begin|since)([_ -]?(from|date|day|since))?$/i;
+const VALID_TO_WORDS = /^(valid|close|closed|end|until)([_ -]?(to|until|date|day))?$/i;
+const TIP_WORDS = /^tip([_ -]?(size|depth|volume|mm)){0,2}$/i;
+const HEATED_WORDS = /^(is[_ -]?)?heat(ed|ing)$/i;
+const CORRECTIONS_WORDS = /^(correct(ion|ions|ed)([_ -]?applied)?|applied[_ -]?corrections?)$/i;
+
 export interface StationsGuess {
   readonly columns: Guess<StationColumns>;
   /** "EPSG:4326" where x and y can be degrees; undefined where they are metres of a system nobody named. */
   readonly crs: Guess<string | undefined>;
+  readonly decimal: DecimalMark;
+  readonly encoding: Guess<TextEncodingName>;
+  /** Line of the header, where it is not the first with text in it. */
+  readonly headerLine?: number;
   readonly ids: readonly string[];
   readonly whole: boolean;
 }
 
 /** The table as a list of stations; undefined where it has no coordinates, or lists ids again and again. */
-export function guessStations(sample: TableSample): StationsGuess | undefined {
+export function guessStations(
+  sample: TableSample,
+  form: Pick<StationsGuess, "encoding" | "headerLine">,
+): StationsGuess | undefined {
   const { columns, rows } = sample;
   const plain = columns.map((header) => header.replace(/\s*[[(].*$/, "").trim());
-  const xAt = plain.findIndex((header, at) => X_WORDS.test(header) && isNumeric(rows, at));
-  const yAt = plain.findIndex((header, at) => Y_WORDS.test(header) && isNumeric(rows, at));
+  const xAt = plain.findIndex((header, at) => X_WORDS.test(header) && isNumeric(sample, at));
+  const yAt = plain.findIndex((header, at) => Y_WORDS.test(header) && isNumeric(sample, at));
   if (xAt < 0 || yAt < 0) return undefined;
   const free = columns.map((_, at) => at).filter((at) => at !== xAt && at !== yAt && at !== sample.timeAt);
-  const isUnique = (at: number) => new Set(rows.map((row) => row[at])).size >= 0.9 * rows.length;
+  // A gauge that moved has an entry for each place, so ids may repeat where entries have dates.
+  const dated = free.some((at) => VALID_FROM_WORDS.test(plain[at]));
+  const isUnique = (at: number) =>
+    new Set(rows.map((row) => row[at])).size >= (dated ? 0.3 : 0.9) * rows.length;
   const wordAt = free.find((at) => GAUGE_WORDS.test(plain[at]) || NUMBER_WORDS.test(plain[at]));
   const idAt = wordAt ?? free.find(isUnique);
   if (idAt === undefined || !isUnique(idAt)) return undefined;
+  const headed = (words: RegExp) => {
+    const at = free.find((column) => column !== idAt && words.test(plain[column]));
+    return at === undefined ? undefined : columns[at];
+  };
+  const validFrom = headed(VALID_FROM_WORDS);
+  const validTo = headed(VALID_TO_WORDS);
+  const tipMm = headed(TIP_WORDS);
+  const heated = headed(HEATED_WORDS);
+  const corrections = headed(CORRECTIONS_WORDS);
   const nameAt = free.find((at) => at !== idAt && NAME_WORDS.test(plain[at]));
   const elevationAt = free.find(
-    (at) => at !== idAt && ELEVATION_WORDS.test(plain[at]) && isNumeric(rows, at),
+    (at) => at !== idAt && ELEVATION_WORDS.test(plain[at]) && isNumeric(sample, at),
   );
   const degrees = rows.every((row) => {
-    const x = decimalOf(row[xAt]);
-    const y = decimalOf(row[yAt]);
+    const x = decimalOf(row[xAt], sample.decimal);
+    const y = decimalOf(row[yAt], sample.decimal);
     return !(Math.abs(x) > 360 || Math.abs(y) > 90);
   });
   return {
@@ -50,6 +76,11 @@ export function guessStations(sample: TableSample): StationsGuess | undefined {
         y: columns[yAt],
         ...(nameAt === undefined ? {} : { name: columns[nameAt] }),
         ...(elevationAt === undefined ? {} : { elevation: columns[elevationAt] }),
+        ...(validFrom === undefined ? {} : { validFrom }),
+        ...(validTo === undefined ? {} : { validTo }),
+        ...(tipMm === undefined ? {} : { tipMm }),
+        ...(heated === undefined ? {} : { heated }),
+        ...(corrections === undefined ? {} : { corrections }),
       },
       wordAt === undefined
         ? "from the headers; the id is the first column without repeats"
@@ -58,6 +89,8 @@ export function guessStations(sample: TableSample): StationsGuess | undefined {
     crs: degrees
       ? guessed("EPSG:4326", "x and y lie within the range of longitude and latitude")
       : guessed(undefined, "x and y are too large for degrees; the file does not name their system"),
+    decimal: sample.decimal,
+    ...form,
     ids: rows.map((row) => row[idAt]),
     whole: sample.whole,
   };

@@ -176,8 +176,8 @@ describe("neither", () => {
     ["a,b\n", "there is no row under the header"],
     ["a,b\n1,2\n3,4\n", "it has neither a column of times nor two of coordinates"],
     [
-      "gauge,time,value\nA,03/05/2031 12:05,1\n",
-      'the dates in column "time" leave day and month open; write them like 2031-05-03T12:05',
+      "gauge,time,value\nA,03/05/31 12:05,1\n",
+      'the dates in column "time" have years of two digits; write them like 2031-05-03T12:05',
     ],
   ])("%j: %s", async (text, reason) => {
     expect(await sniff(text)).toEqual({ kind: "unknown", reason });

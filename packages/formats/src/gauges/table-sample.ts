@@ -1,4 +1,5 @@
-import { decimalOf } from "./decimal.ts";
+import { belowOf, type DecimalMark, decimalOf, hasDecimalComma } from "./decimal.ts";
+import { DEFAULT_TRACE } from "./gauge-file-spec.ts";
 
 /** A table as the guesses see it: a header and the rows of both ends of the file, cells trimmed. */
 export interface TableSample {
@@ -8,8 +9,11 @@ export interface TableSample {
   readonly headRows: number;
   /** Whether `rows` are all there are. */
   readonly whole: boolean;
-  /** Column of stamps. */
+  /** Column of stamps; -1 where there is none. */
   readonly timeAt: number;
+  /** Column of dates beside one of times of day. */
+  readonly dateAt?: number;
+  readonly decimal: DecimalMark;
 }
 
 /** Share of a column's filled cells that must look alike for the column to be of that kind. */
@@ -26,11 +30,27 @@ export function share(
 }
 
 /** Whether nearly all filled cells of a column are numbers, or say in letters that there is none. */
-export function isNumeric(rows: readonly (readonly string[])[], at: number): boolean {
-  const numbers = share(rows, at, (cell) => !Number.isNaN(decimalOf(cell)));
+export function isNumeric({ rows, decimal }: Pick<TableSample, "rows" | "decimal">, at: number): boolean {
+  const isNumber = (cell: string) => !Number.isNaN(decimalOf(cell, decimal));
+  const standsForNumber = (cell: string) =>
+    !Number.isNaN(belowOf(cell, decimal)) || DEFAULT_TRACE.includes(cell) || isMissingWord(cell);
   return (
-    numbers > 0 && share(rows, at, (cell) => !Number.isNaN(decimalOf(cell)) || isMissingWord(cell)) >= MOST
+    share(rows, at, isNumber) > 0 &&
+    share(rows, at, (cell) => isNumber(cell) || standsForNumber(cell)) >= MOST
   );
+}
+
+/** The decimal mark of a table: a comma where more cells are numbers only with one than have a decimal point. */
+export function guessDecimal(rows: readonly (readonly string[])[]): DecimalMark {
+  let commas = 0;
+  let points = 0;
+  for (const row of rows) {
+    for (const cell of row) {
+      if (hasDecimalComma(cell)) commas += 1;
+      else if (cell.includes(".") && !Number.isNaN(decimalOf(cell))) points += 1;
+    }
+  }
+  return commas > points ? "comma" : "point";
 }
 
 /** Words that are in use for "no value". */

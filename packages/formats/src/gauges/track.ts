@@ -1,5 +1,10 @@
-import type { ReadingQuality } from "@rainreckon/core";
 import { GrowingNumbers } from "./growing.ts";
+
+/**
+ * Added to the quality of a row whose reading covers all the time since the gauge's last value. It stays
+ * within this folder: readings carry the plain quality.
+ */
+export const ACCUMULATED = 4;
 
 /** One gauge's cells along a track. */
 export class TrackColumn {
@@ -14,7 +19,8 @@ export class TrackColumn {
     this.id = id;
   }
 
-  push(value: number, quality: ReadingQuality): void {
+  /** @param quality - of the network's codes, with ACCUMULATED added where that holds */
+  push(value: number, quality: number): void {
     this.values.push(value);
     this.quality.push(quality);
   }
