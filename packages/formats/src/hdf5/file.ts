@@ -50,7 +50,7 @@ export interface Hdf5File {
   attribute(object: string, name: string): AttributeValue | undefined;
   /** Whether a name is a group or an array; undefined where there is neither. */
   kindOf(object: string): "group" | "array" | undefined;
-  /** Shape of an array of any numbers, or undefined where there is no array of that name or it holds no numbers. */
+  /** Shape of an array of any numbers, or undefined where nothing has that name or it holds no numbers. */
   numericShape(dataset: string): readonly number[] | undefined;
   /** Name of the type that an array is stored in, "int8" say; undefined where there is no array of that name. */
   elementTypeName(dataset: string): string | undefined;
@@ -189,7 +189,6 @@ class OpenFile implements Hdf5File {
   }
 
   numericShape(dataset: string): readonly number[] | undefined {
-    if (this.kindOf(dataset) !== "array") return undefined;
     const metadata = this.#datasetMetadata(dataset);
     if (metadata === undefined || numberReader(metadata) === undefined) return undefined;
     return metadata.shape ?? undefined;

@@ -19,6 +19,8 @@ class Hdf5Backed implements NetcdfFile {
   readonly path: string;
   readonly kind = "NetCDF-4";
   readonly #file: Hdf5File;
+  readonly #kinds = new Map<string, "group" | "array" | undefined>();
+  readonly #listings = new Map<string, readonly string[]>();
 
   constructor(file: Hdf5File) {
     this.path = file.path;
@@ -26,21 +28,22 @@ class Hdf5Backed implements NetcdfFile {
   }
 
   variables(group: string): readonly string[] {
-    return this.#children(group).filter(
-      (name) => this.#file.kindOf(`/${variablePath(group, name)}`) === "array",
-    );
+    return this.#children(group).filter((name) => this.#kindOf(variablePath(group, name)) === "array");
   }
 
   groups(): readonly string[] {
-    return this.#children("").filter((name) => this.#file.kindOf(`/${name}`) === "group");
+    return this.#children("").filter((name) => this.#kindOf(name) === "group");
   }
 
   shapeOf(variable: string): readonly number[] | undefined {
-    return this.#file.numericShape(`/${variable}`);
+    return this.#kindOf(variable) === "array" ? this.#file.numericShape(`/${variable}`) : undefined;
   }
 
   attribute(object: string, name: string): AttributeValue | undefined {
-    return this.#file.attribute(`/${object}`, name);
+    const path = `/${object}`;
+    // Names are listed once: asking for what is absent, as most optional attributes are, costs more than listing.
+    if (object !== "" && this.#kindOf(object) === undefined) return undefined;
+    return this.#file.attributeNames(path).has(name) ? this.#file.attribute(path, name) : undefined;
   }
 
   numbers(variable: string): Float64Array {
@@ -49,7 +52,7 @@ class Hdf5Backed implements NetcdfFile {
 
   stored(variable: string): StoredValues {
     const object = `/${variable}`;
-    const unsigned = this.#file.attribute(object, "_Unsigned") === "true";
+    const unsigned = this.attribute(variable, "_Unsigned") === "true";
     const type = this.#file.elementTypeName(object);
     if (type !== "int8") {
       const values = this.#file.read(object);
@@ -63,7 +66,24 @@ class Hdf5Backed implements NetcdfFile {
     this.#file.close();
   }
 
+  /** Looked up among the names of the group that holds it, and then remembered. */
+  #kindOf(object: string): "group" | "array" | undefined {
+    if (this.#kinds.has(object)) return this.#kinds.get(object);
+    const slash = object.lastIndexOf("/");
+    const group = slash < 0 ? "" : object.slice(0, slash);
+    const isListed =
+      (group === "" || this.#kindOf(group) === "group") &&
+      this.#children(group).includes(object.slice(slash + 1));
+    const kind = isListed ? this.#file.kindOf(`/${object}`) : undefined;
+    this.#kinds.set(object, kind);
+    return kind;
+  }
+
   #children(group: string): readonly string[] {
-    return (this.#file.children(`/${group}`) ?? []).slice(0, MAX_NAMES);
+    const known = this.#listings.get(group);
+    if (known !== undefined) return known;
+    const names = (this.#file.children(`/${group}`) ?? []).slice(0, MAX_NAMES);
+    this.#listings.set(group, names);
+    return names;
   }
 }

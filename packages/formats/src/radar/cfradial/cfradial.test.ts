@@ -128,6 +128,7 @@ test.each([
   ["cfradial1-classic.nc", checkVersion1],
   ["cfradial1-hdf5.nc", checkVersion1],
   ["cfradial1-ragged.nc", checkRagged],
+  ["cfradial1-ragged-hdf5.nc", checkRagged],
   ["cfradial2.nc", checkVersion2],
 ] as const)("%s has what its CDL says", (name, check) => {
   expect(recogniseScan(fixture(name))).toBeDefined();
