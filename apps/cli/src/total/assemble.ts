@@ -1,6 +1,13 @@
 import { FieldSum, type TotalPlanes, totalPlanes } from "@rainreckon/accumulation";
-import type { Notice } from "@rainreckon/core";
-import type { AreaStepSeries, RunShape, StepSeries, UnitCounts, UnitJob, UnitResult } from "./job.ts";
+import type {
+  AreaStepSeries,
+  RunShape,
+  StepSeries,
+  SweepFault,
+  UnitCounts,
+  UnitJob,
+  UnitResult,
+} from "./job.ts";
 import type { UnitStore } from "./unit-store.ts";
 
 /** A run put together from its units, but for the depth of each interval, which stays on disk. */
@@ -14,7 +21,7 @@ export interface AssembledRun {
   readonly gauges: StepSeries;
   readonly areas: AreaStepSeries;
   readonly counts: UnitCounts;
-  readonly notices: readonly Notice[];
+  readonly notices: readonly SweepFault[];
 }
 
 /**
@@ -36,7 +43,7 @@ export function assemble(
     shape.headlineCells.length,
   );
   const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
-  const notices = new Map<string, Notice>();
+  const notices = new Map<string, SweepFault>();
   const pieces: UnitResult[] = [];
   for (const job of jobs) {
     const { intervals, ...rest } = store.load(job);

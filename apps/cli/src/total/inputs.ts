@@ -54,6 +54,8 @@ export interface RadarInput {
   readonly radar: PlanRadar;
   readonly sweeps: readonly IndexedSweep[];
   readonly rounds: readonly Volume[];
+  /** How many of the rounds can reach into the window: those inside it, and within the longest gap of it. */
+  readonly roundsInReach: number;
   readonly sweepOf: ReadonlyMap<SweepHeader, IndexedSweep>;
   readonly beamWidthDeg: number;
 }
@@ -249,7 +251,17 @@ function radarInput(
     );
   }
   if (inside === 0) return undefined;
-  return { radar, sweeps: kept, rounds, sweepOf, beamWidthDeg: beamWidth(radar, home.id, kept, log) };
+  const roundsInReach = rounds.filter(({ sweeps }) =>
+    sweeps.some((sweep) => midEpochMs(sweep) >= from && midEpochMs(sweep) <= to),
+  ).length;
+  return {
+    radar,
+    sweeps: kept,
+    rounds,
+    roundsInReach,
+    sweepOf,
+    beamWidthDeg: beamWidth(radar, home.id, kept, log),
+  };
 }
 
 /** Where most sweeps have the radar; of places with as many, the one met first. */

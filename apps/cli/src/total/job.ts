@@ -86,5 +86,10 @@ export interface UnitResult {
   readonly areas: AreaStepSeries;
   readonly counts: UnitCounts;
   /** Sweeps that could not be decoded. */
-  readonly notices: readonly Notice[];
+  readonly notices: readonly SweepFault[];
 }
+/** A sweep that could not be decoded, and the name of its file. */
+export interface SweepFault extends Notice {
+  readonly file: string;
+}
+

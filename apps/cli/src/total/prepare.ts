@@ -80,8 +80,7 @@ export async function prepareRun(
   const intervals = cutWindow(window, durationMs(plan.intervals.grids), anchor);
   const steps = cutWindow(window, stepMs, anchor);
   const grid: Grid = plan.grid;
-  const map = projection(grid.crs);
-  refuseGridNowhere(grid, map);
+  const map = gridMap(grid);
 
   const inputs: ManifestInput[] = [];
   const seen = (input: ManifestInput) => inputs.push(input);
@@ -140,13 +139,26 @@ export async function prepareRun(
   };
 }
 
-/** A grid whose middle is no place on Earth would hold nothing, and every gauge would lie outside it. */
-function refuseGridNowhere({ crs, westM, northM, cellM, nx, ny }: Grid, map: Projection): void {
+/**
+ * The projection of the plan's grid.
+ *
+ * @throws InputError (usage) where its coordinate system is unknown, or puts the grid nowhere on Earth: such
+ * a grid would hold nothing, and every gauge would lie outside it
+ */
+function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection {
+  const where = `plan, grid.crs: ${crs}`;
+  let map: Projection;
+  try {
+    map = projection(crs);
+  } catch (cause) {
+    if (!(cause instanceof InputError)) throw cause;
+    throw new InputError(cause.what, where, cause.fix, { kind: "usage", cause });
+  }
   const [lonDeg, latDeg] = map.inverse(westM + (nx * cellM) / 2, northM - (ny * cellM) / 2);
-  if (Number.isFinite(lonDeg) && Number.isFinite(latDeg)) return;
+  if (Number.isFinite(lonDeg) && Number.isFinite(latDeg)) return map;
   throw new InputError(
     "the middle of the grid is no place on Earth",
-    `plan, grid: crs ${crs}`,
+    where,
     "check crs, westM and northM, or let plan --update write the grid",
     { kind: "usage" },
   );
@@ -154,7 +166,7 @@ function refuseGridNowhere({ crs, westM, northM, cellM, nx, ny }: Grid, map: Pro
 
 /** One instant of a radar is a rate, and no number of minutes can be made of it. */
 function refuseSingleInstants(radars: readonly RadarInput[], window: { from: string; to: string }): void {
-  if (radars.some(({ rounds }) => rounds.length > 1)) return;
+  if (radars.some(({ roundsInReach }) => roundsInReach > 1)) return;
   throw new InputError(
     "one instant per site is a rate, not a total",
     `radars ${radars.map(({ radar }) => radar.id).join(", ")}, window ${window.from} to ${window.to}`,

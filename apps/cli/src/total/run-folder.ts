@@ -64,8 +64,8 @@ export function openRunFolder(folder: string, runDigest: string, force: boolean)
   };
   if (state === "finished") return run;
   try {
-    mkdirSync(run.unitsFolder, { recursive: true });
-    mkdirSync(path.join(scratch, "out"), { recursive: true });
+    makeFolder(run.unitsFolder);
+    makeFolder(path.join(scratch, "out"));
     writeFileSync(path.join(scratch, RUN_FILE), `${JSON.stringify({ runDigest })}\n`);
   } catch (cause) {
     throw new InputError(
@@ -120,6 +120,14 @@ function stateOf(folder: string, runDigest: string): FolderState | InputError {
     "this folder holds other files",
     "choose another --out, or add --force to move the whole folder aside",
   );
+}
+
+/** Makes a folder and what lies above it. Node's own way to do so never ends where a file system refuses with ENOENT, as /proc does. */
+function makeFolder(folder: string): void {
+  if (existsSync(folder)) return;
+  const above = path.dirname(folder);
+  if (above !== folder) makeFolder(above);
+  mkdirSync(folder);
 }
 
 /** Renames the folder to the first free name beside it: "out.before-1". */

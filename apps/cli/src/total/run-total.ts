@@ -21,6 +21,7 @@ import {
   headlineUnderRelations,
   windowFigure,
 } from "./figures.ts";
+import { inputsAfterWork } from "./inputs-after-work.ts";
 import {
   type OutputSources,
   sumAdjusted,
@@ -72,24 +73,33 @@ export async function runTotal(
   const loaded = await loadPlan(planPath);
   const log = leftOutLog(terminal);
   for (const notice of loaded.notices) log.add("file not found", notice);
-  const run = await prepareRun(loaded, log, (count, noun) => progressBar(terminal, count, noun));
+  const planned = await prepareRun(loaded, log, (count, noun) => progressBar(terminal, count, noun));
   if (options.dryRun) {
     log.finish();
-    return { outcome: { kind: "dry run", run, estimate: estimate(run) }, noticeCount: log.count };
+    return {
+      outcome: { kind: "dry run", run: planned, estimate: estimate(planned) },
+      noticeCount: log.count,
+    };
   }
-  const folder = openRunFolder(path.resolve(options.out), run.runDigest, options.force);
+  const folder = openRunFolder(path.resolve(options.out), planned.runDigest, options.force);
   if (folder.state === "finished") {
     log.finish();
-    return { outcome: { kind: "already there", run }, noticeCount: log.count };
+    return { outcome: { kind: "already there", run: planned }, noticeCount: log.count };
   }
   const indexedMs = performance.now() - started;
 
-  const progress = progressBar(terminal, run.jobs.length, "units of work");
-  const { store, resumed } = await workUnits(run, folder.unitsFolder, options.workers, progress);
+  const progress = progressBar(terminal, planned.jobs.length, "units of work");
+  const { store, resumed } = await workUnits(planned, folder.unitsFolder, options.workers, progress);
   progress.end();
   const workedMs = performance.now() - started;
-  const total = assemble(run.shape, run.jobs, store, run.window.endEpochMs - run.window.startEpochMs);
-  for (const notice of total.notices) log.add("sweep left out", notice);
+  const total = assemble(
+    planned.shape,
+    planned.jobs,
+    store,
+    planned.window.endEpochMs - planned.window.startEpochMs,
+  );
+  for (const { what, where, fix } of total.notices) log.add("sweep left out", { what, where, fix });
+  const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape.radars, total.notices) };
   const comparison = compareWithGauges(run, total);
   const adjustedTotalMm = comparison.bias.applied
     ? sumAdjusted(run, store, comparison.bias.factor)

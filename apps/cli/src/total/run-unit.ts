@@ -3,7 +3,6 @@ import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@r
 import {
   InputError,
   momentRates,
-  type Notice,
   type RateSettings,
   type Rates,
   rateTable,
@@ -20,6 +19,7 @@ import type {
   JobSweep,
   RunShape,
   StepSeries,
+  SweepFault,
   UnitCounts,
   UnitJob,
   UnitResult,
@@ -122,13 +122,13 @@ class RadarFeed {
   }
 
   /** Decodes the next round and adds it. */
-  advance(counts: UnitCounts, notices: Notice[]): void {
+  advance(counts: UnitCounts, notices: SweepFault[]): void {
     const round = this.#rounds[this.#next++];
     const layer = this.#layer(round, counts, notices);
     if (layer !== undefined) this.integrator.add(layer, round);
   }
 
-  #layer(round: JobRound, counts: UnitCounts, notices: Notice[]): RateLayer | undefined {
+  #layer(round: JobRound, counts: UnitCounts, notices: SweepFault[]): RateLayer | undefined {
     const { grid, headlineCells, variants } = this.#shape;
     const builder = new RateLayerBuilder(grid.nx * grid.ny, headlineCells, variants.length);
     let spoken = 0;
@@ -137,7 +137,9 @@ class RadarFeed {
         spoken += this.#addSweep(builder, sweep, spoken > 0, counts);
       } catch (error) {
         if (!(error instanceof InputError)) throw error;
-        notices.push({ what: error.what, where: error.where, fix: error.fix });
+        // Readers name the file as it was handed to them; people and other machines know it by its name.
+        const where = error.where.replace(sweep.path, sweep.name);
+        notices.push({ what: error.what, where, fix: error.fix, file: sweep.name });
       }
     }
     return spoken > 0 ? builder.finish() : undefined;
@@ -180,7 +182,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
   const cellCount = grid.nx * grid.ny;
   const size = { cellCount, headlineCells, variantCount: variants.length };
   const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
-  const notices: Notice[] = [];
+  const notices: SweepFault[] = [];
   const feeds = shape.radars.map((radar) => new RadarFeed(radar, shape, job));
   const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
   const areas: AreaStepSeries = {
