@@ -77,7 +77,13 @@ export { type GasAttenuation, gasAttenuationOneWay } from "./gas-attenuation.ts"
 export { gasLossTwoWayDb } from "./gas-loss.ts";
 export { type GroundHit, groundHit, type TerrainProfile } from "./ground-hit.ts";
 export { layerShare } from "./layer-overlap.ts";
-export { LowestEcho, type MeasuredSensitivity, measuredDetectableDbz, RANGE_BAND_M } from "./lowest-echo.ts";
+export {
+  LowestEcho,
+  type MeasuredSensitivity,
+  measuredDetectableDbz,
+  RANGE_BAND_M,
+  scansDisprove,
+} from "./lowest-echo.ts";
 export { type DropScattering, mieEfficiency, type ScatteringEfficiency, scatteringOfDrop } from "./mie.ts";
 export * from "./model/catchment.ts";
 export * from "./model/errors.ts";

@@ -1,5 +1,5 @@
 import { expect, test } from "vitest";
-import { LowestEcho, measuredDetectableDbz, RANGE_BAND_M } from "./lowest-echo.ts";
+import { LowestEcho, measuredDetectableDbz, RANGE_BAND_M, scansDisprove } from "./lowest-echo.ts";
 import type { Moment } from "./model/radar.ts";
 
 const RAYS = 400;
@@ -105,4 +105,18 @@ test("no echo measures nothing", () => {
   );
   expect(echo.measure()).toBeUndefined();
   expect(new LowestEcho().measure()).toBeUndefined();
+});
+
+test("a stated noise figure falls where the scans hold much weaker echo", () => {
+  const echo = new LowestEcho();
+  echo.add(
+    SWEEP,
+    noisySweep((_ray, _gate, dbz) => dbz),
+    "x",
+  );
+  const measured = echo.measure()!;
+  expect(scansDisprove(0, measured)).toBe(true);
+  expect(scansDisprove(-36, measured)).toBe(false);
+  expect(scansDisprove(-45, measured)).toBe(false);
+  expect(scansDisprove(0, undefined)).toBe(false);
 });

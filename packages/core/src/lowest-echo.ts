@@ -23,6 +23,11 @@ const PASSED_OVER_AT_LEAST = 2;
  */
 const SPEAKING_SHARE = 0.1;
 
+/**
+ * A noise figure is not believed where the scans hold echo weaker than it by more than this, dB. House rule.
+ */
+const DISBELIEF_DB = 3;
+
 /** The weakest echo seen by range, as a stand-in where nobody says how sensitive a radar is. */
 export interface MeasuredSensitivity {
   /** Shape [bands]: lowest valid reflectivity in bands of {@link RANGE_BAND_M}, dBZ; NaN where too little was seen. */
@@ -128,4 +133,17 @@ export function measuredDetectableDbz(
   { at1KmDbz, floorDbz }: Pick<MeasuredSensitivity, "at1KmDbz" | "floorDbz">,
 ): number {
   return Math.max(floorDbz, detectableDbz(rangeM, at1KmDbz));
+}
+
+/**
+ * True where scans hold echo too weak for the noise-equivalent reflectivity that their file states, so that
+ * the number cannot be one: some writers put 0 for "not known".
+ *
+ * @param noiseEquivalentDbz - at 1 km, as the file states it
+ */
+export function scansDisprove(
+  noiseEquivalentDbz: number,
+  measured: MeasuredSensitivity | undefined,
+): boolean {
+  return measured !== undefined && measured.at1KmDbz < noiseEquivalentDbz - DISBELIEF_DB;
 }

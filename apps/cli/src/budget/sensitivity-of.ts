@@ -4,16 +4,11 @@ import {
   measuredDetectableDbz,
   noisePowerDbm,
   radarConstantDb,
+  scansDisprove,
   WATER_DIELECTRIC_FACTOR,
 } from "@rainreckon/core";
 import type { KnownRadar } from "./known-radar.ts";
 import type { BudgetRadar } from "./schema.ts";
-
-/**
- * A noise figure of a file is not believed where the scans hold echo weaker than it by more than this.
- * House rule.
- */
-const DISBELIEF_DB = 3;
 
 /** How sensitive a radar is, on what ground, and what is to be said about it. */
 export interface SensitivityOf {
@@ -60,8 +55,7 @@ export function sensitivityOf(radar: KnownRadar, detectionDb: number): Sensitivi
     const at1Km = detectableAt1KmDbz(noiseDbm + detectionDb, constantDb);
     return { ...common, summary: summary("system parameters", at1Km), at: bySquareLaw(at1Km) };
   }
-  const disproved =
-    inFile !== undefined && measured !== undefined && measured.at1KmDbz < inFile - DISBELIEF_DB;
+  const disproved = inFile !== undefined && scansDisprove(inFile, measured);
   if (inFile !== undefined && !disproved) {
     const at1Km = inFile + detectionDb;
     return {

@@ -13,6 +13,8 @@ import type { UnitStore } from "./unit-store.ts";
 /** A run put together from its units, but for the depth of each interval, which stays on disk. */
 export interface AssembledRun {
   readonly planes: TotalPlanes;
+  /** Shape [cells]: depth of the rain that the radars could not have seen; NaN where not observed or not known. */
+  readonly unseenMm: Float32Array;
   /** Shape [variants][headline cells]: window depth under each other relation; NaN where not observed. */
   readonly variantMm: readonly Float64Array[];
   /** Sums in float64 that areal figures of the window are made from. */
@@ -45,13 +47,17 @@ export function assemble(
   const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
   const notices = new Map<string, SweepFault>();
   const pieces: UnitResult[] = [];
+  const unseen = new Float64Array(shape.grid.nx * shape.grid.ny);
   for (const job of jobs) {
     const { intervals, ...rest } = store.load(job);
     for (const interval of intervals) sum.add(interval);
+    for (const part of rest.unseenMm) {
+      for (let cell = 0; cell < unseen.length; cell++) unseen[cell] += part[cell];
+    }
     for (const key of Object.keys(counts) as (keyof UnitCounts)[]) counts[key] += rest.counts[key];
     // A border scan that fails to decode is met by two units, and told once.
     for (const notice of rest.notices) notices.set(`${notice.where}|${notice.what}`, notice);
-    pieces.push({ ...rest, intervals: [] });
+    pieces.push({ ...rest, intervals: [], unseenMm: [] });
   }
   const joined = (rowsOf: (piece: UnitResult) => readonly Float64Array[], rows: number): Float64Array[] =>
     Array.from({ length: rows }, (_, row) => {
@@ -68,6 +74,7 @@ export function assemble(
   const areaCount = shape.areas.length;
   return {
     planes: totalPlanes(sum, windowMs),
+    unseenMm: Float32Array.from(unseen, (mm, cell) => (sum.observedMs[cell] > 0 ? mm : Number.NaN)),
     variantMm: sum.variantMm,
     sum,
     gauges: {

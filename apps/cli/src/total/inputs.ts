@@ -1,7 +1,6 @@
 import { statSync } from "node:fs";
 import path from "node:path";
 import {
-  bandOfWavelength,
   dropResent,
   groupIntoRounds,
   InputError,
@@ -18,6 +17,7 @@ import type { PlanRadar } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { counted, countText } from "../ui/numbers.ts";
 import type { Progress } from "../ui/progress.ts";
+import { shortWaveReason } from "./short-wave.ts";
 
 /** Two sites this far apart cannot be the same radar, whatever their id says. */
 const SAME_SITE_M = 2000;
@@ -210,6 +210,7 @@ function radarInput(
     return false;
   });
   tellRemarks(radar, withMoment, log);
+  if (refuseShortWave(radar, withMoment, log, uses)) return undefined;
   const { kept, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
   for (const { item, reason, content } of dropped) {
     leaveOut(
@@ -276,6 +277,26 @@ function homeOf(sweeps: readonly IndexedSweep[]): RadarSite {
   return [...places.values()].reduce((home, place) => (place.count > home.count ? place : home)).site;
 }
 
+/** Leaves out a radar whose waves rain takes up, unless the plan takes it all the same. */
+function refuseShortWave(
+  radar: PlanRadar,
+  sweeps: readonly IndexedSweep[],
+  log: LeftOutLog,
+  uses: ReadonlyMap<string, { reasons: string[] }>,
+): boolean {
+  const wavelengthM =
+    radar.wavelengthCm === undefined ? sweeps[0]?.header.wavelengthM : radar.wavelengthCm / 100;
+  const reason = wavelengthM === undefined ? undefined : shortWaveReason(wavelengthM);
+  if (reason === undefined || radar.acceptShortWavelength) return false;
+  log.add("radar left out", {
+    what: reason,
+    where: `radar ${radar.id}`,
+    fix: "leave it out with use: false, or write acceptShortWavelength: true for this radar in the plan",
+  });
+  for (const { file } of sweeps) uses.get(file.name)?.reasons.push("unfit for totals: short wavelength");
+  return true;
+}
+
 /** What the readers had to assume of a radar's sweeps, each remark once with the number of its sweeps. */
 function tellRemarks(radar: PlanRadar, sweeps: readonly IndexedSweep[], log: LeftOutLog): void {
   const counts = new Map<string, number>();
@@ -300,12 +321,15 @@ function beamWidth(radar: PlanRadar, id: string, sweeps: readonly IndexedSweep[]
       where: `radar ${id}`,
       fix: "set wavelengthCm in the plan",
     });
-  } else if (["Ka", "V", "W", "K", "Ku"].includes(bandOfWavelength(wavelengthM)?.letter ?? "")) {
-    log.add("doubted", {
-      what: `a wavelength of ${(wavelengthM * 100).toFixed(2)} cm: rain itself takes so much of this signal that totals mean little`,
-      where: `radar ${id}`,
-      fix: "set use: false for this radar",
-    });
+  } else {
+    const reason = shortWaveReason(wavelengthM);
+    if (reason !== undefined) {
+      log.add("doubted", {
+        what: `${reason}; the plan takes it all the same`,
+        where: `radar ${id}`,
+        fix: "set acceptShortWavelength: false or use: false for this radar",
+      });
+    }
   }
   const fromFile = header?.beamWidthDeg?.horizontal;
   if (radar.beamWidthDeg === undefined && fromFile === undefined) {

@@ -28,11 +28,22 @@ export interface JobRelation extends Interval {
   readonly relation: ZrRelation;
 }
 
+/** How weak an echo a radar sees; learned before the units of work. */
+export interface JobSensitivity {
+  /** Weakest echo, brought to 1 km; and the least that is shown at any range, dBZ. */
+  readonly at1KmDbz: number;
+  readonly floorDbz: number;
+  /** The files say so, or their scans show it. */
+  readonly basis: "file" | "scans";
+}
+
 export interface JobRadar {
   readonly site: RadarSite;
   readonly moment: string;
   readonly beamWidthDeg: number;
   readonly offsetDb: number;
+  /** Undefined where nothing tells. */
+  readonly sensitivity: JobSensitivity | undefined;
   readonly cap: CapSetting;
   readonly minRateMmPerHour: number;
   /** Later entries win. The first one holds for all time. */
@@ -82,6 +93,8 @@ export interface UnitCounts {
 
 export interface UnitResult {
   readonly intervals: readonly IntervalFields[];
+  /** Shape [intervals][cells]: depth of the rain that the radars could not have seen. */
+  readonly unseenMm: readonly Float32Array[];
   readonly gauges: StepSeries;
   readonly areas: AreaStepSeries;
   readonly counts: UnitCounts;

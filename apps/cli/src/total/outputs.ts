@@ -69,6 +69,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     V.edge_fraction,
     V.beam_height,
     V.cap_share,
+    V.unseen_depth,
     V.radar_share,
     V.radar_depth,
     ...(adjustedTotalMm === undefined ? [] : [V.adjusted_depth]),
@@ -101,6 +102,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     file.writeField2d("edge_fraction", planes.edgeFraction);
     file.writeField2d("beam_height", planes.beamHeightAslM);
     file.writeField2d("cap_share", planes.cappedFraction);
+    file.writeField2d("unseen_depth", total.unseenMm);
     for (const [r, share] of planes.radarShare.entries()) file.writeShares("radar_share", r, share);
     let k = 0;
     for (const job of run.jobs) {
@@ -340,6 +342,8 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "  edge_fraction       share of the window before the first or after the last scan, for which that scan speaks",
     "  radar_share         share of the observed time that each radar spoke for, by blend weight",
     '  cap_share           share of the depth that came from gates at the hail cap; "at cap" says that it is not 0',
+    "  unseen_depth        rain that the radars could not have seen: over the time without rain, the depth that an echo just",
+    "                      below detection at that range would have added; the most that may be missing for that, no estimate",
     "  max_cell_mm         deepest cell of a catchment, over the window or in one step",
     "  ratio_db            10 log10(radar/gauge): positive is radar wetter than gauge",
     "  factor              gauge/radar: what radar depths are multiplied by",

@@ -19,7 +19,7 @@ import { lengthText } from "../ui/numbers.ts";
 import { version } from "../version.ts";
 import type { ComparedGauge, Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
-import type { RunCaution } from "./cautions.ts";
+import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import {
   type ArealFigure,
@@ -302,6 +302,10 @@ function deedOf(kind: string): AccountLine["deed"] {
   return "left out";
 }
 
+function depthText(mm: number): string {
+  return mm < 0.005 ? "less than 0.01 mm" : `${mm.toFixed(2)} mm`;
+}
+
 /** What the run did to its input, counted: from its own counters and from every notice. */
 function accountsOf({ run, total, comparison, notices }: ReportSources): AccountLine[] {
   const { counts } = total;
@@ -312,6 +316,16 @@ function accountsOf({ run, total, comparison, notices }: ReportSources): Account
   for (const { kind, what, where, fix, count } of notices) {
     add(deedOf(kind), `${kind}: ${what}`, count, "times", `${where}; ${fix}`);
   }
+  // Where the sensitivity of a radar is not known there is no figure, and so no cell.
+  const unseen = total.unseenMm.filter((mm) => mm > 0);
+  const worstMm = unseen.reduce((most, mm) => Math.max(most, mm), 0);
+  add(
+    "flagged",
+    "dry time in which rain just below detection could have fallen",
+    unseen.length,
+    "cells",
+    `rain the radars could not have seen: up to ${depthText(districtMean(run, total.unseenMm))} over the district, ${depthText(worstMm)} in the worst cell`,
+  );
   add(
     "capped",
     "rain rate held at the hail cap",

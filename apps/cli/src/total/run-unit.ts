@@ -25,6 +25,7 @@ import type {
   UnitResult,
 } from "./job.ts";
 import { lookupShelf } from "./lookup-shelf.ts";
+import { UnseenDepth } from "./unseen.ts";
 
 /** Turns stored sweeps of one radar into gate rates, remembering tables: radars repeat their coding. */
 class RateMaker {
@@ -121,6 +122,10 @@ class RadarFeed {
     return this.#rounds[this.#next]?.firstMidEpochMs ?? Infinity;
   }
 
+  relationAt(epochMs: number): ZrRelation {
+    return this.#rates.relationAt(epochMs);
+  }
+
   /** Decodes the next round and adds it. */
   advance(counts: UnitCounts, notices: SweepFault[]): void {
     const round = this.#rounds[this.#next++];
@@ -191,6 +196,8 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
     cappedMm: emptyRows(shape.areas.length, job.steps.length),
   };
   const intervals: UnitResult["intervals"][number][] = [];
+  const unseen = new UnseenDepth(grid, shape.radars);
+  const unseenMm: Float32Array[] = [];
   let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
 
   for (let step = 0; step < job.steps.length; step++) {
@@ -218,13 +225,15 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
       areas.cappedMm[a][step] = areal.cappedMm;
     }
     sum.add(blended);
+    unseen.add(span, blended, (r, epochMs) => feeds[r].relationAt(epochMs));
     const interval = job.intervals[intervals.length];
     if (span.endEpochMs === interval.endEpochMs) {
       intervals.push(sum.toInterval(interval));
+      unseenMm.push(unseen.take());
       sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
     }
   }
-  return { intervals, gauges, areas, counts, notices };
+  return { intervals, unseenMm, gauges, areas, counts, notices };
 }
 
 function emptyRows(rows: number, columns: number): Float64Array[] {

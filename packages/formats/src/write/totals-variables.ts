@@ -86,6 +86,13 @@ export const TOTALS_VARIABLES = {
     longName: "share of the depth that met the hail cap",
     units: "1",
   },
+  unseen_depth: {
+    name: "unseen_depth",
+    over: "window",
+    longName: "depth that an echo just below detection would have added over the time without rain",
+    units: "mm",
+    cellMethods: SUM_OVER_WINDOW,
+  },
   radar_share: {
     name: "radar_share",
     over: "radars",
