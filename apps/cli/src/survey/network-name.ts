@@ -16,10 +16,15 @@ const PLAIN_WORDS = new Set([
   "series",
 ]);
 
-/** A name for the network of a gauge file, from the file's name without dates and plain words, else from its folder. */
-export function networkName(file: string): Guessed<string> {
+/**
+ * A name for the network of a gauge file, from the file's name without dates and plain words, else from its
+ * folder.
+ *
+ * @param ofOneGauge - whether the file is of one gauge: its name is then the gauge's, and only the folder tells
+ */
+export function networkName(file: string, ofOneGauge = false): Guessed<string> {
   const own = telling(path.basename(file, path.extname(file)));
-  if (own !== "") return guessed(own, "by the file's name");
+  if (own !== "" && !ofOneGauge) return guessed(own, "by the file's name");
   const folder = telling(path.basename(path.dirname(path.resolve(file))));
   if (folder !== "") return guessed(folder, "by the folder's name");
   return guessed("gauges", "neither file nor folder names a network");

@@ -117,7 +117,7 @@ function gaugeFinding({ file, guess }: SeenReadings, tables: readonly SeenStatio
   const known = new Set(table?.rows.map((row) => row.id));
   return {
     file,
-    network: networkName(file),
+    network: networkName(file, guess.idFrom.value !== "column"),
     layout: guess.layout,
     kind: guess.kind,
     unit: guess.unit,

@@ -43,7 +43,7 @@ export interface GaugeReadings {
 export function readingsOf(rows: GaugeRows, context: ReadingContext): GaugeReadings {
   const { kind } = context.spec;
   if (kind === "tips") return { readings: tipReadings(rows, context), stepMs: undefined };
-  const ownStepMs = usualStepMs(rows.epochMs);
+  const ownStepMs = usualStepMs(stepTimes(rows.epochMs, context));
   const plannedMs = context.spec.stepMinutes === undefined ? undefined : context.spec.stepMinutes * MINUTE_MS;
   if (kind === "counter") {
     const stepMs = plannedMs ?? ownStepMs;
@@ -128,6 +128,12 @@ function stepReadings(rows: GaugeRows, stepMs: number, context: ReadingContext):
     );
   }
   return readings;
+}
+
+/** Times whose differences are steps: those of days as the clock showed them. */
+function stepTimes(epochMs: Float64Array, { spec, clock }: ReadingContext): Float64Array {
+  if (spec.dayHour === undefined) return epochMs;
+  return epochMs.map((time) => time + clock.offsetMinutesAt(time) * MINUTE_MS);
 }
 
 /** A step later or earlier; a day on the clock of the stamps where these are dates. */
