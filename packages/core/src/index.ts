@@ -157,6 +157,7 @@ export {
   smallestVisibleDropMm,
 } from "./sensitivity.ts";
 export { type ClassSettings, DB_PER_NEPER, type DropClass, dropClasses } from "./spectrum-scattering.ts";
+export { arePartsOfOne, dopplerCuts, type JoinedSweep, joinParts } from "./sweep-parts.ts";
 export {
   decibels,
   frequencyHz,

@@ -77,7 +77,7 @@ export interface DroppedSweep<Item extends SentSweep> {
 
 /**
  * Finds sweeps that were sent more than once (same site, same start, elevations equal within 0.05
- * degrees) and keeps one of each.
+ * degrees, a moment in common) and keeps one of each. One moment a file is no re-send.
  *
  * First and last are by path, then dataset, in code-unit order, so that the order in which a folder is
  * listed changes nothing.
@@ -95,7 +95,11 @@ export function dropResent<Item extends SentSweep>(
     const instant = `${item.header.site.id}\u001f${item.header.startEpochMs}`;
     const candidates = groupsOfInstant.get(instant) ?? [];
     groupsOfInstant.set(instant, candidates);
-    const group = candidates.find(([first]) => sameElevation((first as Item).header, item.header));
+    const group = candidates.find(
+      ([first, ...others]) =>
+        sameElevation((first as Item).header, item.header) &&
+        [first as Item, ...others].some(({ header }) => isSentAgain(header, item.header)),
+    );
     if (group !== undefined) {
       group.push(item);
     } else {
@@ -116,6 +120,16 @@ export function dropResent<Item extends SentSweep>(
   return { kept: items.filter((item) => kept.has(item)), dropped };
 }
 
+/** Sweeps of one instant without a moment in common are parts of one sweep, as `joinParts` has them. */
+function isSentAgain(one: SweepHeader, other: SweepHeader): boolean {
+  return sharesMoment(one, other) || one.quantities.length === 0 || other.quantities.length === 0;
+}
+
+/** Whether two sweeps have a moment of one name. */
+export function sharesMoment(one: SweepHeader, other: SweepHeader): boolean {
+  return one.quantities.some((quantity) => other.quantities.includes(quantity));
+}
+
 function droppedSweep<Item extends SentSweep>(
   item: Item,
   keptInstead: Item,
@@ -134,7 +148,8 @@ function droppedSweep<Item extends SentSweep>(
   return { item, keptInstead, content: "different", reason };
 }
 
-function sameElevation(one: SweepHeader, other: SweepHeader): boolean {
+/** Whether two sweeps look at one elevation, equal within 0.05 degrees. */
+export function sameElevation(one: SweepHeader, other: SweepHeader): boolean {
   return Math.abs(one.elevationDeg - other.elevationDeg) <= SAME_ELEVATION_DEG;
 }
 

@@ -1,7 +1,9 @@
 import {
   bandOfWavelength,
+  dopplerCuts,
   dropResent,
   groupIntoRounds,
+  joinParts,
   medianRoundMs,
   type Notice,
   type SweepHeader,
@@ -59,8 +61,12 @@ export function radarFindings(
 function radarFinding(id: string, sent: readonly SeenSweep[], onNotice: (notice: Notice) => void) {
   // The same rule as the plan's default, so that survey and total speak of the same sweeps.
   const { kept, dropped } = dropResent(sent, "last");
-  const headers = kept.map(({ header }) => header);
-  const volumes = groupIntoRounds(headers, { maxSilenceMs: MAX_SILENCE_MS });
+  const headers = joinParts(kept).map(({ header }) => header);
+  const doppler = dopplerCuts(headers);
+  const volumes = groupIntoRounds(
+    headers.filter((header) => !doppler.has(header)),
+    { maxSilenceMs: MAX_SILENCE_MS },
+  );
   const medianMs = medianRoundMs(volumes);
   const first = headers[0]!;
   const wavelengthM = commonest(headers.map((header) => header.wavelengthM));
@@ -97,6 +103,13 @@ function radarFinding(id: string, sent: readonly SeenSweep[], onNotice: (notice:
     files: [...new Set(sent.map(({ header }) => header.origin.path))].sort(),
   };
   tellFaults(radar, headers, onNotice);
+  if (doppler.size > 0) {
+    onNotice({
+      what: `${counted(doppler.size, "Doppler cut")} at the elevation of the surveillance cut before; rain is taken from that`,
+      where: `radar ${id}`,
+      fix: "nothing to do",
+    });
+  }
   return { radar, volumes };
 }
 

@@ -1,6 +1,8 @@
 import { statSync } from "node:fs";
 import path from "node:path";
 import {
+  arePartsOfOne,
+  dopplerCuts,
   dropResent,
   groupIntoRounds,
   InputError,
@@ -197,9 +199,16 @@ function radarInput(
     );
     return false;
   });
+  const parts = partsWith(radar.moment, atHome);
   const withMoment = atHome.filter((sweep) => {
     const offers = sweep.header.quantities;
     if (offers.includes(radar.moment)) return true;
+    const rest = parts.of(sweep);
+    if (rest !== undefined) {
+      // One moment a file, or other gates for velocity: this sweep does take part, by its other part.
+      uses.get(sweep.file.name)?.reasons.push(`the ${radar.moment} of this sweep is in ${rest.file.name}`);
+      return false;
+    }
     const unfiltered =
       offers.includes("TH") && radar.moment === "DBZH" ? "; TH is there (unfiltered): set moment: TH" : "";
     leaveOut(
@@ -211,7 +220,7 @@ function radarInput(
   });
   tellRemarks(radar, withMoment, log);
   if (refuseShortWave(radar, withMoment, log, uses)) return undefined;
-  const { kept, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
+  const { kept: sent, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
   for (const { item, reason, content } of dropped) {
     leaveOut(
       item,
@@ -219,6 +228,7 @@ function radarInput(
       content === "different" ? "see rain.resent in the plan" : "nothing to do: it counts once",
     );
   }
+  const kept = withoutDopplerCuts(radar, sent, log, uses);
   const reachMs = Math.max(radar.maxGapMinutes, radar.medianRoundMinutes / 2) * 60_000;
   const from = Date.parse(loaded.plan.window.from) - reachMs;
   const to = Date.parse(loaded.plan.window.to) + reachMs;
@@ -340,4 +350,41 @@ function beamWidth(radar: PlanRadar, id: string, sweeps: readonly IndexedSweep[]
     });
   }
   return radar.beamWidthDeg ?? fromFile ?? DEFAULT_BEAM_WIDTH_DEG;
+}
+
+/** Finds, for a sweep without a moment, the part of the same sweep that has it. */
+function partsWith(
+  moment: string,
+  sweeps: readonly IndexedSweep[],
+): { of(sweep: IndexedSweep): IndexedSweep | undefined } {
+  const byStart = new Map<number, IndexedSweep[]>();
+  for (const sweep of sweeps) {
+    if (!sweep.header.quantities.includes(moment)) continue;
+    const { startEpochMs } = sweep.header;
+    byStart.set(startEpochMs, [...(byStart.get(startEpochMs) ?? []), sweep]);
+  }
+  return {
+    of: ({ header }) =>
+      byStart.get(header.startEpochMs)?.find((other) => arePartsOfOne(header, other.header)),
+  };
+}
+
+/** Of a split cut, rain is taken from the surveillance cut alone; how many Doppler cuts that leaves aside is said. */
+function withoutDopplerCuts(
+  radar: PlanRadar,
+  sweeps: readonly IndexedSweep[],
+  log: LeftOutLog,
+  uses: ReadonlyMap<string, { reasons: string[] }>,
+): readonly IndexedSweep[] {
+  const doppler = dopplerCuts(sweeps.map(({ header }) => header));
+  if (doppler.size === 0) return sweeps;
+  log.add("assumed", {
+    what: `${counted(doppler.size, "Doppler cut")} at the elevation of the surveillance cut before: rain is taken from that`,
+    where: `radar ${radar.id}`,
+    fix: "nothing to do",
+  });
+  for (const { header, file } of sweeps) {
+    if (doppler.has(header)) uses.get(file.name)?.reasons.push("a Doppler cut beside its surveillance cut");
+  }
+  return sweeps.filter(({ header }) => !doppler.has(header));
 }
