@@ -96,7 +96,7 @@ export const TOTALS_VARIABLES = {
   radar_share: {
     name: "radar_share",
     over: "radars",
-    longName: "share of the depth that each radar gave",
+    longName: "share of the observed time that each radar spoke for, by blend weight",
     units: "1",
   },
   radar_depth: {
