@@ -143,6 +143,7 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .step-line.radar{stroke:var(--radar)}
 .step-line.adjusted{stroke:var(--adjusted)}
 .step-line.gauge{stroke:var(--gauge)}
+.cut{font-size:11px;font-weight:600}
 .scroll{position:relative;overflow:auto;max-width:100%;border:1px solid var(--line);border-radius:8px;background:var(--panel);overflow-wrap:normal}
 .scroll.tall{max-height:480px}
 .beside .tall{max-height:1060px}

@@ -82,6 +82,15 @@ test("the deepest bar reaches the top and half of it half way", () => {
   expect(tops).toEqual([10, 74]);
 });
 
+test("a bar beyond the axis is cut at its end and bears its depth; the others keep their heights", () => {
+  const svg = svgHyetograph("h", graph([87, 2], [0, 1]), "UTC", 4).text;
+  const tops = [.../class="bars gauge" d="([^"]*)"/.exec(svg)![1].matchAll(/V(\S+?)H/g)].map(([, y]) =>
+    Number(y),
+  );
+  expect(tops).toEqual([10, 74]);
+  expect([...svg.matchAll(/class="cut"[^>]*>([^<]*)</g)].map(([, words]) => words)).toEqual(["↑ 87.0 mm"]);
+});
+
 test("longer steps sum what was observed, and are not observed only where all were not", () => {
   const joined = coarsen(graph([1, NO, NO, NO, 2, 3], [1, 1, 1, 1, 1, 1]), 3);
   expect(joined.stepMs).toBe(7_200_000);

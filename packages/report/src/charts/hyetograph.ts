@@ -51,6 +51,22 @@ function stepLine(side: StepSeries, x: (step: number) => number, y: (mm: number)
   return path;
 }
 
+/** Most cut bars of one chart that bear their depth; more would run into each other. */
+const MOST_CUT_WORDS = 4;
+
+/** Depths of the deepest steps that the axis does not reach up to, written beside their cut tops. */
+function cutWords(side: StepSeries, row: number, x: (step: number) => number, topMm: number): Markup[] {
+  return Array.from(side.depthMm, (mm, step) => ({ mm, step }))
+    .filter(({ mm }) => mm > topMm)
+    .sort((a, b) => b.mm - a.mm)
+    .slice(0, MOST_CUT_WORDS)
+    .map(({ mm, step }) => {
+      const right = x(step + 1) + 3;
+      const leans = right > WIDTH - 60;
+      return html`<text class="cut" x="${svgNumber(leans ? x(step) - 3 : right)}" y="${MARGIN.top + 9 + 13 * row}" text-anchor="${leans ? "end" : "start"}">↑ ${mmText(mm)} mm</text>`;
+    });
+}
+
 /** The steps of a side in which nothing was observed, as one path of whole columns. */
 function gaps(side: StepSeries, x: (step: number) => number, floor: number): string {
   let path = "";
@@ -70,7 +86,8 @@ function gaps(side: StepSeries, x: (step: number) => number, floor: number): str
  *
  * @param id - unique on the page
  * @param zone - zone of the upper row of times; the lower row is UTC
- * @param topMm - end of the depth axis, above 0: charts side by side share it
+ * @param topMm - end of the depth axis, above 0: charts side by side share it; what is deeper is cut there
+ *   and bears its depth
  */
 export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm: number): Markup {
   const count = stepCount(graph);
@@ -78,7 +95,7 @@ export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm
   const innerWidth = WIDTH - MARGIN.left - MARGIN.right;
   const floor = HEIGHT - MARGIN.bottom;
   const x = (step: number) => MARGIN.left + (innerWidth * step) / Math.max(1, count);
-  const y = (mm: number) => floor - ((floor - MARGIN.top) * mm) / topMm;
+  const y = (mm: number) => floor - ((floor - MARGIN.top) * Math.min(mm, topMm)) / topMm;
   const times = timeTicks(window, zone, 4);
   const sums = graph.sides.map((side) => {
     const sum = observedSumMm(side);
@@ -100,6 +117,7 @@ export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm
   })}<text x="2" y="${floor + 16}">local</text><text class="quiet" x="2" y="${floor + 31}">UTC</text></g>${
     first && html`<path class="gap" d="${gaps(first, x, floor)}" fill="url(#${id}-gap0)"/>`
   }${second && html`<path class="gap" d="${gaps(second, x, floor)}" fill="url(#${id}-gap1)"/>`}${
-    first && html`<path class="bars ${first.role}" d="${bars(first, x, y, floor)}"/>`
-  }${second && html`<path class="step-line ${second.role}" d="${stepLine(second, x, y)}"/>`}<path class="base" d="M${MARGIN.left} ${floor}H${WIDTH - MARGIN.right}"/></svg>`;
+    first &&
+    html`<path class="bars ${first.role}" d="${bars(first, x, y, floor)}"/>${cutWords(first, 0, x, topMm)}`
+  }${second && html`<path class="step-line ${second.role}" d="${stepLine(second, x, y)}"/>${cutWords(second, 1, x, topMm)}`}<path class="base" d="M${MARGIN.left} ${floor}H${WIDTH - MARGIN.right}"/></svg>`;
 }

@@ -26,7 +26,8 @@ function chartGroup(id: string, heading: string, graphs: readonly Hyetograph[], 
   const dry = graphs.filter(isDryThroughout);
   const wet = graphs.filter((graph) => !isDryThroughout(graph));
   const shown = wet.slice(0, MOST_CHARTS).map((graph) => coarsen(graph));
-  const topMm = Math.max(0.5, deepestStepMm(shown));
+  const topMm = Math.max(0.5, commonTopMm(shown));
+  const cut = deepestStepMm(shown) > topMm;
   const minutes = [...new Set(shown.map((graph) => graph.stepMs / 60_000))];
   const left = wet.length - shown.length;
   const dryLine =
@@ -36,9 +37,19 @@ function chartGroup(id: string, heading: string, graphs: readonly Hyetograph[], 
       ", ",
     )}.</p>`;
   if (shown.length === 0) return html`<h3>${heading}</h3>${dryLine}`;
-  return html`<h3>${heading}</h3><p class="lead">mm per ${joined(minutes, " or ")} minutes, all on one scale. ${zone === "UTC" ? "" : `Upper row of times: ${zone}. `}${
+  return html`<h3>${heading}</h3><p class="lead">mm per ${joined(minutes, " or ")} minutes, all on one scale. ${cut && "What is cut off at the top bears its depth. "}${zone === "UTC" ? "" : `Upper row of times: ${zone}. `}${
     left > 0 && `The first ${counted(shown.length, "chart")}; ${counted(left, "more series")} not drawn. `
   }</p>${key(shown)}<div class="multiples">${shown.map((graph, index) => chart(`${id}-chart-${index}`, graph, zone, topMm))}</div>${dryLine}`;
+}
+
+/** A chart this many times deeper than all but a tenth of the others is cut, or it would flatten them. */
+const CUT_ABOVE = 3;
+
+/** End of the depth axis that charts share: their deepest step, but for single charts far beyond the others. */
+function commonTopMm(graphs: readonly Hyetograph[]): number {
+  const deepest = graphs.map((graph) => deepestStepMm([graph])).sort((a, b) => b - a);
+  const usual = deepest[Math.ceil(0.1 * graphs.length)] ?? deepest[0];
+  return deepest[0] > CUT_ABOVE * usual ? 1.1 * usual : deepest[0];
 }
 
 /** True where every step of every side was fully seen and held no rain. */
