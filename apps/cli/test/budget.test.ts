@@ -144,6 +144,31 @@ describe("scan files", () => {
   });
 });
 
+// Real scans: set and missing is a failure, unset is a skip that says so.
+const REAL = process.env.RAINRECKON_REAL;
+describe.skipIf(REAL === undefined)("real scans (skipped where RAINRECKON_REAL is not set)", () => {
+  test("each ODIM site has a budget, and a stated noise of 0 dBZ at 1 km is not believed", async () => {
+    const files = readdirSync(REAL as string)
+      .filter((name) => /\.(h5|hdf)$/.test(name))
+      .sort()
+      .map((name) => path.join(REAL as string, name));
+    expect(files.length).toBeGreaterThan(0);
+    const { radars } = await budget(...files);
+    expect(radars.map(({ sensitivity }) => sensitivity.basis)).toEqual(
+      radars.map(() => "measured in the scans"),
+    );
+    const stated = radars.filter(({ sensitivity }) => sensitivity.inFileAt1KmDbz === 0);
+    expect(stated).toHaveLength(1);
+    expect(stated[0]?.remarks.join()).toContain("measured sensitivity is used");
+    for (const { sensitivity, ranges } of radars) {
+      // What operational radars of some hundred kW see; common practice.
+      expect(sensitivity.at1KmDbz).toBeGreaterThan(-60);
+      expect(sensitivity.at1KmDbz).toBeLessThan(-25);
+      expect(ranges.every(({ weakestEchoDbz }) => weakestEchoDbz !== null)).toBe(true);
+    }
+  });
+});
+
 describe("bad parameters: one fault of three lines, exit 2", () => {
   const uneven = path.join(scratch, "uneven.csv");
   writeFileSync(uneven, "distance_km,height_asl_m\n1,0\n2,0\n4,0\n");

@@ -135,6 +135,11 @@ export function withFlags(known: KnownRadar, flags: ParameterFlags): KnownRadar 
       : flags.wavelength !== undefined
         ? flags.wavelength / 100
         : known.wavelengthM;
+  if (known.wavelengthM !== undefined && waveM !== undefined && waveM !== known.wavelengthM) {
+    remarks.push(
+      `the frequency given stands in place of ${(frequencyHz(known.wavelengthM) / 1e9).toFixed(2)} GHz`,
+    );
+  }
   const pulseLengthS = flags.pulse === undefined ? known.pulseLengthS : flags.pulse * 1e-6;
   const peakPowerW = flags.peakPower ?? known.peakPowerW;
   let gainDb = flags.gain ?? known.antennaGainDb;

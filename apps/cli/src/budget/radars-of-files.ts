@@ -44,9 +44,14 @@ export async function radarsOfFiles(
     }
   }
   if (sites.size === 0) {
-    throw new InputError("no scan that can be read", paths.join(", "), "name files with ODIM_H5 scans", {
-      kind: "no-input",
-    });
+    throw new InputError(
+      "no scan that can be read",
+      paths.join(", "),
+      "name scan files of radars: ODIM_H5, CfRadial and others that survey knows",
+      {
+        kind: "no-input",
+      },
+    );
   }
   return [...sites.entries()]
     .sort(([one], [other]) => (one < other ? -1 : 1))

@@ -80,7 +80,10 @@ function reckonRadar(radar: KnownRadar, settings: BudgetSettings, surface: Surfa
   remarks.push(...sensitivity.remarks);
   if (radar.wavelengthM === undefined)
     remarks.push("no wavelength: no loss by gases or rain (give --frequency or --wavelength)");
-  if (radar.beamWidthDeg === undefined) remarks.push("no beam width: none of the beam (give --beam-width)");
+  if (radar.beamWidthDeg === undefined)
+    remarks.push(
+      "no beam width: what the beam averages over and single drops are left out (give --beam-width)",
+    );
   const caution = radar.wavelengthM === undefined ? undefined : rayleighCaution(radar.wavelengthM);
   if (caution !== undefined) remarks.push(caution);
   const antennaM = radar.antennaHeightM;
