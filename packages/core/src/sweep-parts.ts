@@ -6,7 +6,7 @@ const LONGEST_BETWEEN_CUTS_MS = 60_000;
 
 /** A sweep that may have come in parts, each with other moments. */
 export interface JoinedSweep<Item extends SentSweep> {
-  /** That of the first part, with the moments of all. */
+  /** That of the first part, with the moments and remarks of all. */
   readonly header: SweepHeader;
   readonly parts: readonly Item[];
 }
@@ -46,7 +46,8 @@ export function joinParts<Item extends SentSweep>(items: readonly Item[]): reado
     }
     whole.parts.push(item);
     const quantities = [...whole.header.quantities, ...item.header.quantities].sort();
-    whole.header = { ...whole.header, quantities };
+    const remarks = [...new Set([...whole.header.remarks, ...item.header.remarks])];
+    whole.header = { ...whole.header, quantities, remarks };
   }
   return joined;
 }
