@@ -10,6 +10,7 @@ import { guessEncoding, settleEncoding, type TextEncodingName } from "./text-enc
 const MAX_TABLE_BYTES = 4 * 1024 ** 3;
 /** As much of each end of a file as is looked at to recognise it. */
 const HEAD_BYTES = 64 * 1024;
+const MAX_BYTES_AT_ONCE = 1 << 20;
 const DELIMITERS = [",", ";", "\t", "|"] as const;
 
 /** Both ends of a text file: whole lines only, the head with the first line. */
@@ -72,7 +73,8 @@ export async function readHeadText(path: string): Promise<string> {
 export async function readHeadBytes(path: string): Promise<Uint8Array> {
   const file = await openFile(path);
   try {
-    return await readAt(file, 0, HEAD_BYTES);
+    const { size } = await file.stat();
+    return await readAt(file, 0, Math.min(size, HEAD_BYTES));
   } finally {
     await file.close();
   }
@@ -162,7 +164,7 @@ export interface RowHandler {
  * header cannot be decoded; whatever `handler` throws
  */
 export async function streamRows(path: string, form: TableForm, handler: RowHandler): Promise<void> {
-  const { headLines, encoding } = await readTextEnds(path, form.encoding);
+  const { headLines, encoding, byteLength } = await readTextEnds(path, form.encoding);
   const linesAbove = (form.headerLine ?? 1) - 1;
   const parts = headLines.split("\n", linesAbove + 51);
   if (parts.length <= linesAbove) {
@@ -177,7 +179,7 @@ export async function streamRows(path: string, form: TableForm, handler: RowHand
     );
   }
   handler.above?.(parts.slice(0, linesAbove).map((text) => text.trim()));
-  const text = new DecodedText(path, encoding, linesAbove);
+  const text = new DecodedText(path, byteLength, encoding, linesAbove);
   let line = linesAbove + 1;
   let headerSeen = false;
   await new Promise<void>((resolve, reject) => {
@@ -238,18 +240,21 @@ class DecodedText {
   /** Whether bytes that are no character were met so far. */
   sawUndecoded = false;
   readonly #path: string;
+  readonly #bytesAtOnce: number;
   readonly #encoding: TextEncodingName;
   #linesToSkip: number;
 
-  constructor(path: string, encoding: TextEncodingName, linesToSkip: number) {
+  constructor(path: string, byteLength: number, encoding: TextEncodingName, linesToSkip: number) {
     this.#path = path;
+    // No larger than the file: a buffer for each of a thousand small files costs more than reading them.
+    this.#bytesAtOnce = Math.min(MAX_BYTES_AT_ONCE, Math.max(1024, byteLength));
     this.#encoding = encoding;
     this.#linesToSkip = linesToSkip;
   }
 
   async *chunks(): AsyncGenerator<string> {
     const decoder = new TextDecoder(this.#encoding);
-    for await (const bytes of createReadStream(this.#path, { highWaterMark: 1 << 20 })) {
+    for await (const bytes of createReadStream(this.#path, { highWaterMark: this.#bytesAtOnce })) {
       const text = this.#below(decoder.decode(bytes as Uint8Array, { stream: true }));
       if (text !== "") yield text;
     }

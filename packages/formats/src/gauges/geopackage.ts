@@ -74,6 +74,11 @@ async function withDatabase<T>(path: string, use: (database: Database) => T): Pr
     return use(database);
   } catch (cause) {
     if (cause instanceof InputError) throw cause;
+    // After a trap nothing in the library's memory can be trusted: the next file gets a library of its own.
+    if (cause instanceof Error && cause.name === "RuntimeError") {
+      library = undefined;
+      database = undefined;
+    }
     const said = cause instanceof Error ? cause.message : String(cause);
     throw new InputError(
       `the file is damaged: ${displayText(said, 120)}`,

@@ -71,6 +71,7 @@ function stationCellsWith(mark: DecimalMark) {
   });
   return z.object({ id: z.string().min(1, "no id"), x: coordinate, y: coordinate });
 }
+const STATION_CELLS = { point: stationCellsWith("point"), comma: stationCellsWith("comma") } as const;
 
 /**
  * Reads a station table, or the monitoring points of a WaterML 2.0 file.
@@ -95,7 +96,7 @@ export async function readStations(
     return points;
   }
   const mark = form.decimal ?? "point";
-  const stationCells = stationCellsWith(mark);
+  const stationCells = STATION_CELLS[mark];
   const stamps = new StampScanner({ ...(form.dates === undefined ? {} : { dates: form.dates }), dayHour: 0 });
   const stations: StationRow[] = [];
   const byId = new Map<string, StationRow[]>();

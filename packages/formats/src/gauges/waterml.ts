@@ -107,7 +107,7 @@ export async function readWaterMl(path: string): Promise<readonly WaterMlSeries[
   }
   const decoder = new TextDecoder(xmlEncoding(head, path), { fatal: true });
   const reader = new WaterMlReader(path);
-  for await (const bytes of createReadStream(path, { highWaterMark: 1 << 18 })) {
+  for await (const bytes of createReadStream(path)) {
     reader.write(decoded(decoder, bytes as Uint8Array, path));
   }
   reader.write(decoded(decoder, undefined, path));
