@@ -1,3 +1,4 @@
+import { readTerrainProfile } from "@rainreckon/formats";
 import type { Command } from "commander";
 import { budgetText } from "../budget/budget-text.ts";
 import { type ParameterFlags, radarOfBand, radarOfFlags, withFlags } from "../budget/known-radar.ts";
@@ -96,8 +97,7 @@ export function registerBudget(program: Command): void {
     const terminal = terminalOf(command);
     const log = leftOutLog(terminal);
     const [relation] = relationsByName([options.relation]);
-    const { readTerrain } = await import("../budget/terrain.ts");
-    const terrain = options.terrain === undefined ? undefined : readTerrain(options.terrain);
+    const terrain = options.terrain === undefined ? undefined : readTerrainProfile(options.terrain);
     const ofBands = (options.band ?? []).map((letter) => radarOfBand(letter, options));
     const ofFiles = files.length === 0 ? [] : await fileRadars(files, options, log);
     const radars = [...ofFiles, ...ofBands];

@@ -1,18 +1,21 @@
-import { readFileSync } from "node:fs";
+import { readFileSync, statSync } from "node:fs";
 import { InputError, type TerrainProfile } from "@rainreckon/core";
 
 /** Steps may differ from each other by so much of a step and still count as even. */
 const UNEVEN = 0.01;
 const MOST_POINTS = 100_000;
+/** More bytes than so many points can need. */
+const MOST_BYTES = 8_000_000;
 
 /**
  * Terrain along one azimuth from a small CSV file: distance_km, height_asl_m, even steps from the antenna out.
  *
  * @throws InputError (usage) with the line at fault
  */
-export function readTerrain(file: string): TerrainProfile {
+export function readTerrainProfile(file: string): TerrainProfile {
   const fault = (what: string, line: number, fix: string) =>
     new InputError(what, `${file}, line ${line}`, fix, { kind: "usage" });
+  if (statSync(file).size > MOST_BYTES) throw fault("too large for a profile", 1, "give 2 to 100,000 points");
   const lines = readFileSync(file, "utf8")
     .replace(/^\ufeff/, "")
     .trimEnd()

@@ -1,0 +1,1 @@
+export { readTerrainProfile } from "./terrain-profile.ts";
