@@ -24,7 +24,7 @@ const LIBRARIES: Readonly<Record<string, readonly string[]>> = {
   verification: ["simple-statistics", "zod"],
   adjustment: ["simple-statistics"],
   report: ["d3-array", "d3-interpolate", "d3-scale", "d3-scale-chromatic", "d3-shape", "luxon"],
-  formats: ["h5wasm", "luxon", "netcdfjs", "papaparse", "zod"],
+  formats: ["geotiff", "h5wasm", "luxon", "papaparse", "saxes", "seek-bzip", "shapefile", "sql.js", "zod"],
   "test-data": ["h5wasm", "vitest"],
   cli: [
     "cli-progress",

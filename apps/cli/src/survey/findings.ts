@@ -125,6 +125,23 @@ const mapFinding = z.strictObject({
   crsKnown: z.boolean(),
 });
 
+const gridFinding = z.strictObject({
+  file: z.string(),
+  name: z.string(),
+  format: z.string(),
+  quantity: z.enum(["rainRateMmPerHour", "depthMm", "reflectivityDbz"]),
+  layerCount: z.number().int(),
+  nx: z.number().int(),
+  ny: z.number().int(),
+  /** Cell size and coordinate system, for people. */
+  place: z.string(),
+  firstStart: instant,
+  lastEnd: instant,
+  /** Median time between layers; null for a single one. */
+  stepMinutes: z.number().nullable(),
+  remarks: z.array(z.string()),
+});
+
 /** The result of `survey --json`: what lies there, what is wrong with it, what can be made of it. */
 export const surveySchema = z.strictObject({
   format: z.literal("rainreckon-survey-1"),
@@ -134,6 +151,8 @@ export const surveySchema = z.strictObject({
   gauges: z.array(gaugeFinding),
   stations: z.array(stationFinding),
   catchments: z.array(mapFinding),
+  /** Rain or reflectivity that comes on a grid already. */
+  grids: z.array(gridFinding),
   otherFiles: z.array(z.strictObject({ kind: z.string(), count: z.number().int() })),
   wrong: z.array(manifestNotice),
   /** Time that radars cover; and the part of it that gauges cover as well, where there are any. */
@@ -145,6 +164,7 @@ export const surveySchema = z.strictObject({
 });
 
 export type Findings = z.output<typeof surveySchema>;
+export type GridFinding = z.output<typeof gridFinding>;
 export type RadarFinding = z.output<typeof radarFinding>;
 export type GaugeFinding = z.output<typeof gaugeFinding>;
 export type StationFinding = z.output<typeof stationFinding>;

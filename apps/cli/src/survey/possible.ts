@@ -6,6 +6,17 @@ export const RATE_NOT_TOTAL = "one instant per site is a rate, not a total";
 
 /** What can be made of the findings, one sentence each. */
 export function possibleTexts(
+  findings: Pick<Findings, "radars" | "gauges" | "stations" | "catchments" | "grids" | "window">,
+  radarsInWindow: ReadonlySet<string>,
+): string[] {
+  const sentences = sentencesOf(findings, radarsInWindow);
+  const layers = findings.grids.reduce((sum, grid) => sum + grid.layerCount, 0);
+  if (layers > 0)
+    sentences.push(`nothing yet from ${counted(layers, "gridded layer")}: totals start from polar scans`);
+  return sentences;
+}
+
+function sentencesOf(
   findings: Pick<Findings, "radars" | "gauges" | "stations" | "catchments" | "window">,
   radarsInWindow: ReadonlySet<string>,
 ): string[] {

@@ -2,16 +2,17 @@ import { displayText } from "@rainreckon/formats";
 import { noticeLine } from "../ui/left-out.ts";
 import { counted, decimals, lengthText, placeText, utcText } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
-import type { Findings, GaugeFinding, Guessed, RadarFinding } from "./findings.ts";
+import type { Findings, GaugeFinding, GridFinding, Guessed, RadarFinding } from "./findings.ts";
 
 const MAX_LINES = 20;
 const MAX_NAMES = 12;
 
 /** Findings for people: what there is, what is wrong with it, what can be made of it, what to type next. */
 export function surveyText(findings: Findings, terminal: Pick<Terminal, "strong">): string {
-  const { radars, gauges, stations, catchments, otherFiles, wrong, possible, next } = findings;
+  const { radars, gauges, stations, catchments, grids, otherFiles, wrong, possible, next } = findings;
   const have: string[] = [
     ...radars.map(radarText),
+    ...grids.map(gridText),
     ...gauges.map(gaugeText),
     ...stations.map(({ file, stationCount, crs, withoutReadings, assets }) =>
       block(`${assets ? "Assets" : "Stations"} ${file}`, [
@@ -92,6 +93,23 @@ function radarText(radar: RadarFinding): string {
     );
   }
   return block(`Radar ${radar.id}${name}`, body);
+}
+
+const QUANTITY_WORDS: Readonly<Record<GridFinding["quantity"], string>> = {
+  rainRateMmPerHour: "rain rate (mm/h)",
+  depthMm: "depth (mm)",
+  reflectivityDbz: "reflectivity (dBZ)",
+};
+
+function gridText(grid: GridFinding): string {
+  const step = grid.stepMinutes === null ? "" : ` every ${lengthText(grid.stepMinutes * 60_000)}`;
+  const [from, to] = [utcText(Date.parse(grid.firstStart)), utcText(Date.parse(grid.lastEnd))];
+  return block(`Grid ${grid.file}`, [
+    `${QUANTITY_WORDS[grid.quantity]}, ${counted(grid.layerCount, "layer")}${step}; ${grid.format}`,
+    `${grid.nx} by ${grid.ny} ${grid.place}`,
+    from === to ? from : `${from} to ${to}`,
+    ...grid.remarks,
+  ]);
 }
 
 function gaugeText(gauge: GaugeFinding): string {

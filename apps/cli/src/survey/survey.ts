@@ -5,6 +5,7 @@ import { InputError, type Interval, type Notice } from "@rainreckon/core";
 import {
   formatsReady,
   type MapGuess,
+  openGridded,
   openScan,
   recogniseScan,
   sniffMap,
@@ -18,7 +19,8 @@ import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { fileKind } from "./file-kind.ts";
-import type { Findings, GaugeFinding, MapFinding, RadarFinding } from "./findings.ts";
+import type { Findings, GaugeFinding, GridFinding, MapFinding, RadarFinding } from "./findings.ts";
+import { gridFindings } from "./grids.ts";
 import { possibleTexts } from "./possible.ts";
 import { radarFindings, type SeenSweep } from "./radars.ts";
 import type { Point, SurveyResult } from "./survey-result.ts";
@@ -38,6 +40,7 @@ interface Seen {
   readonly readings: SeenReadings[];
   readonly stations: SeenStations[];
   readonly maps: { readonly file: string; readonly guess: MapGuess }[];
+  readonly grids: GridFinding[];
   readonly others: Map<string, number>;
 }
 
@@ -74,7 +77,14 @@ export async function survey(
   const catchmentPoints = seen.maps.flatMap(({ file, guess }) => cornersOf(file, guess, tell("catchment")));
   const radarsInWindow = radarsOfOneTime(radars);
   const window = windowOf(radars, radarsInWindow, gauges);
-  const part = { radars: [...radars], gauges: [...gauges], stations: [...stations], catchments, window };
+  const part = {
+    radars: [...radars],
+    gauges: [...gauges],
+    stations: [...stations],
+    catchments,
+    grids: seen.grids,
+    window,
+  };
   const findings: Findings = {
     format: "rainreckon-survey-1",
     paths: [...paths],
@@ -93,7 +103,7 @@ export async function survey(
 const FILES_BETWEEN_BREATHS = 20;
 
 async function lookAt(files: readonly FoundFile[], terminal: Terminal, wrong: LeftOutLog): Promise<Seen> {
-  const seen: Seen = { sweeps: [], readings: [], stations: [], maps: [], others: new Map() };
+  const seen: Seen = { sweeps: [], readings: [], stations: [], maps: [], grids: [], others: new Map() };
   const progress = progressBar(terminal, files.length, "files");
   const shapefiles = new Set(
     files.filter(({ path: name }) => /\.shp$/i.test(name)).map(({ path: name }) => name.slice(0, -4)),
@@ -123,14 +133,15 @@ function belongsToShapefile(file: string, shapefiles: ReadonlySet<string>): bool
 
 async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<void> {
   if (recogniseScan(file) !== undefined) {
-    const scan = openScan(file);
     try {
-      for (const header of scan.headers) seen.sweeps.push({ header, format: scan.format });
-    } finally {
-      scan.close();
+      lookAtScan(file, seen, wrong);
+    } catch (error) {
+      // HDF5 and NetCDF may hold a grid just as well; what is wrong with the file as a scan is moot then.
+      if (!(error instanceof InputError) || !(await lookAtGrid(file, seen, wrong))) throw error;
     }
     return;
   }
+  if (await lookAtGrid(file, seen, wrong)) return;
   const map = await sniffMap(file, { parts: shapefileParts(file) });
   if (map !== undefined) {
     seen.maps.push({ file, guess: map });
@@ -151,6 +162,31 @@ async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<
       wrong.add("file left out", { what: table.reason, where: file, fix: "mend the table, or leave it out" });
     }
   }
+}
+
+function lookAtScan(file: string, seen: Seen, wrong: LeftOutLog): void {
+  const scan = openScan(file);
+  try {
+    for (const header of scan.headers) seen.sweeps.push({ header, format: scan.format });
+    for (const fault of scan.leftOut) wrong.add("sweep left out", fault);
+    for (const remark of scan.remarks) wrong.add("scan", remark);
+  } finally {
+    scan.close();
+  }
+}
+
+/** @returns false where the file holds no gridded rain or reflectivity */
+async function lookAtGrid(file: string, seen: Seen, wrong: LeftOutLog): Promise<boolean> {
+  const grid = await openGridded(file);
+  if (grid === undefined) return false;
+  try {
+    seen.grids.push(...gridFindings(file, grid));
+    for (const fault of grid.leftOut) wrong.add("layer left out", fault);
+    for (const remark of grid.remarks) wrong.add("layer", remark);
+  } finally {
+    grid.close();
+  }
+  return true;
 }
 
 /** The monitoring points of a WaterML file: where they have positions, they need no table of stations. */
