@@ -11,6 +11,8 @@ export interface SweepToWrite {
   /** ODIM name of the moment [DBZH]. */
   readonly quantity?: string;
   readonly gain?: number;
+  /** Attributes that this sweep lacks, by name. */
+  readonly without?: readonly string[];
 }
 
 /** An invented radar. */
@@ -34,19 +36,22 @@ export function storedDbz(dbz: number): number {
 /**
  * Writes an ODIM_H5 2.3 volume with nothing but the general HDF5 library, as the standard lays it out.
  *
- * @param volume - sweeps in the order of the file; leave attributes out by name with `without`
+ * @param sweeps - in the order of the file
  */
 export async function writeVolume(
   file: string,
   radar: RadarToWrite,
   sweeps: readonly SweepToWrite[],
-  without: readonly string[] = [],
 ): Promise<string> {
   await h5wasm.ready;
   mkdirSync(path.dirname(file), { recursive: true });
   const hdf5 = new h5wasm.File(file, "w");
   try {
-    const put = (group: Group, values: Readonly<Record<string, string | number>>) => {
+    const put = (
+      group: Group,
+      values: Readonly<Record<string, string | number>>,
+      without: readonly string[] = [],
+    ) => {
       for (const [name, value] of Object.entries(values)) {
         if (without.includes(name)) continue;
         if (typeof value === "string")
@@ -76,14 +81,15 @@ export async function writeVolume(
         enddate: end.date,
         endtime: end.time,
       });
-      put(dataset.create_group("where"), {
+      const where = {
         elangle: sweep.elevationDeg,
         nrays: RAYS,
         nbins: radar.gateCount,
         rstart: 0,
         rscale: radar.gateM,
         a1gate: 0,
-      });
+      };
+      put(dataset.create_group("where"), where, sweep.without);
       const data = dataset.create_group("data1");
       put(data.create_group("what"), {
         quantity: sweep.quantity ?? "DBZH",

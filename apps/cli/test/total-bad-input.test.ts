@@ -27,7 +27,7 @@ import {
 } from "./even-rain.ts";
 import { writeVolume } from "./odim-scans.ts";
 import { type CliResult, ensureBuilt } from "./run-cli.ts";
-import { csvRows, manifestOf, scratchFolder, total, writeIn } from "./total-kit.ts";
+import { csvRows, manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
 
 const scratch = scratchFolder("bad-input");
 /** Short pairs: a mistaken unit is told by several wet intervals, not by one. */
@@ -42,7 +42,12 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
   let lines: string[];
 
   beforeAll(async () => {
-    await writeScans(folder, [20, 40, 45, 50]);
+    await writeScans(folder, [20, 25, 30, 40, 45, 50]);
+    await writeVolume(scanAt(folder, 25), RADAR, [
+      sweepAt(25),
+      sweepAt(25, { elevationDeg: 2, without: ["rscale"] }),
+    ]);
+    await writeVolume(scanAt(folder, 30), RADAR, [sweepAt(30, { without: ["rstart"] })]);
     truncateSync(await writeVolume(scanAt(folder, 20), RADAR, [sweepAt(20)]), 3000);
     spoilChunk(await writeVolume(scanAt(folder, 40), RADAR, [sweepAt(40)]));
     await writeVolume(scanAt(folder, 45), RADAR, [sweepAt(45, { quantity: "TH" })]);
@@ -105,6 +110,11 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
       "sweep without DBZH, with TH",
       /^scans\/round-50\.h5, dataset1: no DBZH; the sweep offers TH; .*set moment: TH; set moment of radar zzeve in the plan$/,
     ],
+    ["one sweep of a file that cannot be used", /^scans\/round-30\.h5, dataset2.*: .*; .+$/],
+    [
+      "what a reader had to assume",
+      /^radar zzeve: The file does not say where the first gate begins; .* \(1 sweep\); nothing to do, if that is right$/,
+    ],
     ["gain 0", /^scans\/round-55\.h5, dataset1\/data1: the gain of DBZH is 0 .*; correct what\/gain/],
     [
       "two sites with one id",
@@ -141,10 +151,10 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
 
   test("nothing else is said, and all of it stands in the manifest, with no path of this machine", () => {
     const { notices } = manifestOf(run);
-    expect(notices).toHaveLength(17);
-    expect(lines).toHaveLength(18);
+    expect(notices).toHaveLength(19);
+    expect(lines).toHaveLength(20);
     expect(lines.at(-1)).toBe(
-      "17 things were left out, doubted or assumed; all of it stands in manifest.json",
+      "19 things were left out, doubted or assumed; all of it stands in manifest.json",
     );
     for (const file of ["manifest.json", "report.html", "README.txt", "scores.json"])
       expect(readFileSync(path.join(run, file), "utf8")).not.toContain(scratch);
@@ -300,33 +310,35 @@ describe("a run that cannot be made", () => {
 
 // /dev/full takes every write for one to a full disk: the kernel's own ENOSPC, on the path that the run writes to.
 describe.skipIf(!existsSync("/dev/full"))("a full disk (skipped where there is no /dev/full)", () => {
-  test.each([
-    ["while units are worked on", "units", "unit-00000.part"],
-    ["while totals.nc is written", "out", "totals.nc"],
-    ["while a table is written", "out", "catchments.csv"],
-    ["while the report is written", "out", "report.html"],
-  ] as const)("%s: exit 1, and the same command goes on once there is room", async (_, part, file) => {
-    const folder = path.join(scratch, `full-${file}`);
+  test("exit 1 with the place, at whatever it was met; the same command goes on once there is room", async () => {
+    const folder = path.join(scratch, "full");
     await writeScans(folder, [10, 20, 25, 35, 40, 50, 55]);
     const plan = writeIn(folder, "plan.yaml", planText({ gauges: "", catchments: "" }));
-    const { runDigest } = JSON.parse(total(plan, "run", ["--dry-run", "--json"]).stdout) as {
-      runDigest: string;
-    };
+    const { runDigest } = JSON.parse(total(plan, "run", ["--dry-run", "--json"]).stdout) as RunManifest;
     const unfinished = path.join(folder, "run", ".unfinished");
     writeIn(unfinished, "run.json", JSON.stringify({ runDigest }));
-    mkdirSync(path.join(unfinished, part), { recursive: true });
-    const full = path.join(unfinished, part, file);
-    symlinkSync("/dev/full", full);
-    const { status, stderr, stdout } = total(plan, "run");
-    expect(stderr).toMatch(
-      /error: (the disk is full|no space left while writing)\n {2}where: .*\/run\/\.unfinished\/.*\n {2}fix: {3}.*again/,
-    );
-    expect(status).toBe(1);
-    expect(stdout).toBe("");
-    expect(existsSync(path.join(folder, "run", "manifest.json"))).toBe(false);
-    rmSync(full, { force: true });
+    for (const [part, file] of [
+      ["units", "unit-00000.part"],
+      ["out", "totals.nc"],
+      ["out", "report.html"],
+    ] as const) {
+      mkdirSync(path.join(unfinished, part), { recursive: true });
+      const full = path.join(unfinished, part, file);
+      rmSync(full, { force: true });
+      symlinkSync("/dev/full", full);
+      const { status, stderr, stdout } = total(plan, "run");
+      const [what, where, fix] = stderr.trimEnd().split("\n").slice(-3);
+      expect(what).toMatch(/^error: (the disk is full|no space left while writing)$/);
+      expect(where).toBe(`  where: ${full}`);
+      expect(fix).toMatch(/^ {2}fix: {3}.*again/);
+      expect(status).toBe(1);
+      expect(stdout).toBe("");
+      expect(existsSync(path.join(folder, "run", "manifest.json"))).toBe(false);
+      rmSync(full, { force: true });
+    }
     const again = total(plan, "run");
     expect(again.status, again.stderr).toBe(0);
+    expect(again.stdout).toContain("(1 unit of work was there from before)");
     expect(manifestOf(path.join(folder, "run")).runDigest).toBe(runDigest);
   });
 });

@@ -1,5 +1,5 @@
 import { spawn } from "node:child_process";
-import { cpSync, existsSync, mkdirSync, readdirSync, readFileSync, writeFileSync } from "node:fs";
+import { cpSync, existsSync, mkdirSync, readdirSync, readFileSync } from "node:fs";
 import path from "node:path";
 import { setTimeout as sleep } from "node:timers/promises";
 import { generateStorm, SMALL } from "@rainreckon/test-data/storm";
@@ -240,24 +240,6 @@ describe("same input, same plan, same bytes", () => {
     const resumed = total(plan, "stopped");
     expect(resumed.status, resumed.stderr).toBe(0);
     expect(resumed.stdout).toContain("(1 unit of work was there from before)");
-    expect(fingerprints(out)).toEqual(fingerprints(run));
-  });
-
-  test("a run that was killed with half a unit on disk does that unit again", async () => {
-    const out = path.join(storm, "killed");
-    const child = spawn(process.execPath, [MAIN, "total", "plan.yaml", "--out", "killed"], {
-      cwd: storm,
-      stdio: "ignore",
-    });
-    const ended = new Promise((resolve) => child.once("exit", resolve));
-    const unit = path.join(out, ".unfinished", "units", "unit-00000");
-    while (child.exitCode === null && !existsSync(unit)) await sleep(5);
-    child.kill("SIGKILL");
-    await ended;
-    writeFileSync(unit, readFileSync(unit).subarray(0, 5000));
-    const again = total(plan, "killed");
-    expect(again.status, again.stderr).toBe(0);
-    expect(again.stdout).not.toContain("was there from before");
     expect(fingerprints(out)).toEqual(fingerprints(run));
   });
 

@@ -37,8 +37,14 @@ export function unitStore(folder: string): UnitStore {
       const body = deflateSync(serialize(result), { level: 1 });
       const file = fileOf(job);
       const beside = `${file}.part`;
-      writeFileSync(beside, Buffer.concat([createHash("sha256").update(body).digest(), body]));
-      renameSync(beside, file);
+      try {
+        writeFileSync(beside, Buffer.concat([createHash("sha256").update(body).digest(), body]));
+        renameSync(beside, file);
+      } catch (error) {
+        // A write that fails (a full disk) does not say where; people must be told which disk it was.
+        if (error instanceof Error && !("path" in error)) Object.assign(error, { path: beside });
+        throw error;
+      }
     },
     load(job) {
       const body = content(fileOf(job));
