@@ -68,7 +68,7 @@ export function tableFindings(
   radars: readonly RadarFinding[],
   onNotice: (notice: Notice) => void,
 ): TableFindings {
-  const gauges = settleDates(readings.map((seen) => gaugeFinding(seen, tables)));
+  const gauges = settleKinds(settleDates(readings.map((seen) => gaugeFinding(seen, tables))));
   for (const gauge of gauges) tellGaugeFaults(gauge, onNotice);
   const stations = tables.map((table) => stationFinding(table, gauges));
   const points = tables.flatMap((table) => stationPoints(table, gauges, radars, onNotice));
@@ -89,6 +89,31 @@ function settleDates(gauges: readonly GaugeFinding[]): GaugeFinding[] {
     if (orders.size !== 1) return gauge;
     const [teller] = alike as [GaugeFinding];
     return { ...gauge, dates: { ...teller.dates, reason: `${teller.dates.reason} (in ${teller.file})` } };
+  });
+}
+
+/**
+ * Files of one gauge each are of one kind in a network: what most of them look like, since a gauge that saw
+ * little rain may look like anything.
+ */
+function settleKinds(gauges: readonly GaugeFinding[]): GaugeFinding[] {
+  const form = ({ network, columns, idFrom }: GaugeFinding) =>
+    JSON.stringify([network.value, columns.value, idFrom.value]);
+  return gauges.map((gauge) => {
+    if (gauge.idFrom.value === "column") return gauge;
+    const alike = gauges.filter((other) => form(other) === form(gauge));
+    const votes = (kind: GaugeFinding["kind"]) =>
+      alike.filter((other) => other.kind.value === kind.value).length;
+    const [leader] = alike.toSorted((a, b) => votes(b.kind) - votes(a.kind)) as [GaugeFinding];
+    if (leader.kind.value === gauge.kind.value) return gauge;
+    const { tipMm: _tipMm, ...rest } = gauge;
+    const reason = `${leader.kind.reason} (in most files of the network)`;
+    return {
+      ...rest,
+      kind: { ...leader.kind, reason },
+      unit: leader.unit,
+      ...(leader.tipMm === undefined ? {} : { tipMm: leader.tipMm }),
+    };
   });
 }
 

@@ -22,6 +22,7 @@ import type { PlanRadar } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import type { Progress } from "../ui/progress.ts";
 import { version } from "../version.ts";
+import { checkAssets } from "./assets.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
 import type { JobRadar, JobRelation, JobRound, JobSensitivity, RunShape, UnitJob } from "./job.ts";
@@ -91,6 +92,7 @@ export async function prepareRun(
   const sites = radars.map(({ sweeps }) => sweeps[0].header.site);
   const gauges = await readGauges(loaded, grid, map, window, sites, log, seen);
   const catchments = await catchmentsOf(loaded, grid, map, log, seen);
+  await checkAssets(loaded, grid, map, log, seen);
   const district = catchments.length > 0 ? unionOfAreas(catchments, grid) : wholeGrid(grid);
   const headlineRelations = plan.rain.headlineRelations.map((name) => ({
     name,

@@ -23,6 +23,8 @@ const RATE_WORDS = /mm\s*(\/|per)\s*h|mm_per_h|mm\s?h-1|in\s*\/\s*h|inch(es)?\s*
 const MIN_RISES = 3;
 const MAX_FALL_SHARE = 0.05;
 const MAX_QUALITY_CODES = 20;
+/** Share of rows with the stamp of the row before from which a table holds several gauges. */
+const MOST_REPEATS = 0.3;
 
 export interface ReadingsGuess {
   readonly layout: Guess<GaugeLayout>;
@@ -184,7 +186,10 @@ function guessRoles(sample: TableSample, around: TableSurroundings): Roles {
   }
   const rain = numeric.filter((at) => VALUE_WORDS.test(columns[at]));
   const besides = numeric.filter((at) => !VALUE_WORDS.test(columns[at]));
-  if (!repeated && rain.length === 1 && besides.every((at) => OTHER_WEATHER_WORDS.test(columns[at]))) {
+  const repeats = rows.filter((row, index) => index > 0 && row[timeAt] === rows[index - 1][timeAt]).length;
+  // A row sent twice does not make two gauges.
+  const oneAtATime = repeats < MOST_REPEATS * rows.length;
+  if (oneAtATime && rain.length === 1 && besides.every((at) => OTHER_WEATHER_WORDS.test(columns[at]))) {
     const whole = gaugeOfFile(around);
     if (whole !== undefined) {
       return {
