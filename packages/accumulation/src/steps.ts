@@ -7,14 +7,14 @@ const DAY_MS = 24 * HOUR_MS;
  * Milliseconds of an ISO 8601 duration of days, hours, minutes and seconds ("PT5M", "PT1H", "P1D").
  * A day here is 24 hours; a civil day that may have 23 or 25 is a rain day, see `rainDays`.
  *
- * @throws RangeError for anything else, and for a duration of 0
+ * @returns NaN for anything else, and for a duration of 0
  */
 export function durationMs(iso: string): number {
   const parts = /^P(?:(\d+)D)?(?:T(?:(\d+)H)?(?:(\d+)M)?(?:(\d+)S)?)?$/.exec(iso);
-  const [days, hours, minutes, seconds] = (parts ?? []).slice(1).map((part) => Number(part ?? 0));
+  if (parts === null) return Number.NaN;
+  const [days, hours, minutes, seconds] = parts.slice(1).map((part) => Number(part ?? 0));
   const ms = days * DAY_MS + hours * HOUR_MS + minutes * 60_000 + seconds * 1000;
-  if (parts === null || !(ms > 0)) throw new RangeError(`not a duration above 0: "${iso}"`);
-  return ms;
+  return ms > 0 ? ms : Number.NaN;
 }
 
 /**

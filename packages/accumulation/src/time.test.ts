@@ -1,4 +1,5 @@
 import { checkValue, checkValues } from "@rainreckon/test-data/published";
+import { Duration } from "luxon";
 import { describe, expect, test } from "vitest";
 import { rainDays } from "./rain-day.ts";
 import { cutWindow, durationMs } from "./steps.ts";
@@ -74,15 +75,14 @@ describe("cutWindow and durationMs", () => {
     expect(pieces.map((piece) => (piece.endEpochMs - piece.startEpochMs) / 60_000)).toEqual([10, 60, 10]);
   });
 
-  test.each([
-    ["PT5M", 300_000],
-    ["PT1H", 3_600_000],
-    ["P1DT30S", 86_430_000],
-  ])("%s", (iso, ms) => {
-    expect(durationMs(iso)).toBe(ms);
-  });
+  test.each(["PT5M", "PT1H", "P1D", "PT1H30M", "PT90S", "P1DT2H3M4S"])(
+    "%s is as long as luxon says",
+    (iso) => {
+      expect(durationMs(iso)).toBe(Duration.fromISO(iso).toMillis());
+    },
+  );
 
-  test.each(["", "P", "PT", "PT0M", "5M", "P1M", "-PT5M", "PT1.5H"])("refuses %j", (iso) => {
-    expect(() => durationMs(iso)).toThrow(RangeError);
+  test.each(["", "P", "PT", "PT0M", "5M", "P1M", "-PT5M", "PT1.5H"])("%j is no duration", (iso) => {
+    expect(durationMs(iso)).toBeNaN();
   });
 });

@@ -1,5 +1,5 @@
+import { durationMs } from "@rainreckon/accumulation";
 import { findRelation, InputError } from "@rainreckon/core";
-import { durationMs } from "./duration.ts";
 import type { PlanFault } from "./faults.ts";
 import type { Plan, PlanGaugeFiles } from "./schema.ts";
 import type { PlanPath } from "./yaml-place.ts";
