@@ -1,5 +1,6 @@
 import { closeSync, fstatSync, openSync, readFileSync, readSync, statSync } from "node:fs";
 import { resolve } from "node:path";
+import { constants, inflateSync } from "node:zlib";
 import { InputError, type StoredValues } from "@rainreckon/core";
 import type { Metadata } from "h5wasm/node";
 import { globalHeapsAreSound } from "./global-heap.ts";
@@ -214,7 +215,9 @@ class OpenFile implements Hdf5File {
       );
     }
     const byteCount = elementCount * metadata.size;
-    const values = numbers(this.#arrayBytes(dataset, byteCount), metadata, where);
+    const bytes = this.#arrayBytes(dataset, byteCount);
+    this.#mustBeUnpacked(dataset, metadata, bytes);
+    const values = numbers(bytes, metadata, where);
     if (metadata.chunks !== null && values.every((value) => value === values[0])) {
       this.#mustBeStored(dataset, byteCount);
     }
@@ -228,7 +231,9 @@ class OpenFile implements Hdf5File {
     }
     const { elementCount, type } = this.#checkedShape(dataset, metadata);
     const byteCount = elementCount * metadata.size;
-    const values = typedArray(type, this.#arrayBytes(dataset, byteCount).buffer);
+    const bytes = this.#arrayBytes(dataset, byteCount);
+    this.#mustBeUnpacked(dataset, metadata, bytes);
+    const values = typedArray(type, bytes.buffer);
     if (metadata.chunks !== null && values.every((value) => value === values[0])) {
       this.#mustBeStored(dataset, byteCount);
     }
@@ -243,6 +248,24 @@ class OpenFile implements Hdf5File {
   #mustBeStored(dataset: string, byteCount: number): void {
     if (countFileReads(() => this.#arrayBytes(dataset, byteCount)) > 0) return;
     throw damaged("nothing of this array is stored", this.#at(dataset));
+  }
+
+  /**
+   * A damaged index may say of a chunk that it was never packed: its packed bytes then come back as values, without a
+   * word. Bytes that unpack without a fault are no measurement.
+   */
+  #mustBeUnpacked(dataset: string, metadata: Metadata, bytes: Uint8Array): void {
+    if (metadata.chunks === null || !startsZlib(bytes)) return;
+    try {
+      // What does not pack well is longer packed, so that its end may be missing.
+      inflateSync(bytes, {
+        finishFlush: constants.Z_SYNC_FLUSH,
+        maxOutputLength: Math.max(bytes.length * 2, 1024),
+      });
+    } catch {
+      return;
+    }
+    throw damaged("this array comes back packed", this.#at(dataset));
   }
 
   #arrayBytes(dataset: string, byteCount: number): Uint8Array<ArrayBuffer> {
@@ -382,6 +405,13 @@ class OpenFile implements Hdf5File {
   #mustBeOpen(): void {
     if (!this.#open) throw new RangeError(`${this.path} is closed already`);
   }
+}
+
+/** The two bytes that begin a zlib stream (RFC 1950, section 2.2): deflate, and a check that 31 divides them. */
+function startsZlib(bytes: Uint8Array): boolean {
+  const [method, flags] = bytes;
+  if (method === undefined || flags === undefined) return false;
+  return (method & 0x0f) === 8 && (method * 256 + flags) % 31 === 0;
 }
 
 function elementType(metadata: Metadata): ElementType | undefined {
