@@ -264,6 +264,7 @@ describe("same input, same plan, same bytes", () => {
 
     const forced = total(other, "run", ["--force"]);
     expect(forced.status, forced.stderr).toBe(0);
+    expect(forced.stderr).toContain("what was in that folder was moved to run.before-1\n");
     expect(fingerprints(`${run}.before-1`)).toEqual(before);
     expect(manifestOf(run)).toMatchObject({ title: "Another total" });
     // The plan's title stands in it; the depths are the same depths.

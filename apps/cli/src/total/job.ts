@@ -91,6 +91,11 @@ export interface UnitCounts {
   cellsFilledByHigherSweep: number;
 }
 
+/** A sweep that could not be decoded, and the name of its file. */
+export interface SweepFault extends Notice {
+  readonly file: string;
+}
+
 export interface UnitResult {
   readonly intervals: readonly IntervalFields[];
   /** Shape [intervals][cells]: depth of the rain that the radars could not have seen. */
@@ -101,8 +106,3 @@ export interface UnitResult {
   /** Sweeps that could not be decoded. */
   readonly notices: readonly SweepFault[];
 }
-/** A sweep that could not be decoded, and the name of its file. */
-export interface SweepFault extends Notice {
-  readonly file: string;
-}
-

@@ -29,6 +29,8 @@ export interface RunFolder {
   readonly state: FolderState;
   readonly folder: string;
   readonly unitsFolder: string;
+  /** Where what was in the folder before went, under `force`. */
+  readonly movedTo?: string;
   /** Path under which an output is made. */
   draft(file: string): string;
   /** Moves the drafts into place, the manifest last, and clears what was scratch. */
@@ -47,8 +49,8 @@ export function openRunFolder(folder: string, runDigest: string, force: boolean)
   const state = stateOf(folder, runDigest);
   if (typeof state !== "string") {
     if (!force) throw state;
-    moveAside(folder);
-    return openRunFolder(folder, runDigest, false);
+    const movedTo = moveAside(folder);
+    return { ...openRunFolder(folder, runDigest, false), movedTo };
   }
   const scratch = path.join(folder, UNFINISHED);
   const run: RunFolder = {
@@ -131,12 +133,12 @@ function makeFolder(folder: string): void {
 }
 
 /** Renames the folder to the first free name beside it: "out.before-1". */
-function moveAside(folder: string): void {
+function moveAside(folder: string): string {
   for (let n = 1; ; n++) {
     const aside = `${folder}.before-${n}`;
     if (existsSync(aside)) continue;
     renameSync(folder, aside);
-    return;
+    return aside;
   }
 }
 

@@ -82,6 +82,9 @@ export async function runTotal(
     };
   }
   const folder = openRunFolder(path.resolve(options.out), planned.runDigest, options.force);
+  if (folder.movedTo !== undefined) {
+    terminal.note(`what was in that folder was moved to ${path.relative(process.cwd(), folder.movedTo)}`);
+  }
   if (folder.state === "finished") {
     log.finish();
     return { outcome: { kind: "already there", run: planned }, noticeCount: log.count };
