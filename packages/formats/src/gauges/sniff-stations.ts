@@ -14,8 +14,8 @@ export const GAUGE_WORDS = /^(id|code|stn|(gauge|station|site|sensor)([_ -]?(id|
 /** Headers of ids in a table of stations; among readings, "NO" may well be a gauge. */
 const NUMBER_WORDS = /^(nr|no|number)$/i;
 
-const VALID_FROM_WORDS = /^(valid|open|opened|start|begin|since)([_ -]?(from|date|day|since))?$/i;
-const VALID_TO_WORDS = /^(valid|close|closed|end|until)([_ -]?(to|until|date|day))?$/i;
+const VALID_FROM_WORDS = /^(from|since|(valid|open|opened|start|begin)([_ -]?(from|date|day|since))?)$/i;
+const VALID_TO_WORDS = /^(to|until|(valid|close|closed|end)([_ -]?(to|until|date|day)))$/i;
 const TIP_WORDS = /^tip([_ -]?(size|depth|volume|mm)){0,2}$/i;
 const HEATED_WORDS = /^(is[_ -]?)?heat(ed|ing)$/i;
 const CORRECTIONS_WORDS = /^(correct(ion|ions|ed)([_ -]?applied)?|applied[_ -]?corrections?)$/i;
@@ -44,15 +44,15 @@ export function guessStations(
   if (xAt < 0 || yAt < 0) return undefined;
   const free = columns.map((_, at) => at).filter((at) => at !== xAt && at !== yAt && at !== sample.timeAt);
   // A gauge that moved has an entry for each place, so ids may repeat where entries have dates.
-  const dated = free.some((at) => VALID_FROM_WORDS.test(plain[at]));
+  const dated = plain.some((header) => VALID_FROM_WORDS.test(header));
   const isUnique = (at: number) =>
     new Set(rows.map((row) => row[at])).size >= (dated ? 0.3 : 0.9) * rows.length;
   const wordAt = free.find((at) => GAUGE_WORDS.test(plain[at]) || NUMBER_WORDS.test(plain[at]));
   const idAt = wordAt ?? free.find(isUnique);
   if (idAt === undefined || !isUnique(idAt)) return undefined;
   const headed = (words: RegExp) => {
-    const at = free.find((column) => column !== idAt && words.test(plain[column]));
-    return at === undefined ? undefined : columns[at];
+    const at = columns.findIndex((_, column) => column !== idAt && words.test(plain[column]));
+    return at < 0 ? undefined : columns[at];
   };
   const validFrom = headed(VALID_FROM_WORDS);
   const validTo = headed(VALID_TO_WORDS);

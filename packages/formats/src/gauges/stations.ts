@@ -263,7 +263,7 @@ export function stationsDuring(
       chosen.set(row.id, { row, sharedMs });
       continue;
     }
-    const longer = sharedMs > before.sharedMs ? row : before.row;
+    const longer = sharedMs >= before.sharedMs ? row : before.row;
     notices.tell(
       "stations that moved within the window",
       `station "${displayText(row.id, 60)}" has two entries that hold within the window: the one of line ${longer.line} holds longer and counts`,
@@ -277,13 +277,17 @@ export function stationsDuring(
   return new Map([...chosen].map(([id, { row }]) => [id, row]));
 }
 
-/** Whether two entries hold at one time. */
+/** Whether two entries hold at one time for more than a day: one may end on the day on which the next begins. */
 function holdTogether(a: StationRow, b: StationRow): boolean {
-  const startsBefore = (from: number | undefined, to: number | undefined) =>
-    (from ?? Number.NEGATIVE_INFINITY) < (to ?? Number.POSITIVE_INFINITY);
-  return (
-    startsBefore(a.validFromEpochMs, b.validToEpochMs) && startsBefore(b.validFromEpochMs, a.validToEpochMs)
+  const until = Math.min(
+    a.validToEpochMs ?? Number.POSITIVE_INFINITY,
+    b.validToEpochMs ?? Number.POSITIVE_INFINITY,
   );
+  const from = Math.max(
+    a.validFromEpochMs ?? Number.NEGATIVE_INFINITY,
+    b.validFromEpochMs ?? Number.NEGATIVE_INFINITY,
+  );
+  return until - from > DAY_MS;
 }
 
 async function stationsOfWaterMl(path: string, notices: FileNotices): Promise<readonly StationRow[]> {
