@@ -167,6 +167,8 @@ class RowCollector {
   readonly #clock: ZoneClock;
   readonly #stamps: StampScanner;
   readonly #decimal: DecimalMark;
+  /** Levels and tips are no depths: "below" or "a trace" says nothing of them. */
+  readonly #measuresDepth: boolean;
   readonly #traceTexts: ReadonlySet<string>;
   readonly #mmPerUnit: number;
   readonly #missingTexts: ReadonlySet<string>;
@@ -187,8 +189,10 @@ class RowCollector {
       snapToMinute: spec.kind !== "tips",
     });
     this.#decimal = spec.decimal ?? "point";
-    const measuresDepth = spec.kind === "increments" || spec.kind === "intensity";
-    this.#traceTexts = new Set(measuresDepth ? (spec.trace ?? DEFAULT_TRACE).map((text) => text.trim()) : []);
+    this.#measuresDepth = spec.kind === "increments" || spec.kind === "intensity";
+    this.#traceTexts = new Set(
+      this.#measuresDepth ? (spec.trace ?? DEFAULT_TRACE).map((text) => text.trim()) : [],
+    );
     this.#mmPerUnit = mmPerUnit(spec);
     this.#missingTexts = new Set(spec.missing.map((text) => text.trim()));
     this.#missingNumbers = new Set(
@@ -299,7 +303,7 @@ class RowCollector {
     path: string,
   ): number {
     const reason = series.nilReasons[index];
-    if (/BelowDetection/i.test(reason)) return this.#below();
+    if (this.#measuresDepth && /BelowDetection/i.test(reason)) return this.#below();
     if (reason !== "") {
       this.#counts.missing += 1;
       return Number.NaN;
@@ -527,7 +531,7 @@ class RowCollector {
       this.#counts.traces += 1;
       return 0;
     }
-    if (cell.startsWith("<") && !Number.isNaN(belowOf(cell, this.#decimal))) return this.#below();
+    if (this.#measuresDepth && !Number.isNaN(belowOf(cell, this.#decimal))) return this.#below();
     const number = decimalOf(cell, this.#decimal);
     if (Number.isNaN(number)) {
       this.#counts.unreadableValues += 1;

@@ -423,4 +423,15 @@ describe("numbers", () => {
     expect([...strict.series[0].depthMm]).toEqual([Number.NaN, Number.NaN, Number.NaN, Number.NaN]);
     expect(strict.counts).toMatchObject({ belowDetection: 1, traces: 0, unreadableValues: 3, missing: 1 });
   });
+  test("a level below detection is no level: it would look like a reset of the counter", async () => {
+    const text = lines(
+      "gauge,time,value",
+      "A,2031-05-27T23:50,5.0",
+      "A,2031-05-27T23:55,<0.2",
+      "A,2031-05-28T00:00,5.2",
+    );
+    const { series, counts } = await read(text, { kind: "counter" });
+    expect(counts).toMatchObject({ belowDetection: 0, unreadableValues: 1, counterResets: 0 });
+    expect([...series[0].depthMm].map((depth) => Number(depth.toFixed(6)))).toEqual([0.2]);
+  });
 });
