@@ -101,8 +101,8 @@ export function projection(crs: string): Projection {
   } catch (cause) {
     throw new InputError(
       "a coordinate system that cannot be built",
-      `crs "${crs}"`,
-      "check its PROJ string",
+      `crs "${wkt?.name ?? crs}"`,
+      "check its PROJ string, or write its EPSG code",
       {
         kind: "usage",
         cause,
