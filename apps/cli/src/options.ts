@@ -120,6 +120,13 @@ export const flags = {
     )
       .argParser(through(wholeNumber(1, 64)))
       .default(1),
+  rate: () =>
+    new Option(
+      "--rate",
+      "a map of rain rate at one instant per radar (the last in the window) instead of a total",
+    ),
+  planRate: () =>
+    new Option("--rate", "accept single scans: the plan is then for total --rate, a map of rain rate"),
   moveAside: () => new Option("--force", "move another run in that folder aside (nothing is deleted)"),
   strict: () => new Option("--strict", "exit with 1 when any input was left out"),
 

@@ -8,7 +8,7 @@ import { flags } from "../options.ts";
 import type { SurveyResult } from "../survey/survey-result.ts";
 import { walkFiles } from "../survey/walk.ts";
 import { noticeLine } from "../ui/left-out.ts";
-import { counted } from "../ui/numbers.ts";
+import { counted, isoUtc } from "../ui/numbers.ts";
 import { type Terminal, terminalOf } from "../ui/terminal.ts";
 
 /** The result of `plan --json`. */
@@ -30,6 +30,7 @@ interface PlanFlags {
   readonly title: string;
   readonly update?: boolean;
   readonly force?: boolean;
+  readonly rate?: boolean;
 }
 
 /** `plan PATH…`: writes a plan from what a survey finds. */
@@ -43,7 +44,8 @@ export function registerPlan(program: Command): void {
     .addOption(flags.planFile())
     .addOption(flags.title())
     .addOption(flags.update())
-    .addOption(flags.replacePlan());
+    .addOption(flags.replacePlan())
+    .addOption(flags.planRate());
   addSchemaFlag(command, planReportSchema);
   command.action(async (paths: string[]) => {
     const options = command.opts<PlanFlags>();
@@ -52,14 +54,35 @@ export function registerPlan(program: Command): void {
     const walk = walkFiles(paths);
     terminal.note(`${counted(walk.files.length, "file")} under ${paths.join(", ")}`);
     const { survey } = await import("../survey/survey.ts");
-    const result = await survey(paths, walk, terminal);
+    const surveyed = await survey(paths, walk, terminal);
+    const result = options.rate === true ? asOneInstant(surveyed) : surveyed;
     await requireTotal(result, paths);
-    const report = await writePlan(options, result);
+    const report = await writePlan(options, result, surveyed.findings.window === null);
     tellPlan(terminal, report, result);
   });
 }
 
 type PlanReport = z.output<typeof planReportSchema>;
+
+/** Step of the series in a fresh plan. */
+const STEP_MS = 5 * 60_000;
+
+/** Where scans make no total, the window of what there is: enough for a map of rain rate. */
+function asOneInstant(result: SurveyResult): SurveyResult {
+  const { radars, window } = result.findings;
+  if (window !== null || radars.length === 0) return result;
+  const from = radars.map(({ firstStart }) => firstStart).sort()[0]!;
+  // A window is whole steps of the plan's series, and holds the last scan.
+  const lastMs = Math.max(...radars.map(({ lastEnd }) => Date.parse(lastEnd)));
+  const fromMs = Math.floor(Date.parse(from) / STEP_MS) * STEP_MS;
+  const toMs = (Math.floor(lastMs / STEP_MS) + 1) * STEP_MS;
+  const single = { from: isoUtc(fromMs), to: isoUtc(toMs), basis: "radars" as const };
+  return {
+    ...result,
+    findings: { ...result.findings, window: single },
+    radarsInWindow: new Set(radars.map(({ id }) => id)),
+  };
+}
 
 function refuseToOverwrite({ out, update, force }: PlanFlags): void {
   if (!existsSync(out) || update === true || force === true) return;
@@ -80,11 +103,15 @@ async function requireTotal({ findings }: SurveyResult, paths: readonly string[]
   const fix =
     findings.radars.length === 0
       ? "name folders that hold ODIM_H5 scans; survey says what is there"
-      : "add scans of at least a second round";
+      : "add scans of at least a second round, or write the plan with --rate for a map of rain rate";
   throw new InputError(what, paths.join(", "), fix, { kind: "no-input" });
 }
 
-async function writePlan({ out, title, update }: PlanFlags, result: SurveyResult): Promise<PlanReport> {
+async function writePlan(
+  { out, title, update }: PlanFlags,
+  result: SurveyResult,
+  rateOnly: boolean,
+): Promise<PlanReport> {
   const { composePlan } = await import("../plan/compose.ts");
   const { parsePlan } = await import("../plan/load.ts");
   const folder = path.dirname(path.resolve(out));
@@ -116,7 +143,7 @@ async function writePlan({ out, title, update }: PlanFlags, result: SurveyResult
     changes: [...changes],
     remarks: [...remarks],
     wrongCount: findings.wrong.length,
-    next: `rainreckon total ${out} --out ${runFolderFor(out)}`,
+    next: `rainreckon total ${out} --out ${runFolderFor(out)}${rateOnly ? " --rate" : ""}`,
   };
 }
 

@@ -26,6 +26,7 @@ interface TotalFlags {
   readonly workers: number;
   readonly force?: boolean;
   readonly strict?: boolean;
+  readonly rate?: boolean;
 }
 
 /** `total PLAN --out DIR`: the main job. */
@@ -38,16 +39,24 @@ export function registerTotal(program: Command): void {
       "rainreckon total plan.yaml --out run",
       "rainreckon total plan.yaml --out run --dry-run",
       "rainreckon total plan.yaml --out run --workers 2 --strict",
+      "rainreckon total plan.yaml --out map --rate",
     ],
   )
     .addOption(flags.runFolder())
     .addOption(flags.dryRun())
     .addOption(flags.workers())
     .addOption(flags.moveAside())
-    .addOption(flags.strict());
+    .addOption(flags.strict())
+    .addOption(flags.rate());
   addSchemaFlag(command, totalSchema);
   command.action(async (plan: string, options: TotalFlags) => {
     const terminal = terminalOf(command);
+    if (options.rate === true) {
+      const { makeRateMap } = await import("../rate/rate-map.ts");
+      const noticeCount = await makeRateMap(plan, options.out, terminal);
+      if (options.strict === true && noticeCount > 0) process.exitCode = EXIT.failed;
+      return;
+    }
     // Loaded here, so that no other command waits for charts, projections and the rest.
     const { runTotal } = await import("../total/run-total.ts");
     const { totalText } = await import("../total/total-text.ts");

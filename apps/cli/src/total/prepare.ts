@@ -147,7 +147,8 @@ export async function prepareRun(
  * @throws InputError (usage) where its coordinate system is unknown, or puts the grid nowhere on Earth: such
  * a grid would hold nothing, and every gauge would lie outside it
  */
-function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection {
+/** The grid's projection. @throws InputError (usage) where it is none, or the grid lies nowhere */
+export function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection {
   const where = `plan, grid.crs: ${crs}`;
   let map: Projection;
   try {
@@ -209,7 +210,8 @@ async function catchmentsOf(
   return placed;
 }
 
-function jobRadar(
+/** What a unit of work needs of a radar; what is doubtful about its relation or cap goes to the log. */
+export function jobRadar(
   { radar, rounds, sweepOf, beamWidthDeg }: RadarInput,
   loaded: LoadedPlan,
   sensitivity: JobSensitivity | undefined,
