@@ -107,6 +107,33 @@ describe("polarLookup", () => {
     expect([...low.cells].some((cell) => cells.azimuthDeg[cell] > 170)).toBe(true);
   });
 
+  test("a sector from 0 to 360 is all around, one from 90 to 90 a single azimuth", () => {
+    const block = (fromAzimuthDeg: number, toAzimuthDeg: number) =>
+      polarLookup(grid, map, cells, fan(360, 90, 1000), {
+        ...open,
+        blockedSectors: [{ fromAzimuthDeg, toAzimuthDeg, upToElevationDeg: 0.7 }],
+      }).cells.length;
+    expect(block(0, 360)).toBe(0);
+    expect(block(90, 90)).toBeGreaterThan(20_000);
+  });
+
+  test("a sweep of a few rays speaks for its sector and half a beam beside it, not for what it never looked at", () => {
+    // Ten rays of a degree, from 40.5 to 49.5: they see 40 to 50 degrees. A cell that holds a gate centre has
+    // its own centre at most 707 m beside the ray, less than 1.1 degrees from 40 km on.
+    const few = {
+      ...fan(360, 90, 1000),
+      azimuthDeg: Float64Array.from({ length: 10 }, (_, ray) => 40.5 + ray),
+    };
+    const spoken = [...polarLookup(grid, map, cells, few, open).cells].filter(
+      (cell) => cells.distanceM[cell] > 40_000,
+    );
+    expect(spoken.length).toBeGreaterThan(400);
+    for (const cell of spoken) {
+      expect(cells.azimuthDeg[cell]).toBeGreaterThan(39.4);
+      expect(cells.azimuthDeg[cell]).toBeLessThan(50.6);
+    }
+  });
+
   test("half-degree rays and whole-degree rays cover the same cells but for the rim", () => {
     const inside = (rays: number) =>
       [...polarLookup(grid, map, cells, fan(rays, 90, 1000), open).cells].filter(

@@ -62,9 +62,10 @@ export interface PolarLookup {
 /** Ground spacing of exactly solved points along a ray; a geodesic bends by about a centimetre in between. */
 const NODE_SPACING_M = 5000;
 
-/** True where an azimuth lies in a sector that may wrap over north. */
+/** True where an azimuth lies in a sector that may wrap over north; from 0 to 360 is all around. */
 function inSector(azimuthDeg: number, sector: BlockedSector): boolean {
-  const width = (sector.toAzimuthDeg - sector.fromAzimuthDeg + 360) % 360;
+  const turn = sector.toAzimuthDeg - sector.fromAzimuthDeg;
+  const width = turn < 0 ? turn + 360 : turn;
   return (azimuthDeg - sector.fromAzimuthDeg + 360) % 360 <= width;
 }
 
@@ -113,6 +114,20 @@ function nearestRay(azimuths: Float64Array, azimuthDeg: number): { ray: number; 
 }
 
 /**
+ * Mean spacing of rays, the widest opening between two of them left out: a sweep over a sector, or one that
+ * broke off, must not speak for what it never looked at.
+ *
+ * @returns 0 for a single ray
+ */
+function raySpacingDeg(azimuths: Float64Array): number {
+  const count = azimuths.length;
+  if (count < 2) return 0;
+  let widest = azimuths[0] + 360 - azimuths[count - 1];
+  for (let ray = 1; ray < count; ray++) widest = Math.max(widest, azimuths[ray] - azimuths[ray - 1]);
+  return (360 - widest) / (count - 1);
+}
+
+/**
  * Builds the lookup of a sweep geometry on a grid, once per geometry.
  *
  * A cell is made of the gates whose centre lies in it. Where none does (far out, where rays are wider
@@ -130,7 +145,6 @@ export function polarLookup(
   const cellCount = grid.nx * grid.ny;
   const { gateCount, elevationDeg, firstGateCentreM, gateLengthM } = geometry;
   const radiusM = effectiveRadiusM(rules.effectiveRadiusFactor);
-  const rayCount = geometry.azimuthDeg.length;
   const lastEdgeM = firstGateCentreM + (gateCount - 0.5) * gateLengthM;
   const reachM = arcDistanceM(lastEdgeM, elevationDeg, radiusM);
   const sectors = rules.blockedSectors.filter((sector) => elevationDeg <= sector.upToElevationDeg);
@@ -154,7 +168,7 @@ export function polarLookup(
   const gatesInCell = new Int32Array(cellCount);
   for (const cell of cellOfGate) if (cell >= 0 && !Number.isNaN(heightM[cell])) gatesInCell[cell]++;
 
-  const halfWidthDeg = Math.max(geometry.beamWidthDeg, 360 / rayCount) / 2;
+  const halfWidthDeg = Math.max(geometry.beamWidthDeg, raySpacingDeg(geometry.azimuthDeg)) / 2;
   const nearestGate = new Map<number, number>();
   for (let cell = 0; cell < cellCount; cell++) {
     if (Number.isNaN(heightM[cell]) || gatesInCell[cell] > 0) continue;
