@@ -3,7 +3,6 @@ export { displayText } from "./display-text.ts";
 export type { OnNotice } from "./file-notices.ts";
 export type { GaugeFileCounts } from "./gauge-file-counts.ts";
 export type { GaugeFileSpec, GaugeKind, GaugeLayout, GaugeUnit } from "./gauge-file-spec.ts";
-export { idOfFileName } from "./gauge-of-file.ts";
 export type { Guess } from "./guess.ts";
 export {
   type GaugeFileContents,
@@ -16,7 +15,6 @@ export { type MapField, type MapGuess, sniffMap } from "./sniff-map.ts";
 export type { ReadingsGuess } from "./sniff-readings.ts";
 export type { StationsGuess } from "./sniff-stations.ts";
 export { sniffTable, type TableGuess } from "./sniff-table.ts";
-export type { DateForm } from "./stamp.ts";
 export {
   readStations,
   type StationColumns,
