@@ -1,4 +1,12 @@
-import { existsSync, mkdirSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
+import {
+  copyFileSync,
+  existsSync,
+  mkdirSync,
+  mkdtempSync,
+  readFileSync,
+  rmSync,
+  writeFileSync,
+} from "node:fs";
 import { tmpdir } from "node:os";
 import path from "node:path";
 import { formatsReady, openGridded } from "@rainreckon/formats";
@@ -67,6 +75,29 @@ test("a single scan gives a map of rain rate, in its place and in mm/h", async (
   expect(at(10_000, 500)).toBeCloseTo(11.53, 2);
   expect(at(-10_000, -500)).toBe(0);
   expect(at(-5000, 12_000)).toBeNaN();
+});
+
+test("files that do not say where their radar stands take its place from the plan", async () => {
+  const plan = await oneScan("old");
+  const scans = path.join(scratch, "old", "scans");
+  rmSync(path.join(scans, "one.h5"));
+  // Archive Level II, message 1: 40 dBZ out to 40 km at the same noon, byte by byte from its document.
+  const fixture = new URL("../../../packages/formats/test/fixtures/level2-message1.gz", import.meta.url);
+  copyFileSync(fixture, path.join(scans, "old.gz"));
+  const without = readFileSync(plan, "utf8")
+    .replace("id: zzrat", "id: ICAO-KZZZ")
+    .replace(/one\.h5/g, "old.gz");
+  writeFileSync(plan, without);
+  const out = path.join(scratch, "old", "map");
+  const refused = cli(["total", plan, "--out", out, "--rate"]);
+  expect(refused.status).toBe(3);
+  expect(refused.stderr).toContain("does not say where radar KZZZ stands");
+  const site = "\n    site: { lonDeg: 4, latDeg: 51, antennaHeightM: 50 }";
+  writeFileSync(plan, without.replace("id: ICAO-KZZZ", `id: ICAO-KZZZ${site}`));
+  expect(cli(["total", plan, "--out", out, "--rate"]).status).toBe(0);
+  const facts = JSON.parse(readFileSync(path.join(out, "rate.json"), "utf8"));
+  expect(facts.radars).toMatchObject([{ id: "ICAO-KZZZ" }]);
+  expect(facts.maxRateMmPerHour).toBeCloseTo(11.53, 2);
 });
 
 test("the same bytes again; a folder that holds something is refused", async () => {

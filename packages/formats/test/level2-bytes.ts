@@ -213,3 +213,18 @@ export function smallVolume(): readonly Buffer[] {
   const high = turn(3, 2.4, 8, 43_220_000).map((ray) => ray31(ray, [REFLECTIVITY, VELOCITY]));
   return [...surveillance, ...doppler, ...high];
 }
+
+/** Messages 1 of one turn: 360 rays of 40 gates of 1 km at 40 dBZ, the first a degree past north. */
+export function evenMessage1Turn(): readonly Buffer[] {
+  return Array.from({ length: 360 }, (_, index) =>
+    ray1({
+      msOfDay: 43_200_000 + index * 50,
+      azimuthNumber: index + 1,
+      azimuthCode: Math.round((index + 0.5) / (180 / 4096)) * 8,
+      elevationCode: 11 * 8,
+      elevationNumber: 1,
+      status: index === 0 ? 3 : index === 359 ? 4 : 1,
+      surveillance: { firstM: 500, gateM: 1000, codes: new Array<number>(40).fill(146) },
+    }),
+  );
+}

@@ -45,6 +45,14 @@ const radar = z.strictObject({
   /** Only where the files do not say. */
   beamWidthDeg: z.number().positive().max(20).optional(),
   wavelengthCm: z.number().positive().max(200).optional(),
+  site: z
+    .strictObject({
+      lonDeg: z.number().min(-180).max(180),
+      latDeg: z.number().min(-90).max(90),
+      /** Of the antenna, above mean sea level. */
+      antennaHeightM: z.number().min(-500).max(9000),
+    })
+    .optional(),
   /** True takes a radar of Ku band or shorter waves into the total all the same. */
   acceptShortWavelength: z.boolean().default(false),
   /** The moment that rain is made from. */

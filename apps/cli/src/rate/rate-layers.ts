@@ -3,6 +3,7 @@ import { openScan } from "@rainreckon/formats";
 import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
 import type { JobRadar, JobRound } from "../total/job.ts";
 import { lookupShelf } from "../total/lookup-shelf.ts";
+import { placesOf } from "../total/places-of.ts";
 import { countCapped, RateMaker } from "../total/rate-maker.ts";
 
 /** What one radar shows of one round. */
@@ -26,7 +27,7 @@ export function rateLayer(
   let gatesCapped = 0;
   for (const { path, name, index, midEpochMs } of round.sweeps) {
     try {
-      const file = openScan(path);
+      const file = openScan(path, placesOf(radar));
       try {
         const lookup = lookupShelf(grid, radar).forSweep(file.readSweep(index, []));
         if (!builder.canFill(lookup)) continue;

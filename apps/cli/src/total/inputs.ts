@@ -83,6 +83,9 @@ export async function indexScans(
   const bySite = new Map<string, IndexedSweep[]>();
   const uses = new Map<string, { file: HashedFile; used: number; reasons: string[] }>();
   const contents = new Map<string, string>();
+  const places = new Map(
+    loaded.plan.radars.flatMap(({ id, site }) => (site === undefined ? [] : [[id, site] as const])),
+  );
   for (const scan of loaded.scanFiles) {
     progress.advance();
     let file: HashedFile;
@@ -107,7 +110,7 @@ export async function indexScans(
     const entry = { file, used: 0, reasons: [] as string[] };
     uses.set(file.name, entry);
     try {
-      const opened = openScan(scan);
+      const opened = openScan(scan, { places });
       try {
         for (const remark of opened.remarks) {
           log.add("assumed", { ...remark, where: remark.where.replace(scan, file.name) });

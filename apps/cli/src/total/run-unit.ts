@@ -16,6 +16,7 @@ import type {
   UnitResult,
 } from "./job.ts";
 import { lookupShelf } from "./lookup-shelf.ts";
+import { placesOf } from "./places-of.ts";
 import { countCapped, RateMaker } from "./rate-maker.ts";
 import { UnseenDepth } from "./unseen.ts";
 
@@ -81,7 +82,7 @@ class RadarFeed {
   }
 
   #addSweep(builder: RateLayerBuilder, sweep: JobSweep, higher: boolean, counts: UnitCounts): number {
-    const file = openScan(sweep.path);
+    const file = openScan(sweep.path, placesOf(this.#radar));
     try {
       const shape = file.readSweep(sweep.index, []);
       const lookup = lookupShelf(this.#shape.grid, this.#radar).forSweep(shape);

@@ -2,6 +2,7 @@ import { InputError, LowestEcho, type Notice, scansDisprove } from "@rainreckon/
 import { formatsReady, openScan } from "@rainreckon/formats";
 import type { RadarInput } from "./inputs.ts";
 import type { JobSensitivity } from "./job.ts";
+import { placesOf } from "./places-of.ts";
 
 /** So many rounds of a radar are read for their weakest echo; more would tell little else. */
 const ROUNDS_MEASURED = 24;
@@ -49,7 +50,7 @@ function measure({ radar, rounds, sweepOf }: RadarInput) {
     const indexed = sweepOf.get(lowest);
     if (indexed === undefined) throw new RangeError("a round holds a sweep that was not indexed");
     try {
-      const scan = openScan(indexed.file.path);
+      const scan = openScan(indexed.file.path, placesOf(lowest));
       try {
         const moment = scan.readSweep(indexed.index, [radar.moment]).moments.get(radar.moment);
         if (moment !== undefined) echo.add(lowest, moment, `${indexed.file.name}, ${lowest.origin.dataset}`);

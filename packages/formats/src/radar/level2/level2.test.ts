@@ -1,11 +1,12 @@
 import { spawnSync } from "node:child_process";
 import { readFileSync, writeFileSync } from "node:fs";
 import { fileURLToPath } from "node:url";
-import { gzipSync } from "node:zlib";
+import { gunzipSync, gzipSync } from "node:zlib";
 import { InputError, type Moment, type Sweep } from "@rainreckon/core";
 import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { FOREIGN_TOOLS } from "../../../test/foreign-tools.ts";
 import {
+  evenMessage1Turn,
   framed,
   REFLECTIVITY,
   ray1,
@@ -210,6 +211,17 @@ describe("message 1", () => {
     expect(error.fix).toContain("ICAO-KZZZ");
   });
 
+  test("a whole turn, gzipped, kept as a file", () => {
+    const kept = fileURLToPath(new URL("../../../test/fixtures/level2-message1.gz", import.meta.url));
+    expect(gunzipSync(readFileSync(kept))).toEqual(
+      Buffer.concat([volumeHeader("ARCHIVE2."), ...evenMessage1Turn()]),
+    );
+    const sweep = sweepAt(kept, 0, { places });
+    expect(sweep).toMatchObject({ rayCount: 360, gateCount: 40, remarks: [], raysReordered: 0 });
+    // Code 146 is 40 dBZ.
+    expect(values(sweep, "DBZH", 180)).toEqual(new Array(40).fill(40));
+  });
+
   test("gzipped", () => {
     const path = written(gzipSync(Buffer.concat([volumeHeader("ARCHIVE2."), ...rays(2)])));
     expect(values(sweepAt(path, 0, { places }), "DBZH")).toEqual(REFLECTIVITIES);
@@ -237,16 +249,15 @@ describe("bzip2 records", () => {
     checkSmallVolume(packed);
   });
 
-  test("chunks in any order make the same volume; alone, they hold parts of turns", () => {
+  test("chunks in any order make the same volume, and so do their bytes in a row; alone they are refused", () => {
     const paths = records().map((bytes, index) =>
       written(...(index === 0 ? [volumeHeader(), bytes] : [bytes])),
     );
     expect(paths.map(isScanChunk)).toEqual([false, true, true, true]);
-    const alone = openScan(paths[1] as string);
-    expect(alone.headers.map(({ rayCount, remarks }) => [rayCount, remarks.length])).toEqual([
-      [2, 1],
-      [4, 1],
-    ]);
+    const alone = fault(() => openScan(paths[1] as string));
+    expect(alone.what).toBe("a chunk of a volume, with only a part of this turn: 2 rays");
+    expect(alone.where).toMatch(/, cut 1$/);
+    checkSmallVolume(written(...paths.map((path) => readFileSync(path))));
     const joined = openScanChunks(paths.toReversed());
     const whole = openScan(packed);
     expect(joined.headers.map(({ rayCount, remarks }) => [rayCount, remarks.length])).toEqual([

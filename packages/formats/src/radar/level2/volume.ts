@@ -2,7 +2,7 @@ import { InputError, type Notice, type RadarSite } from "@rainreckon/core";
 import type { ScanOptions } from "../scan-file.ts";
 import type { SweepSource } from "../sourced-scan.ts";
 import { cutSweeps } from "./cut-sweeps.ts";
-import { cutsOf } from "./cuts.ts";
+import { type Cut, cutsOf } from "./cuts.ts";
 import { radialOfMessage1 } from "./message1.ts";
 import { radialOfMessage31 } from "./message31.ts";
 import { messagesOf } from "./messages.ts";
@@ -65,6 +65,7 @@ export function volumeSweeps(path: string, raw: RawVolume, options: ScanOptions)
   const leftOut: InputError[] = [];
   for (const cut of cutsOf(raw.radials)) {
     try {
+      refusePartAlone(path, cut, raw);
       sweeps.push(...cutSweeps(path, cut, site));
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
@@ -73,6 +74,16 @@ export function volumeSweeps(path: string, raw: RawVolume, options: ScanOptions)
   }
   if (sweeps.length === 0) throw leftOut[0];
   return { sweeps, remarks: remarksOf(path, raw), leftOut };
+}
+
+/** A part of a turn in a later chunk of a volume would pass for a turn of its own, at an instant of its own. */
+function refusePartAlone(path: string, cut: Cut, { hasVolumeHeader }: RawVolume): void {
+  if (hasVolumeHeader || cut.isWhole) return;
+  throw new InputError(
+    `a chunk of a volume, with only a part of this turn: ${cut.radials.length} rays`,
+    `${path}, cut ${cut.elevationNumber}`,
+    "write the chunks of the volume into one file, one after the other, from the first on",
+  );
 }
 
 function remarksOf(path: string, { brokenCount, cutShort }: RawVolume): Notice[] {
