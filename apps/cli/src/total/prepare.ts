@@ -23,6 +23,7 @@ import type { LeftOutLog } from "../ui/left-out.ts";
 import type { Progress } from "../ui/progress.ts";
 import { version } from "../version.ts";
 import { checkAssets } from "./assets.ts";
+import { relationWasNotChosen } from "./cautions.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
 import type { JobRadar, JobRelation, JobRound, JobSensitivity, RunShape, UnitJob } from "./job.ts";
@@ -48,7 +49,7 @@ export interface PreparedRun {
   readonly shape: RunShape;
   readonly jobs: readonly UnitJob[];
   readonly inputs: readonly ManifestInput[];
-  /** SHA-256 of plan, inputs and program: the same digest means the same bytes. */
+  /** SHA-256 of plan, inputs, program and what was said of them: the same digest means the same bytes. */
   readonly runDigest: string;
 }
 
@@ -119,6 +120,10 @@ export async function prepareRun(
       node: process.versions.node.split(".")[0],
       plan,
       inputs: sorted.map(({ path: name, sha256 }) => [name, sha256]),
+      // Both stand in the outputs, and neither follows from the rest: a mark is a comment of the plan, and a
+      // file that cannot be opened has no SHA-256.
+      relationNotChosen: relationWasNotChosen(loaded.text),
+      notices: log.all,
     }),
   );
   return {
@@ -270,7 +275,8 @@ export function jobRadar(
     relations,
     time: {
       medianRoundMs: radar.medianRoundMinutes * 60_000,
-      maxGapMs: radar.maxGapMinutes * 60_000,
+      // Whole milliseconds: 4.35 minutes in binary are a hair short of 261 s, and equality bridges.
+      maxGapMs: Math.round(radar.maxGapMinutes * 60_000),
     },
     lookup: {
       effectiveRadiusFactor: plan.rain.effectiveRadiusFactor,

@@ -6,6 +6,7 @@ import type { PreparedRun } from "./prepare.ts";
 import { runUnit } from "./run-unit.ts";
 import { type UnitStore, unitStore } from "./unit-store.ts";
 import type { WorkerShare } from "./unit-worker.ts";
+import { errorOf, type WorkerFault } from "./worker-fault.ts";
 
 /**
  * Works on all units that are not on disk yet, here or in worker threads.
@@ -39,7 +40,8 @@ export async function workUnits(
   try {
     await Promise.all(
       missing.map(async (job) => {
-        await pool.run(job);
+        const fault = (await pool.run(job)) as WorkerFault | undefined;
+        if (fault !== undefined) throw errorOf(fault);
         progress.advance();
       }),
     );

@@ -1,0 +1,88 @@
+import { existsSync, mkdirSync, symlinkSync } from "node:fs";
+import path from "node:path";
+import { beforeAll, describe, expect, test } from "vitest";
+import { planText, RADAR } from "./even-rain.ts";
+import { RAYS, SWEEP_SECONDS, storedDbz, writeVolume } from "./odim-scans.ts";
+import { type CliResult, ensureBuilt, inProcess } from "./run-cli.ts";
+import { manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
+
+// Small runs whose answer can be worked out by hand: a few cells between two invented radars.
+const scratch = scratchFolder("contracts");
+const FROM = Date.UTC(2031, 5, 1, 12);
+const GRID =
+  "{ crs: +proj=laea +lat_0=52.5 +lon_0=3.2 +ellps=GRS80 +units=m, westM: -2000, northM: 2000, cellM: 1000, nx: 4, ny: 4 }";
+/** Marked by hand: a relation that somebody chose. */
+const RADARS = "[{ id: zzeve, medianRoundMinutes: 5, maxGapMinutes: 12.5, relation: marshall-1955-200/1.6 }]";
+
+beforeAll(ensureBuilt);
+
+/** Even rain of one radar at each of some minutes. */
+async function writeEven(folder: string, minutes: readonly number[], dbz = 40): Promise<void> {
+  const stored = new Uint8Array(RAYS * RADAR.gateCount).fill(storedDbz(dbz));
+  for (const minute of minutes) {
+    const startEpochMs = FROM + minute * 60_000 - (SWEEP_SECONDS / 2) * 1000;
+    const file = path.join(folder, "scans", `scan-${1000 + minute}.h5`);
+    await writeVolume(file, RADAR, [{ elevationDeg: 0.5, startEpochMs, stored }]);
+  }
+}
+
+const every = (step: number, from: number, to: number) =>
+  Array.from({ length: Math.floor((to - from) / step) + 1 }, (_, k) => from + k * step);
+
+function writePlan(
+  folder: string,
+  change: Readonly<Record<string, string>> = {},
+  name = "plan.yaml",
+): string {
+  const parts = { gauges: "", catchments: "", grid: GRID, radars: RADARS, ...change };
+  return writeIn(folder, name, planText(parts));
+}
+
+function run(plan: string, out: string, flags: readonly string[] = []): Promise<CliResult> {
+  return inProcess(["total", plan, "--out", path.join(path.dirname(plan), out), ...flags]);
+}
+
+describe("a run is the same only where its outputs would be", () => {
+  test("marking a relation as chosen is another run, since its first caution goes away", async () => {
+    const folder = path.join(scratch, "mark");
+    await writeEven(folder, every(5, -5, 65));
+    const marked = (mark: string) =>
+      writePlan(folder, {
+        radars: `\n  - id: zzeve\n    medianRoundMinutes: 5\n    maxGapMinutes: 12.5\n    relation: marshall-1955-200/1.6 # ${mark}`,
+      });
+    expect((await run(marked("default"), "run")).status).toBe(0);
+    const caution = /Nobody chose the relation/;
+    const out = path.join(folder, "run");
+    expect(String(manifestOf(out).headline.cautions)).toMatch(caution);
+    const again = await run(marked("chosen: stratiform rain"), "run");
+    expect([again.status, again.stderr]).toEqual([2, expect.stringContaining("holds another run")]);
+    expect((await run(marked("chosen: stratiform rain"), "run", ["--force"])).status).toBe(0);
+    expect(String(manifestOf(out).headline.cautions)).not.toMatch(caution);
+  });
+});
+
+// /dev/full takes every write for one to a full disk.
+describe.skipIf(!existsSync("/dev/full"))("a worker (skipped where there is no /dev/full)", () => {
+  test("that meets a full disk says so, and where, as the program itself would", async () => {
+    const folder = path.join(scratch, "full");
+    await writeEven(folder, every(1, 0, 30));
+    const plan = writePlan(folder, {
+      window: "{ from: 2031-06-01T12:00:00Z, to: 2031-06-01T12:30:00Z }",
+      radars: "[{ id: zzeve, medianRoundMinutes: 1, maxGapMinutes: 2.5 }]",
+      intervals: "{ grids: PT15M }",
+    });
+    const { runDigest } = JSON.parse(total(plan, "run", ["--dry-run", "--json"]).stdout) as RunManifest;
+    const unfinished = path.join(folder, "run", ".unfinished");
+    writeIn(unfinished, "run.json", JSON.stringify({ runDigest }));
+    mkdirSync(path.join(unfinished, "units"));
+    const full = path.join(unfinished, "units", "unit-00001.part");
+    symlinkSync("/dev/full", full);
+    const { status, stderr } = total(plan, "run", ["--workers", "2"]);
+    expect(stderr.trimEnd().split("\n").slice(-3)).toEqual([
+      "error: the disk is full",
+      `  where: ${full}`,
+      expect.stringMatching(/^ {2}fix: {3}.*again/),
+    ]);
+    expect(status).toBe(1);
+  });
+});
