@@ -147,6 +147,7 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .scroll{position:relative;overflow:auto;max-width:100%;border:1px solid var(--line);border-radius:8px;background:var(--panel);overflow-wrap:normal}
 .scroll.tall{max-height:480px}
 .beside .tall{max-height:1060px}
+.beside .tall th,.beside .tall td{padding-left:8px;padding-right:8px}
 table{border-collapse:collapse;width:100%;font-size:.88rem;line-height:1.4}
 caption{text-align:left;padding:9px 12px;font-size:.97em}
 th,td{text-align:left;vertical-align:top;padding:6px 12px;border-top:1px solid var(--line);font-weight:400}

@@ -15,7 +15,7 @@ import type {
 import type { ScoreTable } from "@rainreckon/verification";
 import { gaugeSteps } from "@rainreckon/verification";
 import type { ManifestNotice } from "../manifest.ts";
-import { lengthText } from "../ui/numbers.ts";
+import { countText, lengthText } from "../ui/numbers.ts";
 import { version } from "../version.ts";
 import type { ComparedGauge, Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
@@ -331,7 +331,7 @@ function accountsOf({ run, total, comparison, notices }: ReportSources): Account
     "rain rate held at the hail cap",
     counts.gatesCapped,
     "gates",
-    `of ${counts.gatesRead} gates read`,
+    `of ${countText(counts.gatesRead).replaceAll(",", "\u202f")} gates read`,
   );
   add(
     "filled",

@@ -4,6 +4,7 @@ import type { GaugeRole, ReportInput } from "../input.ts";
 import { type DrawnLayer, drawLayers } from "../map/layer.ts";
 import { isOnMap, mapFrame, svgMap } from "../map/map.ts";
 import { html, joined, type Markup } from "../text/html.ts";
+import { projectionWords } from "../text/projection-words.ts";
 
 const ROLES: readonly GaugeRole[] = ["used", "doubted", "left-out"];
 
@@ -51,5 +52,5 @@ function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
   return html`<p class="small">${grid.nx} × ${grid.ny} cells of ${cellKm} km. ${
     block > 1 &&
     html`Drawn thinned, ${block} × ${block} cells to one of ${block * cellKm} km: the mean of the observed ones (for radars the most frequent). Tables use every cell. `
-  }Axes: km east and north in ${grid.crs}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
+  }Axes: km east and north of the origin of ${projectionWords(grid.crs)}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
 }

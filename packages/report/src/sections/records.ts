@@ -1,6 +1,6 @@
 import type { AccountLine, ProvenanceInput, ReportInput } from "../input.ts";
 import { html, type Markup } from "../text/html.ts";
-import { countText } from "../text/numbers.ts";
+import { counted, countText } from "../text/numbers.ts";
 
 /** More lines than this say nothing more to a reader; the manifest beside the report has them all. */
 export const MOST_LINES = 200;
@@ -31,20 +31,21 @@ export function accountSection(input: ReportInput): Markup {
     .slice(0, MOST_LINES)
     .map(
       (line) =>
-        html`<tr><td>${line.deed}</td><th scope="row">${line.what}</th><td class="number">${countText(line.count)} ${line.unit}</td><td class="words">${line.why}</td></tr>`,
+        html`<tr><td>${line.deed}</td><th scope="row">${line.what}</th><td class="number">${counted(line.count, line.unit.replace(/s$/, ""), line.unit)}</td><td class="words">${line.why}</td></tr>`,
     )}</tbody></table></div>${more(lines.length, "lines")}</section>`;
 }
 
 /** What the figures were made of and by. */
 export function provenanceSection(input: ReportInput): Markup {
   const { provenance } = input;
-  return html`<section id="provenance" aria-labelledby="provenance-heading"><h2 id="provenance-heading">Provenance</h2><dl class="facts"><div><dt>Software</dt><dd>${provenance.software}</dd></div><div><dt>Run digest</dt><dd class="digest">${provenance.runDigest}</dd></div><div><dt>Plan digest</dt><dd class="digest">${provenance.planDigest}</dd></div><div><dt>Status</dt><dd>${input.status}</dd></div></dl>${settingsTable(
+  return html`<section id="provenance" aria-labelledby="provenance-heading"><h2 id="provenance-heading">Provenance</h2><dl class="facts"><div><dt>Software</dt><dd>${provenance.software}</dd></div><div><dt>Run digest</dt><dd class="digest">${provenance.runDigest}</dd></div><div><dt>Plan digest</dt><dd class="digest">${provenance.planDigest}</dd></div><div><dt>Map projection</dt><dd class="words">${input.grid.crs}</dd></div><div><dt>Status</dt><dd>${input.status}</dd></div></dl>${settingsTable(
     input,
   )}${inputsTable(provenance.inputs)}</section>`;
 }
 
 function settingsTable({ provenance: { changedSettings } }: ReportInput): Markup {
-  if (changedSettings.length === 0) return html`<p>Every setting is at its default.</p>`;
+  if (changedSettings.length === 0)
+    return html`<p>No setting differs from its default. Files, window, zone and grid have none.</p>`;
   return html`<h3>Settings that differ from the default</h3><div class="scroll" role="region" tabindex="0" aria-label="Changed settings"><table><caption>By their place in the plan</caption><thead><tr><th scope="col">Setting</th><th scope="col">Value</th><th scope="col">Default</th></tr></thead><tbody>${changedSettings
     .slice(0, MOST_LINES)
     .map(

@@ -32,6 +32,7 @@ const mm = (value: number) => `${errorMmText(value)} mm`;
 const signedMm = (value: number) => `${signedErrorMmText(value)} mm`;
 const radarPerGauge = (value: number) => `${ratioText(value)} radar/gauge`;
 const decibels = (value: number) => `${ratioText(value)} dB`;
+const perCent = (value: number) => `${ratioText(value)} %`;
 
 /** A score whose sentence does not depend on its value. */
 function plain(
@@ -72,6 +73,11 @@ const WORDINGS: Readonly<Record<string, Wording>> = {
     figure: (value) => `${decibels(value)}, radar/gauge`,
     bound: decibels,
   },
+  relativeBiasPercent: plain(
+    "Radar minus gauge as a share of the gauge depth (relative bias)",
+    perCent,
+    perCent,
+  ),
   meanErrorMm: {
     subject: "Mean of radar minus gauge",
     sentence: (value) =>
@@ -82,7 +88,13 @@ const WORDINGS: Readonly<Record<string, Wording>> = {
     bound: signedMm,
   },
   meanAbsoluteErrorMm: plain("The usual miss of a pair, whichever way (mean absolute error)", mm, mm),
+  relativeMeanAbsoluteError: plain(
+    "The usual miss as a share of the mean gauge depth",
+    percentText,
+    percentText,
+  ),
   rootMeanSquareErrorMm: plain("The miss with large ones weighing more (root mean square error)", mm, mm),
+  errorSpreadMm: plain("Scatter of the miss about its mean, without the bias (standard deviation)", mm, mm),
   fractionalStandardError: plain(
     "Root mean square error as a share of the mean gauge depth",
     percentText,
@@ -113,9 +125,24 @@ const WORDINGS: Readonly<Record<string, Wording>> = {
     (value) => `${decibels(value)}, radar/gauge`,
     decibels,
   ),
+  medianLogRatioDb: plain(
+    "Median log ratio: half of the pairs lie above it",
+    (value) => `${decibels(value)}, radar/gauge`,
+    decibels,
+  ),
   logRatioSpreadDb: plain("Scatter of the log ratio, without the bias", decibels, decibels),
+  rootMeanSquareFactor: plain(
+    "The usual factor between radar and gauge, whichever way; 1 is perfect (root mean square factor)",
+    ratioText,
+  ),
   shareWithinFactor2: plain(
     "Pairs in which radar and gauge lie within a factor of two",
+    percentText,
+    percentText,
+  ),
+  baseRate: yesOrNo((rain) => `Gauge intervals with ${rain}, of all`, percentText, percentText),
+  proportionCorrect: yesOrNo(
+    (rain) => `Intervals in which radar and gauge agree whether there was ${rain}`,
     percentText,
     percentText,
   ),
@@ -126,6 +153,11 @@ const WORDINGS: Readonly<Record<string, Wording>> = {
   ),
   falseAlarmRatio: yesOrNo(
     (rain) => `Of the radar intervals with ${rain}, the gauge stayed below it in`,
+    percentText,
+    percentText,
+  ),
+  probabilityOfFalseDetection: yesOrNo(
+    (rain) => `Of the gauge intervals without ${rain}, radar reported it all the same in`,
     percentText,
     percentText,
   ),
@@ -148,6 +180,23 @@ const WORDINGS: Readonly<Record<string, Wording>> = {
   ),
   peirceSkillScore: yesOrNo(
     (rain) => `Detection of ${rain} less false detection; 1 is perfect (Peirce skill score)`,
+    ratioText,
+  ),
+  oddsRatio: yesOrNo(
+    (rain) => `Odds that radar is right on ${rain} over the odds that it is wrong; 1 is chance (odds ratio)`,
+    ratioText,
+  ),
+  oddsRatioSkillScore: yesOrNo(
+    (rain) => `The odds ratio on ${rain} brought to a scale that ends at 1, which is perfect (Yule's Q)`,
+    ratioText,
+  ),
+  extremalDependencyIndex: yesOrNo(
+    (rain) => `Detection of ${rain} beyond chance, however rare; 1 is perfect (extremal dependency index)`,
+    ratioText,
+  ),
+  symmetricExtremalDependencyIndex: yesOrNo(
+    (rain) =>
+      `The same for ${rain} and for its absence alike; 1 is perfect (symmetric extremal dependency index)`,
     ratioText,
   ),
 };
