@@ -98,6 +98,21 @@ test("the median round is between the mid-times of lowest sweeps", () => {
   expect(medianRoundMs([])).toBeUndefined();
 });
 
+test("a second cut in the same file is an instant of its own, but no round of the antenna's programme", () => {
+  // By hand: low cuts a minute apart in volumes that begin every 5 minutes: 1, 4, 1, 4, 1 minutes between them.
+  const sweeps = [0, 5, 10].flatMap((start) => [
+    sweep(start, 0.5, `volume-${start}`),
+    sweep(start + 1, 0.5, `volume-${start}`),
+    sweep(start + 2, 1.5, `volume-${start}`),
+  ]);
+  const rounds = groupIntoRounds(sweeps, options);
+  expect(rounds).toHaveLength(6);
+  expect(medianRoundMs(rounds)).toBe(5 * MINUTE);
+  // One file of many rounds says nothing of where one ends.
+  const inOneFile = [0, 5, 10, 15].map((start) => sweep(start, 0.5, "all"));
+  expect(medianRoundMs(groupIntoRounds(inOneFile, options))).toBe(5 * MINUTE);
+});
+
 test("a sweep sent twice counts once, and which one does not depend on the order of files", () => {
   const first = { header: sweep(0, 0.5, "a.h5"), contentHash: "1" };
   const again = { header: sweep(0, 0.52, "b.h5"), contentHash: "1" };

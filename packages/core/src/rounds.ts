@@ -40,19 +40,30 @@ export function groupIntoRounds(
  * Median time between the rounds of one site: of the differences between the mid-times of the lowest
  * sweeps of successive rounds.
  *
+ * Rounds out of one file are one turn of the antenna's programme, and the first of them counts: a volume that looks
+ * twice at its lowest elevation gives two instants a minute apart, and then none for four. The short way between
+ * them is not how long the radar takes from round to round. Where all rounds came in one file, each counts.
+ *
  * @param volumes - rounds of one site, in time order
  * @returns undefined for fewer than two rounds
  */
 export function medianRoundMs(volumes: readonly Volume[]): number | undefined {
-  const times = volumes
-    .filter(({ sweeps }) => sweeps.length > 0)
-    .map((volume) => midEpochMs(lowestSweep(volume)));
+  const rounds = volumes.filter(({ sweeps }) => sweeps.length > 0);
+  const firstOfFile = rounds.filter((round, index) => index === 0 || !sharesFile(rounds[index - 1], round));
+  const times = (firstOfFile.length > 1 ? firstOfFile : rounds).map((volume) =>
+    midEpochMs(lowestSweep(volume)),
+  );
   const differences = times.slice(1).map((time, index) => time - (times[index] as number));
   if (differences.length === 0) return undefined;
   const sorted = differences.sort((one, other) => one - other);
   const upper = sorted[Math.floor(sorted.length / 2)] as number;
   const lower = sorted[Math.floor((sorted.length - 1) / 2)] as number;
   return (lower + upper) / 2;
+}
+
+function sharesFile(before: Volume | undefined, round: Volume): boolean {
+  const paths = new Set(before?.sweeps.map(({ origin }) => origin.path));
+  return round.sweeps.some(({ origin }) => paths.has(origin.path));
 }
 
 function lowestSweep({ sweeps }: Volume): SweepHeader {
