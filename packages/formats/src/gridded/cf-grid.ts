@@ -12,6 +12,7 @@ import {
   MAX_CELLS,
 } from "./gridded-file.ts";
 import { type Measure, measureOf } from "./quantities.ts";
+import { soundLayer } from "./sound-values.ts";
 
 const MAX_LAYERS = 100_000;
 const UNEVEN_SHARE = 0.02;
@@ -103,7 +104,7 @@ function readStructure(
       const layer = layers[index];
       if (layer === undefined)
         throw new RangeError(`there is no layer ${index}; ${file.path} has ${layers.length}`);
-      return { ...layer.header, values: valuesOf(file, layer.field, layer.time) };
+      return soundLayer(layer.header, valuesOf(file, layer.field, layer.time));
     },
     close: () => file.close(),
   };
@@ -375,8 +376,6 @@ function valuesOf(file: NetcdfFile, field: Field, time: number): Float32Array {
     if (code === nodata || Number.isNaN(code)) return Number.NaN;
     if (code === undetect || code === Number.NEGATIVE_INFINITY)
       return isReflectivity ? Number.NEGATIVE_INFINITY : 0;
-    const value = (code * gain + offset) * measure.factor;
-    // A negative rate or depth, or one without end, is a code that nobody told of.
-    return Number.isFinite(value) && (isReflectivity || value >= 0) ? value : Number.NaN;
+    return (code * gain + offset) * measure.factor;
   }
 }

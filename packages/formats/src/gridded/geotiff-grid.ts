@@ -12,6 +12,7 @@ import {
   MAX_CELLS,
 } from "./gridded-file.ts";
 import { type Measure, measureOf } from "./quantities.ts";
+import { soundLayer } from "./sound-values.ts";
 import { checkTiff } from "./tiff-sizes.ts";
 
 const MAX_FILE_BYTES = 1_000_000_000;
@@ -68,7 +69,7 @@ export async function openGeoTiffGrid(
     leftOut: [],
     async readLayer(index) {
       if (index !== 0) throw new RangeError(`there is no layer ${index}; ${filePath} has 1`);
-      return { ...header, values: await valuesOf(image, filePath, measure, tags) };
+      return soundLayer(header, await valuesOf(image, filePath, measure, tags));
     },
     close: () => undefined,
   };
@@ -215,14 +216,10 @@ async function valuesOf(
     throw new InputError("the file is damaged: the picture has not its cells", where, "fetch it again");
   }
   const nodata = image.getGDALNoData();
-  const isReflectivity = measure.quantity === "reflectivityDbz";
   const values = new Float32Array(cellCount);
   for (let cell = 0; cell < cellCount; cell++) {
     const code = band[cell] as number;
-    const value = (code * tags.gain + tags.offset) * measure.factor;
-    const isDry = isReflectivity && value === Number.NEGATIVE_INFINITY;
-    const isValue = Number.isFinite(value) && (isReflectivity || value >= 0);
-    values[cell] = code !== nodata && (isValue || isDry) ? value : Number.NaN;
+    values[cell] = code === nodata ? Number.NaN : (code * tags.gain + tags.offset) * measure.factor;
   }
   return values;
 }

@@ -89,6 +89,7 @@ async function checkDepth(file: string): Promise<void> {
   });
   // -99 is the fill value; -3 mm cannot be.
   expect([...depth!.values]).toEqual([1.5, 0, Number.NaN, Number.NaN]);
+  expect(depth!.remarks).toEqual(["1 cells hold a negative or endless value and count as not observed."]);
   const place = depth!.place as Extract<
     typeof depth extends undefined ? never : GriddedScan["place"],
     { kind: "positions" }
@@ -160,31 +161,31 @@ describe.skipIf(!FOREIGN_TOOLS)("written anew (skipped unless RAINRECKON_FOREIGN
   });
 });
 
-describe("ODIM_H5 composites", () => {
-  const where = {
-    projdef: "+proj=stere +lat_0=90 +lon_0=10 +lat_ts=60 +ellps=WGS84",
-    xsize: GATES,
-    ysize: RAYS,
-    xscale: 1000,
-    yscale: 2000,
-    UL_lon: 5,
-    UL_lat: 55,
-  };
-  const what = {
-    product: "COMP",
-    startdate: "20310503",
-    starttime: "115500",
-    enddate: "20310503",
-    endtime: "120000",
-  };
-  const composite = (quantity: string, over: object = {}) =>
-    writeOdim({
-      ...ROOT,
-      what: { ...ROOT.what, object: "COMP" },
-      where: { ...where, ...over },
-      datasets: [{ what, data: [{ ...MOMENT, what: { ...MOMENT.what, quantity } }] }],
-    });
+const where = {
+  projdef: "+proj=stere +lat_0=90 +lon_0=10 +lat_ts=60 +ellps=WGS84",
+  xsize: GATES,
+  ysize: RAYS,
+  xscale: 1000,
+  yscale: 2000,
+  UL_lon: 5,
+  UL_lat: 55,
+};
+const what = {
+  product: "COMP",
+  startdate: "20310503",
+  starttime: "115500",
+  enddate: "20310503",
+  endtime: "120000",
+};
+const composite = (quantity: string, over: object = {}) =>
+  writeOdim({
+    ...ROOT,
+    what: { ...ROOT.what, object: "COMP" },
+    where: { ...where, ...over },
+    datasets: [{ what, data: [{ ...MOMENT, what: { ...MOMENT.what, quantity, offset: 0 } }] }],
+  });
 
+describe("ODIM_H5 composites", () => {
   test.each([
     ["RATE", "rainRateMmPerHour", 0],
     ["ACRR", "depthMm", 0],
@@ -200,8 +201,8 @@ describe("ODIM_H5 composites", () => {
       startEpochMs: noon - 5 * MINUTE,
       endEpochMs: noon,
     });
-    // Codes 0, 1, 2, … at gain 0.5 and offset -32; 0 is undetect.
-    expect([...layer!.values.slice(0, 3)]).toEqual([undetected, -31.5, -31]);
+    // Codes 0, 1, 2, … at gain 0.5 and offset 0; 0 is undetect.
+    expect([...layer!.values.slice(0, 3)]).toEqual([undetected, 0.5, 1]);
   });
 
   test("is told from a polar scan, either way round", async () => {
@@ -286,6 +287,7 @@ describe("damage", () => {
     "CF NetCDF-3": () => [readFileSync(fixture("grid-rate.nc")), readFileSync(fixture("grid-depth.nc"))],
     "CF NetCDF-4": () => [readFileSync(fixture("grid-rate-hdf5.nc"))],
     GeoTIFF: () => [readFileSync(fixture("grid-rate.tif"))],
+    "ODIM_H5 composite": () => [readFileSync(composite("RATE"))],
   };
 
   async function readAll(file: string): Promise<"read" | "refused"> {

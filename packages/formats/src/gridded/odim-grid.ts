@@ -10,6 +10,7 @@ import {
   type GridPlace,
   MAX_CELLS,
 } from "./gridded-file.ts";
+import { soundLayer } from "./sound-values.ts";
 
 const QUANTITIES: Readonly<Record<string, GriddedQuantity>> = {
   RATE: "rainRateMmPerHour",
@@ -81,7 +82,7 @@ function readStructure(file: Hdf5File, root: Level): GriddedFile {
       const layer = layers[index];
       if (layer === undefined)
         throw new RangeError(`there is no layer ${index}; ${file.path} has ${layers.length}`);
-      return { ...layer.header, values: valuesOf(file, layer) };
+      return soundLayer(layer.header, valuesOf(file, layer));
     },
     close: () => file.close(),
   };

@@ -3,7 +3,7 @@ import { fileURLToPath } from "node:url";
 import { gzipSync } from "node:zlib";
 import { InputError, type Sweep } from "@rainreckon/core";
 import { afterAll, beforeAll, expect, test } from "vitest";
-import { smallVolume, volumeHeader } from "../../test/level2-bytes.ts";
+import { evenMessage1Turn, smallVolume, volumeHeader } from "../../test/level2-bytes.ts";
 import { mutant, random } from "../../test/mutations.ts";
 import { removeTemporary, temporaryPath } from "../../test/odim-fixture.ts";
 import { formatsReady, openScan, recogniseScan } from "./scan-formats.ts";
@@ -20,11 +20,14 @@ const SAMPLES = {
   "CfRadial 2": () => [fixture("cfradial2.nc")],
   "Archive Level II, plain and gzip": () => {
     const plain = Buffer.concat([volumeHeader(), ...smallVolume()]);
-    return [plain, plain, gzipSync(plain)];
+    const old = Buffer.concat([volumeHeader("ARCHIVE2."), ...evenMessage1Turn().slice(0, 3)]);
+    return [plain, old, gzipSync(plain)];
   },
   "Archive Level II, bzip2 records": () => [fixture("level2-records.ar2v")],
 } as const;
 
+/** Message 1 does not say where its radar stands. */
+const places = new Map([["ICAO-KZZZ", { lonDeg: -100.25, latDeg: 40.5, antennaHeightM: 520 }]]);
 const MUTATIONS = 2000;
 const LONGEST_MS = 5000;
 
@@ -45,7 +48,7 @@ function readAll(path: string): "read" | "refused" {
     }
   };
   attempt(() => {
-    const file = openScan(path);
+    const file = openScan(path, { places });
     try {
       refused ||= file.inspect().length > 0;
       file.headers.forEach((header, index) => {
@@ -118,7 +121,7 @@ test.each(Object.entries(SAMPLES))("%s: undamaged, it is read", (_, make) => {
   for (const [index, bytes] of make().entries()) {
     const path = temporaryPath(`whole-${index}`);
     writeFileSync(path, bytes);
-    const file = openScan(path);
+    const file = openScan(path, { places });
     expect(file.headers.length).toBeGreaterThan(0);
     expect(file.inspect()).toEqual([]);
     file.close();
