@@ -12,7 +12,9 @@ export type GaugeFault =
   | "missing-hours"
   | "duplicated-line"
   | "outside-grid"
-  | "no-station-entry";
+  | "no-station-entry"
+  | "partly-blocked"
+  | "misplaced";
 
 /** A gauge of the invented networks: where it stands in a district 160 km wide, and its fault. */
 export interface GaugePlan {
@@ -97,9 +99,10 @@ export function recordGauges(
   plane: Plane,
   sizeKm: number,
   minutes: number,
+  plans: readonly GaugePlan[] = GAUGES,
 ): GaugeRecord[] {
   const scale = sizeKm / 160;
-  return GAUGES.map((plan) => {
+  return plans.map((plan) => {
     const far = plan.fault === "outside-grid";
     const xKm = plan.xKm * (far ? 1 : scale);
     const yKm = plan.yKm * (far ? 1 : scale);
@@ -201,6 +204,9 @@ function spikeStep(steps: number): number {
 
 const SPIKE_MM = 87;
 
+/** How far east of its place the stations file puts a misplaced gauge: some 14 km. */
+const MISPLACED_LON_DEG = 0.2;
+
 function faultDetail(fault: GaugeFault, record: GaugeRecord, plane: Plane, startEpochMs: number): string {
   const minutes = record.trueMm.length;
   const at = (minute: number): string => isoMinute(startEpochMs + minute * 60_000);
@@ -227,6 +233,10 @@ function faultDetail(fault: GaugeFault, record: GaugeRecord, plane: Plane, start
     }
     case "no-station-entry":
       return "has readings but no line in the stations file";
+    case "partly-blocked":
+      return "one tip in three is written: the funnel lets a third of the water through";
+    case "misplaced":
+      return `the stations file puts it ${MISPLACED_LON_DEG} degrees too far east`;
   }
 }
 
@@ -234,12 +244,16 @@ function isoMinute(epochMs: number): string {
   return `${new Date(epochMs).toISOString().slice(0, 19)}Z`;
 }
 
+function everyThirdTip(record: GaugeRecord): GaugeRecord {
+  return { ...record, tipSeconds: record.tipSeconds.filter((_, tip) => tip % 3 === 2) };
+}
+
 function moorCsv(records: readonly GaugeRecord[], startEpochMs: number): string {
   const step = 5;
   const lines = ["gauge,time,value_mm,quality"];
   for (const record of records) {
     const { fault, id } = record.plan;
-    const values = tipsPerStep(record, step);
+    const values = tipsPerStep(fault === "partly-blocked" ? everyThirdTip(record) : record, step);
     const late = fault === "clock-60-min-late" ? 60 : 0;
     values.forEach((value, i) => {
       const end = (i + 1) * step;
@@ -294,7 +308,7 @@ function stationsCsv(records: readonly GaugeRecord[], heightM: (xKm: number, yKm
       [
         plan.id,
         plan.name,
-        place.lonDeg.toFixed(5),
+        (place.lonDeg + (plan.fault === "misplaced" ? MISPLACED_LON_DEG : 0)).toFixed(5),
         place.latDeg.toFixed(5),
         heightM(xKm, yKm).toFixed(0),
       ].join(","),

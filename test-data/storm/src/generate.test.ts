@@ -6,7 +6,8 @@ import { gunzipSync } from "node:zlib";
 import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { runStormCommand } from "./cli.ts";
 import { GAUGES } from "./gauges.ts";
-import { generateStorm, TRUTH_RATE_STEP_MM_PER_HOUR } from "./generate.ts";
+import { generateStorm } from "./generate.ts";
+import { TRUTH_RATE_STEP_MM_PER_HOUR } from "./grids.ts";
 import { TINY } from "./presets.ts";
 
 const folder = mkdtempSync(join(tmpdir(), "storm-"));

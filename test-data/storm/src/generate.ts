@@ -1,14 +1,18 @@
+import { createHash } from "node:crypto";
 import { mkdirSync, writeFileSync } from "node:fs";
 import { join } from "node:path";
 import { gzipSync } from "node:zlib";
 import { catchmentsGeoJson, holds, type PlaneCatchment, planeCatchments } from "./catchments.ts";
 import { equalAreaPlane, type Plane } from "./earth.ts";
+import { GateTruth } from "./gate-truth.ts";
 import { type GaugeFiles, type GaugeRecord, recordGauges, writeGauges } from "./gauges.ts";
 import { heightGeoTiff } from "./geotiff.ts";
-import { cutTruth, type TruthGrid, truthGrid, weatherLattice } from "./grids.ts";
+import { cutTruth, TRUTH_RATE_STEP_MM_PER_HOUR, type TruthGrid, truthGrid, weatherLattice } from "./grids.ts";
 import { odimDateTime, type WrittenSweep, writeSweeps } from "./odim.ts";
-import type { StormPreset } from "./presets.ts";
+import type { StormPreset, WorldTold } from "./presets.ts";
+import { interferenceRays } from "./interference.ts";
 import {
+  emptySweepTruth,
   measureSweep,
   NOISE_STRIDE,
   RAY_COUNT,
@@ -23,13 +27,12 @@ import { emptyMoment, type Moment, Weather } from "./weather.ts";
 /** The middle of the invented district: open sea, so that it can be taken for no place. */
 export const DISTRICT_CENTRE = { lonDeg: 3, latDeg: 52.5 };
 
-/** Rates in truth/rain_rate.u16.gz are stored in steps of this many mm/h. */
-export const TRUTH_RATE_STEP_MM_PER_HOUR = 0.05;
-
 /** A preset and where to put the storm. */
 export interface StormOptions extends StormPreset {
   /** Folder to write into; made where it is missing. Files of the same names are overwritten. */
   readonly folder: string;
+  /** Write what is true at every gate too; see `GateTruth`. */
+  readonly gates?: boolean;
 }
 
 /** What was written. */
@@ -67,6 +70,7 @@ export async function generateStorm(
     surroundingsHalfKm: Math.max(lattice.nx, lattice.ny) / 2,
     meanMm: options.meanMm,
     maximumMm: options.maximumMm,
+    pattern: options.pattern,
   });
   for (const folder of ["", "gauges", "truth", ...options.radars.map(({ node }) => join("radar", node))]) {
     mkdirSync(join(options.folder, folder), { recursive: true });
@@ -74,7 +78,7 @@ export async function generateStorm(
 
   const watch = new Watch(options, plane, noiseTable(random));
   const truth = new Truth(grid, options.minutes);
-  const buffers = emptyMoment(lattice, 0);
+  const buffers = emptyMoment(lattice, 0, weather.drift);
   for (let minute = 0; minute < options.minutes; minute++) {
     const due = watch.dueIn(minute);
     const moment = weather.fill(lattice, { ...buffers, minute: minute + 0.5 }, due.length > 0);
@@ -83,13 +87,21 @@ export async function generateStorm(
     onProgress?.(minute + 1, options.minutes);
   }
 
-  const records = recordGauges(weather, random, plane, options.sizeKm, options.minutes);
+  const records = recordGauges(
+    weather,
+    random,
+    plane,
+    options.sizeKm,
+    options.minutes,
+    options.gauges,
+  );
   const ground = (xKm: number, yKm: number): number => terrainM(xKm, yKm, options.ridges);
   const gauges = writeGauges(records, plane, options.startEpochMs, ground);
   const catchments = planeCatchments(options.sizeKm);
   writeDistrict(options, plane, gauges, catchments, ground);
   truth.write(join(options.folder, "truth"));
-  const told = truthJson(options, plane, grid, truth, records, gauges, catchments, watch);
+  watch.gates?.write(join(options.folder, "truth"));
+  const told = truthJson(options, plane, grid, truth, records, gauges, catchments, watch, weather);
   writeFileSync(join(options.folder, "truth", "truth.json"), `${JSON.stringify(told, null, 1)}\n`);
   return {
     radarFiles: watch.filesWritten,
@@ -107,6 +119,14 @@ interface DueSweep {
   readonly startSecond: number;
 }
 
+/** A sweep that another transmitter fell into. */
+interface SpikedSweep {
+  readonly node: string;
+  readonly start: string;
+  readonly elevationDeg: number;
+  readonly azimuthsDeg: readonly number[];
+}
+
 /** The radars at work: knows what is measured when, and when a file is complete. */
 class Watch {
   readonly #options: StormOptions;
@@ -114,6 +134,9 @@ class Watch {
   readonly #noise: Float32Array;
   readonly #geometries = new Map<RadarPlan, SweepGeometry[]>();
   readonly #waiting = new Map<RadarPlan, WrittenSweep[]>();
+  readonly #spikes: SpikedSweep[] = [];
+  readonly #digest = createHash("sha256");
+  readonly gates: GateTruth | undefined;
   #sweepsMade = 0;
   filesWritten = 0;
 
@@ -121,11 +144,19 @@ class Watch {
     this.#options = options;
     this.#plane = plane;
     this.#noise = noise;
+    this.gates = options.gates === true ? new GateTruth() : undefined;
     for (const radar of options.radars) {
       this.#geometries.set(
         radar,
         radar.sweeps.map(({ elevationDeg }) =>
-          sweepGeometry(radar, elevationDeg, plane, options.ridges, options.meltingLayer),
+          sweepGeometry(
+            radar,
+            elevationDeg,
+            plane,
+            options.ridges,
+            options.meltingLayer,
+            options.turbines,
+          ),
         ),
       );
       this.#waiting.set(radar, []);
@@ -155,13 +186,33 @@ class Watch {
 
   async measure(due: DueSweep, moment: Moment, lattice: ReturnType<typeof weatherLattice>): Promise<void> {
     const { radar, index, startSecond } = due;
-    const moments = measureSweep(radar, this.geometryOf(radar)[index]!, lattice, moment, startSecond / 60, {
-      table: this.#noise,
-      start: this.#sweepsMade++ * NOISE_STRIDE,
-    });
     const startEpochMs = this.#options.startEpochMs + startSecond * 1000;
+    const { elevationDeg } = radar.sweeps[index]!;
+    const { seed, interference } = this.#options;
+    const spikeRays =
+      interference?.node === radar.node ? interferenceRays(interference, seed, this.#sweepsMade) : [];
+    if (spikeRays.length > 0) {
+      this.#spikes.push({
+        node: radar.node,
+        start: new Date(startEpochMs).toISOString(),
+        elevationDeg,
+        azimuthsDeg: spikeRays.map((ray) => ray + 0.5),
+      });
+    }
+    const truth = this.gates === undefined ? undefined : emptySweepTruth(radar);
+    const moments = measureSweep(
+      radar,
+      this.geometryOf(radar)[index]!,
+      lattice,
+      moment,
+      startSecond / 60,
+      { table: this.#noise, start: this.#sweepsMade++ * NOISE_STRIDE },
+      { spikeRays, spikeDbzAt1Km: interference?.dbzAt1Km ?? 0, truth },
+    );
+    for (const stored of Object.values(moments)) this.#digest.update(stored);
+    if (truth !== undefined) this.gates?.add(radar, elevationDeg, startEpochMs, truth);
     const sweep: WrittenSweep = {
-      elevationDeg: radar.sweeps[index]!.elevationDeg,
+      elevationDeg,
       startEpochMs,
       endEpochMs: startEpochMs + radar.sweepSeconds * 1000,
       moments,
@@ -170,6 +221,15 @@ class Watch {
     waiting.push(sweep);
     if (radar.files === "volumes" && waiting.length < radar.sweeps.length) return;
     await this.#writeFile(radar, due.roundEpochMs, waiting.splice(0));
+  }
+
+  get spikes(): readonly SpikedSweep[] {
+    return this.#spikes;
+  }
+
+  /** SHA-256 over all stored moments in the order in which they were made; to be asked for once. */
+  scansSha256(): string {
+    return this.#digest.digest("hex");
   }
 
   async #writeFile(radar: RadarPlan, roundEpochMs: number, sweeps: readonly WrittenSweep[]): Promise<void> {
@@ -294,12 +354,14 @@ function truthJson(
   gauges: GaugeFiles,
   catchments: readonly PlaneCatchment[],
   watch: Watch,
+  weather: Weather,
 ) {
   const iso = (epochMs: number): string => new Date(epochMs).toISOString();
   const half = options.sizeKm * 0.3;
   const district = summarise(truth, (x, y) => Math.abs(x) <= half && Math.abs(y) <= half);
   return {
     note: "Invented: Saltermoor is no place, and this storm never fell.",
+    ...(options.world === undefined ? {} : { world: worldJson(options, options.world, watch, weather) }),
     seed: options.seed,
     window: { from: iso(options.startEpochMs), to: iso(options.startEpochMs + options.minutes * 60_000) },
     grid,
@@ -352,6 +414,41 @@ function truthJson(
         })),
       })),
     },
+  };
+}
+
+/** The truth about a world: its words, and where its artefacts lie. */
+function worldJson(options: StormOptions, world: WorldTold, watch: Watch, weather: Weather) {
+  return {
+    ...world,
+    scansSha256: watch.scansSha256(),
+    driftKmPerMinute: weather.drift,
+    dropNumberFactor: options.pattern?.dropNumberFactor ?? 1,
+    hailCores: weather.cells
+      .filter(({ hailDbz }) => hailDbz !== undefined)
+      .map((cell) => ({
+        xKmAtHeight: round3(cell.xKm),
+        yKmAtHeight: round3(cell.yKm),
+        xKmPerMinute: round3(cell.xKmPerMinute),
+        yKmPerMinute: round3(cell.yKmPerMinute),
+        heightMinute: round3(cell.midMinute),
+        lifeMinutes: round3(cell.lifeMinutes),
+        hailDbz: round3(cell.hailDbz!),
+      })),
+    turbines: options.turbines ?? [],
+    turbineGates: options.radars.flatMap((radar) =>
+      watch.geometryOf(radar).map(({ elevationDeg, turbine }) => ({
+        node: radar.node,
+        elevationDeg,
+        gates: [...turbine.keys()]
+          .filter((index) => turbine[index] === 1)
+          .map((index) => ({
+            azimuthDeg: Math.floor(index / radar.gateCount) + 0.5,
+            rangeM: ((index % radar.gateCount) + 0.5) * radar.gateM,
+          })),
+      })),
+    ),
+    interference: watch.spikes,
   };
 }
 

@@ -1,6 +1,9 @@
 import type { RadarPlan } from "./radar.ts";
 import type { Lattice } from "./weather.ts";
 
+/** True rain rates are stored in steps of this many mm/h. */
+export const TRUTH_RATE_STEP_MM_PER_HOUR = 0.05;
+
 /** The truth grid: square cells of 1 km in the equal-area plane, as many as the district is wide. */
 export interface TruthGrid {
   readonly crs: string;

@@ -5,7 +5,7 @@ export {
   generateStorm,
   type StormOptions,
   type StormSummary,
-  TRUTH_RATE_STEP_MM_PER_HOUR,
 } from "./generate.ts";
+export { TRUTH_RATE_STEP_MM_PER_HOUR } from "./grids.ts";
 export { DEMO, PRESETS, SMALL, type StormPreset, TINY } from "./presets.ts";
 export type { RadarPlan } from "./radar.ts";

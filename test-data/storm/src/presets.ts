@@ -1,5 +1,7 @@
-import type { MeltingLayer, RadarPlan } from "./radar.ts";
+import type { GaugePlan } from "./gauges.ts";
+import type { MeltingLayer, RadarPlan, Turbine } from "./radar.ts";
 import type { Ridge } from "./terrain.ts";
+import type { WeatherPattern } from "./weather.ts";
 
 /** How large a storm is, who watches it, and how hard it rains. */
 export interface StormPreset {
@@ -16,6 +18,29 @@ export interface StormPreset {
   /** Depth in the middle of the district that the storm is scaled to: mean, and wettest place. */
   readonly meanMm: number;
   readonly maximumMm: number;
+  /** The world that this storm belongs to; absent for the demo's storms. */
+  readonly world?: WorldTold;
+  /** Weather of another kind than the demo's; then `meanMm` and `maximumMm` are not used. */
+  readonly pattern?: WeatherPattern;
+  /** Absent for the gauges of the demo, faults and all. */
+  readonly gauges?: readonly GaugePlan[];
+  readonly turbines?: readonly Turbine[];
+  readonly interference?: Interference;
+}
+
+/** What truth.json says in words about a world. */
+export interface WorldTold {
+  readonly name: string;
+  readonly says: string;
+  readonly planted: readonly string[];
+}
+
+/** Another transmitter that falls into a radar's rays: some sweeps, one to three rays each. */
+export interface Interference {
+  readonly node: string;
+  /** Share of the sweeps that are hit. */
+  readonly share: number;
+  readonly dbzAt1Km: number;
 }
 
 const SOUTH_RADAR: RadarPlan = {

@@ -2,7 +2,7 @@ import { beamMean, beamPosition, blockedShare, type EchoProfile, profileDb } fro
 import { type Plane, travel } from "./earth.ts";
 import { mixBits, NOISE_LENGTH } from "./random.ts";
 import { type Ridge, terrainM } from "./terrain.ts";
-import { type Lattice, type Moment, STORM_X_KM_PER_MINUTE, STORM_Y_KM_PER_MINUTE } from "./weather.ts";
+import type { Lattice, Moment } from "./weather.ts";
 
 const DEG = Math.PI / 180;
 
@@ -39,6 +39,16 @@ export interface RadarPlan {
   readonly differentialLossDbPerDeg: number;
   readonly systemPhaseDeg: number;
   readonly clutterSeed: number;
+  /** No echo of the ground at all. */
+  readonly clutterFree?: boolean;
+}
+
+/** A wind turbine: one gate of echo that stays in place, moves within, and passes the clutter filter. */
+export interface Turbine {
+  readonly xKm: number;
+  readonly yKm: number;
+  /** Echo in the lowest sweep, dBZ. */
+  readonly dbz: number;
 }
 
 export const RAY_COUNT = 360;
@@ -53,6 +63,8 @@ export interface SweepGeometry {
   /** Echo of the ground before and after the clutter filter, mm6 m-3; 0 where there is none. */
   readonly clutterZ: Float32Array;
   readonly residualClutterZ: Float32Array;
+  /** 1 where a turbine stands, else 0. */
+  readonly turbine: Uint8Array;
   readonly heightKm: Float32Array;
   /** Mean over the beam of the two vertical profiles, as factors of Z. */
   readonly widespreadFactor: Float32Array;
@@ -94,6 +106,7 @@ export function sweepGeometry(
   plane: Plane,
   ridges: readonly Ridge[],
   layer: MeltingLayer,
+  turbines: readonly Turbine[] = [],
 ): SweepGeometry {
   const { gateCount } = radar;
   const gates = RAY_COUNT * gateCount;
@@ -104,6 +117,7 @@ export function sweepGeometry(
     open: new Float32Array(gates),
     clutterZ: new Float32Array(gates),
     residualClutterZ: new Float32Array(gates),
+    turbine: new Uint8Array(gates),
     heightKm: new Float32Array(gateCount),
     widespreadFactor: new Float32Array(gateCount),
     showerFactor: new Float32Array(gateCount),
@@ -116,8 +130,28 @@ export function sweepGeometry(
     placeRay(radar, geometry, arcKm, ray, plane);
     meetTerrain(radar, geometry, ray, ridges);
   }
+  for (const turbine of turbines) raiseTurbine(geometry, turbine);
   return geometry;
 }
+
+/** Turning blades defeat the clutter filter: 1 dB is all that it takes. A turbine out of reach is none. */
+function raiseTurbine(geometry: SweepGeometry, turbine: Turbine): void {
+  let nearest = -1;
+  let distance2 = 1;
+  geometry.xKm.forEach((xKm, index) => {
+    const here2 = (xKm - turbine.xKm) ** 2 + (geometry.yKm[index]! - turbine.yKm) ** 2;
+    if (here2 >= distance2) return;
+    distance2 = here2;
+    nearest = index;
+  });
+  if (nearest === -1) return;
+  geometry.turbine[nearest] = 1;
+  geometry.clutterZ[nearest] = fromDb(turbine.dbz - CLUTTER_DB_PER_DEG * (geometry.elevationDeg - 0.5));
+  geometry.residualClutterZ[nearest] = geometry.clutterZ[nearest]! * fromDb(-1);
+}
+
+/** How much weaker things on the ground echo for each degree that the beam is raised. */
+const CLUTTER_DB_PER_DEG = 11;
 
 function rangeKmOf(radar: RadarPlan, gate: number): number {
   return ((gate + 0.5) * radar.gateM) / 1000;
@@ -220,12 +254,13 @@ function clutterAt(
   gate: number,
   hillside: number,
 ): { z: number; left: number } {
+  if (radar.clutterFree) return { z: 0, left: 0 };
   const patch = mixBits(radar.clutterSeed + Math.floor(ray / 3) * 7919 + Math.floor(gate / 2) * 104729);
   const own = mixBits(patch + ray * 31 + gate);
   const chance = Math.max(hillside > 0.02 ? 0.95 : 0, 0.4 * Math.exp(-rangeKmOf(radar, gate) / 9));
   if (patch / 2 ** 32 >= chance) return { z: 0, left: 0 };
   const steepnessDb = hillside > 0.02 ? 20 + 10 * Math.log10(hillside) : 0;
-  const heightLossDb = 11 * (elevationDeg - 0.5);
+  const heightLossDb = CLUTTER_DB_PER_DEG * (elevationDeg - 0.5);
   const dbz = 30 + steepnessDb + 9 * ((own & 0xffff) / 65536 - 0.5) * 2 - heightLossDb;
   // The filter takes 18 to 34 dB away, but fails at one patch in eighteen.
   const filterDb = (own >>> 16) % 18 === 0 ? 4 : 18 + 16 * ((own >>> 16) / 65536);
@@ -278,6 +313,48 @@ export interface Noise {
   readonly start: number;
 }
 
+/** Why a gate's echo is not simply rain: bits of `SweepTruth.flags`. */
+export const GATE_FLAGS = {
+  groundClutter: 1,
+  turbine: 2,
+  interference: 4,
+  /** Terrain takes half of the power or more. */
+  blocked: 8,
+  /** Hail makes half of the echo or more. */
+  hail: 16,
+  /** Half of the beam or more lies in the melting layer. */
+  melting: 32,
+} as const;
+
+/** What is true at every gate of one sweep. Shape [360, gate]. */
+export interface SweepTruth {
+  /** Two-way loss from the antenna to the gate's centre. */
+  readonly lossDb: Float32Array;
+  /** Rain at the ground under the gate as the ray passes. */
+  readonly rateMmPerHour: Float32Array;
+  readonly flags: Uint8Array;
+}
+
+/** An empty truth for the sweeps of a radar. */
+export function emptySweepTruth(radar: RadarPlan): SweepTruth {
+  const gates = RAY_COUNT * radar.gateCount;
+  return {
+    lossDb: new Float32Array(gates),
+    rateMmPerHour: new Float32Array(gates),
+    flags: new Uint8Array(gates),
+  };
+}
+
+/** What one sweep meets beyond the weather, and where to put down what was true of it. */
+export interface SweepExtras {
+  /** Rays that another transmitter falls into. */
+  readonly spikeRays?: readonly number[];
+  /** Strength of the transmitter: the echo that it feigns at 1 km; it grows by 20 log r. */
+  readonly spikeDbzAt1Km?: number;
+  /** Filled where given. */
+  readonly truth?: SweepTruth | undefined;
+}
+
 /**
  * Measures one sweep.
  *
@@ -291,6 +368,7 @@ export function measureSweep(
   moment: Moment,
   startMinute: number,
   noise: Noise,
+  extras: SweepExtras = {},
 ): SweepMoments {
   const gates = RAY_COUNT * radar.gateCount;
   const wide = radar.reflectivityStorage === "uint16";
@@ -305,7 +383,7 @@ export function measureSweep(
   for (let ray = 0; ray < RAY_COUNT; ray++) {
     const turn = (ray - radar.firstRay + RAY_COUNT) % RAY_COUNT;
     const rayMinute = startMinute + (radar.sweepSeconds * ((turn + 0.5) / RAY_COUNT)) / 60;
-    measureRay(radar, geometry, lattice, moment, rayMinute - moment.minute, ray, noise, moments);
+    measureRay(radar, geometry, lattice, moment, rayMinute - moment.minute, ray, noise, extras, moments);
   }
   return moments;
 }
@@ -319,6 +397,7 @@ function measureRay(
   lateMinutes: number,
   ray: number,
   noise: Noise,
+  extras: SweepExtras,
   moments: SweepMoments,
 ): void {
   const { gateCount } = radar;
@@ -330,14 +409,16 @@ function measureRay(
   const phase = codingOf("PHIDP", radar);
   const azimuth = (ray + 0.5) * DEG;
   const cosElevation = Math.cos(geometry.elevationDeg * DEG);
-  const towards = Math.sin(azimuth) * STORM_X_KM_PER_MINUTE + Math.cos(azimuth) * STORM_Y_KM_PER_MINUTE;
+  const { xKmPerMinute, yKmPerMinute } = moment.drift;
+  const towards = Math.sin(azimuth) * xKmPerMinute + Math.cos(azimuth) * yKmPerMinute;
   // The storm as a whole has moved on since the minute that the lattice shows.
-  const west = lattice.westKm + STORM_X_KM_PER_MINUTE * lateMinutes;
-  const south = lattice.southKm + STORM_Y_KM_PER_MINUTE * lateMinutes;
+  const west = lattice.westKm + xKmPerMinute * lateMinutes;
+  const south = lattice.southKm + yKmPerMinute * lateMinutes;
   const nx = lattice.nx;
   const mask = NOISE_LENGTH - 1;
   let dice = noise.start + ray * 4099;
   let rainPhaseDeg = 0;
+  const spikeZAt1Km = extras.spikeRays?.includes(ray) ? fromDb(extras.spikeDbzAt1Km ?? 0) : 0;
 
   for (let gate = 0; gate < gateCount; gate++) {
     const index = ray * gateCount + gate;
@@ -358,49 +439,85 @@ function measureRay(
       (2 * gateKm * geometry.rainShare[gate]! * moment.phaseTimesWavelength[nearest]!) / radar.wavelengthM;
     const phaseDeg = rainPhaseDeg + stepDeg / 2;
     rainPhaseDeg += stepDeg;
-    if (groundZ === 0 && clutterZ === 0) continue;
+    const spikeZ = spikeZAt1Km === 0 ? 0 : spikeZAt1Km * rangeKmOf(radar, gate) ** 2;
+    if (extras.truth !== undefined) {
+      const flags = flagsOf(geometry, moment, index, gate, nearest, spikeZ);
+      noteTruth(extras.truth, index, radar.lossDbPerDeg * phaseDeg, moment.rateMmPerHour[nearest]!, flags);
+    }
+    if (groundZ === 0 && clutterZ === 0 && spikeZ === 0) continue;
 
     const shower = moment.showerShare[nearest]!;
     const aloft = shower * geometry.showerFactor[gate]! + (1 - shower) * geometry.widespreadFactor[gate]!;
     const rainZ = groundZ * aloft * geometry.open[index]! * fromDb(-radar.lossDbPerDeg * phaseDeg);
     const noiseZ = geometry.noiseZ[gate]!;
-    if (rainZ + clutterZ < noiseZ) continue;
+    if (rainZ + clutterZ + spikeZ < noiseZ) continue;
 
-    const flicker = fromDb(2 * noise.table[dice++ & mask]!);
+    const restless = geometry.turbine[index]!;
+    const flicker = fromDb((2 + 3 * restless) * noise.table[dice++ & mask]!);
     const jitterDb = 0.7 * noise.table[dice++ & mask]!;
-    const totalZ = rainZ + clutterZ * flicker;
+    const totalZ = rainZ + clutterZ * flicker + spikeZ;
     moments.TH[index] = encode(10 * Math.log10(totalZ) + radar.calibrationOffsetDb + jitterDb, z);
     const leftZ = geometry.residualClutterZ[index]! * flicker;
-    const keptZ = rainZ + leftZ;
+    const keptZ = rainZ + leftZ + spikeZ;
     if (keptZ < noiseZ) continue;
     moments.DBZH[index] = encode(10 * Math.log10(keptZ) + radar.calibrationOffsetDb + jitterDb, z);
 
-    const ground = leftZ / keptZ;
+    const foreign = (leftZ + spikeZ) / keptZ;
+    // Blades turn and another transmitter is out of step: neither stands still as the ground does.
+    const wild = (restless * leftZ + spikeZ) / keptZ;
+    const stirred = wild === 0 ? 0 : wild * radar.nyquistMPerS * noise.table[dice++ & mask]!;
     const heightKm = geometry.heightKm[gate]!;
     const wind = (towards * 1000 * (0.8 + 0.15 * heightKm) * cosElevation) / 60;
     moments.VRADH[index] = encode(
-      foldVelocity((1 - ground) * (wind + 0.7 * noise.table[dice++ & mask]!), radar.nyquistMPerS),
+      foldVelocity((1 - foreign) * (wind + 0.7 * noise.table[dice++ & mask]!) + stirred, radar.nyquistMPerS),
       velocity,
     );
     const melting = geometry.meltingShare[gate]! * (1 - shower);
+    // Tumbling hail looks round on the mean, and melting hail of all sizes correlates badly.
+    const hail = moment.hailShare[nearest]!;
     const zdrDb =
-      geometry.rainShare[gate]! * moment.zdrDb[nearest]! +
+      geometry.rainShare[gate]! * moment.zdrDb[nearest]! * (1 - hail) +
       melting -
       radar.differentialLossDbPerDeg * phaseDeg;
     moments.ZDR[index] = encode(
-      (1 - ground) * zdrDb + (0.2 + 2.5 * ground) * noise.table[dice++ & mask]!,
+      (1 - foreign) * zdrDb + (0.2 + 2.5 * foreign) * noise.table[dice++ & mask]!,
       zdr,
     );
     // Weak echo correlates less, because noise does not correlate at all: signal over signal plus noise.
     const signal = keptZ / (keptZ + noiseZ * 0.1);
-    const rhohv = ((0.99 - 0.08 * melting) * (1 - ground) + 0.6 * ground) * signal;
+    const rhohv = ((0.99 - 0.08 * melting - 0.07 * hail) * (1 - foreign) + 0.6 * foreign) * signal;
     moments.RHOHV[index] = encode(
-      Math.min(1, rhohv + (0.004 + 0.12 * ground) * noise.table[dice++ & mask]!),
+      Math.min(1, rhohv + (0.004 + 0.12 * foreign) * noise.table[dice++ & mask]!),
       rho,
     );
-    const wildDeg = (1.5 + 60 * ground) * noise.table[dice++ & mask]!;
+    const wildDeg = (1.5 + 60 * foreign) * noise.table[dice++ & mask]!;
     moments.PHIDP[index] = encode((radar.systemPhaseDeg + phaseDeg + wildDeg + 720) % 360, phase);
   }
+}
+
+function flagsOf(
+  geometry: SweepGeometry,
+  moment: Moment,
+  index: number,
+  gate: number,
+  cell: number,
+  spikeZ: number,
+): number {
+  const turbine = geometry.turbine[index] === 1;
+  return (
+    (geometry.clutterZ[index]! > 0 && !turbine ? GATE_FLAGS.groundClutter : 0) |
+    (turbine ? GATE_FLAGS.turbine : 0) |
+    (spikeZ > 0 ? GATE_FLAGS.interference : 0) |
+    (geometry.open[index]! <= 0.5 ? GATE_FLAGS.blocked : 0) |
+    (moment.hailShare[cell]! >= 0.5 ? GATE_FLAGS.hail : 0) |
+    (geometry.meltingShare[gate]! >= 0.5 ? GATE_FLAGS.melting : 0)
+  );
+}
+
+function noteTruth(truth: SweepTruth, index: number, lossDb: number, rate: number, flags: number): void {
+  truth.lossDb[index] = lossDb;
+  truth.rateMmPerHour[index] = rate;
+  truth.flags[index] = flags;
 }
 
 /** A ratio from decibels; `exp` because the power operator is several times slower, and this runs per gate. */
