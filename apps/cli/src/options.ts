@@ -114,10 +114,7 @@ export const flags = {
   dryRun: () =>
     new Option("--dry-run", "say what would be done and what it takes: scans, memory, disk, minutes"),
   workers: () =>
-    new Option(
-      "--workers <n>",
-      "scans are worked on by so many processors at once; the results are the same bytes",
-    )
+    new Option("--workers <n>", "number of processors to use; the results are the same to the byte")
       .argParser(through(wholeNumber(1, 64)))
       .default(1),
   rate: () =>

@@ -130,7 +130,7 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
     ],
     ["scan under two names", /^scans\/zz-copy\.h5: same bytes as scans\/round-15\.h5; nothing to do/],
     ["gauge without a station", /^net homeless: it has readings but no station; add it to the stations file/],
-    ["gauge outside the grid", /^net far: it lies outside the grid; run plan --update/],
+    ["gauge outside the grid", /^net far: it lies outside the grid; widen the grid/],
     [
       "swapped coordinates",
       /^net swapped: its coordinates 52\.6, 3\.1 look swapped: .*; exchange them in the stations file/,
@@ -140,7 +140,7 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
       "polygon that crosses itself",
       /^areas\.geojson, feature \d: catchment "bow": its outline crosses itself near .*; repair/,
     ],
-    ["polygon outside", /^areas\.geojson, catchment out: it lies outside the grid; run plan --update/],
+    ["polygon outside", /^areas\.geojson, catchment out: it lies outside the grid; widen the grid/],
     [
       "polygon partly outside",
       /^areas\.geojson, catchment edge: \d+ % of it lies outside the grid and counts as not observed;/,

@@ -184,7 +184,7 @@ describe("the totals of an invented storm against its truth", () => {
     expect(ids).toContain("007");
     expect(ids).toContain("NO");
     expect(said.stderr).toContain(
-      "moor M13: it lies outside the grid; run plan --update for a grid that holds it\n",
+      "moor M13: it lies outside the grid; widen the grid in the plan (westM, northM, nx, ny), if a radar reaches it\n",
     );
     expect(said.stderr).toContain(
       "saltwater SW-10: it has readings but no station; add it to the stations file",

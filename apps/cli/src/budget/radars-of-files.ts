@@ -1,6 +1,7 @@
 import { statSync } from "node:fs";
 import { InputError, LowestEcho, midEpochMs, type Notice, type SweepHeader } from "@rainreckon/core";
 import { formatsReady, openScan } from "@rainreckon/formats";
+import { counted } from "../ui/numbers.ts";
 import type { KnownRadar } from "./known-radar.ts";
 
 /** So many sweeps of a site are read for their weakest echo; more would tell little else. */
@@ -26,8 +27,9 @@ export async function radarsOfFiles(
   const sites = new Map<string, FoundSweep[]>();
   for (const path of [...new Set(paths)]) {
     try {
-      if (statSync(path, { throwIfNoEntry: false })?.isFile() !== true)
-        throw new InputError("no such file", path, "name scan files that exist");
+      const found = statSync(path, { throwIfNoEntry: false });
+      if (found === undefined) throw new InputError("no such file", path, "name scan files that exist");
+      if (!found.isFile()) throw new InputError("this is a folder", path, "name the scan files in it");
       const scan = openScan(path);
       try {
         for (const [index, header] of scan.headers.entries()) {
@@ -76,7 +78,7 @@ function radarOfSweeps(
   };
   return {
     name: lowest.site.name ?? id,
-    origin: `${id}, ${sweeps.length === 1 ? "1 sweep" : `${sweeps.length} sweeps`} in ${new Set(sweeps.map(({ path }) => path)).size} file(s)`,
+    origin: `${id}, ${counted(sweeps.length, "sweep")} in ${counted(new Set(sweeps.map(({ path }) => path)).size, "file")}`,
     wavelengthM: said((header) => header.wavelengthM),
     beamWidthDeg: said((header) => header.beamWidthDeg),
     gateLengthM: lowest.gateLengthM,

@@ -1,4 +1,4 @@
-import { existsSync, mkdirSync, readFileSync, renameSync, rmSync, writeFileSync } from "node:fs";
+import { existsSync, mkdirSync, readFileSync, renameSync, rmSync, statSync, writeFileSync } from "node:fs";
 import path from "node:path";
 import { InputError } from "@rainreckon/core";
 import type { Command } from "commander";
@@ -85,6 +85,16 @@ function asOneInstant(result: SurveyResult): SurveyResult {
 }
 
 function refuseToOverwrite({ out, update, force }: PlanFlags): void {
+  if (statSync(out, { throwIfNoEntry: false })?.isDirectory() === true) {
+    throw new InputError(
+      "a plan is a file, and this is a folder",
+      out,
+      `write -o ${path.join(out, "plan.yaml")}`,
+      {
+        kind: "usage",
+      },
+    );
+  }
   if (!existsSync(out) || update === true || force === true) return;
   throw new InputError(
     "there is a plan already",
@@ -102,7 +112,7 @@ async function requireTotal({ findings }: SurveyResult, paths: readonly string[]
   const what = findings.radars.length === 0 ? "there is no scan that can be read" : RATE_NOT_TOTAL;
   const fix =
     findings.radars.length === 0
-      ? "name folders that hold ODIM_H5 scans; survey says what is there"
+      ? "name folders that hold scans (ODIM_H5, CfRadial, Archive Level II); survey says what is there"
       : "add scans of at least a second round, or write the plan with --rate for a map of rain rate";
   throw new InputError(what, paths.join(", "), fix, { kind: "no-input" });
 }
@@ -156,7 +166,8 @@ function replaceFile(file: string, text: string): void {
     renameSync(fresh, file);
   } catch (error) {
     rmSync(fresh, { force: true });
-    throw error;
+    // People know the plan that they asked for, not the draft beside it.
+    throw error instanceof Error ? Object.assign(error, { path: file }) : error;
   }
 }
 

@@ -37,7 +37,7 @@ export function registerSurvey(program: Command): void {
       throw new InputError(
         "nothing here can be read",
         paths.join(", "),
-        "name folders with ODIM_H5 scans, gauge tables or GeoJSON",
+        "name folders with scans (ODIM_H5, CfRadial, Archive Level II), gauge tables or maps of catchments",
         {
           kind: "no-input",
         },

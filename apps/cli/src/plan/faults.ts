@@ -25,6 +25,13 @@ function faultsOfIssue(issue: z.core.$ZodIssue, above: PlanPath): PlanFault[] {
   if (issue.code === "unrecognized_keys") {
     const known = keysAt(path);
     return issue.keys.map((key) => {
+      if (known.includes(key)) {
+        return {
+          path: [...path, key],
+          what: `"${key}" does not go with the other keys here`,
+          fix: `write one of the two forms: ${formsAt(path)}`,
+        };
+      }
       const meant = nearest(key, known);
       return {
         path: [...path, key],
@@ -46,13 +53,23 @@ function faultsOfIssue(issue: z.core.$ZodIssue, above: PlanPath): PlanFault[] {
     return [{ path, what: `${name} is missing`, fix: `add it; it is ${formsAt(path)}` }];
   }
   const wanted = describeAt(path);
+  if (issue.code === "too_big" && issue.origin === "string")
+    return [{ path, what: `${name} is too long`, fix: `write at most ${issue.maximum} characters` }];
   return [
     {
       path,
-      what: `${name}: ${sentence(issue.message)}`,
+      what: wrongValue(name, issue),
       fix: wanted === undefined ? "write a value that fits" : `it is ${wanted}`,
     },
   ];
+}
+
+function wrongValue(name: string, issue: z.core.$ZodIssue): string {
+  if (issue.code === "invalid_value") return `${name} is none of the values that it may have`;
+  const isNumber = "origin" in issue && ["number", "int"].includes(issue.origin);
+  if (issue.code === "too_big" && isNumber) return `${name} is too large`;
+  if (issue.code === "too_small" && isNumber) return `${name} is too small`;
+  return `${name}: ${sentence(issue.message)}`;
 }
 
 /** zod's own messages start with a word of their own; inside a line they read on. */

@@ -10,7 +10,7 @@ const duration = z
     /^P(?=\d|T\d)(\d+D)?(T(?=\d)(\d+H)?(\d+M)?(\d+S)?)?$/,
     'write a duration like "PT1H", "PT5M" or "P1D"',
   )
-  .describe("ISO 8601 duration");
+  .describe("an ISO 8601 duration");
 const zone = z.string().min(1).describe('"UTC", a fixed offset like "UTC+01:00", or an IANA zone');
 const dst = z
   .enum(["follow", "never"])

@@ -176,7 +176,11 @@ function tellFaults(
     });
   }
   for (const [remark, count] of countEach(headers.flatMap((header) => header.remarks))) {
-    onNotice({ what: `${remark} (${counted(count, "sweep")})`, where, fix: "nothing, if that is right" });
+    onNotice({
+      what: `${remark.replace(/\.$/, "")} (${counted(count, "sweep")})`,
+      where,
+      fix: "nothing to do, if that is right",
+    });
   }
 }
 

@@ -258,7 +258,7 @@ function mapFinding(file: string, guess: MapGuess, onNotice: (notice: Notice) =>
     onNotice({
       what: `${guess.featureCount - guess.polygonCount} of ${guess.featureCount} features are no areas`,
       where: file,
-      fix: "nothing, if that is right; only polygons become catchments",
+      fix: "nothing to do, if that is right; only polygons become catchments",
     });
   }
   if (id === undefined) {

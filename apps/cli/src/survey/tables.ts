@@ -326,6 +326,6 @@ function placeFault(
   }
   return {
     what: `lies ${counted(Math.ceil(kmBeyond), "km", "km")} beyond the reach of every radar`,
-    fix: "nothing, if that is right; the map will not reach out to it",
+    fix: "nothing to do, if that is right; the map will not reach out to it",
   };
 }

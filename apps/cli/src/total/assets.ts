@@ -7,7 +7,7 @@ import type { ManifestInput } from "../manifest.ts";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { hashFile } from "./inputs.ts";
-import { placePoint } from "./places.ts";
+import { placePoint, WIDEN_GRID } from "./places.ts";
 
 /**
  * Reads the assets of a plan and checks that each stands on the grid. Nothing is made of them here, which is
@@ -36,7 +36,7 @@ export async function checkAssets(
       onNotice({
         what: onEarth ? `asset ${row.id} lies outside the grid` : `asset ${row.id} is at no place on Earth`,
         where: `${file}, line ${row.line}`,
-        fix: "check its coordinates and assets.crs, or run plan --update for a grid that holds it",
+        fix: `check its coordinates and assets.crs, or ${WIDEN_GRID}`,
       });
     }
     use = "used";

@@ -73,7 +73,7 @@ export function runCautions(
   }
   if (district.observedFraction < plan.rain.minObserved) {
     say(
-      `Only ${percent(district.observedFraction)} of the district and window was observed: its depth is a lower bound.`,
+      `Only ${percent(district.observedFraction)} of area and time was observed: the depth is a lower bound.`,
       "What was not seen adds nothing; nothing is scaled up.",
     );
   }

@@ -23,7 +23,7 @@ import type { LoadedGaugeFiles, LoadedPlan } from "../plan/load.ts";
 import type { PlanGaugeFiles } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { hashFile } from "./inputs.ts";
-import { placePoint } from "./places.ts";
+import { placePoint, WIDEN_GRID } from "./places.ts";
 
 /** A gauge that can be compared: it has readings, a place, and a cell of the grid. */
 export interface GaugeInput {
@@ -109,6 +109,14 @@ export async function readGauges(
       });
     } else byKey.set(key, gauge);
   }
+  for (const { network, gauge } of loaded.plan.overrides) {
+    if (byKey.has(gaugeKey({ network, id: gauge }))) continue;
+    log.add("override left out", {
+      what: "it names a gauge that takes no part in this run",
+      where: `plan, overrides: ${displayText(`${network} ${gauge}`)}`,
+      fix: "check network and gauge",
+    });
+  }
   const sorted = [...byKey.values()].sort((a, b) => (gaugeKey(a.series) < gaugeKey(b.series) ? -1 : 1));
   return { gauges: sorted, counts };
 }
@@ -185,7 +193,7 @@ function placeGauge(
   }
   const { xM, yM, cell, cells } = placePoint(grid, map, { lonDeg, latDeg }, rule);
   if (cell < 0) {
-    return { what: "it lies outside the grid", fix: "run plan --update for a grid that holds it" };
+    return { what: "it lies outside the grid", fix: `${WIDEN_GRID}, if a radar reaches it` };
   }
   const station: GaugeStation = {
     network: series.network,

@@ -3,6 +3,9 @@ import { type Catchment, cellIndexAt, type Grid, InputError, type Ring } from "@
 import { type Projection, projectArea } from "@rainreckon/mosaic";
 import type { LeftOutLog } from "../ui/left-out.ts";
 
+/** What to do about a place beyond the grid: `plan --update` leaves the grid alone, for every figure stands on it. */
+export const WIDEN_GRID = "widen the grid in the plan (westM, northM, nx, ny)";
+
 /** A catchment on the grid. */
 export interface PlacedCatchment {
   readonly id: string;
@@ -40,7 +43,7 @@ export function placeCatchments(
       log.add("catchment left out", {
         what: "it lies outside the grid",
         where,
-        fix: "run plan --update for a grid that holds it, or check its coordinates",
+        fix: `${WIDEN_GRID}, or check its coordinates`,
       });
       continue;
     }
@@ -48,7 +51,7 @@ export function placeCatchments(
       log.add("catchment partly outside", {
         what: `${(100 * (1 - cells.insideGrid)).toFixed(0)} % of it lies outside the grid and counts as not observed`,
         where,
-        fix: "run plan --update for a grid that holds it",
+        fix: WIDEN_GRID,
       });
     }
     placed.push({ id: catchment.id, name: catchment.name, polygons, cells, areaKm2: cells.areaM2 / 1e6 });

@@ -167,7 +167,7 @@ export function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection
   throw new InputError(
     "the middle of the grid is no place on Earth",
     where,
-    "check crs, westM and northM, or let plan --update write the grid",
+    "check crs, westM and northM, or write a new plan",
     { kind: "usage" },
   );
 }

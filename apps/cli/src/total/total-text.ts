@@ -53,11 +53,13 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
         `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${fixedDecimals(mm, 1).padStart(6)} mm`,
     ),
     "",
-    `gauges: ${counts.gaugesUsed} used, ${counts.gaugesDoubted} doubted, of ${counts.gauges}`,
+    counts.gauges === 0
+      ? "gauges: none"
+      : `gauges: ${counts.gaugesUsed} used, ${counts.gaugesDoubted} doubted, of ${counts.gauges}`,
     headline.factorGaugeOverRadar === null
       ? `not adjusted: ${headline.adjustmentReason}`
       : `mean-field bias ${fixedDecimals(headline.factorGaugeOverRadar as number, 2)} (gauge/radar)${error}`,
-    `before adjustment, under other relations: ${relations.map(({ name, mm }) => `${name} ${fixedDecimals(mm, 1)} mm`).join(", ")}`,
+    `${headline.factorGaugeOverRadar === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${fixedDecimals(mm, 1)} mm`).join(", ")}`,
     "",
     ...(headline.cautions as string[]).slice(0, 3).map((caution) => `! ${caution}`),
     "",

@@ -15,7 +15,13 @@ const MOST_BYTES = 8_000_000;
 export function readTerrainProfile(file: string): TerrainProfile {
   const fault = (what: string, line: number, fix: string) =>
     new InputError(what, `${file}, line ${line}`, fix, { kind: "usage" });
-  if (statSync(file).size > MOST_BYTES) throw fault("too large for a profile", 1, "give 2 to 100,000 points");
+  const found = statSync(file, { throwIfNoEntry: false });
+  if (found?.isFile() !== true) {
+    throw new InputError("there is no such file", file, "name a CSV file of distances and heights", {
+      kind: "usage",
+    });
+  }
+  if (found.size > MOST_BYTES) throw fault("too large for a profile", 1, "give 2 to 100,000 points");
   const lines = readFileSync(file, "utf8")
     .replace(/^\ufeff/, "")
     .trimEnd()
