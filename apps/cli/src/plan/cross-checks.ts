@@ -1,11 +1,12 @@
-import { durationMs } from "@rainreckon/accumulation";
+import { clockZone, durationMs } from "@rainreckon/accumulation";
 import { findRelation, InputError } from "@rainreckon/core";
 import type { PlanFault } from "./faults.ts";
 import type { Plan, PlanGaugeFiles } from "./schema.ts";
 import type { PlanPath } from "./yaml-place.ts";
 import { findZone } from "./zone.ts";
 
-const DAY_MS = 86_400_000;
+const HOUR_MS = 3_600_000;
+const DAY_MS = 24 * HOUR_MS;
 
 /** What no single value of a plan can tell: values that contradict each other, and names that lead nowhere. */
 export function crossChecks(plan: Plan): PlanFault[] {
@@ -80,12 +81,22 @@ function durationFaults(plan: Plan): PlanFault[] {
   }
   const { rainDay } = plan.intervals;
   const zone = rainDay === undefined ? undefined : findZone(rainDay.zone);
-  if (zone !== undefined && (zone.offset(Date.parse(plan.window.from)) * 60_000) % seriesMs !== 0) {
-    faults.push({
-      path: ["intervals", "rainDay"],
-      what: `rain days in ${zone.name} start within a step of ${plan.intervals.series}`,
-      fix: "write a shorter intervals.series, such as PT15M",
+  if (rainDay !== undefined && zone !== undefined) {
+    const fromMs = Date.parse(plan.window.from);
+    // A day that starts within a step would lose that step, and look as if it had not been observed. The clock may
+    // change in the window.
+    const startsWithin = [fromMs, Date.parse(plan.window.to)].some((at) => {
+      const clock = clockZone(rainDay.zone, rainDay.dst, new Date(at).getUTCFullYear());
+      const dayStartMs = rainDay.hour * HOUR_MS - clock.offset(at) * 60_000;
+      return (dayStartMs - fromMs) % seriesMs !== 0;
     });
+    if (startsWithin) {
+      faults.push({
+        path: ["intervals", "rainDay"],
+        what: `rain days at ${rainDay.hour}:00 in ${zone.name} start within a step of ${plan.intervals.series}`,
+        fix: "write a shorter intervals.series, such as PT15M",
+      });
+    }
   }
   return faults;
 }
