@@ -1,4 +1,4 @@
-import { existsSync, mkdirSync, symlinkSync } from "node:fs";
+import { existsSync, mkdirSync, readFileSync, symlinkSync } from "node:fs";
 import path from "node:path";
 import { beforeAll, describe, expect, test } from "vitest";
 import { planText, RADAR } from "./even-rain.ts";
@@ -14,15 +14,17 @@ const GRID =
 /** Marked by hand: a relation that somebody chose. */
 const RADARS = "[{ id: zzeve, medianRoundMinutes: 5, maxGapMinutes: 12.5, relation: marshall-1955-200/1.6 }]";
 
+const IN_USE = /<th scope="row">[^<]* <span class="mark">in use<\/span>/;
+
 beforeAll(ensureBuilt);
 
 /** Even rain of one radar at each of some minutes. */
-async function writeEven(folder: string, minutes: readonly number[], dbz = 40): Promise<void> {
+async function writeEven(folder: string, minutes: readonly number[], dbz = 40, radar = RADAR): Promise<void> {
   const stored = new Uint8Array(RAYS * RADAR.gateCount).fill(storedDbz(dbz));
   for (const minute of minutes) {
     const startEpochMs = FROM + minute * 60_000 - (SWEEP_SECONDS / 2) * 1000;
-    const file = path.join(folder, "scans", `scan-${1000 + minute}.h5`);
-    await writeVolume(file, RADAR, [{ elevationDeg: 0.5, startEpochMs, stored }]);
+    const file = path.join(folder, "scans", `${radar.node}-${1000 + minute}.h5`);
+    await writeVolume(file, radar, [{ elevationDeg: 0.5, startEpochMs, stored }]);
   }
 }
 
@@ -58,6 +60,53 @@ describe("a run is the same only where its outputs would be", () => {
     expect([again.status, again.stderr]).toEqual([2, expect.stringContaining("holds another run")]);
     expect((await run(marked("chosen: stratiform rain"), "run", ["--force"])).status).toBe(0);
     expect(String(manifestOf(out).headline.cautions)).not.toMatch(caution);
+  });
+});
+
+describe("the headline under other relations", () => {
+  const radarsWith = (eve: string, bee: string) =>
+    `[{ id: zzeve, medianRoundMinutes: 5, maxGapMinutes: 12.5, ${eve} }, { id: zzbee, medianRoundMinutes: 6, maxGapMinutes: 15, ${bee} }]`;
+  const folder = path.join(scratch, "relations");
+  const mixed = path.join(folder, "mixed");
+  const NAMES = ["marshall-1955-200/1.6", "fulton-1998-300/1.4", "rosenfeld-1993-250/1.2"];
+
+  beforeAll(async () => {
+    await writeEven(folder, every(5, -5, 65), 35);
+    // The second radar turns every 6 minutes and stops at 32: from 35 on the first one speaks alone.
+    await writeEven(folder, every(6, -4, 32), 45, { ...RADAR, node: "zzbee", lonDeg: 3.4 });
+    const period =
+      "periods: [{ from: 2031-06-01T12:10:00Z, to: 2031-06-01T12:30:00Z, relation: rosenfeld-1993-250/1.2 }]";
+    const radars = radarsWith(`relation: fulton-1998-300/1.4, ${period}`, "relation: marshall-1955-200/1.6");
+    expect((await run(writePlan(folder, { radars }), "mixed")).status).toBe(0);
+  });
+
+  test.each(NAMES)("%s is what a run with it at all radars and times comes to", async (name) => {
+    const out = name.slice(0, 4);
+    const radars = radarsWith(`relation: ${name}`, `relation: ${name}`);
+    expect((await run(writePlan(folder, { radars }, `${out}.yaml`), out)).status).toBe(0);
+    const under = manifestOf(mixed).headline.underRelations as { name: string; mm: number }[];
+    const rerun = manifestOf(path.join(folder, out)).headline.districtRadarMm as number;
+    expect(under.find((one) => one.name === name)?.mm).toBeCloseTo(rerun, 9);
+    expect(readFileSync(path.join(folder, out, "report.html"), "utf8")).toMatch(IN_USE);
+  });
+
+  test("none of them is called the one in use where a radar or a period has its own", () => {
+    expect(readFileSync(path.join(mixed, "report.html"), "utf8")).not.toMatch(IN_USE);
+    const { headline } = manifestOf(mixed);
+    const under = headline.underRelations as { mm: number }[];
+    for (const { mm } of under)
+      expect(Math.abs(mm - (headline.districtRadarMm as number))).toBeGreaterThan(0.01);
+  });
+
+  test("a period alone is enough for that", async () => {
+    const period =
+      "periods: [{ from: 2031-06-01T12:10:00Z, to: 2031-06-01T12:30:00Z, relation: rosenfeld-1993-250/1.2 }]";
+    const radars = radarsWith(
+      `relation: marshall-1955-200/1.6, ${period}`,
+      "relation: marshall-1955-200/1.6",
+    );
+    expect((await run(writePlan(folder, { radars }, "period.yaml"), "period")).status).toBe(0);
+    expect(readFileSync(path.join(folder, "period", "report.html"), "utf8")).not.toMatch(IN_USE);
   });
 });
 

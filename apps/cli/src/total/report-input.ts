@@ -261,8 +261,12 @@ function gaugeHyetograph({ gauge }: ComparedGauge, g: number, { run, total }: Re
 function relationFigures(sources: ReportSources, district: ArealFigure): RelationFigure[] {
   const { run } = sources;
   const { plan } = run.loaded;
-  const used = run.loaded.plan.radars.filter(({ use }) => use).map(({ relation }) => relation);
-  const onlyOne = new Set(used.map((relation) => JSON.stringify(relation))).size === 1;
+  const inUse = plan.radars.filter(({ use }) => use);
+  const used = inUse.map(({ relation }) => relation);
+  // With a relation of its own for some radar or period, the headline stands under none of those listed.
+  const onlyOne =
+    inUse.every(({ periods }) => periods.length === 0) &&
+    new Set(used.map((relation) => JSON.stringify(relation))).size === 1;
   const own = used[0];
   const figures = headlineUnderRelations(sources).map(({ name, mm, observedFraction }): RelationFigure => {
     const known = RELATIONS.find((relation) => relation.name === name);
@@ -279,7 +283,7 @@ function relationFigures(sources: ReportSources, district: ArealFigure): Relatio
       b,
       regime: known?.regime ?? "as the plan says",
       depth: { mm: district.radarMm, observedFraction: district.observedFraction },
-      inUse: plan.radars.every(({ periods }) => periods.length === 0),
+      inUse: true,
     });
   }
   return figures;
