@@ -92,7 +92,7 @@ function isNegligible({ a, b, change }: Figure): boolean {
 function section(title: string, count: number, table: string): string {
   if (count === 0) return `${title}: no difference`;
   const unsaid = count - MAX_ROWS;
-  return `${title}: ${count} differ\n${table}${unsaid > 0 ? `\nand ${unsaid} more (--json lists all)` : ""}`;
+  return `${title}: ${count} ${count === 1 ? "differs" : "differ"}\n${table}${unsaid > 0 ? `\nand ${unsaid} more (--json lists all)` : ""}`;
 }
 
 function verdict({ sameFigures, plan, inputs, a, b }: Comparison): string {
@@ -104,11 +104,11 @@ function verdict({ sameFigures, plan, inputs, a, b }: Comparison): string {
   if (sameFigures) {
     return causes === ""
       ? "Same figures, same plan, same inputs."
-      : `Same figures, in spite of other: ${causes}.`;
+      : `Same figures, although these differ: ${causes}.`;
   }
   return causes === ""
     ? "The figures differ, and neither plan nor inputs say why."
-    : `The figures differ; behind them stand other: ${causes}.`;
+    : `The figures differ, and so do: ${causes}.`;
 }
 
 function shown(value: string | number | boolean | null): string {

@@ -5,7 +5,7 @@ import type { GaugeFinding, Guessed, RadarFinding, StationFinding } from "../sur
 import { GAP_ROUNDS } from "../survey/radars.ts";
 import type { SurveyResult } from "../survey/survey-result.ts";
 import { globsFor, relativePath } from "./globs.ts";
-import { planSchema } from "./schema.ts";
+import { DEFAULT_RELATION, planSchema } from "./schema.ts";
 
 const CELL_M = 1000;
 const MARGIN_M = 10_000;
@@ -157,10 +157,7 @@ export function radarNode(radar: RadarFinding, inWindow: boolean): Node {
       ? byDefault(true)
       : guessed(false, "its scans lie outside the window, or there is one round only"),
     offsetDb: byDefault(0, "dB, added to every reflectivity"),
-    relation: byDefault(
-      "marshall-1955-200/1.6",
-      "it was not chosen by anyone; compare: rainreckon relate table",
-    ),
+    relation: byDefault(DEFAULT_RELATION, "it was not chosen by anyone; compare: rainreckon relate table"),
     cap: inline(byDefault({ dbz: 53 }, "or {mmPerHour: 100}")),
     maxBeamHeightM: byDefault(3000, "m above the antenna"),
     medianRoundMinutes: roundMark,

@@ -4,6 +4,9 @@ import { z } from "zod";
 const instant = z.iso
   .datetime({ offset: true, error: 'write an instant with Z or an offset, like "2031-05-03T12:00:00Z"' })
   .describe("an instant, ISO 8601 with Z or an offset");
+/** The relation of a plan in which nobody has chosen one. */
+export const DEFAULT_RELATION = "marshall-1955-200/1.6";
+
 const duration = z
   .string()
   .regex(
@@ -33,7 +36,7 @@ const radar = z.strictObject({
   use: z.boolean().default(true),
   /** Added to every dBZ of this radar before the relation. */
   offsetDb: z.number().min(-20).max(20).default(0),
-  relation: relation.default("marshall-1955-200/1.6"),
+  relation: relation.default(DEFAULT_RELATION),
   /** Other relations for parts of the window; from is excluded, to is included. */
   periods: z.array(z.strictObject({ from: instant, to: instant, relation })).default([]),
   cap: cap.default({ dbz: 53 }),

@@ -1,6 +1,7 @@
 import { relationCaution } from "@rainreckon/core";
 import { isMap, isScalar, isSeq } from "yaml";
 import { parsePlanDocument } from "../plan/load.ts";
+import { DEFAULT_RELATION } from "../plan/schema.ts";
 import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import type { ArealFigure } from "./figures.ts";
@@ -32,7 +33,7 @@ export const STANDING_CAUTIONS: readonly string[] = [
 ];
 
 /**
- * True where a plan still has the relation that was written into it: the value is marked "default", or is
+ * True where a plan still has the relation that was written into it: the value is the default and marked so, or is
  * not there at all. A relation that was looked at and kept must be marked by hand to count as chosen.
  */
 export function relationWasNotChosen(planText: string): boolean {
@@ -43,7 +44,12 @@ export function relationWasNotChosen(planText: string): boolean {
     if (!isMap(item) || item.get("use") === false) return false;
     const relation = item.get("relation", true);
     if (relation === undefined) return true;
-    return isScalar(relation) && /^\s*default\b/.test(relation.comment ?? "");
+    // Who writes another value seldom mends the remark behind it.
+    return (
+      isScalar(relation) &&
+      relation.value === DEFAULT_RELATION &&
+      /^\s*default\b/.test(relation.comment ?? "")
+    );
   });
 }
 
@@ -62,7 +68,8 @@ export function runCautions(
     cautions.push({
       kind: "relation-not-chosen",
       text: "Nobody chose the relation between echo and rain: it is the one the plan was written with.",
-      detail: "The headline under other relations stands below; set radars, relation in the plan.",
+      detail:
+        'The headline under other relations stands below. Set radars, relation in the plan; to keep this one, delete its remark "default".',
     });
   }
   for (const radar of run.shape.radars) {
