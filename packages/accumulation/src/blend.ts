@@ -21,10 +21,21 @@ export interface BlendedStep {
   readonly variantMm: readonly Float64Array[];
 }
 
-/** What one radar adds at one cell of a step: depth, and the time it speaks for. */
+/** What one radar adds at one cell of a step: depth, the time it speaks for, and parts of the two. */
 interface Voice {
   depthMm: number;
+  cappedMm: number;
   shareMs: number;
+  bridgedMs: number;
+  edgeMs: number;
+}
+
+/** A radar that speaks for all it observed in the step, by a share of it. */
+function speakWhole(voice: Voice, radar: RadarStep, cell: number, share: number, depthMm: number): void {
+  voice.depthMm = share * depthMm;
+  voice.cappedMm = share * (radar.cappedMm?.[cell] ?? 0);
+  voice.bridgedMs = share * (radar.bridgedMs?.[cell] ?? 0);
+  voice.edgeMs = share * (radar.edgeMs?.[cell] ?? 0);
 }
 
 /**
@@ -54,7 +65,13 @@ export function blendStep(
       new Float64Array(headlineCells.length).fill(Number.NaN),
     ),
   };
-  const voices: Voice[] = radars.map(() => ({ depthMm: 0, shareMs: 0 }));
+  const voices: Voice[] = radars.map(() => ({
+    depthMm: 0,
+    cappedMm: 0,
+    shareMs: 0,
+    bridgedMs: 0,
+    edgeMs: 0,
+  }));
   const voicesAt = (
     cell: number,
     depthOf: (radar: number) => number,
@@ -73,10 +90,13 @@ export function blendStep(
     if (observing === 0) return false;
     for (const voice of voices) {
       voice.depthMm = 0;
+      voice.cappedMm = 0;
       voice.shareMs = 0;
+      voice.bridgedMs = 0;
+      voice.edgeMs = 0;
     }
     if (observing === 1) {
-      voices[only].depthMm = depthOf(only);
+      speakWhole(voices[only], radars[only].step, cell, 1, depthOf(only));
       voices[only].shareMs = Math.min(lengthMs, radars[only].step.observedMs[cell]);
       return true;
     }
@@ -86,7 +106,7 @@ export function blendStep(
       for (let r = 0; r < radars.length; r++) {
         if (!(radars[r].step.observedMs[cell] > 0)) continue;
         const share = meanWeight(radars[r].step, cell) / sum;
-        voices[r].depthMm = share * depthOf(r);
+        speakWhole(voices[r], radars[r].step, cell, share, depthOf(r));
         voices[r].shareMs = share * lengthMs;
       }
       return true;
@@ -105,20 +125,15 @@ export function blendStep(
     let depthMm = 0;
     for (let r = 0; r < radars.length; r++) {
       const { step: radar } = radars[r];
-      const { depthMm: ownMm, shareMs } = voices[r];
+      const { depthMm: ownMm, cappedMm, shareMs, bridgedMs, edgeMs } = voices[r];
       if (shareMs === 0) continue;
       depthMm += ownMm;
-      const observedMs = radar.observedMs[cell];
-      const share = shareMs / observedMs;
       blended.observedMs[cell] += shareMs;
       blended.shareMs[r][cell] = shareMs;
-      blended.heightMMs[cell] += share * radar.heightMMs[cell];
-      if (radar.bridgedMs !== undefined) blended.bridgedMs[cell] += share * radar.bridgedMs[cell];
-      if (radar.edgeMs !== undefined) blended.edgeMs[cell] += share * radar.edgeMs[cell];
-      // The capped part of a radar's depth goes along with whatever part of that depth is used.
-      if (radar.cappedMm !== undefined && radar.depthMm[cell] > 0) {
-        blended.cappedMm[cell] += (ownMm / radar.depthMm[cell]) * radar.cappedMm[cell];
-      }
+      blended.heightMMs[cell] += (shareMs / radar.observedMs[cell]) * radar.heightMMs[cell];
+      blended.bridgedMs[cell] += bridgedMs;
+      blended.edgeMs[cell] += edgeMs;
+      blended.cappedMm[cell] += cappedMm;
     }
     blended.depthMm[cell] = depthMm;
   }
@@ -152,6 +167,9 @@ function blendSpans(
   const stretches: Stretch[][] = radars.map(({ integrator }) =>
     integrator.stretches(stepIndex, cell, rateOf),
   );
+  const capped = radars.map(({ step: radar, integrator }) =>
+    (radar.cappedMm?.[cell] ?? 0) > 0 ? integrator.stretches(stepIndex, cell, cappedRateAt(cell)) : [],
+  );
   const borders = new Set([step.startEpochMs, step.endEpochMs]);
   for (const ofRadar of stretches) {
     for (const { fromEpochMs, toEpochMs } of ofRadar) {
@@ -163,17 +181,34 @@ function blendSpans(
   for (let k = 0; k + 1 < cuts.length; k++) {
     const [from, to] = [cuts[k], cuts[k + 1]];
     let weightSum = 0;
-    const speaking: { radar: number; weight: number; depthMm: number }[] = [];
+    const speaking: { radar: number; weight: number; depthMm: number; kind: Stretch["kind"] }[] = [];
     for (let r = 0; r < radars.length; r++) {
-      const stretch = stretches[r].find((s) => s.fromEpochMs <= from && s.toEpochMs >= to);
+      const stretch = stretchOver(stretches[r], from, to);
       if (stretch === undefined) continue;
       const weight = meanWeight(radars[r].step, cell);
       weightSum += weight;
-      speaking.push({ radar: r, weight, depthMm: stretchDepthMm(stretch, from, to) });
+      speaking.push({ radar: r, weight, depthMm: stretchDepthMm(stretch, from, to), kind: stretch.kind });
     }
-    for (const { radar, weight, depthMm } of speaking) {
-      voices[radar].depthMm += (weight / weightSum) * depthMm;
-      voices[radar].shareMs += (weight / weightSum) * (to - from);
+    for (const { radar, weight, depthMm, kind } of speaking) {
+      const voice = voices[radar];
+      const share = weight / weightSum;
+      const ms = share * (to - from);
+      voice.depthMm += share * depthMm;
+      voice.shareMs += ms;
+      if (kind === "bridged") voice.bridgedMs += ms;
+      if (kind === "edge") voice.edgeMs += ms;
+      const cap = stretchOver(capped[radar], from, to);
+      if (cap !== undefined) voice.cappedMm += share * stretchDepthMm(cap, from, to);
     }
   }
+}
+
+/** The part of a layer's rate that met the cap; NaN where it did not observe the cell. */
+function cappedRateAt(cell: number): (layer: RateLayer) => number {
+  return ({ rateMmPerHour, cappedRateMmPerHour }) =>
+    rateMmPerHour[cell] >= 0 ? (cappedRateMmPerHour?.[cell] ?? 0) : Number.NaN;
+}
+
+function stretchOver(stretches: readonly Stretch[], from: number, to: number): Stretch | undefined {
+  return stretches.find(({ fromEpochMs, toEpochMs }) => fromEpochMs <= from && toEpochMs >= to);
 }

@@ -43,6 +43,8 @@ export interface Stretch {
   readonly toEpochMs: number;
   readonly rate0: number;
   readonly rate1: number;
+  /** bridged: a scan is missing in it; edge: before the first scan or after the last. */
+  readonly kind: "usual" | "bridged" | "edge";
 }
 
 interface HeldLayer extends RateLayer {
@@ -193,11 +195,12 @@ export class RadarIntegrator {
    */
   stretches(step: number, cell: number, rateOf: (layer: RateLayer) => number): Stretch[] {
     const { startEpochMs, endEpochMs } = this.#steps[step];
-    const half = this.#rules.medianRoundMs / 2;
+    const { medianRoundMs, maxGapMs } = this.#rules;
+    const half = medianRoundMs / 2;
     const found: Stretch[] = [];
-    const push = (from: number, to: number, rate0: number, rate1: number) => {
+    const push = (from: number, to: number, rate0: number, rate1: number, kind: Stretch["kind"]) => {
       if (to <= startEpochMs || from >= endEpochMs) return;
-      found.push({ fromEpochMs: from, toEpochMs: to, rate0, rate1 });
+      found.push({ fromEpochMs: from, toEpochMs: to, rate0, rate1, kind });
     };
     let from = Number.NaN;
     let rate0 = Number.NaN;
@@ -207,9 +210,10 @@ export class RadarIntegrator {
       const rate = rateOf(layer);
       if (!(rate >= 0)) continue;
       const at = layer.sweepMidEpochMs[layer.slot === undefined ? 0 : layer.slot[cell]];
-      if (layer.isFirst) push(at - half, at, rate, rate);
-      if (at - from <= this.#rules.maxGapMs) push(from, at, rate0, rate);
-      if (layer.isLast) push(at, at + half, rate, rate);
+      if (layer.isFirst) push(at - half, at, rate, rate, "edge");
+      const bridged = at - from > BRIDGED_ABOVE_ROUNDS * medianRoundMs;
+      if (at - from <= maxGapMs) push(from, at, rate0, rate, bridged ? "bridged" : "usual");
+      if (layer.isLast) push(at, at + half, rate, rate, "edge");
       from = at;
       rate0 = rate;
     }
