@@ -9,8 +9,11 @@ import {
 } from "@rainreckon/mosaic";
 import type { JobRadar } from "./job.ts";
 
-/** Lookups kept per radar; a radar has a handful of elevations, each with one geometry unless its rays wander. */
-const KEPT_PER_RADAR = 16;
+/**
+ * Lookups kept per radar: more than the largest volumes have elevations. With one fewer than a volume needs, each
+ * would be thrown out just before it is wanted again. Where rays wander, each scan adds one, so there is an end to it.
+ */
+const KEPT_PER_RADAR = 32;
 /** Rays this near to a regular fan are taken to be it, so that an antenna's jitter does not cost a lookup a scan. */
 const FAN_SLACK_DEG = 0.15;
 /** Otherwise azimuths are rounded to this: 90 m at 100 km. Rounding, not the first scan seen, makes the lookup. */
@@ -72,8 +75,11 @@ function buildShelf(grid: Grid, radar: JobRadar): LookupShelf {
           radar.lookup,
         );
         if (lookups.size >= KEPT_PER_RADAR) lookups.delete(lookups.keys().next().value as string);
-        lookups.set(key, lookup);
+      } else {
+        lookups.delete(key);
       }
+      // The one asked for last stands last, so that the first is the one not asked for longest.
+      lookups.set(key, lookup);
       return lookup;
     },
   };
