@@ -1,7 +1,7 @@
 import { existsSync, mkdirSync, readFileSync, symlinkSync } from "node:fs";
 import path from "node:path";
 import { beforeAll, describe, expect, test } from "vitest";
-import { planText, RADAR } from "./even-rain.ts";
+import { area, box, planText, RADAR, writeAreas } from "./even-rain.ts";
 import { RAYS, SWEEP_SECONDS, storedDbz, writeVolume } from "./odim-scans.ts";
 import { type CliResult, ensureBuilt, inProcess } from "./run-cli.ts";
 import { manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
@@ -107,6 +107,33 @@ describe("the headline under other relations", () => {
     );
     expect((await run(writePlan(folder, { radars }, "period.yaml"), "period")).status).toBe(0);
     expect(readFileSync(path.join(folder, "period", "report.html"), "utf8")).not.toMatch(IN_USE);
+  });
+});
+
+describe("a cell that met the cap in a large catchment", () => {
+  test("is told as such, though it is a hair of the catchment's depth", async () => {
+    const folder = path.join(scratch, "hail");
+    await writeEven(folder, every(5, -5, 65));
+    // One gate of one scan at 60 dBZ; the cap of 53 dBZ is 103 mm/h, against 11.5 mm/h all around.
+    const stored = new Uint8Array(RAYS * RADAR.gateCount).fill(storedDbz(40));
+    stored[45 * RADAR.gateCount + 30] = storedDbz(60);
+    const startEpochMs = FROM + 30 * 60_000 - (SWEEP_SECONDS / 2) * 1000;
+    const file = path.join(folder, "scans", "zzeve-1030.h5");
+    await writeVolume(file, RADAR, [{ elevationDeg: 0.5, startEpochMs, stored }]);
+    writeAreas(folder, [area("big", "Big", [box(3, 52.5, 0.4)])]);
+    const plan = writePlan(folder, {
+      catchments: "{ file: areas.geojson, id: id, name: name }",
+      grid: "{ crs: +proj=laea +lat_0=52.5 +lon_0=3 +ellps=GRS80 +units=m, westM: -50000, northM: 50000, cellM: 1000, nx: 100, ny: 100 }",
+    });
+    expect((await run(plan, "run")).status).toBe(0);
+    const out = path.join(folder, "run");
+    expect(manifestOf(out).counts.gatesCapped).toBe(1);
+    const html = readFileSync(path.join(out, "report.html"), "utf8");
+    const row = /<tr><th scope="row"><span class="id">Big<.*?<\/tr>/s.exec(html)?.[0] ?? "";
+    const columns = row.split("<td");
+    // Depth, share observed, radar, adjusted, wettest cell.
+    expect(columns[5]).toContain(">at cap<");
+    for (const other of [1, 2, 3, 4]) expect(columns[other]).not.toContain(">at cap<");
   });
 });
 
