@@ -1,5 +1,4 @@
 import { type CellFractions, durationMs } from "@rainreckon/accumulation";
-import { CHOICE_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
 import { gaugeKey, RELATIONS } from "@rainreckon/core";
 import { displayText } from "@rainreckon/formats";
 import type {
@@ -18,15 +17,15 @@ import { gaugeSteps } from "@rainreckon/verification";
 import type { ManifestNotice } from "../manifest.ts";
 import { countText, lengthText } from "../ui/numbers.ts";
 import { version } from "../version.ts";
-import { type ComparedGauge, type Comparison, crossValidatedPairMm } from "./against-gauges.ts";
+import type { ComparedGauge, Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import {
   type ArealFigure,
-  adjustedSteps,
   bestMm,
   districtFigure,
+  factorOf,
   headlineUnderRelations,
   isAtCap,
   windowFigure,
@@ -47,7 +46,7 @@ interface ReportSources {
 export function reportInput(sources: ReportSources): ReportInput {
   const { run, total, comparison, cautions } = sources;
   const { plan } = run.loaded;
-  const { adjustment, choice } = comparison;
+  const { bias, crossValidation } = comparison;
   const district = districtFigure(sources);
   const figure = (areal: ArealFigure, mm: number): DepthFigure => {
     const reason = reasonOf({ figure: areal }, plan.rain.minObserved);
@@ -69,35 +68,21 @@ export function reportInput(sources: ReportSources): ReportInput {
     headline: {
       place: run.catchments.length > 0 ? "The catchments together" : "The map",
       depth: figure(district, bestMm(district)),
-      basis: adjustment.applied ? "adjusted" : "radar",
+      basis: bias.applied ? "adjusted" : "radar",
     },
-    adjustment: adjustment.applied
-      ? {
-          applied: true,
-          method: Number.isNaN(adjustment.factor)
-            ? `${adjustment.title}, over the whole place`
-            : adjustment.title,
-          factor: Number.isNaN(adjustment.factor)
-            ? district.adjustedMm / district.radarMm
-            : adjustment.factor,
-          limited: adjustment.unlimitedFactor !== undefined,
-        }
-      : { applied: false, reason: adjustment.reason },
-    crossValidation: crossValidationStatement(comparison),
-    ...(choice === undefined
-      ? {}
-      : {
-          methodChoice: {
-            rule: CHOICE_RULE,
-            chosen: METHOD_TITLES[choice.chosen],
-            outerErrorMm: choice.validation.errorMm,
-            candidates: choice.candidates.map(({ name, ...candidate }) => ({
-              ...candidate,
-              title: METHOD_TITLES[name],
-              chosenInFolds: choice.chosenInFolds.get(name) ?? 0,
-            })),
-          },
-        }),
+    adjustment: bias.applied
+      ? { applied: true, method: "mean-field bias", factor: bias.factor, limited: bias.clipped }
+      : { applied: false, reason: bias.reason },
+    crossValidation:
+      crossValidation === undefined
+        ? { reason: bias.applied ? "not worked out" : `no adjustment: ${bias.reason}` }
+        : Number.isFinite(crossValidation.errorMm)
+          ? {
+              errorMm: crossValidation.errorMm,
+              errorPercent: crossValidation.errorPercent,
+              what: "root mean square error of window depths at gauges, each gauge left out in turn",
+            }
+          : { reason: "no gauge could be left out" },
     cautions,
     grid: run.grid,
     layers: layersOf(sources),
@@ -115,14 +100,15 @@ export function reportInput(sources: ReportSources): ReportInput {
         polygons: catchment.polygons,
         depth: figure(areal, bestMm(areal)),
         radar: figure(areal, areal.radarMm),
-        ...(adjustment.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
+        ...(bias.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
         maxCell: { ...figure(areal, areal.maxCellMm), atCap: peakAtCap(catchment.cells, total.sum) },
         areaKm2: catchment.areaKm2,
       };
     }),
     gaugeHyetographs: comparison.gauges.map((gauge, g) => gaugeHyetograph(gauge, g, sources)),
     catchmentHyetographs: run.catchments.map((catchment, a): Hyetograph => {
-      const windowMm = windowFigure(catchment.cells, sources).adjustedMm;
+      const factor = factorOf(comparison);
+      const radar = total.areas.depthMm[a];
       return {
         id: catchment.id,
         label: catchment.name,
@@ -130,8 +116,8 @@ export function reportInput(sources: ReportSources): ReportInput {
         stepMs: run.stepMs,
         sides: [
           {
-            role: adjustment.applied ? "adjusted" : "radar",
-            depthMm: adjustment.applied ? adjustedSteps(a, windowMm, sources) : total.areas.depthMm[a],
+            role: bias.applied ? "adjusted" : "radar",
+            depthMm: bias.applied ? radar.map((mm) => mm * factor) : radar,
             observedFraction: total.areas.observedFraction[a],
           },
         ],
@@ -166,18 +152,6 @@ function peakAtCap({ cells }: CellFractions, { depthMm, cappedMm }: AssembledRun
     if (depthMm[cell] > (deepest < 0 ? -1 : depthMm[deepest])) deepest = cell;
   }
   return deepest >= 0 && cappedMm[deepest] > 0;
-}
-
-function crossValidationStatement({ adjustment, choice }: Comparison): ReportInput["crossValidation"] {
-  if (!adjustment.applied) return { reason: `no adjustment: ${adjustment.reason}` };
-  const { errorMm, errorPercent } = adjustment.crossValidation;
-  if (!Number.isFinite(errorMm)) return { reason: "no gauge could be left out" };
-  const without = choice === undefined ? "" : ", from the choice of a method too";
-  return {
-    errorMm,
-    errorPercent,
-    what: `root mean square error of window depths at gauges, each gauge left out in turn${without}`,
-  };
 }
 
 function layersOf({ run, total, adjustedTotalMm }: ReportSources): MapLayer[] {
@@ -239,6 +213,10 @@ function layersOf({ run, total, adjustedTotalMm }: ReportSources): MapLayer[] {
 function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGauge {
   const { gauge, verdict, whole } = compared;
   const { series, station } = gauge;
+  const heldOut = comparison.crossValidation?.gauges.find(
+    (one) => one.network === series.network && one.gaugeId === series.id,
+  );
+  const factor = heldOut?.factor ?? factorOf(comparison);
   return {
     network: series.network,
     id: series.id,
@@ -248,7 +226,7 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
     role: whole.used ? "used" : verdict.verdict === "doubt" ? "doubted" : "left-out",
     gaugeMm: whole.gaugeMm,
     radarMm: whole.radarMm,
-    crossValidatedMm: crossValidatedPairMm(comparison, compared, whole),
+    crossValidatedMm: whole.radarMm * factor,
     commonFraction: whole.commonFraction,
     ...(whole.radarId === "" ? {} : { radarId: whole.radarId }),
     ...(Number.isNaN(whole.rangeKm) ? {} : { rangeKm: whole.rangeKm }),
