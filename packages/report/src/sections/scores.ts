@@ -9,7 +9,7 @@ export function scoreSection(input: ReportInput): Markup {
   const { pairs, radar, crossValidated } = input.scores;
   if (radar.length === 0) return html``;
   const after = crossValidated.length > 0;
-  return html`<section id="scores" aria-labelledby="scores-heading"><h2 id="scores-heading">How well radar and gauges agree</h2><p class="lead">${pairs}. Ratios are radar/gauge.${
+  return html`<section id="scores" aria-labelledby="scores-heading"><h2 id="scores-heading">How well radar and gauges agree</h2><p class="lead">${pairs.charAt(0).toUpperCase()}${pairs.slice(1)}. Ratios are radar/gauge.${
     after && " After adjustment each gauge is held against a value that it had no part in."
   }</p><div class="scroll" role="region" tabindex="0" aria-label="Scores"><table class="scores"><caption>Scores, with the range in which they would lie in a like sample</caption><thead><tr><th scope="col">In words</th><th scope="col">Radar</th>${
     after && html`<th scope="col">Adjusted, cross-validated</th>`

@@ -1,5 +1,5 @@
 import { expect, test } from "vitest";
-import { countText, errorMmText, mmText, percentText, ratioText, signedErrorMmText } from "./numbers.ts";
+import { countText, errorText, mmText, percentText, ratioText, signedErrorText } from "./numbers.ts";
 
 const NARROW = "\u202f";
 const WIDE = "\u00a0";
@@ -39,8 +39,8 @@ test.each([
 });
 
 test("errors keep hundredths below 10 mm, and a difference carries its sign", () => {
-  expect([errorMmText(0.123), errorMmText(12.34)]).toEqual(["0.12", "12.3"]);
-  expect([signedErrorMmText(0.5), signedErrorMmText(-0.5), signedErrorMmText(0.001)]).toEqual([
+  expect([errorText(0.123), errorText(12.34)]).toEqual(["0.12", "12.3"]);
+  expect([signedErrorText(0.5), signedErrorText(-0.5), signedErrorText(0.001)]).toEqual([
     "+0.50",
     "\u22120.50",
     "0.00",

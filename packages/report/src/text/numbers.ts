@@ -17,16 +17,17 @@ export function mmText(mm: number): string {
   return mm < 0 ? `${MINUS}${digits}` : digits;
 }
 
-/** An error in mm: hundredths below 10 mm, where a mean over many pairs can tell them apart. */
-export function errorMmText(mm: number): string {
-  const digits = Math.abs(mm) < 9.995 ? Math.abs(mm).toFixed(2) : Math.abs(mm).toFixed(1);
-  return mm < 0 && Number(digits) !== 0 ? `${MINUS}${digits}` : digits;
+/** An error in mm, dB or %: hundredths below 10, where a mean over many pairs can tell them apart. */
+export function errorText(error: number): string {
+  const size = Math.abs(error);
+  const digits = size < 9.995 ? size.toFixed(2) : size.toFixed(1);
+  return error < 0 && Number(digits) !== 0 ? `${MINUS}${digits}` : digits;
 }
 
 /** A difference in mm with its sign. */
-export function signedErrorMmText(mm: number): string {
-  const text = errorMmText(mm);
-  return mm > 0 && text !== "0.00" ? `+${text}` : text;
+export function signedErrorText(error: number): string {
+  const text = errorText(error);
+  return error > 0 && text !== "0.00" ? `+${text}` : text;
 }
 
 /** A share of 0 to 1 in per cent. "100 %" and "0 %" are said only where they are exact. */

@@ -1,6 +1,6 @@
 import type { Score, ScoreInterval } from "@rainreckon/core";
 import type { ReportScore } from "../input.ts";
-import { counted, errorMmText, mmText, percentText, ratioText, signedErrorMmText } from "./numbers.ts";
+import { counted, errorText, mmText, percentText, ratioText, signedErrorText } from "./numbers.ts";
 
 /** A score as a sentence, and its number with its unit. */
 export interface ScoreWords {
@@ -28,11 +28,11 @@ function lessOrMore(ratio: number): string {
   return `Radar saw ${percentText(Math.abs(ratio - 1))} ${ratio < 1 ? "less" : "more"} rain than the gauges`;
 }
 
-const mm = (value: number) => `${errorMmText(value)} mm`;
-const signedMm = (value: number) => `${signedErrorMmText(value)} mm`;
+const mm = (value: number) => `${errorText(value)} mm`;
+const signedMm = (value: number) => `${signedErrorText(value)} mm`;
 const radarPerGauge = (value: number) => `${ratioText(value)} radar/gauge`;
-const decibels = (value: number) => `${ratioText(value)} dB`;
-const perCent = (value: number) => `${ratioText(value)} %`;
+const decibels = (value: number) => `${errorText(value)} dB`;
+const perCent = (value: number) => `${errorText(value)} %`;
 
 /** A score whose sentence does not depend on its value. */
 function plain(
