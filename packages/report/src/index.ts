@@ -11,7 +11,6 @@ export type {
   GaugeRole,
   Hyetograph,
   MapLayer,
-  MethodChoiceStatement,
   Provenance,
   ProvenanceInput,
   RelationFigure,
