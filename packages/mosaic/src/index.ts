@@ -1,5 +1,6 @@
 export { type BlendWeightInput, blendWeight } from "./blend-weight.ts";
 export { geodesicDirect, geodesicInverse } from "./geodesic.ts";
+export { gridLookup, type SourceCells } from "./grid-lookup.ts";
 export { MAX_GRID_CELLS, planGrid } from "./plan-grid.ts";
 export {
   type BlockedSector,
@@ -10,5 +11,5 @@ export {
 } from "./polar-lookup.ts";
 export { projectArea } from "./project-area.ts";
 export { type Projection, projection, projStringOf } from "./projection.ts";
-export { type GateRates, type RateLayer, RateLayerBuilder } from "./rate-layer.ts";
+export { type CellLookup, type GateRates, type RateLayer, RateLayerBuilder } from "./rate-layer.ts";
 export { type SiteCells, siteCells } from "./site-cells.ts";

@@ -10,6 +10,7 @@ import {
 import { blendWeight } from "./blend-weight.ts";
 import { geodesicDirect } from "./geodesic.ts";
 import type { Projection } from "./projection.ts";
+import type { CellLookup } from "./rate-layer.ts";
 import type { SiteCells } from "./site-cells.ts";
 
 /** The shape of a sweep: all that decides which gate lies in which cell. */
@@ -41,20 +42,10 @@ export interface LookupRules {
 
 /**
  * Which gates make which cell, for one sweep geometry on one grid. Only cells that the sweep may
- * speak for are listed: inside its reach, under the height limit, outside blocked sectors.
+ * speak for are listed: inside its reach, under the height limit, outside blocked sectors. A gate's index is
+ * ray * gateCount + gate.
  */
-export interface PolarLookup {
-  /** Shape [m]: flat cell indices, ascending. */
-  readonly cells: Int32Array;
-  /** Shape [m + 1]: gates of cells[k] are gates[start[k]] … gates[start[k + 1] - 1]. */
-  readonly start: Int32Array;
-  /** Flat gate indices, ray * gateCount + gate. */
-  readonly gates: Int32Array;
-  /** Shape [ny * nx]: position of a cell in `cells`, -1 where the sweep does not speak. */
-  readonly position: Int32Array;
-  /** Shape [ny * nx]: beam centre above mean sea level, and blend weight; NaN and 0 where it does not speak. */
-  readonly beamHeightAslM: Float32Array;
-  readonly weight: Float32Array;
+export interface PolarLookup extends CellLookup {
   /** Ground distance at which this sweep stops speaking, for its reach or its height. */
   readonly coverageM: number;
 }

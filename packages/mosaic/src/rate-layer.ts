@@ -1,4 +1,18 @@
-import type { PolarLookup } from "./polar-lookup.ts";
+/** Which values of a source (gates of a sweep, cells of a gridded layer) make which cell of a grid. */
+export interface CellLookup {
+  /** Shape [m]: flat cell indices, ascending. */
+  readonly cells: Int32Array;
+  /** Shape [m + 1]: values of cells[k] are gates[start[k]] … gates[start[k + 1] - 1]. */
+  readonly start: Int32Array;
+  /** Flat indices of the source's values. */
+  readonly gates: Int32Array;
+  /** Shape [ny * nx]: position of a cell in `cells`, -1 where the source does not speak. */
+  readonly position: Int32Array;
+  /** Shape [ny * nx]: beam centre above mean sea level, NaN where there is none or none is known. */
+  readonly beamHeightAslM: Float32Array;
+  /** Shape [ny * nx]: blend weight, 0 where the source does not speak. */
+  readonly weight: Float32Array;
+}
 
 /**
  * Gate values ready to be gathered: either stored codes with a table of rates, or rates already.
@@ -39,7 +53,7 @@ export class RateLayerBuilder {
   readonly #headlineCells: Int32Array;
   readonly #variants: Float32Array[];
   readonly #mids: number[] = [];
-  readonly #lookups: PolarLookup[] = [];
+  readonly #lookups: CellLookup[] = [];
   #slot: Uint8Array | undefined;
   #capped: Float32Array | undefined;
 
@@ -56,7 +70,7 @@ export class RateLayerBuilder {
   }
 
   /** True where a sweep of this geometry could speak for a cell that nobody has spoken for. */
-  canFill(lookup: PolarLookup): boolean {
+  canFill(lookup: CellLookup): boolean {
     if (this.#mids.length === 0) return lookup.cells.length > 0;
     for (const cell of lookup.cells) if (Number.isNaN(this.#rate[cell])) return true;
     return false;
@@ -69,7 +83,7 @@ export class RateLayerBuilder {
    * @param variants - its gate values under each other relation, same coding
    * @returns number of cells it speaks for
    */
-  add(lookup: PolarLookup, gates: GateRates, variants: readonly GateRates[], midEpochMs: number): number {
+  add(lookup: CellLookup, gates: GateRates, variants: readonly GateRates[], midEpochMs: number): number {
     const slotIndex = this.#mids.length;
     const first = slotIndex === 0;
     const { cells, start, gates: gateIndex } = lookup;
@@ -136,7 +150,7 @@ export class RateLayerBuilder {
   }
 
   /** A second pass for the few sweeps with hail: the part of each mean that comes from capped gates. */
-  #addCapped(lookup: PolarLookup, { codes, rateMmPerHour, capped }: GateRates, slotIndex: number): void {
+  #addCapped(lookup: CellLookup, { codes, rateMmPerHour, capped }: GateRates, slotIndex: number): void {
     this.#capped ??= new Float32Array(this.#rate.length);
     const { cells, start, gates } = lookup;
     for (let at = 0; at < cells.length; at++) {
@@ -155,7 +169,7 @@ export class RateLayerBuilder {
   }
 
   #addVariant(
-    lookup: PolarLookup,
+    lookup: CellLookup,
     { codes, rateMmPerHour }: GateRates,
     variant: number,
     slotIndex: number,
