@@ -178,7 +178,7 @@ function refuseSingleInstants(radars: readonly RadarInput[], window: { from: str
   throw new InputError(
     "one instant per site is a rate, not a total",
     `radars ${radars.map(({ radar }) => radar.id).join(", ")}, window ${window.from} to ${window.to}`,
-    "add the scans before or after it: a total needs at least two rounds of one radar",
+    "add the scans before or after it: a total needs at least two rounds of one radar; or add --rate for a map of rain rate",
     { kind: "no-input" },
   );
 }

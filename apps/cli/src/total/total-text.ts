@@ -1,5 +1,5 @@
 import { displayText } from "@rainreckon/formats";
-import { counted, countText, fixedDecimals, localText, utcText } from "../ui/numbers.ts";
+import { counted, countText, depthText, fixedDecimals, localText, utcText } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import type { TotalOutcome } from "./run-total.ts";
 
@@ -45,12 +45,12 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     terminal.strong(
       headline.districtMm === null
         ? `no depth: nothing of ${place} was observed`
-        : `${atLeast}${fixedDecimals(headline.districtMm as number, 1)} mm over ${place} (${basis})`,
+        : `${atLeast}${depthText(headline.districtMm as number)} mm over ${place} (${basis})`,
     ),
     `  observed ${minutesSeen} of ${minutes} minutes on average (${fixedDecimals(100 * observed, 0)} %)`,
     ...catchments.map(
       ({ name, mm, observedFraction }) =>
-        `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${fixedDecimals(mm, 1).padStart(6)} mm`,
+        `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${depthText(mm).padStart(6)} mm`,
     ),
     "",
     counts.gauges === 0
@@ -59,7 +59,7 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     headline.factorGaugeOverRadar === null
       ? `not adjusted: ${headline.adjustmentReason}`
       : `mean-field bias ${fixedDecimals(headline.factorGaugeOverRadar as number, 2)} (gauge/radar)${error}`,
-    `${headline.factorGaugeOverRadar === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${fixedDecimals(mm, 1)} mm`).join(", ")}`,
+    `${headline.factorGaugeOverRadar === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${depthText(mm)} mm`).join(", ")}`,
     "",
     ...(headline.cautions as string[]).slice(0, 3).map((caution) => `! ${caution}`),
     "",

@@ -1,5 +1,14 @@
 import { expect, test } from "vitest";
-import { counted, decimals, isoUtc, lengthText, localText, placeText, utcText } from "./numbers.ts";
+import {
+  counted,
+  decimals,
+  depthText,
+  isoUtc,
+  lengthText,
+  localText,
+  placeText,
+  utcText,
+} from "./numbers.ts";
 
 // By hand, but for the clocks: IANA has Europe/Oslo at UTC+2 in May 2031 and at UTC+1 in January,
 // and Asia/Kathmandu at UTC+5:45 all year.
@@ -10,6 +19,12 @@ test.each([
   [decimals(1.23456, 2), "1.23"],
   [decimals(2, 2), "2"],
   [decimals(-0.0001, 2), "0"],
+  [depthText(0), "0.0"],
+  [depthText(0.0068), "0.007"],
+  [depthText(0.00001), "< 0.001"],
+  [depthText(21.14), "21.1"],
+  [depthText(Number.NaN), "–"],
+  [depthText(null), "–"],
   [decimals(Number.NaN, 2), "–"],
   [placeText(4.1, 51.2), "51.2000° N, 4.1000° E"],
   [placeText(-70.25, -33.5), "33.5000° S, 70.2500° W"],

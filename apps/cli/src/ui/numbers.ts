@@ -26,6 +26,12 @@ export function fixedDecimals(value: number | undefined | null, digits: number):
   return value.toFixed(digits);
 }
 
+/** A depth in mm to tenths; one that a tenth would round away keeps a digit, so that it is never taken for none. */
+export function depthText(mm: number | undefined | null): string {
+  if (typeof mm !== "number" || !(mm > 0 && mm < 0.05)) return fixedDecimals(mm, 1);
+  return mm < 0.0005 ? "< 0.001" : String(Number(mm.toPrecision(1)));
+}
+
 /** Position for people: 51.2000° N, 4.1000° E. */
 export function placeText(lonDeg: number, latDeg: number): string {
   const lat = `${Math.abs(latDeg).toFixed(4)}° ${latDeg < 0 ? "S" : "N"}`;
