@@ -130,7 +130,9 @@ export function blendStep(
       depthMm += ownMm;
       blended.observedMs[cell] += shareMs;
       blended.shareMs[r][cell] = shareMs;
-      blended.heightMMs[cell] += (shareMs / radar.observedMs[cell]) * radar.heightMMs[cell];
+      // Gridded rain has no beam: NaN. Its time is left out where the mean height is made.
+      const heightMMs = radar.heightMMs[cell];
+      if (!Number.isNaN(heightMMs)) blended.heightMMs[cell] += (shareMs / radar.observedMs[cell]) * heightMMs;
       blended.bridgedMs[cell] += bridgedMs;
       blended.edgeMs[cell] += edgeMs;
       blended.cappedMm[cell] += cappedMm;

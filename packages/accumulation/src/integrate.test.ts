@@ -56,6 +56,28 @@ describe("RadarIntegrator", () => {
     expect(minutesOf(step.observedMs[0])).toBe(5);
   });
 
+  test("a layer that starts anew is not joined to the one before, not for the headline's variants either", () => {
+    // Two depths of 1 mm, from 0 to 5 and from 6 to 11 minutes: 2 mm in ten minutes, and nothing known of the sixth.
+    const steps = [span(0, 12)];
+    const headlineCells = Int32Array.of(0);
+    const integrator = new RadarIntegrator(steps, rules, { cellCount: 1, headlineCells, variantCount: 1 });
+    for (const [k, minute] of [0, 5, 6, 11].entries()) {
+      const one = { ...layer(minute, [12]), variants: [Float32Array.of(24)] };
+      integrator.add(one, { isFirst: false, isLast: false, startsAnew: k % 2 === 0 });
+    }
+    const stretches = integrator.stretches(0, 0, ({ rateMmPerHour }) => rateMmPerHour[0]);
+    expect(
+      stretches.map(({ fromEpochMs, toEpochMs }) => [minutesOf(fromEpochMs), minutesOf(toEpochMs)]),
+    ).toEqual([
+      [0, 5],
+      [6, 11],
+    ]);
+    const step = integrator.take(0);
+    expect(step.depthMm[0]).toBeCloseTo(2, 12);
+    expect(step.variantMm[0][0]).toBeCloseTo(4, 12);
+    expect(minutesOf(step.observedMs[0])).toBe(10);
+  });
+
   test("a linear rate is integrated exactly over any borders", () => {
     // R(t) = 6 t mm/h with t in hours: the depth from a to b is 3 (b² - a²).
     const layers = [0, 4, 11, 17, 23].map((m) => layer(m, [(6 * m) / 60]));

@@ -47,10 +47,16 @@ export interface Stretch {
   readonly kind: "usual" | "bridged" | "edge";
 }
 
-interface HeldLayer extends RateLayer {
+/** How a layer stands to the others of its source. */
+export interface LayerPlace {
+  /** Whether this is the source's first or last round of the whole run, which speaks for half a round beyond. */
   readonly isFirst: boolean;
   readonly isLast: boolean;
+  /** True where nothing speaks for the time between the layer before and this one, however short it is. */
+  readonly startsAnew?: boolean;
 }
+
+interface HeldLayer extends RateLayer, LayerPlace {}
 
 /** Depth of a linear change of rate over [from, to] inside [start, end]: the trapezoid of its ends. */
 function trapezoidHours(
@@ -110,9 +116,9 @@ export class RadarIntegrator {
     this.#previous = new Int32Array(shape.cellCount).fill(-1);
   }
 
-  /** @param place - whether this is the radar's first or last round of the whole run */
-  add(layer: RateLayer, place: { readonly isFirst: boolean; readonly isLast: boolean }): void {
+  add(layer: RateLayer, place: LayerPlace): void {
     const number = this.#layers.length;
+    if (place.startsAnew === true) this.#previous.fill(-1);
     const held: HeldLayer = { ...layer, ...place };
     this.#layers.push(held);
     const previousLayer = number > 0 ? this.#layers[number - 1] : undefined;
@@ -207,6 +213,7 @@ export class RadarIntegrator {
     for (let n = this.#released; n < this.#layers.length; n++) {
       const layer = this.#layers[n];
       if (layer === undefined) continue;
+      if (layer.startsAnew === true) from = Number.NaN;
       const rate = rateOf(layer);
       if (!(rate >= 0)) continue;
       const at = layer.sweepMidEpochMs[layer.slot === undefined ? 0 : layer.slot[cell]];
@@ -254,7 +261,7 @@ export class RadarIntegrator {
       };
       if (layer.isFirst) put(to - half, to, rate1, rate1);
       if (layer.isLast) put(to, to + half, rate1, rate1);
-      for (let n = number - 1; n >= this.#released; n--) {
+      for (let n = number - 1; n >= this.#released && this.#layers[n + 1]?.startsAnew !== true; n--) {
         const previous = this.#layers[n];
         const rate0 = previous?.variants[variant][h] ?? Number.NaN;
         if (previous === undefined || !(rate0 >= 0)) continue;

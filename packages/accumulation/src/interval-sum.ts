@@ -98,12 +98,23 @@ export interface TotalPlanes {
 
 /**
  * The planes of a window from the sums of its intervals. Observed, bridged and edge fractions are shares of
- * the whole window.
+ * the whole window. The beam height is the mean over the time that sources with a beam spoke for, NaN where none did.
+ *
+ * @param withBeam - how many sources, the first of all, have a beam: gridded rain, which has none, stands behind them
  */
-export function totalPlanes(sum: FieldSum, windowMs: number): TotalPlanes {
+export function totalPlanes(
+  sum: FieldSum,
+  windowMs: number,
+  withBeam: number = sum.shareMs.length,
+): TotalPlanes {
   const over = (part: Float64Array, whole: (i: number) => number) =>
     Float32Array.from(part, (value, i) => value / whole(i));
   const observed = (i: number) => (sum.observedMs[i] > 0 ? sum.observedMs[i] : Number.NaN);
+  const ofBeams = (i: number) => {
+    if (withBeam === sum.shareMs.length) return observed(i);
+    const ms = sum.shareMs.slice(0, withBeam).reduce((total, share) => total + share[i], 0);
+    return ms > 0 ? ms : Number.NaN;
+  };
   return {
     totalMm: Float32Array.from(sum.depthMm),
     observedFraction: over(sum.observedMs, () => windowMs).map((value) => Math.min(1, value)),
@@ -113,7 +124,7 @@ export function totalPlanes(sum: FieldSum, windowMs: number): TotalPlanes {
       if (!(sum.observedMs[i] > 0)) return Number.NaN;
       return sum.depthMm[i] > 0 ? Math.min(1, value / sum.depthMm[i]) : 0;
     }),
-    beamHeightAslM: over(sum.heightMMs, observed),
+    beamHeightAslM: over(sum.heightMMs, ofBeams),
     radarShare: sum.shareMs.map((share) => over(share, observed)),
   };
 }
