@@ -1,10 +1,10 @@
-import { existsSync, mkdirSync, readFileSync, symlinkSync } from "node:fs";
+import { cpSync, existsSync, mkdirSync, readFileSync, symlinkSync } from "node:fs";
 import path from "node:path";
 import { beforeAll, describe, expect, test } from "vitest";
 import { area, box, planText, RADAR, writeAreas } from "./even-rain.ts";
 import { RAYS, SWEEP_SECONDS, storedDbz, writeVolume } from "./odim-scans.ts";
 import { type CliResult, ensureBuilt, inProcess } from "./run-cli.ts";
-import { manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
+import { fingerprints, manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
 
 // Small runs whose answer can be worked out by hand: a few cells between two invented radars.
 const scratch = scratchFolder("contracts");
@@ -134,6 +134,42 @@ describe("a cell that met the cap in a large catchment", () => {
     // Depth, share observed, radar, adjusted, wettest cell.
     expect(columns[5]).toContain(">at cap<");
     for (const other of [1, 2, 3, 4]) expect(columns[other]).not.toContain(">at cap<");
+  });
+});
+
+describe("a sweep that was sent again", () => {
+  const here = path.join(scratch, "sent-again");
+  const there = path.join(scratch, "elsewhere", "copied");
+  const AGAIN = "zzeve-1030b.h5";
+
+  beforeAll(async () => {
+    await writeEven(here, every(5, -5, 65), 30);
+    const stored = new Uint8Array(RAYS * RADAR.gateCount).fill(storedDbz(45));
+    const startEpochMs = FROM + 30 * 60_000 - (SWEEP_SECONDS / 2) * 1000;
+    await writeVolume(path.join(here, "scans", AGAIN), RADAR, [{ elevationDeg: 0.5, startEpochMs, stored }]);
+    cpSync(here, there, { recursive: true });
+  });
+
+  test.each(["first", "last"])("with other content: the %s by name counts", async (rule) => {
+    const plan = writePlan(here, { rain: `{ resent: ${rule} }` }, `${rule}.yaml`);
+    expect((await run(plan, rule)).status).toBe(0);
+    const rate = (dbz: number) => (10 ** (dbz / 10) / 200) ** (1 / 1.6);
+    // Even rain for an hour; a heavier scan counts for 5 minutes, as the middle of two trapezoids.
+    const depthMm = rate(30) + (rule === "last" ? (rate(45) - rate(30)) / 12 : 0);
+    const out = manifestOf(path.join(here, rule));
+    expect(out.headline.districtRadarMm).toBeCloseTo(depthMm, 5);
+    const [left, kept] = rule === "last" ? ["zzeve-1030.h5", AGAIN] : [AGAIN, "zzeve-1030.h5"];
+    expect(out.inputs.filter(({ use }) => use !== "used")).toMatchObject([
+      {
+        path: `scans/${left}`,
+        reason: `sent again with other content, the ${rule} counts: scans/${kept} dataset1`,
+      },
+    ]);
+  });
+
+  test("is told alike wherever the folder lies: the same bytes", async () => {
+    for (const folder of [here, there]) expect((await run(writePlan(folder), "run")).status).toBe(0);
+    expect(fingerprints(path.join(there, "run"))).toEqual(fingerprints(path.join(here, "run")));
   });
 });
 

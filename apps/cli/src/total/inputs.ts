@@ -224,10 +224,11 @@ function radarInput(
   tellRemarks(radar, withMoment, log);
   if (refuseShortWave(radar, withMoment, log, uses)) return undefined;
   const { kept: sent, dropped } = dropResent(withMoment, loaded.plan.rain.resent);
-  for (const { item, reason, content } of dropped) {
+  for (const { item, keptInstead, reason, content } of dropped) {
     leaveOut(
       item,
-      reason,
+      // Under the name that people see: a path of this machine would make other bytes on the next.
+      reason.replace(keptInstead.header.origin.path, () => keptInstead.file.name),
       content === "different" ? "see rain.resent in the plan" : "nothing to do: it counts once",
     );
   }
