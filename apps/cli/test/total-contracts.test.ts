@@ -1,7 +1,7 @@
 import { cpSync, existsSync, mkdirSync, readFileSync, symlinkSync } from "node:fs";
 import path from "node:path";
 import { beforeAll, describe, expect, test } from "vitest";
-import { area, box, planText, RADAR, writeAreas } from "./even-rain.ts";
+import { area, box, planText, RADAR, spoilChunk, writeAreas } from "./even-rain.ts";
 import { RAYS, SWEEP_SECONDS, storedDbz, writeVolume } from "./odim-scans.ts";
 import { type CliResult, ensureBuilt, inProcess } from "./run-cli.ts";
 import { fingerprints, manifestOf, type RunManifest, scratchFolder, total, writeIn } from "./total-kit.ts";
@@ -171,6 +171,28 @@ describe("a sweep that was sent again", () => {
     for (const folder of [here, there]) expect((await run(writePlan(folder), "run")).status).toBe(0);
     expect(fingerprints(path.join(there, "run"))).toEqual(fingerprints(path.join(here, "run")));
   });
+});
+
+test("where no scan can be decoded there is no total, dry or otherwise: exit 3", async () => {
+  const folder = path.join(scratch, "damaged");
+  // Noise of half a decibel, so that there is a packed array to damage.
+  const stored = Uint8Array.from(
+    { length: RAYS * RADAR.gateCount },
+    (_, k) => storedDbz(40) + (((k * 7919) % 13) % 2),
+  );
+  for (const minute of [0, 5, 10]) {
+    const startEpochMs = FROM + minute * 60_000 - (SWEEP_SECONDS / 2) * 1000;
+    const file = path.join(folder, "scans", `scan-${minute}.h5`);
+    spoilChunk(await writeVolume(file, RADAR, [{ elevationDeg: 0.5, startEpochMs, stored }]));
+  }
+  const { status, stderr, stdout } = await run(writePlan(folder), "run");
+  expect(stderr.match(/cannot be decoded/g)).toHaveLength(3);
+  expect(stderr.trimEnd().split("\n").slice(-3)).toEqual([
+    "error: no scan is left: 3 sweeps could not be decoded, and the rest observe nothing",
+    "  where: radars zzeve",
+    "  fix:   see the lines above, and fetch the files again",
+  ]);
+  expect([status, stdout]).toEqual([3, ""]);
 });
 
 // /dev/full takes every write for one to a full disk.

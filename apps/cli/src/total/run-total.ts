@@ -1,16 +1,18 @@
 import { statSync } from "node:fs";
 import os from "node:os";
 import path from "node:path";
+import { InputError } from "@rainreckon/core";
 import { type JsonValue, sha256OfFile, writeJson, writeText } from "@rainreckon/formats";
 import { renderReport } from "@rainreckon/report";
 import type { Manifest } from "../manifest.ts";
 import { loadPlan } from "../plan/load.ts";
 import { leftOutLog } from "../ui/left-out.ts";
+import { counted } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { version } from "../version.ts";
 import { compareWithGauges } from "./against-gauges.ts";
-import { assemble } from "./assemble.ts";
+import { type AssembledRun, assemble } from "./assemble.ts";
 import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
 import {
@@ -102,6 +104,7 @@ export async function runTotal(
     planned.window.endEpochMs - planned.window.startEpochMs,
   );
   for (const { what, where, fix } of total.notices) log.add("sweep left out", { what, where, fix });
+  refuseUndecodable(planned, total);
   const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape.radars, total.notices) };
   const comparison = compareWithGauges(run, total);
   const adjustedTotalMm = comparison.bias.applied
@@ -157,6 +160,17 @@ export async function runTotal(
   folder.publish([...files, RUN_LOG]);
   log.finish();
   return { outcome: { kind: "done", run, manifest, resumedUnits: resumed }, noticeCount: log.count };
+}
+
+/** Headers that can be read and arrays that cannot: no rain was found, and no dry hour either. */
+function refuseUndecodable({ radars }: PreparedRun, { sum, notices }: AssembledRun): void {
+  if (notices.length === 0 || sum.observedMs.some((ms) => ms > 0)) return;
+  throw new InputError(
+    `no scan is left: ${counted(notices.length, "sweep")} could not be decoded, and the rest observe nothing`,
+    `radars ${radars.map(({ radar }) => radar.id).join(", ")}`,
+    "see the lines above, and fetch the files again",
+    { kind: "no-input" },
+  );
 }
 
 function seconds(ms: number): number {
