@@ -4,7 +4,7 @@ import { coarsen, deepestStepMm, observedSumMm, stepCount } from "../charts/step
 import type { Hyetograph, ReportInput, StepSeries } from "../input.ts";
 import { missing } from "../text/figures.ts";
 import { html, joined, type Markup } from "../text/html.ts";
-import { counted, mmText, percentText } from "../text/numbers.ts";
+import { atLeastText, counted, mmText, percentText } from "../text/numbers.ts";
 import { zoned } from "../text/times.ts";
 
 /** More charts than this would make the file heavy and the page endless; the rest is in the run's tables. */
@@ -110,6 +110,6 @@ function stepCell(side: StepSeries, step: number): Markup {
   const share = side.observedFraction[step];
   if (mm === undefined || !Number.isFinite(mm)) return missing("not observed");
   return !isSeen(share)
-    ? html`≥\u00a0${mmText(mm)} <span class="sub">${percentText(share)} seen</span>`
+    ? html`${atLeastText(mm)} <span class="sub">${percentText(share)} seen</span>`
     : html`${mmText(mm)}`;
 }

@@ -8,6 +8,9 @@ import { intervalWords, missingIntervalWords, scoreSubject, scoreWords } from ".
 export function scoreSection(input: ReportInput): Markup {
   const { pairs, radar, crossValidated } = input.scores;
   if (radar.length === 0) return html``;
+  if ([...radar, ...crossValidated].every(({ score }) => score.n === 0)) {
+    return html`<section id="scores" aria-labelledby="scores-heading"><h2 id="scores-heading">How well radar and gauges agree</h2><p>There is no pair of gauge and radar to score.</p></section>`;
+  }
   const after = crossValidated.length > 0;
   return html`<section id="scores" aria-labelledby="scores-heading"><h2 id="scores-heading">How well radar and gauges agree</h2><p class="lead">${pairs.charAt(0).toUpperCase()}${pairs.slice(1)}. Ratios are radar/gauge.${
     after && " After adjustment each gauge is held against a value that it had no part in."

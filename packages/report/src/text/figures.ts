@@ -1,6 +1,6 @@
 import type { DepthFigure } from "../input.ts";
 import { html, type Markup } from "./html.ts";
-import { mmText, percentText } from "./numbers.ts";
+import { atLeastText, mmText, percentText } from "./numbers.ts";
 
 /** A dash for what is missing, with the reason for eyes (on hover), for ears, and for a note beside it. */
 export function missing(reason: string): Markup {
@@ -31,7 +31,7 @@ export function depthCell(figure: DepthFigure, minObserved: number): Markup {
   if (!Number.isFinite(figure.mm)) return missing(reasonOf(figure));
   const partial = isPartial(figure, minObserved);
   const why = `observed ${percentText(figure.observedFraction)} of it, so at least this much`;
-  return html`${partial && html`<span title="${why}">≥\u00a0</span>`}${mmText(figure.mm)}${
+  return html`${partial ? html`<span title="${why}">${atLeastText(figure.mm)}</span>` : mmText(figure.mm)}${
     figure.atCap === true && html` <span class="mark" title="a capped rain rate went into it">at cap</span>`
   }`;
 }
@@ -39,6 +39,6 @@ export function depthCell(figure: DepthFigure, minObserved: number): Markup {
 /** The same with its unit, for running text. */
 export function depthInText(figure: DepthFigure, minObserved: number): Markup {
   if (!Number.isFinite(figure.mm)) return missing(reasonOf(figure));
-  const sign = isPartial(figure, minObserved) ? "≥\u00a0" : "";
-  return html`${sign}${mmText(figure.mm)}\u00a0mm${figure.atCap === true && " (at cap)"}`;
+  const depth = isPartial(figure, minObserved) ? atLeastText(figure.mm) : mmText(figure.mm);
+  return html`${depth}\u00a0mm${figure.atCap === true && " (at cap)"}`;
 }

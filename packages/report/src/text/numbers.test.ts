@@ -1,5 +1,13 @@
 import { expect, test } from "vitest";
-import { countText, errorText, mmText, percentText, ratioText, signedErrorText } from "./numbers.ts";
+import {
+  atLeastText,
+  countText,
+  errorText,
+  mmText,
+  percentText,
+  ratioText,
+  signedErrorText,
+} from "./numbers.ts";
 
 const NARROW = "\u202f";
 const WIDE = "\u00a0";
@@ -16,6 +24,14 @@ test.each([
   [-3.26, "\u22123.3"],
 ])("%d mm reads %s", (mm, text) => {
   expect(mmText(mm)).toBe(text);
+});
+
+test.each([
+  [0, `≥${WIDE}0.0`],
+  [0.007, `>${WIDE}0`],
+  [31.44, `≥${WIDE}31.4`],
+])("at least %d mm reads %s", (mm, text) => {
+  expect(atLeastText(mm)).toBe(text);
 });
 
 test.each([

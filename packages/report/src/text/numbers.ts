@@ -17,6 +17,11 @@ export function mmText(mm: number): string {
   return mm < 0 ? `${MINUS}${digits}` : digits;
 }
 
+/** A depth of a part, so that the whole was at least that: "≥ 31.4"; "> 0" where it is too small for a tenth. */
+export function atLeastText(mm: number): string {
+  return mm > 0 && mm < 0.05 ? `>${NO_BREAK_SPACE}0` : `≥${NO_BREAK_SPACE}${mmText(mm)}`;
+}
+
 /** An error in mm, dB or %: hundredths below 10, where a mean over many pairs can tell them apart. */
 export function errorText(error: number): string {
   const size = Math.abs(error);
