@@ -316,7 +316,7 @@ describe("plan", () => {
 const REAL = process.env.RAINRECKON_REAL;
 if (REAL === undefined) console.log("RAINRECKON_REAL is not set: survey and plan of real scans are skipped");
 
-describe.skipIf(REAL === undefined)("real scans", () => {
+describe.skipIf(REAL === undefined)("real scans (skipped unless RAINRECKON_REAL is set)", () => {
   test("the ten one-sweep files yield the plan for 06:50 to 07:00", async () => {
     const ten = readdirSync(REAL!)
       .filter((name) => name.startsWith("T_PAZ"))

@@ -106,6 +106,9 @@ test("two columns of one name, or too many decimals, are the caller's mistake", 
   await expect(writeCsv(path, [column], [])).rejects.toBeInstanceOf(RangeError);
 });
 
-test.skipIf(!FULL_DEVICE)("a full disk is a failure midway", async () => {
-  await expect(writeCsv("/dev/full", COLUMNS, [{ id: "a" }])).rejects.toMatchObject({ kind: "midway" });
-});
+test.skipIf(!FULL_DEVICE)(
+  "a full disk is a failure midway (skipped where there is no /dev/full)",
+  async () => {
+    await expect(writeCsv("/dev/full", COLUMNS, [{ id: "a" }])).rejects.toMatchObject({ kind: "midway" });
+  },
+);

@@ -91,12 +91,15 @@ test.each([
   await expect(readFile(path)).rejects.toThrow("ENOENT");
 });
 
-test.skipIf(!FULL_DEVICE)("a full disk is a failure midway", async () => {
-  await expect(writeGeoTiff("/dev/full", spec(300, 300))).rejects.toMatchObject({
-    kind: "midway",
-    where: "/dev/full",
-  });
-});
+test.skipIf(!FULL_DEVICE)(
+  "a full disk is a failure midway (skipped where there is no /dev/full)",
+  async () => {
+    await expect(writeGeoTiff("/dev/full", spec(300, 300))).rejects.toMatchObject({
+      kind: "midway",
+      where: "/dev/full",
+    });
+  },
+);
 
 test.skipIf(!FOREIGN_TOOLS)(
   "gdalinfo reads what the file says of itself (RAINRECKON_FOREIGN_TOOLS=1)",

@@ -63,6 +63,9 @@ test("the file holds the text; nothing is written of a value that JSON cannot ho
   expect(await readFile(path, "utf8")).toBe('{\n  "n": 1\n}\n');
 });
 
-test.skipIf(!FULL_DEVICE)("a full disk is a failure midway", async () => {
-  await expect(writeJson("/dev/full", { n: 1 })).rejects.toMatchObject({ kind: "midway" });
-});
+test.skipIf(!FULL_DEVICE)(
+  "a full disk is a failure midway (skipped where there is no /dev/full)",
+  async () => {
+    await expect(writeJson("/dev/full", { n: 1 })).rejects.toMatchObject({ kind: "midway" });
+  },
+);
