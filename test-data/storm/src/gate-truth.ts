@@ -5,7 +5,7 @@ import { TRUTH_RATE_STEP_MM_PER_HOUR } from "./grids.ts";
 import { GATE_FLAGS, RAY_COUNT, type RadarPlan, type SweepTruth } from "./radar.ts";
 
 /** Losses in gates_<node>.bin.gz are stored in steps of this many dB. */
-export const GATE_LOSS_STEP_DB = 0.01;
+const GATE_LOSS_STEP_DB = 0.01;
 
 /** One sweep in a file of gates: where its planes begin once the file is unpacked. */
 interface GateSweep {
@@ -63,5 +63,7 @@ export class GateTruth {
 }
 
 function steps(values: Float32Array, step: number): Uint8Array {
-  return new Uint8Array(Uint16Array.from(values, (value) => Math.min(65535, Math.round(value / step))).buffer);
+  return new Uint8Array(
+    Uint16Array.from(values, (value) => Math.min(65535, Math.round(value / step))).buffer,
+  );
 }

@@ -43,8 +43,7 @@ export function lonelyGauge(seed: number): GaugePlan {
   const lonely = SOUND_GAUGES.filter(({ id, network, xKm, yKm }) =>
     SOUND_GAUGES.every(
       (other) =>
-        (other.id === id && other.network === network) ||
-        Math.hypot(other.xKm - xKm, other.yKm - yKm) >= 10,
+        (other.id === id && other.network === network) || Math.hypot(other.xKm - xKm, other.yKm - yKm) >= 10,
     ),
   );
   return lonely[Math.floor(lonely.length * new RandomStream(seed + 104729).uniform())]!;

@@ -8,9 +8,9 @@ import { GateTruth } from "./gate-truth.ts";
 import { type GaugeFiles, type GaugeRecord, recordGauges, writeGauges } from "./gauges.ts";
 import { heightGeoTiff } from "./geotiff.ts";
 import { cutTruth, TRUTH_RATE_STEP_MM_PER_HOUR, type TruthGrid, truthGrid, weatherLattice } from "./grids.ts";
+import { interferenceRays } from "./interference.ts";
 import { odimDateTime, type WrittenSweep, writeSweeps } from "./odim.ts";
 import type { StormPreset, WorldTold } from "./presets.ts";
-import { interferenceRays } from "./interference.ts";
 import {
   emptySweepTruth,
   measureSweep,
@@ -22,7 +22,7 @@ import {
 } from "./radar.ts";
 import { noiseTable, RandomStream } from "./random.ts";
 import { terrainM } from "./terrain.ts";
-import { emptyMoment, type Moment, Weather } from "./weather.ts";
+import { emptyMoment, type Lattice, type Moment, type StormShape, Weather } from "./weather.ts";
 
 /** The middle of the invented district: open sea, so that it can be taken for no place. */
 export const DISTRICT_CENTRE = { lonDeg: 3, latDeg: 52.5 };
@@ -64,14 +64,7 @@ export async function generateStorm(
   const grid = truthGrid(plane.proj, options.sizeKm);
   const lattice = weatherLattice(options.sizeKm, options.radars);
   const random = new RandomStream(options.seed);
-  const weather = new Weather(random, {
-    minutes: options.minutes,
-    districtHalfKm: options.sizeKm * 0.3,
-    surroundingsHalfKm: Math.max(lattice.nx, lattice.ny) / 2,
-    meanMm: options.meanMm,
-    maximumMm: options.maximumMm,
-    pattern: options.pattern,
-  });
+  const weather = new Weather(random, weatherShape(options, lattice));
   for (const folder of ["", "gauges", "truth", ...options.radars.map(({ node }) => join("radar", node))]) {
     mkdirSync(join(options.folder, folder), { recursive: true });
   }
@@ -87,14 +80,7 @@ export async function generateStorm(
     onProgress?.(minute + 1, options.minutes);
   }
 
-  const records = recordGauges(
-    weather,
-    random,
-    plane,
-    options.sizeKm,
-    options.minutes,
-    options.gauges,
-  );
+  const records = recordGauges(weather, random, plane, options.sizeKm, options.minutes, options.gauges);
   const ground = (xKm: number, yKm: number): number => terrainM(xKm, yKm, options.ridges);
   const gauges = writeGauges(records, plane, options.startEpochMs, ground);
   const catchments = planeCatchments(options.sizeKm);
@@ -108,6 +94,18 @@ export async function generateStorm(
     gaugeCount: records.length,
     meanMm: told.district.meanMm,
     maximumMm: told.district.maximumMm,
+  };
+}
+
+/** What the weather of a storm is to be like, over the lattice that its radars need. */
+export function weatherShape(storm: StormPreset, lattice: Lattice): StormShape {
+  return {
+    minutes: storm.minutes,
+    districtHalfKm: storm.sizeKm * 0.3,
+    surroundingsHalfKm: Math.max(lattice.nx, lattice.ny) / 2,
+    meanMm: storm.meanMm,
+    maximumMm: storm.maximumMm,
+    pattern: storm.pattern,
   };
 }
 
@@ -149,14 +147,7 @@ class Watch {
       this.#geometries.set(
         radar,
         radar.sweeps.map(({ elevationDeg }) =>
-          sweepGeometry(
-            radar,
-            elevationDeg,
-            plane,
-            options.ridges,
-            options.meltingLayer,
-            options.turbines,
-          ),
+          sweepGeometry(radar, elevationDeg, plane, options.ridges, options.meltingLayer, options.turbines),
         ),
       );
       this.#waiting.set(radar, []);
@@ -184,7 +175,7 @@ class Watch {
       .sort((a, b) => a.startSecond - b.startSecond);
   }
 
-  async measure(due: DueSweep, moment: Moment, lattice: ReturnType<typeof weatherLattice>): Promise<void> {
+  async measure(due: DueSweep, moment: Moment, lattice: Lattice): Promise<void> {
     const { radar, index, startSecond } = due;
     const startEpochMs = this.#options.startEpochMs + startSecond * 1000;
     const { elevationDeg } = radar.sweeps[index]!;
@@ -261,7 +252,7 @@ class Truth {
     for (let hour = 0; hour * 60 < minutes; hour++) this.#hourMm.push(new Float64Array(cells));
   }
 
-  add(minute: number, moment: Moment, lattice: ReturnType<typeof weatherLattice>): void {
+  add(minute: number, moment: Moment, lattice: Lattice): void {
     cutTruth(moment.rateMmPerHour, lattice, this.grid, this.#cut);
     const hour = this.#hourMm[Math.floor(minute / 60)]!;
     const first = minute * this.#cut.length;

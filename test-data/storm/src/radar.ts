@@ -456,11 +456,13 @@ function measureRay(
     const flicker = fromDb((2 + 3 * restless) * noise.table[dice++ & mask]!);
     const jitterDb = 0.7 * noise.table[dice++ & mask]!;
     const totalZ = rainZ + clutterZ * flicker + spikeZ;
-    moments.TH[index] = encode(10 * Math.log10(totalZ) + radar.calibrationOffsetDb + jitterDb, z);
+    const total = encode(10 * Math.log10(totalZ) + radar.calibrationOffsetDb + jitterDb, z);
+    moments.TH[index] = total;
     const leftZ = geometry.residualClutterZ[index]! * flicker;
     const keptZ = rainZ + leftZ + spikeZ;
     if (keptZ < noiseZ) continue;
-    moments.DBZH[index] = encode(10 * Math.log10(keptZ) + radar.calibrationOffsetDb + jitterDb, z);
+    moments.DBZH[index] =
+      keptZ === totalZ ? total : encode(10 * Math.log10(keptZ) + radar.calibrationOffsetDb + jitterDb, z);
 
     const foreign = (leftZ + spikeZ) / keptZ;
     // Blades turn and another transmitter is out of step: neither stands still as the ground does.

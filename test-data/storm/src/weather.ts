@@ -268,12 +268,7 @@ export class Weather {
       for (let row = 0; row < lattice.ny; row++) {
         for (let column = 0; column < lattice.nx; column++) {
           const index = row * lattice.nx + column;
-          const d2 = stretchedDistance2(
-            cell,
-            lattice.westKm + column,
-            lattice.southKm + row,
-            moment.minute,
-          );
+          const d2 = stretchedDistance2(cell, lattice.westKm + column, lattice.southKm + row, moment.minute);
           const hailZ = peakZ * showerFall(d2 / HAIL_TO_RAIN_WIDTH ** 2);
           if (hailZ === 0) continue;
           const otherZ = moment.zMm6PerM3[index]! * (1 - moment.hailShare[index]!);

@@ -104,10 +104,15 @@ function plain(kit: Kit): Omit<Parts, "planted" | "pattern"> {
 const gentleLossWords = (kit: Kit): string =>
   `two-way loss of ${kit.sBand.lossDbPerDeg} dB (S) and ${kit.cBand.lossDbPerDeg} dB (C) per degree of PHIDP`;
 
+function reading(offsetDb: number): string {
+  if (offsetDb === 0) return "true";
+  return `${Math.abs(offsetDb)} dB too ${offsetDb < 0 ? "low" : "high"}`;
+}
+
 function calibrationWorld(name: string, offsetDb: number): World {
   return {
     name,
-    says: `Mixed rain; the S-band radar reads ${offsetDb === 0 ? "true" : `${offsetDb} dB`}, its C-band neighbour reads true`,
+    says: `Mixed rain; the S-band radar reads ${reading(offsetDb)}, its C-band neighbour reads true`,
     make: (kit) => ({
       ...plain(kit),
       pattern: MIXED_RAIN,
@@ -202,7 +207,7 @@ export const WORLDS: readonly World[] = [
       pattern: WARM_RAIN,
       meltingLayer: TROPICAL_LAYER,
       planted: [
-        "four times as many drops for the same rain: Nw about 32,000 m-3 mm-1, within a factor of 2.5",
+        "many small drops: Nw about 32,000 m-3 mm-1 and within a factor of some 6 of it, where other worlds have 3,200",
         "showers and wind of 1.3 m/s: rain near zero velocity, which is no ground clutter",
         gentleLossWords(kit),
         GROUND_WORDS,
@@ -303,7 +308,11 @@ export const WORLDS: readonly World[] = [
       };
     },
   },
-  { name: "mixed", says: "Mixed rain with every artefact of the radar at once, each of a middling size", make: mixed },
+  {
+    name: "mixed",
+    says: "Mixed rain with every artefact of the radar at once, each of a middling size",
+    make: mixed,
+  },
   without("attenuation", "rain takes nothing from the beam", (parts) => ({
     ...parts,
     radars: parts.radars.map(lossFree),
@@ -344,7 +353,7 @@ export function worldStorm(name: string, seed: number, size: WorldSize = "small"
 function kitOf(seed: number, size: WorldSize): Kit {
   const base = size === "small" ? SMALL : DEMO;
   const [sBand, cBand] = base.radars as [RadarPlan, RadarPlan];
-  // Three sweeps and shorter reach keep a small world quick to make.
+  // Three sweeps, gates of 1 km and a file a round keep a small world quick to make.
   const light = size === "small";
   return {
     seed,
@@ -352,6 +361,6 @@ function kitOf(seed: number, size: WorldSize): Kit {
     scale: base.sizeKm / 160,
     base,
     sBand: light ? { ...sBand, sweeps: sBand.sweeps.slice(0, 3) } : sBand,
-    cBand: light ? { ...cBand, gateCount: 80 } : cBand,
+    cBand: light ? { ...cBand, gateM: 1000, gateCount: 50, files: "volumes" } : cBand,
   };
 }
