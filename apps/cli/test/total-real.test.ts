@@ -91,7 +91,7 @@ describe.skipIf(REAL === undefined)("real scans (skipped unless RAINRECKON_REAL 
       expect(of).toBe("10");
       expect(Number(minutes)).toBeGreaterThan(6);
       expect(Number(minutes)).toBeLessThan(9);
-      expect(said).toMatch(/^at least \d+\.\d mm over the whole map/m);
+      expect(said).toMatch(/^at least \d+\.\d+ mm over the whole map/m);
       expect(said).toMatch(/^! Only \d+ % of area and time was observed: the depth is a lower bound\.$/m);
       expect(said).not.toMatch(/observed 10 /);
     });
