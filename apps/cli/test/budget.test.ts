@@ -188,7 +188,7 @@ describe("bad parameters: one fault of three lines, exit 2", () => {
     [["--band", "S", "--frequency", "9.4"], /lies in X band, not in S/, /leave out --band/],
     [["--band", "C", "--relation", "marshal"], /no relation is called/, /marshall-1955/],
     [["--band", "C", "--terrain", uneven], /even steps/, /1, 2, 3/],
-    [["--band", "C", "--terrain", path.join(scratch, "none.csv")], /no way to this file/, /another path/],
+    [["--band", "C", "--terrain", path.join(scratch, "none.csv")], /no such file/, /CSV file of distances/],
   ] as const)("%j", async (args, what, fix) => {
     const result = await inProcess(["budget", ...args]);
     expect(result.stderr).toMatch(/^error: .+\n {2}where: .+\n {2}fix: {3}.+\n$/);
