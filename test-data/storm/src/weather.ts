@@ -199,12 +199,7 @@ export class Weather {
     for (const cell of this.cells) {
       const rate = this.#showerFactor * peakNow(cell, minute);
       if (rate <= 0) continue;
-      const { xKm, yKm } = placeOf(cell, minute);
-      const reach = Math.sqrt(DRY_DISTANCE2) * cell.longSigmaKm;
-      const firstColumn = Math.max(0, Math.ceil(xKm - reach - lattice.westKm));
-      const lastColumn = Math.min(lattice.nx - 1, Math.floor(xKm + reach - lattice.westKm));
-      const firstRow = Math.max(0, Math.ceil(yKm - reach - lattice.southKm));
-      const lastRow = Math.min(lattice.ny - 1, Math.floor(yKm + reach - lattice.southKm));
+      const { firstColumn, lastColumn, firstRow, lastRow } = reachOf(cell, minute, lattice);
       for (let row = firstRow; row <= lastRow; row++) {
         for (let column = firstColumn; column <= lastColumn; column++) {
           const d2 = stretchedDistance2(cell, lattice.westKm + column, lattice.southKm + row, minute);
@@ -265,10 +260,12 @@ export class Weather {
       const vigour = vigourNow(cell, moment.minute);
       if (cell.hailDbz === undefined || vigour === 0) continue;
       const peakZ = vigour * 10 ** (cell.hailDbz / 10);
-      for (let row = 0; row < lattice.ny; row++) {
-        for (let column = 0; column < lattice.nx; column++) {
+      const { firstColumn, lastColumn, firstRow, lastRow } = reachOf(cell, moment.minute, lattice);
+      for (let row = firstRow; row <= lastRow; row++) {
+        for (let column = firstColumn; column <= lastColumn; column++) {
           const index = row * lattice.nx + column;
-          const d2 = stretchedDistance2(cell, lattice.westKm + column, lattice.southKm + row, moment.minute);
+          const xKm = lattice.westKm + column;
+          const d2 = stretchedDistance2(cell, xKm, lattice.southKm + row, moment.minute);
           const hailZ = peakZ * showerFall(d2 / HAIL_TO_RAIN_WIDTH ** 2);
           if (hailZ === 0) continue;
           const otherZ = moment.zMm6PerM3[index]! * (1 - moment.hailShare[index]!);
@@ -386,6 +383,18 @@ function showerFall(distance2: number): number {
 function placeOf(cell: Cell, minute: number): { xKm: number; yKm: number } {
   const since = minute - cell.midMinute;
   return { xKm: cell.xKm + cell.xKmPerMinute * since, yKm: cell.yKm + cell.yKmPerMinute * since };
+}
+
+/** The part of a lattice that a shower can reach: first and last columns and rows. */
+function reachOf(cell: Cell, minute: number, lattice: Lattice) {
+  const { xKm, yKm } = placeOf(cell, minute);
+  const reach = Math.sqrt(DRY_DISTANCE2) * cell.longSigmaKm;
+  return {
+    firstColumn: Math.max(0, Math.ceil(xKm - reach - lattice.westKm)),
+    lastColumn: Math.min(lattice.nx - 1, Math.floor(xKm + reach - lattice.westKm)),
+    firstRow: Math.max(0, Math.ceil(yKm - reach - lattice.southKm)),
+    lastRow: Math.min(lattice.ny - 1, Math.floor(yKm + reach - lattice.southKm)),
+  };
 }
 
 function peakNow(cell: Cell, minute: number): number {
