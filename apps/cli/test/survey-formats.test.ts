@@ -43,7 +43,7 @@ test("scans of every format are told by their content and lie side by side", asy
   expect(wrong.some(({ what }) => what === "1 of 9 rays lie between sweeps and belong to none")).toBe(true);
 });
 
-test("gridded rain is recognised, described, and kept apart from what a total is made of", async () => {
+test("gridded rain is recognised, described, and no rain goes into a total twice", async () => {
   const { radars, grids, possible, otherFiles } = await surveyOf(FIXTURES, [
     "grid-rate-hdf5.nc",
     "grid-depth.nc",
@@ -66,7 +66,13 @@ test("gridded rain is recognised, described, and kept apart from what a total is
     ["grid-rate.tif", "GeoTIFF", "rainRateMmPerHour", 1, null],
   ]);
   expect(grids[3]).toMatchObject({ nx: 3, ny: 2, place: "cells of 1000 m by 1000 m in EPSG:3035" });
-  expect(possible).toContain("nothing yet from 5 gridded layers: totals start from polar scans");
+  expect(possible[0]).toMatch(/^a total for .* from 1 gridded layer: depth$/);
+  expect(possible).toContain(
+    "nothing from 1 gridded layer of reflectivity: one instant per site is a rate, not a total",
+  );
+  expect(possible).toContain(
+    '2 gridded layers of rate besides ("rate"), switched off in a plan: no rain should go in twice',
+  );
 });
 
 const REAL = process.env.RAINRECKON_REAL;

@@ -69,7 +69,7 @@ export type MapLayer =
 export interface ReportRadar {
   readonly id: string;
   readonly name?: string;
-  /** In the grid's coordinates, metres. */
+  /** In the grid's coordinates, metres; NaN for a source that stands nowhere, such as rain that came gridded. */
   readonly xM: number;
   readonly yM: number;
 }

@@ -17,6 +17,7 @@ export const planReportSchema = z.strictObject({
   file: z.string(),
   action: z.enum(["written", "updated", "unchanged"]),
   radars: z.array(z.string()),
+  grids: z.array(z.string()).describe("gridded sources, by id"),
   gaugeCount: z.number().int(),
   catchmentCount: z.number().int(),
   changes: z.array(z.string()).describe("what --update added"),
@@ -109,11 +110,11 @@ function refuseToOverwrite({ out, update, force }: PlanFlags): void {
 async function requireTotal({ findings }: SurveyResult, paths: readonly string[]): Promise<void> {
   if (findings.window !== null) return;
   const { RATE_NOT_TOTAL } = await import("../survey/possible.ts");
-  const what = findings.radars.length === 0 ? "there is no scan that can be read" : RATE_NOT_TOTAL;
-  const fix =
-    findings.radars.length === 0
-      ? "name folders that hold scans (ODIM_H5, CfRadial, Archive Level II); survey says what is there"
-      : "add scans of at least a second round, or write the plan with --rate for a map of rain rate";
+  const isEmpty = findings.radars.length + findings.grids.length === 0;
+  const what = isEmpty ? "there is no scan that can be read" : RATE_NOT_TOTAL;
+  const fix = isEmpty
+    ? "name folders that hold scans (ODIM_H5, CfRadial, Archive Level II) or gridded rain; survey says what is there"
+    : "add scans of at least a second round, or write the plan with --rate for a map of rain rate";
   throw new InputError(what, paths.join(", "), fix, { kind: "no-input" });
 }
 
@@ -145,6 +146,7 @@ async function writePlan(
     file: out,
     action,
     radars: findings.radars.map((radar) => radar.id),
+    grids: result.gridSources.map(({ id }) => id),
     gaugeCount: findings.gauges.reduce(
       (sum, { gaugeIds, withoutStation }) => sum + gaugeIds.length - withoutStation.length,
       0,
@@ -183,9 +185,9 @@ function tellPlan(terminal: Terminal, report: PlanReport, { findings }: SurveyRe
     printJson(terminal, planReportSchema, report);
     return;
   }
-  const { file, action, radars, gaugeCount, catchmentCount, changes, remarks, next } = report;
+  const { file, action, radars, grids, gaugeCount, catchmentCount, changes, remarks, next } = report;
   const lines = [
-    `${file} ${action}: ${counted(radars.length, "radar")}, ${counted(gaugeCount, "gauge")}, ${counted(catchmentCount, "catchment")}`,
+    `${file} ${action}: ${counted(radars.length, "radar")},${grids.length === 0 ? "" : ` ${counted(grids.length, "gridded source")},`} ${counted(gaugeCount, "gauge")}, ${counted(catchmentCount, "catchment")}`,
     ...changes.map((change) => `- ${change}`),
     ...remarks.map((remark) => `- ${remark}`),
     ...(action === "written"

@@ -1,9 +1,12 @@
 import path from "node:path";
+import { type Grid, InputError } from "@rainreckon/core";
 import { planGrid } from "@rainreckon/mosaic";
 import { Document, isCollection, type Node, YAMLMap, YAMLSeq } from "yaml";
 import type { GaugeFinding, Guessed, RadarFinding, StationFinding } from "../survey/findings.ts";
+import type { GridSource } from "../survey/grid-sources.ts";
 import { GAP_ROUNDS } from "../survey/radars.ts";
-import type { SurveyResult } from "../survey/survey-result.ts";
+import type { Point, SurveyResult } from "../survey/survey-result.ts";
+import { counted } from "../ui/numbers.ts";
 import { globsFor, relativePath } from "./globs.ts";
 import { DEFAULT_RELATION, planSchema } from "./schema.ts";
 
@@ -11,6 +14,10 @@ const CELL_M = 1000;
 const MARGIN_M = 10_000;
 /** How far around the radars a map reaches where neither catchments nor gauges say what matters. */
 const RADAR_MARGIN_M = 150_000;
+/** A map of more cells across than this is more than a first plan needs. */
+const MAX_CELLS_ACROSS = 2000;
+/** Cells that even a grid around the whole Earth has few of. */
+const COARSE_CELL_M = 64_000;
 const ROUND_MINUTES_UNKNOWN = 5;
 const BEAM_WIDTH_UNKNOWN_DEG = 1;
 
@@ -83,7 +90,13 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     author: byDefault(""),
     status: byDefault("provisional", "provisional or final"),
     window: windowNode(result),
-    radars: listNode(findings.radars.map((radar) => radarNode(radar, result.radarsInWindow.has(radar.id)))),
+    radars: listNode(
+      findings.radars.map((radar) => radarNode(radar, result.radarsInWindow.has(radar.id))),
+      "found: none with scans",
+    ),
+    ...(result.gridSources.length === 0
+      ? {}
+      : { grids: listNode(result.gridSources.map((source) => gridsNode(source, result, folder))) }),
     gauges: listNode(gaugeNodes(result, folder), "found: none with readings and stations"),
     catchments: catchmentsNode(result, folder),
     assets: assetsNode(result, folder),
@@ -100,15 +113,17 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     overrides: inline(byDefault([], "{network, gauge, verdict: use or leave-out, reason, by, date}")),
   });
   const scans = findings.radars.flatMap((radar) => radar.files.map((file) => path.resolve(file)));
-  upper.set(
-    factory.createNode("scans"),
-    markedNode(found(globsFor(scans, result.files, folder), "recognised by content")),
-  );
+  if (scans.length > 0) {
+    upper.set(
+      factory.createNode("scans"),
+      markedNode(found(globsFor(scans, result.files, folder), "recognised by content")),
+    );
+  }
   upper.set(factory.createNode("grid"), gridNode(result));
   for (const section of ["rain", "pairs", "bootstrap"] as const) {
     upper.set(factory.createNode(section), defaultsNode(section));
   }
-  ruleBefore(upper, "scans");
+  ruleBefore(upper, scans.length > 0 ? "scans" : "grid");
   const document = new Document(upper, SETTINGS);
   document.commentBefore = HEADER;
   return document.toString({ lineWidth: 0 });
@@ -130,10 +145,12 @@ function ruleBefore(map: YAMLMap, key: string): void {
 function windowNode({ findings }: SurveyResult): Node {
   const { window } = findings;
   if (window === null) throw new RangeError("a plan needs a window");
-  const why =
-    window.basis === "radars and gauges"
-      ? "time that radars and gauges share, to whole steps"
-      : "time of the scans, to whole steps";
+  const why = {
+    "radars and gauges": "time that radars and gauges share, to whole steps",
+    radars: "time of the scans, to whole steps",
+    "grids and gauges": "time that the gridded layers and gauges share, to whole steps",
+    grids: "time of the gridded layers, to whole steps",
+  }[window.basis];
   return mapNode({
     from: found(window.from, why),
     to: found(window.to, why),
@@ -168,6 +185,43 @@ export function radarNode(radar: RadarFinding, inWindow: boolean): Node {
     moment: rain || other === undefined ? undefined : guessed("TH", "the files offer no DBZH"),
     beamWidthDeg:
       radar.beamWidthDeg === undefined ? byDefault(BEAM_WIDTH_UNKNOWN_DEG, "the files give none") : undefined,
+  });
+}
+
+/** One entry of `grids`. */
+export function gridsNode(source: GridSource, { files }: SurveyResult, folder: string): Node {
+  const { id, quantity, stepMinutes, inWindow } = source;
+  const step = stepMinutes ?? ROUND_MINUTES_UNKNOWN;
+  const isDepth = quantity === "depth";
+  const paths = source.files.map((file) => path.resolve(file));
+  return mapNode({
+    id: byDefault(id, "its name in every output"),
+    files: inline(found(globsFor(paths, files, folder), "recognised by content")),
+    use: inWindow
+      ? byDefault(true, "ask its maker what was corrected, and whether gauges were used")
+      : guessed(false, "other sources cover this, or there is one instant only"),
+    quantity: found(quantity, counted(source.spans.length, "layer")),
+    medianStepMinutes: isDepth
+      ? undefined
+      : stepMinutes === null
+        ? byDefault(step, "there is one layer only")
+        : found(step, "median time between layers"),
+    maxGapMinutes: isDepth
+      ? undefined
+      : guessed(
+          Number((GAP_ROUNDS * step).toFixed(3)),
+          `${GAP_ROUNDS} median steps; longer holes are not bridged`,
+        ),
+    ...(quantity === "reflectivity"
+      ? {
+          offsetDb: byDefault(0, "dB, added to every reflectivity"),
+          relation: byDefault(
+            DEFAULT_RELATION,
+            "it was not chosen by anyone; compare: rainreckon relate table",
+          ),
+          cap: inline(byDefault({ dbz: 53 }, "or {mmPerHour: 100}")),
+        }
+      : {}),
   });
 }
 
@@ -352,14 +406,19 @@ export function assetsNode({ findings }: SurveyResult, folder: string): Node | u
 function gridNode(result: SurveyResult): Node {
   const interest = [...result.catchmentPoints, ...result.gaugePoints];
   const radars = result.findings.radars.filter((radar) => result.radarsInWindow.has(radar.id));
-  const grid =
+  const outline = result.gridSources.filter(({ inWindow }) => inWindow).flatMap((source) => source.outline);
+  const [grid, why] =
     interest.length > 0
-      ? planGrid(interest, { marginM: MARGIN_M, cellM: CELL_M })
-      : planGrid(radars, { marginM: RADAR_MARGIN_M, cellM: CELL_M });
-  const why =
-    interest.length > 0
-      ? `${MARGIN_M / 1000} km around catchments and gauges`
-      : `${RADAR_MARGIN_M / 1000} km around the radars`;
+      ? [
+          planGrid(interest, { marginM: MARGIN_M, cellM: CELL_M }),
+          `${MARGIN_M / 1000} km around catchments and gauges`,
+        ]
+      : radars.length > 0
+        ? [
+            planGrid(radars, { marginM: RADAR_MARGIN_M, cellM: CELL_M }),
+            `${RADAR_MARGIN_M / 1000} km around the radars`,
+          ]
+        : [gridAround(outline), "all that the gridded layers cover; narrow it to what matters"];
   return mapNode({
     crs: guessed(grid.crs, "equal areas; centre to a tenth of a degree"),
     westM: guessed(grid.westM, why),
@@ -368,6 +427,23 @@ function gridNode(result: SurveyResult): Node {
     nx: guessed(grid.nx, why),
     ny: guessed(grid.ny, why),
   });
+}
+
+/** A grid around all that a gridded source covers, of larger cells where it is a continent. */
+function gridAround(outline: readonly Point[]): Grid {
+  if (outline.length === 0) {
+    throw new InputError(
+      "nothing says where the gridded layers lie, and there are neither catchments nor gauges",
+      "the gridded files",
+      "add a map of catchments",
+      { kind: "no-input" },
+    );
+  }
+  const { nx, ny } = planGrid(outline, { marginM: 0, cellM: COARSE_CELL_M });
+  const acrossM = Math.max(nx, ny) * COARSE_CELL_M;
+  let cellM = CELL_M;
+  while (acrossM / cellM > MAX_CELLS_ACROSS) cellM *= 2;
+  return planGrid(outline, { marginM: 0, cellM });
 }
 
 const REMARKS: Readonly<Record<string, string>> = {

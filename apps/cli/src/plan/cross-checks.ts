@@ -1,7 +1,8 @@
 import { clockZone, durationMs } from "@rainreckon/accumulation";
 import { findRelation, InputError } from "@rainreckon/core";
+import { isDynamicPattern } from "tinyglobby";
 import type { PlanFault } from "./faults.ts";
-import type { Plan, PlanGaugeFiles } from "./schema.ts";
+import type { Plan, PlanGaugeFiles, PlanGrids } from "./schema.ts";
 import type { PlanPath } from "./yaml-place.ts";
 import { findZone } from "./zone.ts";
 
@@ -14,7 +15,8 @@ export function crossChecks(plan: Plan): PlanFault[] {
     ...windowFaults(plan),
     ...durationFaults(plan),
     ...relationFaults(plan),
-    ...radarFaults(plan),
+    ...sourceFaults(plan),
+    ...plan.grids.flatMap(gridsFaults),
     ...plan.gauges.flatMap(gaugeFaults),
     ...zoneFaults(plan),
     ...limitFaults(plan),
@@ -134,6 +136,9 @@ function relationFaults(plan: Plan): PlanFault[] {
       }
     });
   });
+  plan.grids.forEach((source, index) => {
+    check(source.relation, ["grids", index, "relation"]);
+  });
   plan.rain.headlineRelations.forEach((name, index) => {
     check(name, ["rain", "headlineRelations", index]);
   });
@@ -149,7 +154,8 @@ function overlap(a: Span, b: Span): boolean {
   return Date.parse(a.from) < Date.parse(b.to) && Date.parse(b.from) < Date.parse(a.to);
 }
 
-function radarFaults(plan: Plan): PlanFault[] {
+/** Where rain comes from: there must be something, and each source has a name of its own. */
+function sourceFaults(plan: Plan): PlanFault[] {
   const faults: PlanFault[] = [];
   const seen = new Set<string>();
   plan.radars.forEach((radar, index) => {
@@ -162,8 +168,69 @@ function radarFaults(plan: Plan): PlanFault[] {
     }
     seen.add(radar.id);
   });
-  if (plan.radars.every((radar) => !radar.use)) {
-    faults.push({ path: ["radars"], what: "no radar is in use", fix: "set use: true for one at least" });
+  plan.grids.forEach(({ id }, index) => {
+    if (seen.has(id)) {
+      faults.push({
+        path: ["grids", index, "id"],
+        what: `two sources are called "${id}"`,
+        fix: "give each radar and each entry of grids a name of its own",
+      });
+    }
+    seen.add(id);
+  });
+  if (plan.radars.length > 0 && plan.scans.length === 0) {
+    faults.push({
+      path: ["radars"],
+      what: "there are radars, but no scans",
+      fix: "add scans, or delete radars",
+    });
+  }
+  if (plan.radars.length + plan.grids.length === 0) {
+    faults.push({
+      path: ["radars"],
+      what: "nothing says where rain comes from",
+      fix: "add scans and radars, or grids",
+    });
+  } else if ([...plan.radars, ...plan.grids].every(({ use }) => !use)) {
+    faults.push({
+      path: [plan.radars.length > 0 ? "radars" : "grids"],
+      what: plan.radars.length > 0 ? "no radar is in use" : "no entry of grids is in use",
+      fix: "set use: true for one at least",
+    });
+  }
+  return faults;
+}
+
+function gridsFaults(source: PlanGrids, index: number): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const path = ["grids", index];
+  const needed = ["medianStepMinutes", "maxGapMinutes"] as const;
+  if (source.quantity !== "depth") {
+    for (const key of needed) {
+      if (source[key] !== undefined) continue;
+      faults.push({
+        path,
+        what: `a ${source.quantity} at instants needs ${key}`,
+        fix: `add ${key}; survey shows the time between layers`,
+      });
+    }
+  }
+  if (source.time !== undefined) {
+    const [from, to] = [Date.parse(source.time.from), Date.parse(source.time.to)];
+    if (from > to || (from === to && source.quantity === "depth")) {
+      faults.push({
+        path: [...path, "time"],
+        what: `it ends (${source.time.to}) before there is any of it`,
+        fix: "put from before to",
+      });
+    }
+    if (source.files.length > 1 || isDynamicPattern(source.files[0])) {
+      faults.push({
+        path: [...path, "time"],
+        what: "one time cannot hold for several files",
+        fix: "name one file, without * or ?, in an entry of its own",
+      });
+    }
   }
   return faults;
 }

@@ -8,7 +8,7 @@ import { nearest } from "../text/nearest.ts";
 import { crossChecks } from "./cross-checks.ts";
 import { faultsOfIssues, planError } from "./faults.ts";
 import { namesBeside, resolveFiles } from "./resolve.ts";
-import { type Plan, type PlanGaugeFiles, planSchema } from "./schema.ts";
+import { type Plan, type PlanGaugeFiles, type PlanGrids, planSchema } from "./schema.ts";
 import { shapefileParts } from "./shapefile-parts.ts";
 import { lineOfPath, type PlanPath, pathText } from "./yaml-place.ts";
 
@@ -25,6 +25,12 @@ export interface LoadedGaugeFiles {
   readonly stationsFiles: readonly string[];
 }
 
+/** The files of one entry of `grids`, as absolute paths in code-unit order. */
+export interface LoadedGrids {
+  readonly spec: PlanGrids;
+  readonly files: readonly string[];
+}
+
 /** A plan that was read and checked. All paths are absolute. */
 export interface LoadedPlan {
   readonly path: string;
@@ -37,6 +43,8 @@ export interface LoadedPlan {
   readonly digest: string;
   /** Files that the globs of `scans` match now, in code-unit order, each once. */
   readonly scanFiles: readonly string[];
+  /** In the order of the plan. */
+  readonly gridFiles: readonly LoadedGrids[];
   /** In the order of the plan. */
   readonly gaugeFiles: readonly LoadedGaugeFiles[];
   readonly catchmentsFile?: string;
@@ -61,6 +69,9 @@ export async function loadPlan(planPath: string): Promise<LoadedPlan> {
   const notices: Notice[] = [];
   const onNotice = (notice: Notice) => notices.push(notice);
   const scanFiles = await resolveFiles(plan.scans, folder, onNotice);
+  const gridFiles: LoadedGrids[] = [];
+  for (const spec of plan.grids)
+    gridFiles.push({ spec, files: await resolveFiles(spec.files, folder, onNotice) });
   const gaugeFiles: LoadedGaugeFiles[] = [];
   for (const spec of plan.gauges) {
     const files = await resolveFiles(spec.files, folder, onNotice);
@@ -76,6 +87,7 @@ export async function loadPlan(planPath: string): Promise<LoadedPlan> {
     text,
     digest: sha256Hex(canonicalJson(plan)),
     scanFiles,
+    gridFiles,
     gaugeFiles,
     ...(catchmentsFile === undefined ? {} : { catchmentsFile }),
     catchmentsParts: catchmentsFile === undefined ? {} : shapefileParts(catchmentsFile),

@@ -73,6 +73,26 @@ const radar = z.strictObject({
     .default([]),
 });
 
+/** Rain or reflectivity that is on a grid already: composites, CF NetCDF, GeoTIFF. */
+const grids = z.strictObject({
+  /** Name of this source in every output. */
+  id: z.string().min(1),
+  files: z.array(z.string().min(1)).min(1),
+  use: z.boolean().default(true),
+  /** What is taken from the files; other layers in them are left out. */
+  quantity: z.enum(["rate", "depth", "reflectivity"]),
+  /** Usual time between layers, and the longest hole that is bridged. A depth speaks for its own span and needs neither. */
+  medianStepMinutes: z.number().positive().optional(),
+  maxGapMinutes: z.number().positive().optional(),
+  /** Of reflectivity only: what is added to it, and how it becomes rain. */
+  offsetDb: z.number().min(-20).max(20).default(0),
+  relation: relation.default(DEFAULT_RELATION),
+  cap: cap.default({ dbz: 53 }),
+  /** Only where the files do not say: their coordinate system, and the time of one file. */
+  crs: z.string().min(1).optional(),
+  time: z.strictObject({ from: instant, to: instant }).optional(),
+});
+
 /** The columns of a table of stations; a WaterML file has none. */
 const stationColumns = z.strictObject({
   id: z.string().min(1),
@@ -210,8 +230,10 @@ export const planSchema = z.strictObject({
   author: z.string().max(200).default(""),
   status: z.enum(["provisional", "final"]).default("provisional"),
   window: z.strictObject({ from: instant, to: instant, zone: zone.default("UTC") }),
-  scans: z.array(z.string().min(1)).min(1),
-  radars: z.array(radar).min(1),
+  /** Scans and radars, or grids, or both. */
+  scans: z.array(z.string().min(1)).default([]),
+  radars: z.array(radar).default([]),
+  grids: z.array(grids).default([]),
   gauges: z.array(gaugeFiles).default([]),
   catchments: z
     .strictObject({
@@ -307,4 +329,5 @@ export const planSchema = z.strictObject({
 
 export type Plan = z.output<typeof planSchema>;
 export type PlanRadar = Plan["radars"][number];
+export type PlanGrids = Plan["grids"][number];
 export type PlanGaugeFiles = Plan["gauges"][number];

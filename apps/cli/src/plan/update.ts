@@ -3,7 +3,7 @@ import { type Document, isCollection, type Node, type YAMLMap } from "yaml";
 import type { GaugeFinding } from "../survey/findings.ts";
 import type { SurveyResult } from "../survey/survey-result.ts";
 import { counted } from "../ui/numbers.ts";
-import { catchmentsNode, gaugeGroups, gaugeNode, radarNode } from "./compose.ts";
+import { catchmentsNode, gaugeGroups, gaugeNode, gridsNode, radarNode } from "./compose.ts";
 import { globsFor, relativePath } from "./globs.ts";
 import { parsePlan, parsePlanDocument } from "./load.ts";
 import { resolveFiles } from "./resolve.ts";
@@ -54,6 +54,7 @@ export async function updatePlan(
     }
   }
 
+  changes.push(...(await addGrids(document, plan.grids, folder, result)));
   changes.push(...(await addGauges(document, plan.gauges, folder, result)));
 
   if (plan.catchments === undefined) {
@@ -67,6 +68,40 @@ export async function updatePlan(
   // What was put together here must be a plan again, before it takes the place of one.
   parsePlan(updated, name);
   return { text: updated, changes, remarks: windowRemarks(plan.window, result) };
+}
+
+/** Adds gridded sources of which the plan has no file; it never tells how those of one time go together. */
+async function addGrids(
+  document: Document,
+  entries: readonly { readonly id: string; readonly files: readonly string[] }[],
+  folder: string,
+  result: SurveyResult,
+): Promise<string[]> {
+  const changes: string[] = [];
+  const known = new Set<string>();
+  for (const { files } of entries) {
+    for (const file of await resolveFiles(files, folder, () => undefined)) known.add(file);
+  }
+  for (const source of result.gridSources) {
+    const fresh = source.files.filter((file) => !known.has(path.resolve(file)));
+    if (fresh.length === 0) continue;
+    const at = entries.findIndex(({ id }) => id === source.id);
+    if (at < 0) {
+      append(document, ["grids"], gridsNode({ ...source, files: fresh }, result, folder));
+      changes.push(`grids ${source.id} added`);
+      continue;
+    }
+    for (const glob of globsFor(
+      fresh.map((file) => path.resolve(file)),
+      result.files,
+      folder,
+    )) {
+      if (entries[at].files.includes(glob)) continue;
+      append(document, ["grids", at, "files"], document.createNode(glob));
+      changes.push(`files ${glob} added to grids ${source.id}`);
+    }
+  }
+  return changes;
 }
 
 async function addGauges(

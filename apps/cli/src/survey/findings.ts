@@ -155,9 +155,13 @@ export const surveySchema = z.strictObject({
   grids: z.array(gridFinding),
   otherFiles: z.array(z.strictObject({ kind: z.string(), count: z.number().int() })),
   wrong: z.array(manifestNotice),
-  /** Time that radars cover; and the part of it that gauges cover as well, where there are any. */
+  /** Time that radars, or else grids, cover; and the part of it that gauges cover as well, where there are any. */
   window: z
-    .strictObject({ from: instant, to: instant, basis: z.enum(["radars and gauges", "radars"]) })
+    .strictObject({
+      from: instant,
+      to: instant,
+      basis: z.enum(["radars and gauges", "radars", "grids and gauges", "grids"]),
+    })
     .nullable(),
   possible: z.array(z.string()).describe("what can be made of it, one sentence each"),
   next: z.string().describe("the command to type next"),

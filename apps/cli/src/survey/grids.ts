@@ -1,10 +1,10 @@
 import path from "node:path";
 import type { GriddedFile, GridPlace } from "@rainreckon/formats";
 import { isoUtc } from "../ui/numbers.ts";
-import type { GridFinding } from "./findings.ts";
+import type { SeenGrid } from "./grid-sources.ts";
 
 /** What a file of gridded layers holds, one finding for each quantity. */
-export function gridFindings(file: string, grid: GriddedFile): GridFinding[] {
+export function gridFindings(file: string, grid: GriddedFile): SeenGrid[] {
   const quantities = [...new Set(grid.headers.map(({ quantity }) => quantity))];
   return quantities.map((quantity) => {
     const layers = grid.headers.filter((header) => header.quantity === quantity);
@@ -12,7 +12,7 @@ export function gridFindings(file: string, grid: GriddedFile): GridFinding[] {
     const ends = [...new Set(layers.map(({ endEpochMs }) => endEpochMs))].sort((a, b) => a - b);
     const steps = ends.slice(1).map((end, index) => (end - ends[index]!) / 60_000);
     const median = steps.sort((a, b) => a - b)[Math.floor(steps.length / 2)];
-    return {
+    const finding = {
       file,
       name: path.basename(file),
       format: grid.format,
@@ -26,6 +26,7 @@ export function gridFindings(file: string, grid: GriddedFile): GridFinding[] {
       stepMinutes: median === undefined ? null : Number(median.toFixed(3)),
       remarks: [...new Set(layers.flatMap(({ remarks }) => remarks))],
     };
+    return { finding, headers: layers };
   });
 }
 

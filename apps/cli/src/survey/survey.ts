@@ -19,7 +19,8 @@ import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { fileKind } from "./file-kind.ts";
-import type { Findings, GaugeFinding, GridFinding, MapFinding, RadarFinding } from "./findings.ts";
+import type { Findings, GaugeFinding, MapFinding, RadarFinding } from "./findings.ts";
+import { type GridSource, gridSources, type SeenGrid } from "./grid-sources.ts";
 import { gridFindings } from "./grids.ts";
 import { possibleTexts } from "./possible.ts";
 import { radarFindings, type SeenSweep } from "./radars.ts";
@@ -40,7 +41,7 @@ interface Seen {
   readonly readings: SeenReadings[];
   readonly stations: SeenStations[];
   readonly maps: { readonly file: string; readonly guess: MapGuess }[];
-  readonly grids: GridFinding[];
+  readonly grids: SeenGrid[];
   readonly others: Map<string, number>;
 }
 
@@ -76,13 +77,14 @@ export async function survey(
   const catchments = seen.maps.map(({ file, guess }) => mapFinding(file, guess, tell("catchment")));
   const catchmentPoints = seen.maps.flatMap(({ file, guess }) => cornersOf(file, guess, tell("catchment")));
   const radarsInWindow = radarsOfOneTime(radars);
-  const window = windowOf(radars, radarsInWindow, gauges);
+  const sources = gridSources(seen.grids, radarsInWindow.size > 0);
+  const window = windowOf(radars, radarsInWindow, sources, gauges);
   const part = {
     radars: [...radars],
     gauges: [...gauges],
     stations: [...stations],
     catchments,
-    grids: seen.grids,
+    grids: seen.grids.map(({ finding }) => finding),
     window,
   };
   const findings: Findings = {
@@ -94,10 +96,17 @@ export async function survey(
       .map(([kind, count]) => ({ kind, count }))
       .sort((a, b) => b.count - a.count || (a.kind < b.kind ? -1 : 1)),
     wrong: [...wrong.all],
-    possible: possibleTexts(part, radarsInWindow),
+    possible: possibleTexts(part, radarsInWindow, sources),
     next: nextCommand(paths, window !== null),
   };
-  return { findings, files: walk.files, radarsInWindow, gaugePoints: points, catchmentPoints };
+  return {
+    findings,
+    files: walk.files,
+    radarsInWindow,
+    gridSources: sources,
+    gaugePoints: points,
+    catchmentPoints,
+  };
 }
 
 const FILES_BETWEEN_BREATHS = 20;
@@ -233,10 +242,12 @@ function radarsOfOneTime(radars: readonly RadarFinding[]): ReadonlySet<string> {
 function windowOf(
   radars: readonly RadarFinding[],
   inWindow: ReadonlySet<string>,
+  sources: readonly GridSource[],
   gauges: readonly GaugeFinding[],
 ): Findings["window"] {
   const used = radars.filter((radar) => inWindow.has(radar.id));
-  const span = wholeSpan(used.map(spanOf));
+  const grids = sources.filter((source) => source.inWindow);
+  const span = wholeSpan(used.length > 0 ? used.map(spanOf) : grids.flatMap(({ spans }) => spans));
   if (span === undefined) return null;
   const gaugeSpan = wholeSpan(
     gauges.flatMap(({ firstStamp, lastStamp, stepMinutes, stationsFile }) => {
@@ -246,9 +257,20 @@ function windowOf(
       return [{ startEpochMs, endEpochMs: Date.parse(lastStamp) }];
     }),
   );
-  const roundMs = Math.max(...used.map((radar) => (radar.medianRoundMinutes ?? 0) * 60_000));
+  // Depths begin and end where they say; instants may lie a little beside a whole hour.
+  const instants = grids.filter(({ quantity }) => quantity !== "depth");
+  const steps = [
+    ...used.map(({ medianRoundMinutes }) => medianRoundMinutes),
+    ...instants.map(({ stepMinutes }) => stepMinutes),
+  ];
+  const roundMs = Math.max(0, ...steps.map((minutes) => (minutes ?? 0) * 60_000));
   const { window, basis } = chooseWindow(span, gaugeSpan, roundMs);
-  return { from: isoUtc(window.startEpochMs), to: isoUtc(window.endEpochMs), basis };
+  const source = used.length > 0 ? "radars" : "grids";
+  return {
+    from: isoUtc(window.startEpochMs),
+    to: isoUtc(window.endEpochMs),
+    basis: basis === "radars" ? source : `${source} and gauges`,
+  };
 }
 
 function mapFinding(file: string, guess: MapGuess, onNotice: (notice: Notice) => void): MapFinding {
@@ -335,7 +357,7 @@ function nextCommand(paths: readonly string[], possible: boolean): string {
   const words = paths.map(shellWord).join(" ");
   return possible
     ? `rainreckon plan ${words} -o plan.yaml`
-    : `rainreckon survey ${words} (again, once there are scans of two rounds and more)`;
+    : `rainreckon survey ${words} (again, once there are scans of two rounds and more, or gridded rain)`;
 }
 
 /** A path as a shell takes it for one word. */

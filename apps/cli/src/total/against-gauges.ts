@@ -21,6 +21,7 @@ import {
 } from "@rainreckon/verification";
 import type { AssembledRun } from "./assemble.ts";
 import type { GaugeInput } from "./gauges.ts";
+import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
 
 /** A gauge beside the radar, over the whole window and by interval. */
@@ -159,7 +160,7 @@ function radarAt(
   }
   const site = run.shape.radars[loudest]?.site;
   return {
-    radarId: site?.id ?? "",
+    radarId: sourceIds(run.shape)[loudest] ?? "",
     rangeKm: site === undefined ? Number.NaN : geodesicInverse(site, station).distanceM / 1000,
     beamHeightAslM: total.planes.beamHeightAslM[cell],
   };

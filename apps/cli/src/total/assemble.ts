@@ -1,12 +1,13 @@
 import { FieldSum, type TotalPlanes, totalPlanes } from "@rainreckon/accumulation";
-import type {
-  AreaStepSeries,
-  RunShape,
-  StepSeries,
-  SweepFault,
-  UnitCounts,
-  UnitJob,
-  UnitResult,
+import {
+  type AreaStepSeries,
+  noCounts,
+  type RunShape,
+  type StepSeries,
+  type SweepFault,
+  type UnitCounts,
+  type UnitJob,
+  type UnitResult,
 } from "./job.ts";
 import type { UnitStore } from "./unit-store.ts";
 
@@ -40,11 +41,11 @@ export function assemble(
 ): AssembledRun {
   const sum = new FieldSum(
     shape.grid.nx * shape.grid.ny,
-    shape.radars.length,
+    shape.radars.length + shape.grids.length,
     shape.variants.length,
     shape.headlineCells.length,
   );
-  const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
+  const counts = noCounts();
   const notices = new Map<string, SweepFault>();
   const pieces: UnitResult[] = [];
   const unseen = new Float64Array(shape.grid.nx * shape.grid.ny);
@@ -73,7 +74,7 @@ export function assemble(
   const gaugeCount = shape.gaugeCells.length;
   const areaCount = shape.areas.length;
   return {
-    planes: totalPlanes(sum, windowMs),
+    planes: totalPlanes(sum, windowMs, shape.radars.length),
     unseenMm: Float32Array.from(unseen, (mm, cell) => (sum.observedMs[cell] > 0 ? mm : Number.NaN)),
     variantMm: sum.variantMm,
     sum,

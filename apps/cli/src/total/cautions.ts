@@ -38,10 +38,14 @@ export const STANDING_CAUTIONS: readonly string[] = [
  */
 export function relationWasNotChosen(planText: string): boolean {
   const { document } = parsePlanDocument(planText, "plan");
-  const radars = document.get("radars");
-  if (!isSeq(radars)) return true;
-  return radars.items.some((item) => {
+  const sources = ["radars", "grids"].flatMap((key) => {
+    const list = document.get(key);
+    return isSeq(list) ? list.items : [];
+  });
+  return sources.some((item) => {
     if (!isMap(item) || item.get("use") === false) return false;
+    // Rain that came as rain needs no relation.
+    if (item.get("quantity") === "rate" || item.get("quantity") === "depth") return false;
     const relation = item.get("relation", true);
     if (relation === undefined) return true;
     // Who writes another value seldom mends the remark behind it.
@@ -77,6 +81,20 @@ export function runCautions(
       const caution = relationCaution(relation);
       if (caution !== undefined) say(`Radar ${radar.site.id}: ${caution}.`);
     }
+  }
+  for (const { id, quantity, conversion } of run.shape.grids) {
+    say(
+      `The gridded rain "${id}" goes in as its maker made it: what was corrected in it, and whether it was adjusted to gauges already, is not known.`,
+      "Gauges that it has seen already are no check of it, and adjusting to them again counts them twice.",
+    );
+    for (const { relation } of conversion?.relations ?? []) {
+      const caution = relationCaution(relation);
+      if (caution !== undefined) say(`Grids ${id}: ${caution}.`);
+    }
+    if (quantity !== "reflectivityDbz")
+      say(
+        `"${id}" came as rain: no relation of this run plays a part in it, and its figures under other relations are the same.`,
+      );
   }
   if (district.observedFraction < plan.rain.minObserved) {
     say(

@@ -22,6 +22,14 @@ export function changedSettings(plan: Plan): ChangedSetting[] {
       medianRoundMinutes,
       maxGapMinutes,
     })),
+    grids: plan.grids.map(({ id, files, quantity }) => ({
+      id,
+      files,
+      quantity,
+      // Found in the files, and needed by two of three quantities.
+      medianStepMinutes: 1,
+      maxGapMinutes: 1,
+    })),
     grid: plan.grid,
   });
   const changed: ChangedSetting[] = [];
@@ -32,12 +40,12 @@ export function changedSettings(plan: Plan): ChangedSetting[] {
         walk(value[key], standard[key], path === "" ? key : `${path}.${key}`);
       return;
     }
-    if (Array.isArray(value) && Array.isArray(standard) && path === "radars") {
+    if (Array.isArray(value) && Array.isArray(standard) && (path === "radars" || path === "grids")) {
       for (const [k, item] of value.entries()) walk(item, standard[k], `${path}[${k}]`);
       return;
     }
     if (JSON.stringify(value) === JSON.stringify(standard)) return;
-    if (NEVER_STANDARD.has(path)) return;
+    if (NEVER_STANDARD.has(path) || /\.(medianStepMinutes|maxGapMinutes)$/.test(path)) return;
     changed.push({ path, value: JSON.stringify(value), defaultValue: JSON.stringify(standard) });
   };
   walk(plan, bare, "");

@@ -21,16 +21,20 @@ const BASE_MEMORY_MB = 200;
 /** Estimates hours, memory, disk and minutes of a run before anything is decoded. */
 export function estimate(run: PreparedRun): RunEstimate {
   const cells = run.grid.nx * run.grid.ny;
-  const radarCount = run.shape.radars.length;
-  const rounds = run.shape.radars.reduce((sum, radar) => sum + radar.rounds.length, 0);
+  const sourceCount = run.shape.radars.length + run.shape.grids.length;
+  const rounds = [...run.shape.radars, ...run.shape.grids].reduce(
+    (sum, { rounds }) => sum + rounds.length,
+    0,
+  );
   // Per cell: interval sums of a unit in float32 and float64, a few open steps and held layers per radar.
   const intervalsPerUnit = Math.max(...run.jobs.map(({ intervals }) => intervals.length));
   const bytesPerCell =
-    intervalsPerUnit * (24 + 4 * radarCount) + 2 * (48 + 8 * radarCount) + radarCount * 250;
-  const storedBytes = run.intervals.length * cells * (24 + 4 * radarCount);
+    intervalsPerUnit * (24 + 4 * sourceCount) + 2 * (48 + 8 * sourceCount) + sourceCount * 250;
+  const storedBytes = run.intervals.length * cells * (24 + 4 * sourceCount);
   return {
     hours: (run.window.endEpochMs - run.window.startEpochMs) / 3_600_000,
-    scanFiles: run.inputs.filter(({ kind, use }) => kind === "scan" && use === "used").length,
+    scanFiles: run.inputs.filter(({ kind, use }) => (kind === "scan" || kind === "grid") && use === "used")
+      .length,
     rounds,
     gauges: run.gauges.gauges.length,
     catchments: run.catchments.length,

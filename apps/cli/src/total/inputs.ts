@@ -71,6 +71,7 @@ export const DEFAULT_BEAM_WIDTH_DEG = 1;
  * A file that cannot be read is left out and named; what is sent twice counts once.
  *
  * @param seen - is told what became of each file
+ * @returns nothing where the plan names no scan, or none is usable and it has gridded rain besides
  * @throws InputError (no-input) when nothing usable is left
  */
 export async function indexScans(
@@ -157,7 +158,7 @@ export async function indexScans(
     const reason = reasons.length > 0 ? { reason: [...new Set(reasons)].join("; ") } : {};
     seen({ ...manifestFile(file), use, ...reason });
   }
-  if (inputs.length === 0) {
+  if (inputs.length === 0 && !loaded.plan.grids.some(({ use }) => use)) {
     throw new InputError(
       "no usable scan is left",
       `${loaded.scanFiles.length} files under ${loaded.plan.scans.join(", ")}`,

@@ -1,5 +1,6 @@
 import type { CellFractions, IntervalFields, TimeRules } from "@rainreckon/accumulation";
 import type { CapSetting, Grid, Interval, Notice, RadarSite, ZrRelation } from "@rainreckon/core";
+import type { GriddedOptions, GriddedQuantity } from "@rainreckon/formats";
 import type { LookupRules } from "@rainreckon/mosaic";
 
 /** A sweep as a unit of work needs it: where it is, and when it speaks. */
@@ -37,26 +38,57 @@ export interface JobSensitivity {
   readonly basis: "file" | "scans";
 }
 
-export interface JobRadar {
-  readonly site: RadarSite;
+/** How reflectivity becomes rain. */
+export interface JobConversion {
   readonly moment: string;
-  readonly beamWidthDeg: number;
   readonly offsetDb: number;
-  /** Undefined where nothing tells. */
-  readonly sensitivity: JobSensitivity | undefined;
   readonly cap: CapSetting;
   readonly minRateMmPerHour: number;
   /** Later entries win. The first one holds for all time. */
   readonly relations: readonly JobRelation[];
+}
+
+export interface JobRadar extends JobConversion {
+  readonly site: RadarSite;
+  readonly beamWidthDeg: number;
+  /** Undefined where nothing tells. */
+  readonly sensitivity: JobSensitivity | undefined;
   readonly time: TimeRules;
   readonly lookup: LookupRules;
   readonly rounds: readonly JobRound[];
 }
 
-/** What all units of a run share. */
+/** One layer of a gridded file. */
+export interface JobLayer {
+  /** Absolute path, and the name that people see. */
+  readonly path: string;
+  readonly name: string;
+  /** Index among the headers of its file, as opened with `options`. */
+  readonly index: number;
+  readonly options: GriddedOptions;
+  /** Both the one instant it speaks for; of a depth, its start and end. */
+  readonly firstMidEpochMs: number;
+  readonly lastMidEpochMs: number;
+  readonly isFirst: boolean;
+  readonly isLast: boolean;
+}
+
+/** Rain or reflectivity that is gridded already. */
+export interface JobGrids {
+  readonly id: string;
+  readonly quantity: GriddedQuantity;
+  /** Of reflectivity only. */
+  readonly conversion: JobConversion | undefined;
+  readonly time: TimeRules;
+  /** In time order. */
+  readonly rounds: readonly JobLayer[];
+}
+
+/** What all units of a run share. Whatever holds an entry for each source has the radars first, then the grids. */
 export interface RunShape {
   readonly grid: Grid;
   readonly radars: readonly JobRadar[];
+  readonly grids: readonly JobGrids[];
   /** Relations of the headline other than the ones in use; their depths are kept at the headline's cells. */
   readonly variants: readonly ZrRelation[];
   readonly headlineCells: Int32Array;
@@ -89,6 +121,27 @@ export interface UnitCounts {
   gatesRead: number;
   gatesCapped: number;
   cellsFilledByHigherSweep: number;
+  /** Of gridded files: layers, their cells, and those of reflectivity at the cap. */
+  gridLayersDecoded: number;
+  gridCellsRead: number;
+  gridCellsCapped: number;
+}
+
+export function noCounts(): UnitCounts {
+  return {
+    sweepsDecoded: 0,
+    gatesRead: 0,
+    gatesCapped: 0,
+    cellsFilledByHigherSweep: 0,
+    gridLayersDecoded: 0,
+    gridCellsRead: 0,
+    gridCellsCapped: 0,
+  };
+}
+
+/** Ids of all sources of a run, in their order. */
+export function sourceIds({ radars, grids }: Pick<RunShape, "radars" | "grids">): string[] {
+  return [...radars.map(({ site }) => site.id), ...grids.map(({ id }) => id)];
 }
 
 /** A sweep that could not be decoded, and the name of its file. */

@@ -21,6 +21,7 @@ import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { STANDING_CAUTIONS } from "./cautions.ts";
 import { bestMm, type CatchmentFigure, catchmentFigures, factorOf, isAtCap } from "./figures.ts";
+import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
 import type { UnitStore } from "./unit-store.ts";
 
@@ -82,7 +83,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     cautions: sources.cautions,
     window: run.window,
     intervals: run.intervals,
-    radarIds: run.shape.radars.map(({ site }) => site.id),
+    radarIds: sourceIds(run.shape),
     variables,
     attributes: {
       source: `weather radar, rainreckon ${version()}`,
@@ -341,6 +342,12 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "  bridged_fraction    share of the window between scans more than 1.5 median rounds apart, bridged all the same",
     "  edge_fraction       share of the window before the first or after the last scan, for which that scan speaks",
     "  radar_share         share of the observed time that each radar spoke for, by blend weight",
+    ...(run.shape.grids.length === 0
+      ? []
+      : [
+          `                      gridded rain stands behind the radars: ${sourceIds(run.shape).join(", ")}`,
+          "  beam_height         of the radars; missing where gridded rain alone spoke: nothing tells how high it was seen",
+        ]),
     '  cap_share           share of the depth that came from gates at the hail cap; "at cap" says that it is not 0',
     "  unseen_depth        rain that the radars could not have seen: over the time without rain, the depth that an echo just",
     "                      below detection at that range would have added; the most that may be missing for that, no estimate",

@@ -8,25 +8,23 @@ import {
   type Interval,
   midEpochMs,
   type Notice,
-  relationCaution,
-  resolveCap,
   type ZrRelation,
-  zrRelation,
 } from "@rainreckon/core";
 import { readCatchments } from "@rainreckon/formats";
 import { type Projection, projection } from "@rainreckon/mosaic";
 import { canonicalJson, sha256Hex } from "../digest.ts";
 import type { ManifestInput } from "../manifest.ts";
 import type { LoadedPlan } from "../plan/load.ts";
-import type { PlanRadar } from "../plan/schema.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import type { Progress } from "../ui/progress.ts";
 import { version } from "../version.ts";
 import { checkAssets } from "./assets.ts";
 import { relationWasNotChosen } from "./cautions.ts";
+import { conversionOf } from "./conversion.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
+import { type GridInput, indexGrids } from "./grid-inputs.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
-import type { JobRadar, JobRelation, JobRound, JobSensitivity, RunShape, UnitJob } from "./job.ts";
+import type { JobRadar, JobRound, JobSensitivity, RunShape, UnitJob } from "./job.ts";
 import { type PlacedCatchment, placeCatchments, unionOfAreas, wholeGrid } from "./places.ts";
 import { learnSensitivity } from "./sensitivity.ts";
 import { cutIntoUnits } from "./units.ts";
@@ -51,15 +49,6 @@ export interface PreparedRun {
   readonly inputs: readonly ManifestInput[];
   /** SHA-256 of plan, inputs, program and what was said of them: the same digest means the same bytes. */
   readonly runDigest: string;
-}
-
-const FOREVER: Interval = { startEpochMs: Number.NEGATIVE_INFINITY, endEpochMs: Number.POSITIVE_INFINITY };
-
-/** A relation of the plan: from the catalogue by name, or coefficients of the user's own. */
-export function relationOf(relation: PlanRadar["relation"]): ZrRelation {
-  return typeof relation === "string"
-    ? findRelation(relation)
-    : zrRelation(relation.a, relation.b, relation.source);
 }
 
 /**
@@ -89,7 +78,8 @@ export async function prepareRun(
   const indexing = progressOf(loaded.scanFiles.length, "scans");
   const radars = await indexScans(loaded, log, seen, indexing);
   indexing.end();
-  refuseSingleInstants(radars, plan.window);
+  const grids = await indexGrids(loaded, log, seen, (count) => progressOf(count, "grids"));
+  refuseSingleInstants(radars, grids, plan.window);
   const sites = radars.map(({ sweeps }) => sweeps[0].header.site);
   const gauges = await readGauges(loaded, grid, map, window, sites, log, seen);
   const catchments = await catchmentsOf(loaded, grid, map, log, seen);
@@ -108,6 +98,7 @@ export async function prepareRun(
   const shape: RunShape = {
     grid,
     radars: jobRadars,
+    grids: grids.map(({ source }) => source),
     variants: headlineRelations.map(({ relation }) => relation),
     headlineCells: district.cells,
     gaugeCells: gauges.gauges.map((gauge) => gauge.cells),
@@ -140,7 +131,7 @@ export async function prepareRun(
     district,
     headlineRelations,
     shape,
-    jobs: cutIntoUnits(intervals, stepMs, jobRadars),
+    jobs: cutIntoUnits(intervals, stepMs, [...shape.radars, ...shape.grids]),
     inputs: sorted,
     runDigest,
   };
@@ -172,12 +163,30 @@ export function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection
   );
 }
 
-/** One instant of a radar is a rate, and no number of minutes can be made of it. */
-function refuseSingleInstants(radars: readonly RadarInput[], window: { from: string; to: string }): void {
+/** One instant of a radar or a grid is a rate, and no number of minutes can be made of it. */
+function refuseSingleInstants(
+  radars: readonly RadarInput[],
+  grids: readonly GridInput[],
+  window: { from: string; to: string },
+): void {
   if (radars.some(({ roundsInReach }) => roundsInReach > 1)) return;
+  if (grids.some(({ layersInReach, source }) => layersInReach > (source.quantity === "depthMm" ? 0 : 1)))
+    return;
+  if (radars.length === 0 && grids.every(({ layersInReach }) => layersInReach === 0)) {
+    throw new InputError(
+      "nothing usable lies in the window",
+      `grids ${grids.map(({ source }) => source.id).join(", ")}, window ${window.from} to ${window.to}`,
+      "see the lines above, or run survey on the files",
+      { kind: "no-input" },
+    );
+  }
+  const sources = [
+    ...(radars.length > 0 ? [`radars ${radars.map(({ radar }) => radar.id).join(", ")}`] : []),
+    ...(grids.length > 0 ? [`grids ${grids.map(({ source }) => source.id).join(", ")}`] : []),
+  ].join(", ");
   throw new InputError(
     "one instant per site is a rate, not a total",
-    `radars ${radars.map(({ radar }) => radar.id).join(", ")}, window ${window.from} to ${window.to}`,
+    `${sources}, window ${window.from} to ${window.to}`,
     "add the scans before or after it: a total needs at least two rounds of one radar; or add --rate for a map of rain rate",
     { kind: "no-input" },
   );
@@ -223,22 +232,6 @@ export function jobRadar(
   log: LeftOutLog,
 ): JobRadar {
   const { plan } = loaded;
-  const relations: JobRelation[] = [
-    { ...FOREVER, relation: relationOf(radar.relation) },
-    ...radar.periods.map(({ from, to, relation }) => ({
-      startEpochMs: Date.parse(from),
-      endEpochMs: Date.parse(to),
-      relation: relationOf(relation),
-    })),
-  ];
-  for (const { relation } of relations) {
-    const where = `radar ${radar.id}, Z = ${relation.a} R^${relation.b}`;
-    const caution = relationCaution(relation);
-    if (caution !== undefined)
-      log.add("doubted", { what: caution, where, fix: "choose a relation for rain" });
-    const { warning } = resolveCap(radar.cap, relation);
-    if (warning !== undefined) log.add("doubted", { what: warning, where, fix: "set the cap in the plan" });
-  }
   const site = rounds[0].sweeps[0].site;
   const jobRounds = rounds.map((round, k): JobRound => {
     const sweeps = round.sweeps
@@ -265,14 +258,10 @@ export function jobRadar(
     };
   });
   return {
+    ...conversionOf({ ...radar, minRateMmPerHour: plan.rain.minRateMmPerHour }, `radar ${radar.id}`, log),
     site,
-    moment: radar.moment,
     beamWidthDeg,
-    offsetDb: radar.offsetDb,
     sensitivity,
-    cap: radar.cap,
-    minRateMmPerHour: plan.rain.minRateMmPerHour,
-    relations,
     time: {
       medianRoundMs: radar.medianRoundMinutes * 60_000,
       // Whole milliseconds: 4.35 minutes in binary are a hair short of 261 s, and equality bridges.

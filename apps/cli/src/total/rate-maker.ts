@@ -9,19 +9,19 @@ import {
   type ZrRelation,
 } from "@rainreckon/core";
 import type { GateRates } from "@rainreckon/mosaic";
-import type { JobRadar } from "./job.ts";
+import type { JobConversion } from "./job.ts";
 
-/** Turns stored sweeps of one radar into gate rates, remembering tables: radars repeat their coding. */
+/** Turns stored reflectivity of one source into rates, remembering tables: radars repeat their coding. */
 export class RateMaker {
-  readonly #radar: JobRadar;
+  readonly #source: JobConversion;
   readonly #tables = new Map<string, Rates>();
 
-  constructor(radar: JobRadar) {
-    this.#radar = radar;
+  constructor(source: JobConversion) {
+    this.#source = source;
   }
 
   relationAt(epochMs: number): ZrRelation {
-    const { relations } = this.#radar;
+    const { relations } = this.#source;
     for (let k = relations.length - 1; k >= 0; k--) {
       if (epochMs > relations[k].startEpochMs && epochMs <= relations[k].endEpochMs)
         return relations[k].relation;
@@ -30,8 +30,8 @@ export class RateMaker {
   }
 
   /** @throws InputError where the sweep has no such moment, or a coding that means nothing */
-  rates(sweep: Sweep, relation: ZrRelation, where: string): GateRates {
-    const { moment: quantity, cap, minRateMmPerHour, offsetDb } = this.#radar;
+  rates(sweep: Pick<Sweep, "moments">, relation: ZrRelation, where: string): GateRates {
+    const { moment: quantity, cap, minRateMmPerHour, offsetDb } = this.#source;
     const moment = sweep.moments.get(quantity);
     if (moment === undefined)
       throw new InputError(`no ${quantity}`, where, "name another moment in the plan");

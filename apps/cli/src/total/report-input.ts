@@ -15,12 +15,14 @@ import type {
 import type { ScoreTable } from "@rainreckon/verification";
 import { gaugeSteps } from "@rainreckon/verification";
 import type { ManifestNotice } from "../manifest.ts";
+import type { PlanRadar } from "../plan/schema.ts";
 import { countText, lengthText } from "../ui/numbers.ts";
 import { version } from "../version.ts";
 import type { ComparedGauge, Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
+import { relationOf } from "./conversion.ts";
 import {
   type ArealFigure,
   bestMm,
@@ -31,7 +33,7 @@ import {
   windowFigure,
 } from "./figures.ts";
 import { reasonOf } from "./outputs.ts";
-import { type PreparedRun, relationOf } from "./prepare.ts";
+import type { PreparedRun } from "./prepare.ts";
 
 interface ReportSources {
   readonly run: PreparedRun;
@@ -87,10 +89,15 @@ export function reportInput(sources: ReportSources): ReportInput {
     grid: run.grid,
     layers: layersOf(sources),
     shownLayerId: sources.adjustedTotalMm === undefined ? "radar-total" : "adjusted-total",
-    radars: run.shape.radars.map(({ site }) => {
-      const [xM, yM] = run.map.forward(site.lonDeg, site.latDeg);
-      return { id: site.id, xM, yM, ...(site.name === undefined ? {} : { name: site.name }) };
-    }),
+    radars: run.shape.radars
+      .map(({ site }) => {
+        const [xM, yM] = run.map.forward(site.lonDeg, site.latDeg);
+        return { id: site.id, xM, yM, ...(site.name === undefined ? {} : { name: site.name }) };
+      })
+      .concat(
+        // Gridded rain speaks in cells as radars do, but stands nowhere.
+        run.shape.grids.map(({ id }) => ({ id, xM: Number.NaN, yM: Number.NaN, name: "gridded rain" })),
+      ),
     gauges: comparison.gauges.map((gauge) => reportGauge(gauge, comparison)),
     catchments: run.catchments.map((catchment): ReportCatchment => {
       const areal = windowFigure(catchment.cells, sources);
@@ -154,12 +161,12 @@ function peakAtCap({ cells }: CellFractions, { depthMm, cappedMm }: AssembledRun
   return deepest >= 0 && cappedMm[deepest] > 0;
 }
 
-function layersOf({ run, total, adjustedTotalMm }: ReportSources): MapLayer[] {
+function layersOf({ total, adjustedTotalMm }: ReportSources): MapLayer[] {
   const { planes } = total;
   const loudest = new Float32Array(planes.totalMm.length).fill(Number.NaN);
   for (let cell = 0; cell < loudest.length; cell++) {
     let most = 0;
-    for (let r = 0; r < run.shape.radars.length; r++) {
+    for (let r = 0; r < planes.radarShare.length; r++) {
       if (planes.radarShare[r][cell] > most) {
         most = planes.radarShare[r][cell];
         loudest[cell] = r;
@@ -270,7 +277,12 @@ function gaugeHyetograph({ gauge }: ComparedGauge, g: number, { run, total }: Re
 function relationFigures(sources: ReportSources, district: ArealFigure): RelationFigure[] {
   const { run } = sources;
   const { plan } = run.loaded;
-  const inUse = plan.radars.filter(({ use }) => use);
+  const inUse: readonly Pick<PlanRadar, "relation" | "periods">[] = [
+    ...plan.radars.filter(({ use }) => use),
+    ...plan.grids
+      .filter(({ use, quantity }) => use && quantity === "reflectivity")
+      .map(({ relation }) => ({ relation, periods: [] })),
+  ];
   const used = inUse.map(({ relation }) => relation);
   // With a relation of its own for some radar or period, the headline stands under none of those listed.
   const onlyOne =
@@ -283,7 +295,7 @@ function relationFigures(sources: ReportSources, district: ArealFigure): Relatio
     const { a, b, regime } = known;
     return { name, a, b, regime, depth: { mm, observedFraction }, inUse: onlyOne && own === name };
   });
-  if (onlyOne && !figures.some(({ inUse }) => inUse)) {
+  if (onlyOne && own !== undefined && !figures.some(({ inUse }) => inUse)) {
     const { a, b } = relationOf(own);
     const known = typeof own === "string" ? RELATIONS.find((relation) => relation.name === own) : undefined;
     figures.unshift({
@@ -345,6 +357,13 @@ function accountsOf({ run, total, comparison, notices }: ReportSources): Account
     counts.gatesCapped,
     "gates",
     `of ${countText(counts.gatesRead).replaceAll(",", "\u202f")} gates read`,
+  );
+  add(
+    "capped",
+    "rain rate of gridded reflectivity held at the hail cap",
+    counts.gridCellsCapped,
+    "cells",
+    `of ${countText(counts.gridCellsRead).replaceAll(",", "\u202f")} cells of gridded files read`,
   );
   add(
     "filled",

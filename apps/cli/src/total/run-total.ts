@@ -105,7 +105,7 @@ export async function runTotal(
   );
   for (const { what, where, fix } of total.notices) log.add("sweep left out", { what, where, fix });
   refuseUndecodable(planned, total);
-  const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape.radars, total.notices) };
+  const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape, total.notices) };
   const comparison = compareWithGauges(run, total);
   const adjustedTotalMm = comparison.bias.applied
     ? sumAdjusted(run, store, comparison.bias.factor)
@@ -211,6 +211,10 @@ async function manifestOf(
       gatesRead: total.counts.gatesRead,
       gatesCapped: total.counts.gatesCapped,
       cellsFilledByHigherSweep: total.counts.cellsFilledByHigherSweep,
+      grids: run.shape.grids.length,
+      gridLayersDecoded: total.counts.gridLayersDecoded,
+      gridCellsRead: total.counts.gridCellsRead,
+      gridCellsCapped: total.counts.gridCellsCapped,
       gauges: comparison.gauges.length,
       gaugesUsed: comparison.gauges.filter(({ whole }) => whole.used).length,
       gaugesDoubted: comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length,

@@ -3,17 +3,19 @@ import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@r
 import { InputError, type ZrRelation } from "@rainreckon/core";
 import { formatsReady, openScan } from "@rainreckon/formats";
 import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
-import type {
-  AreaStepSeries,
-  JobRadar,
-  JobRound,
-  JobSweep,
-  RunShape,
-  StepSeries,
-  SweepFault,
-  UnitCounts,
-  UnitJob,
-  UnitResult,
+import { GridFeed } from "./grid-feed.ts";
+import {
+  type AreaStepSeries,
+  type JobRadar,
+  type JobRound,
+  type JobSweep,
+  noCounts,
+  type RunShape,
+  type StepSeries,
+  type SweepFault,
+  type UnitCounts,
+  type UnitJob,
+  type UnitResult,
 } from "./job.ts";
 import { lookupShelf } from "./lookup-shelf.ts";
 import { placesOf } from "./places-of.ts";
@@ -117,9 +119,10 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
   const { grid, headlineCells, variants } = shape;
   const cellCount = grid.nx * grid.ny;
   const size = { cellCount, headlineCells, variantCount: variants.length };
-  const counts: UnitCounts = { sweepsDecoded: 0, gatesRead: 0, gatesCapped: 0, cellsFilledByHigherSweep: 0 };
+  const counts = noCounts();
   const notices: SweepFault[] = [];
-  const feeds = shape.radars.map((radar) => new RadarFeed(radar, shape, job));
+  const radars = shape.radars.map((radar) => new RadarFeed(radar, shape, job));
+  const feeds = [...radars, ...shape.grids.map((grids) => new GridFeed(grids, shape, job))];
   const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
   const areas: AreaStepSeries = {
     ...emptySeries(shape.areas.length, job.steps.length),
@@ -135,7 +138,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
     // Lets signals through: without it, work of hours on one processor could not be interrupted.
     await breathe();
     for (const feed of feeds) {
-      while (!feed.integrator.isSettled(step, feed.nextEpochMs)) feed.advance(counts, notices);
+      while (!feed.integrator.isSettled(step, feed.nextEpochMs)) await feed.advance(counts, notices);
     }
     const span = job.steps[step];
     const lengthMs = span.endEpochMs - span.startEpochMs;
@@ -156,7 +159,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
       areas.cappedMm[a][step] = areal.cappedMm;
     }
     sum.add(blended);
-    unseen.add(span, blended, (r, epochMs) => feeds[r].relationAt(epochMs));
+    unseen.add(span, blended, (r, epochMs) => radars[r].relationAt(epochMs));
     const interval = job.intervals[intervals.length];
     if (span.endEpochMs === interval.endEpochMs) {
       intervals.push(sum.toInterval(interval));

@@ -1,6 +1,6 @@
 import { cutWindow } from "@rainreckon/accumulation";
 import type { Interval } from "@rainreckon/core";
-import type { JobRadar, UnitJob } from "./job.ts";
+import type { UnitJob } from "./job.ts";
 
 /** Fewest rounds a unit holds, so that decoding its border scans once more costs little. */
 export const MIN_ROUNDS_PER_UNIT = 12;
@@ -10,7 +10,7 @@ export const MAX_INTERVALS_PER_UNIT = 48;
 
 /**
  * Cuts a run into units of work: runs of whole grid intervals, each holding at least a dozen rounds of the
- * busiest radar, or as many intervals as a unit may hold. The last unit takes what is left over, if it may.
+ * busiest source, or as many intervals as a unit may hold. The last unit takes what is left over, if it may.
  *
  * @param intervals - the grid intervals of the window
  * @param stepMs - length of a series step; it divides the intervals
@@ -18,11 +18,11 @@ export const MAX_INTERVALS_PER_UNIT = 48;
 export function cutIntoUnits(
   intervals: readonly Interval[],
   stepMs: number,
-  radars: readonly JobRadar[],
+  sources: readonly { readonly rounds: readonly { readonly firstMidEpochMs: number }[] }[],
 ): UnitJob[] {
   const roundsIn = (from: number, to: number) =>
     Math.max(
-      ...radars.map(
+      ...sources.map(
         ({ rounds }) =>
           rounds.filter((round) => round.firstMidEpochMs > from && round.firstMidEpochMs <= to).length,
       ),

@@ -24,7 +24,8 @@ function distanceM(grid: Grid, radar: JobRadar): Float32Array {
  * below detection at that range would have added, by the shares that each radar spoke for.
  *
  * It is the most that may be missing for want of sensitivity, not an estimate of what is. A step with any
- * rain adds nothing. Where the sensitivity of a radar that spoke is not known, neither is the depth: NaN.
+ * rain adds nothing. Where the sensitivity of a source that spoke is not known (gridded rain never tells), neither is
+ * the depth: NaN.
  */
 export class UnseenDepth {
   readonly #radars: readonly JobRadar[];
@@ -49,9 +50,9 @@ export class UnseenDepth {
     const { depthMm, shareMs } = blended;
     for (let cell = 0; cell < depthMm.length; cell++) {
       if (depthMm[cell] !== 0) continue;
-      for (let r = 0; r < rates.length; r++) {
+      for (let r = 0; r < shareMs.length; r++) {
         const ms = shareMs[r][cell];
-        if (ms > 0) this.#sumMm[cell] += (ms / MS_PER_HOUR) * rates[r][cell];
+        if (ms > 0) this.#sumMm[cell] += (ms / MS_PER_HOUR) * (rates[r]?.[cell] ?? Number.NaN);
       }
     }
   }

@@ -1,6 +1,6 @@
 import { swatch } from "../charts/hatch.ts";
 import { gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
-import type { GaugeRole, ReportInput } from "../input.ts";
+import type { GaugeRole, ReportInput, ReportRadar } from "../input.ts";
 import { type DrawnLayer, drawLayers } from "../map/layer.ts";
 import { isOnMap, mapFrame, svgMap } from "../map/map.ts";
 import { html, joined, type Markup } from "../text/html.ts";
@@ -34,17 +34,23 @@ function placesLegend(input: ReportInput): Markup {
   const roles = ROLES.filter((role) => input.gauges.some((gauge) => gauge.role === role));
   return html`<ul class="places-legend">${roles.map(
     (role) => html`<li>${swatch(gaugeMark(role, 11, 7, ""))}gauge ${ROLE_WORDS[role]}</li>`,
-  )}${input.radars.length > 0 && html`<li>${swatch(html`<g transform="scale(0.75)">${radarMark(14.7, 9.3, "")}</g>`)}radar</li>`}${
+  )}${input.radars.some(standsSomewhere) && html`<li>${swatch(html`<g transform="scale(0.75)">${radarMark(14.7, 9.3, "")}</g>`)}radar</li>`}${
     input.catchments.length > 0 &&
     html`<li>${swatch(html`<path class="outline" d="M2 11L7 3L16 4L20 11Z"/>`)}catchment</li>`
   }</ul>`;
+}
+
+function standsSomewhere({ xM, yM }: ReportRadar): boolean {
+  return Number.isFinite(xM) && Number.isFinite(yM);
 }
 
 function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
   const { grid } = input;
   const frame = mapFrame(grid);
   const outside = [
-    ...input.radars.filter((radar) => !isOnMap(frame, radar)).map(({ id }) => `radar ${id}`),
+    ...input.radars
+      .filter((radar) => standsSomewhere(radar) && !isOnMap(frame, radar))
+      .map(({ id }) => `radar ${id}`),
     ...input.gauges.filter((gauge) => !isOnMap(frame, gauge)).map(({ id }) => `gauge ${id}`),
   ];
   const block = layers[0].picture.block;
