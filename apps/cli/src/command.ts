@@ -21,9 +21,16 @@ export function addCommand(
   examples: readonly string[],
 ): Command {
   const command = parent.command(usage).description(about);
-  command.addHelpText("after", `\nExamples:\n${examples.map((example) => `  ${example}`).join("\n")}`);
+  command.addHelpText(
+    "after",
+    `\nExamples:\n${examples.map((example) => `  ${example}`).join("\n")}\n\n${EXIT_WORDS}`,
+  );
   return speakPlainly(command);
 }
+
+/** What a command's exit status says; the same words in every help. */
+export const EXIT_WORDS = `Exit status: 0 done, what was left out counted on stderr; 1 failed midway; 2 wrong usage or plan;
+3 no usable input; 130 interrupted.`;
 
 /** Makes a command throw its usage errors as InputError instead of printing and leaving. */
 export function speakPlainly(command: Command): Command {
@@ -76,6 +83,16 @@ function usageError(error: CommanderError, command: Command): Error {
     const meant = nearest(name, names);
     const fix = meant === undefined ? `the commands are ${names.join(", ")}` : `did you mean "${meant}"?`;
     return new InputError(`there is no command "${name}"`, where, fix, USAGE);
+  }
+  if (error.code === "commander.missingArgument") {
+    const wanted = command.registeredArguments.find(
+      ({ required }, k) => required && command.args[k] === undefined,
+    );
+    return new InputError(`${fullName(command)} needs a <${wanted?.name() ?? "path"}>`, where, help, USAGE);
+  }
+  if (error.code === "commander.missingMandatoryOptionValue") {
+    const flag = /'(--[\w-]+)/.exec(message)?.[1] ?? "a flag";
+    return new InputError(`${fullName(command)} needs ${flag}`, where, help, USAGE);
   }
   const [what, advice] = message.split(/ is invalid\. /);
   if (advice !== undefined) return new InputError(`${what} does not fit`, where, advice, USAGE);

@@ -1,5 +1,5 @@
 import { Command } from "commander";
-import { NothingLeft, speakPlainly } from "./command.ts";
+import { EXIT_WORDS, NothingLeft, speakPlainly } from "./command.ts";
 import { registerBudget } from "./commands/budget.ts";
 import { registerCompare } from "./commands/compare.ts";
 import { registerPlan } from "./commands/plan.ts";
@@ -40,8 +40,7 @@ Examples:
   rainreckon budget --band S,C,X
 
 Units: mm, mm/h, dBZ, km, degrees; instants are UTC unless a zone stands beside them.
-Exit status: 0 done, what was left out counted on stderr; 1 failed midway; 2 wrong usage or plan;
-3 no usable input; 130 interrupted.`;
+${EXIT_WORDS}`;
 
 /**
  * Runs one command line from its arguments to its exit status. Errors are told here and nowhere else.

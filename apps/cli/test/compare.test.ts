@@ -112,7 +112,7 @@ test("tells which figures changed, by how much, and what stands behind them", as
     ["radar/3.h5", "added"],
   ]);
   const text = (await inProcess(["compare", a, b])).stdout;
-  expect(text).toMatch(/007 2031-05-03T12:00:00Z 2031-05-03T13:00:00Z +depth_mm +12\.5 +14 +\+1\.5\n/);
+  expect(text).toMatch(/007 2031-05-03T12:00:00Z 2031-05-03T13:00:00Z +depth, mm +12\.5 +14 +\+1\.5\n/);
   expect(text).toContain("besides: 1 value of single steps or parts");
   expect(text).toMatch(/radars\[two\]\.offsetDb +0 +1\.5\n/);
 });

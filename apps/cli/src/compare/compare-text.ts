@@ -1,6 +1,7 @@
 import { counted } from "../ui/numbers.ts";
 import { textTable } from "../ui/table.ts";
 import type { Comparison } from "./compare-runs.ts";
+import { figureWords } from "./figure-words.ts";
 
 type Figure = Comparison["figures"][number];
 
@@ -71,7 +72,7 @@ function figureSection(title: string, figures: readonly Figure[]): string {
     ],
     news
       .slice(0, MAX_ROWS)
-      .map((one) => [one.of, one.figure, shown(one.a), shown(one.b), signed(one.change)]),
+      .map((one) => [one.of, figureWords(one.figure), shown(one.a), shown(one.b), signed(one.change)]),
   );
   const rest: [number, string][] = [
     [whole.filter(isNegligible).length, "by less than a millionth of itself"],
