@@ -1,107 +1,108 @@
-import { gaugeKey } from "@rainreckon/core";
-import {
-  type FactorPair,
-  factorFromSums,
-  type GaugeSum,
-  type MeanFieldBiasOptions,
-  sumsByGauge,
-} from "./mean-field-bias.ts";
+import { gaugeKey, type Pair } from "@rainreckon/core";
+import { meanRainShare, pairedDepthAt, type RainShare, spanDepthAt } from "./at-gauge.ts";
+import type { LearnedMethod } from "./methods.ts";
+import type { WindowGauge } from "./window-gauges.ts";
 
 /** What the other gauges make of one gauge. */
 export interface HeldOutGauge {
-  readonly network: string;
-  readonly gaugeId: string;
-  /** Factor from all other gauges; NaN where their radar sum is 0. */
-  readonly factor: number;
-  readonly clipped: boolean;
-  /** Sums over the gauge's used pairs: what it read, and the radar adjusted without it; mm. */
-  readonly gaugeMm: number;
+  readonly gauge: WindowGauge;
+  /** The method as it learned from gauges without this one. */
+  readonly learned: LearnedMethod;
+  /** When the rain of the others fell. */
+  readonly share: RainShare;
+  /** Depth at the gauge by it over the time of its pairs, mm; NaN where there is none. */
   readonly crossValidatedMm: number;
 }
 
-/** Leave-one-gauge-out cross-validation of a mean-field bias. */
-export interface CrossValidation<P extends FactorPair> {
+/** How well gauges are met by what learned without them. Errors are adjusted minus gauge. */
+export interface CrossValidation {
   readonly gauges: readonly HeldOutGauge[];
-  /**
-   * The pairs that were given, the radar depth of used ones multiplied by the factor of the other
-   * gauges: what scores after adjustment are worked out on. A pair whose factor is undefined is unused.
-   */
-  readonly pairs: readonly P[];
-  /** Root mean square over gauges of cross-validated minus gauge window depth, mm; NaN without a gauge. */
+  /** Root mean square over judged gauges of the error of depths over the time of their pairs, mm; NaN without a gauge. */
   readonly errorMm: number;
-  /** The same in per cent of the gauges' mean window depth; NaN where that is 0. */
+  readonly meanErrorMm: number;
+  /** The first in per cent of the gauges' mean depth; NaN where that is 0. */
   readonly errorPercent: number;
   /** The same error of the radar as it is, so that the gain of the adjustment can be read. */
   readonly errorBeforeMm: number;
-  /** How many gauges the two errors are taken over. */
+  /** How many gauges were judged. */
   readonly gaugeCount: number;
-  /** How many held-out factors met a limit. */
-  readonly clippedCount: number;
+  /** How many gauges got no figure; they enter no error. */
+  readonly withoutFigure: number;
 }
 
 /**
- * How well the factor of the other gauges predicts each gauge.
+ * Which gauges are held out together: each alone up to a count, else ten groups by turns.
  *
- * A gauge that shaped the field cannot also judge it, so each gauge in turn is left out with all its
- * pairs, and the limits apply to each factor as they do to the one of all gauges. The floors do not: they
- * decide whether there is an adjustment at all.
- *
- * @param pairs - the pairs that the factor was made from
+ * @returns fold of each gauge, shape [count]
  */
-export function crossValidate<P extends FactorPair>(
-  pairs: readonly P[],
-  { factorLimits }: Pick<MeanFieldBiasOptions, "factorLimits">,
-): CrossValidation<P> {
-  const sums = sumsByGauge(pairs);
-  const heldOut = sums.map((sum, left) => holdOut(sum, sums.toSpliced(left, 1), factorLimits));
-  const factors = new Map(heldOut.map((gauge) => [keyOf(gauge), gauge.factor]));
-  const judged = sums
-    .map((sum, i) => ({ ...sum, crossValidatedMm: heldOut[i].crossValidatedMm }))
-    .filter((gauge) => !Number.isNaN(gauge.crossValidatedMm));
-  const errorMm = rootMeanSquare(judged.map((gauge) => gauge.crossValidatedMm - gauge.gaugeMm));
-  const meanGaugeMm = judged.reduce((sum, gauge) => sum + gauge.gaugeMm, 0) / judged.length;
+export function foldsOf(count: number, aloneUpTo: number): Int32Array {
+  return Int32Array.from({ length: count }, (_, i) => (count <= aloneUpTo ? i : i % 10));
+}
+
+/**
+ * Holds out each gauge in turn, or in groups, and asks what learned from the rest for its depth: a gauge that
+ * shaped the field cannot also judge it.
+ *
+ * @param folds - as {@link foldsOf} gives them
+ * @param learn - all that is learned, choices included, must come from the gauges it is handed
+ */
+export function crossValidate(
+  gauges: readonly WindowGauge[],
+  folds: Int32Array,
+  learn: (others: readonly WindowGauge[]) => LearnedMethod,
+): CrossValidation {
+  const trained = new Map<number, Pick<HeldOutGauge, "learned" | "share">>();
+  const heldOut = gauges.map((gauge, i): HeldOutGauge => {
+    let known = trained.get(folds[i]);
+    if (known === undefined) {
+      const others = gauges.filter((_, other) => folds[other] !== folds[i]);
+      known = { learned: learn(others), share: meanRainShare(others) };
+      trained.set(folds[i], known);
+    }
+    return { gauge, ...known, crossValidatedMm: pairedDepthAt(known.learned, gauge) };
+  });
+  const judged = heldOut.filter(({ crossValidatedMm }) => !Number.isNaN(crossValidatedMm));
+  const errors = judged.map(({ gauge, crossValidatedMm }) => crossValidatedMm - gauge.gaugeMm);
+  const errorMm = rootMeanSquare(errors);
+  const meanGaugeMm = mean(judged.map(({ gauge }) => gauge.gaugeMm));
   return {
     gauges: heldOut,
-    pairs: pairs.map((pair) => adjustedByOthers(pair, factors.get(keyOf(pair)))),
     errorMm,
+    meanErrorMm: mean(errors),
     errorPercent: meanGaugeMm > 0 ? (100 * errorMm) / meanGaugeMm : Number.NaN,
-    errorBeforeMm: rootMeanSquare(judged.map((gauge) => gauge.radarMm - gauge.gaugeMm)),
+    errorBeforeMm: rootMeanSquare(judged.map(({ gauge }) => gauge.radarMm - gauge.gaugeMm)),
     gaugeCount: judged.length,
-    clippedCount: heldOut.filter((gauge) => gauge.clipped).length,
+    withoutFigure: gauges.length - judged.length,
   };
 }
 
-function holdOut(
-  { network, gaugeId, gaugeMm, radarMm }: GaugeSum,
-  others: readonly GaugeSum[],
-  limits: MeanFieldBiasOptions["factorLimits"],
-): HeldOutGauge {
-  const othersGaugeMm = others.reduce((sum, other) => sum + other.gaugeMm, 0);
-  const othersRadarMm = others.reduce((sum, other) => sum + other.radarMm, 0);
-  const limited = factorFromSums(othersGaugeMm, othersRadarMm, limits);
-  const factor = limited?.factor ?? Number.NaN;
-  return {
-    network,
-    gaugeId,
-    factor,
-    clipped: limited?.clipped ?? false,
-    gaugeMm,
-    crossValidatedMm: radarMm * factor,
-  };
-}
-
-function adjustedByOthers<P extends FactorPair>(pair: P, factor: number | undefined): P {
-  if (!pair.used || factor === undefined) return pair;
-  if (Number.isNaN(factor)) {
-    return { ...pair, used: false, reason: "the radar saw no rain at the other gauges: no factor" };
-  }
-  return { ...pair, radarMm: pair.radarMm * factor };
-}
-
-function rootMeanSquare(errors: readonly number[]): number {
-  return Math.sqrt(errors.reduce((sum, error) => sum + error * error, 0) / errors.length);
+/**
+ * The pairs with the radar depth of used ones replaced by what the others make of it: what scores after
+ * adjustment are worked out on. A pair without a figure is unused, and so is one that took no part.
+ */
+export function crossValidatedPairs<P extends Pair>(
+  pairs: readonly P[],
+  { gauges }: Pick<CrossValidation, "gauges">,
+): P[] {
+  const byKey = new Map(gauges.map((held) => [keyOf(held.gauge), held]));
+  return pairs.map((pair) => {
+    const held = byKey.get(keyOf(pair));
+    if (!pair.used || held === undefined) return pair;
+    const radarMm = spanDepthAt(held.learned, held.gauge, pair, pair.radarMm, held.share);
+    return Number.isNaN(radarMm)
+      ? { ...pair, used: false, reason: "the radar saw no rain at the other gauges: no factor" }
+      : { ...pair, radarMm };
+  });
 }
 
 function keyOf({ network, gaugeId }: { readonly network: string; readonly gaugeId: string }): string {
   return gaugeKey({ network, id: gaugeId });
+}
+
+function rootMeanSquare(errors: readonly number[]): number {
+  return Math.sqrt(mean(errors.map((error) => error * error)));
+}
+
+function mean(values: readonly number[]): number {
+  return values.reduce((sum, value) => sum + value, 0) / values.length;
 }

@@ -1,16 +1,41 @@
-export { type CrossValidation, crossValidate, type HeldOutGauge } from "./cross-validation.ts";
+export {
+  type AdjustedFieldInput,
+  type FieldAdjuster,
+  fieldAdjuster,
+} from "./adjusted-field.ts";
+export {
+  meanRainShare,
+  type PairedPlace,
+  type RainShare,
+  spanDepthAt,
+} from "./at-gauge.ts";
+export {
+  type Candidate,
+  CHOICE_RULE,
+  chooseMethod,
+  type MethodChoice,
+  validateChoice,
+  validateMethod,
+} from "./choose-method.ts";
+export { type CrossValidation, crossValidatedPairs, type HeldOutGauge } from "./cross-validation.ts";
 export {
   type AppliedBias,
-  applyFactor,
   type FactorBasis,
   type FactorPair,
-  factorFromSums,
-  type GaugeSum,
-  type LimitedFactor,
   type MeanFieldBias,
   type MeanFieldBiasOptions,
   meanFieldBias,
   NO_TOTAL_STANDARD_ERROR,
   type RefusedBias,
-  sumsByGauge,
 } from "./mean-field-bias.ts";
+export {
+  type LearnedMethod,
+  learnMethod,
+  METHOD_NAMES,
+  METHOD_TITLES,
+  type MethodName,
+  type MethodSettings,
+} from "./methods.ts";
+export { radarVariogram } from "./radar-variogram.ts";
+export { VARIOGRAM_SHAPES, type VariogramModel, type VariogramShape } from "./variogram-model.ts";
+export { type GaugePlaces, type GaugeReading, type WindowGauge, windowGauges } from "./window-gauges.ts";

@@ -1,9 +1,7 @@
 import type { Pair } from "@rainreckon/core";
 import { checkValue } from "@rainreckon/test-data/published";
-import { scorePairs } from "@rainreckon/verification";
 import { describe, expect, test } from "vitest";
-import { crossValidate } from "./cross-validation.ts";
-import { applyFactor, factorFromSums, meanFieldBias } from "./mean-field-bias.ts";
+import { factorFromSums, meanFieldBias } from "./mean-field-bias.ts";
 
 const HOUR = 3_600_000;
 
@@ -111,97 +109,5 @@ describe("no adjustment", () => {
       ),
     );
     expect(meanFieldBias(hundredTenths, options).applied).toBe(true);
-  });
-});
-
-describe("cross-validation", () => {
-  // By hand: gauges 2, 4, 12 against radar 1, 4, 4. Factors of the others: 16/8, 14/5, 6/5.
-  const three = [pair("a", 2, 1), pair("b", 4, 4), pair("c", 12, 4)];
-  const held = crossValidate(three, options);
-
-  test("judges each gauge by the factor of the others alone", () => {
-    expect(held.gauges.map((gauge) => gauge.factor)).toEqual([2, 2.8, 1.2]);
-    const errors = [2 - 2, 11.2 - 4, 4.8 - 12];
-    const errorMm = Math.sqrt(errors.reduce((sum, error) => sum + error ** 2, 0) / 3);
-    expect(held.errorMm).toBeCloseTo(errorMm, 12);
-    expect(held.errorPercent).toBeCloseTo((100 * errorMm) / 6, 12);
-    expect(held.errorBeforeMm).toBeCloseTo(Math.sqrt((1 + 0 + 64) / 3), 12);
-  });
-
-  test("a gauge's own readings never change its own figure", () => {
-    const other = crossValidate([pair("a", 1000, 1), ...three.slice(1)], options);
-    expect(other.gauges[0].crossValidatedMm).toBe(held.gauges[0].crossValidatedMm);
-    expect(other.gauges[1].crossValidatedMm).not.toBe(held.gauges[1].crossValidatedMm);
-  });
-
-  test("gives pairs to score, with the gauge depths as they were", () => {
-    expect(held.pairs.map((each) => [each.gaugeMm, each.radarMm])).toEqual([
-      [2, 2],
-      [4, 11.2],
-      [12, 4.8],
-    ]);
-    const scores = scorePairs(held.pairs, {
-      thresholdMm: 0.2,
-      thresholdsMm: [1],
-      rangeBandsKm: [50],
-      pairIntervalMs: HOUR,
-      bootstrap: { seed: 1, samples: 100, level: 0.9, blockMinutes: 60 },
-    });
-    const biasRatio = scores.whole.continuous.find((score) => score.name === "biasRatio");
-    expect(biasRatio?.value).toBeCloseTo(18 / 18, 12);
-  });
-
-  test("gauges that share one factor are predicted exactly", () => {
-    const exact = crossValidate(five, options);
-    expect(exact.errorMm).toBeCloseTo(0, 12);
-    expect(exact.errorBeforeMm).toBeGreaterThan(1);
-  });
-
-  test("factors of the others meet the same limits, and are counted", () => {
-    const wet = three.map((each) => ({ ...each, radarMm: each.radarMm / 100 }));
-    const limited = crossValidate(wet, options);
-    expect(limited.gauges.map((gauge) => gauge.factor)).toEqual([10, 10, 10]);
-    expect(limited.clippedCount).toBe(3);
-  });
-
-  test("where the others saw no radar rain there is no figure, with the reason", () => {
-    const lone = crossValidate([pair("a", 3, 2), pair("b", 1, 0), pair("c", 0, 0)], options);
-    expect(lone.gauges[0].crossValidatedMm).toBeNaN();
-    expect(lone.pairs[0]).toMatchObject({
-      used: false,
-      reason: "the radar saw no rain at the other gauges: no factor",
-    });
-    expect(lone.gaugeCount).toBe(2);
-  });
-
-  test("unused pairs pass through untouched, and none at all gives NaN", () => {
-    const unused = pair("x", 1, 1, { used: false, reason: "no gauge data" });
-    expect(crossValidate([...three, unused], options).pairs[3]).toBe(unused);
-    const none = crossValidate([unused], options);
-    expect([none.errorMm, none.errorPercent, none.gaugeCount]).toEqual([Number.NaN, Number.NaN, 0]);
-  });
-});
-
-describe("the adjusted field", () => {
-  test("is every depth times the factor: NaN stays NaN, 0 stays 0, the field handed in stays as it was", () => {
-    const field = Float32Array.of(0, 1.5, Number.NaN, 4);
-    expect([...applyFactor(field, 2)]).toEqual([0, 3, Number.NaN, 8]);
-    expect([...field]).toEqual([0, 1.5, Number.NaN, 4]);
-  });
-
-  test("adds up in time: the sum of adjusted depths is the adjusted total", () => {
-    const hoursMm = [Float32Array.of(1, 2), Float32Array.of(3, 0.5)];
-    const total = Float32Array.of(4, 2.5);
-    const adjusted = hoursMm.map((field) => applyFactor(field, 1.25));
-    expect([...applyFactor(total, 1.25)]).toEqual([
-      adjusted[0][0] + adjusted[1][0],
-      adjusted[0][1] + adjusted[1][1],
-    ]);
-  });
-
-  test("a factor that is not finite and above 0 is a caller's mistake", () => {
-    for (const factor of [0, -1, Number.NaN, Number.POSITIVE_INFINITY]) {
-      expect(() => applyFactor(new Float32Array(1), factor)).toThrow(RangeError);
-    }
   });
 });

@@ -51,8 +51,7 @@ export interface RefusedBias extends FactorBasis {
 export type MeanFieldBias = AppliedBias | RefusedBias;
 
 /** Why `adjusted_total_standard_error` is absent beside a mean-field bias. */
-export const NO_TOTAL_STANDARD_ERROR =
-  "a mean-field bias gives the uncertainty of one factor, not of each cell: no method for a field of standard errors yet";
+export const NO_TOTAL_STANDARD_ERROR = "no error model of adjusted cells is built";
 
 /**
  * A factor gauge/radar from sums, within limits.
@@ -103,8 +102,8 @@ export function sumsByGauge(pairs: readonly FactorPair[]): GaugeSum[] {
 /**
  * Mean-field bias: one factor for the whole field and the whole window, the ratio of sums gauge/radar.
  *
- * It is constant in time, so adjusted depths have no step at the hour and their sum is the adjusted
- * total. Only used pairs count, so doubted and left-out gauges must have been taken out beforehand.
+ * It is constant in time, so adjusted depths have no step at the hour. Its floors are those of every
+ * method: where it refuses, nothing is adjusted. Only used pairs count, so doubted and left-out gauges must have been taken out beforehand.
  * No factor below the floors, or where gauges or radar saw no rain in the pairs; then the reason stands
  * in its place and no copy of the unadjusted field may pass for an adjusted one.
  *
@@ -144,20 +143,4 @@ export function meanFieldBias(pairs: readonly FactorPair[], options: MeanFieldBi
     standardErrorLinearised: errors.linearised,
     standardErrorJackknife: errors.jackknife,
   };
-}
-
-/**
- * A field multiplied by a factor. NaN stays NaN and 0 stays 0.
- *
- * @param depthMm - shape [ny, nx]
- * @param factor - finite and above 0
- * @returns a new array of the same shape
- * @throws RangeError for any other factor
- */
-export function applyFactor(depthMm: Float32Array, factor: number): Float32Array {
-  if (!(factor > 0 && Number.isFinite(factor)))
-    throw new RangeError(`a factor is finite and above 0, got ${factor}`);
-  const adjusted = new Float32Array(depthMm.length);
-  for (let i = 0; i < depthMm.length; i++) adjusted[i] = depthMm[i] * factor;
-  return adjusted;
 }

@@ -11,6 +11,7 @@ export type {
   GaugeRole,
   Hyetograph,
   MapLayer,
+  MethodChoiceStatement,
   Provenance,
   ProvenanceInput,
   RelationFigure,

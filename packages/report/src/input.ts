@@ -46,6 +46,23 @@ export type CrossValidationStatement =
     }
   | { readonly reason: string };
 
+/** How a method of adjustment was picked; errors are at gauges held out in turn, mm, NaN where there is none. */
+export interface MethodChoiceStatement {
+  readonly rule: string;
+  /** Title of the method that was picked. */
+  readonly chosen: string;
+  /** Error of the whole procedure at gauges that had no part in the choice. */
+  readonly outerErrorMm: number;
+  readonly candidates: readonly {
+    readonly title: string;
+    readonly errorMm: number;
+    readonly meanErrorMm: number;
+    /** How often it was picked without some of the gauges. */
+    readonly chosenInFolds: number;
+    readonly notes: readonly string[];
+  }[];
+}
+
 /** Values over the grid: shape [ny, nx], row-major, row 0 in the north, NaN not observed. */
 export type MapLayer =
   | {
@@ -217,6 +234,8 @@ export interface ReportInput {
   };
   readonly adjustment: AdjustmentStatement;
   readonly crossValidation: CrossValidationStatement;
+  /** Absent where the plan names the method. */
+  readonly methodChoice?: MethodChoiceStatement;
   /** Most important first. */
   readonly cautions: readonly Caution[];
   readonly grid: Grid;

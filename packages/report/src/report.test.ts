@@ -107,6 +107,26 @@ test("without gauges, catchments, layers and scores the page says what is missin
   }
 });
 
+test("a choice among methods shows its table, its rule, and the error that had no part in it", () => {
+  const candidate = { errorMm: 4.4, meanErrorMm: -0.1, chosenInFolds: 3, notes: [] };
+  const text = renderWith({
+    methodChoice: {
+      rule: "the smallest error",
+      chosen: "conditional merging",
+      outerErrorMm: 5.2,
+      candidates: [
+        { ...candidate, title: "conditional merging" },
+        { ...candidate, title: "gauges alone", errorMm: Number.NaN, notes: ["no figure at 2 gauges"] },
+      ],
+    },
+  });
+  expect(text).toContain("Picked: conditional merging. The rule: the smallest error.");
+  expect(text).toMatch(/had no part in the choice either, the error is 5\.2 mm/);
+  expect(text).toMatch(/conditional merging 4\.4 .0\.1 3/);
+  expect(text).toContain("no figure at 2 gauges");
+  expect(words(page)).not.toContain("Ways to adjust");
+});
+
 test("scores are sentences with radar/gauge said, their count, and their intervals", () => {
   const text = words(page);
   expect(text).toContain(

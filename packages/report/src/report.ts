@@ -4,6 +4,7 @@ import { catchmentSection, relationSection } from "./sections/catchments.ts";
 import { scatterSection, verdictSection } from "./sections/gauges.ts";
 import { hyetographSection } from "./sections/hyetographs.ts";
 import { mapSection } from "./sections/map-section.ts";
+import { methodSection } from "./sections/methods.ts";
 import { firstCautions, headlineSentence, limitsSection, titleBlock, trustLine } from "./sections/opening.ts";
 import { accountSection, glossarySection, provenanceSection } from "./sections/records.ts";
 import { scoreSection } from "./sections/scores.ts";
@@ -22,6 +23,7 @@ const SECTIONS: readonly {
   { id: "catchments", words: "Catchments", write: catchmentSection },
   { id: "gauges", words: "Gauge verdicts", write: verdictSection },
   { id: "scores", words: "Scores", write: scoreSection },
+  { id: "methods", words: "Ways to adjust", write: methodSection },
   { id: "accounts", words: "Left out and assumed", write: accountSection },
   { id: "provenance", words: "Provenance", write: provenanceSection },
   { id: "limits", words: "Cautions", write: limitsSection },

@@ -43,6 +43,7 @@ export {
   type ThresholdScores,
 } from "./score-table.ts";
 export {
+  type MethodChoiceTable,
   type ScoresDocument,
   type ScoresDocumentInput,
   scoresDocument,

@@ -95,6 +95,27 @@ export const scoresSchema = z.strictObject({
       table: table.describe("each gauge against the radar adjusted by the other gauges only"),
     })
     .nullable(),
+  methodChoice: z
+    .strictObject({
+      rule: z.string().min(1),
+      chosen: z.string().min(1),
+      outer: z
+        .strictObject({ errorMm: figure, meanErrorMm: figure, gaugeCount: count })
+        .describe("at gauges that had no part in the choice: the error to quote"),
+      candidates: z.array(
+        z.strictObject({
+          name: z.string().min(1),
+          title: z.string().min(1),
+          errorMm: figure.describe("root mean square error of window depths at held-out gauges"),
+          meanErrorMm: figure.describe("mean error, adjusted minus gauge"),
+          gaugeCount: count,
+          chosenInFolds: count.describe("how often it was picked without some of the gauges"),
+          notes: z.array(z.string()).describe("where a simpler way stood in"),
+        }),
+      ),
+    })
+    .optional()
+    .describe("how the method of adjustment was picked; absent where the plan names it"),
   afterReason: z.string().min(1).optional().describe("why there is no score after adjustment"),
 });
 
@@ -107,6 +128,24 @@ export interface ScoresDocumentInput {
   readonly before: ScoreTable;
   /** Scores of cross-validated pairs, or why there are none. Never those of a gauge that shaped what it judges. */
   readonly after: ScoreTable | { readonly reason: string };
+  /** How a method was picked among candidates, where it was; an error that is not known is NaN. */
+  readonly methodChoice?: MethodChoiceTable;
+}
+
+/** Candidates with their errors at gauges held out in turn, mm. */
+export interface MethodChoiceTable {
+  readonly rule: string;
+  readonly chosen: string;
+  readonly outer: { readonly errorMm: number; readonly meanErrorMm: number; readonly gaugeCount: number };
+  readonly candidates: readonly {
+    readonly name: string;
+    readonly title: string;
+    readonly errorMm: number;
+    readonly meanErrorMm: number;
+    readonly gaugeCount: number;
+    readonly chosenInFolds: number;
+    readonly notes: readonly string[];
+  }[];
 }
 
 /**
@@ -138,7 +177,27 @@ export function scoresDocument(input: ScoresDocumentInput): ScoresDocument {
     },
     before: plainTable(before),
     after: absent ? null : { basis: "cross-validated", table: plainTable(after) },
+    ...(input.methodChoice === undefined ? {} : { methodChoice: plainChoice(input.methodChoice) }),
     ...(absent ? { afterReason: after.reason } : {}),
+  };
+}
+
+function plainChoice({
+  rule,
+  chosen,
+  outer,
+  candidates,
+}: MethodChoiceTable): NonNullable<ScoresDocument["methodChoice"]> {
+  const plainErrors = <T extends { readonly errorMm: number; readonly meanErrorMm: number }>(errors: T) => ({
+    ...errors,
+    errorMm: finite(errors.errorMm),
+    meanErrorMm: finite(errors.meanErrorMm),
+  });
+  return {
+    rule,
+    chosen,
+    outer: plainErrors(outer),
+    candidates: candidates.map((candidate) => ({ ...plainErrors(candidate), notes: [...candidate.notes] })),
   };
 }
 

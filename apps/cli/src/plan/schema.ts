@@ -1,3 +1,4 @@
+import { METHOD_NAMES, VARIOGRAM_SHAPES } from "@rainreckon/adjustment";
 import { z } from "zod";
 
 /** An instant with its offset or Z: a plan never holds a time that depends on where it is read. */
@@ -262,10 +263,23 @@ export const planSchema = z.strictObject({
     .prefault({}),
   adjustment: z
     .strictObject({
-      method: z.enum(["none", "mean-field-bias"]).default("mean-field-bias"),
+      /** A method by name, or the one that meets held-out gauges best. */
+      method: z.enum([...METHOD_NAMES, "by-cross-validation"]).default("mean-field-bias"),
       minGauges: z.number().int().min(5).default(5),
       minGaugeSumMm: z.number().min(10).default(10),
       factorLimits: z.tuple([z.number().positive(), z.number().positive()]).default([0.1, 10]),
+      /** Shape of the variogram that kriging methods fit. */
+      variogram: z.enum(VARIOGRAM_SHAPES).default("spherical"),
+      /** Error of a gauge's window depth, in per cent of it. */
+      gaugeErrorPercent: z.number().min(0).max(50).default(5),
+      /** The log bias in time: its memory from one pair interval to the next, its variance, and that of one pair. */
+      kalman: z
+        .strictObject({
+          memory: z.number().gt(0).max(1).default(0.9),
+          variance: z.number().positive().max(10).default(0.09),
+          pairVariance: z.number().positive().max(100).default(0.25),
+        })
+        .prefault({}),
     })
     .prefault({}),
   overrides: z

@@ -1,9 +1,10 @@
 import { cutWindow, durationMs, rainDays } from "@rainreckon/accumulation";
 import {
-  type CrossValidation,
-  crossValidate,
-  type MeanFieldBias,
-  meanFieldBias,
+  crossValidatedPairs,
+  type HeldOutGauge,
+  type PairedPlace,
+  spanDepthAt,
+  windowGauges,
 } from "@rainreckon/adjustment";
 import { gaugeKey, type Interval, type Pair } from "@rainreckon/core";
 import { geodesicInverse } from "@rainreckon/mosaic";
@@ -19,6 +20,7 @@ import {
   type ScoreTable,
   scorePairs,
 } from "@rainreckon/verification";
+import { type AdjustmentResult, adjust, loudestRadar } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
 import type { GaugeInput } from "./gauges.ts";
 import { sourceIds } from "./job.ts";
@@ -30,18 +32,19 @@ export interface ComparedGauge {
   readonly verdict: GaugeVerdict;
   readonly whole: Pair;
   readonly rainDays: readonly Pair[];
+  /** The gauge as the adjustment sees it, trusted or not. */
+  readonly place: PairedPlace;
+  /** What the other gauges make of it; undefined where there is no adjustment or it had no part in one. */
+  readonly heldOut: HeldOutGauge | undefined;
   /** Window depth of the cell among the 3 × 3 that comes closest: a diagnostic of displacement, never a score. */
   readonly closestOf3x3Mm: number;
 }
 
 /** What comparing with the gauges came to. */
-export interface Comparison {
+export interface Comparison extends AdjustmentResult {
   readonly gauges: readonly ComparedGauge[];
   /** By interval, all gauges; those of gauges that are not trusted are not used. */
   readonly pairs: readonly Pair[];
-  readonly bias: MeanFieldBias;
-  /** Undefined where there is no adjustment. */
-  readonly crossValidation: CrossValidation<Pair> | undefined;
   readonly scoreOptions: ScoreOptions;
   readonly before: ScoreTable;
   readonly after: ScoreTable | { readonly reason: string };
@@ -86,20 +89,23 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
   });
   const verdicts = judgeGauges(evidence);
   const reasons = leftOutReasons(verdicts);
-  const pairs = leaveOut(
-    compared.flatMap(({ byInterval }) => byInterval),
-    reasons,
+  const byInterval = compared.flatMap((one) => one.byInterval);
+  const pairs = leaveOut(byInterval, reasons);
+  const where = new Map(
+    compared.map(({ gauge: { series, xM, yM } }, g) => [
+      gaugeKey(series),
+      { xM, yM, radarTotalMm: observedSum(total.gauges.depthMm[g]) },
+    ]),
   );
-  const { method, minGauges, minGaugeSumMm, factorLimits } = plan.adjustment;
-  const bias: MeanFieldBias =
-    method === "none"
-      ? {
-          ...meanFieldBias([], { minGauges, minGaugeSumMm, factorLimits }),
-          applied: false,
-          reason: "switched off in the plan",
-        }
-      : meanFieldBias(pairs, { minGauges, minGaugeSumMm, factorLimits });
-  const crossValidation = bias.applied ? crossValidate(pairs, { factorLimits }) : undefined;
+  const result = adjust(run, total, pairs, windowGauges(pairs, where));
+  const { adjustment } = result;
+  const places = byKey(windowGauges(byInterval, where));
+  const heldOut = new Map(
+    (adjustment.applied ? adjustment.crossValidation.gauges : []).map((held) => [
+      gaugeKey({ network: held.gauge.network, id: held.gauge.gaugeId }),
+      held,
+    ]),
+  );
   const scoreOptions: ScoreOptions = {
     thresholdMm: plan.pairs.thresholdMm,
     thresholdsMm: plan.pairs.thresholdsMm,
@@ -115,23 +121,55 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
   return {
     gauges: compared.map(({ gauge, whole, rainDays: ofDays }, g) => ({
       gauge,
+      place: places.get(gaugeKey(gauge.series)) ?? {
+        xKm: gauge.xM / 1000,
+        yKm: gauge.yM / 1000,
+        rangeKm: whole.rangeKm,
+        radarMm: whole.radarMm,
+        radarTotalMm: observedSum(total.gauges.depthMm[g]),
+        coverage: 0,
+        readings: [],
+      },
+      heldOut: heldOut.get(gaugeKey(gauge.series)),
       verdict: verdicts[g],
       whole: leaveOut([whole], reasons)[0],
       rainDays: leaveOut(ofDays, reasons),
       closestOf3x3Mm:
         closestOf3x3(total.planes.totalMm, run.grid, gauge.cell, whole.gaugeMm)?.valueMm ?? Number.NaN,
     })),
+    ...result,
     pairs,
-    bias,
-    crossValidation,
     scoreOptions,
     before: scorePairs(pairs, scoreOptions),
-    after:
-      crossValidation === undefined
-        ? { reason: bias.applied ? "no cross-validation" : `no adjustment: ${bias.reason}` }
-        : scorePairs(crossValidation.pairs, scoreOptions),
+    after: adjustment.applied
+      ? scorePairs(crossValidatedPairs(pairs, adjustment.crossValidation), scoreOptions)
+      : { reason: `no adjustment: ${adjustment.reason}` },
     splitMm,
   };
+}
+
+/** Adjusted depth of a pair at its gauge, mm; NaN where there is no adjustment. */
+export function adjustedPairMm({ adjustment }: Comparison, { place }: ComparedGauge, pair: Pair): number {
+  if (!adjustment.applied) return Number.NaN;
+  return spanDepthAt(adjustment.learned, place, pair, pair.radarMm, adjustment.share);
+}
+
+/** The same by what learned without the gauge. A gauge that shaped nothing is met by the adjustment itself. */
+export function crossValidatedPairMm(comparison: Comparison, gauge: ComparedGauge, pair: Pair): number {
+  const { heldOut, place } = gauge;
+  if (heldOut === undefined) return adjustedPairMm(comparison, gauge, pair);
+  return spanDepthAt(heldOut.learned, place, pair, pair.radarMm, heldOut.share);
+}
+
+/** Sum of the steps that were observed; 0 where none was. */
+function observedSum(depthMm: Float64Array): number {
+  return depthMm.reduce((sum, mm) => (Number.isNaN(mm) ? sum : sum + mm), 0);
+}
+
+function byKey<G extends { readonly network: string; readonly gaugeId: string }>(
+  gauges: readonly G[],
+): Map<string, G> {
+  return new Map(gauges.map((gauge) => [gaugeKey({ network: gauge.network, id: gauge.gaugeId }), gauge]));
 }
 
 /** Rain days that lie wholly in the window: over part of a day there is no daily pair. */
@@ -153,11 +191,7 @@ function radarAt(
   total: AssembledRun,
   { cell, station }: GaugeInput,
 ): { radarId: string; rangeKm: number; beamHeightAslM: number } {
-  let loudest = -1;
-  for (let r = 0; r < run.shape.radars.length; r++) {
-    const share = total.planes.radarShare[r][cell];
-    if (share > (total.planes.radarShare[loudest]?.[cell] ?? 0)) loudest = r;
-  }
+  const loudest = loudestRadar(total, cell);
   const site = run.shape.radars[loudest]?.site;
   return {
     radarId: sourceIds(run.shape)[loudest] ?? "",

@@ -110,19 +110,23 @@ export function runCautions(
     say(
       `${percent(edge)} of the window lies before the first or after the last scan and rests on that one scan.`,
     );
-  const { bias } = comparison;
-  if (!bias.applied) {
+  const { adjustment } = comparison;
+  if (!adjustment.applied) {
     say(
       run.gauges.gauges.length === 0
         ? "There are no gauges beside this total: nothing checks it."
-        : `The total is not adjusted to the gauges: ${bias.reason}.`,
+        : `The total is not adjusted to the gauges: ${adjustment.reason}.`,
     );
   } else {
-    if (bias.gaugeCount < FEW_GAUGES) say(`The adjustment rests on ${bias.gaugeCount} gauges only.`);
-    if (bias.clipped)
+    if (adjustment.gaugeCount < FEW_GAUGES)
+      say(`The adjustment rests on ${adjustment.gaugeCount} gauges only.`);
+    if (adjustment.unlimitedFactor !== undefined)
       say(
-        `The adjustment's factor met its limit: ${bias.unlimitedFactor.toFixed(2)} was cut to ${bias.factor.toFixed(2)} (gauge/radar).`,
+        `The adjustment's factor met its limit: ${adjustment.unlimitedFactor.toFixed(2)} was cut to ${adjustment.factor.toFixed(2)} (gauge/radar).`,
       );
+    for (const note of adjustment.notes) say(`In the adjustment by ${adjustment.title}: ${note}.`);
+    if (adjustment.method === "gauges-alone")
+      say("The adjusted total is interpolated between gauges: the radar gives it only its shape in time.");
   }
   const doubted = comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length;
   if (doubted > 0) {

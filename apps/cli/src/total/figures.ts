@@ -1,5 +1,5 @@
 import { arealDepth, rainDays } from "@rainreckon/accumulation";
-import type { Interval } from "@rainreckon/core";
+import { cellCentre, type Interval } from "@rainreckon/core";
 import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -8,9 +8,12 @@ import type { PreparedRun } from "./prepare.ts";
 export interface ArealFigure {
   /** From the part observed, over the whole area: a lower bound where observedFraction is below 1. */
   readonly radarMm: number;
-  /** The same times the adjustment's factor; NaN where there is no adjustment. */
+  /** The same after adjustment; NaN where there is none. */
   readonly adjustedMm: number;
+  /** Mean by the gauges alone; NaN where they do not allow it, and over spans shorter than the window. */
+  readonly gaugesOnlyMm: number;
   readonly observedFraction: number;
+  /** NaN where it is not known: over several steps, and over a step of a field that changes from cell to cell. */
   readonly maxCellMm: number;
   /** Share of the depth that came from gates at the cap. */
   readonly cappedFraction: number;
@@ -35,44 +38,67 @@ export interface CatchmentFigure extends Interval {
 }
 
 /** What all the depths of a run are made from. */
-interface Sources {
+export interface FigureSources {
   readonly run: PreparedRun;
   readonly total: AssembledRun;
   readonly comparison: Comparison;
-}
-
-/** Factor that radar depths are multiplied by; NaN where there is no adjustment. */
-export function factorOf(comparison: Comparison): number {
-  return comparison.bias.applied ? comparison.bias.factor : Number.NaN;
+  /** Undefined where there is no adjustment. */
+  readonly adjustedTotalMm: Float32Array | undefined;
 }
 
 /** The depth of the district over the window. */
-export function districtFigure({ run, total, comparison }: Sources): ArealFigure {
-  return windowFigure(run.district, { run, total, comparison });
+export function districtFigure(sources: FigureSources): ArealFigure {
+  return windowFigure(sources.run.district, sources);
 }
 
 /** The depth of an area over the window; its deepest cell is known, as it is not over a run of steps. */
 export function windowFigure(
   area: PreparedRun["district"],
-  { run, total, comparison }: Sources,
+  { run, total, comparison, adjustedTotalMm }: FigureSources,
 ): ArealFigure {
   const windowMs = run.window.endEpochMs - run.window.startEpochMs;
   const { depthMm, observedFraction, maxCellMm, cappedMm } = arealDepth(area, total.sum, windowMs);
-  const factor = factorOf(comparison);
+  const adjusted =
+    adjustedTotalMm === undefined
+      ? undefined
+      : arealDepth(
+          area,
+          { depthMm: adjustedTotalMm, observedMs: total.sum.observedMs, cappedMm: total.sum.cappedMm },
+          windowMs,
+        );
   return {
     radarMm: depthMm,
-    adjustedMm: depthMm * factor,
+    adjustedMm: adjusted?.depthMm ?? Number.NaN,
+    gaugesOnlyMm: gaugesOnlyMean(run, area, comparison.gaugesOnlyMm),
     observedFraction,
-    maxCellMm: Number.isNaN(factor) ? maxCellMm : maxCellMm * factor,
+    maxCellMm: adjusted?.maxCellMm ?? maxCellMm,
     cappedFraction: depthMm > 0 ? cappedMm / depthMm : 0,
   };
+}
+
+/** Mean over an area's cells of what the gauges alone say, observed by a radar or not. */
+function gaugesOnlyMean(
+  { grid }: PreparedRun,
+  { cells, fraction }: PreparedRun["district"],
+  depthMm: Comparison["gaugesOnlyMm"],
+): number {
+  if (depthMm === undefined) return Number.NaN;
+  let sum = 0;
+  let whole = 0;
+  for (let k = 0; k < cells.length; k++) {
+    if (cells[k] < 0) return Number.NaN;
+    const { xM, yM } = cellCentre(grid, cells[k]);
+    sum += fraction[k] * depthMm(xM / 1000, yM / 1000);
+    whole += fraction[k];
+  }
+  return sum / whole;
 }
 
 /** The district's window depth under each headline relation, before any adjustment. */
 export function headlineUnderRelations({
   run,
   total,
-}: Sources): { name: string; mm: number; observedFraction: number }[] {
+}: FigureSources): { name: string; mm: number; observedFraction: number }[] {
   const windowMs = run.window.endEpochMs - run.window.startEpochMs;
   const { district, headlineRelations } = run;
   return headlineRelations.map(({ name }, variant) => {
@@ -92,26 +118,68 @@ export function headlineUnderRelations({
 }
 
 /** Depths of every catchment: over the window, over rain days, and on each step. */
-export function* catchmentFigures(sources: Sources): Generator<CatchmentFigure> {
+export function* catchmentFigures(sources: FigureSources): Generator<CatchmentFigure> {
   const { run } = sources;
   const rule = run.loaded.plan.intervals.rainDay;
   const days = rule === undefined ? [] : rainDays(run.window, rule);
   for (const [a, catchment] of run.catchments.entries()) {
-    yield { ...run.window, catchment, span: "window", figure: windowFigure(catchment.cells, sources) };
+    const whole = windowFigure(catchment.cells, sources);
+    const adjustedMm = adjustedSteps(a, whole.adjustedMm, sources);
+    const spanOf = (span: Interval) => spanFigure(a, span, adjustedMm, sources);
+    yield { ...run.window, catchment, span: "window", figure: whole };
     for (const day of days) {
       const { startEpochMs, endEpochMs } = day;
-      yield { startEpochMs, endEpochMs, catchment, span: "rain day", figure: spanFigure(a, day, sources) };
+      yield { startEpochMs, endEpochMs, catchment, span: "rain day", figure: spanOf(day) };
     }
     for (const step of run.steps) {
-      yield { ...step, catchment, span: "step", figure: spanFigure(a, step, sources) };
+      yield { ...step, catchment, span: "step", figure: spanOf(step) };
     }
   }
 }
 
-/** A catchment over a span, from its steps; time of the span outside the window was not observed. */
-export function spanFigure(area: number, span: Interval, { run, total, comparison }: Sources): ArealFigure {
+/**
+ * Adjusted depth of each step of the window over a catchment, mm: its radar depth, times the factor of the
+ * time where there is one, so scaled that the steps add up to the adjusted depth of the window. Where the
+ * radar saw nothing all window long, the shape is that of the gauges' mean.
+ *
+ * @param windowMm - adjusted depth of the window over the catchment; NaN without an adjustment
+ */
+export function adjustedSteps(
+  area: number,
+  windowMm: number,
+  { run, total, comparison }: FigureSources,
+): Float64Array {
+  const radar = total.areas.depthMm[area];
+  const { adjustment } = comparison;
+  if (!adjustment.applied) return radar.map(() => Number.NaN);
+  const { learned, share } = adjustment;
+  const shape = radar.map((mm, k) => {
+    if (learned.kind === "field") return mm;
+    const { startEpochMs, endEpochMs } = run.steps[k];
+    return mm * learned.factorAt((startEpochMs + endEpochMs) / 2);
+  });
+  const sum = shape.reduce((added, mm) => (Number.isNaN(mm) ? added : added + mm), 0);
+  return shape.map((mm, k) => {
+    if (Number.isNaN(mm)) return Number.NaN;
+    return sum > 0 ? (mm * windowMm) / sum : windowMm * share(run.steps[k]);
+  });
+}
+
+/**
+ * A catchment over a span, from its steps; time of the span outside the window was not observed.
+ *
+ * @param adjustedMm - as {@link adjustedSteps} gives it
+ */
+function spanFigure(
+  area: number,
+  span: Interval,
+  adjustedMm: Float64Array,
+  { run, total, comparison }: FigureSources,
+): ArealFigure {
   const { areas } = total;
+  const { adjustment } = comparison;
   let radarMm = Number.NaN;
+  let adjusted = Number.NaN;
   let observedMs = 0;
   let cappedMm = 0;
   let maxStepMm = Number.NaN;
@@ -122,18 +190,23 @@ export function spanFigure(area: number, span: Interval, { run, total, compariso
     if (Number.isNaN(depthMm)) continue;
     seen++;
     radarMm = Number.isNaN(radarMm) ? depthMm : radarMm + depthMm;
+    adjusted = Number.isNaN(adjusted) ? adjustedMm[k] : adjusted + adjustedMm[k];
     observedMs += areas.observedFraction[area][k] * (step.endEpochMs - step.startEpochMs);
     cappedMm += areas.cappedMm[area][k];
     maxStepMm = areas.maxCellMm[area][k];
   }
-  const factor = factorOf(comparison);
-  // The deepest cell of several steps need not be the deepest of any one: it is known for single steps only.
-  const maxCellMm = seen === 1 ? maxStepMm : Number.NaN;
+  // The deepest cell of several steps need not be the deepest of any one, and that of an adjusted field not
+  // the radar's: it is known for single steps of the radar, or of a factor that is the same everywhere.
+  let maxCellMm = seen === 1 ? maxStepMm : Number.NaN;
+  if (adjustment.applied && maxStepMm > 0) {
+    maxCellMm *= adjustment.learned.kind === "factor" && radarMm > 0 ? adjusted / radarMm : Number.NaN;
+  }
   return {
     radarMm,
-    adjustedMm: radarMm * factor,
+    adjustedMm: adjusted,
+    gaugesOnlyMm: Number.NaN,
     observedFraction: Math.min(1, observedMs / (span.endEpochMs - span.startEpochMs)),
-    maxCellMm: Number.isNaN(factor) ? maxCellMm : maxCellMm * factor,
+    maxCellMm,
     cappedFraction: radarMm > 0 ? cappedMm / radarMm : 0,
   };
 }

@@ -1,5 +1,5 @@
 import { durationMs, isohyetLevels, isohyets } from "@rainreckon/accumulation";
-import { applyFactor, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
+import { CHOICE_RULE, METHOD_TITLES, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   type CsvColumn,
@@ -17,10 +17,16 @@ import {
 import { type GaugeRow, gaugeRows, scoresDocument, scoresSchema } from "@rainreckon/verification";
 import { isoUtc } from "../ui/numbers.ts";
 import { version } from "../version.ts";
-import type { Comparison } from "./against-gauges.ts";
+import { type Adjustment, adjustedIntervals } from "./adjust.ts";
+import {
+  adjustedPairMm,
+  type ComparedGauge,
+  type Comparison,
+  crossValidatedPairMm,
+} from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { STANDING_CAUTIONS } from "./cautions.ts";
-import { bestMm, type CatchmentFigure, catchmentFigures, factorOf, isAtCap } from "./figures.ts";
+import { bestMm, type CatchmentFigure, catchmentFigures, isAtCap } from "./figures.ts";
 import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
 import type { UnitStore } from "./unit-store.ts";
@@ -38,29 +44,11 @@ export interface OutputSources {
   readonly draft: (file: string) => string;
 }
 
-/**
- * The adjusted total: the sum of the adjusted depths of the intervals as they are stored, in time order.
- */
-export function sumAdjusted(run: PreparedRun, store: UnitStore, factor: number): Float32Array {
-  const sum = new Float64Array(run.grid.nx * run.grid.ny).fill(Number.NaN);
-  for (const job of run.jobs) {
-    for (const { depthMm } of store.load(job).intervals) {
-      const adjusted = applyFactor(depthMm, factor);
-      for (let cell = 0; cell < sum.length; cell++) {
-        const value = adjusted[cell];
-        if (Number.isNaN(value)) continue;
-        sum[cell] = Number.isNaN(sum[cell]) ? value : sum[cell] + value;
-      }
-    }
-  }
-  return Float32Array.from(sum);
-}
-
 /** `totals.nc`: planes of the window, and the depth of each interval, written one at a time. */
 export async function writeTotals(sources: OutputSources): Promise<void> {
   const { run, total, comparison, store, adjustedTotalMm } = sources;
   const { planes } = total;
-  const factor = factorOf(comparison);
+  const { adjustment } = comparison;
   const V = TOTALS_VARIABLES;
   const variables: TotalsVariable[] = [
     V.radar_total,
@@ -89,9 +77,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
       source: `weather radar, rainreckon ${version()}`,
       status: run.loaded.plan.status,
       run_digest: run.runDigest,
-      adjustment: comparison.bias.applied
-        ? `mean-field bias, factor ${comparison.bias.factor.toPrecision(6)} (gauge/radar)`
-        : `none: ${comparison.bias.reason}`,
+      adjustment: adjustmentAttribute(adjustment),
       depths_not_given: `adjusted_total_standard_error: ${NO_TOTAL_STANDARD_ERROR}`,
     },
   });
@@ -107,18 +93,24 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     for (const [r, share] of planes.radarShare.entries()) file.writeShares("radar_share", r, share);
     let k = 0;
     for (const job of run.jobs) {
-      for (const { depthMm } of store.load(job).intervals) {
-        file.writeInterval("radar_depth", k, depthMm);
-        if (adjustedTotalMm !== undefined)
-          file.writeInterval("adjusted_depth", k, applyFactor(depthMm, factor));
-        k++;
-      }
+      for (const { depthMm } of store.load(job).intervals) file.writeInterval("radar_depth", k++, depthMm);
+    }
+    if (adjustment.applied) {
+      k = 0;
+      for (const depthMm of adjustedIntervals(run, total, adjustment, store))
+        file.writeInterval("adjusted_depth", k++, depthMm);
     }
   } catch (error) {
     file.abandon();
     throw error;
   }
   file.close();
+}
+
+function adjustmentAttribute(adjustment: Adjustment): string {
+  if (!adjustment.applied) return `none: ${adjustment.reason}`;
+  const { title, factor } = adjustment;
+  return Number.isNaN(factor) ? title : `${title}, factor ${factor.toPrecision(6)} (gauge/radar)`;
 }
 
 function lonLatOf({ grid, map }: PreparedRun): (index: number) => { lonDeg: number; latDeg: number } {
@@ -208,7 +200,7 @@ export async function writeCatchments(sources: OutputSources): Promise<void> {
       text("reason", (row) => reasonOf(row, minObserved)),
       number("radar_mm", 3, (row) => (whole(row) ? row.figure.radarMm : none)),
       number("adjusted_mm", 3, (row) => (whole(row) ? row.figure.adjustedMm : none)),
-      number("gauges_only_mm", 3, () => none),
+      number("gauges_only_mm", 3, ({ figure }) => figure.gaugesOnlyMm),
       number("p10_mm", 3, () => none),
       number("p90_mm", 3, () => none),
       number("observed_fraction", 4, ({ figure }) => figure.observedFraction),
@@ -235,46 +227,43 @@ export function reasonOf({ figure }: Pick<CatchmentFigure, "figure">, minObserve
 /** `pairs.csv`: by interval, by whole rain day, and over the window. */
 export async function writePairs(sources: OutputSources): Promise<void> {
   const { comparison } = sources;
-  const factor = factorOf(comparison);
-  const heldOut = new Map(
-    comparison.crossValidation?.gauges.map((gauge) => [
-      gaugeKey({ network: gauge.network, id: gauge.gaugeId }),
-      gauge.factor,
-    ]),
-  );
-  const all: Pair[] = [
+  const gauges = new Map(comparison.gauges.map((gauge) => [gaugeKey(gauge.gauge.series), gauge] as const));
+  const of = (pair: Pair): PairRow[] => {
+    const gauge = gauges.get(gaugeKey({ network: pair.network, id: pair.gaugeId }));
+    return gauge === undefined ? [] : [{ pair, gauge }];
+  };
+  const all: PairRow[] = [
     ...comparison.pairs,
     ...comparison.gauges.flatMap(({ rainDays }) => rainDays),
     ...comparison.gauges.map(({ whole }) => whole),
-  ];
-  const { text, number } = columnsOf<Pair>();
+  ].flatMap(of);
+  const { text, number } = columnsOf<PairRow>();
   await writeCsv(
     sources.draft("pairs.csv"),
     [
-      text("network", ({ network }) => network),
-      text("gauge_id", ({ gaugeId }) => gaugeId),
-      text("start", ({ startEpochMs }) => isoUtc(startEpochMs)),
-      text("end", ({ endEpochMs }) => isoUtc(endEpochMs)),
-      number("gauge_mm", 3, ({ gaugeMm }) => gaugeMm),
-      number("radar_mm", 3, ({ radarMm }) => radarMm),
-      number("adjusted_mm", 3, ({ radarMm }) => radarMm * factor),
-      // Of a gauge that shaped the factor: the factor of the others. Any other gauge never shaped it.
-      number(
-        "cross_validated_mm",
-        3,
-        ({ network, gaugeId, radarMm }) =>
-          radarMm * (heldOut.get(gaugeKey({ network, id: gaugeId })) ?? factor),
-      ),
-      text("radar_id", ({ radarId }) => radarId),
-      number("gauge_observed_fraction", 4, (pair) => pair.gaugeObservedFraction),
-      number("radar_observed_fraction", 4, (pair) => pair.radarObservedFraction),
-      number("range_km", 2, ({ rangeKm }) => rangeKm),
-      number("beam_height_asl_m", 0, ({ beamHeightAslM }) => beamHeightAslM),
-      text("used", ({ used }) => (used ? "yes" : "no")),
-      text("reason", ({ reason }) => reason),
+      text("network", ({ pair }) => pair.network),
+      text("gauge_id", ({ pair }) => pair.gaugeId),
+      text("start", ({ pair }) => isoUtc(pair.startEpochMs)),
+      text("end", ({ pair }) => isoUtc(pair.endEpochMs)),
+      number("gauge_mm", 3, ({ pair }) => pair.gaugeMm),
+      number("radar_mm", 3, ({ pair }) => pair.radarMm),
+      number("adjusted_mm", 3, ({ gauge, pair }) => adjustedPairMm(comparison, gauge, pair)),
+      number("cross_validated_mm", 3, ({ gauge, pair }) => crossValidatedPairMm(comparison, gauge, pair)),
+      text("radar_id", ({ pair }) => pair.radarId),
+      number("gauge_observed_fraction", 4, ({ pair }) => pair.gaugeObservedFraction),
+      number("radar_observed_fraction", 4, ({ pair }) => pair.radarObservedFraction),
+      number("range_km", 2, ({ pair }) => pair.rangeKm),
+      number("beam_height_asl_m", 0, ({ pair }) => pair.beamHeightAslM),
+      text("used", ({ pair }) => (pair.used ? "yes" : "no")),
+      text("reason", ({ pair }) => pair.reason),
     ],
     all,
   );
+}
+
+interface PairRow {
+  readonly pair: Pair;
+  readonly gauge: ComparedGauge;
 }
 
 export async function writeGauges(sources: OutputSources): Promise<void> {
@@ -302,24 +291,65 @@ export async function writeGauges(sources: OutputSources): Promise<void> {
 
 export async function writeScores(sources: OutputSources): Promise<void> {
   const { plan } = sources.run.loaded;
-  const { before, after } = sources.comparison;
+  const { before, after, choice } = sources.comparison;
   const document = scoresDocument({
     pairIntervalMs: durationMs(plan.pairs.interval),
     thresholdMm: plan.pairs.thresholdMm,
     bootstrap: plan.bootstrap,
     before,
     after,
+    ...(choice === undefined
+      ? {}
+      : {
+          methodChoice: {
+            rule: CHOICE_RULE,
+            chosen: choice.chosen,
+            outer: {
+              errorMm: choice.validation.errorMm,
+              meanErrorMm: choice.validation.meanErrorMm,
+              gaugeCount: choice.validation.gaugeCount,
+            },
+            candidates: choice.candidates.map((candidate) => ({
+              ...candidate,
+              title: METHOD_TITLES[candidate.name],
+              chosenInFolds: choice.chosenInFolds.get(candidate.name) ?? 0,
+            })),
+          },
+        }),
   });
   await writeJson(sources.draft("scores.json"), scoresSchema.parse(document) as JsonValue);
+}
+
+/** How the depths were adjusted, for people who have only the files. */
+function adjustmentLines({ adjustment, choice }: Comparison): string[] {
+  const lines: string[] = [];
+  if (!adjustment.applied) lines.push(`There are no adjusted depths: ${adjustment.reason}.`);
+  else if (adjustment.method === "mean-field-bias") {
+    lines.push(
+      `Adjusted depths are radar depths times one factor, ${adjustment.factor.toFixed(3)} (gauge/radar): the ratio of sums over the pairs of ${adjustment.gaugeCount} trusted gauges, constant in time.`,
+    );
+  } else {
+    lines.push(
+      `Adjusted depths are made by ${adjustment.title}, from ${adjustment.gaugeCount} trusted gauges.`,
+      adjustment.learned.kind === "factor"
+        ? "The factor is the same everywhere."
+        : "It works on the depth of the window; each cell keeps the radar's shape in time, and where the radar saw nothing the gauges' mean shape.",
+      ...adjustment.notes.map((note) => `In it: ${note}.`),
+    );
+  }
+  if (choice !== undefined) {
+    lines.push(
+      `The method was picked by cross-validation: ${CHOICE_RULE}. The doubts about gauges were not made anew in the folds.`,
+      "The error that is published comes from gauges that had no part in the choice; scores.json holds the table.",
+    );
+  }
+  return lines;
 }
 
 /** `README.txt`: how to read the files of a run. CSVs hold no comment lines, so this stands beside them. */
 export async function writeReadme(sources: OutputSources, files: readonly string[]): Promise<void> {
   const { run, comparison } = sources;
   const { plan } = run.loaded;
-  const adjustment = comparison.bias.applied
-    ? `Adjusted depths are radar depths times one factor, ${comparison.bias.factor.toFixed(3)} (gauge/radar): the ratio of sums over the pairs of ${comparison.bias.gaugeCount} trusted gauges, constant in time.`
-    : `There are no adjusted depths: ${comparison.bias.reason}.`;
   const lines = [
     displayText(plan.title),
     `Status: ${plan.status}. Run digest: ${run.runDigest}. Made by rainreckon ${version()}.`,
@@ -351,16 +381,18 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     '  cap_share           share of the depth that came from gates at the hail cap; "at cap" says that it is not 0',
     "  unseen_depth        rain that the radars could not have seen: over the time without rain, the depth that an echo just",
     "                      below detection at that range would have added; the most that may be missing for that, no estimate",
-    "  max_cell_mm         deepest cell of a catchment, over the window or in one step",
+    "  max_cell_mm         deepest cell of a catchment, over the window or in one step; empty in steps where the adjustment",
+    "                      changes from cell to cell",
+    "  gauges_only_mm      ordinary kriging of the trusted gauges without the radar, over the window; empty in other rows, and",
+    "                      where gauges or their rain are too few",
     "  ratio_db            10 log10(radar/gauge): positive is radar wetter than gauge",
     "  factor              gauge/radar: what radar depths are multiplied by",
     "  cross_validated_mm  the adjusted depth at a gauge that this gauge had no part in",
     "",
     "Adjustment",
-    `  ${adjustment}`,
+    ...adjustmentLines(comparison).map((line) => `  ${line}`),
     "",
     "Columns without a method yet, therefore empty",
-    "  gauges_only_mm      interpolation of gauges alone is not built",
     "  p10_mm, p90_mm      an error model of areal depths is not built",
     `  adjusted_total_standard_error is not in totals.nc: ${NO_TOTAL_STANDARD_ERROR}.`,
     "  The verdicts in gauges.csv are first doubts only (unit, spike, silence, impossible values).",

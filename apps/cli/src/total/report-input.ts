@@ -1,4 +1,5 @@
 import { type CellFractions, durationMs } from "@rainreckon/accumulation";
+import { CHOICE_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
 import { gaugeKey, RELATIONS } from "@rainreckon/core";
 import { displayText } from "@rainreckon/formats";
 import type {
@@ -18,16 +19,16 @@ import type { ManifestNotice } from "../manifest.ts";
 import type { PlanRadar } from "../plan/schema.ts";
 import { countText, lengthText } from "../ui/numbers.ts";
 import { version } from "../version.ts";
-import type { ComparedGauge, Comparison } from "./against-gauges.ts";
+import { type ComparedGauge, type Comparison, crossValidatedPairMm } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import { relationOf } from "./conversion.ts";
 import {
   type ArealFigure,
+  adjustedSteps,
   bestMm,
   districtFigure,
-  factorOf,
   headlineUnderRelations,
   isAtCap,
   windowFigure,
@@ -48,7 +49,7 @@ interface ReportSources {
 export function reportInput(sources: ReportSources): ReportInput {
   const { run, total, comparison, cautions } = sources;
   const { plan } = run.loaded;
-  const { bias, crossValidation } = comparison;
+  const { adjustment, choice } = comparison;
   const district = districtFigure(sources);
   const figure = (areal: ArealFigure, mm: number): DepthFigure => {
     const reason = reasonOf({ figure: areal }, plan.rain.minObserved);
@@ -70,21 +71,35 @@ export function reportInput(sources: ReportSources): ReportInput {
     headline: {
       place: run.catchments.length > 0 ? "The catchments together" : "The map",
       depth: figure(district, bestMm(district)),
-      basis: bias.applied ? "adjusted" : "radar",
+      basis: adjustment.applied ? "adjusted" : "radar",
     },
-    adjustment: bias.applied
-      ? { applied: true, method: "mean-field bias", factor: bias.factor, limited: bias.clipped }
-      : { applied: false, reason: bias.reason },
-    crossValidation:
-      crossValidation === undefined
-        ? { reason: bias.applied ? "not worked out" : `no adjustment: ${bias.reason}` }
-        : Number.isFinite(crossValidation.errorMm)
-          ? {
-              errorMm: crossValidation.errorMm,
-              errorPercent: crossValidation.errorPercent,
-              what: "root mean square error of window depths at gauges, each gauge left out in turn",
-            }
-          : { reason: "no gauge could be left out" },
+    adjustment: adjustment.applied
+      ? {
+          applied: true,
+          method: Number.isNaN(adjustment.factor)
+            ? `${adjustment.title}, over the whole place`
+            : adjustment.title,
+          factor: Number.isNaN(adjustment.factor)
+            ? district.adjustedMm / district.radarMm
+            : adjustment.factor,
+          limited: adjustment.unlimitedFactor !== undefined,
+        }
+      : { applied: false, reason: adjustment.reason },
+    crossValidation: crossValidationStatement(comparison),
+    ...(choice === undefined
+      ? {}
+      : {
+          methodChoice: {
+            rule: CHOICE_RULE,
+            chosen: METHOD_TITLES[choice.chosen],
+            outerErrorMm: choice.validation.errorMm,
+            candidates: choice.candidates.map(({ name, ...candidate }) => ({
+              ...candidate,
+              title: METHOD_TITLES[name],
+              chosenInFolds: choice.chosenInFolds.get(name) ?? 0,
+            })),
+          },
+        }),
     cautions,
     grid: run.grid,
     layers: layersOf(sources),
@@ -107,15 +122,14 @@ export function reportInput(sources: ReportSources): ReportInput {
         polygons: catchment.polygons,
         depth: figure(areal, bestMm(areal)),
         radar: figure(areal, areal.radarMm),
-        ...(bias.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
+        ...(adjustment.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
         maxCell: { ...figure(areal, areal.maxCellMm), atCap: peakAtCap(catchment.cells, total.sum) },
         areaKm2: catchment.areaKm2,
       };
     }),
     gaugeHyetographs: comparison.gauges.map((gauge, g) => gaugeHyetograph(gauge, g, sources)),
     catchmentHyetographs: run.catchments.map((catchment, a): Hyetograph => {
-      const factor = factorOf(comparison);
-      const radar = total.areas.depthMm[a];
+      const windowMm = windowFigure(catchment.cells, sources).adjustedMm;
       return {
         id: catchment.id,
         label: catchment.name,
@@ -123,8 +137,8 @@ export function reportInput(sources: ReportSources): ReportInput {
         stepMs: run.stepMs,
         sides: [
           {
-            role: bias.applied ? "adjusted" : "radar",
-            depthMm: bias.applied ? radar.map((mm) => mm * factor) : radar,
+            role: adjustment.applied ? "adjusted" : "radar",
+            depthMm: adjustment.applied ? adjustedSteps(a, windowMm, sources) : total.areas.depthMm[a],
             observedFraction: total.areas.observedFraction[a],
           },
         ],
@@ -159,6 +173,18 @@ function peakAtCap({ cells }: CellFractions, { depthMm, cappedMm }: AssembledRun
     if (depthMm[cell] > (deepest < 0 ? -1 : depthMm[deepest])) deepest = cell;
   }
   return deepest >= 0 && cappedMm[deepest] > 0;
+}
+
+function crossValidationStatement({ adjustment, choice }: Comparison): ReportInput["crossValidation"] {
+  if (!adjustment.applied) return { reason: `no adjustment: ${adjustment.reason}` };
+  const { errorMm, errorPercent } = adjustment.crossValidation;
+  if (!Number.isFinite(errorMm)) return { reason: "no gauge could be left out" };
+  const without = choice === undefined ? "" : ", from the choice of a method too";
+  return {
+    errorMm,
+    errorPercent,
+    what: `root mean square error of window depths at gauges, each gauge left out in turn${without}`,
+  };
 }
 
 function layersOf({ total, adjustedTotalMm }: ReportSources): MapLayer[] {
@@ -220,10 +246,6 @@ function layersOf({ total, adjustedTotalMm }: ReportSources): MapLayer[] {
 function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGauge {
   const { gauge, verdict, whole } = compared;
   const { series, station } = gauge;
-  const heldOut = comparison.crossValidation?.gauges.find(
-    (one) => one.network === series.network && one.gaugeId === series.id,
-  );
-  const factor = heldOut?.factor ?? factorOf(comparison);
   return {
     network: series.network,
     id: series.id,
@@ -233,7 +255,7 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
     role: whole.used ? "used" : verdict.verdict === "doubt" ? "doubted" : "left-out",
     gaugeMm: whole.gaugeMm,
     radarMm: whole.radarMm,
-    crossValidatedMm: whole.radarMm * factor,
+    crossValidatedMm: crossValidatedPairMm(comparison, compared, whole),
     commonFraction: whole.commonFraction,
     ...(whole.radarId === "" ? {} : { radarId: whole.radarId }),
     ...(Number.isNaN(whole.rangeKm) ? {} : { rangeKm: whole.rangeKm }),

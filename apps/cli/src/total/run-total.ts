@@ -11,22 +11,15 @@ import { counted } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { version } from "../version.ts";
+import { sumAdjusted } from "./adjust.ts";
 import { compareWithGauges } from "./against-gauges.ts";
 import { type AssembledRun, assemble } from "./assemble.ts";
 import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
-import {
-  type ArealFigure,
-  bestMm,
-  districtFigure,
-  factorOf,
-  headlineUnderRelations,
-  windowFigure,
-} from "./figures.ts";
+import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
 import {
   type OutputSources,
-  sumAdjusted,
   writeCatchments,
   writeGauges,
   writeMaps,
@@ -107,10 +100,10 @@ export async function runTotal(
   refuseUndecodable(planned, total);
   const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape, total.notices) };
   const comparison = compareWithGauges(run, total);
-  const adjustedTotalMm = comparison.bias.applied
-    ? sumAdjusted(run, store, comparison.bias.factor)
+  const adjustedTotalMm = comparison.adjustment.applied
+    ? sumAdjusted(run, total, comparison.adjustment, store)
     : undefined;
-  const district = districtFigure({ run, total, comparison });
+  const district = districtFigure({ run, total, comparison, adjustedTotalMm });
   const cautions = runCautions(run, total, comparison, district);
   const sources: OutputSources = {
     run,
@@ -178,7 +171,7 @@ function seconds(ms: number): number {
 }
 
 async function manifestOf(
-  { run, total, comparison, draft, cautions }: OutputSources,
+  { run, total, comparison, adjustedTotalMm, draft, cautions }: OutputSources,
   files: readonly string[],
   notices: readonly Manifest["notices"][number][],
   district: ArealFigure,
@@ -192,8 +185,8 @@ async function manifestOf(
   );
   const { plan, digest } = run.loaded;
   const known = (value: number): number | null => (Number.isFinite(value) ? value : null);
-  const factor = factorOf(comparison);
-  const sources = { run, total, comparison };
+  const { adjustment } = comparison;
+  const sources = { run, total, comparison, adjustedTotalMm };
   return {
     format: "rainreckon-manifest-1",
     version: version(),
@@ -231,10 +224,12 @@ async function manifestOf(
       districtAdjustedMm: known(district.adjustedMm),
       observedFraction: district.observedFraction,
       cappedFraction: district.cappedFraction,
-      factorGaugeOverRadar: known(factor),
-      adjustmentReason: comparison.bias.applied ? null : comparison.bias.reason,
-      crossValidatedErrorMm: known(comparison.crossValidation?.errorMm ?? Number.NaN),
-      crossValidatedErrorPercent: known(comparison.crossValidation?.errorPercent ?? Number.NaN),
+      factorGaugeOverRadar: known(adjustment.applied ? adjustment.factor : Number.NaN),
+      adjustmentReason: adjustment.applied ? null : adjustment.reason,
+      crossValidatedErrorMm: known(adjustment.applied ? adjustment.crossValidation.errorMm : Number.NaN),
+      crossValidatedErrorPercent: known(
+        adjustment.applied ? adjustment.crossValidation.errorPercent : Number.NaN,
+      ),
       underRelations: headlineUnderRelations(sources).map(({ name, mm, observedFraction }) => ({
         name,
         mm: known(mm),

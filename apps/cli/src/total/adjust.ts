@@ -1,0 +1,189 @@
+import { durationMs } from "@rainreckon/accumulation";
+import {
+  type CrossValidation,
+  chooseMethod,
+  fieldAdjuster,
+  type LearnedMethod,
+  learnMethod,
+  METHOD_TITLES,
+  type MethodChoice,
+  type MethodName,
+  type MethodSettings,
+  meanFieldBias,
+  meanRainShare,
+  type RainShare,
+  radarVariogram,
+  validateChoice,
+  validateMethod,
+  type WindowGauge,
+} from "@rainreckon/adjustment";
+import { cellCentre, type Pair } from "@rainreckon/core";
+import { geodesicInverse } from "@rainreckon/mosaic";
+import type { AssembledRun } from "./assemble.ts";
+import type { PreparedRun } from "./prepare.ts";
+import type { UnitStore } from "./unit-store.ts";
+
+/** How candidates did, and how well the choice among them meets gauges that had no part in it. */
+export interface ChosenMethod extends MethodChoice {
+  readonly chosenInFolds: ReadonlyMap<MethodName, number>;
+  readonly validation: CrossValidation;
+}
+
+interface AppliedAdjustment {
+  readonly applied: true;
+  readonly method: MethodName;
+  /** What people read: "mean-field bias". */
+  readonly title: string;
+  readonly gaugeCount: number;
+  /** The factor gauge/radar where it is one for all places and times; NaN where it is not. */
+  readonly factor: number;
+  /** For a mean-field bias that met a limit of the plan: what it would have been. */
+  readonly unlimitedFactor: number | undefined;
+  /** Fallbacks, in words. */
+  readonly notes: readonly string[];
+  readonly learned: LearnedMethod;
+  readonly share: RainShare;
+  readonly crossValidation: CrossValidation;
+}
+
+/** How a total is adjusted to its gauges, or why it is not. */
+export type Adjustment = AppliedAdjustment | { readonly applied: false; readonly reason: string };
+
+/** What adjusting came to. */
+export interface AdjustmentResult {
+  readonly adjustment: Adjustment;
+  /** Undefined where the plan names the method, or nothing could be chosen from. */
+  readonly choice: ChosenMethod | undefined;
+  /** Depth by the gauges alone at a place, mm; undefined where they do not allow it. */
+  readonly gaugesOnlyMm: ((xKm: number, yKm: number) => number) | undefined;
+}
+
+/**
+ * Adjusts by the plan's method, or by the one that cross-validation picks.
+ *
+ * The doubts about gauges are those of the whole run: they rest on each gauge's own readings and on medians
+ * over the others, and are not made anew in the folds.
+ *
+ * @param pairs - by interval; those of gauges that are not trusted are not used
+ * @param gauges - the trusted gauges of those pairs
+ */
+export function adjust(
+  run: PreparedRun,
+  total: AssembledRun,
+  pairs: readonly Pair[],
+  gauges: readonly WindowGauge[],
+): AdjustmentResult {
+  const { plan } = run.loaded;
+  const { method, minGauges, minGaugeSumMm, factorLimits } = plan.adjustment;
+  const refused = (reason: string): AdjustmentResult => ({
+    adjustment: { applied: false, reason },
+    choice: undefined,
+    gaugesOnlyMm: undefined,
+  });
+  // The floors are the same for all methods: too few gauges, or too little rain, to say anything by.
+  const floors = meanFieldBias(pairs, { minGauges, minGaugeSumMm, factorLimits });
+  if (!floors.applied) return refused(method === "none" ? "switched off in the plan" : floors.reason);
+  const settings = settingsOf(run, total);
+  const alone = learnMethod("gauges-alone", gauges, settings);
+  const gaugesOnlyMm =
+    alone.kind === "field" ? (xKm: number, yKm: number) => alone.depthMm(xKm, yKm, 0, Number.NaN) : undefined;
+  if (method === "none") return { ...refused("switched off in the plan"), gaugesOnlyMm };
+  const choice =
+    method === "by-cross-validation"
+      ? { ...chooseMethod(gauges, settings), ...validateChoice(gauges, settings) }
+      : undefined;
+  const name = choice?.chosen ?? (method === "by-cross-validation" ? "mean-field-bias" : method);
+  if (name === "none") {
+    const reason = "no method met held-out gauges better than the radar as it is";
+    return { adjustment: { applied: false, reason }, choice, gaugesOnlyMm };
+  }
+  const learned = learnMethod(name, gauges, settings);
+  const byBias = name === "mean-field-bias";
+  return {
+    adjustment: {
+      applied: true,
+      method: name,
+      title: METHOD_TITLES[name],
+      gaugeCount: gauges.length,
+      factor: learned.kind === "factor" && learned.constant ? learned.factorAt(0) : Number.NaN,
+      unlimitedFactor: byBias && floors.clipped ? floors.unlimitedFactor : undefined,
+      notes: learned.notes,
+      learned,
+      share: meanRainShare(gauges),
+      crossValidation: choice?.validation ?? validateMethod(name, gauges, settings),
+    },
+    choice,
+    gaugesOnlyMm,
+  };
+}
+
+function settingsOf(run: PreparedRun, total: AssembledRun): MethodSettings {
+  const { adjustment, pairs } = run.loaded.plan;
+  return {
+    factorLimits: adjustment.factorLimits,
+    thresholdMm: pairs.thresholdMm,
+    gaugeErrorShare: adjustment.gaugeErrorPercent / 100,
+    shape: adjustment.variogram,
+    radarVariogram: radarVariogram(run.grid, total.planes.totalMm, adjustment.variogram),
+    window: run.window,
+    pairIntervalMs: durationMs(pairs.interval),
+    kalman: adjustment.kalman,
+  };
+}
+
+/** Adjusted depths of the intervals, in time order, from what the units left on disk. */
+export function* adjustedIntervals(
+  run: PreparedRun,
+  total: AssembledRun,
+  adjustment: AppliedAdjustment,
+  store: UnitStore,
+): Generator<Float32Array> {
+  const adjuster = fieldAdjuster(adjustment.learned, {
+    grid: run.grid,
+    totalMm: total.planes.totalMm,
+    rangeKm: (cell) => rangeAt(run, total, cell),
+    share: adjustment.share,
+  });
+  let k = 0;
+  for (const job of run.jobs) {
+    for (const { depthMm } of store.load(job).intervals) {
+      yield adjuster.interval(run.intervals[k], depthMm);
+      k++;
+    }
+  }
+}
+
+/** The adjusted total: the sum in float64 of the adjusted depths of the intervals as they are stored. */
+export function sumAdjusted(
+  run: PreparedRun,
+  total: AssembledRun,
+  adjustment: AppliedAdjustment,
+  store: UnitStore,
+): Float32Array {
+  const sum = new Float64Array(run.grid.nx * run.grid.ny).fill(Number.NaN);
+  for (const adjusted of adjustedIntervals(run, total, adjustment, store)) {
+    for (let cell = 0; cell < sum.length; cell++) {
+      const value = adjusted[cell];
+      if (Number.isNaN(value)) continue;
+      sum[cell] = Number.isNaN(sum[cell]) ? value : sum[cell] + value;
+    }
+  }
+  return Float32Array.from(sum);
+}
+
+/** Index of the radar that speaks loudest in a cell; -1 where none does. */
+export function loudestRadar(total: AssembledRun, cell: number): number {
+  let loudest = -1;
+  for (const [r, share] of total.planes.radarShare.entries()) {
+    if (share[cell] > (total.planes.radarShare[loudest]?.[cell] ?? 0)) loudest = r;
+  }
+  return loudest;
+}
+
+function rangeAt(run: PreparedRun, total: AssembledRun, cell: number): number {
+  const site = run.shape.radars[loudestRadar(total, cell)]?.site;
+  if (site === undefined) return Number.NaN;
+  const { xM, yM } = cellCentre(run.grid, cell);
+  const [lonDeg, latDeg] = run.map.inverse(xM, yM);
+  return geodesicInverse(site, { lonDeg, latDeg }).distanceM / 1000;
+}

@@ -1,0 +1,91 @@
+import type { Interval } from "@rainreckon/core";
+import type { LearnedMethod } from "./methods.ts";
+import type { WindowGauge } from "./window-gauges.ts";
+
+/** What is asked of a place that has pairs, trusted or not. */
+export type PairedPlace = Pick<
+  WindowGauge,
+  "xKm" | "yKm" | "rangeKm" | "radarMm" | "radarTotalMm" | "coverage" | "readings"
+>;
+
+/** Share of the window's rain that fell in a span. Shares of spans that fill the window add up to 1. */
+export type RainShare = (span: Interval) => number;
+
+/**
+ * When the rain of the window fell, on average over gauges: what gives shape to rain that an additive method
+ * puts where the radar saw none at all. Rain is taken to be even within one reading.
+ */
+export function meanRainShare(gauges: readonly WindowGauge[]): RainShare {
+  const byInterval = new Map<number, { startEpochMs: number; endEpochMs: number; gaugeMm: number }>();
+  let sumMm = 0;
+  for (const { startEpochMs, endEpochMs, gaugeMm } of gauges.flatMap(({ readings }) => readings)) {
+    const sum = byInterval.get(startEpochMs);
+    if (sum === undefined) byInterval.set(startEpochMs, { startEpochMs, endEpochMs, gaugeMm });
+    else sum.gaugeMm += gaugeMm;
+    sumMm += gaugeMm;
+  }
+  const intervals = [...byInterval.values()];
+  return (span) => {
+    let inside = 0;
+    for (const { startEpochMs, endEpochMs, gaugeMm } of intervals) {
+      const commonMs = Math.min(endEpochMs, span.endEpochMs) - Math.max(startEpochMs, span.startEpochMs);
+      if (commonMs > 0) inside += (gaugeMm * commonMs) / (endEpochMs - startEpochMs);
+    }
+    return sumMm > 0 ? inside / sumMm : 0;
+  };
+}
+
+/** Depth that a method gives at a gauge over the time of its pairs, mm. */
+export function pairedDepthAt(learned: LearnedMethod, place: PairedPlace): number {
+  if (learned.kind === "field") {
+    const windowMm = fieldAt(learned, place);
+    const { radarMm, radarTotalMm, coverage } = place;
+    return windowMm * (radarTotalMm > 0 ? radarMm / radarTotalMm : coverage);
+  }
+  return place.readings.reduce(
+    (sum, reading) => sum + reading.radarMm * learned.factorAt(middle(reading)),
+    0,
+  );
+}
+
+function fieldAt(
+  learned: Extract<LearnedMethod, { kind: "field" }>,
+  { xKm, yKm, radarTotalMm, rangeKm }: PairedPlace,
+): number {
+  return learned.depthMm(xKm, yKm, radarTotalMm, rangeKm);
+}
+
+/**
+ * Depth of a span that a method gives at a gauge, mm: the radar's shape in time is kept. Where the radar saw
+ * nothing all window long, the shape is that of the gauges' mean.
+ *
+ * @param radarMm - radar depth of the span at the gauge; NaN gives NaN
+ */
+export function spanDepthAt(
+  learned: LearnedMethod,
+  place: PairedPlace,
+  span: Interval,
+  radarMm: number,
+  share: RainShare,
+): number {
+  if (Number.isNaN(radarMm)) return Number.NaN;
+  if (learned.kind === "field") {
+    const windowMm = fieldAt(learned, place);
+    return place.radarTotalMm > 0 ? (radarMm * windowMm) / place.radarTotalMm : windowMm * share(span);
+  }
+  // Over several intervals: the factors weighted by what the radar saw in each.
+  const inside = place.readings.filter(
+    ({ startEpochMs, endEpochMs }) => startEpochMs >= span.startEpochMs && endEpochMs <= span.endEpochMs,
+  );
+  const seenMm = inside.reduce((sum, reading) => sum + reading.radarMm, 0);
+  if (learned.constant || !(seenMm > 0)) return radarMm * learned.factorAt(middle(span));
+  const adjustedMm = inside.reduce(
+    (sum, reading) => sum + reading.radarMm * learned.factorAt(middle(reading)),
+    0,
+  );
+  return (radarMm * adjustedMm) / seenMm;
+}
+
+function middle({ startEpochMs, endEpochMs }: Interval): number {
+  return (startEpochMs + endEpochMs) / 2;
+}
