@@ -225,6 +225,7 @@ async function manifestOf(
       observedFraction: district.observedFraction,
       cappedFraction: district.cappedFraction,
       factorGaugeOverRadar: known(adjustment.applied ? adjustment.factor : Number.NaN),
+      adjustmentMethod: adjustment.applied ? adjustment.title : null,
       adjustmentReason: adjustment.applied ? null : adjustment.reason,
       crossValidatedErrorMm: known(adjustment.applied ? adjustment.crossValidation.errorMm : Number.NaN),
       crossValidatedErrorPercent: known(

@@ -38,6 +38,10 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
       ? ""
       : `; error at gauges left out in turn ${fixedDecimals(headline.crossValidatedErrorMm as number, 1)} mm (${fixedDecimals(headline.crossValidatedErrorPercent as number, 0)} %)`;
   const relations = headline.underRelations as { name: string; mm: number | null }[];
+  const factor =
+    headline.factorGaugeOverRadar === null
+      ? ""
+      : ` ${fixedDecimals(headline.factorGaugeOverRadar as number, 2)} (gauge/radar)`;
   return [
     terminal.strong(displayText(run.loaded.plan.title)),
     `  ${utcText(startEpochMs)} to ${utcText(endEpochMs)}${local}`,
@@ -56,10 +60,10 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     counts.gauges === 0
       ? "gauges: none"
       : `gauges: ${counts.gaugesUsed} used, ${counts.gaugesDoubted} doubted, of ${counts.gauges}`,
-    headline.factorGaugeOverRadar === null
+    headline.adjustmentMethod === null
       ? `not adjusted: ${headline.adjustmentReason}`
-      : `mean-field bias ${fixedDecimals(headline.factorGaugeOverRadar as number, 2)} (gauge/radar)${error}`,
-    `${headline.factorGaugeOverRadar === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${depthText(mm)} mm`).join(", ")}`,
+      : `${headline.adjustmentMethod}${factor}${error}`,
+    `${headline.adjustmentMethod === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${depthText(mm)} mm`).join(", ")}`,
     "",
     ...(headline.cautions as string[]).slice(0, 3).map((caution) => `! ${caution}`),
     "",
