@@ -1,6 +1,6 @@
 import { type Grid, InputError, type Notice } from "@rainreckon/core";
-import { openScan } from "@rainreckon/formats";
 import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
+import { openScans } from "../scans/scan-files.ts";
 import type { JobRadar, JobRound } from "../total/job.ts";
 import { lookupShelf } from "../total/lookup-shelf.ts";
 import { placesOf } from "../total/places-of.ts";
@@ -25,9 +25,10 @@ export function rateLayer(
   const rates = new RateMaker(radar);
   let spoken = 0;
   let gatesCapped = 0;
-  for (const { path, name, index, midEpochMs } of round.sweeps) {
+  for (const volume of round.sweeps) {
+    const { path, name, index, midEpochMs } = volume;
     try {
-      const file = openScan(path, placesOf(radar));
+      const file = openScans(volume, placesOf(radar));
       try {
         const lookup = lookupShelf(grid, radar).forSweep(file.readSweep(index, []));
         if (!builder.canFill(lookup)) continue;

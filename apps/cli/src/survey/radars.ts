@@ -28,6 +28,8 @@ export interface SeenSweep {
   /** SHA-256 of the file, where it had to be told from another. */
   readonly contentHash?: string;
   readonly format: string;
+  /** Every file of its volume, where that came in chunks. */
+  readonly chunks?: readonly string[];
 }
 
 export interface RadarFindings {
@@ -75,6 +77,7 @@ function radarFinding(id: string, sent: readonly SeenSweep[], onNotice: (notice:
   const sizes = volumes.map((volume) => volume.sweeps.length);
   const quantities = countEach(headers.flatMap((header) => header.quantities));
   const { name } = first.site;
+  const files = [...new Set(sent.flatMap(({ header, chunks }) => chunks ?? [header.origin.path]))].sort();
   const radar: RadarFinding = {
     id,
     ...(name === undefined ? {} : { name }),
@@ -84,7 +87,7 @@ function radarFinding(id: string, sent: readonly SeenSweep[], onNotice: (notice:
     ...(wavelengthM === undefined ? {} : { wavelengthCm: Number((wavelengthM * 100).toFixed(3)) }),
     ...(band === undefined ? {} : { band }),
     ...(beamWidthDeg === undefined ? {} : { beamWidthDeg: Number(beamWidthDeg.toFixed(3)) }),
-    fileCount: new Set(sent.map(({ header }) => header.origin.path)).size,
+    fileCount: files.length,
     sweepCount: headers.length,
     roundCount: volumes.length,
     sweepsPerRound: { least: Math.min(...sizes), most: Math.max(...sizes) },
@@ -100,7 +103,7 @@ function radarFinding(id: string, sent: readonly SeenSweep[], onNotice: (notice:
       otherFile: dropped.filter(({ content }) => content !== "same").length,
     },
     formats: [...new Set(sent.map(({ format }) => format))].sort(),
-    files: [...new Set(sent.map(({ header }) => header.origin.path))].sort(),
+    files,
   };
   tellFaults(radar, headers, onNotice);
   if (doppler.size > 0) {

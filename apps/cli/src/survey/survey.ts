@@ -1,4 +1,4 @@
-import { readFileSync } from "node:fs";
+import { existsSync, readFileSync } from "node:fs";
 import path from "node:path";
 import { setImmediate } from "node:timers/promises";
 import { InputError, type Interval, type Notice } from "@rainreckon/core";
@@ -6,7 +6,6 @@ import {
   formatsReady,
   type MapGuess,
   openGridded,
-  openScan,
   recogniseScan,
   sniffMap,
   sniffTable,
@@ -14,6 +13,7 @@ import {
 import { type Projection, projection } from "@rainreckon/mosaic";
 import { sha256Hex } from "../digest.ts";
 import { shapefileParts } from "../plan/shapefile-parts.ts";
+import { joinChunks, openScans, type ScanPaths } from "../scans/scan-files.ts";
 import { type LeftOutLog, leftOutLog } from "../ui/left-out.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
@@ -117,15 +117,17 @@ async function lookAt(files: readonly FoundFile[], terminal: Terminal, wrong: Le
   const shapefiles = new Set(
     files.filter(({ path: name }) => /\.shp$/i.test(name)).map(({ path: name }) => name.slice(0, -4)),
   );
-  for (const [index, file] of files.entries()) {
+  const parts = new Set(files.map(({ path: name }) => name));
+  const volumes = joinChunks([...parts], {}, (notice) => wrong.add("chunks", notice));
+  for (const [index, file] of volumes.entries()) {
     try {
       if (belongsToShapefile(file.path, shapefiles)) continue;
-      await lookAtFile(file.path, seen, wrong);
+      await lookAtFile(file, seen, wrong);
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
       wrong.add("file left out", error);
     } finally {
-      progress.advance();
+      progress.advance(file.chunks?.length ?? 1);
     }
     // Opening scans never waits, so an interrupt would go unheard without this.
     if (index % FILES_BETWEEN_BREATHS === 0) await setImmediate();
@@ -140,10 +142,11 @@ function belongsToShapefile(file: string, shapefiles: ReadonlySet<string>): bool
   return part !== undefined && shapefiles.has(file.slice(0, -part.length));
 }
 
-async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<void> {
+async function lookAtFile(volume: ScanPaths, seen: Seen, wrong: LeftOutLog): Promise<void> {
+  const { path: file } = volume;
   if (recogniseScan(file) !== undefined) {
     try {
-      lookAtScan(file, seen, wrong);
+      lookAtScan(volume, seen, wrong);
     } catch (error) {
       // HDF5 and NetCDF may hold a grid just as well; what is wrong with the file as a scan is moot then.
       if (!(error instanceof InputError) || !(await lookAtGrid(file, seen, wrong))) throw error;
@@ -173,10 +176,12 @@ async function lookAtFile(file: string, seen: Seen, wrong: LeftOutLog): Promise<
   }
 }
 
-function lookAtScan(file: string, seen: Seen, wrong: LeftOutLog): void {
-  const scan = openScan(file);
+function lookAtScan(volume: ScanPaths, seen: Seen, wrong: LeftOutLog): void {
+  const scan = openScans(volume);
   try {
-    for (const header of scan.headers) seen.sweeps.push({ header, format: scan.format });
+    const { chunks } = volume;
+    for (const header of scan.headers)
+      seen.sweeps.push({ header, format: scan.format, ...(chunks === undefined ? {} : { chunks }) });
     for (const fault of scan.leftOut) wrong.add("sweep left out", fault);
     for (const remark of scan.remarks) wrong.add("scan", remark);
   } finally {
@@ -184,10 +189,24 @@ function lookAtScan(file: string, seen: Seen, wrong: LeftOutLog): void {
   }
 }
 
+/** Totals are never made of totals, even where a run lies among its own input. */
+function isOwnOutput(file: string): boolean {
+  const isNamed = ["totals.nc", "radar_total.tif", "adjusted_total.tif", "rain_rate.tif"].includes(
+    path.basename(file),
+  );
+  const beside = ["manifest.json", "rate.json"].map((name) => path.join(path.dirname(file), name));
+  return isNamed && beside.some((name) => existsSync(name));
+}
+
 /** @returns false where the file holds no gridded rain or reflectivity */
 async function lookAtGrid(file: string, seen: Seen, wrong: LeftOutLog): Promise<boolean> {
   const grid = await openGridded(file);
   if (grid === undefined) return false;
+  if (isOwnOutput(file)) {
+    grid.close();
+    wrong.add("file left out", { what: "a result of an earlier run", where: file, fix: "nothing to do" });
+    return true;
+  }
   try {
     seen.grids.push(...gridFindings(file, grid));
     for (const fault of grid.leftOut) wrong.add("layer left out", fault);

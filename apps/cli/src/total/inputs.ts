@@ -11,11 +11,13 @@ import {
   type SweepHeader,
   type Volume,
 } from "@rainreckon/core";
-import { formatsReady, openScan, sha256OfFile } from "@rainreckon/formats";
+import { formatsReady, sha256OfFile } from "@rainreckon/formats";
 import { geodesicInverse } from "@rainreckon/mosaic";
+import { sha256Hex } from "../digest.ts";
 import type { ManifestInput } from "../manifest.ts";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { PlanRadar } from "../plan/schema.ts";
+import { joinChunks, openScans, type ScanPaths } from "../scans/scan-files.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { counted, countText } from "../ui/numbers.ts";
 import type { Progress } from "../ui/progress.ts";
@@ -42,8 +44,14 @@ export async function hashFile(folder: string, file: string): Promise<HashedFile
   }
 }
 
+interface ScanUse {
+  readonly file: HashedFile;
+  used: number;
+  readonly reasons: string[];
+}
+
 /** A sweep of a radar that takes part in the run, with where it lies. */
-export interface IndexedSweep {
+export interface IndexedSweep extends ScanPaths {
   readonly header: SweepHeader;
   readonly file: HashedFile;
   /** Index among the headers of its file. */
@@ -82,8 +90,11 @@ export async function indexScans(
 ): Promise<RadarInput[]> {
   await formatsReady();
   const bySite = new Map<string, IndexedSweep[]>();
-  const uses = new Map<string, { file: HashedFile; used: number; reasons: string[] }>();
+  const uses = new Map<string, ScanUse>();
   const contents = new Map<string, string>();
+  const byPath = new Map<string, HashedFile>();
+  /** All chunks of a volume, by the name of the one that stands for it. */
+  const chunksOf = new Map<string, readonly HashedFile[]>();
   const places = new Map(
     loaded.plan.radars.flatMap(({ id, site }) => (site === undefined ? [] : [[id, site] as const])),
   );
@@ -108,32 +119,45 @@ export async function indexScans(
       continue;
     }
     contents.set(file.sha256, file.name);
-    const entry = { file, used: 0, reasons: [] as string[] };
-    uses.set(file.name, entry);
+    uses.set(file.name, { file, used: 0, reasons: [] });
+    byPath.set(scan, file);
+  }
+  const named = (where: string) => {
+    for (const [scan, file] of byPath) if (where.includes(scan)) return where.replace(scan, () => file.name);
+    return where;
+  };
+  const volumes = joinChunks([...byPath.keys()], { places }, (notice) =>
+    log.add("chunks", { ...notice, where: named(notice.where) }),
+  );
+  for (const volume of volumes) {
+    const own = (volume.chunks ?? [volume.path]).map((scan) => byPath.get(scan) as HashedFile);
+    const tell = (reason: string) => {
+      for (const { name } of own) uses.get(name)?.reasons.push(reason);
+    };
     try {
-      const opened = openScan(scan, { places });
+      const opened = openScans(volume, { places });
       try {
-        for (const remark of opened.remarks) {
-          log.add("assumed", { ...remark, where: remark.where.replace(scan, file.name) });
-        }
+        for (const remark of opened.remarks) log.add("assumed", { ...remark, where: named(remark.where) });
         for (const fault of opened.leftOut) {
-          const where = fault.where.replace(scan, file.name);
-          log.add("sweep left out", { what: fault.what, where, fix: fault.fix });
-          entry.reasons.push(fault.what);
+          log.add("sweep left out", { what: fault.what, where: named(fault.where), fix: fault.fix });
+          tell(fault.what);
         }
         for (const [index, header] of opened.headers.entries()) {
           const sweeps = bySite.get(header.site.id) ?? [];
           bySite.set(header.site.id, sweeps);
-          sweeps.push({ header, file, index, contentHash: file.sha256 });
+          const file = byPath.get(header.origin.path) ?? own[0];
+          const contentHash =
+            volume.chunks === undefined ? file.sha256 : sha256Hex(own.map(({ sha256 }) => sha256).join());
+          sweeps.push({ header, file, index, contentHash, ...volume });
+          if (volume.chunks !== undefined) chunksOf.set(file.name, own);
         }
       } finally {
         opened.close();
       }
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
-      const where = error.where.replace(scan, file.name);
-      log.add("scan left out", { what: error.what, where, fix: error.fix });
-      entry.reasons.push(error.what);
+      log.add("scan left out", { what: error.what, where: named(error.where), fix: error.fix });
+      tell(error.what);
     }
   }
   const inputs = loaded.plan.radars
@@ -152,6 +176,11 @@ export async function indexScans(
       });
     }
     for (const { file } of sweeps) uses.get(file.name)?.reasons.push(`radar ${id} ${why}`);
+  }
+  for (const [name, chunks] of chunksOf) {
+    for (const chunk of chunks) {
+      if (chunk.name !== name) (uses.get(chunk.name) as ScanUse).used += uses.get(name)?.used ?? 0;
+    }
   }
   for (const { file, used, reasons } of uses.values()) {
     const use = used > 0 ? "used" : "left out";

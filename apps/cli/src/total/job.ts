@@ -2,11 +2,11 @@ import type { CellFractions, IntervalFields, TimeRules } from "@rainreckon/accum
 import type { CapSetting, Grid, Interval, Notice, RadarSite, ZrRelation } from "@rainreckon/core";
 import type { GriddedOptions, GriddedQuantity } from "@rainreckon/formats";
 import type { LookupRules } from "@rainreckon/mosaic";
+import type { ScanPaths } from "../scans/scan-files.ts";
 
 /** A sweep as a unit of work needs it: where it is, and when it speaks. */
-export interface JobSweep {
-  /** Absolute path, and the name that people see. */
-  readonly path: string;
+export interface JobSweep extends ScanPaths {
+  /** What people see in place of the absolute path. */
   readonly name: string;
   /** Index among the headers of its file. */
   readonly index: number;

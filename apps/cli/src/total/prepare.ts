@@ -238,9 +238,10 @@ export function jobRadar(
       .map((header) => {
         const indexed = sweepOf.get(header);
         if (indexed === undefined) throw new RangeError("a round holds a sweep that was not indexed");
-        const { file, index } = indexed;
+        const { file, index, path, chunks } = indexed;
         return {
-          path: file.path,
+          path,
+          ...(chunks === undefined ? {} : { chunks }),
           name: file.name,
           index,
           elevationDeg: header.elevationDeg,

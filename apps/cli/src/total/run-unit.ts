@@ -1,8 +1,9 @@
 import { setImmediate as breathe } from "node:timers/promises";
 import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@rainreckon/accumulation";
 import { InputError, type ZrRelation } from "@rainreckon/core";
-import { formatsReady, openScan } from "@rainreckon/formats";
+import { formatsReady } from "@rainreckon/formats";
 import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
+import { openScans } from "../scans/scan-files.ts";
 import { GridFeed } from "./grid-feed.ts";
 import {
   type AreaStepSeries,
@@ -84,7 +85,7 @@ class RadarFeed {
   }
 
   #addSweep(builder: RateLayerBuilder, sweep: JobSweep, higher: boolean, counts: UnitCounts): number {
-    const file = openScan(sweep.path, placesOf(this.#radar));
+    const file = openScans(sweep, placesOf(this.#radar));
     try {
       const shape = file.readSweep(sweep.index, []);
       const lookup = lookupShelf(this.#shape.grid, this.#radar).forSweep(shape);

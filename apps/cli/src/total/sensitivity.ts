@@ -1,5 +1,6 @@
 import { InputError, LowestEcho, type Notice, scansDisprove } from "@rainreckon/core";
-import { formatsReady, openScan } from "@rainreckon/formats";
+import { formatsReady } from "@rainreckon/formats";
+import { openScans } from "../scans/scan-files.ts";
 import type { RadarInput } from "./inputs.ts";
 import type { JobSensitivity } from "./job.ts";
 import { placesOf } from "./places-of.ts";
@@ -50,7 +51,7 @@ function measure({ radar, rounds, sweepOf }: RadarInput) {
     const indexed = sweepOf.get(lowest);
     if (indexed === undefined) throw new RangeError("a round holds a sweep that was not indexed");
     try {
-      const scan = openScan(indexed.file.path, placesOf(lowest));
+      const scan = openScans(indexed, placesOf(lowest));
       try {
         const moment = scan.readSweep(indexed.index, [radar.moment]).moments.get(radar.moment);
         if (moment !== undefined) echo.add(lowest, moment, `${indexed.file.name}, ${lowest.origin.dataset}`);
