@@ -29,6 +29,7 @@ export function registerSurvey(program: Command): void {
     else terminal.result(surveyText(findings, terminal));
     const nothing =
       findings.radars.length +
+        findings.grids.length +
         findings.gauges.length +
         findings.stations.length +
         findings.catchments.length ===
@@ -37,7 +38,7 @@ export function registerSurvey(program: Command): void {
       throw new InputError(
         "nothing here can be read",
         paths.join(", "),
-        "name folders with scans (ODIM_H5, CfRadial, Archive Level II), gauge tables or maps of catchments",
+        "name folders with scans (ODIM_H5, CfRadial, Archive Level II) or gridded rain, gauge tables or maps of catchments",
         {
           kind: "no-input",
         },

@@ -30,6 +30,14 @@ export async function makeRateMap(planPath: string, out: string, terminal: Termi
   for (const notice of loaded.notices) log.add("file not found", notice);
   const { grid } = loaded.plan;
   const map = gridMap(grid);
+  if (!loaded.plan.radars.some(({ use }) => use)) {
+    throw new InputError(
+      "a map of rain rate is made from scans, and the plan uses no radar",
+      `${planPath}, radars`,
+      "leave --rate out for a total of the gridded rain",
+      { kind: "no-input" },
+    );
+  }
   const folder = freshFolder(out);
 
   const inputs: ManifestInput[] = [];
