@@ -1,4 +1,5 @@
 // The demo: an invented storm, its plan, and the main job on it. Run by `npm run demo` at the root, after a build.
+// With a folder as argument, everything is made there instead of in .demo.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdirSync, readFileSync, renameSync, rmSync, writeFileSync } from "node:fs";
 import path from "node:path";
@@ -6,7 +7,7 @@ import { fileURLToPath } from "node:url";
 
 const root = fileURLToPath(new URL("../../..", import.meta.url));
 const shown = (target) => path.relative(process.cwd(), target) || ".";
-const folder = path.join(root, ".demo");
+const folder = path.resolve(process.argv[2] ?? path.join(root, ".demo"));
 const storm = path.join(folder, "storm");
 const program = path.join(root, "apps/cli/dist/main.js");
 const generator = path.join(root, "test-data/dist/storm.mjs");
@@ -14,7 +15,6 @@ const generator = path.join(root, "test-data/dist/storm.mjs");
 function run(script, args, stdout = "inherit") {
   const { status } = spawnSync(process.execPath, [script, ...args], {
     stdio: ["inherit", stdout, "inherit"],
-    cwd: root,
   });
   if (status !== 0) process.exit(status ?? 1);
 }
