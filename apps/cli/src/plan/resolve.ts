@@ -7,7 +7,8 @@ import { glob, isDynamicPattern } from "tinyglobby";
  * Files that a plan's paths and globs stand for, as absolute paths in code-unit order, each once.
  *
  * A path that names an existing file is taken at its word, even where it holds characters that a glob
- * would read otherwise. Links to folders are not followed. What matches nothing goes to `onNotice`.
+ * would read otherwise. A link that the plan itself names is followed, one met while searching is not. What
+ * matches nothing goes to `onNotice`.
  *
  * @param folder - what relative paths start from: the plan's own folder
  */
@@ -23,14 +24,7 @@ export async function resolveFiles(
       found.add(literal);
       continue;
     }
-    const matches = isDynamicPattern(pattern)
-      ? await glob(pattern, {
-          cwd: folder,
-          absolute: true,
-          followSymbolicLinks: false,
-          expandDirectories: false,
-        })
-      : [];
+    const matches = isDynamicPattern(pattern) ? await search(pattern, folder) : [];
     if (matches.length === 0) {
       onNotice({
         what: "no file matches",
@@ -41,6 +35,19 @@ export async function resolveFiles(
     for (const match of matches) found.add(path.resolve(match));
   }
   return [...found].sort((a, b) => (a < b ? -1 : 1));
+}
+
+/** Files that match a glob. Its plain leading folders are gone to first, so that a link among them is no search. */
+async function search(pattern: string, folder: string): Promise<string[]> {
+  const segments = pattern.split("/");
+  const first = segments.findIndex((segment) => isDynamicPattern(segment));
+  const named = segments.slice(0, first).join("/").replace(/\\(.)/g, "$1");
+  return await glob(segments.slice(first).join("/"), {
+    cwd: path.resolve(folder, pattern.startsWith("/") ? `/${named}` : named),
+    absolute: true,
+    followSymbolicLinks: false,
+    expandDirectories: false,
+  });
 }
 
 function isFile(candidate: string): boolean {
