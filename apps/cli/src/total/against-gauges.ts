@@ -36,8 +36,6 @@ export interface ComparedGauge {
   readonly place: PairedPlace;
   /** What the other gauges make of it; undefined where there is no adjustment or it had no part in one. */
   readonly heldOut: HeldOutGauge | undefined;
-  /** Window depth of the cell among the 3 × 3 that comes closest: a diagnostic of displacement, never a score. */
-  readonly closestOf3x3Mm: number;
 }
 
 /** What comparing with the gauges came to. */
@@ -131,11 +129,9 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
         readings: [],
       },
       heldOut: heldOut.get(gaugeKey(gauge.series)),
-      verdict: verdicts[g],
+      verdict: withClosestCell(verdicts[g], whole, run, total, gauge),
       whole: leaveOut([whole], reasons)[0],
       rainDays: leaveOut(ofDays, reasons),
-      closestOf3x3Mm:
-        closestOf3x3(total.planes.totalMm, run.grid, gauge.cell, whole.gaugeMm)?.valueMm ?? Number.NaN,
     })),
     ...result,
     pairs,
@@ -146,6 +142,25 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
       : { reason: `no adjustment: ${adjustment.reason}` },
     splitMm,
   };
+}
+
+/**
+ * Adds to the evidence which of the 3 × 3 cells comes closest to the gauge: a sign of rain that drifted or of a
+ * position that is off. It picks by the answer, so it never enters a score. Said only over a window that both
+ * sides saw whole, since the cells are known for the whole window only.
+ */
+function withClosestCell(
+  verdict: GaugeVerdict,
+  whole: Pair,
+  run: PreparedRun,
+  total: AssembledRun,
+  { cell }: GaugeInput,
+): GaugeVerdict {
+  if (!(whole.commonFraction > 0.99)) return verdict;
+  const closest = closestOf3x3(total.planes.totalMm, run.grid, cell, whole.gaugeMm);
+  if (closest === undefined || closest.index === cell) return verdict;
+  const words = `Of the 3 × 3 cells around it, the closest has ${closest.valueMm.toFixed(1)} mm (a sign of displacement, no score).`;
+  return { ...verdict, evidence: `${verdict.evidence} ${words}` };
 }
 
 /** Adjusted depth of a pair at its gauge, mm; NaN where there is no adjustment. */
