@@ -63,6 +63,20 @@ export {
   waterOfEqualDropsGPerM3,
   zOfEqualDropsMm6PerM3,
 } from "./drop-sizes.ts";
+export {
+  addEffect,
+  ECHO_MOMENTS,
+  EFFECTS,
+  type Effect,
+  MARKS,
+  type Mark,
+  markBit,
+  type PolarEcho,
+  polarEcho,
+  SCREENS,
+  type Screen,
+  screenBit,
+} from "./echo/polar-echo.ts";
 export { errorFunction } from "./error-function.ts";
 export {
   ATLAS_SRIVASTAVA_SEKHON_1973,
