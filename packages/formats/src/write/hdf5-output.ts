@@ -6,9 +6,11 @@ import { withoutControlCharacters } from "./text.ts";
 
 /** Values as they lie in memory, little-endian, with the type that the file gives them. */
 export type SlabValues = Float32Array | Float64Array | Uint8Array;
+/** Values of a dataset that is written in one piece. */
+export type WholeValues = SlabValues | Uint16Array | Int32Array;
 
 /** Element types by the names that the library uses; "S1" is one byte of text. */
-export type ElementType = "<f" | "<d" | "<i" | "S1";
+export type ElementType = "<f" | "<d" | "<i" | "<B" | "<H" | "S1";
 
 export interface DatasetShape {
   readonly type: ElementType;
@@ -64,7 +66,7 @@ export class Hdf5Output {
    * Make a dataset: at once from its values, or, where `chunks` is given, empty until
    * {@link writeSlab} fills it, so that it may be of any size.
    */
-  createDataset(name: string, shaped: DatasetShape, values?: SlabValues | Int32Array): void {
+  createDataset(name: string, shaped: DatasetShape, values?: WholeValues): void {
     const { type, shape, chunks } = shaped;
     if ((chunks === undefined) === (values === undefined)) throw new RangeError(`${name}: values or chunks`);
     this.#run(() => {

@@ -1,0 +1,1 @@
+export { type LearnedArray, type LearnedValue, readLearned, writeLearned } from "./learned-file.ts";
