@@ -62,6 +62,7 @@ function dryHour(
     heightMMs: zeros(),
     shareMs: Array.from({ length: radars }, () => zeros().fill(HOUR / radars)),
     variantMm: [],
+    companions: [],
   };
   change(step);
   return step;

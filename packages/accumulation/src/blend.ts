@@ -1,6 +1,12 @@
 import type { Interval } from "@rainreckon/core";
 import type { RateLayer } from "@rainreckon/mosaic";
-import { type RadarIntegrator, type RadarStep, type Stretch, stretchDepthMm } from "./integrate.ts";
+import {
+  type FieldShape,
+  type RadarIntegrator,
+  type RadarStep,
+  type Stretch,
+  stretchDepthMm,
+} from "./integrate.ts";
 
 /** Time that may be missing from a step before it counts as partly observed: rounding of float32 milliseconds. */
 const FULL_SLACK_MS = 2;
@@ -19,6 +25,11 @@ export interface BlendedStep {
   readonly shareMs: readonly Float64Array[];
   /** Shape [variants][headline cells]. */
   readonly variantMm: readonly Float64Array[];
+  /**
+   * Shape [companions][cells], undefined where 0 everywhere. By depth: millimetres times the value; by time: hours
+   * times the value, both by the shares of the radars. Tolls: millimetres, those of all radars together.
+   */
+  readonly companions: (Float64Array | undefined)[];
 }
 
 /** What one radar adds at one cell of a step: depth, the time it speaks for, and parts of the two. */
@@ -49,7 +60,7 @@ export function blendStep(
   step: Interval,
   stepIndex: number,
   radars: readonly { readonly step: RadarStep; readonly integrator: RadarIntegrator }[],
-  shape: { readonly cellCount: number; readonly headlineCells: Int32Array; readonly variantCount: number },
+  shape: FieldShape,
 ): BlendedStep {
   const { cellCount, headlineCells, variantCount } = shape;
   const lengthMs = step.endEpochMs - step.startEpochMs;
@@ -64,6 +75,7 @@ export function blendStep(
     variantMm: Array.from({ length: variantCount }, () =>
       new Float64Array(headlineCells.length).fill(Number.NaN),
     ),
+    companions: (shape.companions ?? []).map(() => undefined),
   };
   const voices: Voice[] = radars.map(() => ({
     depthMm: 0,

@@ -2,6 +2,7 @@ export { type ArealDepth, type ArealSource, arealDepth, type CellFractions, cell
 export { type BlendedStep, blendStep } from "./blend.ts";
 export {
   BRIDGED_ABOVE_ROUNDS,
+  type FieldShape,
   type LayerPlace,
   RadarIntegrator,
   type RadarStep,

@@ -1,7 +1,6 @@
-import type { Interval } from "@rainreckon/core";
-import type { RateLayer } from "@rainreckon/mosaic";
+import { type Interval, MS_PER_HOUR } from "@rainreckon/core";
+import type { CompanionKind, CompanionValue, RateLayer } from "@rainreckon/mosaic";
 
-const MS_PER_HOUR = 3_600_000;
 /** A stretch between two scans is called bridged when it is longer than this many median rounds: a scan is missing. */
 export const BRIDGED_ABOVE_ROUNDS = 1.5;
 
@@ -10,6 +9,17 @@ export interface TimeRules {
   readonly medianRoundMs: number;
   /** Longest stretch between two scans that is bridged; equality bridges. */
   readonly maxGapMs: number;
+}
+
+/** What the fields of a run are made of. */
+export interface FieldShape {
+  readonly cellCount: number;
+  /** Flat indices, ascending, of the cells at which depths under other relations are kept. */
+  readonly headlineCells: Int32Array;
+  /** How many other relations. */
+  readonly variantCount: number;
+  /** What travels with the rain; nothing where left out. */
+  readonly companions?: readonly CompanionValue[] | undefined;
 }
 
 /** What one radar saw in one step. Shapes [cells]; undefined arrays are zero everywhere. */
@@ -27,6 +37,11 @@ export interface RadarStep {
   readonly weightMs: Float32Array;
   /** Shape [variants][headline cells]: depth under other relations. */
   readonly variantMm: readonly Float64Array[];
+  /**
+   * Shape [companions][cells], undefined where 0 everywhere: hours times what a layer holds of it. A toll is the
+   * rate of a round times half a median round on either side of its first sweep, whoever observed the cell.
+   */
+  readonly companions: (Float32Array | undefined)[];
 }
 
 /** A part of a stretch between two samples that falls into one step; weights in hours. */
@@ -90,6 +105,7 @@ export class RadarIntegrator {
   readonly #rules: TimeRules;
   readonly #headlineCells: Int32Array;
   readonly #variantCount: number;
+  readonly #companionKinds: readonly CompanionKind[];
   readonly #cellCount: number;
   readonly #open = new Map<number, RadarStep>();
   readonly #layers: (HeldLayer | undefined)[] = [];
@@ -103,16 +119,13 @@ export class RadarIntegrator {
   #parts: readonly Part[] = [];
 
   /** @param steps - contiguous, in time order */
-  constructor(
-    steps: readonly Interval[],
-    rules: TimeRules,
-    shape: { readonly cellCount: number; readonly headlineCells: Int32Array; readonly variantCount: number },
-  ) {
+  constructor(steps: readonly Interval[], rules: TimeRules, shape: FieldShape) {
     this.#steps = steps;
     this.#rules = rules;
     this.#cellCount = shape.cellCount;
     this.#headlineCells = shape.headlineCells;
     this.#variantCount = shape.variantCount;
+    this.#companionKinds = (shape.companions ?? []).map(({ kind }) => kind);
     this.#previous = new Int32Array(shape.cellCount).fill(-1);
   }
 
@@ -311,6 +324,7 @@ export class RadarIntegrator {
           { length: this.#variantCount },
           () => new Float64Array(this.#headlineCells.length),
         ),
+        companions: this.#companionKinds.map(() => undefined),
       };
       this.#open.set(step, held);
     }

@@ -1,4 +1,5 @@
-import type { Interval } from "@rainreckon/core";
+import { type Interval, MS_PER_HOUR } from "@rainreckon/core";
+import type { CompanionKind, CompanionValue } from "@rainreckon/mosaic";
 import type { BlendedStep } from "./blend.ts";
 
 /**
@@ -17,6 +18,8 @@ export interface IntervalFields extends Interval {
   readonly shareMs: readonly Float32Array[];
   /** Shape [variants][headline cells]. */
   readonly variantMm: readonly Float32Array[];
+  /** Shape [companions][cells], undefined where 0 everywhere; as in {@link BlendedStep}. */
+  readonly companions: readonly (Float32Array | undefined)[];
 }
 
 /** Sums in float64, made once per interval or total; NaN only where nothing was ever added. */
@@ -29,8 +32,17 @@ export class FieldSum {
   readonly heightMMs: Float64Array;
   readonly shareMs: readonly Float64Array[];
   readonly variantMm: readonly Float64Array[];
+  readonly companionKinds: readonly CompanionKind[];
+  /** Shape [companions][cells], undefined where 0 everywhere; as in {@link BlendedStep}. */
+  readonly companions: (Float64Array | undefined)[];
 
-  constructor(cellCount: number, radarCount: number, variantCount: number, headlineCount: number) {
+  constructor(
+    cellCount: number,
+    radarCount: number,
+    variantCount: number,
+    headlineCount: number,
+    companions: readonly CompanionValue[] = [],
+  ) {
     const zeros = () => new Float64Array(cellCount);
     this.depthMm = zeros().fill(Number.NaN);
     this.observedMs = zeros();
@@ -42,6 +54,8 @@ export class FieldSum {
     this.variantMm = Array.from({ length: variantCount }, () =>
       new Float64Array(headlineCount).fill(Number.NaN),
     );
+    this.companionKinds = companions.map(({ kind }) => kind);
+    this.companions = companions.map(() => undefined);
   }
 
   /** Adds a step, or a stored interval; call in time order, so that any split of a run adds up alike. */
@@ -54,6 +68,13 @@ export class FieldSum {
     addKnown(this.heightMMs, part.heightMMs);
     for (let r = 0; r < this.shareMs.length; r++) addKnown(this.shareMs[r], part.shareMs[r]);
     for (let v = 0; v < this.variantMm.length; v++) addKnown(this.variantMm[v], part.variantMm[v]);
+    for (let c = 0; c < this.companions.length; c++) {
+      const values = part.companions[c];
+      if (values === undefined) continue;
+      const sum = this.companions[c] ?? new Float64Array(values.length);
+      this.companions[c] = sum;
+      addKnown(sum, values);
+    }
   }
 
   toInterval(interval: Interval): IntervalFields {
@@ -68,6 +89,9 @@ export class FieldSum {
       heightMMs: Float32Array.from(this.heightMMs),
       shareMs: this.shareMs.map((share) => Float32Array.from(share)),
       variantMm: this.variantMm.map((variant) => Float32Array.from(variant)),
+      companions: this.companions.map((values) =>
+        values === undefined ? undefined : new Float32Array(values),
+      ),
     };
   }
 }
@@ -94,6 +118,11 @@ export interface TotalPlanes {
   readonly beamHeightAslM: Float32Array;
   /** Shape [radars][cells]: shares of the observed time, by weight; they sum to 1 where anything was observed. */
   readonly radarShare: readonly Float32Array[];
+  /**
+   * Shape [companions][cells]. By depth: the mean by depth, NaN where there is none. By time: the mean by time
+   * observed. Tolls: millimetres, 0 where there was none, never NaN.
+   */
+  readonly companions: readonly Float32Array[];
 }
 
 /**
@@ -126,5 +155,17 @@ export function totalPlanes(
     }),
     beamHeightAslM: over(sum.heightMMs, ofBeams),
     radarShare: sum.shareMs.map((share) => over(share, observed)),
+    companions: sum.companionKinds.map((kind, c) => companionPlane(sum, kind, sum.companions[c])),
   };
+}
+
+function companionPlane(sum: FieldSum, kind: CompanionKind, values: Float64Array | undefined): Float32Array {
+  const plane = new Float32Array(sum.depthMm.length);
+  if (values !== undefined) plane.set(values);
+  if (kind === "toll") return plane;
+  for (let cell = 0; cell < plane.length; cell++) {
+    const whole = kind === "depth" ? sum.depthMm[cell] : sum.observedMs[cell] / MS_PER_HOUR;
+    plane[cell] = whole > 0 ? (values?.[cell] ?? 0) / whole : Number.NaN;
+  }
+  return plane;
 }

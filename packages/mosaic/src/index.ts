@@ -1,4 +1,4 @@
-export { type BlendWeightInput, blendWeight } from "./blend-weight.ts";
+export { type BlendWeightInput, blendWeight, trustIn } from "./blend-weight.ts";
 export { geodesicDirect, geodesicInverse } from "./geodesic.ts";
 export { gridLookup, type SourceCells } from "./grid-lookup.ts";
 export { MAX_GRID_CELLS, planGrid } from "./plan-grid.ts";
@@ -11,5 +11,19 @@ export {
 } from "./polar-lookup.ts";
 export { projectArea } from "./project-area.ts";
 export { type Projection, projection, projStringOf } from "./projection.ts";
-export { type CellLookup, type GateRates, type RateLayer, RateLayerBuilder } from "./rate-layer.ts";
+export {
+  type CellLookup,
+  type CompanionKind,
+  type CompanionValue,
+  type GateRates,
+  type RateLayer,
+  RateLayerBuilder,
+} from "./rate-layer.ts";
 export { type SiteCells, siteCells } from "./site-cells.ts";
+export {
+  type HeightAt,
+  TERRAIN_SAMPLING,
+  type TerrainSampling,
+  terrainAlongRays,
+  terrainHeights,
+} from "./terrain-heights.ts";

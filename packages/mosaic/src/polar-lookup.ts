@@ -196,9 +196,6 @@ export function polarLookup(
       groundDistanceM: fromSite.distanceM[cell],
       coverageM,
       taperM: rules.taperM,
-      // Neither is estimated yet; sectors named in the plan are left out above instead.
-      blockedFraction: 0,
-      twoWayLossDb: 0,
     });
   }
   const next = start.slice(0, covered);

@@ -1,5 +1,5 @@
 import { describe, expect, test } from "vitest";
-import { blendWeight } from "./blend-weight.ts";
+import { blendWeight, trustIn } from "./blend-weight.ts";
 import type { PolarLookup } from "./polar-lookup.ts";
 import { type GateRates, RateLayerBuilder } from "./rate-layer.ts";
 
@@ -98,14 +98,10 @@ describe("blendWeight", () => {
     groundDistanceM: 30_000,
     coverageM: 150_000,
     taperM: 10_000,
-    blockedFraction: 0,
-    twoWayLossDb: 0,
   };
   test.each([
     ["height", { beamHeightM: 1500 }],
     ["distance", { groundDistanceM: 90_000 }],
-    ["blockage", { blockedFraction: 0.4 }],
-    ["loss", { twoWayLossDb: 3 }],
   ])("falls with %s", (_what, worse) => {
     expect(blendWeight({ ...near, ...worse })).toBeLessThan(blendWeight(near));
   });
@@ -115,5 +111,15 @@ describe("blendWeight", () => {
       blendWeight({ ...near, beamHeightM: 0, groundDistanceM: 150_000 - leftM, coverageM: 150_000 });
     expect(at(5000) / at(10_000)).toBeCloseTo(0.5, 1);
     expect(at(0)).toBeLessThan(2e-6);
+  });
+});
+
+describe("trustIn", () => {
+  test("what is left of the power, out and back", () => {
+    expect(trustIn(0, 0)).toBe(1);
+    // By hand: half of the beam twice is a quarter; 3 dB are 10^-0.3, one half to 0.25 %.
+    expect(trustIn(0.5, 0)).toBeCloseTo(0.25, 12);
+    expect(trustIn(0, 3)).toBeCloseTo(0.5012, 4);
+    expect(trustIn(1, 0)).toBe(0);
   });
 });
