@@ -64,6 +64,20 @@ export {
   zOfEqualDropsMm6PerM3,
 } from "./drop-sizes.ts";
 export {
+  BlockageLearner,
+  type LearnedBlockage,
+  type LearnedSweepBlockage,
+} from "./echo/blockage/blockage-learner.ts";
+export {
+  BLOCKAGE_SETTINGS,
+  type BlockageSettings,
+  correctBlockage,
+  type JoinedBlockage,
+  joinBlockage,
+} from "./echo/blockage/correct-blockage.ts";
+export { type BlockedSweep, terrainBlockage } from "./echo/blockage/terrain-blockage.ts";
+export { type TerrainGrid, type TerrainRays, terrainCaution } from "./echo/blockage/terrain-model.ts";
+export {
   addEffect,
   ECHO_MOMENTS,
   EFFECTS,
@@ -77,6 +91,18 @@ export {
   type Screen,
   screenBit,
 } from "./echo/polar-echo.ts";
+export {
+  backgroundDbz,
+  CONVECTIVE_RADIUS_RULES,
+  type ConvectiveRadiusRule,
+  convectiveExcessDb,
+  convectiveRadiusM,
+  RAIN_TYPE,
+  RAIN_TYPE_DEFAULTS,
+  type RainTypeSettings,
+  rainTypes,
+  type TypeGrid,
+} from "./echo/rain-type/steiner.ts";
 export { errorFunction } from "./error-function.ts";
 export {
   ATLAS_SRIVASTAVA_SEKHON_1973,
