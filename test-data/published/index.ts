@@ -10,7 +10,7 @@ export {
   isBinding,
   type Json,
 } from "./entries.ts";
-export { CORE_NOT_APPLICABLE, GEODESIC_ENTRIES } from "./not-applicable.ts";
+export { ATTENUATION_CORRECTION_ENTRIES, CORE_NOT_APPLICABLE, GEODESIC_ENTRIES } from "./not-applicable.ts";
 export {
   type Adapter,
   fits,

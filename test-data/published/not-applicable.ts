@@ -1,9 +1,12 @@
 import type { NotApplicable } from "./suite.ts";
 
+/** What the correction of attenuation answers for, beside its own code. */
+export const ATTENUATION_CORRECTION_ENTRIES =
+  /^(hb-(uniform-(bracket|recovered)|cell-.*|blowup-.*|error-growth.*)|gbg-.*|phidp-.*|zphi-.*)$/;
+
 /** Positions of gates on the ellipsoid: the package that projects answers for them, not the one that knows beams. */
 export const GEODESIC_ENTRIES = /^(geod-.*|gate-full-(lon|lat))$/;
 
-const PART_D = "attenuation correction: not applicable until part D builds it";
 const SNOW_SPECTRUM = "no command works with the drop-size spectrum of snow";
 const NO_CONVERSION = "no command converts this unit";
 
@@ -19,10 +22,6 @@ export const CORE_NOT_APPLICABLE = {
     { id: "avg-db-*", reason: "the wrong way to average, which nothing here may do" },
   ],
   "e-rain-attenuation": [
-    { id: /^hb-(uniform-(bracket|recovered)|cell-.*|blowup-.*|error-growth.*)$/, reason: PART_D },
-    { id: "gbg-*", reason: PART_D },
-    { id: "phidp-*", reason: PART_D },
-    { id: "zphi-*", reason: PART_D },
     {
       id: "darwin-c-2way",
       reason:
@@ -52,7 +51,6 @@ export const CORE_NOT_APPLICABLE = {
   ],
   "l-units-and-facts": [
     { id: /^unit-n0-(si|cm)$/, reason: "other units of N0; all spectra here are per m3 and mm" },
-    { id: "unit-kdp-rad", reason: "unit of differential phase: not applicable until part D" },
     { id: "brandes-*", reason: "a polynomial from memory; fall speeds are measured or of two other laws" },
     { id: /^unit-(knot|nmi|mile|foot)$/, reason: NO_CONVERSION },
     { id: "unit-mm-m2", reason: NO_CONVERSION },

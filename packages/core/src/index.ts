@@ -64,6 +64,42 @@ export {
   zOfEqualDropsMm6PerM3,
 } from "./drop-sizes.ts";
 export {
+  type AttenuationMethod,
+  type AttenuationSettings,
+  attenuationLawOfWavelength,
+  DEFAULT_ATTENUATION_SETTINGS,
+} from "./echo/attenuation/attenuation-settings.ts";
+export { type AttenuationReport, correctAttenuation } from "./echo/attenuation/correct-attenuation.ts";
+export {
+  correctGas,
+  GasLosses,
+  type GasMode,
+  type GasReport,
+  referenceAirAt,
+  type StationAir,
+  surfaceAirOf,
+} from "./echo/attenuation/correct-gas.ts";
+export {
+  type GateShare,
+  gateByGateLossTwoWayDb,
+  hitschfeldBordanBracket,
+  hitschfeldBordanErrorDb,
+  lossOfBracketTwoWayDb,
+  runawayLossTwoWayDb,
+} from "./echo/attenuation/hitschfeld-bordan.ts";
+export type { LearnedAttenuation } from "./echo/attenuation/learned.ts";
+export {
+  lossOfPhaseTwoWayDb,
+  type PhaseCoefficient,
+  type PhaseCoefficients,
+  phaseCoefficients,
+} from "./echo/attenuation/phase-coefficients.ts";
+export { DEFAULT_PHASE_SETTINGS, type PhaseSettings } from "./echo/attenuation/phase-gates.ts";
+export { type PhaseReport, workUpPhase } from "./echo/attenuation/rain-phase.ts";
+export { DEFAULT_KDP_SETTINGS, type KdpSettings } from "./echo/attenuation/specific-phase.ts";
+export { type SystemPhase, SystemPhaseLearner } from "./echo/attenuation/system-phase.ts";
+export { zphiAttenuationOneWayDbPerKm, zphiLossTwoWayDb } from "./echo/attenuation/zphi.ts";
+export {
   BlockageLearner,
   type LearnedBlockage,
   type LearnedSweepBlockage,
@@ -103,6 +139,20 @@ export {
   rainTypes,
   type TypeGrid,
 } from "./echo/rain-type/steiner.ts";
+export { screenSweep } from "./echo/screening/screen-sweep.ts";
+export {
+  DEFAULT_SCREENING,
+  firstScreenOf,
+  type ScreeningReport,
+  type ScreeningSettings,
+} from "./echo/screening/settings.ts";
+export {
+  type LearnedStaticEcho,
+  type LearnedSweep,
+  StaticEchoLearner,
+} from "./echo/screening/static-echo.ts";
+export type { SweepGeometry } from "./echo/screening/sweep-geometry.ts";
+export { spinChangePercent, textureDb2 } from "./echo/screening/texture.ts";
 export { errorFunction } from "./error-function.ts";
 export {
   ATLAS_SRIVASTAVA_SEKHON_1973,

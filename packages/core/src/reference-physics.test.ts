@@ -1,4 +1,5 @@
 import {
+  ATTENUATION_CORRECTION_ENTRIES,
   type CheckValue,
   CORE_NOT_APPLICABLE,
   inputNumber,
@@ -303,6 +304,7 @@ function givenLawOf(entry: CheckValue): AttenuationLaw {
 
 runReferenceSuite({
   topics: ["e-rain-attenuation"],
+  except: ATTENUATION_CORRECTION_ENTRIES,
   notApplicable: CORE_NOT_APPLICABLE["e-rain-attenuation"],
   adapters: [
     [/^p838-(t5-)?kH-/, (entry) => lawOf(entry, "H").coefficient],

@@ -18,6 +18,7 @@ import {
 import { blockageCorrectionDb, gaussianBlockedFraction, uniformBlockedFraction } from "./blockage.ts";
 import { resolveCap } from "./cap.ts";
 import { dropSpectrum, RAIN_RATE_PER_D3, spectrumZMm6PerM3 } from "./drop-sizes.ts";
+import { RAD_PER_DEG } from "./echo/attenuation/specific-phase.ts";
 import {
   ATLAS_SRIVASTAVA_SEKHON_1973,
   ATLAS_ULBRICH_1977,
@@ -206,6 +207,7 @@ runReferenceSuite({
       (entry) => heldDepthMm(inputNumber(entry, "rain_rate_mm_h"), 60_000 * inputNumber(entry, "minutes")),
     ],
     ["unit-rainconv", () => RAIN_RATE_PER_D3],
+    ["unit-kdp-rad", (entry) => inputNumber(entry, "KDP_deg_per_km") * RAD_PER_DEG],
     ["unit-dbkm-nepers", (entry) => inputNumber(entry, "extinction_per_km") * DB_PER_NEPER],
     ["gk49-*", (entry) => measuredFallSpeedMPerS(inputNumber(entry, "diameter_mm"))],
     ["au77-*", (entry) => fallSpeedMPerS(inputNumber(entry, "diameter_mm"), ATLAS_ULBRICH_1977)],

@@ -66,7 +66,8 @@ export interface PolarEcho {
   readonly unfilteredDbz: Float32Array | undefined;
   readonly velocityMPerS: Float32Array | undefined;
   readonly spectrumWidthMPerS: Float32Array | undefined;
-  readonly zdrDb: Float32Array | undefined;
+  /** As the file has it, until the differential attenuation was taken off a copy. */
+  zdrDb: Float32Array | undefined;
   readonly rhohv: Float32Array | undefined;
   readonly phidpDeg: Float32Array | undefined;
   /** One way. From the file, or from PHIDP once that was worked up. */

@@ -1,0 +1,114 @@
+/** Windows that KDP may be taken over. House rule within the customary 2 to 6 km. */
+export interface KdpSettings {
+  readonly shortestKm: number;
+  readonly longestKm: number;
+  /** Noise of KDP, deg/km, that is good enough in heavy rain, and most that is given out. */
+  readonly goodNoiseDegPerKm: number;
+  readonly mostNoiseDegPerKm: number;
+}
+
+export const DEFAULT_KDP_SETTINGS: KdpSettings = {
+  shortestKm: 2,
+  longestKm: 6,
+  goodNoiseDegPerKm: 0.3,
+  mostNoiseDegPerKm: 1,
+};
+
+/** Echo of heavy rain, from which on short windows may be taken (as Wang and Chandrasekar, 2009, adapt to gradients). */
+const HEAVY_DBZ = 40;
+
+/** Radians in a degree of phase: what KDP in rad/km is to KDP in deg/km. */
+export const RAD_PER_DEG = Math.PI / 180;
+
+/** Slopes of phase along rays by least squares over windows, from running sums. */
+export class SlopeOfPhase {
+  readonly #n: Float64Array;
+  readonly #x: Float64Array;
+  readonly #xx: Float64Array;
+  readonly #y: Float64Array;
+  readonly #xy: Float64Array;
+  readonly #gateCount: number;
+
+  constructor(gateCount: number) {
+    this.#gateCount = gateCount;
+    this.#n = new Float64Array(gateCount + 1);
+    this.#x = new Float64Array(gateCount + 1);
+    this.#xx = new Float64Array(gateCount + 1);
+    this.#y = new Float64Array(gateCount + 1);
+    this.#xy = new Float64Array(gateCount + 1);
+  }
+
+  /** Takes a ray in: gates that are NaN do not count. */
+  load(phaseDeg: Float64Array): void {
+    for (let gate = 0; gate < this.#gateCount; gate++) {
+      const y = phaseDeg[gate] as number;
+      const seen = Number.isNaN(y) ? 0 : 1;
+      const x = seen * gate;
+      const value = seen === 1 ? y : 0;
+      this.#n[gate + 1] = (this.#n[gate] as number) + seen;
+      this.#x[gate + 1] = (this.#x[gate] as number) + x;
+      this.#xx[gate + 1] = (this.#xx[gate] as number) + x * gate;
+      this.#y[gate + 1] = (this.#y[gate] as number) + value;
+      this.#xy[gate + 1] = (this.#xy[gate] as number) + x * value;
+    }
+  }
+
+  /** Half of the slope in degrees per gate, over gates within `half` of one. Read `variance` after it. */
+  kdpPerGate(gate: number, half: number): number {
+    const from = Math.max(0, gate - half);
+    const to = Math.min(this.#gateCount, gate + half + 1);
+    const n = (this.#n[to] as number) - (this.#n[from] as number);
+    const x = (this.#x[to] as number) - (this.#x[from] as number);
+    const xx = (this.#xx[to] as number) - (this.#xx[from] as number) - (x * x) / n;
+    // Fewer than half of the window's gates do not stand for it.
+    if (n < 3 || n < half + 1 || !(xx > 0)) {
+      this.variance = Number.POSITIVE_INFINITY;
+      return Number.NaN;
+    }
+    const y = (this.#y[to] as number) - (this.#y[from] as number);
+    const xy = (this.#xy[to] as number) - (this.#xy[from] as number) - (x * y) / n;
+    this.variance = 0.25 / xx;
+    return (0.5 * xy) / xx;
+  }
+
+  /** Variance of the last KDP per gate, in units of that of one gate's phase. */
+  variance = Number.POSITIVE_INFINITY;
+}
+
+/**
+ * KDP of one ray, one way: half of the slope of PHIDP. Heavy echo takes the shortest window whose noise is good
+ * enough, other echo the longest. A negative slope keeps its sign.
+ *
+ * @param slopes - with the ray loaded: unfolded phase, not forced to rise
+ * @param dbz - of the sweep; gates without echo get NaN
+ * @param from - the ray's first gate in `dbz` and `out`
+ */
+export function kdpOfRay(
+  slopes: SlopeOfPhase,
+  dbz: Float32Array,
+  from: number,
+  out: Float32Array,
+  gateCount: number,
+  gateKm: number,
+  noiseDeg: number,
+  settings: KdpSettings,
+): void {
+  const shortest = Math.max(1, Math.round(settings.shortestKm / gateKm / 2));
+  const longest = Math.max(shortest, Math.round(settings.longestKm / gateKm / 2));
+  const middle = Math.round((shortest + longest) / 2);
+  const noise2 = (noiseDeg / gateKm) ** 2;
+  const good2 = settings.goodNoiseDegPerKm ** 2;
+  const most2 = settings.mostNoiseDegPerKm ** 2;
+  for (let gate = 0; gate < gateCount; gate++) {
+    const echo = dbz[from + gate] as number;
+    out[from + gate] = Number.NaN;
+    if (!(echo > Number.NEGATIVE_INFINITY)) continue;
+    let kdp = Number.NaN;
+    if (echo >= HEAVY_DBZ) {
+      kdp = slopes.kdpPerGate(gate, shortest);
+      if (slopes.variance * noise2 > good2) kdp = slopes.kdpPerGate(gate, middle);
+      if (slopes.variance * noise2 > good2) kdp = slopes.kdpPerGate(gate, longest);
+    } else kdp = slopes.kdpPerGate(gate, longest);
+    if (slopes.variance * noise2 <= most2) out[from + gate] = kdp / gateKm;
+  }
+}
