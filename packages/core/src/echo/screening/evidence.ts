@@ -1,0 +1,57 @@
+import { type PolarEcho, type Screen, screenBit } from "../polar-echo.ts";
+
+/**
+ * What the screens hold against each gate.
+ *
+ * Strong evidence takes a gate alone. Weak evidence, such as rough echo, which the edge of a shower shows
+ * too, takes a gate only where a second and independent screen agrees. House rule.
+ */
+export interface Evidence {
+  /** Shape [gates]: bits by `screenBit`. */
+  readonly strong: Uint16Array;
+  readonly weak: Uint16Array;
+}
+
+/** Screens that look at the same thing do not support one another. */
+const ROUGHNESS = screenBit("still-echo") | screenBit("texture");
+
+/**
+ * Rain correlates this well at all radars; clutter, turbines and interference seldom do. Such a gate is cleared
+ * of what speaks against it by strength and place alone. Common practice takes 0.95 to 0.98.
+ */
+export const RAIN_LIKE_RHOHV = 0.95;
+
+/** What a rain-like correlation clears a gate of. */
+const CLEARED = bitsOf([
+  "static-echo",
+  "still-echo",
+  "filtered-power",
+  "texture",
+  "vertical-gradient",
+  "fixed-point",
+]);
+
+export function bitsOf(screens: readonly Screen[]): number {
+  return screens.reduce((bits, screen) => bits | screenBit(screen), 0);
+}
+
+/** Weighs the evidence of every gate and writes what holds into `screenedBy`. */
+export function weighEvidence(echo: PolarEcho, { strong, weak }: Evidence): void {
+  const { screenedBy, rhohv } = echo;
+  for (let at = 0; at < screenedBy.length; at++) {
+    let alone = strong[at] as number;
+    let supporting = weak[at] as number;
+    if ((alone | supporting) === 0) continue;
+    if (rhohv !== undefined && (rhohv[at] as number) >= RAIN_LIKE_RHOHV) {
+      alone &= ~CLEARED;
+      supporting &= ~CLEARED;
+    }
+    if (alone !== 0 || isDouble(supporting)) screenedBy[at] = alone | supporting;
+  }
+}
+
+/** True where two independent screens agree. */
+function isDouble(bits: number): boolean {
+  const one = (bits & ROUGHNESS) === 0 ? bits : (bits & ~ROUGHNESS) | screenBit("texture");
+  return (one & (one - 1)) !== 0;
+}
