@@ -114,6 +114,13 @@ export {
 export { type BlockedSweep, terrainBlockage } from "./echo/blockage/terrain-blockage.ts";
 export { type TerrainGrid, type TerrainRays, terrainCaution } from "./echo/blockage/terrain-model.ts";
 export {
+  EchoChain,
+  type EchoReport,
+  type EchoSettings,
+  type LearnedEcho,
+  NOTHING_LEARNED,
+} from "./echo/chain.ts";
+export {
   addEffect,
   ECHO_MOMENTS,
   EFFECTS,
