@@ -1,4 +1,5 @@
 // Benches, as ratios in one run: `npm run bench [rate|decode|cost|memory]`. Machines are noisy: read the ratios.
+// And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
 import os from "node:os";
@@ -10,21 +11,24 @@ const root = fileURLToPath(new URL("../../..", import.meta.url));
 const program = path.join(root, "apps/cli/dist/main.js");
 const generator = path.join(root, "test-data/dist/storm.mjs");
 const wanted = process.argv.slice(2);
-const asked = (name) => wanted.length === 0 || wanted.includes(name);
-for (const built of [program, generator]) {
+const ablation = wanted[0] === "ablation";
+const asked = (name) => wanted.length === 0 || (!ablation && wanted.includes(name));
+for (const built of ablation ? [generator] : [program, generator]) {
   if (!existsSync(built))
     throw new Error(`${path.relative(root, built)} is missing: run npm test or npm run demo once`);
 }
+const PACKAGES = ["accumulation", "adjustment", "core", "formats", "mosaic", "report", "verification"];
 const scratch = mkdtempSync(path.join(os.tmpdir(), "rainreckon-bench-"));
 process.on("exit", () => rmSync(scratch, { recursive: true, force: true }));
 console.log(
   `Node ${process.versions.node}, ${os.cpus().length} × ${os.cpus()[0].model}, load ${os.loadavg()[0].toFixed(1)}`,
 );
 
-/** A bench of a package, bundled and run: a name and lines. */
-async function packageBench(file) {
+/** A bench of a package, bundled and loaded. @returns its default export */
+async function bundled(file) {
   // Beside the package, so that it finds the libraries the package has.
-  const out = path.join(root, path.dirname(file), `../node_modules/.bench-${path.basename(file, ".ts")}.mjs`);
+  const name = `.bench-${path.basename(file, ".ts")}-${process.pid}.mjs`;
+  const out = path.join(root, path.dirname(file), "../node_modules", name);
   await build({
     entryPoints: [path.join(root, file)],
     outfile: out,
@@ -33,12 +37,19 @@ async function packageBench(file) {
     platform: "node",
     target: "node20",
     packages: "external",
-    alias: { "@rainreckon/core": path.join(root, "packages/core/src/index.ts") },
+    alias: Object.fromEntries(
+      PACKAGES.map((name) => [`@rainreckon/${name}`, path.join(root, "packages", name, "src/index.ts")]),
+    ),
     logLevel: "warning",
   });
+  process.on("exit", () => rmSync(out, { force: true }));
   const { default: run } = await import(pathToFileURL(out));
-  const { name, lines } = await run();
-  rmSync(out);
+  return run;
+}
+
+/** Runs a bench of a package, which gives a name and lines. */
+async function packageBench(file) {
+  const { name, lines } = await (await bundled(file))();
   console.log(`\n${name}`);
   for (const line of lines) console.log(`  ${line}`);
 }
@@ -74,6 +85,8 @@ function total(plan) {
   rmSync(out, { recursive: true });
   return { ...log, peakMb: Number(readFileSync(peak, "utf8")) / 1024 };
 }
+
+if (ablation) await (await bundled("apps/cli/bench/ablation.ts"))(wanted.slice(1), generator);
 
 const median = (values) => values.toSorted((a, b) => a - b)[Math.floor(values.length / 2)];
 

@@ -1,0 +1,93 @@
+import { runVariant, worldPlan } from "./run-variant.ts";
+import { samplingAlone } from "./sampling.ts";
+import { commonCells, type Extremes, extremesOf, type MapScore, scoreMap } from "./scores.ts";
+import { type ScreenToll, ScreenTolls } from "./screen-tolls.ts";
+import { ALL, type Variant } from "./variants.ts";
+import { trueWorld, type WorldSize, worldFolder } from "./worlds.ts";
+
+/** Share of the window from which a cell counts as observed; that of a fresh plan, below which no depth is printed. */
+const LEAST_OBSERVED = 0.9;
+
+/** A world and seed to measure, and in which ways. */
+export interface Task {
+  readonly world: string;
+  readonly seed: number;
+  readonly size: WorldSize;
+  readonly variants: readonly Variant[];
+}
+
+/** Where worlds are made and kept. */
+export interface Place {
+  readonly generator: string;
+  readonly cache: string;
+}
+
+/** A map against the truth: on all cells, and on those free of clutter. */
+export interface TwoScores {
+  readonly all: MapScore;
+  readonly clutterFree: MapScore;
+}
+
+export interface VariantScore extends TwoScores {
+  readonly name: string;
+  readonly extremes: Extremes;
+  /** Cells that this variant did not observe. */
+  readonly unobservedCells: number;
+  readonly seconds: number;
+}
+
+/** Scores of one world and seed: every variant on the same cells. */
+export interface Measured {
+  readonly world: string;
+  readonly seed: number;
+  /** Cells of the truth, and those left out because some variant did not observe them. */
+  readonly cells: number;
+  readonly leftOutCells: number;
+  readonly scores: readonly VariantScore[];
+  /** What scans without any fault would score, for being taken every few minutes. */
+  readonly sampling: TwoScores;
+  /** With every step. */
+  readonly tolls: readonly ScreenToll[];
+}
+
+/** Makes a world if need be, runs every variant on it, and scores them on the cells that all observed. */
+export async function measure(task: Task, { generator, cache }: Place): Promise<Measured> {
+  const world = trueWorld(worldFolder(generator, cache, task.world, task.seed, task.size));
+  const { totalMm, rangeKm, clutterFree, window } = world;
+  const plan = await worldPlan(world);
+  const windowHours = (Date.parse(window.to) - Date.parse(window.from)) / 3_600_000;
+  const tolls = new ScreenTolls(world.radars, totalMm.length, windowHours);
+  const maps = [];
+  for (const variant of task.variants) {
+    const trace = variant.name === ALL.name ? tolls : undefined;
+    maps.push(await runVariant(world, plan, variant, trace));
+  }
+  const use = commonCells(
+    maps.map(({ observed }) => observed),
+    LEAST_OBSERVED,
+  );
+  const clean = use.map((used, cell) => used & clutterFree[cell]);
+  const scores = (map: Float32Array): TwoScores => ({
+    all: scoreMap(map, totalMm, use, rangeKm),
+    clutterFree: scoreMap(map, totalMm, clean, rangeKm),
+  });
+  return {
+    world: task.world,
+    seed: task.seed,
+    cells: use.length,
+    leftOutCells: use.length - count(use),
+    scores: maps.map((map, k) => ({
+      name: task.variants[k].name,
+      ...scores(map.totalMm),
+      extremes: extremesOf(map.totalMm, map.hoursMm, use),
+      unobservedCells: use.length - count(commonCells([map.observed], LEAST_OBSERVED)),
+      seconds: map.seconds,
+    })),
+    sampling: scores(samplingAlone(world)),
+    tolls: tolls.finish(),
+  };
+}
+
+function count(flags: Uint8Array): number {
+  return flags.reduce((sum, flag) => sum + flag, 0);
+}

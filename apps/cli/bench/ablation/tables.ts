@@ -1,0 +1,159 @@
+import { type Column, textTable } from "../../src/ui/table.ts";
+import type { Measured, TwoScores, VariantScore } from "./measure.ts";
+import { median, RANGE_BANDS_KM } from "./scores.ts";
+import { ALL, CAPPED_AND_MASKED, RAW, STEP_WITHOUT_WORK, without } from "./variants.ts";
+
+const BANDS = [...RANGE_BANDS_KM.map((km) => `<${km} km`), "beyond"];
+const right = (head: string): Column => ({ head, align: "right" });
+const digits = (value: number, count: number) => (Number.isFinite(value) ? value.toFixed(count) : "–");
+const percent = (share: number, places = 0) =>
+  Number.isFinite(share) ? `${(100 * share).toFixed(places)} %` : "–";
+
+export function scoreOf(run: Measured, name: string): VariantScore {
+  const score = run.scores.find((one) => one.name === name);
+  if (score === undefined) throw new RangeError(`${run.world}: no variant ${name}`);
+  return score;
+}
+
+/** RMSE of a map over that of raw on all cells, and over that of the capped and masked on clutter-free cells. */
+function ratios(run: Measured, { all, clutterFree }: TwoScores): readonly [number, number] {
+  return [
+    all.rmseMm / scoreOf(run, RAW.name).all.rmseMm,
+    clutterFree.rmseMm / scoreOf(run, CAPPED_AND_MASKED.name).clutterFree.rmseMm,
+  ];
+}
+
+/** The scores of one world, a line a variant; of several seeds the medians. */
+export function worldTable(runs: readonly Measured[]): string {
+  const columns = [
+    { head: "variant" },
+    ...["RMSE mm", "of raw", "bias", "corr.", "RMSE mm*", "of masked*", "bias*", "corr.*"].map(right),
+    ...BANDS.map((band) => right(`bias* ${band}`)),
+    right("not observed"),
+    right("s"),
+  ];
+  const line = (
+    name: string,
+    of: (run: Measured) => TwoScores,
+    rest: readonly string[],
+  ): readonly string[] => {
+    const over = (figure: (score: TwoScores, run: Measured) => number) =>
+      median(runs.map((run) => figure(of(run), run)));
+    return [
+      name,
+      digits(
+        over(({ all }) => all.rmseMm),
+        2,
+      ),
+      percent(over((score, run) => ratios(run, score)[0])),
+      digits(
+        over(({ all }) => all.biasRatio),
+        2,
+      ),
+      digits(
+        over(({ all }) => all.correlation),
+        3,
+      ),
+      digits(
+        over(({ clutterFree }) => clutterFree.rmseMm),
+        2,
+      ),
+      percent(over((score, run) => ratios(run, score)[1])),
+      digits(
+        over(({ clutterFree }) => clutterFree.biasRatio),
+        2,
+      ),
+      digits(
+        over(({ clutterFree }) => clutterFree.correlation),
+        3,
+      ),
+      ...BANDS.map((_, band) =>
+        digits(
+          over(({ clutterFree }) => clutterFree.biasByRange[band]),
+          2,
+        ),
+      ),
+      ...rest,
+    ];
+  };
+  const rows = runs[0].scores.map(({ name }) => {
+    const over = (figure: (score: VariantScore) => number) =>
+      median(runs.map((run) => figure(scoreOf(run, name))));
+    return line(name, (run) => scoreOf(run, name), [
+      digits(
+        over(({ unobservedCells }) => unobservedCells),
+        0,
+      ),
+      digits(
+        over(({ seconds }) => seconds),
+        1,
+      ),
+    ]);
+  });
+  rows.push(line("(faultless scans)", ({ sampling }) => sampling, ["–", "–"]));
+  const leftOut = median(runs.map(({ leftOutCells }) => leftOutCells));
+  const seeds = runs.map(({ seed }) => seed).join(", ");
+  return [
+    `${runs[0].world}, seed${runs.length > 1 ? "s" : ""} ${seeds}: ${runs[0].cells} cells, ${leftOut} left out that some variant did not observe`,
+    textTable(columns, rows),
+  ].join("\n");
+}
+
+const judged = (met: boolean) => (met ? "met" : "NOT MET");
+const nameOf = ({ world, seed }: Measured) => `${world}/${seed}`;
+
+/** The aims over all worlds and seeds, with whether they are met. */
+export function aimLines(runs: readonly Measured[]): string[] {
+  const both = runs.map((run) => ratios(run, scoreOf(run, ALL.name)));
+  const ofRaw = median(both.map(([share]) => share));
+  const ofMasked = median(both.map(([, share]) => share));
+  const worse = runs.filter((_, k) => both[k][0] > 1);
+  return [
+    `RMSE of the storm total, of raw, all cells: median ${percent(ofRaw)}; aim 40 %: ${judged(ofRaw <= 0.4)}`,
+    `RMSE of the storm total, of capped and masked, clutter-free cells: median ${percent(ofMasked)}; aim 60 %: ${judged(ofMasked <= 0.6)}`,
+    `worse than raw: ${worse.length} of ${runs.length}; aim none: ${judged(worse.length === 0)}${worse.length > 0 ? ` (${worse.map(nameOf).join(", ")})` : ""}`,
+  ];
+}
+
+/** What each screen takes of true rain, the worst of all worlds and seeds. */
+export function tollTable(runs: readonly Measured[]): string {
+  const rows = runs[0].tolls.map(({ screen }, s) => {
+    const worst = (figure: "share" | "shareOfAllGates" | "worstCell"): [string, string] => {
+      const run = runs.reduce((a, b) => (b.tolls[s][figure] > a.tolls[s][figure] ? b : a));
+      return [percent(run.tolls[s][figure], 2), run.tolls[s][figure] > 0 ? nameOf(run) : ""];
+    };
+    const mid = median(runs.map(({ tolls }) => tolls[s].share));
+    return [screen, percent(mid, 2), ...worst("share"), ...worst("worstCell"), ...worst("shareOfAllGates")];
+  });
+  return [
+    "True rain below screened gates, lowest sweeps, filling not counted; aims: at most 1 % of it, and 5 % in a cell above 5 mm",
+    textTable(
+      [
+        { head: "screen" },
+        right("median"),
+        right("worst"),
+        { head: "in" },
+        right("worst cell"),
+        { head: "in" },
+        right("with gates of false echo"),
+        { head: "in" },
+      ],
+      rows,
+    ),
+  ].join("\n");
+}
+
+/** How far a step moves the map of a world that has nothing for it to do. */
+export function idleLines(runs: readonly Measured[]): string[] {
+  return runs.flatMap((run) => {
+    const step = STEP_WITHOUT_WORK[run.world];
+    if (step === undefined) return [];
+    const on = scoreOf(run, ALL.name).extremes;
+    const off = scoreOf(run, without(step).name).extremes;
+    const [wet, peak] = [on.wet95Mm / off.wet95Mm - 1, on.peakHourMm / off.peakHourMm - 1];
+    const signed = (share: number) => `${share >= 0 ? "+" : ""}${percent(share, 1)}`;
+    return [
+      `${nameOf(run)}, ${step}: 95th percentile of wet cells ${signed(wet)}, peak hour ${signed(peak)}; aim below 2 %: ${judged(Math.abs(wet) < 0.02 && Math.abs(peak) < 0.02)}`,
+    ];
+  });
+}
