@@ -43,6 +43,7 @@ function radar(sensitivity: JobRadar["sensitivity"], offsetDb = 0): JobRadar {
     time: { medianRoundMs: 300_000, maxGapMs: 750_000 },
     lookup: { effectiveRadiusFactor: 4 / 3, maxBeamHeightM: 3000, taperM: 0, blockedSectors: [] },
     rounds: [],
+    echo: undefined,
   };
 }
 

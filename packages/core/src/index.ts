@@ -135,6 +135,16 @@ export {
   screenBit,
 } from "./echo/polar-echo.ts";
 export {
+  correctProfile,
+  PROFILE_BAND_M,
+  PROFILE_DEFAULTS,
+  type ProfileReport,
+  type ProfileSettings,
+} from "./echo/profile/correct-profile.ts";
+export type { LearnedProfile, MeltingCorrelation, MeltingLayer } from "./echo/profile/learned-profile.ts";
+export { layerBelowFreezing, MeltingLayerLearner } from "./echo/profile/melting-layer.ts";
+export { ProfileLearner } from "./echo/profile/profile-learner.ts";
+export {
   backgroundDbz,
   CONVECTIVE_RADIUS_RULES,
   type ConvectiveRadiusRule,

@@ -11,6 +11,7 @@ export {
 } from "./polar-lookup.ts";
 export { projectArea } from "./project-area.ts";
 export { type Projection, projection, projStringOf } from "./projection.ts";
+export { rainTypeOfGates } from "./rain-type.ts";
 export {
   type CellLookup,
   type CompanionKind,

@@ -120,7 +120,7 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
     );
   }
   upper.set(factory.createNode("grid"), gridNode(result));
-  for (const section of ["rain", "pairs", "bootstrap"] as const) {
+  for (const section of ["rain", "echo", "pairs", "bootstrap"] as const) {
     upper.set(factory.createNode(section), defaultsNode(section));
   }
   ruleBefore(upper, scans.length > 0 ? "scans" : "grid");
@@ -453,6 +453,12 @@ const REMARKS: Readonly<Record<string, string>> = {
   taperKm: "km over which a radar's weight falls to 0 at the end of its coverage",
   resent: "which of two differing sweeps of one instant counts: first or last",
   headlineRelations: "the headline is also given under these",
+  screening: "echo that is not rain; without: names of screens that are not used; fill: neighbours or none",
+  blockage: "terrain: a GeoTIFF of heights; limit: share of the beam that is still corrected",
+  gas: "air; use: if-told, always or never",
+  attenuation: "rain; method: auto, linear, zphi, hitschfeld-bordan or none; dbPerDeg where it is known",
+  profile: "melting layer; freezingHeightAslM where the scans do not show it",
+  rate: "convective and stratiform: relations of their own",
   cell: "nearest or mean3x3",
   interval: "length of the pairs",
   thresholdMm: "mm; wet from here on",
@@ -462,7 +468,7 @@ const REMARKS: Readonly<Record<string, string>> = {
 };
 
 /** A section as the schema fills it in. */
-function defaultsNode(section: "rain" | "pairs" | "bootstrap"): Node {
+function defaultsNode(section: "rain" | "echo" | "pairs" | "bootstrap"): Node {
   const defaults = planSchema.shape[section].parse({}) as Record<string, unknown>;
   const entries = Object.entries(defaults).map(([key, value]): [string, Marked] => [
     key,

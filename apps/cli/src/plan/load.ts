@@ -50,6 +50,8 @@ export interface LoadedPlan {
   readonly catchmentsFile?: string;
   /** The files that belong to it where it is a Shapefile. */
   readonly catchmentsParts: ShapefileParts;
+  /** The terrain model that tells what stands in the beams. */
+  readonly terrainFile?: string;
   /** Paths and globs that match nothing. */
   readonly notices: readonly Notice[];
 }
@@ -90,6 +92,9 @@ export async function loadPlan(planPath: string): Promise<LoadedPlan> {
     gridFiles,
     gaugeFiles,
     ...(catchmentsFile === undefined ? {} : { catchmentsFile }),
+    ...(plan.echo.blockage.terrain === undefined
+      ? {}
+      : { terrainFile: path.resolve(folder, plan.echo.blockage.terrain) }),
     catchmentsParts: catchmentsFile === undefined ? {} : shapefileParts(catchmentsFile),
     notices,
   };

@@ -1,4 +1,5 @@
 import { METHOD_NAMES, VARIOGRAM_SHAPES } from "@rainreckon/adjustment";
+import { SCREENS } from "@rainreckon/core";
 import { z } from "zod";
 
 /** An instant with its offset or Z: a plan never holds a time that depends on where it is read. */
@@ -224,6 +225,63 @@ const assets = z.strictObject({
   decimal,
 });
 
+/** From echo to rain: what is screened and corrected before the relation. Each step can be switched off. */
+const echo = z.strictObject({
+  screening: z
+    .strictObject({
+      use: z.boolean().default(true),
+      /** Screens that are not used. */
+      without: z.array(z.enum(SCREENS)).default([]),
+      /** What takes the place of a screened gate: its neighbours, or nothing; then the sweep above may speak. */
+      fill: z.enum(["neighbours", "none"]).default("neighbours"),
+    })
+    .prefault({}),
+  blockage: z
+    .strictObject({
+      use: z.boolean().default(true),
+      /** Heights of the ground, GeoTIFF in metres above mean sea level. */
+      terrain: z.string().min(1).optional(),
+      /** Share of the beam that may be hidden and is still corrected. */
+      limit: z.number().min(0).max(0.9).default(0.7),
+    })
+    .prefault({}),
+  gas: z
+    .strictObject({
+      /** if-told: where the file says that nothing was taken off for the air. */
+      use: z.enum(["if-told", "always", "never"]).default("if-told"),
+      temperatureC: z.number().min(-40).max(50).default(15),
+      pressureHpa: z.number().min(500).max(1100).default(1013),
+      humidityPercent: z.number().min(0).max(100).default(60),
+    })
+    .prefault({}),
+  attenuation: z
+    .strictObject({
+      method: z.enum(["auto", "linear", "zphi", "hitschfeld-bordan", "none"]).default("auto"),
+      /** Two-way loss per degree of PHIDP; learned from the scans or of the band where left out. */
+      dbPerDeg: z.number().positive().max(1).optional(),
+    })
+    .prefault({}),
+  profile: z
+    .strictObject({
+      use: z.boolean().default(true),
+      /** Height of 0 °C above mean sea level; found in the scans where left out. */
+      freezingHeightAslM: z.number().min(-500).max(8000).optional(),
+    })
+    .prefault({}),
+  rate: z
+    .strictObject({
+      /** Showers and widespread rain are told apart. */
+      rainType: z.boolean().default(true),
+      /** KDP and ZDR take part where they hold. */
+      polarimetric: z.boolean().default(true),
+      hail: z.boolean().default(true),
+      /** Relations for the one and the other; the radar's own where left out. */
+      convective: relation.optional(),
+      stratiform: relation.optional(),
+    })
+    .prefault({}),
+});
+
 /** The plan of a run: everything that decides a figure, and nothing that does not. */
 export const planSchema = z.strictObject({
   title: z.string().min(1).max(200),
@@ -321,6 +379,7 @@ export const planSchema = z.strictObject({
         .default(["marshall-1955-200/1.6", "fulton-1998-300/1.4", "rosenfeld-1993-250/1.2"]),
     })
     .prefault({}),
+  echo: echo.prefault({}),
   pairs: z
     .strictObject({
       cell: z.enum(["nearest", "mean3x3"]).default("nearest"),
@@ -342,6 +401,7 @@ export const planSchema = z.strictObject({
 });
 
 export type Plan = z.output<typeof planSchema>;
+export type PlanEcho = Plan["echo"];
 export type PlanRadar = Plan["radars"][number];
 export type PlanGrids = Plan["grids"][number];
 export type PlanGaugeFiles = Plan["gauges"][number];

@@ -1,4 +1,5 @@
 import { FieldSum, type TotalPlanes, totalPlanes } from "@rainreckon/accumulation";
+import { COMPANIONS } from "./companions.ts";
 import {
   type AreaStepSeries,
   noCounts,
@@ -44,6 +45,7 @@ export function assemble(
     shape.radars.length + shape.grids.length,
     shape.variants.length,
     shape.headlineCells.length,
+    COMPANIONS,
   );
   const counts = noCounts();
   const notices = new Map<string, SweepFault>();
@@ -55,7 +57,7 @@ export function assemble(
     for (const part of rest.unseenMm) {
       for (let cell = 0; cell < unseen.length; cell++) unseen[cell] += part[cell];
     }
-    for (const key of Object.keys(counts) as (keyof UnitCounts)[]) counts[key] += rest.counts[key];
+    addCounts(counts, rest.counts);
     // A border scan that fails to decode is met by two units, and told once.
     for (const notice of rest.notices) notices.set(`${notice.where}|${notice.what}`, notice);
     pieces.push({ ...rest, intervals: [], unseenMm: [] });
@@ -91,4 +93,12 @@ export function assemble(
     counts,
     notices: [...notices.values()].sort((a, b) => (a.where < b.where ? -1 : 1)),
   };
+}
+
+function addCounts(sum: UnitCounts, part: UnitCounts): void {
+  const { gatesScreened, ...plain } = part;
+  for (const key of Object.keys(plain) as (keyof typeof plain)[]) sum[key] += plain[key];
+  gatesScreened.forEach((gates, screen) => {
+    sum.gatesScreened[screen] += gates;
+  });
 }

@@ -1,7 +1,25 @@
-import type { CellFractions, IntervalFields, TimeRules } from "@rainreckon/accumulation";
-import type { CapSetting, Grid, Interval, Notice, RadarSite, ZrRelation } from "@rainreckon/core";
+import type {
+  BlendedStep,
+  CellFractions,
+  IntervalFields,
+  RadarIntegrator,
+  RadarStep,
+  TimeRules,
+} from "@rainreckon/accumulation";
+import {
+  type CapSetting,
+  type EchoSettings,
+  type Grid,
+  type Interval,
+  type LearnedEcho,
+  type Notice,
+  type PolarEcho,
+  type RadarSite,
+  SCREENS,
+  type ZrRelation,
+} from "@rainreckon/core";
 import type { GriddedOptions, GriddedQuantity } from "@rainreckon/formats";
-import type { LookupRules } from "@rainreckon/mosaic";
+import type { GateRates, LookupRules, PolarLookup, RateLayer } from "@rainreckon/mosaic";
 import type { ScanPaths } from "../scans/scan-files.ts";
 
 /** A sweep as a unit of work needs it: where it is, and when it speaks. */
@@ -48,6 +66,14 @@ export interface JobConversion {
   readonly relations: readonly JobRelation[];
 }
 
+/** How the echo of a radar is worked on before it becomes rain, and what was learned for that. */
+export interface JobEcho {
+  readonly settings: EchoSettings;
+  readonly learned: LearnedEcho;
+  /** Whether showers and widespread rain are told apart. */
+  readonly rainType: boolean;
+}
+
 export interface JobRadar extends JobConversion {
   readonly site: RadarSite;
   readonly beamWidthDeg: number;
@@ -56,6 +82,8 @@ export interface JobRadar extends JobConversion {
   readonly time: TimeRules;
   readonly lookup: LookupRules;
   readonly rounds: readonly JobRound[];
+  /** Undefined where nothing is screened or corrected. */
+  readonly echo: JobEcho | undefined;
 }
 
 /** One layer of a gridded file. */
@@ -125,6 +153,17 @@ export interface UnitCounts {
   gridLayersDecoded: number;
   gridCellsRead: number;
   gridCellsCapped: number;
+  /** Of sweeps whose echo was worked on: gates with echo, and what became of gates. */
+  gatesWithEcho: number;
+  gatesFilled: number;
+  gatesLostInAttenuation: number;
+  gatesBlocked: number;
+  gatesHail: number;
+  gatesMelting: number;
+  gatesSnow: number;
+  gatesBesideCores: number;
+  /** Shape [SCREENS]: gates by the first screen that took them. */
+  readonly gatesScreened: number[];
 }
 
 export function noCounts(): UnitCounts {
@@ -136,6 +175,15 @@ export function noCounts(): UnitCounts {
     gridLayersDecoded: 0,
     gridCellsRead: 0,
     gridCellsCapped: 0,
+    gatesWithEcho: 0,
+    gatesFilled: 0,
+    gatesLostInAttenuation: 0,
+    gatesBlocked: 0,
+    gatesHail: 0,
+    gatesMelting: 0,
+    gatesSnow: 0,
+    gatesBesideCores: 0,
+    gatesScreened: SCREENS.map(() => 0),
   };
 }
 
@@ -158,4 +206,25 @@ export interface UnitResult {
   readonly counts: UnitCounts;
   /** Sweeps that could not be decoded. */
   readonly notices: readonly SweepFault[];
+}
+
+/** Is told, while a unit works, of all that its figures are made from. */
+export interface UnitTrace {
+  /** A sweep has spoken. `echo` is undefined where its stored numbers went straight to rain. */
+  sweep?(
+    radar: JobRadar,
+    sweep: JobSweep,
+    lookup: PolarLookup,
+    gates: GateRates,
+    echo: PolarEcho | undefined,
+  ): void;
+  /** A round is on the grid. */
+  layer?(radar: JobRadar, round: JobRound, layer: RateLayer): void;
+  /** The sources of a step were blended; shape of `sources` as in `sourceIds`. */
+  step?(
+    span: Interval,
+    step: number,
+    sources: readonly { readonly step: RadarStep; readonly integrator: RadarIntegrator }[],
+    blended: BlendedStep,
+  ): void;
 }

@@ -1,4 +1,4 @@
-import type { Grid, Sweep } from "@rainreckon/core";
+import type { Grid, Sweep, SweepHeader } from "@rainreckon/core";
 import {
   type PolarLookup,
   type Projection,
@@ -22,7 +22,7 @@ const AZIMUTH_STEP_DEG = 0.05;
 /** Lookups of one radar on one grid, built once per geometry. */
 export interface LookupShelf {
   /** @param sweep - only its geometry is looked at */
-  forSweep(sweep: Sweep): PolarLookup;
+  forSweep(sweep: SweepHeader & Pick<Sweep, "azimuthDeg">): PolarLookup;
 }
 
 const maps = new Map<string, Projection>();

@@ -7,6 +7,7 @@ import {
   InputError,
   type Interval,
   midEpochMs,
+  NOTHING_LEARNED,
   type Notice,
   type ZrRelation,
 } from "@rainreckon/core";
@@ -21,6 +22,7 @@ import { version } from "../version.ts";
 import { checkAssets } from "./assets.ts";
 import { relationWasNotChosen } from "./cautions.ts";
 import { conversionOf } from "./conversion.ts";
+import { echoSettings } from "./echo-settings.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { type GridInput, indexGrids } from "./grid-inputs.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
@@ -84,6 +86,7 @@ export async function prepareRun(
   const gauges = await readGauges(loaded, grid, map, window, sites, log, seen);
   const catchments = await catchmentsOf(loaded, grid, map, log, seen);
   await checkAssets(loaded, grid, map, log, seen);
+  await hashTerrain(loaded, log, seen);
   const district = catchments.length > 0 ? unionOfAreas(catchments, grid) : wholeGrid(grid);
   const headlineRelations = plan.rain.headlineRelations.map((name) => ({
     name,
@@ -192,6 +195,22 @@ function refuseSingleInstants(
   );
 }
 
+/** The terrain model is an input like any other; the learning before the units reads it. */
+async function hashTerrain(
+  { folder, terrainFile }: LoadedPlan,
+  log: LeftOutLog,
+  seen: (input: ManifestInput) => void,
+): Promise<void> {
+  if (terrainFile === undefined) return;
+  try {
+    const { name, sha256, bytes } = await hashFile(folder, terrainFile);
+    seen({ path: name, kind: "terrain", sha256, bytes, use: "used" });
+  } catch (error) {
+    if (!(error instanceof InputError)) throw error;
+    log.add("terrain left out", error);
+  }
+}
+
 async function catchmentsOf(
   loaded: LoadedPlan,
   grid: Grid,
@@ -258,7 +277,7 @@ export function jobRadar(
       isLast: k === rounds.length - 1,
     };
   });
-  return {
+  const job: Omit<JobRadar, "echo"> = {
     ...conversionOf({ ...radar, minRateMmPerHour: plan.rain.minRateMmPerHour }, `radar ${radar.id}`, log),
     site,
     beamWidthDeg,
@@ -275,5 +294,13 @@ export function jobRadar(
       blockedSectors: radar.blockedSectors,
     },
     rounds: jobRounds,
+  };
+  const settings = echoSettings(plan, radar, job, sensitivity);
+  return {
+    ...job,
+    echo:
+      settings === undefined
+        ? undefined
+        : { settings, learned: NOTHING_LEARNED, rainType: plan.echo.rate.rainType },
   };
 }

@@ -18,6 +18,7 @@ import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
 import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
+import { LEARNED, learnBeforehand, learnsBeforehand, writeLearnedOf } from "./learned-run.ts";
 import {
   type OutputSources,
   writeCatchments,
@@ -86,19 +87,22 @@ export async function runTotal(
   }
   const indexedMs = performance.now() - started;
 
-  const progress = progressBar(terminal, planned.jobs.length, "units of work");
-  const { store, resumed } = await workUnits(planned, folder.unitsFolder, options.workers, progress);
+  const taught = await learnBeforehand(planned, log);
+  if (learnsBeforehand(taught)) await writeLearnedOf(taught, folder.draft(LEARNED));
+  const learnedMs = performance.now() - started;
+  const progress = progressBar(terminal, taught.jobs.length, "units of work");
+  const { store, resumed } = await workUnits(taught, folder.unitsFolder, options.workers, progress);
   progress.end();
   const workedMs = performance.now() - started;
   const total = assemble(
-    planned.shape,
-    planned.jobs,
+    taught.shape,
+    taught.jobs,
     store,
     planned.window.endEpochMs - planned.window.startEpochMs,
   );
   for (const { what, where, fix } of total.notices) log.add("sweep left out", { what, where, fix });
-  refuseUndecodable(planned, total);
-  const run = { ...planned, inputs: inputsAfterWork(planned.inputs, planned.shape, total.notices) };
+  refuseUndecodable(taught, total);
+  const run = { ...taught, inputs: inputsAfterWork(taught.inputs, taught.shape, total.notices) };
   const comparison = compareWithGauges(run, total);
   const adjustedTotalMm = comparison.adjustment.applied
     ? sumAdjusted(run, total, comparison.adjustment, store)
@@ -132,6 +136,7 @@ export async function runTotal(
     "gauges.csv",
     "scores.json",
     "report.html",
+    ...(learnsBeforehand(run) ? [LEARNED] : []),
   ];
   await writeReadme(sources, [...files, "README.txt", MANIFEST, RUN_LOG]);
   files.push("README.txt");
@@ -147,7 +152,8 @@ export async function runTotal(
     resumedUnits: resumed,
     units: run.jobs.length,
     indexSeconds: seconds(indexedMs),
-    workSeconds: seconds(workedMs - indexedMs),
+    learnSeconds: seconds(learnedMs - indexedMs),
+    workSeconds: seconds(workedMs - learnedMs),
     handOverSeconds: seconds(performance.now() - started - workedMs),
   });
   folder.publish([...files, RUN_LOG]);

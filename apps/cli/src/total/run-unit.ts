@@ -1,128 +1,37 @@
 import { setImmediate as breathe } from "node:timers/promises";
-import { arealDepth, blendStep, FieldSum, pointDepth, RadarIntegrator } from "@rainreckon/accumulation";
-import { InputError, type ZrRelation } from "@rainreckon/core";
+import { arealDepth, blendStep, FieldSum, pointDepth } from "@rainreckon/accumulation";
 import { formatsReady } from "@rainreckon/formats";
-import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
-import { openScans } from "../scans/scan-files.ts";
+import { COMPANIONS } from "./companions.ts";
 import { GridFeed } from "./grid-feed.ts";
 import {
   type AreaStepSeries,
-  type JobRadar,
-  type JobRound,
-  type JobSweep,
   noCounts,
   type RunShape,
   type StepSeries,
   type SweepFault,
-  type UnitCounts,
   type UnitJob,
   type UnitResult,
+  type UnitTrace,
 } from "./job.ts";
-import { lookupShelf } from "./lookup-shelf.ts";
-import { placesOf } from "./places-of.ts";
-import { countCapped, RateMaker } from "./rate-maker.ts";
+import { RadarFeed } from "./radar-feed.ts";
 import { UnseenDepth } from "./unseen.ts";
-
-/** One radar inside a unit: its rounds in time order, decoded one at a time. */
-class RadarFeed {
-  readonly integrator: RadarIntegrator;
-  readonly #radar: JobRadar;
-  readonly #rounds: readonly JobRound[];
-  readonly #rates: RateMaker;
-  readonly #shape: RunShape;
-  readonly #owned: (epochMs: number) => boolean;
-  #next = 0;
-
-  constructor(radar: JobRadar, shape: RunShape, job: UnitJob) {
-    const from = job.steps[0].startEpochMs;
-    const to = job.steps[job.steps.length - 1].endEpochMs;
-    const reachMs = Math.max(radar.time.maxGapMs, radar.time.medianRoundMs / 2);
-    this.#radar = radar;
-    this.#shape = shape;
-    this.#rates = new RateMaker(radar);
-    this.#owned = (epochMs) => epochMs > from && epochMs <= to;
-    this.#rounds = radar.rounds.filter(
-      (round) => round.lastMidEpochMs >= from - reachMs && round.firstMidEpochMs <= to + reachMs,
-    );
-    this.integrator = new RadarIntegrator(job.steps, radar.time, {
-      cellCount: shape.grid.nx * shape.grid.ny,
-      headlineCells: shape.headlineCells,
-      variantCount: shape.variants.length,
-    });
-  }
-
-  /** Earliest instant of the round that comes next; Infinity when there is none. */
-  get nextEpochMs(): number {
-    return this.#rounds[this.#next]?.firstMidEpochMs ?? Infinity;
-  }
-
-  relationAt(epochMs: number): ZrRelation {
-    return this.#rates.relationAt(epochMs);
-  }
-
-  /** Decodes the next round and adds it. */
-  advance(counts: UnitCounts, notices: SweepFault[]): void {
-    const round = this.#rounds[this.#next++];
-    const layer = this.#layer(round, counts, notices);
-    if (layer !== undefined) this.integrator.add(layer, round);
-  }
-
-  #layer(round: JobRound, counts: UnitCounts, notices: SweepFault[]): RateLayer | undefined {
-    const { grid, headlineCells, variants } = this.#shape;
-    const builder = new RateLayerBuilder(grid.nx * grid.ny, headlineCells, variants.length);
-    let spoken = 0;
-    for (const sweep of round.sweeps) {
-      try {
-        spoken += this.#addSweep(builder, sweep, spoken > 0, counts);
-      } catch (error) {
-        if (!(error instanceof InputError)) throw error;
-        // Readers name the file as it was handed to them; people and other machines know it by its name.
-        const where = error.where.replace(sweep.path, sweep.name);
-        notices.push({ what: error.what, where, fix: error.fix, file: sweep.name });
-      }
-    }
-    return spoken > 0 ? builder.finish() : undefined;
-  }
-
-  #addSweep(builder: RateLayerBuilder, sweep: JobSweep, higher: boolean, counts: UnitCounts): number {
-    const file = openScans(sweep, placesOf(this.#radar));
-    try {
-      const shape = file.readSweep(sweep.index, []);
-      const lookup = lookupShelf(this.#shape.grid, this.#radar).forSweep(shape);
-      if (!builder.canFill(lookup)) return 0;
-      const decoded = file.readSweep(sweep.index, [this.#radar.moment]);
-      const where = `${sweep.name}, ${decoded.origin.dataset}`;
-      const relation = this.#rates.relationAt(sweep.midEpochMs);
-      const gates = this.#rates.rates(decoded, relation, where);
-      const others = this.#shape.variants.map((variant) => this.#rates.rates(decoded, variant, where));
-      const filled = builder.add(lookup, gates, others, sweep.midEpochMs);
-      if (this.#owned(sweep.midEpochMs)) {
-        counts.sweepsDecoded++;
-        counts.gatesRead += decoded.rayCount * decoded.gateCount;
-        counts.gatesCapped += countCapped(gates);
-        if (higher) counts.cellsFilledByHigherSweep += filled;
-      }
-      return filled;
-    } finally {
-      file.close();
-    }
-  }
-}
 
 /**
  * Does one unit of work: decodes the rounds that can reach into it (those at its borders too), and returns
  * complete depths for each of its intervals, and series at gauges and areas on its steps.
  *
  * A unit depends on nothing but its job, so units may run in any order and anywhere.
+ *
+ * @param trace - is told of what happens on the way, by who must account for it; it changes nothing
  */
-export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult> {
+export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace): Promise<UnitResult> {
   await formatsReady();
   const { grid, headlineCells, variants } = shape;
   const cellCount = grid.nx * grid.ny;
-  const size = { cellCount, headlineCells, variantCount: variants.length };
+  const size = { cellCount, headlineCells, variantCount: variants.length, companions: COMPANIONS };
   const counts = noCounts();
   const notices: SweepFault[] = [];
-  const radars = shape.radars.map((radar) => new RadarFeed(radar, shape, job));
+  const radars = shape.radars.map((radar) => new RadarFeed(radar, shape, job, trace));
   const feeds = [...radars, ...shape.grids.map((grids) => new GridFeed(grids, shape, job))];
   const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
   const areas: AreaStepSeries = {
@@ -133,7 +42,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
   const intervals: UnitResult["intervals"][number][] = [];
   const unseen = new UnseenDepth(grid, shape.radars);
   const unseenMm: Float32Array[] = [];
-  let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
+  let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length, COMPANIONS);
 
   for (let step = 0; step < job.steps.length; step++) {
     // Lets signals through: without it, work of hours on one processor could not be interrupted.
@@ -146,6 +55,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
     // Integrators are asked for stretches of the step, so their layers are released only after blending.
     const taken = feeds.map((feed) => ({ step: feed.integrator.take(step), integrator: feed.integrator }));
     const blended = blendStep(span, step, taken, size);
+    trace?.step?.(span, step, taken, blended);
     for (const feed of feeds) feed.integrator.release();
     for (let g = 0; g < shape.gaugeCells.length; g++) {
       const point = pointDepth(shape.gaugeCells[g], blended, lengthMs);
@@ -165,7 +75,7 @@ export async function runUnit(shape: RunShape, job: UnitJob): Promise<UnitResult
     if (span.endEpochMs === interval.endEpochMs) {
       intervals.push(sum.toInterval(interval));
       unseenMm.push(unseen.take());
-      sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length);
+      sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length, COMPANIONS);
     }
   }
   return { intervals, unseenMm, gauges, areas, counts, notices };

@@ -1,0 +1,159 @@
+import {
+  EchoChain,
+  firstScreenOf,
+  gateRate,
+  markBit,
+  type PolarEcho,
+  type RateSettings,
+  resolveCap,
+  SCREENS,
+  type ZrRelation,
+} from "@rainreckon/core";
+import { type GateRates, type PolarLookup, rainTypeOfGates, trustIn } from "@rainreckon/mosaic";
+import { COMPANIONS, companionIndex } from "./companions.ts";
+import type { JobEcho, JobRadar, RunShape, UnitCounts } from "./job.ts";
+
+/** What a worked sweep says, by gate: under the relation in use, and under each other one. */
+export interface WorkedRain {
+  readonly gates: GateRates;
+  readonly others: readonly GateRates[];
+}
+
+const BITS = {
+  filled: markBit("filled"),
+  lost: markBit("lost-in-attenuation"),
+  blocked: markBit("blocked"),
+  hail: markBit("hail"),
+  melting: markBit("melting"),
+  snow: markBit("snow"),
+  sideLobe: markBit("side-lobe"),
+  convective: markBit("convective"),
+} as const;
+
+/** Takes the echo of one radar through all steps to rain, with what is to be known of it beside. */
+export class EchoWork {
+  readonly #radar: JobRadar;
+  readonly #echo: JobEcho;
+  readonly #shape: RunShape;
+  readonly #chain: EchoChain;
+
+  constructor(radar: JobRadar, echo: JobEcho, shape: RunShape) {
+    this.#radar = radar;
+    this.#echo = echo;
+    this.#shape = shape;
+    this.#chain = new EchoChain(echo.settings, echo.learned);
+  }
+
+  /**
+   * @param echo - is worked on in place
+   * @param above - the sweep above, as measured
+   */
+  rain(echo: PolarEcho, above: PolarEcho | undefined, lookup: PolarLookup, relation: ZrRelation): WorkedRain {
+    const { grid, variants } = this.#shape;
+    this.#chain.correct(echo, above);
+    const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
+    this.#chain.bringDown(echo, type);
+    const rates = this.#rates(echo, relation);
+    const companions = this.#companions(echo, relation);
+    const trust = trustOf(echo);
+    const beside = { codes: undefined, trust };
+    return {
+      gates: { ...rates, ...beside, companions },
+      others: variants.map((variant) => ({ ...this.#rates(echo, variant), ...beside })),
+    };
+  }
+
+  /** Adds what was done to a worked sweep to the counts. */
+  count({ measuredDbz, screenedBy, marks }: PolarEcho, counts: UnitCounts): void {
+    for (let gate = 0; gate < marks.length; gate++) {
+      if ((measuredDbz[gate] as number) > Number.NEGATIVE_INFINITY) counts.gatesWithEcho++;
+      const screened = screenedBy[gate] as number;
+      if (screened !== 0) counts.gatesScreened[SCREENS.indexOf(firstScreenOf(screened))]++;
+      const mark = marks[gate] as number;
+      if (mark === 0) continue;
+      if ((mark & BITS.filled) !== 0) counts.gatesFilled++;
+      if ((mark & BITS.lost) !== 0) counts.gatesLostInAttenuation++;
+      if ((mark & BITS.blocked) !== 0) counts.gatesBlocked++;
+      if ((mark & BITS.hail) !== 0) counts.gatesHail++;
+      if ((mark & BITS.melting) !== 0) counts.gatesMelting++;
+      if ((mark & BITS.snow) !== 0) counts.gatesSnow++;
+      if ((mark & BITS.sideLobe) !== 0) counts.gatesBesideCores++;
+    }
+  }
+
+  #settings(relation: ZrRelation): RateSettings {
+    const { cap, minRateMmPerHour } = this.#radar;
+    return { relation, cap: resolveCap(cap, relation), minRateMmPerHour, offsetDb: 0 };
+  }
+
+  #rates(echo: PolarEcho, relation: ZrRelation): { rateMmPerHour: Float32Array; capped: Uint8Array } {
+    const settings = this.#settings(relation);
+    const rateMmPerHour = new Float32Array(echo.dbz.length);
+    const capped = new Uint8Array(echo.dbz.length);
+    for (let gate = 0; gate < rateMmPerHour.length; gate++) {
+      const one = gateRate(echo.dbz[gate] as number, settings);
+      rateMmPerHour[gate] = one.rate;
+      capped[gate] = one.capped;
+    }
+    return { rateMmPerHour, capped };
+  }
+
+  /** In the order of COMPANIONS; undefined where 0 everywhere. */
+  #companions(echo: PolarEcho, relation: ZrRelation): (Float32Array | undefined)[] {
+    const list: (Float32Array | undefined)[] = COMPANIONS.map(() => undefined);
+    for (const effect of ["blockage", "attenuation", "gas", "profile"] as const) {
+      list[companionIndex(`${effect}_correction`)] = echo.effectsDb.get(effect);
+    }
+    list[companionIndex("two_way_loss")] = echo.twoWayLossDb;
+    list[companionIndex("blocked_fraction")] = echo.blockedFraction;
+    list[companionIndex("filled_fraction")] = shareOf(echo.marks, BITS.filled);
+    list[companionIndex("hail_fraction")] = shareOf(echo.marks, BITS.hail);
+    list[companionIndex("melting_fraction")] = shareOf(echo.marks, BITS.melting);
+    list[companionIndex("snow_fraction")] = shareOf(echo.marks, BITS.snow);
+    list[companionIndex("convective_fraction")] = shareOf(echo.marks, BITS.convective);
+    this.#tolls(echo, relation, list);
+    return list;
+  }
+
+  /** Rain that screened gates would have made under the relation in use, under the first screen that took each. */
+  #tolls(
+    { measuredDbz, screenedBy }: PolarEcho,
+    relation: ZrRelation,
+    list: (Float32Array | undefined)[],
+  ): void {
+    const settings = { ...this.#settings(relation), offsetDb: this.#echo.settings.offsetDb };
+    const first = companionIndex(`screened_depth_${SCREENS[0].replaceAll("-", "_")}`);
+    for (let gate = 0; gate < screenedBy.length; gate++) {
+      const bits = screenedBy[gate] as number;
+      if (bits === 0) continue;
+      const { rate } = gateRate(measuredDbz[gate] as number, settings);
+      if (!(rate > 0)) continue;
+      const at = first + SCREENS.indexOf(firstScreenOf(bits));
+      list[at] ??= new Float32Array(screenedBy.length);
+      (list[at] as Float32Array)[gate] = rate;
+    }
+  }
+}
+
+/** 1 where a bit is set, else 0; undefined where it is set nowhere. */
+function shareOf(marks: Uint16Array, bit: number): Float32Array | undefined {
+  let share: Float32Array | undefined;
+  for (let gate = 0; gate < marks.length; gate++) {
+    if (((marks[gate] as number) & bit) === 0) continue;
+    share ??= new Float32Array(marks.length);
+    share[gate] = 1;
+  }
+  return share;
+}
+
+/** How far each gate is to be trusted for what was lost on the way; undefined where nothing was. */
+function trustOf({ blockedFraction, twoWayLossDb }: PolarEcho): Float32Array | undefined {
+  if (blockedFraction === undefined && twoWayLossDb === undefined) return undefined;
+  const length = (blockedFraction ?? twoWayLossDb)?.length ?? 0;
+  const trust = new Float32Array(length);
+  for (let gate = 0; gate < length; gate++) {
+    // Not known is taken for nothing: a weight of NaN would silence the gate.
+    trust[gate] = trustIn(blockedFraction?.[gate] || 0, twoWayLossDb?.[gate] || 0);
+  }
+  return trust;
+}

@@ -1,0 +1,60 @@
+import type { LearnedEcho } from "@rainreckon/core";
+import { type LearnedValue, writeLearned } from "@rainreckon/formats";
+import type { LeftOutLog } from "../ui/left-out.ts";
+import { version } from "../version.ts";
+import type { JobEcho, JobRadar } from "./job.ts";
+import { learnEchoes } from "./learn.ts";
+import type { PreparedRun } from "./prepare.ts";
+
+/** What was learned before the units of work, where any echo is worked on. */
+export const LEARNED = "learned.nc";
+
+type WorkedRadar = JobRadar & { readonly echo: JobEcho };
+
+function isWorked(radar: JobRadar): radar is WorkedRadar {
+  return radar.echo !== undefined;
+}
+
+/** True where the plan has any step from echo to rain taken. */
+export function learnsBeforehand({ shape }: PreparedRun): boolean {
+  return shape.radars.some(isWorked);
+}
+
+/** The run with what its scans teach of its radars in the job of every unit. */
+export async function learnBeforehand(run: PreparedRun, log: LeftOutLog): Promise<PreparedRun> {
+  const worked = run.shape.radars.filter(isWorked);
+  if (worked.length === 0) return run;
+  const learned = await learnEchoes(
+    worked.map((radar) => ({ radar, ...radar.echo })),
+    run.grid,
+    run.loaded,
+    log,
+  );
+  return withLearned(run, new Map(worked.map(({ site }, k) => [site.id, learned[k] as LearnedEcho])));
+}
+
+/** The run with what is known of its radars, by site id. */
+export function withLearned(run: PreparedRun, learned: ReadonlyMap<string, LearnedEcho>): PreparedRun {
+  const radars = run.shape.radars.map((radar): JobRadar => {
+    const known = learned.get(radar.site.id);
+    return radar.echo === undefined || known === undefined
+      ? radar
+      : { ...radar, echo: { ...radar.echo, learned: known } };
+  });
+  return { ...run, shape: { ...run.shape, radars } };
+}
+
+/** Leaves what was learned in a file. */
+export async function writeLearnedOf(run: PreparedRun, file: string): Promise<void> {
+  const byRadar = Object.fromEntries(
+    run.shape.radars
+      .filter(isWorked)
+      .map(({ site, echo }) => [site.id, echo.learned as unknown as LearnedValue]),
+  );
+  await writeLearned(file, byRadar, {
+    title: "What a run learned of its radars before its first total",
+    source: `rainreckon ${version()}`,
+    comment:
+      "By radar: echo that stays in place, blocked sectors, phase of the system, loss per degree of phase, melting layer and vertical profile. An estimate from the scans of this run; not a survey of the site.",
+  });
+}
