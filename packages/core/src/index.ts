@@ -164,6 +164,7 @@ export {
   type ScreeningSettings,
 } from "./echo/screening/settings.ts";
 export {
+  type FixedEcho,
   type LearnedStaticEcho,
   type LearnedSweep,
   StaticEchoLearner,

@@ -1,4 +1,5 @@
-import { type PolarEcho, type Screen, screenBit } from "../polar-echo.ts";
+import { type Screen, screenBit } from "../polar-echo.ts";
+import type { SweepView } from "./sweep-view.ts";
 
 /**
  * What the screens hold against each gate.
@@ -36,9 +37,10 @@ export function bitsOf(screens: readonly Screen[]): number {
 }
 
 /** Weighs the evidence of every gate and writes what holds into `screenedBy`. */
-export function weighEvidence(echo: PolarEcho, { strong, weak }: Evidence): void {
+export function weighEvidence({ echo, echoAt }: SweepView, { strong, weak }: Evidence): void {
   const { screenedBy, rhohv } = echo;
-  for (let at = 0; at < screenedBy.length; at++) {
+  for (let k = 0; k < echoAt.length; k++) {
+    const at = echoAt[k] as number;
     let alone = strong[at] as number;
     let supporting = weak[at] as number;
     if ((alone | supporting) === 0) continue;

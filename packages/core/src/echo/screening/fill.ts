@@ -15,15 +15,15 @@ const ENOUGH = 3;
  * @returns how many were filled
  */
 export function fillFromNeighbours(view: SweepView): number {
-  const { echo, rayCount, gateCount } = view;
+  const { echo, rayCount, gateCount, echoAt, echoStart } = view;
   const { dbz, screenedBy, marks } = echo;
   const bit = markBit("filled");
   let filled = 0;
   for (let ray = 0; ray < rayCount; ray++) {
-    for (let gate = 0; gate < gateCount; gate++) {
-      const at = ray * gateCount + gate;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
       if (screenedBy[at] === 0) continue;
-      const value = meanAround(view, ray, gate);
+      const value = meanAround(view, ray, at - ray * gateCount);
       if (Number.isNaN(value)) continue;
       dbz[at] = value;
       marks[at] = (marks[at] as number) | bit;

@@ -13,13 +13,14 @@ export const FILTERED_STRONG_DB = 25;
  * Filters take some 20 to 40 dB of ground echo (common practice), so that 25 dB is strong evidence; rain across
  * the beam loses power to them too, so that less is weak.
  */
-export function screenFilteredPower({ echo }: SweepView, { strong, weak }: Evidence): void {
+export function screenFilteredPower({ echo, echoAt }: SweepView, { strong, weak }: Evidence): void {
   const bit = screenBit("filtered-power");
   const { measuredDbz } = echo;
   const unfiltered = echo.unfilteredDbz as Float32Array;
-  for (let at = 0; at < measuredDbz.length; at++) {
+  for (let k = 0; k < echoAt.length; k++) {
+    const at = echoAt[k] as number;
     const tookDb = (unfiltered[at] as number) - (measuredDbz[at] as number);
-    if (!(tookDb >= FILTERED_WEAK_DB && tookDb < Number.POSITIVE_INFINITY)) continue;
+    if (!(tookDb >= FILTERED_WEAK_DB)) continue;
     if (tookDb >= FILTERED_STRONG_DB) strong[at] = (strong[at] as number) | bit;
     else weak[at] = (weak[at] as number) | bit;
   }

@@ -16,14 +16,14 @@ export const STRONG_RHOHV = 0.75;
  */
 export function screenLowCorrelation(view: SweepView, { strong, weak }: Evidence): void {
   const bit = screenBit("low-correlation");
-  const { echo, rayCount, gateCount, rangeGainDb, noiseAt1KmDbz } = view;
+  const { echo, rayCount, gateCount, rangeGainDb, noiseAt1KmDbz, echoAt, echoStart } = view;
   const rhohv = echo.rhohv as Float32Array;
   for (let ray = 0; ray < rayCount; ray++) {
-    const start = ray * gateCount;
-    for (let gate = 0; gate < gateCount; gate++) {
-      const at = start + gate;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
       const rho = rhohv[at] as number;
       if (!(rho < WEAK_RHOHV)) continue;
+      const gate = at - ray * gateCount;
       const aboveDb = (echo.measuredDbz[at] as number) - (rangeGainDb[gate] as number) - noiseAt1KmDbz;
       if (!(aboveDb >= CLEAR_OF_NOISE_DB)) continue;
       if (rho < STRONG_RHOHV) strong[at] = (strong[at] as number) | bit;
@@ -46,16 +46,17 @@ export const STRONG_PHASE_DEG = 45;
  */
 export function screenNoisyPhase(view: SweepView, { strong, weak }: Evidence): void {
   const bit = screenBit("noisy-phase");
-  const { echo, rayCount, gateCount, rangeGainDb, noiseAt1KmDbz } = view;
+  const { echo, rayCount, gateCount, rangeGainDb, noiseAt1KmDbz, echoAt, echoStart } = view;
   const phase = echo.phidpDeg as Float32Array;
   for (let ray = 0; ray < rayCount; ray++) {
-    const start = ray * gateCount;
-    for (let gate = 2; gate + 2 < gateCount; gate++) {
-      const at = start + gate;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
       const here = phase[at] as number;
       const before = phaseApartDeg(here, phase[at - 1] as number);
       const after = phaseApartDeg(here, phase[at + 1] as number);
-      if (!(before >= WEAK_PHASE_DEG || after >= WEAK_PHASE_DEG)) continue;
+      if (before < WEAK_PHASE_DEG && after < WEAK_PHASE_DEG) continue;
+      const gate = at - ray * gateCount;
+      if (gate < 2 || gate + 2 >= gateCount) continue;
       const deg = secondSmallest(
         before,
         after,
@@ -98,18 +99,20 @@ export const CLEAR_AIR = { belowDbz: 20, aboveZdrDb: 2.5, belowRhohv: 0.9, below
  */
 export function screenClearAir(view: SweepView, { strong }: Evidence): void {
   const bit = screenBit("clear-air");
-  const { echo, rayCount, gateCount, heightM, rangeGainDb, noiseAt1KmDbz } = view;
+  const { echo, rayCount, gateCount, heightM, rangeGainDb, noiseAt1KmDbz, echoAt, echoStart } = view;
   const rhohv = echo.rhohv as Float32Array;
   const zdr = echo.zdrDb as Float32Array;
-  for (let gate = 0; gate < gateCount; gate++) {
-    if ((heightM[gate] as number) > CLEAR_AIR.belowHeightM) break;
-    const clearDbz = (rangeGainDb[gate] as number) + noiseAt1KmDbz + CLEAR_OF_NOISE_DB;
-    for (let ray = 0; ray < rayCount; ray++) {
-      const at = ray * gateCount + gate;
-      if (!((rhohv[at] as number) < CLEAR_AIR.belowRhohv && (zdr[at] as number) > CLEAR_AIR.aboveZdrDb))
-        continue;
+  for (let ray = 0; ray < rayCount; ray++) {
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
       const dbz = echo.measuredDbz[at] as number;
-      if (dbz < CLEAR_AIR.belowDbz && dbz >= clearDbz) strong[at] = (strong[at] as number) | bit;
+      if (!(dbz < CLEAR_AIR.belowDbz && (rhohv[at] as number) < CLEAR_AIR.belowRhohv)) continue;
+      const gate = at - ray * gateCount;
+      if (!((zdr[at] as number) > CLEAR_AIR.aboveZdrDb && (heightM[gate] as number) < CLEAR_AIR.belowHeightM))
+        continue;
+      if (dbz >= (rangeGainDb[gate] as number) + noiseAt1KmDbz + CLEAR_OF_NOISE_DB) {
+        strong[at] = (strong[at] as number) | bit;
+      }
     }
   }
 }

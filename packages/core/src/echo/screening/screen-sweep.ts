@@ -8,9 +8,8 @@ import { markSideLobes } from "./side-lobe.ts";
 import { screenSpeckle } from "./speckle.ts";
 import { screenSpikes } from "./spike.ts";
 import { type LearnedStaticEcho, learnedFor, screenLearned } from "./static-echo.ts";
-import { screenStillEcho } from "./still-echo.ts";
-import { viewSweep } from "./sweep-view.ts";
-import { roughness, screenTexture } from "./texture.ts";
+import { type SweepView, viewSweep } from "./sweep-view.ts";
+import { screenRoughness } from "./texture.ts";
 import { screenVerticalGradient } from "./vertical-gradient.ts";
 
 /**
@@ -46,14 +45,11 @@ export function screenSweep(
   const known = learnedFor(echo, learned);
   const unlearned = known === undefined ? "rounds to learn from" : undefined;
   ask("static-echo", unlearned, () => {
-    if (known !== undefined) screenLearned(view, known, known.staticUpToDbz, "static-echo", evidence);
+    if (known !== undefined) screenLearned(view, known, known.static, "static-echo", evidence);
   });
-  const rough = isOn("still-echo") || isOn("texture") ? roughness(view) : new Uint8Array(0);
-  ask("still-echo", lacks(echo.velocityMPerS, "VRADH"), () => screenStillEcho(view, rough, evidence));
   ask("filtered-power", lacks(echo.unfilteredDbz, "TH"), () => screenFilteredPower(view, evidence));
   ask("low-correlation", lacks(echo.rhohv, "RHOHV"), () => screenLowCorrelation(view, evidence));
   ask("noisy-phase", lacks(echo.phidpDeg, "PHIDP"), () => screenNoisyPhase(view, evidence));
-  ask("texture", undefined, () => screenTexture(view, rough, evidence));
   ask("vertical-gradient", above === undefined ? "a sweep above" : undefined, () => {
     if (above !== undefined && !screenVerticalGradient(view, above, evidence)) {
       couldNotRun.push({ screen: "vertical-gradient", lacking: "a sweep close above" });
@@ -61,39 +57,48 @@ export function screenSweep(
   });
   ask("spike", undefined, () => screenSpikes(view, evidence));
   ask("fixed-point", unlearned, () => {
-    if (known !== undefined) screenLearned(view, known, known.pointUpToDbz, "fixed-point", evidence);
+    if (known !== undefined) screenLearned(view, known, known.points, "fixed-point", evidence);
   });
   ask("clear-air", lacks(echo.zdrDb, "ZDR") ?? lacks(echo.rhohv, "RHOHV"), () =>
     screenClearAir(view, evidence),
   );
-  weighEvidence(echo, evidence);
+  // Last, since they only support what others found.
+  let supporting = 0;
+  ask("still-echo", lacks(echo.velocityMPerS, "VRADH"), () => {
+    supporting |= screenBit("still-echo");
+  });
+  ask("texture", undefined, () => {
+    supporting |= screenBit("texture");
+  });
+  if (supporting !== 0) screenRoughness(view, supporting, evidence);
+  weighEvidence(view, evidence);
   ask("speckle", undefined, () => screenSpeckle(view));
 
-  const counts = takeScreened(echo);
+  couldNotRun.sort((a, b) => screenBit(a.screen) - screenBit(b.screen));
+  const counts = takeScreened(view);
   const filledGates = settings.fill === "neighbours" ? fillFromNeighbours(view) : 0;
   return { ...counts, filledGates, sideLobeGates: markSideLobes(view), couldNotRun };
 }
 
 /** Makes screened gates not observed, and counts them. */
-function takeScreened({ measuredDbz, dbz, screenedBy }: PolarEcho) {
+function takeScreened({ echo: { dbz, screenedBy }, echoAt }: SweepView) {
   const gatesByScreen = new Uint32Array(SCREENS.length);
   const gatesByFirstScreen = new Uint32Array(SCREENS.length);
   const bits = SCREENS.map(screenBit);
-  let echoGates = 0;
   let screenedGates = 0;
-  for (let at = 0; at < dbz.length; at++) {
-    if ((measuredDbz[at] as number) > Number.NEGATIVE_INFINITY) echoGates++;
+  for (let k = 0; k < echoAt.length; k++) {
+    const at = echoAt[k] as number;
     const by = screenedBy[at] as number;
     if (by === 0) continue;
     dbz[at] = Number.NaN;
     screenedGates++;
     let first = true;
-    for (let k = 0; k < bits.length; k++) {
-      if ((by & (bits[k] as number)) === 0) continue;
-      gatesByScreen[k] = (gatesByScreen[k] as number) + 1;
-      if (first) gatesByFirstScreen[k] = (gatesByFirstScreen[k] as number) + 1;
+    for (let screen = 0; screen < bits.length; screen++) {
+      if ((by & (bits[screen] as number)) === 0) continue;
+      gatesByScreen[screen] = (gatesByScreen[screen] as number) + 1;
+      if (first) gatesByFirstScreen[screen] = (gatesByFirstScreen[screen] as number) + 1;
       first = false;
     }
   }
-  return { echoGates, screenedGates, gatesByScreen, gatesByFirstScreen };
+  return { echoGates: echoAt.length, screenedGates, gatesByScreen, gatesByFirstScreen };
 }

@@ -15,13 +15,14 @@ const MAIN_LOBE_DEG = 1.5;
  * @returns how many gates are marked
  */
 export function markSideLobes(view: SweepView): number {
-  const { echo, rayCount, gateCount, rayStepDeg } = view;
+  const { echo, rayCount, gateCount, rayStepDeg, echoAt } = view;
   const { measuredDbz, marks, screenedBy } = echo;
   const bit = markBit("side-lobe");
   const widest = Math.min(Math.floor(WITHIN_DEG / rayStepDeg), (rayCount - 1) >> 1);
   const narrowest = Math.ceil(MAIN_LOBE_DEG / rayStepDeg);
   let marked = 0;
-  for (let at = 0; at < measuredDbz.length; at++) {
+  for (let k = 0; k < echoAt.length; k++) {
+    const at = echoAt[k] as number;
     if (!((measuredDbz[at] as number) >= CORE_DBZ) || screenedBy[at] !== 0) continue;
     const ray = Math.floor(at / gateCount);
     const gate = at - ray * gateCount;

@@ -10,38 +10,39 @@ const ENOUGH_NEIGHBOURS = 2;
  * Beside gates that are not observed nothing is judged. Common practice; the number is a house rule.
  */
 export function screenSpeckle(view: SweepView): void {
-  const { echo, rayCount, gateCount } = view;
+  const { echo, rayCount, gateCount, echoAt, echoStart } = view;
   const { measuredDbz, screenedBy } = echo;
   const bit = screenBit("speckle");
-  // Of each gate: 1 echo that stands, 9 not observed, 0 else; beyond an end of a ray nothing is.
-  const kind = new Uint8Array(measuredDbz.length);
-  for (let at = 0; at < kind.length; at++) {
-    const dbz = measuredDbz[at] as number;
-    kind[at] = dbz > Number.NEGATIVE_INFINITY ? (screenedBy[at] === 0 ? 1 : 0) : Number.isNaN(dbz) ? 9 : 0;
-  }
+  // Judged on what the other screens left, not on what this one takes on the way.
+  const alone: number[] = [];
+  const stands = (at: number): boolean =>
+    screenedBy[at] === 0 && (measuredDbz[at] as number) > Number.NEGATIVE_INFINITY;
   for (let ray = 0; ray < rayCount; ray++) {
+    const start = ray * gateCount;
     const before = rayBeside(view, ray, -1);
     const after = rayBeside(view, ray, 1);
     if (before < 0 || after < 0) continue;
-    const start = ray * gateCount;
-    const left = before * gateCount;
-    const right = after * gateCount;
-    // Sums of three rays, moved along.
-    let last = 0;
-    let here = (kind[left] as number) + (kind[start] as number) + (kind[right] as number);
-    for (let gate = 0; gate < gateCount; gate++) {
-      const next =
-        gate + 1 < gateCount
-          ? (kind[left + gate + 1] as number) +
-            (kind[start + gate + 1] as number) +
-            (kind[right + gate + 1] as number)
-          : 0;
-      // The gate itself is one of them.
-      if (last + here + next <= ENOUGH_NEIGHBOURS && kind[start + gate] === 1) {
-        screenedBy[start + gate] = (screenedBy[start + gate] as number) | bit;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
+      if (screenedBy[at] !== 0) continue;
+      const gate = at - start;
+      // Most echo has it on both sides.
+      if (gate > 0 && gate + 1 < gateCount && stands(at - 1) && stands(at + 1)) continue;
+      const first = gate > 0 ? -1 : 0;
+      const last = gate + 1 < gateCount ? 1 : 0;
+      // The gate itself is not among its neighbours.
+      let neighbours = -1;
+      let unknown = false;
+      for (let side = 0; side < 3; side++) {
+        const beside = side === 0 ? before : side === 1 ? ray : after;
+        for (let along = first; along <= last; along++) {
+          const other = beside * gateCount + gate + along;
+          if (stands(other)) neighbours++;
+          else if (Number.isNaN(measuredDbz[other])) unknown = true;
+        }
       }
-      last = here;
-      here = next;
+      if (neighbours < ENOUGH_NEIGHBOURS && !unknown) alone.push(at);
     }
   }
+  for (const at of alone) screenedBy[at] = bit;
 }

@@ -28,7 +28,7 @@ const CLASSES = 160;
  * @returns number of rays found to be spikes
  */
 export function screenSpikes(view: SweepView, { strong }: Evidence): number {
-  const { echo, rayCount, gateCount, rangeGainDb, rayStepDeg } = view;
+  const { echo, rayCount, gateCount, rangeGainDb, rayStepDeg, echoAt, echoStart } = view;
   const reach = Math.max(3, Math.round(REACH_DEG / rayStepDeg));
   if (rayCount < 2 * reach + 1 || gateCount < OPEN_GATES) return 0;
   const bit = screenBit("spike");
@@ -41,16 +41,16 @@ export function screenSpikes(view: SweepView, { strong }: Evidence): number {
     if (left < 0 || right < 0) continue;
     const start = ray * gateCount;
     classes.fill(0);
+    if ((echoStart[ray + 1] as number) - (echoStart[ray] as number) < OPEN_GATES) continue;
     const standing = countOutstanding(view, ray, left, right, classes);
     if (standing < OPEN_GATES || standing < SHOWN_SHARE * OPEN_SHARE * gateCount) continue;
     const powerDb = medianOf(classes, standing);
     if (!isSpike(view, ray, left, right, powerDb)) continue;
     found++;
-    for (let gate = 0; gate < gateCount; gate++) {
-      const overDb = (measuredDbz[start + gate] as number) - (rangeGainDb[gate] as number) - powerDb;
-      if (overDb <= EVEN_WITHIN_DB && overDb > Number.NEGATIVE_INFINITY) {
-        strong[start + gate] = (strong[start + gate] as number) | bit;
-      }
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
+      const overDb = (measuredDbz[at] as number) - (rangeGainDb[at - start] as number) - powerDb;
+      if (overDb <= EVEN_WITHIN_DB) strong[at] = (strong[at] as number) | bit;
     }
   }
   return found;
@@ -58,20 +58,20 @@ export function screenSpikes(view: SweepView, { strong }: Evidence): number {
 
 /** Sorts the power of the gates that stand out on both sides into classes. */
 function countOutstanding(
-  { echo: { measuredDbz }, gateCount, rangeGainDb }: SweepView,
+  { echo: { measuredDbz }, gateCount, rangeGainDb, echoAt, echoStart }: SweepView,
   ray: number,
   left: number,
   right: number,
   classes: Uint32Array,
 ): number {
-  const start = ray * gateCount;
   let standing = 0;
-  for (let gate = 0; gate < gateCount; gate++) {
-    const dbz = measuredDbz[start + gate] as number;
+  for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+    const at = echoAt[k] as number;
+    const gate = at - ray * gateCount;
+    const dbz = measuredDbz[at] as number;
     const limit = dbz - OUTSTANDING_DB;
     if (!(limit >= (measuredDbz[left * gateCount + gate] as number))) continue;
-    if (!(limit >= (measuredDbz[right * gateCount + gate] as number)) || !(dbz > Number.NEGATIVE_INFINITY))
-      continue;
+    if (!(limit >= (measuredDbz[right * gateCount + gate] as number))) continue;
     standing++;
     const place = ((dbz - (rangeGainDb[gate] as number) - LOWEST_DB) / CLASS_DB) | 0;
     const held = place < 0 ? 0 : place >= CLASSES ? CLASSES - 1 : place;

@@ -3,14 +3,21 @@ import type { Evidence } from "./evidence.ts";
 import { geometryOf, isSameGeometry, type SweepGeometry, slotOf } from "./sweep-geometry.ts";
 import { rayBeside, type SweepView, viewSweep } from "./sweep-view.ts";
 
-/** Echo that stays in place, learned over the run for one elevation and geometry. Shapes [slotCount * gateCount]. */
+/** Gates that hold echo of the ground, and how strong it gets. */
+export interface FixedEcho {
+  /** Ascending: slot * gateCount + gate, where rays are told apart by slot. */
+  readonly places: Int32Array;
+  /** Shape of `places`: echo up to this is taken for what stands there. */
+  readonly upToDbz: Float32Array;
+}
+
+/** Echo that stays in place, learned over the run for one elevation and geometry. */
 export interface LearnedSweep extends SweepGeometry {
   /** Rounds that it was learned from. */
   readonly rounds: number;
-  /** Echo up to this is taken for static echo, dBZ; NaN where there is none. */
-  readonly staticUpToDbz: Float32Array;
-  /** The same for a strong point such as a wind turbine. */
-  readonly pointUpToDbz: Float32Array;
+  readonly static: FixedEcho;
+  /** Strong points such as wind turbines. */
+  readonly points: FixedEcho;
 }
 
 /** Plain numbers and arrays: may be cloned and stored. */
@@ -108,8 +115,8 @@ export class StaticEchoLearner {
       .map((tally) => ({
         ...tally.geometry,
         rounds: tally.rounds,
-        staticUpToDbz: upTo(tally.rounds, tally.told, tally.votes, tally.sumDbz, tally.squares),
-        pointUpToDbz: upTo(
+        static: fixedEcho(tally.rounds, tally.told, tally.votes, tally.sumDbz, tally.squares),
+        points: fixedEcho(
           tally.rounds,
           tally.pointTold,
           tally.pointVotes,
@@ -201,23 +208,26 @@ function countGate(
   if (isPoint || dry >= enough) tally.pointTold[place] = (tally.pointTold[place] as number) + 1;
 }
 
-/** Mean of what was seen and twice its spread, where it was seen often enough and keeps its strength; else NaN. */
-function upTo(
+/** Gates where it was seen often enough and keeps its strength: up to the mean and twice the spread. */
+function fixedEcho(
   rounds: number,
   told: Uint16Array,
   votes: Uint16Array,
   sumDbz: Float64Array,
   squares: Float64Array,
-): Float32Array {
-  const limit = new Float32Array(votes.length).fill(Number.NaN);
+): FixedEcho {
+  const places: number[] = [];
+  const upToDbz: number[] = [];
   for (let place = 0; place < votes.length; place++) {
     const count = votes[place] as number;
     if (count < STATIC_SHARE * (told[place] as number) || count < OF_ALL_SHARE * rounds) continue;
     const mean = (sumDbz[place] as number) / count;
     const spread = Math.sqrt(Math.max(0, (squares[place] as number) / count - mean * mean));
-    if (spread <= WIDEST_SPREAD_DB) limit[place] = mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread);
+    if (spread > WIDEST_SPREAD_DB) continue;
+    places.push(place);
+    upToDbz.push(mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread));
   }
-  return limit;
+  return { places: Int32Array.from(places), upToDbz: Float32Array.from(upToDbz) };
 }
 
 /** What was learned of sweeps like this one; undefined where nothing was. */
@@ -234,19 +244,33 @@ export function learnedFor(
 export function screenLearned(
   { echo, rayCount, gateCount }: SweepView,
   { slotCount }: LearnedSweep,
-  upToDbz: Float32Array,
+  { places, upToDbz }: FixedEcho,
   screen: "static-echo" | "fixed-point",
   { strong }: Evidence,
 ): void {
   const bit = screenBit(screen);
   for (let ray = 0; ray < rayCount; ray++) {
-    const start = ray * gateCount;
     const from = slotOf(echo.azimuthDeg[ray] as number, slotCount) * gateCount;
-    for (let gate = 0; gate < gateCount; gate++) {
-      const dbz = echo.measuredDbz[start + gate] as number;
-      if (dbz <= (upToDbz[from + gate] as number) && dbz > Number.NEGATIVE_INFINITY) {
-        strong[start + gate] = (strong[start + gate] as number) | bit;
+    const shift = ray * gateCount - from;
+    for (let k = firstNotBelow(places, from); k < places.length; k++) {
+      const place = places[k] as number;
+      if (place >= from + gateCount) break;
+      const dbz = echo.measuredDbz[place + shift] as number;
+      if (dbz <= (upToDbz[k] as number) && dbz > Number.NEGATIVE_INFINITY) {
+        strong[place + shift] = (strong[place + shift] as number) | bit;
       }
     }
   }
+}
+
+/** Index of the first number of an ascending list that is not below a value. */
+function firstNotBelow(ascending: Int32Array, value: number): number {
+  let low = 0;
+  let high = ascending.length;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if ((ascending[middle] as number) < value) low = middle + 1;
+    else high = middle;
+  }
+  return low;
 }

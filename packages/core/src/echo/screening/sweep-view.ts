@@ -7,6 +7,8 @@ const LOWEST_AT_1KM_DBZ = -100;
 const CLASSES = 320;
 /** So many of the weakest gates are passed over: a clutter filter leaves echo below what can be seen. House rule. */
 const PASSED_OVER = 0.002;
+/** Every so many rays are enough to tell. */
+const RAY_STRIDE = 4;
 
 /** What several screens need to know of a sweep, worked out once. */
 export interface SweepView {
@@ -23,6 +25,10 @@ export interface SweepView {
   readonly noiseAt1KmDbz: number;
   /** True where the last ray and the first lie beside each other. */
   readonly closed: boolean;
+  /** Indices of the gates with echo, ray by ray: those of a ray stand from echoStart[ray] to echoStart[ray + 1]. */
+  readonly echoAt: Int32Array;
+  /** Shape [rayCount + 1]. */
+  readonly echoStart: Int32Array;
 }
 
 export function viewSweep(echo: PolarEcho): SweepView {
@@ -40,23 +46,54 @@ export function viewSweep(echo: PolarEcho): SweepView {
   const spanDeg = rayCount > 1 ? (azimuthDeg[rayCount - 1] as number) - (azimuthDeg[0] as number) : 0;
   const rayStepDeg = rayCount > 1 ? Math.max(0.01, spanDeg / (rayCount - 1)) : 1;
   const closed = rayCount > 2 && 360 - spanDeg < 1.5 * rayStepDeg + 0.5;
+  const { echoAt, echoStart } = listEcho(measuredDbz, rayCount, gateCount);
   // A sender's figure is not believed where the sweep itself holds weaker echo.
   const noiseAt1KmDbz = Math.min(
     header.noiseEquivalentDbz ?? Number.POSITIVE_INFINITY,
-    weakestAt1KmDbz(measuredDbz, gateCount, rangeGainDb),
+    weakestAt1KmDbz(measuredDbz, gateCount, rangeGainDb, echoAt, echoStart),
   );
-  return { echo, rayCount, gateCount, rangeGainDb, heightM, rayStepDeg, noiseAt1KmDbz, closed };
+  return {
+    echo,
+    rayCount,
+    gateCount,
+    rangeGainDb,
+    heightM,
+    rayStepDeg,
+    noiseAt1KmDbz,
+    closed,
+    echoAt,
+    echoStart,
+  };
+}
+
+function listEcho(dbz: Float32Array, rayCount: number, gateCount: number) {
+  const all = new Int32Array(dbz.length);
+  const echoStart = new Int32Array(rayCount + 1);
+  let count = 0;
+  for (let ray = 0; ray < rayCount; ray++) {
+    for (let at = ray * gateCount; at < (ray + 1) * gateCount; at++) {
+      // Neither not observed nor dry.
+      if ((dbz[at] as number) > Number.NEGATIVE_INFINITY) all[count++] = at;
+    }
+    echoStart[ray + 1] = count;
+  }
+  return { echoAt: all.subarray(0, count), echoStart };
 }
 
 /** The weakest echo of the sweep brought to 1 km: no echo is weaker than what the radar can see. */
-function weakestAt1KmDbz(dbz: Float32Array, gateCount: number, rangeGainDb: Float32Array): number {
+function weakestAt1KmDbz(
+  dbz: Float32Array,
+  gateCount: number,
+  rangeGainDb: Float32Array,
+  echoAt: Int32Array,
+  echoStart: Int32Array,
+): number {
   const classes = new Uint32Array(CLASSES);
   let seen = 0;
-  for (let start = 0; start < dbz.length; start += gateCount) {
-    for (let gate = 0; gate < gateCount; gate++) {
-      const at1Km = (dbz[start + gate] as number) - (rangeGainDb[gate] as number);
-      // Neither not observed nor dry.
-      if (!(at1Km > Number.NEGATIVE_INFINITY)) continue;
+  for (let ray = 0; ray + 1 < echoStart.length; ray += RAY_STRIDE) {
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
+      const at1Km = (dbz[at] as number) - (rangeGainDb[at - ray * gateCount] as number);
       const place = ((at1Km - LOWEST_AT_1KM_DBZ) / CLASS_DB) | 0;
       const held = place < 0 ? 0 : place >= CLASSES ? CLASSES - 1 : place;
       classes[held] = (classes[held] as number) + 1;

@@ -58,76 +58,85 @@ function isSpin(before: number, after: number, thresholdDb: number): boolean {
 }
 
 /** Bits of what is rough at a gate. */
-export const ROUGH = 1;
-export const SPINNING = 2;
+const ROUGH = 1;
+const SPINNING = 2;
 
 /**
- * Where echo is rough: texture and spin change in a window of five gates along the ray.
+ * How rough echo is at one gate: texture and spin change in a window of five gates along the ray.
  *
- * @returns shape [gates], bits ROUGH and SPINNING; 0 too where the window holds too little echo to say
+ * @param start - index of the ray's first gate
+ * @returns bits ROUGH and SPINNING; 0 too where the window holds too little echo to say
  */
-export function roughness({ echo, rayCount, gateCount }: SweepView): Uint8Array {
-  const { measuredDbz } = echo;
-  const rough = new Uint8Array(measuredDbz.length);
-  // Of pair k, gates k and k + 1: the square of its step; and whether the slope turns at gate k.
-  const square = new Float32Array(gateCount);
-  const turns = new Int8Array(gateCount);
-  for (let ray = 0; ray < rayCount; ray++) {
-    const start = ray * gateCount;
-    let before = Number.NaN;
-    for (let gate = 0; gate < gateCount; gate++) {
-      const after =
-        gate + 1 < gateCount
-          ? (measuredDbz[start + gate + 1] as number) - (measuredDbz[start + gate] as number)
-          : Number.NaN;
-      const known = after - after === 0;
-      square[gate] = known ? after * after : -1;
-      turns[gate] = !known || before - before !== 0 ? -1 : isSpin(before, after, SPIN_THRESHOLD_DB) ? 1 : 0;
-      before = after;
+function roughnessAt(dbz: Float32Array, start: number, gate: number, gateCount: number): number {
+  const first = gate < REACH ? 0 : gate - REACH;
+  const last = Math.min(gateCount - 1, gate + REACH);
+  let sum = 0;
+  let pairs = 0;
+  let changes = 0;
+  let inner = 0;
+  let before = Number.NaN;
+  for (let at = start + first; at < start + last; at++) {
+    const step = (dbz[at + 1] as number) - (dbz[at] as number);
+    // NaN and Infinity alike: one of the pair has no echo.
+    if (step - step !== 0) {
+      before = Number.NaN;
+      continue;
     }
-    let sum = 0;
-    let pairs = 0;
-    let changes = 0;
-    let inner = 0;
-    // The window of gate g holds pairs g - 2 to g + 1 and inner gates g - 1 to g + 1.
-    for (let gate = -REACH; gate < gateCount; gate++) {
-      const joins = gate + REACH - 1;
-      if (joins < gateCount) {
-        if ((square[joins] as number) >= 0 && joins >= 0) {
-          sum += square[joins] as number;
-          pairs++;
-        }
-        if (joins >= 0 && (turns[joins] as number) >= 0) {
-          inner++;
-          changes += turns[joins] as number;
-        }
-      }
-      const leaves = gate - REACH - 1;
-      if (leaves >= 0 && (square[leaves] as number) >= 0) {
-        sum -= square[leaves] as number;
-        pairs--;
-      }
-      const unspun = gate - REACH;
-      if (unspun >= 0 && (turns[unspun] as number) >= 0) {
-        inner--;
-        changes -= turns[unspun] as number;
-      }
-      if (gate < 0 || pairs < ENOUGH_PAIRS) continue;
-      rough[start + gate] =
-        (sum > SUSPECT_TEXTURE_DB2 * pairs ? ROUGH : 0) |
-        (inner > 0 && 100 * changes > SUSPECT_SPIN_PERCENT * inner ? SPINNING : 0);
+    sum += step * step;
+    pairs++;
+    if (!Number.isNaN(before)) {
+      inner++;
+      if (isSpin(before, step, SPIN_THRESHOLD_DB)) changes++;
     }
+    before = step;
   }
-  return rough;
+  if (pairs < ENOUGH_PAIRS) return 0;
+  return (
+    (sum > SUSPECT_TEXTURE_DB2 * pairs ? ROUGH : 0) |
+    (100 * changes > SUSPECT_SPIN_PERCENT * inner ? SPINNING : 0)
+  );
 }
 
-/** Weak: rough and spinning, which the edges of showers seldom are at once. */
-export function screenTexture({ echo }: SweepView, rough: Uint8Array, { weak }: Evidence): void {
-  const bit = screenBit("texture");
-  const { measuredDbz } = echo;
-  for (let at = 0; at < rough.length; at++) {
-    if (rough[at] === (ROUGH | SPINNING) && (measuredDbz[at] as number) > Number.NEGATIVE_INFINITY) {
-      weak[at] = (weak[at] as number) | bit;
+/**
+ * Weak: rough and spinning ("texture"), which the edges of showers seldom are at once; and rough while it stands
+ * still ("still-echo"). Rain whose wind blows across the beam stands still too, and so does a slow shower, but
+ * its echo is smooth.
+ *
+ * Both only ever support, so only gates that something speaks against already are looked at.
+ *
+ * Sources: Steiner and Smith (2002) for the one, Hubbert, Dixon and Ellis (2009) for the other, as above.
+ *
+ * @param which - bits of the screens that are asked for
+ */
+export function screenRoughness(
+  { echo, rayCount, gateCount, echoAt, echoStart }: SweepView,
+  which: number,
+  evidence: Evidence,
+): void {
+  const { strong, weak } = evidence;
+  const { measuredDbz, velocityMPerS, spectrumWidthMPerS } = echo;
+  const textureBit = which & screenBit("texture");
+  const stillBit = velocityMPerS === undefined ? 0 : which & screenBit("still-echo");
+  for (let ray = 0; ray < rayCount; ray++) {
+    const start = ray * gateCount;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
+      if (((strong[at] as number) | (weak[at] as number)) === 0) continue;
+      const rough = roughnessAt(measuredDbz, start, at - start, gateCount);
+      if ((rough & ROUGH) === 0) continue;
+      let bits = (rough & SPINNING) === 0 ? 0 : textureBit;
+      if (stillBit !== 0 && isStill(velocityMPerS?.[at], spectrumWidthMPerS?.[at])) bits |= stillBit;
+      weak[at] = (weak[at] as number) | bits;
     }
   }
+}
+
+/** Ground echo stays below these. Common practice: 1 m/s (0.5 to 1.5) each. */
+export const STILL_VELOCITY_M_PER_S = 1;
+export const STILL_WIDTH_M_PER_S = 1;
+
+/** A width that is not given, or not observed, does not speak against it. */
+function isStill(velocityMPerS: number | undefined, widthMPerS: number | undefined): boolean {
+  if (velocityMPerS === undefined || !(Math.abs(velocityMPerS) < STILL_VELOCITY_M_PER_S)) return false;
+  return !(widthMPerS !== undefined && widthMPerS > STILL_WIDTH_M_PER_S);
 }

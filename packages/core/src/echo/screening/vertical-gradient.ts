@@ -29,7 +29,7 @@ export function screenVerticalGradient(
   { strong, weak }: Evidence,
 ): boolean {
   const bit = screenBit("vertical-gradient");
-  const { echo, rayCount, gateCount, rangeGainDb, heightM, noiseAt1KmDbz } = view;
+  const { echo, rayCount, gateCount, rangeGainDb, noiseAt1KmDbz, echoAt, echoStart } = view;
   const gatesAbove = gatesOver(view, above);
   let judged = 0;
   while (judged < gateCount && (gatesAbove[judged] as number) >= 0) judged++;
@@ -45,8 +45,10 @@ export function screenVerticalGradient(
     any = true;
     const left = (over + raysAbove - 1) % raysAbove;
     const right = (over + 1) % raysAbove;
-    for (let gate = 0; gate < judged; gate++) {
-      const at = ray * gateCount + gate;
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+      const at = echoAt[k] as number;
+      const gate = at - ray * gateCount;
+      if (gate >= judged) break;
       const dbz = echo.measuredDbz[at] as number;
       if (!(dbz >= LEAST_DBZ)) continue;
       const gateAbove = gatesAbove[gate] as number;
@@ -57,10 +59,10 @@ export function screenVerticalGradient(
       const last = Math.min(countAbove - 1, gateAbove + 1);
       // What is below detection above may be as strong as the noise.
       let strongest = noiseAt1KmDbz + (rangeGainDb[gate] as number);
-      for (let k = first; k <= last; k++) {
-        const a = dbzAbove[left * countAbove + k] as number;
-        const b = dbzAbove[over * countAbove + k] as number;
-        const c = dbzAbove[right * countAbove + k] as number;
+      for (let other = first; other <= last; other++) {
+        const a = dbzAbove[left * countAbove + other] as number;
+        const b = dbzAbove[over * countAbove + other] as number;
+        const c = dbzAbove[right * countAbove + other] as number;
         if (a > strongest) strongest = a;
         if (b > strongest) strongest = b;
         if (c > strongest) strongest = c;
@@ -70,7 +72,7 @@ export function screenVerticalGradient(
       else if (dropDb >= WEAK_DROP_DB) weak[at] = (weak[at] as number) | bit;
     }
   }
-  return any && heightM.length > 0;
+  return any;
 }
 
 /** Of each gate the one above it; -1 from where on none is close enough. */
