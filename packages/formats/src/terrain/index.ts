@@ -1,1 +1,2 @@
+export { readTerrain } from "./terrain-grid.ts";
 export { readTerrainProfile } from "./terrain-profile.ts";
