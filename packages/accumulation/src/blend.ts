@@ -1,12 +1,8 @@
 import type { Interval } from "@rainreckon/core";
 import type { RateLayer } from "@rainreckon/mosaic";
-import {
-  type FieldShape,
-  type RadarIntegrator,
-  type RadarStep,
-  type Stretch,
-  stretchDepthMm,
-} from "./integrate.ts";
+import type { RadarIntegrator } from "./integrate.ts";
+import { type FieldShape, headlinePositions, type RadarStep } from "./radar-step.ts";
+import { type Span, spansAt } from "./spans.ts";
 
 /** Time that may be missing from a step before it counts as partly observed: rounding of float32 milliseconds. */
 const FULL_SLACK_MS = 2;
@@ -29,200 +25,252 @@ export interface BlendedStep {
    * Shape [companions][cells], undefined where 0 everywhere. By depth: millimetres times the value; by time: hours
    * times the value, both by the shares of the radars. Tolls: millimetres, those of all radars together.
    */
-  readonly companions: (Float64Array | undefined)[];
+  readonly companions: readonly (Float64Array | undefined)[];
 }
 
-/** What one radar adds at one cell of a step: depth, the time it speaks for, and parts of the two. */
-interface Voice {
-  depthMm: number;
-  cappedMm: number;
-  shareMs: number;
-  bridgedMs: number;
-  edgeMs: number;
+/** A radar's step, and the integrator that made it. */
+export interface RadarInStep {
+  readonly step: RadarStep;
+  readonly integrator: RadarIntegrator;
 }
 
-/** A radar that speaks for all it observed in the step, by a share of it. */
-function speakWhole(voice: Voice, radar: RadarStep, cell: number, share: number, depthMm: number): void {
-  voice.depthMm = share * depthMm;
-  voice.cappedMm = share * (radar.cappedMm?.[cell] ?? 0);
-  voice.bridgedMs = share * (radar.bridgedMs?.[cell] ?? 0);
-  voice.edgeMs = share * (radar.edgeMs?.[cell] ?? 0);
+/** A cell of which some radars saw more than others. */
+interface PartlySeen {
+  readonly cell: number;
+  readonly spans: readonly Span[];
 }
 
-/**
- * Blends the depths of one step of several radars: D = Σ w·D_r / Σ w over the radars that observed.
- *
- * Weights are those of the step, constant on spans of unchanged availability: where one radar saw only
- * part of the step, the step is cut where its view begins or ends and each span is blended on its own.
- * Depths of the same span are blended, never rates of different minutes.
- */
+/** Blends one step with room of its own; see {@link StepBlender}. */
 export function blendStep(
   step: Interval,
   stepIndex: number,
-  radars: readonly { readonly step: RadarStep; readonly integrator: RadarIntegrator }[],
+  radars: readonly RadarInStep[],
   shape: FieldShape,
 ): BlendedStep {
-  const { cellCount, headlineCells, variantCount } = shape;
-  const lengthMs = step.endEpochMs - step.startEpochMs;
-  const blended: BlendedStep = {
-    depthMm: new Float64Array(cellCount).fill(Number.NaN),
-    observedMs: new Float64Array(cellCount),
-    bridgedMs: new Float64Array(cellCount),
-    edgeMs: new Float64Array(cellCount),
-    cappedMm: new Float64Array(cellCount),
-    heightMMs: new Float64Array(cellCount),
-    shareMs: radars.map(() => new Float64Array(cellCount)),
-    variantMm: Array.from({ length: variantCount }, () =>
-      new Float64Array(headlineCells.length).fill(Number.NaN),
-    ),
-    companions: (shape.companions ?? []).map(() => undefined),
-  };
-  const voices: Voice[] = radars.map(() => ({
-    depthMm: 0,
-    cappedMm: 0,
-    shareMs: 0,
-    bridgedMs: 0,
-    edgeMs: 0,
-  }));
-  const voicesAt = (
-    cell: number,
-    depthOf: (radar: number) => number,
-    rateOf: (layer: RateLayer) => number,
-  ): boolean => {
-    let observing = 0;
-    let full = 0;
-    let only = -1;
-    for (let r = 0; r < radars.length; r++) {
-      const observedMs = radars[r].step.observedMs[cell];
-      if (!(observedMs > 0)) continue;
-      observing++;
-      only = r;
-      if (observedMs >= lengthMs - FULL_SLACK_MS) full++;
+  return new StepBlender(shape, radars.length).blend(step, stepIndex, radars);
+}
+
+/**
+ * Blends the depths of each step of several radars: D = Σ w·D_r / Σ w over the radars that observed.
+ *
+ * Weights are those of the step, constant on spans of unchanged availability: where one radar saw only
+ * part of the step, the step is cut where its view begins or ends and each span is blended on its own.
+ * Depths of the same span are blended, never rates of different minutes. What travels with the rain is blended by the
+ * same shares.
+ *
+ * It works in the same arrays for every step: what `blend` gives stands until the next call.
+ */
+export class StepBlender {
+  readonly #shape: FieldShape;
+  /** Undefined where the headline is made of all cells in their order. */
+  readonly #headlineCells: Int32Array | undefined;
+  /** Shape [radars][cells]: by how much the depth of a radar counts; 0 where it is cut into spans, or saw nothing. */
+  readonly #shares: readonly Float64Array[];
+  readonly #out: Omit<BlendedStep, "companions">;
+  /** Arrays for companions, by their place in the list; kept when a step does not need them. */
+  readonly #companions: (Float64Array | undefined)[];
+  readonly #sums: Float64Array;
+
+  constructor(shape: FieldShape, radarCount: number) {
+    const zeros = () => new Float64Array(shape.cellCount);
+    this.#shape = shape;
+    this.#headlineCells = headlinePositions(shape) === undefined ? undefined : shape.headlineCells;
+    this.#shares = Array.from({ length: radarCount }, zeros);
+    this.#sums = new Float64Array(radarCount);
+    this.#companions = Array.from(shape.companions ?? [], () => undefined);
+    this.#out = {
+      depthMm: zeros(),
+      observedMs: zeros(),
+      bridgedMs: zeros(),
+      edgeMs: zeros(),
+      cappedMm: zeros(),
+      heightMMs: zeros(),
+      shareMs: Array.from({ length: radarCount }, zeros),
+      variantMm: Array.from(
+        { length: shape.variantCount },
+        () => new Float64Array(shape.headlineCells.length),
+      ),
+    };
+  }
+
+  /** @param stepIndex - of the step among those of the integrators */
+  blend(step: Interval, stepIndex: number, radars: readonly RadarInStep[]): BlendedStep {
+    const out = this.#out;
+    const steps = radars.map((radar) => radar.step);
+    const partly = this.#share(step, stepIndex, radars);
+    this.#blendPlane(out.depthMm, steps, (own) => own.depthMm);
+    this.#blendPlane(out.cappedMm, steps, (own) => own.cappedMm);
+    this.#blendPlane(out.bridgedMs, steps, (own) => own.bridgedMs);
+    this.#blendPlane(out.edgeMs, steps, (own) => own.edgeMs);
+    for (const { cell, spans } of partly) {
+      out.depthMm[cell] = this.#overSpans(spans, (layer) => layer.rateMmPerHour[cell]);
+      out.cappedMm[cell] = this.#overSpans(spans, (layer) => layer.cappedRateMmPerHour?.[cell] ?? 0);
+      out.bridgedMs[cell] = this.#timeOf(spans, "bridged");
+      out.edgeMs[cell] = this.#timeOf(spans, "edge");
     }
-    if (observing === 0) return false;
-    for (const voice of voices) {
-      voice.depthMm = 0;
-      voice.cappedMm = 0;
-      voice.shareMs = 0;
-      voice.bridgedMs = 0;
-      voice.edgeMs = 0;
-    }
-    if (observing === 1) {
-      speakWhole(voices[only], radars[only].step, cell, 1, depthOf(only));
-      voices[only].shareMs = Math.min(lengthMs, radars[only].step.observedMs[cell]);
-      return true;
-    }
-    if (full === observing) {
-      let sum = 0;
-      for (const { step: radar } of radars) if (radar.observedMs[cell] > 0) sum += meanWeight(radar, cell);
-      for (let r = 0; r < radars.length; r++) {
-        if (!(radars[r].step.observedMs[cell] > 0)) continue;
-        const share = meanWeight(radars[r].step, cell) / sum;
-        speakWhole(voices[r], radars[r].step, cell, share, depthOf(r));
-        voices[r].shareMs = share * lengthMs;
+    this.#leaveUnseen(out.depthMm, undefined);
+    this.#blendVariants(steps, partly);
+    return { ...out, companions: this.#blendCompanions(steps, partly) };
+  }
+
+  /** Settles who speaks for how much of each cell. @returns the cells that must be cut into spans */
+  #share(step: Interval, stepIndex: number, radars: readonly RadarInStep[]): PartlySeen[] {
+    const { observedMs, heightMMs, shareMs } = this.#out;
+    const shares = this.#shares;
+    const lengthMs = step.endEpochMs - step.startEpochMs;
+    const seenMs = radars.map((radar) => radar.step.observedMs);
+    const weightMs = radars.map((radar) => radar.step.weightMs);
+    const heights = radars.map((radar) => radar.step.heightMMs);
+    const partly: PartlySeen[] = [];
+    for (let cell = 0; cell < observedMs.length; cell++) {
+      let observing = 0;
+      let full = 0;
+      let weights = 0;
+      for (let r = 0; r < seenMs.length; r++) {
+        const ms = seenMs[r][cell];
+        shares[r][cell] = 0;
+        shareMs[r][cell] = 0;
+        if (!(ms > 0)) continue;
+        observing++;
+        weights += weightMs[r][cell] / ms;
+        if (ms >= lengthMs - FULL_SLACK_MS) full++;
       }
-      return true;
+      observedMs[cell] = 0;
+      heightMMs[cell] = 0;
+      if (observing === 0) continue;
+      const cut = observing > 1 && full < observing;
+      if (cut) {
+        const spans = spansAt(step, stepIndex, cell, radars);
+        for (const { radar, ms } of spans) shareMs[radar][cell] += ms;
+        partly.push({ cell, spans });
+      }
+      for (let r = 0; r < seenMs.length; r++) {
+        const ms = seenMs[r][cell];
+        if (!(ms > 0)) continue;
+        if (!cut) {
+          const share = observing === 1 ? 1 : weightMs[r][cell] / ms / weights;
+          shares[r][cell] = share;
+          shareMs[r][cell] = observing === 1 ? Math.min(lengthMs, ms) : share * lengthMs;
+        }
+        const spokenMs = shareMs[r][cell];
+        observedMs[cell] += spokenMs;
+        // Gridded rain has no beam: NaN. Its time is left out where the mean height is made.
+        const height = heights[r][cell];
+        if (!Number.isNaN(height)) heightMMs[cell] += (spokenMs / ms) * height;
+      }
     }
-    blendSpans(step, stepIndex, cell, radars, rateOf, voices);
-    return true;
-  };
+    return partly;
+  }
 
-  for (let cell = 0; cell < cellCount; cell++) {
-    const seen = voicesAt(
-      cell,
-      (radar) => radars[radar].step.depthMm[cell],
-      (layer) => layer.rateMmPerHour[cell],
-    );
-    if (!seen) continue;
-    let depthMm = 0;
-    for (let r = 0; r < radars.length; r++) {
-      const { step: radar } = radars[r];
-      const { depthMm: ownMm, cappedMm, shareMs, bridgedMs, edgeMs } = voices[r];
-      if (shareMs === 0) continue;
-      depthMm += ownMm;
-      blended.observedMs[cell] += shareMs;
-      blended.shareMs[r][cell] = shareMs;
-      // Gridded rain has no beam: NaN. Its time is left out where the mean height is made.
-      const heightMMs = radar.heightMMs[cell];
-      if (!Number.isNaN(heightMMs)) blended.heightMMs[cell] += (shareMs / radar.observedMs[cell]) * heightMMs;
-      blended.bridgedMs[cell] += bridgedMs;
-      blended.edgeMs[cell] += edgeMs;
-      blended.cappedMm[cell] += cappedMm;
+  /**
+   * Sums a plane of every radar by their shares; cells that nobody saw, or that are cut into spans, become 0.
+   *
+   * @param cells - the cell of each value; undefined where the plane has all cells
+   */
+  #blendPlane(
+    out: Float64Array,
+    steps: readonly RadarStep[],
+    planeOf: (step: RadarStep) => Float64Array | Float32Array | undefined,
+    cells?: Int32Array,
+  ): void {
+    let blank = true;
+    for (let r = 0; r < steps.length; r++) {
+      const plane = planeOf(steps[r]);
+      if (plane === undefined) continue;
+      if (!blank) addShares(out, plane, this.#shares[r], cells);
+      else setShares(out, plane, this.#shares[r], cells);
+      blank = false;
     }
-    blended.depthMm[cell] = depthMm;
+    if (blank) out.fill(0);
   }
-  for (let v = 0; v < variantCount; v++) {
-    for (let h = 0; h < headlineCells.length; h++) {
-      const seen = voicesAt(
-        headlineCells[h],
-        (radar) => radars[radar].step.variantMm[v][h],
-        (layer) => layer.variants[v][h],
-      );
-      if (seen) blended.variantMm[v][h] = voices.reduce((sum, voice) => sum + voice.depthMm, 0);
+
+  /** What is not known where nobody observed: NaN, never 0. */
+  #leaveUnseen(out: Float64Array, cells: Int32Array | undefined): void {
+    const { observedMs } = this.#out;
+    for (let k = 0; k < out.length; k++) {
+      if (observedMs[cells === undefined ? k : cells[k]] === 0) out[k] = Number.NaN;
     }
   }
-  return blended;
+
+  #blendVariants(steps: readonly RadarStep[], partly: readonly PartlySeen[]): void {
+    const { variantMm } = this.#out;
+    const cells = this.#headlineCells;
+    const headlineAt = headlinePositions(this.#shape);
+    for (let v = 0; v < variantMm.length; v++) {
+      this.#blendPlane(variantMm[v], steps, (own) => own.variantMm[v], cells);
+      for (const { cell, spans } of partly) {
+        const h = headlineAt === undefined ? cell : headlineAt[cell];
+        if (h >= 0) variantMm[v][h] = this.#overSpans(spans, (layer) => layer.variants[v][h]);
+      }
+      this.#leaveUnseen(variantMm[v], cells);
+    }
+  }
+
+  #blendCompanions(steps: readonly RadarStep[], partly: readonly PartlySeen[]): (Float64Array | undefined)[] {
+    return Array.from(this.#shape.companions ?? [], ({ kind }, c) => {
+      if (steps.every((own) => own.companions[c] === undefined)) return undefined;
+      const out = this.#companions[c] ?? new Float64Array(this.#shape.cellCount);
+      this.#companions[c] = out;
+      if (kind === "toll") {
+        out.fill(0);
+        for (const { companions } of steps) {
+          const toll = companions[c];
+          if (toll !== undefined) for (let cell = 0; cell < out.length; cell++) out[cell] += toll[cell];
+        }
+        return out;
+      }
+      this.#blendPlane(out, steps, (own) => own.companions[c]);
+      for (const { cell, spans } of partly) {
+        out[cell] = this.#overSpans(spans, (layer) => layer.companions?.[c]?.[cell] ?? 0);
+      }
+      return out;
+    });
+  }
+
+  /** Integrates over the spans of a cell, radar by radar. */
+  #overSpans(spans: readonly Span[], rate: (layer: RateLayer) => number): number {
+    const sums = this.#sums.fill(0);
+    for (const { radar, share, hours0, hours1, layer0, layer1 } of spans) {
+      sums[radar] += share * (hours0 * rate(layer0) + hours1 * rate(layer1));
+    }
+    return total(sums);
+  }
+
+  #timeOf(spans: readonly Span[], wanted: Span["kind"]): number {
+    const sums = this.#sums.fill(0);
+    for (const { radar, kind, ms } of spans) if (kind === wanted) sums[radar] += ms;
+    return total(sums);
+  }
 }
 
-/** Blend weight of a radar at a cell over the time it observed. */
-function meanWeight(radar: RadarStep, cell: number): number {
-  return radar.weightMs[cell] / radar.observedMs[cell];
+function total(sums: Float64Array): number {
+  let sum = 0;
+  for (let r = 0; r < sums.length; r++) sum += sums[r];
+  return sum;
 }
 
-/** The general case: cuts the step where any radar's view begins or ends and blends each span on its own. */
-function blendSpans(
-  step: Interval,
-  stepIndex: number,
-  cell: number,
-  radars: readonly { readonly step: RadarStep; readonly integrator: RadarIntegrator }[],
-  rateOf: (layer: RateLayer) => number,
-  voices: readonly Voice[],
+type Plane = Float64Array | Float32Array;
+
+function setShares(
+  out: Float64Array,
+  plane: Plane,
+  share: Float64Array,
+  cells: Int32Array | undefined,
 ): void {
-  const stretches: Stretch[][] = radars.map(({ integrator }) =>
-    integrator.stretches(stepIndex, cell, rateOf),
-  );
-  const capped = radars.map(({ step: radar, integrator }) =>
-    (radar.cappedMm?.[cell] ?? 0) > 0 ? integrator.stretches(stepIndex, cell, cappedRateAt(cell)) : [],
-  );
-  const borders = new Set([step.startEpochMs, step.endEpochMs]);
-  for (const ofRadar of stretches) {
-    for (const { fromEpochMs, toEpochMs } of ofRadar) {
-      if (fromEpochMs > step.startEpochMs && fromEpochMs < step.endEpochMs) borders.add(fromEpochMs);
-      if (toEpochMs > step.startEpochMs && toEpochMs < step.endEpochMs) borders.add(toEpochMs);
-    }
-  }
-  const cuts = [...borders].sort((a, b) => a - b);
-  for (let k = 0; k + 1 < cuts.length; k++) {
-    const [from, to] = [cuts[k], cuts[k + 1]];
-    let weightSum = 0;
-    const speaking: { radar: number; weight: number; depthMm: number; kind: Stretch["kind"] }[] = [];
-    for (let r = 0; r < radars.length; r++) {
-      const stretch = stretchOver(stretches[r], from, to);
-      if (stretch === undefined) continue;
-      const weight = meanWeight(radars[r].step, cell);
-      weightSum += weight;
-      speaking.push({ radar: r, weight, depthMm: stretchDepthMm(stretch, from, to), kind: stretch.kind });
-    }
-    for (const { radar, weight, depthMm, kind } of speaking) {
-      const voice = voices[radar];
-      const share = weight / weightSum;
-      const ms = share * (to - from);
-      voice.depthMm += share * depthMm;
-      voice.shareMs += ms;
-      if (kind === "bridged") voice.bridgedMs += ms;
-      if (kind === "edge") voice.edgeMs += ms;
-      const cap = stretchOver(capped[radar], from, to);
-      if (cap !== undefined) voice.cappedMm += share * stretchDepthMm(cap, from, to);
-    }
+  for (let k = 0; k < out.length; k++) {
+    const own = share[cells === undefined ? k : cells[k]];
+    out[k] = own === 0 ? 0 : own * plane[k];
   }
 }
 
-/** The part of a layer's rate that met the cap; NaN where it did not observe the cell. */
-function cappedRateAt(cell: number): (layer: RateLayer) => number {
-  return ({ rateMmPerHour, cappedRateMmPerHour }) =>
-    rateMmPerHour[cell] >= 0 ? (cappedRateMmPerHour?.[cell] ?? 0) : Number.NaN;
-}
-
-function stretchOver(stretches: readonly Stretch[], from: number, to: number): Stretch | undefined {
-  return stretches.find(({ fromEpochMs, toEpochMs }) => fromEpochMs <= from && toEpochMs >= to);
+function addShares(
+  out: Float64Array,
+  plane: Plane,
+  share: Float64Array,
+  cells: Int32Array | undefined,
+): void {
+  for (let k = 0; k < out.length; k++) {
+    const own = share[cells === undefined ? k : cells[k]];
+    if (own !== 0) out[k] += own * plane[k];
+  }
 }

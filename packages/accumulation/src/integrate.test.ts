@@ -2,7 +2,8 @@ import type { Interval } from "@rainreckon/core";
 import type { RateLayer } from "@rainreckon/mosaic";
 import { describe, expect, test } from "vitest";
 import { blendStep } from "./blend.ts";
-import { RadarIntegrator, type RadarStep, type TimeRules } from "./integrate.ts";
+import { RadarIntegrator, type TimeRules } from "./integrate.ts";
+import type { RadarStep } from "./radar-step.ts";
 import { cutWindow } from "./steps.ts";
 
 const MINUTE = 60_000;

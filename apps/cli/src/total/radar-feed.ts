@@ -94,7 +94,7 @@ export class RadarFeed {
     } finally {
       echoes.close();
     }
-    return spoken > 0 ? builder.finish() : undefined;
+    return builder.isEmpty ? undefined : builder.finish();
   }
 
   #addSweep(

@@ -1,5 +1,5 @@
 import { setImmediate as breathe } from "node:timers/promises";
-import { arealDepth, blendStep, FieldSum, pointDepth } from "@rainreckon/accumulation";
+import { arealDepth, FieldSum, pointDepth, StepBlender } from "@rainreckon/accumulation";
 import { formatsReady } from "@rainreckon/formats";
 import { COMPANIONS } from "./companions.ts";
 import { GridFeed } from "./grid-feed.ts";
@@ -42,6 +42,7 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
   const intervals: UnitResult["intervals"][number][] = [];
   const unseen = new UnseenDepth(grid, shape.radars);
   const unseenMm: Float32Array[] = [];
+  const blender = new StepBlender(size, feeds.length);
   let sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length, COMPANIONS);
 
   for (let step = 0; step < job.steps.length; step++) {
@@ -54,7 +55,7 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
     const lengthMs = span.endEpochMs - span.startEpochMs;
     // Integrators are asked for stretches of the step, so their layers are released only after blending.
     const taken = feeds.map((feed) => ({ step: feed.integrator.take(step), integrator: feed.integrator }));
-    const blended = blendStep(span, step, taken, size);
+    const blended = blender.blend(span, step, taken);
     trace?.step?.(span, step, taken, blended);
     for (const feed of feeds) feed.integrator.release();
     for (let g = 0; g < shape.gaugeCells.length; g++) {
