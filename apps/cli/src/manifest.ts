@@ -37,6 +37,24 @@ export const manifestSchema = z.strictObject({
   counts: z.record(z.string(), z.number()),
   notices: z.array(manifestNotice),
   headline: z.record(z.string(), z.unknown()),
+  /** What was done to the echo before it became rain; null where nothing was. */
+  echo: z
+    .strictObject({
+      screens: z.array(
+        z.strictObject({
+          screen: z.string(),
+          gates: z.number().int(),
+          districtMm: z.number(),
+          worstCellMm: z.number(),
+        }),
+      ),
+      corrections: z.array(
+        z.strictObject({ correction: z.string(), meanDb: z.number(), largestDb: z.number() }),
+      ),
+      gates: z.record(z.string(), z.number().int()),
+      learned: z.record(z.string(), z.array(z.string())),
+    })
+    .nullable(),
 });
 
 export type Manifest = z.output<typeof manifestSchema>;

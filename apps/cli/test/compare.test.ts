@@ -35,6 +35,7 @@ const MANIFEST: Manifest = {
   outputs: [],
   counts: {},
   notices: [],
+  echo: null,
   headline: { districtMm: 20 },
 };
 

@@ -8,6 +8,7 @@ export type {
   ChangedSetting,
   CrossValidationStatement,
   DepthFigure,
+  EchoStatement,
   GaugeRole,
   Hyetograph,
   MapLayer,

@@ -63,6 +63,25 @@ export interface MethodChoiceStatement {
   }[];
 }
 
+/** What was done to the echo before it became rain. */
+export interface EchoStatement {
+  /** Depth that each screen's echo would have made: mean over the district, and in the worst cell. */
+  readonly screens: readonly {
+    readonly name: string;
+    readonly gates: number;
+    readonly districtMm: number;
+    readonly worstCellMm: number;
+  }[];
+  /** Decibels that each correction added: mean by depth over the district, and the largest of a cell. */
+  readonly corrections: readonly {
+    readonly name: string;
+    readonly meanDb: number;
+    readonly largestDb: number;
+  }[];
+  /** What was learned of each radar, and what may be wrong with it. */
+  readonly radars: readonly { readonly id: string; readonly statements: readonly string[] }[];
+}
+
 /** Values over the grid: shape [ny, nx], row-major, row 0 in the north, NaN not observed. */
 export type MapLayer =
   | {
@@ -249,6 +268,8 @@ export interface ReportInput {
   readonly catchmentHyetographs: readonly Hyetograph[];
   readonly relations: readonly RelationFigure[];
   readonly scores: ReportScores;
+  /** Absent where the echo went to rain as it was measured. */
+  readonly echo?: EchoStatement;
   readonly accounts: readonly AccountLine[];
   readonly provenance: Provenance;
 }

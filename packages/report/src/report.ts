@@ -1,6 +1,7 @@
 import { createHash } from "node:crypto";
 import type { ReportInput } from "./input.ts";
 import { catchmentSection, relationSection } from "./sections/catchments.ts";
+import { echoSection } from "./sections/echo.ts";
 import { scatterSection, verdictSection } from "./sections/gauges.ts";
 import { hyetographSection } from "./sections/hyetographs.ts";
 import { mapSection } from "./sections/map-section.ts";
@@ -24,6 +25,7 @@ const SECTIONS: readonly {
   { id: "gauges", words: "Gauge verdicts", write: verdictSection },
   { id: "scores", words: "Scores", write: scoreSection },
   { id: "methods", words: "Ways to adjust", write: methodSection },
+  { id: "echo", words: "From echo to rain", write: echoSection },
   { id: "accounts", words: "Left out and assumed", write: accountSection },
   { id: "provenance", words: "Provenance", write: provenanceSection },
   { id: "limits", words: "Cautions", write: limitsSection },

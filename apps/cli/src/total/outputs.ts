@@ -26,6 +26,7 @@ import {
 } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { STANDING_CAUTIONS } from "./cautions.ts";
+import { echoAccount, learnedWords, shownCompanions } from "./echo-account.ts";
 import { bestMm, type CatchmentFigure, catchmentFigures, isAtCap } from "./figures.ts";
 import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -49,6 +50,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
   const { run, total, comparison, store, adjustedTotalMm } = sources;
   const { planes } = total;
   const { adjustment } = comparison;
+  const companions = shownCompanions(total);
   const V = TOTALS_VARIABLES;
   const variables: TotalsVariable[] = [
     V.radar_total,
@@ -59,6 +61,15 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     V.beam_height,
     V.cap_share,
     V.unseen_depth,
+    ...companions.map(
+      ({ name, longName, units, kind }): TotalsVariable => ({
+        name,
+        over: "window",
+        longName,
+        units,
+        ...(kind === "toll" ? { cellMethods: "area: mean window_end: sum" } : {}),
+      }),
+    ),
     V.radar_share,
     V.radar_depth,
     ...(adjustedTotalMm === undefined ? [] : [V.adjusted_depth]),
@@ -90,6 +101,7 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
     file.writeField2d("beam_height", planes.beamHeightAslM);
     file.writeField2d("cap_share", planes.cappedFraction);
     file.writeField2d("unseen_depth", total.unseenMm);
+    for (const { name, values } of companions) file.writeField2d(name, values);
     for (const [r, share] of planes.radarShare.entries()) file.writeShares("radar_share", r, share);
     let k = 0;
     for (const job of run.jobs) {
@@ -346,6 +358,21 @@ function adjustmentLines({ adjustment, choice }: Comparison): string[] {
   return lines;
 }
 
+/** What was done to the echo before it became rain, for people who have only the files. */
+function echoLines({ run, total }: OutputSources): string[] {
+  const account = echoAccount(run, total);
+  if (account === undefined) return [];
+  return [
+    "From echo to rain",
+    "  Echo that is not rain was screened gate by gate; the rest was corrected for what hid or changed it on its way.",
+    ...shownCompanions(total).map(({ name, longName }) => `  ${name.padEnd(34)}  ${longName}`),
+    "  A toll (screened_depth_…) is the depth that screened echo would have made, each gate under the first screen that",
+    "  took it, each round standing for one median round; it is no part of the total.",
+    ...[...account.learned].map(([id, learned]) => `  radar ${id}: ${learnedWords(learned).join("; ")}`),
+    "",
+  ];
+}
+
 /** `README.txt`: how to read the files of a run. CSVs hold no comment lines, so this stands beside them. */
 export async function writeReadme(sources: OutputSources, files: readonly string[]): Promise<void> {
   const { run, comparison } = sources;
@@ -389,6 +416,7 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "  factor              gauge/radar: what radar depths are multiplied by",
     "  cross_validated_mm  the adjusted depth at a gauge that this gauge had no part in",
     "",
+    ...echoLines(sources),
     "Adjustment",
     ...adjustmentLines(comparison).map((line) => `  ${line}`),
     "",

@@ -24,6 +24,7 @@ import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import { relationOf } from "./conversion.ts";
+import { echoAccount, learnedWords, screenedDepthMm } from "./echo-account.ts";
 import {
   type ArealFigure,
   adjustedSteps,
@@ -150,6 +151,7 @@ export function reportInput(sources: ReportSources): ReportInput {
       radar: reportScores(comparison.before),
       crossValidated: "whole" in comparison.after ? reportScores(comparison.after) : [],
     },
+    ...echoStatement(run, total),
     accounts: accountsOf(sources),
     provenance: {
       software: `rainreckon ${version()}`,
@@ -240,6 +242,16 @@ function layersOf({ total, adjustedTotalMm }: ReportSources): MapLayer[] {
       values: loudest,
     },
   );
+  const screened = screenedDepthMm(total);
+  if (screened.some((mm) => mm > 0)) {
+    layers.push({
+      quantity: "depthMm",
+      id: "screened",
+      label: "Screened out",
+      what: "Depth that echo taken out as no rain would have made, mm; no part of the total.",
+      values: screened,
+    });
+  }
   return layers;
 }
 
@@ -341,6 +353,18 @@ function reportScores(table: ScoreTable): ReportScore[] {
   ];
 }
 
+function echoStatement(run: PreparedRun, total: AssembledRun): Pick<ReportInput, "echo"> {
+  const account = echoAccount(run, total);
+  if (account === undefined) return {};
+  return {
+    echo: {
+      screens: account.screens.map(({ screen, ...toll }) => ({ name: screen.replaceAll("-", " "), ...toll })),
+      corrections: account.corrections.map(({ correction, ...effect }) => ({ name: correction, ...effect })),
+      radars: [...account.learned].map(([id, learned]) => ({ id, statements: learnedWords(learned) })),
+    },
+  };
+}
+
 /** Which deed a notice's kind stands for. */
 function deedOf(kind: string): AccountLine["deed"] {
   if (kind === "assumed") return "assumed";
@@ -379,6 +403,37 @@ function accountsOf({ run, total, comparison, notices }: ReportSources): Account
     counts.gatesCapped,
     "gates",
     `of ${countText(counts.gatesRead).replaceAll(",", "\u202f")} gates read`,
+  );
+  add(
+    "filled",
+    "gates that were screened and take the rain of their neighbours",
+    counts.gatesFilled,
+    "gates",
+    "plan: echo.screening.fill",
+  );
+  add(
+    "left out",
+    "gates behind more attenuation than can be corrected: not observed",
+    counts.gatesLostInAttenuation,
+    "gates",
+    "another radar or a later round may see the place",
+  );
+  add(
+    "left out",
+    "gates behind more terrain than is corrected: not observed",
+    counts.gatesBlocked,
+    "gates",
+    "plan: echo.blockage.limit",
+  );
+  add("flagged", "gates taken for hail", counts.gatesHail, "gates", "their rain is not what their echo says");
+  add("flagged", "gates mostly in melting snow", counts.gatesMelting, "gates", "brought down by the profile");
+  add("flagged", "gates mostly in snow", counts.gatesSnow, "gates", "brought down by the profile");
+  add(
+    "flagged",
+    "gates with weak echo beside an intense core, which side lobes may have made",
+    counts.gatesBesideCores,
+    "gates",
+    "kept as rain",
   );
   add(
     "capped",

@@ -15,6 +15,7 @@ import { sumAdjusted } from "./adjust.ts";
 import { compareWithGauges } from "./against-gauges.ts";
 import { type AssembledRun, assemble } from "./assemble.ts";
 import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
+import { echoAccount, learnedWords } from "./echo-account.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
 import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
@@ -253,5 +254,18 @@ async function manifestOf(
       }),
       cautions: [...cautions, ...STANDING_CAUTIONS],
     },
+    echo: manifestEcho(run, total),
+  };
+}
+
+function manifestEcho(run: PreparedRun, total: AssembledRun): Manifest["echo"] {
+  const account = echoAccount(run, total);
+  if (account === undefined) return null;
+  const { screens, corrections, gates, learned } = account;
+  return {
+    screens: [...screens],
+    corrections: [...corrections],
+    gates: { ...gates },
+    learned: Object.fromEntries([...learned].map(([id, one]) => [id, learnedWords(one)])),
   };
 }
