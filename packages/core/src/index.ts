@@ -114,6 +114,18 @@ export {
 export { type BlockedSweep, terrainBlockage } from "./echo/blockage/terrain-blockage.ts";
 export { type TerrainGrid, type TerrainRays, terrainCaution } from "./echo/blockage/terrain-model.ts";
 export {
+  type LearnedAlpha,
+  type LearnedFactor,
+  learnAttenuationFromOverlap,
+  learnFactorFromOverlap,
+} from "./echo/calibration/overlap-attenuation.ts";
+export {
+  type Estimate,
+  type OverlapDifference,
+  overlapDifference,
+} from "./echo/calibration/overlap-difference.ts";
+export { type OverlapPairs, turned } from "./echo/calibration/overlap-pairs.ts";
+export {
   EchoChain,
   type EchoReport,
   type EchoSettings,
@@ -145,6 +157,36 @@ export type { LearnedProfile, MeltingCorrelation, MeltingLayer } from "./echo/pr
 export { layerBelowFreezing, MeltingLayerLearner } from "./echo/profile/melting-layer.ts";
 export { ProfileLearner } from "./echo/profile/profile-learner.ts";
 export {
+  type AttenuationRateLaw,
+  type BandLaws,
+  bandLaws,
+  type KdpLaw,
+  type KdpZdrLaw,
+  kdpLaw,
+  rateOfAttenuation,
+  rateOfKdp,
+  rateOfKdpZdr,
+  rateOfZZdr,
+  type ZZdrLaw,
+} from "./echo/rain-rate/estimators.ts";
+export {
+  type GateRatesOfSweep,
+  gateRates,
+  RATE_METHODS,
+  type RateCounts,
+  type RateMethod,
+} from "./echo/rain-rate/gate-rates.ts";
+export { hailShare, rainLimitDbz } from "./echo/rain-rate/hail.ts";
+export {
+  type GateRateSettings,
+  POLARIMETRIC_RATE_DEFAULTS,
+  type PolarimetricRateSettings,
+  type RateTables,
+  type ReadyRelation,
+  rateOfZ,
+  rateTables,
+} from "./echo/rain-rate/rate-tables.ts";
+export {
   backgroundDbz,
   CONVECTIVE_RADIUS_RULES,
   type ConvectiveRadiusRule,
@@ -171,7 +213,13 @@ export {
 } from "./echo/screening/static-echo.ts";
 export type { SweepGeometry } from "./echo/screening/sweep-geometry.ts";
 export { spinChangePercent, textureDb2 } from "./echo/screening/texture.ts";
-export { errorFunction } from "./error-function.ts";
+export { correctProfile, PROFILE_BAND_M, PROFILE_DEFAULTS, type ProfileReport, type ProfileSettings } from "./echo/profile/correct-profile.ts";
+export type { BeamSettings } from "./echo/profile/gate-table.ts";
+export type { LearnedProfile, MeltingCorrelation, MeltingLayer } from "./echo/profile/learned-profile.ts";
+export { layerBelowFreezing, MeltingLayerLearner } from "./echo/profile/melting-layer.ts";
+export { ProfileLearner } from "./echo/profile/profile-learner.ts";
+export { beamProfileDb, beamSigmaM, idealisedProfile, type LayerHeights, profileDb, USUAL_PROFILE, type VerticalProfile } from "./echo/profile/vertical-profile.ts";
+export { errorFunction, scaledErrorComplement } from "./error-function.ts";
 export {
   ATLAS_SRIVASTAVA_SEKHON_1973,
   ATLAS_ULBRICH_1977,

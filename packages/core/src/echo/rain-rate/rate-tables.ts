@@ -1,0 +1,126 @@
+import { type CapSetting, resolveCap } from "../../cap.ts";
+import { SNOW_EQUIVALENT_TO_MELTED_DB } from "../../relations.ts";
+import type { ZrRelation } from "../../zr-relation.ts";
+import { RAIN_TYPE } from "../rain-type/steiner.ts";
+import { type BandLaws, bandLaws } from "./estimators.ts";
+
+/** What polarimetric moments may do to the rate. A share of 0 leaves an estimator out. */
+export interface PolarimetricRateSettings {
+  /** Lets the relation follow the number of drops that KDP tells, see `dropNumberFactor`. */
+  readonly dropNumber: boolean;
+  /** Marks hail and takes it out of the rain. */
+  readonly hail: boolean;
+  /** Share of R(KDP) in heavy rain, 0 to 1, where it is well measured. */
+  readonly kdpShare: number;
+  /** Part of R(KDP) that R(KDP, ZDR) takes over where ZDR is measured. */
+  readonly kdpZdrPart: number;
+  /** Share of R(Z, ZDR) in moderate rain. */
+  readonly zZdrShare: number;
+  /** Share of R(A) in moderate and heavy rain, where a specific attenuation is given. */
+  readonly attenuationShare: number;
+}
+
+/** How the echo of one radar becomes rain. */
+export interface GateRateSettings {
+  readonly relation: ZrRelation;
+  /** Instead of `relation` in convective and in stratiform rain. */
+  readonly convective?: ZrRelation | undefined;
+  readonly stratiform?: ZrRelation | undefined;
+  readonly cap: CapSetting;
+  /** Rates below it count as dry, mm/h; 0 or more. */
+  readonly minRateMmPerHour: number;
+  /** Undefined where polarimetric moments are to have no part. */
+  readonly polarimetric?: PolarimetricRateSettings | undefined;
+}
+
+/**
+ * House rule, from what helps in storms with known rain: R(KDP) in the heaviest rain and under hail, the number
+ * of drops over whole sweeps. R(Z, ZDR) and R(A) are there to be asked for.
+ */
+export const POLARIMETRIC_RATE_DEFAULTS: PolarimetricRateSettings = {
+  dropNumber: true,
+  hail: true,
+  kdpShare: 1,
+  kdpZdrPart: 0,
+  zZdrShare: 0,
+  attenuationShare: 0,
+};
+
+/** One relation made ready: R = exp(perDb dBZ + constant), which is (Z / a)^(1 / b). */
+export interface ReadyRelation {
+  readonly relation: ZrRelation;
+  readonly perDb: number;
+  readonly constant: number;
+  readonly capDbz: number;
+  readonly capMmPerHour: number;
+  /** True where the cap was set as a rate, so that nothing made from Z may pass it. */
+  readonly capIsRate: boolean;
+}
+
+/** Settings made ready for the gates of one radar; small, and the same for every sweep. */
+export interface RateTables {
+  /** Indexed by the numbers of `RAIN_TYPE`. */
+  readonly byType: readonly [ReadyRelation, ReadyRelation, ReadyRelation];
+  /** Undefined where no coefficients stand for the wavelength, or it is not known. */
+  readonly laws: BandLaws | undefined;
+  /** Taken off every ZDR. */
+  readonly zdrOffsetDb: number;
+}
+
+/**
+ * Makes settings ready.
+ *
+ * @param wavelengthM - of the radar; undefined leaves every polarimetric rate out
+ * @param zdrOffsetDb - how much too high the radar's ZDR is, as learned
+ * @throws RangeError as `resolveCap`, and where the cut-off, a share or the offset is none
+ */
+export function rateTables(
+  settings: GateRateSettings,
+  wavelengthM: number | undefined,
+  zdrOffsetDb = 0,
+): RateTables {
+  const {
+    relation,
+    convective = relation,
+    stratiform = relation,
+    cap,
+    minRateMmPerHour,
+    polarimetric,
+  } = settings;
+  if (!(minRateMmPerHour >= 0 && Number.isFinite(minRateMmPerHour) && Number.isFinite(zdrOffsetDb))) {
+    throw new RangeError(
+      `a rate needs a finite cut-off of 0 or more and a finite ZDR offset, got ${minRateMmPerHour} mm/h, ${zdrOffsetDb} dB`,
+    );
+  }
+  const { kdpShare = 0, kdpZdrPart = 0, zZdrShare = 0, attenuationShare = 0 } = polarimetric ?? {};
+  for (const share of [kdpShare, kdpZdrPart, zZdrShare, attenuationShare]) {
+    if (!(share >= 0 && share <= 1)) throw new RangeError(`a share lies between 0 and 1, got ${share}`);
+  }
+  const byType: [ReadyRelation, ReadyRelation, ReadyRelation] = [
+    readyRelation(relation, cap),
+    readyRelation(relation, cap),
+    readyRelation(relation, cap),
+  ];
+  byType[RAIN_TYPE.convective] = readyRelation(convective, cap);
+  byType[RAIN_TYPE.stratiform] = readyRelation(stratiform, cap);
+  return { byType, laws: wavelengthM === undefined ? undefined : bandLaws(wavelengthM), zdrOffsetDb };
+}
+
+function readyRelation(relation: ZrRelation, cap: CapSetting): ReadyRelation {
+  const resolved = resolveCap(cap, relation);
+  const perDb = Math.LN10 / (10 * relation.b);
+  const meltedDb = relation.phase === "snow" ? SNOW_EQUIVALENT_TO_MELTED_DB : 0;
+  return {
+    relation,
+    perDb,
+    constant: perDb * meltedDb - Math.log(relation.a) / relation.b,
+    capDbz: resolved.dbz,
+    capMmPerHour: resolved.mmPerHour,
+    capIsRate: resolved.given === "mmPerHour",
+  };
+}
+
+/** Rain rate of a reflectivity before the cap: `rainRateMmPerHour` with one exponential in place of two powers. */
+export function rateOfZ(reflectivityDbz: number, { perDb, constant }: ReadyRelation): number {
+  return Math.exp(perDb * reflectivityDbz + constant);
+}
