@@ -153,9 +153,19 @@ export {
   type ProfileReport,
   type ProfileSettings,
 } from "./echo/profile/correct-profile.ts";
+export type { BeamSettings } from "./echo/profile/gate-table.ts";
 export type { LearnedProfile, MeltingCorrelation, MeltingLayer } from "./echo/profile/learned-profile.ts";
 export { layerBelowFreezing, MeltingLayerLearner } from "./echo/profile/melting-layer.ts";
 export { ProfileLearner } from "./echo/profile/profile-learner.ts";
+export {
+  beamProfileDb,
+  beamSigmaM,
+  idealisedProfile,
+  type LayerHeights,
+  profileDb,
+  USUAL_PROFILE,
+  type VerticalProfile,
+} from "./echo/profile/vertical-profile.ts";
 export {
   type AttenuationRateLaw,
   type BandLaws,
@@ -213,12 +223,6 @@ export {
 } from "./echo/screening/static-echo.ts";
 export type { SweepGeometry } from "./echo/screening/sweep-geometry.ts";
 export { spinChangePercent, textureDb2 } from "./echo/screening/texture.ts";
-export { correctProfile, PROFILE_BAND_M, PROFILE_DEFAULTS, type ProfileReport, type ProfileSettings } from "./echo/profile/correct-profile.ts";
-export type { BeamSettings } from "./echo/profile/gate-table.ts";
-export type { LearnedProfile, MeltingCorrelation, MeltingLayer } from "./echo/profile/learned-profile.ts";
-export { layerBelowFreezing, MeltingLayerLearner } from "./echo/profile/melting-layer.ts";
-export { ProfileLearner } from "./echo/profile/profile-learner.ts";
-export { beamProfileDb, beamSigmaM, idealisedProfile, type LayerHeights, profileDb, USUAL_PROFILE, type VerticalProfile } from "./echo/profile/vertical-profile.ts";
 export { errorFunction, scaledErrorComplement } from "./error-function.ts";
 export {
   ATLAS_SRIVASTAVA_SEKHON_1973,

@@ -1,0 +1,105 @@
+import type { PolarEcho } from "../polar-echo.ts";
+import { type EchoRatio, EchoRatios } from "./echo-ratios.ts";
+import type { BeamSettings } from "./gate-table.ts";
+import { leastNear, modelledRatioDb, type ProfileNumbers, profileOf, ratioMisfit } from "./layer-fit.ts";
+import type { LearnedProfile, MeltingLayer } from "./learned-profile.ts";
+import { PROFILE_LIMITS, PROFILE_STEPS } from "./melting-layer.ts";
+import { idealisedProfile, USUAL_PROFILE } from "./vertical-profile.ts";
+
+/** Snow that is farther above the layer than this may fall off otherwise; house rule. */
+const SNOW_DEPTH_M = 3000;
+/** Ratios that a fit needs. */
+const ENOUGH_RATIOS = 8;
+/** An excess that is wrong by this much must be told at two standard deviations, else nothing was measured. */
+const TOLD_APART_DB = 2;
+const TOLD_APART_CHI2 = 4;
+/** Ratios that scatter more than this about the fit (root mean square) do not come from one profile; house rule. */
+const MOST_MISFIT_DB = 1.5;
+
+/**
+ * Learns the mean apparent profile of a run and fits a {@link VerticalProfile} to it, seen through the beams it was
+ * measured with: least squares on ratios of linear Z, held near common practice by the usual spread of each number.
+ * After Kitchen, Brown and Davies (1994), Q. J. R. Meteorol. Soc. 120, 1231-1254, and Joss and Lee (1995), J. Appl.
+ * Meteorol. 34, 2612-2630.
+ */
+export class ProfileLearner {
+  readonly #ratios: EchoRatios;
+
+  constructor(settings: BeamSettings = {}) {
+    this.#ratios = new EchoRatios(settings);
+  }
+
+  /** As `MeltingLayerLearner.add`: sweeps round by round. */
+  add(echo: PolarEcho, rainType?: Uint8Array): void {
+    this.#ratios.add(echo, rainType);
+  }
+
+  /** @param layer - from the scans or the plan; undefined means that nothing will be corrected */
+  finish(layer: MeltingLayer | undefined): LearnedProfile {
+    return fitProfile(this.#ratios.ratios(), layer);
+  }
+}
+
+/** A profile about a known layer; see {@link ProfileLearner}. */
+export function fitProfile(all: readonly EchoRatio[], layer: MeltingLayer | undefined): LearnedProfile {
+  if (layer === undefined) {
+    return {
+      basis: "none",
+      reason: "no melting layer was found within reach",
+      pairCount: 0,
+      misfitDb: Number.NaN,
+    };
+  }
+  const idealised = (reason: string, pairCount = 0): LearnedProfile => ({
+    basis: "idealised",
+    reason,
+    layer,
+    profile: idealisedProfile(layer),
+    pairCount,
+    misfitDb: Number.NaN,
+  });
+  if (layer.basis === "plan") return idealised("the freezing height is the plan's");
+  const ratios = all.filter(({ aloftM }) => aloftM < layer.topM + SNOW_DEPTH_M);
+  if (ratios.length < ENOUGH_RATIOS) return idealised("too few sweeps see the same rain", ratios.length);
+
+  const usual = USUAL_PROFILE;
+  const start: ProfileNumbers = [
+    layer.bottomM,
+    layer.topM - layer.bottomM,
+    usual.peakDb.value,
+    usual.slopeAboveDbPerKm.value,
+  ];
+  const middleM = (layer.bottomM + layer.topM) / 2;
+  const { at } = leastNear(
+    start,
+    PROFILE_STEPS,
+    PROFILE_LIMITS,
+    (numbers) =>
+      ratioMisfit(ratios, profileOf(numbers)) +
+      ((numbers[0] + numbers[1] / 2 - middleM) / layer.uncertaintyM) ** 2 +
+      ((numbers[1] - start[1]) / usual.thicknessM.spread) ** 2 +
+      ((numbers[2] - usual.peakDb.value) / usual.peakDb.spread) ** 2 +
+      ((numbers[3] - usual.slopeAboveDbPerKm.value) / usual.slopeAboveDbPerKm.spread) ** 2,
+  );
+  const profile = profileOf(at);
+  const least = ratioMisfit(ratios, profile);
+  const scale = Math.max(1, least / Math.max(1, ratios.length - at.length));
+  const told = [TOLD_APART_DB, -TOLD_APART_DB].every(
+    (db) =>
+      ratioMisfit(ratios, { ...profile, peakDb: profile.peakDb + db }) - least >= TOLD_APART_CHI2 * scale,
+  );
+  if (!told) return idealised("the sweeps do not tell the excess of the melting layer", ratios.length);
+  const misfitDb = Math.sqrt(
+    ratios.reduce((sum, ratio) => sum + (ratio.ratioDb - modelledRatioDb(ratio, profile)) ** 2, 0) /
+      ratios.length,
+  );
+  if (misfitDb > MOST_MISFIT_DB) return idealised("the sweeps do not agree on one profile", ratios.length);
+  return {
+    basis: "measured",
+    reason: "fitted to the sweeps of the run",
+    layer,
+    profile,
+    pairCount: ratios.length,
+    misfitDb,
+  };
+}
