@@ -86,7 +86,11 @@ export const CAPPED_AND_MASKED: Variant = {
   name: "capped and masked",
   overlay: merged(chain("", ({ name }) => name === "cap").overlay, {
     echo: {
-      screening: { use: true, without: SCREENS.filter((screen) => screen !== "static-echo"), fill: "none" },
+      screening: {
+        use: true,
+        without: SCREENS.filter((screen) => screen !== "static-echo" && screen !== "fixed-point"),
+        fill: "none",
+      },
     },
   }),
 };
