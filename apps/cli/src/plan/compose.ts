@@ -1,7 +1,7 @@
 import path from "node:path";
 import { type Grid, InputError } from "@rainreckon/core";
 import { planGrid } from "@rainreckon/mosaic";
-import { Document, isCollection, type Node, YAMLMap, YAMLSeq } from "yaml";
+import { Document, isCollection, isMap, type Node, YAMLMap, YAMLSeq } from "yaml";
 import type { GaugeFinding, Guessed, RadarFinding, StationFinding } from "../survey/findings.ts";
 import type { GridSource } from "../survey/grid-sources.ts";
 import { GAP_ROUNDS } from "../survey/radars.ts";
@@ -121,7 +121,10 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
   }
   upper.set(factory.createNode("grid"), gridNode(result));
   for (const section of ["rain", "echo", "pairs", "bootstrap"] as const) {
-    upper.set(factory.createNode(section), defaultsNode(section));
+    upper.set(
+      factory.createNode(section),
+      section === "echo" ? echoNode(findings, folder) : defaultsNode(section),
+    );
   }
   ruleBefore(upper, scans.length > 0 ? "scans" : "grid");
   const document = new Document(upper, SETTINGS);
@@ -466,6 +469,26 @@ const REMARKS: Readonly<Record<string, string>> = {
   seed: "same seed, same intervals",
   level: "confidence of the intervals",
 };
+
+/** The section `echo`, with the terrain model where there is one. */
+function echoNode({ terrain }: SurveyResult["findings"], folder: string): Node {
+  const section = defaultsNode("echo");
+  const [model] = terrain;
+  if (model === undefined || !isMap(section)) return section;
+  const blockage = planSchema.shape.echo.parse({}).blockage;
+  section.set(
+    "blockage",
+    markedNode(
+      inline(
+        guessed(
+          { ...blockage, terrain: relativePath(path.resolve(model.file), folder) },
+          `the terrain model, ${model.reason}; limit: share of the beam that is still corrected`,
+        ),
+      ),
+    ),
+  );
+  return section;
+}
 
 /** A section as the schema fills it in. */
 function defaultsNode(section: "rain" | "echo" | "pairs" | "bootstrap"): Node {

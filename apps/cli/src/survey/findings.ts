@@ -142,6 +142,17 @@ const gridFinding = z.strictObject({
   remarks: z.array(z.string()),
 });
 
+const terrainFinding = z.strictObject({
+  file: z.string(),
+  nx: z.number().int(),
+  ny: z.number().int(),
+  crs: z.string(),
+  /** Of the system: metres, or degrees. */
+  cellWidth: z.number(),
+  /** What speaks for it. */
+  reason: z.string(),
+});
+
 /** The result of `survey --json`: what lies there, what is wrong with it, what can be made of it. */
 export const surveySchema = z.strictObject({
   format: z.literal("rainreckon-survey-1"),
@@ -153,6 +164,8 @@ export const surveySchema = z.strictObject({
   catchments: z.array(mapFinding),
   /** Rain or reflectivity that comes on a grid already. */
   grids: z.array(gridFinding),
+  /** Heights of the ground: what may stand in the beams. */
+  terrain: z.array(terrainFinding),
   otherFiles: z.array(z.strictObject({ kind: z.string(), count: z.number().int() })),
   wrong: z.array(manifestNotice),
   /** Time that radars, or else grids, cover; and the part of it that gauges cover as well, where there are any. */
@@ -177,4 +190,5 @@ export type Guessed<T> = {
   readonly standing: "found" | "guessed";
   readonly reason: string;
 };
+export type TerrainFinding = z.output<typeof terrainFinding>;
 export type MapFinding = z.output<typeof mapFinding>;

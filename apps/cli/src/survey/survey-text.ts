@@ -2,14 +2,22 @@ import { displayText } from "@rainreckon/formats";
 import { noticeLine } from "../ui/left-out.ts";
 import { counted, decimals, lengthText, placeText, utcText } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
-import type { Findings, GaugeFinding, GridFinding, Guessed, RadarFinding } from "./findings.ts";
+import type {
+  Findings,
+  GaugeFinding,
+  GridFinding,
+  Guessed,
+  RadarFinding,
+  TerrainFinding,
+} from "./findings.ts";
 
 const MAX_LINES = 20;
 const MAX_NAMES = 12;
 
 /** Findings for people: what there is, what is wrong with it, what can be made of it, what to type next. */
 export function surveyText(findings: Findings, terminal: Pick<Terminal, "strong">): string {
-  const { radars, gauges, stations, catchments, grids, otherFiles, wrong, possible, next } = findings;
+  const { radars, gauges, stations, catchments, grids, terrain, otherFiles, wrong, possible, next } =
+    findings;
   const have: string[] = [
     ...radars.map(radarText),
     ...grids.map(gridText),
@@ -26,6 +34,7 @@ export function surveyText(findings: Findings, terminal: Pick<Terminal, "strong"
           `name in ${nameField?.value ?? "no field"}${crsKnown ? systemText(crs) : ", coordinates of an unknown system"}`,
       ]),
     ),
+    ...terrain.map(terrainText),
   ];
   if (otherFiles.length > 0) {
     const kinds = otherFiles.map(({ kind, count }) => `${kind} ${count}`);
@@ -93,6 +102,14 @@ function radarText(radar: RadarFinding): string {
     );
   }
   return block(`Radar ${radar.id}${name}`, body);
+}
+
+function terrainText({ file, nx, ny, crs, cellWidth, reason }: TerrainFinding): string {
+  const unit = /^EPSG:4326$/.test(crs) ? "°" : " m";
+  return block(`Terrain ${file}`, [
+    `${nx} by ${ny} cells of ${Number(cellWidth.toPrecision(3))}${unit} in ${crs}; guessed: ${reason}`,
+    "heights of the ground: what stands in the beams can be told from it",
+  ]);
 }
 
 const QUANTITY_WORDS: Readonly<Record<GridFinding["quantity"], string>> = {

@@ -9,6 +9,7 @@ import {
   recogniseScan,
   sniffMap,
   sniffTable,
+  sniffTerrain,
 } from "@rainreckon/formats";
 import { type Projection, projection } from "@rainreckon/mosaic";
 import { sha256Hex } from "../digest.ts";
@@ -19,7 +20,7 @@ import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { fileKind } from "./file-kind.ts";
-import type { Findings, GaugeFinding, MapFinding, RadarFinding } from "./findings.ts";
+import type { Findings, GaugeFinding, MapFinding, RadarFinding, TerrainFinding } from "./findings.ts";
 import { type GridSource, gridSources, type SeenGrid } from "./grid-sources.ts";
 import { gridFindings } from "./grids.ts";
 import { possibleTexts } from "./possible.ts";
@@ -42,6 +43,7 @@ interface Seen {
   readonly stations: SeenStations[];
   readonly maps: { readonly file: string; readonly guess: MapGuess }[];
   readonly grids: SeenGrid[];
+  readonly terrain: TerrainFinding[];
   readonly others: Map<string, number>;
 }
 
@@ -85,6 +87,7 @@ export async function survey(
     stations: [...stations],
     catchments,
     grids: seen.grids.map(({ finding }) => finding),
+    terrain: seen.terrain,
     window,
   };
   const findings: Findings = {
@@ -112,7 +115,15 @@ export async function survey(
 const FILES_BETWEEN_BREATHS = 20;
 
 async function lookAt(files: readonly FoundFile[], terminal: Terminal, wrong: LeftOutLog): Promise<Seen> {
-  const seen: Seen = { sweeps: [], readings: [], stations: [], maps: [], grids: [], others: new Map() };
+  const seen: Seen = {
+    sweeps: [],
+    readings: [],
+    stations: [],
+    maps: [],
+    grids: [],
+    terrain: [],
+    others: new Map(),
+  };
   const progress = progressBar(terminal, files.length, "files");
   const shapefiles = new Set(
     files.filter(({ path: name }) => /\.shp$/i.test(name)).map(({ path: name }) => name.slice(0, -4)),
@@ -154,6 +165,11 @@ async function lookAtFile(volume: ScanPaths, seen: Seen, wrong: LeftOutLog): Pro
     return;
   }
   if (await lookAtGrid(file, seen, wrong)) return;
+  const terrain = await sniffTerrain(file);
+  if (terrain !== undefined) {
+    seen.terrain.push({ file, ...terrain });
+    return;
+  }
   const map = await sniffMap(file, { parts: shapefileParts(file) });
   if (map !== undefined) {
     seen.maps.push({ file, guess: map });
