@@ -97,13 +97,8 @@ export class EchoChain {
    * All steps up to the rain type.
    *
    * @param above - the sweep above, as measured; undefined where there is none
-   * @param gasAlreadyCorrected - as the file says; undefined where it says nothing
    */
-  correct(
-    echo: PolarEcho,
-    above: PolarEcho | undefined,
-    gasAlreadyCorrected: boolean | undefined = undefined,
-  ): EchoReport {
+  correct(echo: PolarEcho, above: PolarEcho | undefined): EchoReport {
     const { offsetDb, screening, blockage, gas, attenuation, profile } = this.#settings;
     const learned = this.#learned;
     const screened =
@@ -117,7 +112,7 @@ export class EchoChain {
     const air =
       gas === undefined || this.#gas === undefined
         ? undefined
-        : correctGas(echo, this.#gas, gas.mode, gasAlreadyCorrected);
+        : correctGas(echo, this.#gas, gas.mode, alreadyGivenBack(echo.header));
     // KDP is of use to the rain rate too, whether or not attenuation is corrected.
     const phase = workUpPhase(echo, learned.attenuation);
     const layer = profile === undefined ? undefined : learned.profile?.layer;
@@ -168,6 +163,11 @@ export class EchoChain {
     this.#blockage.set(key, found);
     return found;
   }
+}
+
+/** Whether the sender gave back what air takes; undefined where the file does not say. */
+function alreadyGivenBack({ gasAttenuationDbPerKm }: SweepHeader): boolean | undefined {
+  return gasAttenuationDbPerKm === undefined ? undefined : gasAttenuationDbPerKm > 0;
 }
 
 function geometryKey({ header, azimuthDeg }: PolarEcho): string {

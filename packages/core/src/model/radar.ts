@@ -54,6 +54,8 @@ export interface SweepHeader {
   /** Radar constant in dB as the file gives it (ODIM radconstH), and noise-equivalent dBZ at 1 km (NEZ). */
   readonly radarConstantDb?: number;
   readonly noiseEquivalentDbz?: number;
+  /** Attenuation by air that the sender has given back already (ODIM gasattn), dB/km; 0: nothing was. */
+  readonly gasAttenuationDbPerKm?: number;
   /** What had to be assumed or was odd, one sentence each. */
   readonly remarks: readonly string[];
 }

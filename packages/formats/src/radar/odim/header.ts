@@ -56,6 +56,7 @@ export function sweepHeader(attributes: LevelAttributes, source: HeaderSource): 
       attributes.number("how", "radconstH") ?? attributes.number("how", "radarconstH"),
     ),
     ...optional("noiseEquivalentDbz", attributes.number("how", "NEZ")),
+    ...optional("gasAttenuationDbPerKm", attributes.number("how", "gasattn")),
     remarks,
   };
 }
