@@ -2,10 +2,12 @@ import {
   BLOCKAGE_SETTINGS,
   DEFAULT_ATTENUATION_SETTINGS,
   type EchoSettings,
+  POLARIMETRIC_RATE_DEFAULTS,
   PROFILE_DEFAULTS,
 } from "@rainreckon/core";
 import type { Plan, PlanRadar } from "../plan/schema.ts";
-import type { JobRadar, JobSensitivity } from "./job.ts";
+import { relationOf } from "./conversion.ts";
+import type { JobEcho, JobRadar, JobSensitivity } from "./job.ts";
 
 /**
  * How the plan wants the echo of a radar to be worked on.
@@ -62,5 +64,24 @@ export function echoSettings(
           radiusFactor: plan.rain.effectiveRadiusFactor,
         }
       : undefined,
+  };
+}
+
+/** What the plan says of rain rates beside the relation of each radar. */
+export function rateSettings({ echo: { rate } }: Plan): JobEcho["rate"] {
+  const { convective, stratiform, polarimetric, hail } = rate;
+  const none = {
+    dropNumber: false,
+    hail: false,
+    kdpShare: 0,
+    kdpZdrPart: 0,
+    zZdrShare: 0,
+    attenuationShare: 0,
+  };
+  return {
+    convective: convective === undefined ? undefined : relationOf(convective),
+    stratiform: stratiform === undefined ? undefined : relationOf(stratiform),
+    polarimetric:
+      polarimetric || hail ? { ...(polarimetric ? POLARIMETRIC_RATE_DEFAULTS : none), hail } : undefined,
   };
 }

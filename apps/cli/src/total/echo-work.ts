@@ -1,10 +1,15 @@
 import {
   EchoChain,
   firstScreenOf,
+  type GateRateSettings,
+  type GateRatesOfSweep,
   gateRate,
+  gateRates,
   markBit,
   type PolarEcho,
   type RateSettings,
+  type RateTables,
+  rateTables,
   resolveCap,
   SCREENS,
   type ZrRelation,
@@ -17,6 +22,8 @@ import type { JobEcho, JobRadar, RunShape, UnitCounts } from "./job.ts";
 export interface WorkedRain {
   readonly gates: GateRates;
   readonly others: readonly GateRates[];
+  /** Shape [rayCount * gateCount]: indices of `RATE_METHODS`. */
+  readonly method: Uint8Array;
 }
 
 const BITS = {
@@ -36,6 +43,7 @@ export class EchoWork {
   readonly #echo: JobEcho;
   readonly #shape: RunShape;
   readonly #chain: EchoChain;
+  readonly #tables = new Map<string, RateTables>();
 
   constructor(radar: JobRadar, echo: JobEcho, shape: RunShape) {
     this.#radar = radar;
@@ -53,13 +61,17 @@ export class EchoWork {
     this.#chain.correct(echo, above);
     const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
     this.#chain.bringDown(echo, type);
-    const rates = this.#rates(echo, relation);
+    const { rateMmPerHour, capped, method } = this.#rates(echo, type, relation, true);
     const companions = this.#companions(echo, relation);
     const trust = trustOf(echo);
     const beside = { codes: undefined, trust };
     return {
-      gates: { ...rates, ...beside, companions },
-      others: variants.map((variant) => ({ ...this.#rates(echo, variant), ...beside })),
+      gates: { rateMmPerHour, capped, ...beside, companions },
+      method,
+      others: variants.map((variant) => {
+        const other = this.#rates(echo, type, variant, false);
+        return { rateMmPerHour: other.rateMmPerHour, capped: other.capped, ...beside };
+      }),
     };
   }
 
@@ -86,16 +98,31 @@ export class EchoWork {
     return { relation, cap: resolveCap(cap, relation), minRateMmPerHour, offsetDb: 0 };
   }
 
-  #rates(echo: PolarEcho, relation: ZrRelation): { rateMmPerHour: Float32Array; capped: Uint8Array } {
-    const settings = this.#settings(relation);
-    const rateMmPerHour = new Float32Array(echo.dbz.length);
-    const capped = new Uint8Array(echo.dbz.length);
-    for (let gate = 0; gate < rateMmPerHour.length; gate++) {
-      const one = gateRate(echo.dbz[gate] as number, settings);
-      rateMmPerHour[gate] = one.rate;
-      capped[gate] = one.capped;
+  #rates(
+    echo: PolarEcho,
+    type: Uint8Array | undefined,
+    relation: ZrRelation,
+    isInUse: boolean,
+  ): GateRatesOfSweep {
+    const { a, b, phase } = relation;
+    const { wavelengthM } = echo.header;
+    const key = [a, b, phase, wavelengthM, isInUse].join();
+    const { cap, minRateMmPerHour } = this.#radar;
+    const { convective, stratiform, polarimetric } = this.#echo.rate;
+    const settings: GateRateSettings = {
+      relation,
+      // A headline under another relation is one under it alone.
+      ...(isInUse ? { convective, stratiform } : {}),
+      cap,
+      minRateMmPerHour,
+      polarimetric,
+    };
+    let tables = this.#tables.get(key);
+    if (tables === undefined) {
+      tables = rateTables(settings, wavelengthM, this.#echo.learned.zdrOffsetDb);
+      this.#tables.set(key, tables);
     }
-    return { rateMmPerHour, capped };
+    return gateRates(echo, type, settings, tables);
   }
 
   /** In the order of COMPANIONS; undefined where 0 everywhere. */

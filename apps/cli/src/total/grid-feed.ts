@@ -3,7 +3,7 @@ import { InputError, MS_PER_HOUR, type ZrRelation } from "@rainreckon/core";
 import { type GriddedScan, openGridded } from "@rainreckon/formats";
 import { type CellLookup, type GateRates, type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
 import { layerLookup } from "./grid-shelf.ts";
-import type { JobGrids, JobLayer, RunShape, SweepFault, UnitCounts, UnitJob } from "./job.ts";
+import type { JobGrids, JobLayer, RunShape, SweepFault, UnitCounts, UnitJob, UnitTrace } from "./job.ts";
 import { countCapped, RateMaker } from "./rate-maker.ts";
 
 /** Gridded rain inside a unit: its layers in time order, decoded one at a time, brought to the plan's grid. */
@@ -14,14 +14,17 @@ export class GridFeed {
   readonly #rates: RateMaker | undefined;
   readonly #shape: RunShape;
   readonly #owned: (epochMs: number) => boolean;
+  readonly #trace: UnitTrace | undefined;
   #next = 0;
 
-  constructor(source: JobGrids, shape: RunShape, job: UnitJob) {
+  /** @param trace - is told of every layer */
+  constructor(source: JobGrids, shape: RunShape, job: UnitJob, trace?: UnitTrace) {
     const from = job.steps[0].startEpochMs;
     const to = job.steps[job.steps.length - 1].endEpochMs;
     const reachMs = Math.max(source.time.maxGapMs, source.time.medianRoundMs / 2);
     this.#source = source;
     this.#shape = shape;
+    this.#trace = trace;
     this.#rates = source.conversion === undefined ? undefined : new RateMaker(source.conversion);
     this.#owned = (epochMs) => epochMs > from && epochMs <= to;
     this.#rounds = source.rounds.filter(
@@ -75,7 +78,8 @@ export class GridFeed {
       file.close();
     }
     const lookup: CellLookup = layerLookup(grid, this.#source, scan);
-    const rates = this.#ratesOf(scan, round, this.#rates?.relationAt(round.firstMidEpochMs));
+    const relation = this.#rates?.relationAt(round.firstMidEpochMs);
+    const rates = this.#ratesOf(scan, round, relation);
     // Rain that came as rain is the same under every relation.
     const others = variants.map((variant) =>
       this.#rates === undefined ? rates : this.#ratesOf(scan, round, variant),
@@ -87,7 +91,9 @@ export class GridFeed {
       counts.gridCellsRead += scan.values.length;
       counts.gridCellsCapped += countCapped(rates);
     }
-    return builder.finish();
+    const layer = builder.finish();
+    this.#trace?.grid?.({ source: this.#source, round, scan, lookup, gates: rates, relation, layer });
+    return layer;
   }
 
   #ratesOf({ values, origin }: GriddedScan, round: JobLayer, relation: ZrRelation | undefined): GateRates {

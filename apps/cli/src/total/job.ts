@@ -9,6 +9,7 @@ import type {
 import {
   type CapSetting,
   type EchoSettings,
+  type GateRateSettings,
   type Grid,
   type Interval,
   type LearnedEcho,
@@ -16,10 +17,11 @@ import {
   type PolarEcho,
   type RadarSite,
   SCREENS,
+  type Sweep,
   type ZrRelation,
 } from "@rainreckon/core";
-import type { GriddedOptions, GriddedQuantity } from "@rainreckon/formats";
-import type { GateRates, LookupRules, PolarLookup, RateLayer } from "@rainreckon/mosaic";
+import type { GriddedOptions, GriddedQuantity, GriddedScan } from "@rainreckon/formats";
+import type { CellLookup, GateRates, LookupRules, PolarLookup, RateLayer } from "@rainreckon/mosaic";
 import type { ScanPaths } from "../scans/scan-files.ts";
 
 /** A sweep as a unit of work needs it: where it is, and when it speaks. */
@@ -72,6 +74,7 @@ export interface JobEcho {
   readonly learned: LearnedEcho;
   /** Whether showers and widespread rain are told apart. */
   readonly rainType: boolean;
+  readonly rate: Pick<GateRateSettings, "convective" | "stratiform" | "polarimetric">;
 }
 
 export interface JobRadar extends JobConversion {
@@ -208,18 +211,40 @@ export interface UnitResult {
   readonly notices: readonly SweepFault[];
 }
 
-/** Is told, while a unit works, of all that its figures are made from. */
+/** A sweep that has spoken. */
+export interface SpokenSweep {
+  readonly radar: JobRadar;
+  readonly sweep: JobSweep;
+  readonly lookup: PolarLookup;
+  readonly gates: GateRates;
+  /** The relation in use at its time. */
+  readonly relation: ZrRelation;
+  /** Undefined where its stored numbers went straight to rain. */
+  readonly echo: PolarEcho | undefined;
+  /** Shape [rayCount * gateCount]: indices of `RATE_METHODS`; undefined where all rates are those of the relation. */
+  readonly method: Uint8Array | undefined;
+  /** Decodes the moment that rain is made from once more, in stored numbers. */
+  stored(): Sweep;
+}
+
+/** A layer of a gridded file that is on the grid. */
+export interface SpokenGrid {
+  readonly source: JobGrids;
+  readonly round: JobLayer;
+  readonly scan: GriddedScan;
+  readonly lookup: CellLookup;
+  readonly gates: GateRates;
+  /** Undefined where rain came as rain. */
+  readonly relation: ZrRelation | undefined;
+  readonly layer: RateLayer;
+}
+
+/** Is told, while a unit works, of all that its figures are made from; what it is handed must not be changed. */
 export interface UnitTrace {
-  /** A sweep has spoken. `echo` is undefined where its stored numbers went straight to rain. */
-  sweep?(
-    radar: JobRadar,
-    sweep: JobSweep,
-    lookup: PolarLookup,
-    gates: GateRates,
-    echo: PolarEcho | undefined,
-  ): void;
-  /** A round is on the grid. */
+  sweep?(spoken: SpokenSweep): void;
+  /** A round is on the grid; its sweeps were told of before, in the order of the layer's slots. */
   layer?(radar: JobRadar, round: JobRound, layer: RateLayer): void;
+  grid?(spoken: SpokenGrid): void;
   /** The sources of a step were blended; shape of `sources` as in `sourceIds`. */
   step?(
     span: Interval,

@@ -22,7 +22,7 @@ import { version } from "../version.ts";
 import { checkAssets } from "./assets.ts";
 import { relationWasNotChosen } from "./cautions.ts";
 import { conversionOf } from "./conversion.ts";
-import { echoSettings } from "./echo-settings.ts";
+import { echoSettings, rateSettings } from "./echo-settings.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { type GridInput, indexGrids } from "./grid-inputs.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
@@ -301,6 +301,11 @@ export function jobRadar(
     echo:
       settings === undefined
         ? undefined
-        : { settings, learned: NOTHING_LEARNED, rainType: plan.echo.rate.rainType },
+        : {
+            settings,
+            learned: NOTHING_LEARNED,
+            rainType: plan.echo.rate.rainType,
+            rate: rateSettings(plan),
+          },
   };
 }

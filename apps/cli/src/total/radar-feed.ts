@@ -22,8 +22,9 @@ interface SweepRain {
   readonly gates: GateRates;
   readonly others: readonly GateRates[];
   readonly gateCount: number;
-  /** Undefined where the stored numbers went straight to rain. */
+  /** Undefined where the stored numbers went straight to rain, and the method where all are of the relation. */
   readonly echo: PolarEcho | undefined;
+  readonly method: Uint8Array | undefined;
 }
 
 /** One radar inside a unit: its rounds in time order, decoded one at a time. */
@@ -110,7 +111,16 @@ export class RadarFeed {
       this.#echoes === undefined ? this.#plainRain(echoes, sweep) : this.#rain(echoes, sweep, lookup);
     if (rain === undefined) return 0;
     const filled = builder.add(lookup, rain.gates, rain.others, sweep.midEpochMs);
-    this.#trace?.sweep?.(this.#radar, sweep, lookup, rain.gates, rain.echo);
+    this.#trace?.sweep?.({
+      radar: this.#radar,
+      sweep,
+      lookup,
+      gates: rain.gates,
+      relation: this.#rates.relationAt(sweep.midEpochMs),
+      echo: rain.echo,
+      method: rain.method,
+      stored: () => echoes.plain(sweep),
+    });
     if (this.#owned(sweep.midEpochMs)) {
       counts.sweepsDecoded++;
       counts.gatesRead += rain.gateCount;
@@ -130,18 +140,19 @@ export class RadarFeed {
       others: this.#shape.variants.map((variant) => this.#rates.rates(decoded, variant, where)),
       gateCount: decoded.rayCount * decoded.gateCount,
       echo: undefined,
+      method: undefined,
     };
   }
 
   #rain(echoes: RoundEchoes, sweep: JobSweep, lookup: PolarLookup): SweepRain | undefined {
     const echo = echoes.echo(sweep);
     if (echo === undefined || this.#echoes === undefined) return undefined;
-    const { gates, others } = this.#echoes.rain(
+    const { gates, others, method } = this.#echoes.rain(
       echo,
       echoes.above(sweep),
       lookup,
       this.#rates.relationAt(sweep.midEpochMs),
     );
-    return { gates, others, gateCount: echo.dbz.length, echo };
+    return { gates, others, gateCount: echo.dbz.length, echo, method };
   }
 }

@@ -32,7 +32,7 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
   const counts = noCounts();
   const notices: SweepFault[] = [];
   const radars = shape.radars.map((radar) => new RadarFeed(radar, shape, job, trace));
-  const feeds = [...radars, ...shape.grids.map((grids) => new GridFeed(grids, shape, job))];
+  const feeds = [...radars, ...shape.grids.map((grids) => new GridFeed(grids, shape, job, trace))];
   const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
   const areas: AreaStepSeries = {
     ...emptySeries(shape.areas.length, job.steps.length),

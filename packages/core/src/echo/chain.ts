@@ -47,6 +47,8 @@ export interface LearnedEcho {
   readonly blockage: LearnedBlockage | undefined;
   readonly attenuation: LearnedAttenuation;
   readonly profile: LearnedProfile | undefined;
+  /** How much too high the radar's ZDR is; 0 where the scans do not tell. */
+  readonly zdrOffsetDb: number;
 }
 
 export const NOTHING_LEARNED: LearnedEcho = {
@@ -56,6 +58,7 @@ export const NOTHING_LEARNED: LearnedEcho = {
   blockage: undefined,
   attenuation: {},
   profile: undefined,
+  zdrOffsetDb: 0,
 };
 
 /** What each step did to a sweep; undefined where it was not taken. */
