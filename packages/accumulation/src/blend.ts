@@ -5,7 +5,7 @@ import { type FieldShape, headlinePositions, type RadarStep } from "./radar-step
 import { type Span, spansAt } from "./spans.ts";
 
 /** Time that may be missing from a step before it counts as partly observed: rounding of float32 milliseconds. */
-const FULL_SLACK_MS = 2;
+export const FULL_SLACK_MS = 2;
 
 /** One step of all radars together. Shapes [cells] unless said otherwise. */
 export interface BlendedStep {

@@ -1,5 +1,6 @@
 export { type ArealDepth, type ArealSource, arealDepth, type CellFractions, cellFractions } from "./areal.ts";
 export { type BlendedStep, blendStep, type RadarInStep, StepBlender } from "./blend.ts";
+export { type Contribution, contributionsAt } from "./contributions.ts";
 export { type LayerPlace, type LayerStretch, RadarIntegrator, type TimeRules } from "./integrate.ts";
 export { FieldSum, type IntervalFields, type TotalPlanes, totalPlanes } from "./interval-sum.ts";
 export { type Isohyet, isohyetLevels, isohyets } from "./isohyet.ts";

@@ -5,7 +5,7 @@ import type { LayerStretch } from "./integrate.ts";
 import { type Stretch, trapezoidHours } from "./stretch.ts";
 
 /** What one radar says in a part of a step over which the same radars see a cell. */
-export interface Span {
+export interface Span extends Interval {
   /** Index of the radar. */
   readonly radar: number;
   /** Its share of the span by weight. */
@@ -54,7 +54,8 @@ export function spansAt(
       const { fromEpochMs, toEpochMs, layer0, layer1, kind } = stretch;
       const { hours0, hours1 } = trapezoidHours(fromEpochMs, toEpochMs, from, to);
       const share = weights[radar] / sum;
-      spans.push({ radar, share, ms: share * (to - from), kind, hours0, hours1, layer0, layer1 });
+      const span = { startEpochMs: from, endEpochMs: to, radar, share, ms: share * (to - from) };
+      spans.push({ ...span, kind, hours0, hours1, layer0, layer1 });
     }
   }
   return spans;

@@ -10,7 +10,12 @@ const MINUTE = 60_000;
 const HOUR = 60 * MINUTE;
 const CELLS = 3;
 const CAP_FROM_MM_PER_HOUR = 20;
-const shape = { cellCount: CELLS, headlineCells: Int32Array.of(0, 1, 2), variantCount: 1 };
+const shape = {
+  cellCount: CELLS,
+  headlineCells: Int32Array.of(0, 1, 2),
+  variantCount: 1,
+  companions: [{ kind: "depth" }, { kind: "time" }, { kind: "toll" }],
+} as const;
 
 interface Radar {
   readonly layers: readonly RateLayer[];
@@ -43,6 +48,12 @@ function inventedRadar(random: () => number, roundMinutes: number, weights: read
       beamHeightAslM: new Float32Array(CELLS).fill(700),
       weight: Float32Array.from(weights),
       variants: [rate.map((mm) => 2 * mm)],
+      // 3 dB at every gate; blocked by as much as the time of the round says; a toll whether observed or not.
+      companions: [
+        rate.map((mm) => (mm > 0 ? 3 * mm : 0)),
+        rate.map(() => (minute + 30) / 120),
+        new Float32Array(CELLS).fill(minute + 30),
+      ],
     });
   }
   return { layers, rules: { medianRoundMs: roundMinutes * MINUTE, maxGapMs: 2.5 * roundMinutes * MINUTE } };
@@ -83,6 +94,7 @@ interface Piece {
   readonly to: number;
   readonly rates: readonly [number, number];
   readonly capped: readonly [number, number];
+  readonly blocked: readonly [number, number];
   readonly kind: "usual" | "bridged" | "edge";
   readonly weight: number;
 }
@@ -93,13 +105,20 @@ function piecesOf({ layers, rules }: Radar, cell: number): Piece[] {
       at: layer.sweepMidEpochMs[layer.slot![cell]!]!,
       rate: layer.rateMmPerHour[cell]!,
       cap: layer.cappedRateMmPerHour![cell]!,
+      blocked: layer.companions![1]![cell]!,
       weight: layer.weight[cell]!,
       k,
     }))
     .filter(({ rate }) => !Number.isNaN(rate));
   const half = rules.medianRoundMs / 2;
-  return seen.flatMap(({ at, rate, cap, weight, k }, n): Piece[] => {
-    const still = { rates: [rate, rate], capped: [cap, cap], kind: "edge", weight } as const;
+  return seen.flatMap(({ at, rate, cap, blocked, weight, k }, n): Piece[] => {
+    const still = {
+      rates: [rate, rate],
+      capped: [cap, cap],
+      blocked: [blocked, blocked],
+      kind: "edge",
+      weight,
+    } as const;
     const before = seen[n - 1];
     const gap = before === undefined ? Infinity : at - before.at;
     const kind = gap > 1.5 * rules.medianRoundMs ? "bridged" : "usual";
@@ -112,6 +131,7 @@ function piecesOf({ layers, rules }: Radar, cell: number): Piece[] {
               to: at,
               rates: [before.rate, rate],
               capped: [before.cap, cap],
+              blocked: [before.blocked, blocked],
               kind,
               weight,
             } as const,
@@ -120,6 +140,19 @@ function piecesOf({ layers, rules }: Radar, cell: number): Piece[] {
       ...(k === layers.length - 1 ? [{ ...still, from: at, to: at + half }] : []),
     ];
   });
+}
+
+/** Each round's toll over the part of its half rounds, before and after its first sweep, that lies in the step. */
+function tollMm(radars: readonly Radar[], step: Interval, cell: number): number {
+  let mm = 0;
+  for (const { layers, rules } of radars) {
+    for (const { sweepMidEpochMs, companions } of layers) {
+      const [from, to] = [-0.5, 0.5].map((rounds) => sweepMidEpochMs[0]! + rounds * rules.medianRoundMs);
+      const ms = Math.min(to!, step.endEpochMs) - Math.max(from!, step.startEpochMs);
+      if (ms > 0) mm += (ms / HOUR) * companions![2]![cell]!;
+    }
+  }
+  return mm;
 }
 
 function plainSum(radars: readonly Radar[], step: Interval, cell: number) {
@@ -131,6 +164,8 @@ function plainSum(radars: readonly Radar[], step: Interval, cell: number) {
   const sum = {
     depthMm: 0,
     cappedMm: 0,
+    blockedHours: 0,
+    tollMm: tollMm(radars, step, cell),
     observedMs: 0,
     bridgedMs: 0,
     edgeMs: 0,
@@ -149,6 +184,7 @@ function plainSum(radars: readonly Radar[], step: Interval, cell: number) {
       const ms = (piece.weight / weights) * (to - from);
       sum.depthMm += (ms / HOUR) * middle(piece.rates);
       sum.cappedMm += (ms / HOUR) * middle(piece.capped);
+      sum.blockedHours += (ms / HOUR) * middle(piece.blocked);
       sum.shareMs[r]! += ms;
       if (piece.kind === "bridged") sum.bridgedMs += ms;
       if (piece.kind === "edge") sum.edgeMs += ms;
@@ -167,6 +203,11 @@ test.each([1, 2, 3])(
   (count) => {
     const random = randomNumbers(count);
     let partly = 0;
+    // Largest difference of each field, over what it may be.
+    const off = new Map<string, number>();
+    const differ = (field: string, by: number, atMost: number) => {
+      off.set(field, Math.max(off.get(field) ?? 0, Number.isNaN(by) ? Infinity : Math.abs(by) / atMost));
+    };
     for (let run = 0; run < 25; run++) {
       const radars = [
         inventedRadar(random, 5, [0.5, 0.2, 1e-6]),
@@ -174,24 +215,30 @@ test.each([1, 2, 3])(
         inventedRadar(random, 10, [0.1, 0.3, 0.2]),
       ].slice(0, count);
       for (const [k, blended] of blendedSteps(radars, STEPS).entries()) {
+        const [addedDbMm, blockedHours, tolls] = blended.companions;
         for (let cell = 0; cell < CELLS; cell++) {
           const plain = plainSum(radars, STEPS[k]!, cell);
+          differ("toll", (tolls?.[cell] ?? 0) - plain.tollMm, 1e-5);
           if (plain.observedMs === 0) {
             expect(blended.depthMm[cell]).toBeNaN();
             continue;
           }
           if (plain.observedMs < 5 * MINUTE) partly++;
           // Weights and times by radar are float32: a few parts in ten million.
-          expect(Math.abs(blended.depthMm[cell]! - plain.depthMm)).toBeLessThan(1e-6);
-          expect(Math.abs(blended.variantMm[0]![cell]! - 2 * plain.depthMm)).toBeLessThan(2e-6);
-          expect(Math.abs(blended.cappedMm[cell]! - plain.cappedMm)).toBeLessThan(1e-6);
+          differ("depth", blended.depthMm[cell]! - plain.depthMm, 1e-6);
+          differ("variant", blended.variantMm[0]![cell]! - 2 * plain.depthMm, 2e-6);
+          differ("capped", blended.cappedMm[cell]! - plain.cappedMm, 1e-6);
+          differ("by depth", (addedDbMm?.[cell] ?? 0) - 3 * plain.depthMm, 3e-6);
+          differ("by time", (blockedHours?.[cell] ?? 0) - plain.blockedHours, 1e-6);
           for (const key of ["observedMs", "bridgedMs", "edgeMs"] as const)
-            expect(Math.abs(blended[key][cell]! - plain[key])).toBeLessThan(0.1);
+            differ(key, blended[key][cell]! - plain[key], 0.1);
           for (const [r, share] of plain.shareMs.entries())
-            expect(Math.abs(blended.shareMs[r]![cell]! - share)).toBeLessThan(0.1);
+            differ(`share ${r}`, blended.shareMs[r]![cell]! - share, 0.1);
         }
       }
     }
+    expect(off.size).toBe(9 + count);
+    expect([...off].filter(([, ratio]) => ratio >= 1)).toEqual([]);
     expect(partly).toBeGreaterThan(100);
   },
 );
@@ -202,5 +249,21 @@ test("steps done in three units come out the same to the last bit as in one", ()
     const radars = [inventedRadar(random, 5, [0.5, 0.2, 1]), inventedRadar(random, 6, [0.5, 0.7, 0.9])];
     const parts = [STEPS.slice(0, 7), STEPS.slice(7, 8), STEPS.slice(8)];
     expect(parts.flatMap((steps) => blendedSteps(radars, steps))).toEqual(blendedSteps(radars, STEPS));
+  }
+});
+
+test("what travels with the rain changes no bit of the rain", () => {
+  const random = randomNumbers(5);
+  for (let run = 0; run < 10; run++) {
+    const radars = [inventedRadar(random, 5, [0.5, 0.2, 1]), inventedRadar(random, 6, [0.5, 0.7, 0.9])];
+    const bare = radars.map(({ layers, rules }) => ({
+      layers: layers.map(({ companions: _, ...layer }) => layer),
+      rules,
+    }));
+    const without = blendedSteps(bare, STEPS);
+    expect(without.flatMap(({ companions }) => companions)).toEqual(Array(3 * STEPS.length).fill(undefined));
+    expect(without.map(({ companions: _, ...step }) => step)).toEqual(
+      blendedSteps(radars, STEPS).map(({ companions: _, ...step }) => step),
+    );
   }
 });

@@ -92,6 +92,117 @@ describe("RateLayerBuilder", () => {
   });
 });
 
+describe("what travels with the rates", () => {
+  const kinds = [{ kind: "depth" }, { kind: "time" }, { kind: "toll" }, { kind: "toll" }] as const;
+  const values = (...gates: readonly number[]) => Float32Array.from(gates);
+  const build = (sweeps: readonly { cells: readonly (readonly number[])[]; gates: GateRates }[]) => {
+    const builder = new RateLayerBuilder(sweeps[0]!.cells.length, new Int32Array(), 0, kinds);
+    sweeps.forEach(({ cells, gates }, k) => {
+      builder.add(lookupOf(cells, 300 * (k + 1)), gates, [], 1000 * k);
+    });
+    return builder;
+  };
+  const companionsOf = (builder: RateLayerBuilder) =>
+    builder.finish().companions!.map((plane) => plane && [...plane]);
+
+  // By hand: rates 2 and 4 with 1 and 4 dB make 2·1 + 4·4 = 18 over two gates, and 2.5 dB by time.
+  test("a value is averaged by rate where it goes by depth, by gates where it goes by time", () => {
+    const gates = { ...perGate([2, 4, Number.NaN, 0]), companions: [values(1, 4, 7, 5), values(1, 4, 7, 5)] };
+    const planes = companionsOf(build([{ cells: [[0, 1], [2], [3]], gates }]));
+    expect(planes).toEqual([[9, 0, 0], [2.5, 0, 5], undefined, undefined]);
+  });
+
+  test("by codes as by gate; a value that is not known counts as 0", () => {
+    const gates = {
+      codes: Uint8Array.of(1, 2),
+      rateMmPerHour: values(0, 2, 4),
+      capped: new Uint8Array(3),
+      companions: [values(Number.NaN, 3), undefined],
+    };
+    expect(companionsOf(build([{ cells: [[0, 1]], gates }]))[0]).toEqual([6]);
+  });
+
+  test("each cell has the value of the sweep that speaks for it, and none from one that does not", () => {
+    const low = { ...perGate([2, Number.NaN]), companions: [values(1, 1)] };
+    const high = { ...perGate([8, 8]), companions: [values(3, 3)] };
+    const cells = [[0], [1]];
+    expect(
+      companionsOf(
+        build([
+          { cells, gates: low },
+          { cells, gates: high },
+        ]),
+      )[0],
+    ).toEqual([2, 24]);
+  });
+
+  // By hand. Cell 0: 6 mm/h screened beside a gate that speaks. Cell 1: two screened by two screens, nothing left.
+  // Cell 2: 4 mm/h screened and filled beside one that speaks: two gates, not three. Cell 3: screened beside nodata.
+  test("a toll is shared by the gates that speak or were screened, also where nothing is left to observe", () => {
+    const gates = {
+      ...perGate([2, Number.NaN, Number.NaN, Number.NaN, 1, 1, Number.NaN, Number.NaN]),
+      companions: [
+        undefined,
+        undefined,
+        values(0, 6, 6, Number.NaN, 4, 0, 5, 0),
+        values(0, 0, 0, 2, 0, 0, 0, 0),
+      ],
+    };
+    const cells = [
+      [0, 1],
+      [2, 3],
+      [4, 5],
+      [6, 7],
+    ];
+    const builder = build([{ cells, gates }]);
+    expect(companionsOf(builder)).toEqual([undefined, undefined, [3, 3, 2, 5], [0, 1, 0, 0]]);
+    expect([...builder.finish().rateMmPerHour]).toEqual([2, Number.NaN, 1, Number.NaN]);
+  });
+
+  test("only the lowest sweep that would have spoken has a toll", () => {
+    const low = {
+      ...perGate([2, Number.NaN, Number.NaN]),
+      companions: [undefined, undefined, values(0, 6, 0)],
+    };
+    const high = {
+      ...perGate([Number.NaN, 1, Number.NaN]),
+      companions: [undefined, undefined, values(9, 9, 9)],
+    };
+    const cells = [[0], [1], [2]];
+    const builder = build([
+      { cells, gates: low },
+      { cells, gates: high },
+    ]);
+    expect(companionsOf(builder)[2]).toEqual([0, 6, 9]);
+    expect([...builder.finish().rateMmPerHour]).toEqual([2, 1, Number.NaN]);
+  });
+
+  test("a round of which everything was screened is not empty, one of nodata is", () => {
+    const cells = [[0]];
+    const nodata = perGate([Number.NaN]);
+    expect(build([{ cells, gates: nodata }]).isEmpty).toBe(true);
+    const screened = { ...nodata, companions: [undefined, undefined, values(3)] };
+    expect(build([{ cells, gates: screened }]).isEmpty).toBe(false);
+  });
+
+  test("trust in the gates that speak lowers the weight of their cell, never to nothing", () => {
+    const gates = { ...perGate([2, 4, Number.NaN, 3, 1]), trust: values(0.5, 1, 0.1, 0, 1) };
+    const { weight } = build([{ cells: [[0, 1, 2], [3], [4]], gates }]).finish();
+    expect([...weight]).toEqual([0.375, Math.fround(1e-6), 0.5]);
+  });
+
+  test("without trust and companions the same bytes come out, and no memory is taken", () => {
+    const gates = perGate([2, 4, Number.NaN, 0]);
+    const cells = [[0, 1], [2], [3]];
+    const plain = build([{ cells, gates }]).finish();
+    const travelled = build([
+      { cells, gates: { ...gates, trust: values(1, 1, 1, 1), companions: [values(1, 4, 7, 5)] } },
+    ]).finish();
+    expect(plain.companions).toEqual([undefined, undefined, undefined, undefined]);
+    expect({ ...travelled, companions: plain.companions }).toEqual(plain);
+  });
+});
+
 describe("blendWeight", () => {
   const near = {
     beamHeightM: 400,
