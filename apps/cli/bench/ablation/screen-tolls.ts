@@ -1,5 +1,5 @@
-import { type PolarEcho, SCREENS, type Screen } from "@rainreckon/core";
-import type { JobRadar, JobSweep, UnitTrace } from "../../src/total/job.ts";
+import { SCREENS, type Screen } from "@rainreckon/core";
+import type { SpokenSweep, UnitTrace } from "../../src/total/job.ts";
 import type { TrueRadar } from "./worlds.ts";
 
 /** Depth of a cell from which it may not lose much, mm. */
@@ -48,13 +48,7 @@ export class ScreenTolls implements UnitTrace {
   }
 
   /** Takes in a sweep when it has spoken. */
-  sweep(
-    radar: JobRadar,
-    { elevationDeg, midEpochMs }: JobSweep,
-    _lookup: unknown,
-    _gates: unknown,
-    echo: PolarEcho | undefined,
-  ): void {
+  sweep({ radar, sweep: { elevationDeg, midEpochMs }, echo }: SpokenSweep): void {
     if (echo === undefined) return;
     const r = this.#truth.findIndex(({ node }) => radar.site.id.toLowerCase().includes(node));
     const truth = this.#truth[r];

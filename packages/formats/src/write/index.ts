@@ -12,5 +12,6 @@ export type { AttributeValue } from "./grid-mapping.ts";
 export { finiteOrNull, type JsonValue, toJson, writeJson } from "./json.ts";
 export type { MapReference } from "./map-reference.ts";
 export { createTotalsFile, type TotalsFile, type TotalsSpec } from "./netcdf.ts";
+export { readTotals } from "./read-totals.ts";
 export { sha256OfFile, writeText } from "./text.ts";
 export { TOTALS_VARIABLES, type TotalsVariable } from "./totals-variables.ts";
