@@ -16,14 +16,13 @@ import {
 } from "@rainreckon/core";
 import { type GateRates, type PolarLookup, rainTypeOfGates, trustIn } from "@rainreckon/mosaic";
 import { COMPANIONS, companionIndex } from "./companions.ts";
-import type { JobEcho, JobRadar, RunShape, UnitCounts } from "./job.ts";
+import type { JobEcho, JobRadar, RatesMade, RunShape, UnitCounts } from "./job.ts";
 
 /** What a worked sweep says, by gate: under the relation in use, and under each other one. */
 export interface WorkedRain {
   readonly gates: GateRates;
   readonly others: readonly GateRates[];
-  /** Shape [rayCount * gateCount]: indices of `RATE_METHODS`. */
-  readonly method: Uint8Array;
+  readonly made: RatesMade;
 }
 
 const BITS = {
@@ -61,13 +60,13 @@ export class EchoWork {
     this.#chain.correct(echo, above);
     const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
     this.#chain.bringDown(echo, type);
-    const { rateMmPerHour, capped, method } = this.#rates(echo, type, relation, true);
+    const { rateMmPerHour, capped, method, dropNumberFactor } = this.#rates(echo, type, relation, true);
     const companions = this.#companions(echo, relation);
     const trust = trustOf(echo);
     const beside = { codes: undefined, trust };
     return {
       gates: { rateMmPerHour, capped, ...beside, companions },
-      method,
+      made: { method, dropNumberFactor, rainType: type },
       others: variants.map((variant) => {
         const other = this.#rates(echo, type, variant, false);
         return { rateMmPerHour: other.rateMmPerHour, capped: other.capped, ...beside };

@@ -211,6 +211,16 @@ export interface UnitResult {
   readonly notices: readonly SweepFault[];
 }
 
+/** How the rates of a worked sweep were made. Shapes [rayCount * gateCount]. */
+export interface RatesMade {
+  /** Indices of `RATE_METHODS`. */
+  readonly method: Uint8Array;
+  /** Factor on every rate from Z. */
+  readonly dropNumberFactor: number;
+  /** Numbers of `RAIN_TYPE`; undefined where showers and widespread rain were not told apart. */
+  readonly rainType: Uint8Array | undefined;
+}
+
 /** A sweep that has spoken. */
 export interface SpokenSweep {
   readonly radar: JobRadar;
@@ -221,8 +231,8 @@ export interface SpokenSweep {
   readonly relation: ZrRelation;
   /** Undefined where its stored numbers went straight to rain. */
   readonly echo: PolarEcho | undefined;
-  /** Shape [rayCount * gateCount]: indices of `RATE_METHODS`; undefined where all rates are those of the relation. */
-  readonly method: Uint8Array | undefined;
+  /** Undefined where all rates are those of the relation in use. */
+  readonly made: RatesMade | undefined;
   /** Decodes the moment that rain is made from once more, in stored numbers. */
   stored(): Sweep;
 }

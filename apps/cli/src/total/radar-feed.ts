@@ -7,6 +7,7 @@ import type {
   JobRadar,
   JobRound,
   JobSweep,
+  RatesMade,
   RunShape,
   SweepFault,
   UnitCounts,
@@ -22,9 +23,9 @@ interface SweepRain {
   readonly gates: GateRates;
   readonly others: readonly GateRates[];
   readonly gateCount: number;
-  /** Undefined where the stored numbers went straight to rain, and the method where all are of the relation. */
+  /** Both undefined where the stored numbers went straight to rain. */
   readonly echo: PolarEcho | undefined;
-  readonly method: Uint8Array | undefined;
+  readonly made: RatesMade | undefined;
 }
 
 /** One radar inside a unit: its rounds in time order, decoded one at a time. */
@@ -118,7 +119,7 @@ export class RadarFeed {
       gates: rain.gates,
       relation: this.#rates.relationAt(sweep.midEpochMs),
       echo: rain.echo,
-      method: rain.method,
+      made: rain.made,
       stored: () => echoes.plain(sweep),
     });
     if (this.#owned(sweep.midEpochMs)) {
@@ -140,19 +141,19 @@ export class RadarFeed {
       others: this.#shape.variants.map((variant) => this.#rates.rates(decoded, variant, where)),
       gateCount: decoded.rayCount * decoded.gateCount,
       echo: undefined,
-      method: undefined,
+      made: undefined,
     };
   }
 
   #rain(echoes: RoundEchoes, sweep: JobSweep, lookup: PolarLookup): SweepRain | undefined {
     const echo = echoes.echo(sweep);
     if (echo === undefined || this.#echoes === undefined) return undefined;
-    const { gates, others, method } = this.#echoes.rain(
+    const { gates, others, made } = this.#echoes.rain(
       echo,
       echoes.above(sweep),
       lookup,
       this.#rates.relationAt(sweep.midEpochMs),
     );
-    return { gates, others, gateCount: echo.dbz.length, echo, method };
+    return { gates, others, gateCount: echo.dbz.length, echo, made };
   }
 }
