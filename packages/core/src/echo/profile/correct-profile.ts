@@ -1,11 +1,11 @@
-import { ratioFromDecibels } from "../../units.ts";
 import { addEffect, markBit, type PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
-import { type BeamSettings, type GateTable, gateHeights, gateTable } from "./gate-table.ts";
-import type { LearnedProfile, MeltingCorrelation } from "./learned-profile.ts";
+import { type BeamSettings, type GateTable, gateHeights, gateTable, SHARE_STEPS } from "./gate-table.ts";
+import { correctShareByRhohv } from "./layered-share.ts";
+import type { LearnedProfile } from "./learned-profile.ts";
 
 export interface ProfileSettings extends BeamSettings {
-  /** Most that is added or taken. A gate that would need more is not observed: nothing is left to scale up. */
+  /** Most that is added or taken. A gate that would need more added is not observed: little is left to scale up. */
   readonly largestCorrectionDb: number;
   /** Height above mean sea level to which echo is brought down. */
   readonly groundAslM: number;
@@ -20,23 +20,16 @@ export const PROFILE_BAND_M = 10_000;
 /** What the profile did to one sweep. */
 export interface ProfileReport {
   readonly basis: LearnedProfile["basis"];
-  /** Shape [bands of {@link PROFILE_BAND_M}]: gates with echo, and the dB added to them, summed and largest either way. */
+  /** Shape [bands of {@link PROFILE_BAND_M}]: gates with echo, and the dB added to them: the sum, and the largest either way. */
   readonly wetGates: Float64Array;
   readonly addedDb: Float64Array;
   readonly largestDb: Float64Array;
-  /** Gates that became not observed, wet or dry. */
+  /** Shape as above: gates that became not observed, wet or dry. */
   readonly lostGates: Float64Array;
   /** Gates with echo that carry a mark. */
-  readonly meltingGates: number;
-  readonly snowGates: number;
+  meltingGates: number;
+  snowGates: number;
 }
-
-/** Scatter of RHOHV in rain about its mean, one standard deviation; common practice for some 60 pulses. */
-const CORRELATION_NOISE = 0.01;
-/** How far the rain type alone leaves open whether a gate shares the profile (share from 0 to 1); house rule. */
-const TYPE_NOISE = 0.35;
-/** Gates on either side along the ray whose RHOHV speaks for a gate too. */
-const NEIGHBOURS = 2;
 
 /**
  * Brings the echo of a sweep down to the ground by the vertical profile.
@@ -44,8 +37,8 @@ const NEIGHBOURS = 2;
  * Beam-averaged: dBZ at the ground = dBZ of the gate + P(ground) - P(beam) (Kitchen, Brown and Davies 1994,
  * Q. J. R. Meteorol. Soc. 120, 1231-1254; Joss and Lee 1995, J. Appl. Meteorol. 34, 2612-2630). Convective rain has
  * no such profile and keeps its value; where RHOHV tells how much of a gate's echo is melting snow, that decides over
- * the rain type. What lies so high that it needs more than the limit is not observed, dry or wet, so that no sample of
- * rain alone remains.
+ * the rain type. What lies so high that it needs more than the limit is not observed, dry or wet and of either type,
+ * so that no sample of rain alone remains.
  *
  * @param rainType - by gate, see `RAIN_TYPE`; undefined takes all rain for stratiform
  */
@@ -56,112 +49,125 @@ export function correctProfile(
   settings: ProfileSettings = PROFILE_DEFAULTS,
 ): ProfileReport {
   const { gateCount, rayCount, firstGateCentreM, gateLengthM } = echo.header;
-  const bands = Math.floor((firstGateCentreM + (gateCount - 1) * gateLengthM) / PROFILE_BAND_M) + 1;
-  const report = {
+  const band = Uint16Array.from({ length: gateCount }, (_, gate) =>
+    Math.floor((firstGateCentreM + gate * gateLengthM) / PROFILE_BAND_M),
+  );
+  const perBand = () => new Float64Array((band[gateCount - 1] ?? 0) + 1);
+  const report: ProfileReport = {
     basis: learned.basis,
-    wetGates: new Float64Array(bands),
-    addedDb: new Float64Array(bands),
-    largestDb: new Float64Array(bands),
-    lostGates: new Float64Array(bands),
+    wetGates: perBand(),
+    addedDb: perBand(),
+    largestDb: perBand(),
+    lostGates: perBand(),
     meltingGates: 0,
     snowGates: 0,
   };
-  const table = tableOf(echo, learned, settings);
-  if (table.firstTouched === gateCount) {
-    countUntouched(echo, report.wetGates);
-    return report;
-  }
+  countWet(echo, band, report.wetGates);
+  const table = learned.profile === undefined ? undefined : tableOf(echo, learned, settings);
+  if (table === undefined || table.firstTouched === gateCount) return report;
 
-  const { dbz, marks, rhohv } = echo;
-  const correlation = rhohv === undefined ? undefined : learned.layer?.correlation;
-  const added = new Float32Array(dbz.length);
-  const factor = table.overGroundDb.map(ratioFromDecibels);
-  const [meltingBit, snowBit] = [markBit("melting"), markBit("snow")];
+  const added = new Float32Array(echo.dbz.length);
+  const share = new Float64Array(gateCount);
+  const correlation = learned.layer?.correlation;
   for (let ray = 0; ray < rayCount; ray++) {
-    for (let gate = 0; gate < gateCount; gate++) {
-      const index = ray * gateCount + gate;
-      const value = dbz[index] as number;
-      if (Number.isNaN(value)) continue;
-      const band = Math.floor((firstGateCentreM + gate * gateLengthM) / PROFILE_BAND_M);
-      if (-(table.overGroundDb[gate] as number) > settings.largestCorrectionDb) {
-        added[index] = Number.NaN;
-        (report.lostGates[band] as number)++;
-        continue;
-      }
-      if (value === Number.NEGATIVE_INFINITY) continue;
-      (report.wetGates[band] as number)++;
-      if (gate < table.firstTouched) continue;
-
-      const convective = rainType !== undefined && rainType[index] === RAIN_TYPE.convective;
-      let share = convective ? 0 : 1;
-      if (correlation !== undefined && (table.meltingShare[gate] as number) > 0) {
-        share = layeredShare(share, rhohv as Float32Array, ray * gateCount, gate, table, correlation);
-      }
-      if (share === 0) continue;
-      const db = Math.max(
-        -settings.largestCorrectionDb,
-        -10 * Math.log10(1 + share * ((factor[gate] as number) - 1)),
-      );
-      added[index] = db;
-      (report.addedDb[band] as number) += db;
-      if (Math.abs(db) > Math.abs(report.largestDb[band] as number)) report.largestDb[band] = db;
-      const [melting, snow] = [table.meltingShare[gate] as number, table.snowShare[gate] as number];
-      if (share > 0.5 && melting + snow > 0.5) {
-        marks[index] = (marks[index] as number) | (melting >= snow ? meltingBit : snowBit);
-        if (melting >= snow) report.meltingGates++;
-        else report.snowGates++;
-      }
+    const rayStart = ray * gateCount;
+    shareByType(share, rainType, rayStart, table);
+    if (correlation !== undefined && echo.rhohv !== undefined) {
+      correctShareByRhohv(share, echo.rhohv, rayStart, table.firstTouched, table.meltingShare, correlation);
     }
+    correctRay(echo, rayStart, share, table, settings.largestCorrectionDb, band, added, report);
   }
   addEffect(echo, "profile", added);
   return report;
 }
 
-/**
- * Share of a gate's rain that has the profile, 0 to 1: what the rain type says, corrected by how much RHOHV has fallen
- * over how much it would if all of it had, each by its own certainty.
- */
-function layeredShare(
-  byType: number,
-  rhohv: Float32Array,
-  rayStart: number,
-  gate: number,
-  { meltingShare }: GateTable,
-  { inRain, drop }: MeltingCorrelation,
-): number {
-  let fallen = 0;
-  let expected = 0;
-  let count = 0;
-  const last = Math.min(meltingShare.length - 1, gate + NEIGHBOURS);
-  for (let near = Math.max(0, gate - NEIGHBOURS); near <= last; near++) {
-    const rho = rhohv[rayStart + near] as number;
-    if (Number.isNaN(rho)) continue;
-    fallen += inRain - rho;
-    expected += drop * (meltingShare[near] as number);
-    count++;
+function countWet({ dbz }: PolarEcho, band: Uint16Array, wetGates: Float64Array): void {
+  const gateCount = band.length;
+  const wet = new Int32Array(gateCount);
+  for (let start = 0; start < dbz.length; start += gateCount) {
+    for (let gate = 0; gate < gateCount; gate++) {
+      if ((dbz[start + gate] as number) > Number.NEGATIVE_INFINITY) (wet[gate] as number)++;
+    }
   }
-  if (expected <= 0) return byType;
-  const byRho = Math.min(1, Math.max(0, fallen / expected));
-  const certainty = (expected * expected) / (count * CORRELATION_NOISE * CORRELATION_NOISE);
-  const typeCertainty = 1 / (TYPE_NOISE * TYPE_NOISE);
-  return (certainty * byRho + typeCertainty * byType) / (certainty + typeCertainty);
+  for (let gate = 0; gate < gateCount; gate++) {
+    (wetGates[band[gate] as number] as number) += wet[gate] as number;
+  }
 }
 
-function countUntouched({ dbz, header }: PolarEcho, wetGates: Float64Array): void {
-  const { gateCount, firstGateCentreM, gateLengthM } = header;
-  for (let index = 0; index < dbz.length; index++) {
-    if (!((dbz[index] as number) > Number.NEGATIVE_INFINITY)) continue;
-    const rangeM = firstGateCentreM + (index % gateCount) * gateLengthM;
-    (wetGates[Math.floor(rangeM / PROFILE_BAND_M)] as number)++;
+/**
+ * Share of the rain that has the profile, by its type alone: all of stratiform, none of convective. Within a melting
+ * layer stratiform echo passes for convective by its strength, so that the type is worth half there; house rule.
+ */
+function shareByType(
+  share: Float64Array,
+  rainType: Uint8Array | undefined,
+  rayStart: number,
+  { firstTouched, meltingShare }: GateTable,
+): void {
+  for (let gate = firstTouched; gate < share.length; gate++) {
+    const convective = rainType !== undefined && rainType[rayStart + gate] === RAIN_TYPE.convective;
+    share[gate] = convective ? (meltingShare[gate] as number) / 2 : 1;
   }
+}
+
+function correctRay(
+  { dbz, marks }: PolarEcho,
+  rayStart: number,
+  share: Float64Array,
+  table: GateTable,
+  largestDb: number,
+  band: Uint16Array,
+  added: Float32Array,
+  report: ProfileReport,
+): void {
+  const [meltingBit, snowBit] = [markBit("melting"), markBit("snow")];
+  for (let gate = table.firstTouched; gate < share.length; gate++) {
+    const index = rayStart + gate;
+    const value = dbz[index] as number;
+    if (Number.isNaN(value)) continue;
+    if ((table.overGroundDb[gate] as number) < -largestDb) {
+      added[index] = Number.NaN;
+      (report.lostGates[band[gate] as number] as number)++;
+      continue;
+    }
+    if (value === Number.NEGATIVE_INFINITY) continue;
+    const layered = share[gate] as number;
+    const db = Math.max(-largestDb, addedDb(table, gate, layered));
+    added[index] = db;
+    (report.addedDb[band[gate] as number] as number) += db;
+    if (Math.abs(db) > Math.abs(report.largestDb[band[gate] as number] as number)) {
+      report.largestDb[band[gate] as number] = db;
+    }
+    const [melting, snow] = [table.meltingShare[gate] as number, table.snowShare[gate] as number];
+    if (layered <= 0.5 || melting + snow <= 0.5) continue;
+    if (melting >= snow) {
+      marks[index] = (marks[index] as number) | meltingBit;
+      report.meltingGates++;
+    } else {
+      marks[index] = (marks[index] as number) | snowBit;
+      report.snowGates++;
+    }
+  }
+}
+
+function addedDb({ addedDb: table }: GateTable, gate: number, share: number): number {
+  const steps = share * SHARE_STEPS;
+  const step = Math.min(SHARE_STEPS - 1, Math.floor(steps));
+  const at = gate * (SHARE_STEPS + 1) + step;
+  const lower = table[at] as number;
+  return lower + (steps - step) * ((table[at + 1] as number) - lower);
 }
 
 const tables = new WeakMap<LearnedProfile, Map<string, GateTable>>();
 
 /** The table of a sweep's geometry, made once for each profile. */
-function tableOf({ header }: PolarEcho, learned: LearnedProfile, settings: ProfileSettings): GateTable {
+function tableOf(
+  { header }: PolarEcho,
+  learned: LearnedProfile,
+  settings: ProfileSettings,
+): GateTable | undefined {
   const { profile } = learned;
-  if (profile === undefined) return untouchedTable(header.gateCount);
+  if (profile === undefined) return undefined;
   const { elevationDeg, gateCount, gateLengthM, firstGateCentreM, site, beamWidthDeg } = header;
   const key = [
     site.antennaHeightM,
@@ -178,9 +184,4 @@ function tableOf({ header }: PolarEcho, learned: LearnedProfile, settings: Profi
   const table = known.get(key) ?? gateTable(gateHeights(header, settings), profile, settings.groundAslM);
   known.set(key, table);
   return table;
-}
-
-function untouchedTable(gateCount: number): GateTable {
-  const nothing = new Float64Array(gateCount);
-  return { overGroundDb: nothing, meltingShare: nothing, snowShare: nothing, firstTouched: gateCount };
 }
