@@ -17,16 +17,18 @@ export interface Evidence {
 const ROUGHNESS = screenBit("still-echo") | screenBit("texture");
 
 /**
- * Rain correlates this well at all radars; clutter, turbines and interference seldom do. Such a gate is cleared
- * of what speaks against it by strength and place alone. Common practice takes 0.95 to 0.98.
+ * Weather correlates this well, melting snow and hail for the most part too; clutter, turbines and interference
+ * seldom do. Such a gate is cleared of what speaks against it by strength, place and roughness alone.
+ * Common practice takes 0.9 to 0.97.
  */
-export const RAIN_LIKE_RHOHV = 0.95;
+export const WEATHER_LIKE_RHOHV = 0.9;
 
-/** What a rain-like correlation clears a gate of. */
+/** What a weather-like correlation clears a gate of. */
 const CLEARED = bitsOf([
   "static-echo",
   "still-echo",
   "filtered-power",
+  "noisy-phase",
   "texture",
   "vertical-gradient",
   "fixed-point",
@@ -44,7 +46,7 @@ export function weighEvidence({ echo, echoAt }: SweepView, { strong, weak }: Evi
     let alone = strong[at] as number;
     let supporting = weak[at] as number;
     if ((alone | supporting) === 0) continue;
-    if (rhohv !== undefined && (rhohv[at] as number) >= RAIN_LIKE_RHOHV) {
+    if (rhohv !== undefined && (rhohv[at] as number) >= WEATHER_LIKE_RHOHV) {
       alone &= ~CLEARED;
       supporting &= ~CLEARED;
     }

@@ -162,7 +162,8 @@ function countGate(
   let weaker = 0;
   let muchWeaker = 0;
   let dry = 0;
-  let moving = 0;
+  let leaving = 0;
+  let coming = 0;
   const away = raysAway[gate] as number;
   for (let side = -1; side <= 1; side++) {
     const beside = rayBeside(view, ray, side * away);
@@ -181,18 +182,21 @@ function countGate(
       if (value < DRY_DBZ) dry++;
       if (velocityMPerS !== undefined) {
         const speed = velocityMPerS[index] as number;
-        if (speed > MOVING_M_PER_S || speed < -MOVING_M_PER_S) moving++;
+        if (speed > MOVING_M_PER_S) leaving++;
+        else if (speed < -MOVING_M_PER_S) coming++;
       }
     }
   }
   const enough = Math.max(3, (seen * ENOUGH_PLACES) / PLACES);
   const isEcho = dbz > Number.NEGATIVE_INFINITY;
+  // Where rain to one side leaves and to the other comes, the wind blows across the beam and rain stands still too.
+  const isMovingAround = leaving >= enough || coming >= enough;
   const own = velocityMPerS === undefined ? Number.NaN : (velocityMPerS[at] as number);
   const isVote =
     isEcho &&
     (weaker >= enough ||
       (rhohv !== undefined && (rhohv[at] as number) < STATIC_RHOHV) ||
-      (own > -STILL_M_PER_S && own < STILL_M_PER_S && moving >= enough));
+      (isMovingAround && own > -STILL_M_PER_S && own < STILL_M_PER_S));
   if (isVote) {
     tally.votes[place] = (tally.votes[place] as number) + 1;
     tally.sumDbz[place] = (tally.sumDbz[place] as number) + dbz;
