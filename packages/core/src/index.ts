@@ -121,6 +121,7 @@ export {
 } from "./echo/calibration/overlap-attenuation.ts";
 export {
   type Estimate,
+  type OverlapCoefficients,
   type OverlapDifference,
   overlapDifference,
 } from "./echo/calibration/overlap-difference.ts";
@@ -196,6 +197,7 @@ export {
   rateOfZ,
   rateTables,
 } from "./echo/rain-rate/rate-tables.ts";
+export { type LearnedZdrOffset, usualZdrDb, ZdrOffsetLearner } from "./echo/rain-rate/zdr-offset.ts";
 export {
   backgroundDbz,
   CONVECTIVE_RADIUS_RULES,

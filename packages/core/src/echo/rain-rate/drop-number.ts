@@ -1,6 +1,6 @@
 import type { PolarEcho } from "../polar-echo.ts";
 import { rateOfKdp } from "./estimators.ts";
-import { hailShare } from "./hail.ts";
+import { hailShare, mayBeHail } from "./hail.ts";
 import { isLiquid, type MomentReader } from "./moment-reader.ts";
 import { ramp } from "./ramp.ts";
 import { type RateTables, rateOfZ } from "./rate-tables.ts";
@@ -54,11 +54,11 @@ export function dropNumberFactor(
     const kdp = kdpDegPerKm[gate];
     if (Number.isNaN(kdp) || !isLiquid(echo.marks[gate])) continue;
     const rhohv = reader.rhohv(gate);
-    const weight =
+    let weight =
       ramp(value, COMPARED_DBZ.from, COMPARED_DBZ.full) *
       (1 - ramp(value, COMPARED_DBZ.fading, COMPARED_DBZ.to)) *
-      (Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.full)) *
-      (1 - hailShare(value, reader.zdrDb(gate), rhohv));
+      (Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.full));
+    if (mayBeHail(value, rhohv)) weight *= 1 - hailShare(value, reader.zdrDb(gate), rhohv);
     if (weight === 0) continue;
     const areaKm2 = km2PerMetre * (firstGateCentreM + (gate % gateCount) * gateLengthM);
     sumOfZ += weight * areaKm2 * rateOfZ(value, byType[rainType?.[gate] ?? 0]);

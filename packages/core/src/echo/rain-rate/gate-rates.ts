@@ -3,7 +3,7 @@ import { markBit, type PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
 import { dropNumberFactor } from "./drop-number.ts";
 import { rateOfAttenuation, rateOfKdp, rateOfKdpZdr, rateOfZZdr } from "./estimators.ts";
-import { hailShare } from "./hail.ts";
+import { hailShare, mayBeHail } from "./hail.ts";
 import { isLiquid, MomentReader } from "./moment-reader.ts";
 import { neighboursOfHail } from "./neighbours-of-hail.ts";
 import { ramp } from "./ramp.ts";
@@ -270,10 +270,11 @@ export class RateBlender {
     const most = mostPolarimetric(ready);
     const rhohv = reader.rhohv(gate);
     const rainLike = Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.to);
-    const needsZdr = this.seesHail || zZdrShare > 0 || kdpZdrPart > 0;
+    const asksForHail = this.seesHail && mayBeHail(dbz, rhohv);
+    const needsZdr = asksForHail || zZdrShare > 0 || kdpZdrPart > 0;
     const zdr = needsZdr ? reader.zdrDb(gate) : Number.NaN;
     const zdrTrust = needsZdr ? reader.trust : 0;
-    if (this.seesHail) parts.hailShare = zdrTrust * hailShare(dbz, zdr, rhohv);
+    if (asksForHail) parts.hailShare = zdrTrust * hailShare(dbz, zdr, rhohv);
     let rate = parts.zRate;
     if (zZdrShare > 0 && zdrTrust > 0) {
       parts.zZdrRate = Math.min(most, rateOfZZdr(Math.min(dbz, ready.capDbz), zdr, laws.zZdr));

@@ -1,5 +1,8 @@
 import { ramp } from "./ramp.ts";
 
+/** Of rain whose drops look round. */
+const LEAST_LIMIT_DBZ = 27;
+
 /**
  * Reflectivity that rain of a differential reflectivity does not exceed, dBZ: 27, 19 ZDR + 27, or 60.
  *
@@ -7,7 +10,7 @@ import { ramp } from "./ramp.ts";
  * above it, their HDR in dB, speaks for hail: tumbling stones look round, big raindrops do not.
  */
 export function rainLimitDbz(zdrDb: number): number {
-  return Math.min(60, 27 + 19 * Math.max(0, zdrDb));
+  return Math.min(60, LEAST_LIMIT_DBZ + 19 * Math.max(0, zdrDb));
 }
 
 /**
@@ -18,6 +21,11 @@ const HDR_DB = { from: 0, to: 8 } as const;
 const HDR_ALONE_DB = { from: 12, to: 20 } as const;
 /** Rain has 0.98 and more, melting hail 0.95 and less: common practice at S and C band. */
 const CORRELATION = { rain: 0.98, hail: 0.95 } as const;
+
+/** False where no ZDR could make the echo look like hail, so that none need be asked for. */
+export function mayBeHail(reflectivityDbz: number, rhohv: number): boolean {
+  return reflectivityDbz > LEAST_LIMIT_DBZ && !(rhohv >= CORRELATION.rain);
+}
 
 /**
  * How far an echo looks like hail, 0 to 1; half is called hail. No steps, so that no rate made with it has any.
