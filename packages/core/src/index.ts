@@ -217,12 +217,8 @@ export {
   type ScreeningReport,
   type ScreeningSettings,
 } from "./echo/screening/settings.ts";
-export {
-  type FixedEcho,
-  type LearnedStaticEcho,
-  type LearnedSweep,
-  StaticEchoLearner,
-} from "./echo/screening/static-echo.ts";
+export type { FixedEcho, LearnedStaticEcho, LearnedSweep } from "./echo/screening/static-echo.ts";
+export { StaticEchoLearner } from "./echo/screening/static-echo-learner.ts";
 export type { SweepGeometry } from "./echo/screening/sweep-geometry.ts";
 export { spinChangePercent, textureDb2 } from "./echo/screening/texture.ts";
 export { errorFunction, scaledErrorComplement } from "./error-function.ts";

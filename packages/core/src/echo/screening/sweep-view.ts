@@ -132,6 +132,7 @@ export function nearestRay(azimuthDeg: Float64Array, wantedDeg: number, withinDe
     else high = middle;
   }
   const count = azimuthDeg.length;
+  if (count === 0) return -1;
   let best = -1;
   let bestDeg = withinDeg;
   for (const at of [low - 1, low]) {

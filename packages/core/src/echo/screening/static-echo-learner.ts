@@ -1,0 +1,227 @@
+import type { PolarEcho } from "../polar-echo.ts";
+import type { FixedEcho, LearnedStaticEcho } from "./static-echo.ts";
+import { geometryOf, isSameGeometry, type SweepGeometry, slotOf } from "./sweep-geometry.ts";
+import { rayBeside, type SweepView, viewSweep } from "./sweep-view.ts";
+
+/** Rounds it takes to learn from. House rule. */
+const ENOUGH_ROUNDS = 8;
+/** Of the rounds that can tell, so many must show it. Common practice: 50 % (30 to 70) of dry-weather scans. */
+export const STATIC_SHARE = 0.5;
+/** And of all rounds at least so many, lest one dry spell decide. House rule. */
+const OF_ALL_SHARE = 0.25;
+/** Distance of the gates that tell what is around. House rule: beyond single points, within showers. */
+const AROUND_M = 2000;
+/** Of eight places around, so many must be weaker. House rule. */
+const PLACES = 8;
+const ENOUGH_PLACES = 6;
+const OUTSTANDING_DB = 6;
+const POINT_OUTSTANDING_DB = 10;
+const POINT_DBZ = 20;
+/** Weather around is dry, or as good, below this. Common practice counts from 10 dBZ. */
+const DRY_DBZ = 10;
+/** Correlation of what cannot be weather, and speed of what stands still while all around moves. */
+const STATIC_RHOHV = 0.8;
+const STILL_M_PER_S = 1;
+const MOVING_M_PER_S = 2;
+/** Echo in place varies less than rain that comes and goes. House rule. */
+const WIDEST_SPREAD_DB = 8;
+const NARROWEST_SPREAD_DB = 2;
+
+/** Counts by gate. A vote is a round in which the gate looks like echo of the ground. */
+class Tally {
+  readonly geometry: SweepGeometry;
+  rounds = 0;
+  readonly told: Uint16Array;
+  readonly votes: Uint16Array;
+  /** Sums of reflectivity in hundredths of a dB, and of its squares: whole numbers add up the same in any order. */
+  readonly sums: Float64Array;
+  readonly squares: Float64Array;
+  readonly pointTold: Uint16Array;
+  readonly pointVotes: Uint16Array;
+  readonly pointSums: Float64Array;
+  readonly pointSquares: Float64Array;
+
+  constructor(geometry: SweepGeometry) {
+    const gates = geometry.slotCount * geometry.gateCount;
+    this.geometry = geometry;
+    this.told = new Uint16Array(gates);
+    this.votes = new Uint16Array(gates);
+    this.sums = new Float64Array(gates);
+    this.squares = new Float64Array(gates);
+    this.pointTold = new Uint16Array(gates);
+    this.pointVotes = new Uint16Array(gates);
+    this.pointSums = new Float64Array(gates);
+    this.pointSquares = new Float64Array(gates);
+  }
+}
+
+/**
+ * Learns which echo stays in place over a run, from some rounds of it.
+ *
+ * A gate is static where, in at least half of the rounds that can tell, it stands out from the gates 2 km around
+ * it, or correlates as no weather does, or stands still while all around moves. Rounds with rain around and
+ * nothing that stands out cannot tell. Steady rain does not stand out, and a slow shower does not stay.
+ *
+ * Source of the principle (frequency of echo in dry weather): Steiner and Smith (2002), J. Atmos. Oceanic Technol.
+ * 19, 673-686; thresholds common practice or house rules as given at each.
+ */
+export class StaticEchoLearner {
+  readonly #tallies: Tally[] = [];
+
+  /** @param echo - a sweep of the run; the order of sweeps does not matter */
+  add(echo: PolarEcho): void {
+    const geometry = geometryOf(echo.header, echo.azimuthDeg.length);
+    let tally = this.#tallies.find((known) => isSameGeometry(known.geometry, geometry));
+    if (tally === undefined) {
+      tally = new Tally(geometry);
+      this.#tallies.push(tally);
+    }
+    tally.rounds++;
+    const view = viewSweep(echo);
+    const around = placesAround(view);
+    for (let ray = 0; ray < view.rayCount; ray++) {
+      const slot = slotOf(echo.azimuthDeg[ray] as number, geometry.slotCount);
+      for (let gate = 0; gate < view.gateCount; gate++) {
+        countGate(tally, view, around, ray, gate, slot * view.gateCount + gate);
+      }
+    }
+  }
+
+  /** @returns elevations in ascending order; those with too few rounds are left out */
+  finish(): LearnedStaticEcho {
+    const sweeps = this.#tallies
+      .filter(({ rounds }) => rounds >= ENOUGH_ROUNDS)
+      .map((tally) => ({
+        ...tally.geometry,
+        rounds: tally.rounds,
+        static: fixedEcho(tally.rounds, tally.told, tally.votes, tally.sums, tally.squares),
+        points: fixedEcho(
+          tally.rounds,
+          tally.pointTold,
+          tally.pointVotes,
+          tally.pointSums,
+          tally.pointSquares,
+        ),
+      }));
+    // In an order that does not tell which sweep came first.
+    sweeps.sort(
+      (a, b) =>
+        a.elevationDeg - b.elevationDeg ||
+        a.slotCount - b.slotCount ||
+        a.gateCount - b.gateCount ||
+        a.gateLengthM - b.gateLengthM ||
+        a.firstGateCentreM - b.firstGateCentreM,
+    );
+    return { sweeps };
+  }
+}
+
+/** Steps to eight places around a gate: rays by gate, shape [gateCount]; gates, one number. */
+function placesAround({ gateCount, echo: { header }, rayStepDeg, rayCount }: SweepView): {
+  raysAway: Uint16Array;
+  gatesAway: number;
+} {
+  const gatesAway = Math.max(2, Math.round(AROUND_M / header.gateLengthM));
+  const raysAway = Uint16Array.from({ length: gateCount }, (_, gate) => {
+    const rayApartM = ((header.firstGateCentreM + gate * header.gateLengthM) * rayStepDeg * Math.PI) / 180;
+    const away = Math.max(2, Math.round(AROUND_M / Math.max(1, rayApartM)));
+    return Math.min(away, Math.max(1, rayCount >> 3));
+  });
+  return { raysAway, gatesAway };
+}
+
+function countGate(
+  tally: Tally,
+  view: SweepView,
+  { raysAway, gatesAway }: { raysAway: Uint16Array; gatesAway: number },
+  ray: number,
+  gate: number,
+  place: number,
+): void {
+  const { echo, gateCount } = view;
+  const { measuredDbz, rhohv, velocityMPerS } = echo;
+  const at = ray * gateCount + gate;
+  const dbz = measuredDbz[at] as number;
+  if (Number.isNaN(dbz)) return;
+  let seen = 0;
+  let weaker = 0;
+  let muchWeaker = 0;
+  let dry = 0;
+  let leaving = 0;
+  let coming = 0;
+  const away = raysAway[gate] as number;
+  for (let side = -1; side <= 1; side++) {
+    const beside = rayBeside(view, ray, side * away);
+    if (beside < 0) continue;
+    for (let along = -1; along <= 1; along++) {
+      if (side === 0 && along === 0) continue;
+      const other = gate + along * gatesAway;
+      // Before the first gate and behind the last nothing is known.
+      if (other < 0 || other >= gateCount) continue;
+      const index = beside * gateCount + other;
+      const value = measuredDbz[index] as number;
+      if (Number.isNaN(value)) continue;
+      seen++;
+      if (value <= dbz - OUTSTANDING_DB) weaker++;
+      if (value <= dbz - POINT_OUTSTANDING_DB) muchWeaker++;
+      if (value < DRY_DBZ) dry++;
+      if (velocityMPerS !== undefined) {
+        const speed = velocityMPerS[index] as number;
+        if (speed > MOVING_M_PER_S) leaving++;
+        else if (speed < -MOVING_M_PER_S) coming++;
+      }
+    }
+  }
+  const enough = Math.max(3, (seen * ENOUGH_PLACES) / PLACES);
+  const isEcho = dbz > Number.NEGATIVE_INFINITY;
+  // Where rain to one side leaves and to the other comes, the wind blows across the beam and rain stands still too.
+  const isMovingAround = leaving >= enough || coming >= enough;
+  const own = velocityMPerS === undefined ? Number.NaN : (velocityMPerS[at] as number);
+  const isVote =
+    isEcho &&
+    (weaker >= enough ||
+      (rhohv !== undefined && (rhohv[at] as number) < STATIC_RHOHV) ||
+      (isMovingAround && own > -STILL_M_PER_S && own < STILL_M_PER_S));
+  const centi = Math.round(100 * dbz);
+  if (isVote) {
+    tally.votes[place] = (tally.votes[place] as number) + 1;
+    tally.sums[place] = (tally.sums[place] as number) + centi;
+    tally.squares[place] = (tally.squares[place] as number) + centi * centi;
+  }
+  if (isVote || dry >= enough) tally.told[place] = (tally.told[place] as number) + 1;
+  const isPoint = isEcho && dbz >= POINT_DBZ && muchWeaker >= enough;
+  if (isPoint) {
+    tally.pointVotes[place] = (tally.pointVotes[place] as number) + 1;
+    tally.pointSums[place] = (tally.pointSums[place] as number) + centi;
+    tally.pointSquares[place] = (tally.pointSquares[place] as number) + centi * centi;
+  }
+  if (isPoint || dry >= enough) tally.pointTold[place] = (tally.pointTold[place] as number) + 1;
+}
+
+/** Gates where it was seen often enough and keeps its strength: up to the mean and twice the spread. */
+function fixedEcho(
+  rounds: number,
+  told: Uint16Array,
+  votes: Uint16Array,
+  sums: Float64Array,
+  squares: Float64Array,
+): FixedEcho {
+  const places: number[] = [];
+  const upToDbz: number[] = [];
+  const share: number[] = [];
+  for (let place = 0; place < votes.length; place++) {
+    const count = votes[place] as number;
+    if (count < STATIC_SHARE * (told[place] as number) || count < OF_ALL_SHARE * rounds) continue;
+    const mean = (sums[place] as number) / count / 100;
+    const spread = Math.sqrt(Math.max(0, (squares[place] as number) / count / 1e4 - mean * mean));
+    if (spread > WIDEST_SPREAD_DB) continue;
+    places.push(place);
+    upToDbz.push(mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread));
+    share.push(count / (told[place] as number));
+  }
+  return {
+    places: Int32Array.from(places),
+    upToDbz: Float32Array.from(upToDbz),
+    share: Float64Array.from(share),
+  };
+}
