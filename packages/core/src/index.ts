@@ -89,6 +89,12 @@ export {
 } from "./echo/attenuation/hitschfeld-bordan.ts";
 export type { LearnedAttenuation } from "./echo/attenuation/learned.ts";
 export {
+  DEFAULT_LOSS_LEARNER_SETTINGS,
+  LossCoefficientLearner,
+  type LossEstimate,
+  type LossLearnerSettings,
+} from "./echo/attenuation/loss-coefficient-learner.ts";
+export {
   lossOfPhaseTwoWayDb,
   type PhaseCoefficient,
   type PhaseCoefficients,
@@ -96,6 +102,11 @@ export {
 } from "./echo/attenuation/phase-coefficients.ts";
 export { DEFAULT_PHASE_SETTINGS, type PhaseSettings } from "./echo/attenuation/phase-gates.ts";
 export { type PhaseReport, workUpPhase } from "./echo/attenuation/rain-phase.ts";
+export {
+  type LossEvidence,
+  type SettledLoss,
+  settleLossCoefficients,
+} from "./echo/attenuation/settle-loss-coefficients.ts";
 export { DEFAULT_KDP_SETTINGS, type KdpSettings } from "./echo/attenuation/specific-phase.ts";
 export { type SystemPhase, SystemPhaseLearner } from "./echo/attenuation/system-phase.ts";
 export { zphiAttenuationOneWayDbPerKm, zphiLossTwoWayDb } from "./echo/attenuation/zphi.ts";

@@ -169,6 +169,7 @@ function shareOutByZphi(
   const { gateCount } = echo.header;
   const table = new PowerTable(settings.zphiExponent, MOST_RAIN_DBZ);
   const before = new Float64Array(gateCount);
+  const enoughDb = alpha * settings.leastPathPhaseDeg;
   for (let from = 0; from < dbz.length; from += gateCount) {
     let gate = from;
     const end = from + gateCount;
@@ -177,15 +178,20 @@ function shareOutByZphi(
         gate++;
         continue;
       }
-      // A path runs on over gates that are not observed, but ends where rain does.
+      // A path runs on over gates that are not observed, but ends where rain does, and where the phase has risen
+      // enough to be known again.
       const r1 = gate;
+      const start = loss[r1] as number;
       let r2 = gate;
       for (; gate < end && skip[gate] === 0 && dbz[gate] !== Number.NEGATIVE_INFINITY; gate++) {
-        if (!Number.isNaN(dbz[gate] as number)) r2 = gate;
+        if (Number.isNaN(dbz[gate] as number)) continue;
+        r2 = gate;
+        if ((loss[r2] as number) - start >= enoughDb) break;
       }
-      const start = loss[r1] as number;
+      // The next path starts where this one ends, so that no gap is left between them.
+      if (gate === r2 && r2 === r1) gate++;
       const pathLossDb = (loss[r2] as number) - start;
-      if (pathLossDb < alpha * settings.leastPathPhaseDeg) continue;
+      if (pathLossDb < enoughDb) continue;
       const total = integrate(dbz, table, r1, r2, before);
       for (let i = r1; i <= r2; i++) {
         loss[i] =
