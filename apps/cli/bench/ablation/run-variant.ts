@@ -7,6 +7,7 @@ import { survey } from "../../src/survey/survey.ts";
 import { walkFiles } from "../../src/survey/walk.ts";
 import { assemble } from "../../src/total/assemble.ts";
 import type { UnitJob, UnitResult, UnitTrace } from "../../src/total/job.ts";
+import { learnBeforehand } from "../../src/total/learned-run.ts";
 import { prepareRun } from "../../src/total/prepare.ts";
 import { runUnit } from "../../src/total/run-unit.ts";
 import { leftOutLog } from "../../src/ui/left-out.ts";
@@ -58,10 +59,9 @@ export async function runVariant(
   writeFileSync(planFile, JSON.stringify(merged(plan, variant.overlay)));
   try {
     const loaded = await loadPlan(planFile);
-    const run = await prepareRun(loaded, leftOutLog(SILENT), () => ({
-      advance: () => undefined,
-      end: () => undefined,
-    }));
+    const log = leftOutLog(SILENT);
+    const still = { advance: () => undefined, end: () => undefined };
+    const run = await learnBeforehand(await prepareRun(loaded, log, () => still), log);
     const results = new Map<number, UnitResult>();
     for (const job of run.jobs) results.set(job.number, await runUnit(run.shape, job, trace));
     const store = {
