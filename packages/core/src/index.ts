@@ -178,6 +178,7 @@ export {
   USUAL_PROFILE,
   type VerticalProfile,
 } from "./echo/profile/vertical-profile.ts";
+export { DropNumberLearner, type LearnedDropNumber } from "./echo/rain-rate/drop-number.ts";
 export {
   type AttenuationRateLaw,
   type BandLaws,
@@ -203,11 +204,9 @@ export {
   type GateRateSettings,
   POLARIMETRIC_RATE_DEFAULTS,
   type PolarimetricRateSettings,
-  type RateTables,
-  type ReadyRelation,
-  rateOfZ,
   rateTables,
 } from "./echo/rain-rate/rate-tables.ts";
+export { type RateTables, type ReadyRelation, rateOfZ } from "./echo/rain-rate/ready-relation.ts";
 export { type LearnedZdrOffset, usualZdrDb, ZdrOffsetLearner } from "./echo/rain-rate/zdr-offset.ts";
 export {
   backgroundDbz,

@@ -1,6 +1,13 @@
 export { type BlendWeightInput, blendWeight, trustIn } from "./blend-weight.ts";
 export { geodesicDirect, geodesicInverse } from "./geodesic.ts";
 export { gridLookup, type SourceCells } from "./grid-lookup.ts";
+export { headlinePositions } from "./headline-positions.ts";
+export {
+  OVERLAP_SETTINGS,
+  OverlapSamples,
+  type OverlapSettings,
+  type OverlapSweep,
+} from "./overlap-samples.ts";
 export { MAX_GRID_CELLS, planGrid } from "./plan-grid.ts";
 export {
   type BlockedSector,

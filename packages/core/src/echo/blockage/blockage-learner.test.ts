@@ -1,5 +1,7 @@
 import { expect, test } from "vitest";
+import { screenBit } from "../polar-echo.ts";
 import { BlockageLearner, type LearnedBlockage } from "./blockage-learner.ts";
+import { correctBlockage } from "./correct-blockage.ts";
 import { echoOf, noiseOf } from "./echo-fixture.ts";
 
 /** Rain that grows by 25 dB from west to east and moves, seen by two sweeps, with 1.5 dB of noise in each gate. */
@@ -88,4 +90,26 @@ test("the result can be cloned, and is the same whichever round comes first", ()
   for (const echo of rounds.flat()) forwards.add(echo);
   for (const echo of [...rounds].reverse().flat()) backwards.add(echo);
   expect(backwards.finish()).toEqual(forwards.finish());
+});
+
+test("what was corrected already is found again, and screened gates do not count", () => {
+  const learner = new BlockageLearner();
+  for (let round = 0; round < 8; round++) {
+    for (const elevationDeg of [0.5, 1.3]) {
+      const echo = echoOf({
+        elevationDeg,
+        startEpochMs: round * 300_000,
+        dbz: (ray) => 30 - (ray < 10 && elevationDeg < 1 ? 3 : 0) + ((ray * 7 + round * 3) % 5) / 10,
+      });
+      if (elevationDeg < 1) {
+        correctBlockage(echo, new Float32Array(echo.dbz.length).fill(0.5));
+        for (let gate = 20 * 40; gate < 30 * 40; gate++) echo.screenedBy[gate] = screenBit("static-echo");
+      }
+      learner.add(echo);
+    }
+  }
+  const { lossDb } = learner.finish().sweeps[0]!;
+  expect(lossDb[5]).toBeCloseTo(3, 1);
+  expect(lossDb[25]).toBeNaN();
+  expect(lossDb[40]).toBe(0);
 });

@@ -71,7 +71,10 @@ export class BlockageLearner {
   readonly #sums = new Map<string, DifferenceSums>();
   #below: Blocks | undefined;
 
-  /** Takes in a sweep: those of a round in order of elevation, lowest first. Screened gates are left out. */
+  /**
+   * Takes in a sweep: those of a round in order of elevation, lowest first. Screened gates are left out; the others count
+   * as they were measured, so that a blockage that was corrected already is found all the same.
+   */
   add(echo: PolarEcho): void {
     const { header } = echo;
     if (header.elevationDeg > HIGHEST_ELEVATION_DEG) return;
@@ -140,7 +143,7 @@ export class BlockageLearner {
 }
 
 /** Mean Z by degree of azimuth and block of range; a gate below detection counts as none. */
-function meanZByBlock({ header, azimuthDeg, dbz }: PolarEcho): Float64Array {
+function meanZByBlock({ header, azimuthDeg, measuredDbz, screenedBy }: PolarEcho): Float64Array {
   const { gateCount, firstGateCentreM, gateLengthM } = header;
   const z = new Float64Array(LEARNED_RAYS * MOST_BLOCKS);
   const observed = new Uint16Array(LEARNED_RAYS * MOST_BLOCKS);
@@ -156,8 +159,9 @@ function meanZByBlock({ header, azimuthDeg, dbz }: PolarEcho): Float64Array {
       if (block < 0) continue;
       if (block >= MOST_BLOCKS) break;
       looked[row + block] = (looked[row + block] as number) + 1;
-      const value = dbz[ray * gateCount + gate] as number;
-      if (Number.isNaN(value)) continue;
+      const at = ray * gateCount + gate;
+      const value = measuredDbz[at] as number;
+      if (Number.isNaN(value) || screenedBy[at] !== 0) continue;
       observed[row + block] = (observed[row + block] as number) + 1;
       if (value > -30) z[row + block] = (z[row + block] as number) + Math.exp(value * (Math.LN10 / 10));
     }
