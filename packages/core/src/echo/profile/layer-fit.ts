@@ -1,16 +1,26 @@
 import type { EchoRatio } from "./echo-ratios.ts";
-import { beamProfileDb, idealisedProfile, type VerticalProfile } from "./vertical-profile.ts";
+import {
+  beamProfileDb,
+  idealisedProfile,
+  type LayerHeights,
+  type VerticalProfile,
+} from "./vertical-profile.ts";
 
 /** What a profile is fitted by: the peak stays in the middle of the layer, for no beam tells otherwise. */
 export type ProfileNumbers = readonly [
-  bottomM: number,
+  middleM: number,
   thicknessM: number,
   peakDb: number,
   slopeAboveDbPerKm: number,
 ];
 
-export function profileOf([bottomM, thicknessM, peakDb, slopeAboveDbPerKm]: ProfileNumbers): VerticalProfile {
-  return { ...idealisedProfile({ bottomM, topM: bottomM + thicknessM }), peakDb, slopeAboveDbPerKm };
+export function profileOf(numbers: ProfileNumbers): VerticalProfile {
+  const [, , peakDb, slopeAboveDbPerKm] = numbers;
+  return { ...idealisedProfile(heightsOf(numbers)), peakDb, slopeAboveDbPerKm };
+}
+
+export function heightsOf([middleM, thicknessM]: ProfileNumbers): LayerHeights {
+  return { bottomM: middleM - thicknessM / 2, topM: middleM + thicknessM / 2 };
 }
 
 /** Error of a mean ratio that no number of rounds takes away: rain changes with height for other reasons too. House rule. */

@@ -3,12 +3,12 @@ import { type CorrelationMean, CorrelationSums } from "./correlation-sums.ts";
 import { type EchoRatio, EchoRatios } from "./echo-ratios.ts";
 import type { BeamSettings } from "./gate-table.ts";
 import { type CorrelationFit, correlationWithoutLayer, fitCorrelation } from "./layer-correlation.ts";
-import { leastNear, type ProfileNumbers, profileOf, ratioMisfit } from "./layer-fit.ts";
+import { heightsOf, leastNear, type ProfileNumbers, profileOf, ratioMisfit } from "./layer-fit.ts";
 import type { MeltingLayer } from "./learned-profile.ts";
 import { USUAL_PROFILE } from "./vertical-profile.ts";
 
-/** Bottoms of the layer that are tried first, above mean sea level. */
-const HIGHEST_BOTTOM_M = 6000;
+/** Middles of the layer that are tried first, above mean sea level. */
+const HIGHEST_MIDDLE_M = 6000;
 const STEP_M = 100;
 /** Excesses that are tried first. */
 const EXCESSES_DB = [3, 6, 9];
@@ -90,13 +90,12 @@ export function findLayer(
   const { at, least } = leastNear(start, PROFILE_STEPS, PROFILE_LIMITS, (numbers) =>
     evidence.misfit(numbers),
   );
-  const [bottomM, thicknessM, peakDb] = at;
+  const [, , peakDb] = at;
   const correlation = evidence.correlation(at);
   if (evidence.withoutLayer - least < EVIDENCE) return undefined;
   if (correlation === undefined && peakDb < LEAST_PEAK_DB) return undefined;
   return {
-    bottomM,
-    topM: bottomM + thicknessM,
+    ...heightsOf(at),
     basis: "scans",
     uncertaintyM: evidence.uncertaintyM(at, least),
     correlation: correlation && { inRain: correlation.inRain, drop: correlation.drop },
@@ -129,12 +128,12 @@ class LayerEvidence {
     const slope = USUAL_PROFILE.slopeAboveDbPerKm.value;
     const rungs: { numbers: ProfileNumbers; echo: number; correlation: number }[] = [];
     this.#withoutPeak = ratioMisfit(this.#ratios, undefined);
-    for (let bottomM = 0; bottomM <= HIGHEST_BOTTOM_M; bottomM += STEP_M) {
-      const level: ProfileNumbers = [bottomM, thicknessM, 0, slope];
+    for (let middleM = 0; middleM <= HIGHEST_MIDDLE_M; middleM += STEP_M) {
+      const level: ProfileNumbers = [middleM, thicknessM, 0, slope];
       this.#withoutPeak = Math.min(this.#withoutPeak, ratioMisfit(this.#ratios, profileOf(level)));
       const correlation = this.correlation(level)?.chi2 ?? this.#correlationNone;
       for (const peakDb of EXCESSES_DB) {
-        const numbers: ProfileNumbers = [bottomM, thicknessM, peakDb, slope];
+        const numbers: ProfileNumbers = [middleM, thicknessM, peakDb, slope];
         rungs.push({ numbers, echo: ratioMisfit(this.#ratios, profileOf(numbers)), correlation });
       }
     }
@@ -159,19 +158,19 @@ class LayerEvidence {
     );
   }
 
-  correlation([bottomM, thicknessM]: ProfileNumbers): CorrelationFit | undefined {
-    const fit = fitCorrelation(this.#means, { bottomM, topM: bottomM + thicknessM });
+  correlation(numbers: ProfileNumbers): CorrelationFit | undefined {
+    const fit = fitCorrelation(this.#means, heightsOf(numbers));
     return fit !== undefined && fit.drop >= LEAST_DROP ? fit : undefined;
   }
 
   /** Half the way in height between the places where the misfit has grown by one. */
-  uncertaintyM([bottomM, ...rest]: ProfileNumbers, least: number): number {
+  uncertaintyM([middleM, ...rest]: ProfileNumbers, least: number): number {
     let wide = 0;
     for (const sign of [1, -1]) {
       let away = 0;
       while (away < 1000) {
         away += 10;
-        if (this.misfit([bottomM + sign * away, ...rest] as ProfileNumbers) > least + 1) break;
+        if (this.misfit([middleM + sign * away, ...rest] as ProfileNumbers) > least + 1) break;
       }
       wide += away / 2;
     }

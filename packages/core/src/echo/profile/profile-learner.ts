@@ -63,20 +63,20 @@ export function fitProfile(all: readonly EchoRatio[], layer: MeltingLayer | unde
   if (ratios.length < ENOUGH_RATIOS) return idealised("too few sweeps see the same rain", ratios.length);
 
   const usual = USUAL_PROFILE;
+  const middleM = (layer.bottomM + layer.topM) / 2;
   const start: ProfileNumbers = [
-    layer.bottomM,
+    middleM,
     layer.topM - layer.bottomM,
     usual.peakDb.value,
     usual.slopeAboveDbPerKm.value,
   ];
-  const middleM = (layer.bottomM + layer.topM) / 2;
   const { at } = leastNear(
     start,
     PROFILE_STEPS,
     PROFILE_LIMITS,
     (numbers) =>
       ratioMisfit(ratios, profileOf(numbers)) +
-      ((numbers[0] + numbers[1] / 2 - middleM) / layer.uncertaintyM) ** 2 +
+      ((numbers[0] - middleM) / layer.uncertaintyM) ** 2 +
       ((numbers[1] - start[1]) / usual.thicknessM.spread) ** 2 +
       ((numbers[2] - usual.peakDb.value) / usual.peakDb.spread) ** 2 +
       ((numbers[3] - usual.slopeAboveDbPerKm.value) / usual.slopeAboveDbPerKm.spread) ** 2,

@@ -108,6 +108,7 @@ export function beamProfileDb(
     number,
     number,
   ];
+  if (bottom > OUT_OF_SIGHT && slopeBelowDbPerKm === 0) return 0;
   // Slopes in nepers of power per sigma.
   const below = (slopeBelowDbPerKm * NEPERS_PER_DB * sigmaM) / 1000;
   const above = (slopeAboveDbPerKm * NEPERS_PER_DB * sigmaM) / 1000;
@@ -119,6 +120,8 @@ export function beamProfileDb(
 }
 
 const NEPERS_PER_DB = Math.LN10 / 10;
+/** Sigmas from its centre at which a beam has less weight than a double has digits. */
+const OUT_OF_SIGHT = 8.3;
 
 /**
  * Integral of exp(v + g (t - t0)) under the normal density from t1 to t2, t in sigmas from the beam's centre:
@@ -167,6 +170,7 @@ export function layerShares(
     number,
     number,
   ];
+  if (bottom > OUT_OF_SIGHT) return { rain: 1, melting: 0, snow: 0 };
   const whole = piece(0, 0, 0, ground, Infinity);
   const rain = piece(0, 0, 0, ground, bottom) / whole;
   const snow = piece(0, 0, 0, Math.max(top, ground), Infinity) / whole;
