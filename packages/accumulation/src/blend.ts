@@ -1,7 +1,7 @@
 import type { Interval } from "@rainreckon/core";
-import type { RateLayer } from "@rainreckon/mosaic";
+import { headlinePositions, type RateLayer } from "@rainreckon/mosaic";
 import type { RadarIntegrator } from "./integrate.ts";
-import { type FieldShape, headlinePositions, type RadarStep } from "./radar-step.ts";
+import type { FieldShape, RadarStep } from "./radar-step.ts";
 import { type Span, spansAt } from "./spans.ts";
 
 /** Time that may be missing from a step before it counts as partly observed: rounding of float32 milliseconds. */
@@ -62,8 +62,8 @@ export function blendStep(
  */
 export class StepBlender {
   readonly #shape: FieldShape;
-  /** Undefined where the headline is made of all cells in their order. */
-  readonly #headlineCells: Int32Array | undefined;
+  /** Where a cell stands among the headline's; undefined where the headline is made of all cells in their order. */
+  readonly #headlineAt: Int32Array | undefined;
   /** Shape [radars][cells]: by how much the depth of a radar counts; 0 where it is cut into spans, or saw nothing. */
   readonly #shares: readonly Float64Array[];
   readonly #out: Omit<BlendedStep, "companions">;
@@ -74,7 +74,7 @@ export class StepBlender {
   constructor(shape: FieldShape, radarCount: number) {
     const zeros = () => new Float64Array(shape.cellCount);
     this.#shape = shape;
-    this.#headlineCells = headlinePositions(shape) === undefined ? undefined : shape.headlineCells;
+    this.#headlineAt = headlinePositions(shape.headlineCells, shape.cellCount);
     this.#shares = Array.from({ length: radarCount }, zeros);
     this.#sums = new Float64Array(radarCount);
     this.#companions = Array.from(shape.companions ?? [], () => undefined);
@@ -98,17 +98,16 @@ export class StepBlender {
     const out = this.#out;
     const steps = radars.map((radar) => radar.step);
     const partly = this.#share(step, stepIndex, radars);
-    this.#blendPlane(out.depthMm, steps, (own) => own.depthMm);
-    this.#blendPlane(out.cappedMm, steps, (own) => own.cappedMm);
-    this.#blendPlane(out.bridgedMs, steps, (own) => own.bridgedMs);
-    this.#blendPlane(out.edgeMs, steps, (own) => own.edgeMs);
+    this.#blendPlane(out.depthMm, Number.NaN, steps, (own) => own.depthMm);
+    this.#blendPlane(out.cappedMm, 0, steps, (own) => own.cappedMm);
+    this.#blendPlane(out.bridgedMs, 0, steps, (own) => own.bridgedMs);
+    this.#blendPlane(out.edgeMs, 0, steps, (own) => own.edgeMs);
     for (const { cell, spans } of partly) {
       out.depthMm[cell] = this.#overSpans(spans, (layer) => layer.rateMmPerHour[cell]);
       out.cappedMm[cell] = this.#overSpans(spans, (layer) => layer.cappedRateMmPerHour?.[cell] ?? 0);
       out.bridgedMs[cell] = this.#timeOf(spans, "bridged");
       out.edgeMs[cell] = this.#timeOf(spans, "edge");
     }
-    this.#leaveUnseen(out.depthMm, undefined);
     this.#blendVariants(steps, partly);
     return { ...out, companions: this.#blendCompanions(steps, partly) };
   }
@@ -163,46 +162,35 @@ export class StepBlender {
   }
 
   /**
-   * Sums a plane of every radar by their shares; cells that nobody saw, or that are cut into spans, become 0.
+   * Sums a plane of every radar by their shares.
    *
+   * @param blank - what cells become that nobody saw; those that are cut into spans too, until they are filled
    * @param cells - the cell of each value; undefined where the plane has all cells
    */
   #blendPlane(
     out: Float64Array,
+    blank: number,
     steps: readonly RadarStep[],
     planeOf: (step: RadarStep) => Float64Array | Float32Array | undefined,
     cells?: Int32Array,
   ): void {
-    let blank = true;
+    out.fill(blank);
     for (let r = 0; r < steps.length; r++) {
       const plane = planeOf(steps[r]);
-      if (plane === undefined) continue;
-      if (!blank) addShares(out, plane, this.#shares[r], cells);
-      else setShares(out, plane, this.#shares[r], cells);
-      blank = false;
-    }
-    if (blank) out.fill(0);
-  }
-
-  /** What is not known where nobody observed: NaN, never 0. */
-  #leaveUnseen(out: Float64Array, cells: Int32Array | undefined): void {
-    const { observedMs } = this.#out;
-    for (let k = 0; k < out.length; k++) {
-      if (observedMs[cells === undefined ? k : cells[k]] === 0) out[k] = Number.NaN;
+      if (plane !== undefined) addShares(out, plane, this.#shares[r], cells);
     }
   }
 
   #blendVariants(steps: readonly RadarStep[], partly: readonly PartlySeen[]): void {
     const { variantMm } = this.#out;
-    const cells = this.#headlineCells;
-    const headlineAt = headlinePositions(this.#shape);
+    const headlineAt = this.#headlineAt;
+    const cells = headlineAt === undefined ? undefined : this.#shape.headlineCells;
     for (let v = 0; v < variantMm.length; v++) {
-      this.#blendPlane(variantMm[v], steps, (own) => own.variantMm[v], cells);
+      this.#blendPlane(variantMm[v], Number.NaN, steps, (own) => own.variantMm[v], cells);
       for (const { cell, spans } of partly) {
         const h = headlineAt === undefined ? cell : headlineAt[cell];
         if (h >= 0) variantMm[v][h] = this.#overSpans(spans, (layer) => layer.variants[v][h]);
       }
-      this.#leaveUnseen(variantMm[v], cells);
     }
   }
 
@@ -219,7 +207,7 @@ export class StepBlender {
         }
         return out;
       }
-      this.#blendPlane(out, steps, (own) => own.companions[c]);
+      this.#blendPlane(out, 0, steps, (own) => own.companions[c]);
       for (const { cell, spans } of partly) {
         out[cell] = this.#overSpans(spans, (layer) => layer.companions?.[c]?.[cell] ?? 0);
       }
@@ -249,28 +237,16 @@ function total(sums: Float64Array): number {
   return sum;
 }
 
-type Plane = Float64Array | Float32Array;
-
-function setShares(
-  out: Float64Array,
-  plane: Plane,
-  share: Float64Array,
-  cells: Int32Array | undefined,
-): void {
-  for (let k = 0; k < out.length; k++) {
-    const own = share[cells === undefined ? k : cells[k]];
-    out[k] = own === 0 ? 0 : own * plane[k];
-  }
-}
-
 function addShares(
   out: Float64Array,
-  plane: Plane,
+  plane: Float64Array | Float32Array,
   share: Float64Array,
   cells: Int32Array | undefined,
 ): void {
   for (let k = 0; k < out.length; k++) {
     const own = share[cells === undefined ? k : cells[k]];
-    if (own !== 0) out[k] += own * plane[k];
+    if (own === 0) continue;
+    const before = out[k];
+    out[k] = (Number.isNaN(before) ? 0 : before) + own * plane[k];
   }
 }

@@ -1,7 +1,7 @@
 import { type Interval, MS_PER_HOUR } from "@rainreckon/core";
-import type { CompanionKind, RateLayer } from "@rainreckon/mosaic";
+import { type CompanionKind, headlinePositions, type RateLayer } from "@rainreckon/mosaic";
 import { instantAt, type Join, Joiner } from "./joins.ts";
-import { type FieldShape, headlinePositions, type RadarStep, StepPool } from "./radar-step.ts";
+import { type FieldShape, type RadarStep, StepPool } from "./radar-step.ts";
 import { BRIDGED_ABOVE_ROUNDS, type Part, partsOf, type Stretch } from "./stretch.ts";
 
 /** How one radar's scans may speak for the time around them. */
@@ -59,7 +59,7 @@ export class RadarIntegrator {
     this.#cellCount = shape.cellCount;
     this.#variantCount = shape.variantCount;
     this.#kinds = (shape.companions ?? []).map(({ kind }) => kind);
-    this.#headlineAt = headlinePositions(shape);
+    this.#headlineAt = headlinePositions(shape.headlineCells, shape.cellCount);
     this.#zeros = new Float32Array(shape.cellCount);
     this.#pool = new StepPool(shape);
     this.#joiner = new Joiner(shape.cellCount);
@@ -164,7 +164,10 @@ export class RadarIntegrator {
     const [weight0, weight1] = [layer0.weight, layer1.weight];
     for (let k = 0; k < cells.length; k++) {
       const cell = cells[k];
-      depthMm[cell] += hours0 * rate0[cell] + hours1 * rate1[cell];
+      const first = rate0[cell];
+      const last = rate1[cell];
+      // Most cells are dry, and a sum is not touched to add nothing.
+      if (first !== 0 || last !== 0) depthMm[cell] += hours0 * first + hours1 * last;
       observedMs[cell] += ms;
       heightMMs[cell] += (ms * (height0[cell] + height1[cell])) / 2;
       weightMs[cell] += (ms * (weight0[cell] + weight1[cell])) / 2;
@@ -192,12 +195,15 @@ export class RadarIntegrator {
       const [variant0, variant1] = [layer0.variants[v], layer1.variants[v]];
       for (let k = 0; k < cells.length; k++) {
         const h = headlineAt === undefined ? cells[k] : headlineAt[cells[k]];
-        if (h >= 0) out[h] += hours0 * variant0[h] + hours1 * variant1[h];
+        if (h < 0) continue;
+        const first = variant0[h];
+        const last = variant1[h];
+        if (first !== 0 || last !== 0) out[h] += hours0 * first + hours1 * last;
       }
     }
   }
 
-  /** Adds a part of what few layers have; the plane is made when there is something to add. */
+  /** Adds a part of what few layers have; the plane is made when one does. */
   #addPlane(
     plane: Float32Array | undefined,
     cells: Int32Array,
@@ -206,13 +212,12 @@ export class RadarIntegrator {
     values1: Float32Array = this.#zeros,
   ): Float32Array | undefined {
     if (values0 === this.#zeros && values1 === this.#zeros) return plane;
-    let sum = plane;
+    const sum = plane ?? this.#pool.zeros();
     for (let k = 0; k < cells.length; k++) {
       const cell = cells[k];
-      const [value0, value1] = [values0[cell], values1[cell]];
-      if (value0 === 0 && value1 === 0) continue;
-      sum ??= this.#pool.zeros();
-      sum[cell] += hours0 * value0 + hours1 * value1;
+      const first = values0[cell];
+      const last = values1[cell];
+      if (first !== 0 || last !== 0) sum[cell] += hours0 * first + hours1 * last;
     }
     return sum;
   }

@@ -61,19 +61,19 @@ export class FieldSum {
   /** Adds a step, or a stored interval; call in time order, so that any split of a run adds up alike. */
   add(part: BlendedStep | IntervalFields): void {
     addKnown(this.depthMm, part.depthMm);
-    addKnown(this.observedMs, part.observedMs);
-    addKnown(this.bridgedMs, part.bridgedMs);
-    addKnown(this.edgeMs, part.edgeMs);
-    addKnown(this.cappedMm, part.cappedMm);
-    addKnown(this.heightMMs, part.heightMMs);
-    for (let r = 0; r < this.shareMs.length; r++) addKnown(this.shareMs[r], part.shareMs[r]);
+    addAll(this.observedMs, part.observedMs);
+    addAll(this.bridgedMs, part.bridgedMs);
+    addAll(this.edgeMs, part.edgeMs);
+    addAll(this.cappedMm, part.cappedMm);
+    addAll(this.heightMMs, part.heightMMs);
+    for (let r = 0; r < this.shareMs.length; r++) addAll(this.shareMs[r], part.shareMs[r]);
     for (let v = 0; v < this.variantMm.length; v++) addKnown(this.variantMm[v], part.variantMm[v]);
     for (let c = 0; c < this.companions.length; c++) {
       const values = part.companions[c];
       if (values === undefined) continue;
       const sum = this.companions[c] ?? new Float64Array(values.length);
       this.companions[c] = sum;
-      addKnown(sum, values);
+      addAll(sum, values);
     }
   }
 
@@ -94,6 +94,11 @@ export class FieldSum {
       ),
     };
   }
+}
+
+/** sum += part, both known everywhere. */
+function addAll(sum: Float64Array, part: Float64Array | Float32Array): void {
+  for (let i = 0; i < sum.length; i++) sum[i] += part[i];
 }
 
 /** sum += part where part is known; a sum that was NaN starts at the first known part. */

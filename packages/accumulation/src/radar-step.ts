@@ -33,23 +33,6 @@ export interface RadarStep {
   readonly companions: (Float32Array | undefined)[];
 }
 
-const positions = new WeakMap<Int32Array, { readonly at: Int32Array | undefined }>();
-
-/**
- * Position of each cell among the headline's, -1 where it is none of them.
- *
- * @returns undefined where the headline is made of all cells in their order
- */
-export function headlinePositions({ headlineCells, cellCount }: FieldShape): Int32Array | undefined {
-  const known = positions.get(headlineCells);
-  if (known !== undefined) return known.at;
-  const at = new Int32Array(cellCount).fill(-1);
-  for (let h = 0; h < headlineCells.length; h++) at[headlineCells[h]] = h;
-  const all = headlineCells.length === cellCount && headlineCells.every((cell, h) => cell === h);
-  positions.set(headlineCells, { at: all ? undefined : at });
-  return all ? undefined : at;
-}
-
 /** Makes empty steps, out of the arrays of those that nobody needs any more. */
 export class StepPool {
   readonly #shape: FieldShape;

@@ -1,4 +1,6 @@
 import { LEAST_WEIGHT } from "./blend-weight.ts";
+import { CellTolls } from "./cell-tolls.ts";
+import { headlinePositions } from "./headline-positions.ts";
 
 /**
  * How a value travels with the rain from gate to total.
@@ -73,17 +75,22 @@ export interface RateLayer {
   readonly companions?: readonly (Float32Array | undefined)[] | undefined;
 }
 
+/** Whether nothing rains under one relation that does not under another: then a dry cell is dry under both. */
+function isDryWhere(dry: Float32Array, other: Float32Array): boolean {
+  if (dry.length !== other.length) return false;
+  for (let key = 0; key < dry.length; key++) if (dry[key] === 0 && other[key] !== 0) return false;
+  return true;
+}
+
 /**
  * Builds the layer of one round from its sweeps, lowest first: each cell is spoken for by the lowest
  * sweep that observed it. Later sweeps fill only what is still not observed, so a caller may stop as
  * soon as `canFill` says that a sweep has nothing to add, before it decodes it.
- *
- * The toll of a cell is that of the lowest sweep with a gate there that speaks or was screened, since that sweep
- * would have spoken had nothing been screened: the sum over its gates of what they would have made, by their number.
  */
 export class RateLayerBuilder {
   readonly #rate: Float32Array;
-  readonly #headlineCells: Int32Array;
+  /** Position of a cell among the headline's, -1 for none; undefined where all cells are, in their order. */
+  readonly #headlineAt: Int32Array | undefined;
   readonly #variants: Float32Array[];
   readonly #kinds: readonly CompanionKind[];
   readonly #companions: (Float32Array | undefined)[];
@@ -92,12 +99,14 @@ export class RateLayerBuilder {
   #slot: Uint8Array | undefined;
   #capped: Float32Array | undefined;
   #trust: Float32Array | undefined;
-  /** 1 where a lower sweep had a screened gate. */
-  #tolled: Uint8Array | undefined;
+  readonly #tolls: CellTolls;
   #spoken = 0;
+  /** Places in the lookup's list of the cells that the sweep in work speaks for, as many as `#ownCount`. */
+  #own = new Int32Array(0);
+  #ownCount = 0;
 
   /**
-   * @param headlineCells - flat cell indices at which rates under other relations are kept
+   * @param headlineCells - flat cell indices, each once, at which rates under other relations are kept
    * @param variantCount - how many other relations
    * @param companions - what travels with the rates
    */
@@ -108,17 +117,18 @@ export class RateLayerBuilder {
     companions: readonly CompanionValue[] = [],
   ) {
     this.#rate = new Float32Array(cellCount).fill(Number.NaN);
-    this.#headlineCells = headlineCells;
+    this.#headlineAt = headlinePositions(headlineCells, cellCount);
     this.#variants = Array.from({ length: variantCount }, () =>
       new Float32Array(headlineCells.length).fill(Number.NaN),
     );
     this.#kinds = companions.map(({ kind }) => kind);
     this.#companions = companions.map(() => undefined);
+    this.#tolls = new CellTolls(cellCount);
   }
 
   /** True while no cell was spoken for and no screened gate was met: the round has nothing to tell. */
   get isEmpty(): boolean {
-    return this.#spoken === 0 && this.#tolled === undefined;
+    return this.#spoken === 0 && !this.#tolls.any;
   }
 
   /** True where a sweep of this geometry could speak for a cell that nobody has spoken for. */
@@ -142,6 +152,8 @@ export class RateLayerBuilder {
     const { cells, start, gates: gateIndex } = lookup;
     const { codes, rateMmPerHour, capped } = gates;
     const rate = this.#rate;
+    if (this.#own.length < cells.length) this.#own = new Int32Array(cells.length);
+    const own = this.#own;
     let spoken = 0;
     let cappedSeen = false;
     for (let at = 0; at < cells.length; at++) {
@@ -163,16 +175,17 @@ export class RateLayerBuilder {
       if (count === 0) continue;
       rate[cell] = sum / count;
       if (cap !== 0) cappedSeen = true;
-      if (!first) {
-        this.#slot ??= new Uint8Array(rate.length);
-        this.#slot[cell] = slotIndex;
-      }
-      spoken++;
+      own[spoken++] = at;
     }
+    if (!first && spoken > 0) {
+      this.#slot ??= new Uint8Array(rate.length);
+      for (let o = 0; o < spoken; o++) this.#slot[cells[own[o]]] = slotIndex;
+    }
+    this.#ownCount = spoken;
     this.#spoken += spoken;
-    if (cappedSeen) this.#addCapped(lookup, gates, slotIndex);
-    for (let v = 0; v < variants.length; v++) this.#addVariant(lookup, variants[v], v, slotIndex);
-    if (gates.trust !== undefined) this.#addTrust(lookup, gates, gates.trust, slotIndex);
+    if (cappedSeen) this.#addCapped(lookup, gates);
+    for (let v = 0; v < variants.length; v++) this.#addVariant(lookup, gates, variants[v], this.#variants[v]);
+    if (gates.trust !== undefined) this.#addTrust(lookup, gates, gates.trust);
     if (gates.companions !== undefined) this.#addCompanions(lookup, gates, gates.companions, slotIndex);
     this.#mids.push(midEpochMs);
     this.#lookups.push(lookup);
@@ -195,7 +208,10 @@ export class RateLayerBuilder {
       }
     }
     if (trust !== undefined) {
-      weight = weight.map((own, cell) => (own > 0 ? Math.max(LEAST_WEIGHT, own * trust[cell]) : own));
+      weight = weight.slice();
+      for (let cell = 0; cell < weight.length; cell++) {
+        if (weight[cell] > 0) weight[cell] = Math.max(LEAST_WEIGHT, weight[cell] * trust[cell]);
+      }
     }
     return {
       sweepMidEpochMs: this.#mids,
@@ -209,17 +225,13 @@ export class RateLayerBuilder {
     };
   }
 
-  /** Whether the sweep in work, with this index, is the one that speaks for a cell. */
-  #speaks(cell: number, slotIndex: number): boolean {
-    return !Number.isNaN(this.#rate[cell]) && (this.#slot?.[cell] ?? 0) === slotIndex;
-  }
-
   /** A second pass for the few sweeps with hail: the part of each mean that comes from capped gates. */
-  #addCapped(lookup: CellLookup, { codes, rateMmPerHour, capped }: GateRates, slotIndex: number): void {
-    this.#capped ??= new Float32Array(this.#rate.length);
-    const { cells, start, gates } = lookup;
-    for (let at = 0; at < cells.length; at++) {
-      if (!this.#speaks(cells[at], slotIndex)) continue;
+  #addCapped({ cells, start, gates }: CellLookup, { codes, rateMmPerHour, capped }: GateRates): void {
+    const cappedRate = this.#capped ?? new Float32Array(this.#rate.length);
+    this.#capped = cappedRate;
+    const own = this.#own;
+    for (let o = 0; o < this.#ownCount; o++) {
+      const at = own[o];
       let sum = 0;
       let count = 0;
       for (let k = start[at]; k < start[at + 1]; k++) {
@@ -229,25 +241,32 @@ export class RateLayerBuilder {
         count++;
         if (capped[key] !== 0) sum += value;
       }
-      this.#capped[cells[at]] = sum / count;
+      cappedRate[cells[at]] = sum / count;
     }
   }
 
   #addVariant(
-    lookup: CellLookup,
+    { cells, start, gates }: CellLookup,
+    main: GateRates,
     { codes, rateMmPerHour }: GateRates,
-    variant: number,
-    slotIndex: number,
+    out: Float32Array,
   ): void {
-    const out = this.#variants[variant];
-    for (let h = 0; h < this.#headlineCells.length; h++) {
-      const cell = this.#headlineCells[h];
-      const at = lookup.position[cell];
-      if (at < 0 || (this.#slot?.[cell] ?? 0) !== slotIndex) continue;
+    const headlineAt = this.#headlineAt;
+    const rate = this.#rate;
+    const own = this.#own;
+    const dryTogether = isDryWhere(main.rateMmPerHour, rateMmPerHour);
+    for (let o = 0; o < this.#ownCount; o++) {
+      const at = own[o];
+      const h = headlineAt === undefined ? cells[at] : headlineAt[cells[at]];
+      if (h < 0) continue;
+      if (dryTogether && rate[cells[at]] === 0) {
+        out[h] = 0;
+        continue;
+      }
       let sum = 0;
       let count = 0;
-      for (let k = lookup.start[at]; k < lookup.start[at + 1]; k++) {
-        const value = rateMmPerHour[codes === undefined ? lookup.gates[k] : codes[lookup.gates[k]]];
+      for (let k = start[at]; k < start[at + 1]; k++) {
+        const value = rateMmPerHour[codes === undefined ? gates[k] : codes[gates[k]]];
         if (!(value >= 0)) continue;
         sum += value;
         count++;
@@ -261,10 +280,11 @@ export class RateLayerBuilder {
     { cells, start, gates }: CellLookup,
     { codes, rateMmPerHour }: GateRates,
     trust: Float32Array,
-    slotIndex: number,
   ): void {
-    for (let at = 0; at < cells.length; at++) {
-      if (!this.#speaks(cells[at], slotIndex)) continue;
+    const own = this.#own;
+    let mean = this.#trust;
+    for (let o = 0; o < this.#ownCount; o++) {
+      const at = own[o];
       let sum = 0;
       let count = 0;
       for (let k = start[at]; k < start[at + 1]; k++) {
@@ -274,9 +294,10 @@ export class RateLayerBuilder {
         count++;
       }
       if (sum === count) continue;
-      this.#trust ??= new Float32Array(this.#rate.length).fill(1);
-      this.#trust[cells[at]] = sum / count;
+      mean ??= new Float32Array(this.#rate.length).fill(1);
+      mean[cells[at]] = sum / count;
     }
+    this.#trust = mean;
   }
 
   #addCompanions(
@@ -290,9 +311,14 @@ export class RateLayerBuilder {
       const ofGates = values[c];
       if (ofGates === undefined) continue;
       if (this.#kinds[c] === "toll") tolls.push(c);
-      else this.#addMean(lookup, gates, ofGates, c, slotIndex);
+      else this.#addMean(lookup, gates, ofGates, c);
     }
-    if (tolls.length > 0) this.#addTolls(lookup, gates, values, tolls, slotIndex);
+    if (tolls.length === 0) return;
+    // A cell that a lower sweep speaks for would not have been looked at.
+    const [rate, slot] = [this.#rate, this.#slot];
+    const isLowest = (cell: number) =>
+      Number.isNaN(rate[cell]) || (slot === undefined ? 0 : slot[cell]) === slotIndex;
+    this.#tolls.add(lookup, gates, values, tolls, isLowest, this.#companions);
   }
 
   /** A companion's mean over the gates that speak for a cell, by their rate where it goes by depth. */
@@ -301,12 +327,15 @@ export class RateLayerBuilder {
     { codes, rateMmPerHour }: GateRates,
     values: Float32Array,
     companion: number,
-    slotIndex: number,
   ): void {
     const byDepth = this.#kinds[companion] === "depth";
-    for (let at = 0; at < cells.length; at++) {
+    const own = this.#own;
+    const cellRate = this.#rate;
+    let plane = this.#companions[companion];
+    for (let o = 0; o < this.#ownCount; o++) {
+      const at = own[o];
       const cell = cells[at];
-      if (!this.#speaks(cell, slotIndex) || (byDepth && this.#rate[cell] === 0)) continue;
+      if (byDepth && cellRate[cell] === 0) continue;
       let sum = 0;
       let count = 0;
       for (let k = start[at]; k < start[at + 1]; k++) {
@@ -318,47 +347,9 @@ export class RateLayerBuilder {
         if (!Number.isNaN(value)) sum += byDepth ? rate * value : value;
       }
       if (sum === 0) continue;
-      this.#companion(companion)[cell] = sum / count;
+      plane ??= new Float32Array(this.#rate.length);
+      plane[cell] = sum / count;
     }
-  }
-
-  #addTolls(
-    { cells, start, gates }: CellLookup,
-    { codes, rateMmPerHour }: GateRates,
-    values: readonly (Float32Array | undefined)[],
-    tolls: readonly number[],
-    slotIndex: number,
-  ): void {
-    const screened = new Uint8Array(tolls.map((c) => values[c]?.length ?? 0)[0]);
-    for (const c of tolls) {
-      const ofGates = values[c] as Float32Array;
-      for (let gate = 0; gate < ofGates.length; gate++) if (ofGates[gate] > 0) screened[gate] = 1;
-    }
-    const tolled = this.#tolled ?? new Uint8Array(this.#rate.length);
-    for (let at = 0; at < cells.length; at++) {
-      const cell = cells[at];
-      let any = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) any |= screened[gates[k]];
-      if (any === 0 || tolled[cell] !== 0) continue;
-      if (!Number.isNaN(this.#rate[cell]) && !this.#speaks(cell, slotIndex)) continue;
-      this.#tolled = tolled;
-      tolled[cell] = 1;
-      let count = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const gate = gates[k];
-        if (screened[gate] !== 0 || rateMmPerHour[codes === undefined ? gate : codes[gate]] >= 0) count++;
-      }
-      for (const c of tolls) {
-        const ofGates = values[c] as Float32Array;
-        let sum = 0;
-        for (let k = start[at]; k < start[at + 1]; k++) if (ofGates[gates[k]] > 0) sum += ofGates[gates[k]];
-        if (sum > 0) this.#companion(c)[cell] = sum / count;
-      }
-    }
-  }
-
-  #companion(index: number): Float32Array {
-    this.#companions[index] ??= new Float32Array(this.#rate.length);
-    return this.#companions[index];
+    this.#companions[companion] = plane;
   }
 }
