@@ -4,6 +4,9 @@ import type { Moment } from "./model/radar.ts";
 /** How stored numbers stand for physical ones: all of a moment but its values. */
 export type MomentCoding = Omit<Moment, "stored">;
 
+/** Codes that 16 bits hold. */
+const TWO_BYTE_CODES = 65_536;
+
 /**
  * The physical value of one stored number, in dBZ where the moment is a reflectivity.
  *
@@ -43,6 +46,12 @@ export function checkCoding(coding: MomentCoding, where: string): void {
 export function momentValues(moment: Moment, where: string): Float32Array {
   checkCoding(moment, where);
   const { stored } = moment;
+  // A table of 65,536 entries would cost more than a small sweep of 16-bit codes.
+  if (stored instanceof Uint16Array && stored.length < TWO_BYTE_CODES) {
+    const values = new Float32Array(stored.length);
+    for (let i = 0; i < values.length; i++) values[i] = momentValue(stored[i] as number, moment);
+    return values;
+  }
   if (stored instanceof Uint8Array || stored instanceof Uint16Array) {
     return lookUp(
       stored,
@@ -69,7 +78,9 @@ export type Codes = Uint8Array | Uint16Array;
 
 /** A table over all codes of a type: 256 or 65,536 entries. */
 export function tabulate(codes: Codes, value: (code: number) => number): Float32Array {
-  return Float32Array.from({ length: 2 ** (8 * codes.BYTES_PER_ELEMENT) }, (_, code) => value(code));
+  const table = new Float32Array(2 ** (8 * codes.BYTES_PER_ELEMENT));
+  for (let code = 0; code < table.length; code++) table[code] = value(code);
+  return table;
 }
 
 /**
