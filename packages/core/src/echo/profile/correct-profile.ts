@@ -20,7 +20,7 @@ export const PROFILE_BAND_M = 10_000;
 /** What the profile did to one sweep. */
 export interface ProfileReport {
   readonly basis: LearnedProfile["basis"];
-  /** Shape [bands of {@link PROFILE_BAND_M}]: gates with echo, and the dB added to them: the sum, and the largest either way. */
+  /** Shape [bands of {@link PROFILE_BAND_M}]: gates with echo that remain, and the dB added to them: the sum, and the largest either way. */
   readonly wetGates: Float64Array;
   readonly addedDb: Float64Array;
   readonly largestDb: Float64Array;
@@ -128,6 +128,7 @@ function correctRay(
     if ((table.overGroundDb[gate] as number) < -largestDb) {
       added[index] = Number.NaN;
       (report.lostGates[band[gate] as number] as number)++;
+      if (value > Number.NEGATIVE_INFINITY) (report.wetGates[band[gate] as number] as number)--;
       continue;
     }
     if (value === Number.NEGATIVE_INFINITY) continue;
