@@ -1,5 +1,7 @@
 import { InvalidArgumentError, Option } from "commander";
 import { z } from "zod";
+import type { LonLat } from "./explain/places-asked.ts";
+import { parsePosition } from "./explain/position.ts";
 
 /** Reads a flag's value through a schema; what the schema says becomes the message. */
 function through<T>(schema: z.ZodType<T>): (value: string) => T {
@@ -94,6 +96,28 @@ const layerHeights = z
 /** A file that a chart is written to; its ending says what it holds. */
 const chartFile = z.string().regex(/\.(svg|html)$/i, "name a file that ends in .svg or .html");
 
+/** Gathers a flag that may be given several times. */
+function several<T>(
+  read: (value: string) => T,
+): (value: string, before: readonly T[] | undefined) => readonly T[] {
+  return (value, before = []) => [...before, read(value)];
+}
+
+const position = z.string().transform((text, context): LonLat => {
+  const found = parsePosition(text);
+  if (found !== undefined) return found;
+  context.addIssue({
+    code: "custom",
+    message: 'write a latitude and a longitude with their letters: "51.20N 4.10E"',
+  });
+  return z.NEVER;
+});
+
+/** An instant with its offset from UTC: without one nobody knows which. */
+const instant = z.iso
+  .datetime({ offset: true, error: "write an instant in UTC, like 2031-05-20T12:00Z" })
+  .transform((text) => Date.parse(text));
+
 /** Every flag of every command, each once: name, unit, default, help text. */
 export const flags = {
   // All commands
@@ -141,6 +165,29 @@ export const flags = {
     new Option("--cap <cap>", "hail cap, in dBZ or mm/h: 53dBZ, 100mm/h")
       .argParser(through(capValue))
       .default({ dbz: 53 }, "53dBZ"),
+
+  // explain
+  at: () =>
+    new Option(
+      "--at <place>",
+      'a place, WGS 84: latitude and longitude with their letters, "51.20N 4.10E"; may be given several times',
+    ).argParser(several(through(position))),
+  gaugeAsked: () =>
+    new Option(
+      "--gauge <gauge>",
+      "a gauge as NETWORK/ID, or ID where no other network has it; may be given several times",
+    ).argParser(several((value) => value)),
+  catchmentAsked: () =>
+    new Option("--catchment <id>", "a catchment of the plan; may be given several times").argParser(
+      several((value) => value),
+    ),
+  spanFrom: () =>
+    new Option("--from <time>", "UTC; only what comes after it, in whole steps").argParser(through(instant)),
+  spanTo: () =>
+    new Option("--to <time>", "UTC; only what comes up to it, in whole steps").argParser(through(instant)),
+  csv: () => new Option("--csv", "all rows as CSV on stdout, one a stretch between two scans"),
+  planOfRun: () =>
+    new Option("--plan <file>", "the plan of the run, where it and its inputs were moved away from the run"),
 
   // budget
   band: () =>

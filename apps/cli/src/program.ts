@@ -2,6 +2,7 @@ import { Command } from "commander";
 import { EXIT_WORDS, NothingLeft, speakPlainly } from "./command.ts";
 import { registerBudget } from "./commands/budget.ts";
 import { registerCompare } from "./commands/compare.ts";
+import { registerExplain } from "./commands/explain.ts";
 import { registerPlan } from "./commands/plan.ts";
 import { registerRelate } from "./commands/relate.ts";
 import { registerSurvey } from "./commands/survey.ts";
@@ -26,6 +27,7 @@ export function buildProgram(): Command {
   registerSurvey(program);
   registerPlan(program);
   registerTotal(program);
+  registerExplain(program);
   registerRelate(program);
   registerBudget(program);
   registerCompare(program);

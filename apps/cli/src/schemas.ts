@@ -3,6 +3,7 @@ import { budgetSchema } from "./budget/schema.ts";
 import { planReportSchema } from "./commands/plan.ts";
 import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
+import { explainSchema } from "./explain/schema.ts";
 import { manifestSchema } from "./manifest.ts";
 import { relationTableSchema } from "./relate/relation-table.ts";
 import { surveySchema } from "./survey/findings.ts";
@@ -12,6 +13,7 @@ export const schemas = {
   survey: surveySchema,
   plan: planReportSchema,
   total: totalSchema,
+  explain: explainSchema,
   "relate table": relationTableSchema,
   budget: budgetSchema,
   compare: compareSchema,

@@ -117,7 +117,8 @@ export function adjust(
   };
 }
 
-function settingsOf(run: PreparedRun, total: AssembledRun): MethodSettings {
+/** What every method is told beside the gauges. */
+export function settingsOf(run: PreparedRun, total: AssembledRun): MethodSettings {
   const { adjustment, pairs } = run.loaded.plan;
   return {
     factorLimits: adjustment.factorLimits,
@@ -180,7 +181,8 @@ export function loudestRadar(total: AssembledRun, cell: number): number {
   return loudest;
 }
 
-function rangeAt(run: PreparedRun, total: AssembledRun, cell: number): number {
+/** Distance of a cell from the radar that speaks loudest in it, km; NaN where none does. */
+export function rangeAt(run: PreparedRun, total: AssembledRun, cell: number): number {
   const site = run.shape.radars[loudestRadar(total, cell)]?.site;
   if (site === undefined) return Number.NaN;
   const { xM, yM } = cellCentre(run.grid, cell);

@@ -83,6 +83,11 @@ export function openRunFolder(folder: string, runDigest: string, force: boolean)
   return run;
 }
 
+/** True where a folder holds a run that has not come to its end. */
+export function isUnfinished(folder: string): boolean {
+  return existsSync(path.join(folder, UNFINISHED)) && !existsSync(path.join(folder, MANIFEST));
+}
+
 function stateOf(folder: string, runDigest: string): FolderState | InputError {
   const stat = lstatSync(folder, { throwIfNoEntry: false });
   if (stat === undefined) return "new";

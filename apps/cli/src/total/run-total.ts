@@ -152,6 +152,8 @@ export async function runTotal(
     workers: options.workers,
     resumedUnits: resumed,
     units: run.jobs.length,
+    // From the folder on, so that a run and its inputs may be moved together.
+    plan: path.relative(path.resolve(options.out), loaded.path).split(path.sep).join("/"),
     indexSeconds: seconds(indexedMs),
     learnSeconds: seconds(learnedMs - indexedMs),
     workSeconds: seconds(workedMs - learnedMs),

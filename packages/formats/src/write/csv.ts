@@ -44,6 +44,17 @@ export async function writeCsv<Row>(
   await writeText(path, csvLines(columns, rows));
 }
 
+/** The same table as one text, for a table that goes to no file. @throws RangeError as {@link writeCsv} */
+export async function csvText<Row>(
+  columns: readonly CsvColumn<Row>[],
+  rows: Iterable<Row> | AsyncIterable<Row>,
+): Promise<string> {
+  checkColumns(columns);
+  let text = "";
+  for await (const line of csvLines(columns, rows)) text += line;
+  return text;
+}
+
 async function* csvLines<Row>(
   columns: readonly CsvColumn<Row>[],
   rows: Iterable<Row> | AsyncIterable<Row>,

@@ -1,4 +1,4 @@
-export { type CsvColumn, type CsvNumberColumn, type CsvTextColumn, writeCsv } from "./csv.ts";
+export { type CsvColumn, type CsvNumberColumn, type CsvTextColumn, csvText, writeCsv } from "./csv.ts";
 export {
   type GeoJsonFeature,
   type GeoJsonGeometry,

@@ -1,0 +1,193 @@
+import { mkdtempSync, rmSync } from "node:fs";
+import { tmpdir } from "node:os";
+import path from "node:path";
+import { InputError, type Interval } from "@rainreckon/core";
+import { readTotals } from "@rainreckon/formats";
+import { adjustedIntervals, rangeAt, sumAdjusted } from "../total/adjust.ts";
+import { type Comparison, compareWithGauges } from "../total/against-gauges.ts";
+import { type AssembledRun, assemble } from "../total/assemble.ts";
+import type { UnitTrace } from "../total/job.ts";
+import type { PreparedRun } from "../total/prepare.ts";
+import { runUnit } from "../total/run-unit.ts";
+import { type UnitStore, unitStore } from "../total/unit-store.ts";
+import { isoUtc } from "../ui/numbers.ts";
+import { progressBar } from "../ui/progress.ts";
+import type { Terminal } from "../ui/terminal.ts";
+import { AdjustedBy } from "./adjusted-by.ts";
+import { areaAccount } from "./area-account.ts";
+import { AreaTracer, together } from "./area-tracer.ts";
+import { CellTracer } from "./cell-tracer.ts";
+import { checkedOutput, type OpenedRun, openRun } from "./open-run.ts";
+import { type Asked, findAsked } from "./places-asked.ts";
+import { pointAccount } from "./point-account.ts";
+import type { Explanation } from "./schema.ts";
+
+export interface ExplainOptions {
+  readonly asked: Asked;
+  /** Where the plan lies, if not where the run found it. */
+  readonly plan: string | undefined;
+  /** Undefined is the whole window; widened to whole steps. */
+  readonly from: number | undefined;
+  readonly to: number | undefined;
+}
+
+/** A run made again, as far as accounts need it. */
+export interface RemadeRun {
+  readonly opened: OpenedRun;
+  readonly span: Interval;
+  readonly total: AssembledRun;
+  readonly comparison: Comparison;
+  readonly store: UnitStore;
+  /** Shape [cells]; undefined where there is no adjustment. */
+  readonly adjustedTotalMm: Float32Array | undefined;
+  /** Shape [intervals][cells]: adjusted depth at some cells, by flat index. */
+  readonly adjustedAt: (interval: number, cell: number) => number;
+  /** Radar depth of an interval at a cell, as the units leave it. */
+  readonly radarAt: (interval: number, cell: number) => number;
+  /** What DIR holds, by name of variable. */
+  readonly stored: ReadonlyMap<string, Float32Array>;
+}
+
+/**
+ * How figures of a finished run came to be: the run is made again from the files of its manifest, by the code that
+ * made it, and what it tells on the way about the places asked for is written down.
+ *
+ * @throws InputError (kind "usage") as `openRun` and `findAsked`
+ */
+export async function explainRun(
+  folder: string,
+  options: ExplainOptions,
+  terminal: Terminal,
+): Promise<Explanation> {
+  const opened = await openRun(folder, options.plan, terminal, (count, noun) =>
+    progressBar(terminal, count, noun),
+  );
+  const { run, done } = opened;
+  const { points, areas } = findAsked(run, options.asked);
+  const span = spanOf(run, options);
+  const cells = [...new Set(points.map(({ cell }) => cell))];
+  const cellTracer = new CellTracer(run.grid, run.map, cells);
+  const areaTracers = areas.map(({ catchment }) => new AreaTracer(catchment.cells));
+  const trace = together([...(cells.length > 0 ? [cellTracer] : []), ...areaTracers]);
+  const stored = await readTotals(await checkedOutput(folder, done, "totals.nc"), [
+    "radar_total",
+    "adjusted_total",
+    "radar_depth",
+    "adjusted_depth",
+  ]);
+  const scratch = mkdtempSync(path.join(tmpdir(), "rainreckon-explain-"));
+  try {
+    const remade = await remake(
+      opened,
+      span,
+      trace,
+      scratch,
+      stored,
+      terminal,
+      cellsOf(
+        cells,
+        areas.map(({ catchment }) => catchment),
+      ),
+    );
+    const { total, comparison } = remade;
+    const adjustedBy = new AdjustedBy(run, total, comparison.adjustment, (cell) => rangeAt(run, total, cell));
+    return {
+      format: "rainreckon-explain-1",
+      run: {
+        folder,
+        title: done.manifest.title,
+        status: done.manifest.status,
+        version: done.manifest.version,
+        runDigest: done.manifest.runDigest,
+      },
+      window: spanText(run.window),
+      span: spanText(span),
+      remarks: [...opened.remarks],
+      points: points.map((point) =>
+        pointAccount(point, cellTracer.accountOf(cells.indexOf(point.cell)), remade, adjustedBy),
+      ),
+      catchments: areas.map((area, k) => areaAccount(area, areaTracers[k] as AreaTracer, remade, adjustedBy)),
+    };
+  } finally {
+    rmSync(scratch, { recursive: true, force: true });
+  }
+}
+
+async function remake(
+  opened: OpenedRun,
+  span: Interval,
+  trace: UnitTrace,
+  scratch: string,
+  stored: ReadonlyMap<string, Float32Array>,
+  terminal: Terminal,
+  cells: readonly number[],
+): Promise<RemadeRun> {
+  const { run } = opened;
+  // The headline's other relations have no part in any figure that is accounted for.
+  const shape = { ...run.shape, variants: [], headlineCells: new Int32Array() };
+  const lean: PreparedRun = { ...run, shape };
+  const store = unitStore(scratch);
+  const progress = progressBar(terminal, run.jobs.length, "units of work");
+  for (const job of run.jobs) {
+    store.save(job, await runUnit(shape, job, trace));
+    progress.advance();
+  }
+  progress.end();
+  const total = assemble(shape, run.jobs, store, run.window.endEpochMs - run.window.startEpochMs);
+  const comparison = compareWithGauges(lean, total);
+  const { adjustment } = comparison;
+  const place = new Map(cells.map((cell, k) => [cell, k]));
+  const at = (rows: readonly Float32Array[]) => (interval: number, cell: number) =>
+    rows[interval]?.[place.get(cell) ?? -1] ?? Number.NaN;
+  const pick = (field: Float32Array) => Float32Array.from(cells, (cell) => field[cell] as number);
+  const radar: Float32Array[] = [];
+  for (const job of run.jobs) for (const { depthMm } of store.load(job).intervals) radar.push(pick(depthMm));
+  const adjusted: Float32Array[] = [];
+  if (adjustment.applied)
+    for (const depthMm of adjustedIntervals(lean, total, adjustment, store)) adjusted.push(pick(depthMm));
+  return {
+    opened: { ...opened, run: lean },
+    span,
+    total,
+    comparison,
+    store,
+    adjustedTotalMm: adjustment.applied ? sumAdjusted(lean, total, adjustment, store) : undefined,
+    adjustedAt: at(adjusted),
+    radarAt: at(radar),
+    stored,
+  };
+}
+
+function cellsOf(
+  cells: readonly number[],
+  catchments: readonly PreparedRun["catchments"][number][],
+): number[] {
+  return [...new Set([...cells, ...catchments.flatMap((catchment) => [...catchment.cells.cells])])];
+}
+
+/** Whole steps that hold the span asked for. */
+function spanOf({ window, steps }: PreparedRun, { from, to }: ExplainOptions): Interval {
+  const asked = { startEpochMs: from ?? window.startEpochMs, endEpochMs: to ?? window.endEpochMs };
+  const inside = steps.filter(
+    ({ startEpochMs, endEpochMs }) => endEpochMs > asked.startEpochMs && startEpochMs < asked.endEpochMs,
+  );
+  const [first, last] = [inside[0], inside[inside.length - 1]];
+  if (first === undefined || last === undefined || asked.startEpochMs >= asked.endEpochMs) {
+    throw new InputError(
+      "this span lies outside the window of the run, or has no length",
+      `--from ${isoUtc(asked.startEpochMs)} --to ${isoUtc(asked.endEpochMs)}`,
+      `the window is ${isoUtc(window.startEpochMs)} to ${isoUtc(window.endEpochMs)}`,
+      { kind: "usage" },
+    );
+  }
+  return { startEpochMs: first.startEpochMs, endEpochMs: last.endEpochMs };
+}
+
+export function spanText({ startEpochMs, endEpochMs }: Interval): { start: string; end: string } {
+  return { start: isoUtc(startEpochMs), end: isoUtc(endEpochMs) };
+}
+
+/** Whether one interval lies wholly in another. */
+export function isInside(inner: Interval, outer: Interval): boolean {
+  return inner.startEpochMs >= outer.startEpochMs && inner.endEpochMs <= outer.endEpochMs;
+}
