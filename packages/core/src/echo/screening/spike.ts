@@ -92,14 +92,12 @@ function medianOf(classes: Uint32Array, count: number): number {
 
 /** Whether the power stands where nothing to the sides would hide it, on enough of the ray, near and far. */
 function isSpike(
-  { echo: { measuredDbz }, gateCount, rangeGainDb, noiseAt1KmDbz }: SweepView,
+  { echo: { measuredDbz }, gateCount, rangeGainDb }: SweepView,
   ray: number,
   left: number,
   right: number,
   powerDb: number,
 ): boolean {
-  // Power below the noise cannot be seen anywhere.
-  if (powerDb < noiseAt1KmDbz) return false;
   const half = gateCount >> 1;
   let open = 0;
   let openFar = 0;

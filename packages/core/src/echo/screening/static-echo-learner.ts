@@ -1,5 +1,5 @@
 import type { PolarEcho } from "../polar-echo.ts";
-import type { FixedEcho, LearnedStaticEcho } from "./static-echo.ts";
+import type { FixedEcho, LearnedStaticEcho, LearnedSweep } from "./static-echo.ts";
 import { geometryOf, isSameGeometry, type SweepGeometry, slotOf } from "./sweep-geometry.ts";
 import { rayBeside, type SweepView, viewSweep } from "./sweep-view.ts";
 
@@ -9,6 +9,8 @@ const ENOUGH_ROUNDS = 8;
 export const STATIC_SHARE = 0.5;
 /** And of all rounds at least so many, lest one dry spell decide. House rule. */
 const OF_ALL_SHARE = 0.25;
+/** And from first to last over so much of the run: a slow shower stands out at one place for half an hour. House rule. */
+const SPAN_SHARE = 0.6;
 /** Distance of the gates that tell what is around. House rule: beyond single points, within showers. */
 const AROUND_M = 2000;
 /** Of eight places around, so many must be weaker. House rule. */
@@ -27,31 +29,89 @@ const MOVING_M_PER_S = 2;
 const WIDEST_SPREAD_DB = 8;
 const NARROWEST_SPREAD_DB = 2;
 
-/** Counts by gate. A vote is a round in which the gate looks like echo of the ground. */
-class Tally {
-  readonly geometry: SweepGeometry;
-  rounds = 0;
+/** Rounds by gate that can tell whether something stands there, and those that show it: votes. */
+class Votes {
   readonly told: Uint16Array;
-  readonly votes: Uint16Array;
+  readonly count: Uint16Array;
   /** Sums of reflectivity in hundredths of a dB, and of its squares: whole numbers add up the same in any order. */
   readonly sums: Float64Array;
   readonly squares: Float64Array;
-  readonly pointTold: Uint16Array;
-  readonly pointVotes: Uint16Array;
-  readonly pointSums: Float64Array;
-  readonly pointSquares: Float64Array;
+  readonly firstEpochMs: Float64Array;
+  readonly lastEpochMs: Float64Array;
 
-  constructor(geometry: SweepGeometry) {
-    const gates = geometry.slotCount * geometry.gateCount;
-    this.geometry = geometry;
+  constructor(gates: number) {
     this.told = new Uint16Array(gates);
-    this.votes = new Uint16Array(gates);
+    this.count = new Uint16Array(gates);
     this.sums = new Float64Array(gates);
     this.squares = new Float64Array(gates);
-    this.pointTold = new Uint16Array(gates);
-    this.pointVotes = new Uint16Array(gates);
-    this.pointSums = new Float64Array(gates);
-    this.pointSquares = new Float64Array(gates);
+    this.firstEpochMs = new Float64Array(gates).fill(Number.POSITIVE_INFINITY);
+    this.lastEpochMs = new Float64Array(gates).fill(Number.NEGATIVE_INFINITY);
+  }
+
+  tell(place: number): void {
+    this.told[place] = (this.told[place] as number) + 1;
+  }
+
+  vote(place: number, dbz: number, epochMs: number): void {
+    this.tell(place);
+    const centi = Math.round(100 * dbz);
+    this.count[place] = (this.count[place] as number) + 1;
+    this.sums[place] = (this.sums[place] as number) + centi;
+    this.squares[place] = (this.squares[place] as number) + centi * centi;
+    this.firstEpochMs[place] = Math.min(this.firstEpochMs[place] as number, epochMs);
+    this.lastEpochMs[place] = Math.max(this.lastEpochMs[place] as number, epochMs);
+  }
+
+  /** Gates that show it often and long enough and keep their strength: up to the mean and twice the spread. */
+  settle(rounds: number, spanMs: number): FixedEcho {
+    const places: number[] = [];
+    const upToDbz: number[] = [];
+    const share: number[] = [];
+    for (let place = 0; place < this.count.length; place++) {
+      const count = this.count[place] as number;
+      const told = this.told[place] as number;
+      if (count < STATIC_SHARE * told || count < OF_ALL_SHARE * rounds) continue;
+      if ((this.lastEpochMs[place] as number) - (this.firstEpochMs[place] as number) < SPAN_SHARE * spanMs)
+        continue;
+      const mean = (this.sums[place] as number) / count / 100;
+      const spread = Math.sqrt(Math.max(0, (this.squares[place] as number) / count / 1e4 - mean * mean));
+      if (spread > WIDEST_SPREAD_DB) continue;
+      places.push(place);
+      upToDbz.push(mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread));
+      share.push(count / told);
+    }
+    return {
+      places: Int32Array.from(places),
+      upToDbz: Float32Array.from(upToDbz),
+      share: Float64Array.from(share),
+    };
+  }
+}
+
+/** What was counted of one elevation and geometry. */
+class Tally {
+  readonly geometry: SweepGeometry;
+  readonly ground: Votes;
+  readonly points: Votes;
+  rounds = 0;
+  firstEpochMs = Number.POSITIVE_INFINITY;
+  lastEpochMs = Number.NEGATIVE_INFINITY;
+
+  constructor(geometry: SweepGeometry) {
+    this.geometry = geometry;
+    const gates = geometry.slotCount * geometry.gateCount;
+    this.ground = new Votes(gates);
+    this.points = new Votes(gates);
+  }
+
+  settle(): LearnedSweep {
+    const spanMs = this.lastEpochMs - this.firstEpochMs;
+    return {
+      ...this.geometry,
+      rounds: this.rounds,
+      static: this.ground.settle(this.rounds, spanMs),
+      points: this.points.settle(this.rounds, spanMs),
+    };
   }
 }
 
@@ -60,7 +120,7 @@ class Tally {
  *
  * A gate is static where, in at least half of the rounds that can tell, it stands out from the gates 2 km around
  * it, or correlates as no weather does, or stands still while all around moves. Rounds with rain around and
- * nothing that stands out cannot tell. Steady rain does not stand out, and a slow shower does not stay.
+ * nothing that shows cannot tell. Steady rain does not stand out, and a slow shower does not stay.
  *
  * Source of the principle (frequency of echo in dry weather): Steiner and Smith (2002), J. Atmos. Oceanic Technol.
  * 19, 673-686; thresholds common practice or house rules as given at each.
@@ -77,6 +137,8 @@ export class StaticEchoLearner {
       this.#tallies.push(tally);
     }
     tally.rounds++;
+    tally.firstEpochMs = Math.min(tally.firstEpochMs, echo.header.startEpochMs);
+    tally.lastEpochMs = Math.max(tally.lastEpochMs, echo.header.startEpochMs);
     const view = viewSweep(echo);
     const around = placesAround(view);
     for (let ray = 0; ray < view.rayCount; ray++) {
@@ -91,18 +153,7 @@ export class StaticEchoLearner {
   finish(): LearnedStaticEcho {
     const sweeps = this.#tallies
       .filter(({ rounds }) => rounds >= ENOUGH_ROUNDS)
-      .map((tally) => ({
-        ...tally.geometry,
-        rounds: tally.rounds,
-        static: fixedEcho(tally.rounds, tally.told, tally.votes, tally.sums, tally.squares),
-        points: fixedEcho(
-          tally.rounds,
-          tally.pointTold,
-          tally.pointVotes,
-          tally.pointSums,
-          tally.pointSquares,
-        ),
-      }));
+      .map((tally) => tally.settle());
     // In an order that does not tell which sweep came first.
     sweeps.sort(
       (a, b) =>
@@ -182,46 +233,9 @@ function countGate(
     (weaker >= enough ||
       (rhohv !== undefined && (rhohv[at] as number) < STATIC_RHOHV) ||
       (isMovingAround && own > -STILL_M_PER_S && own < STILL_M_PER_S));
-  const centi = Math.round(100 * dbz);
-  if (isVote) {
-    tally.votes[place] = (tally.votes[place] as number) + 1;
-    tally.sums[place] = (tally.sums[place] as number) + centi;
-    tally.squares[place] = (tally.squares[place] as number) + centi * centi;
-  }
-  if (isVote || dry >= enough) tally.told[place] = (tally.told[place] as number) + 1;
-  const isPoint = isEcho && dbz >= POINT_DBZ && muchWeaker >= enough;
-  if (isPoint) {
-    tally.pointVotes[place] = (tally.pointVotes[place] as number) + 1;
-    tally.pointSums[place] = (tally.pointSums[place] as number) + centi;
-    tally.pointSquares[place] = (tally.pointSquares[place] as number) + centi * centi;
-  }
-  if (isPoint || dry >= enough) tally.pointTold[place] = (tally.pointTold[place] as number) + 1;
-}
-
-/** Gates where it was seen often enough and keeps its strength: up to the mean and twice the spread. */
-function fixedEcho(
-  rounds: number,
-  told: Uint16Array,
-  votes: Uint16Array,
-  sums: Float64Array,
-  squares: Float64Array,
-): FixedEcho {
-  const places: number[] = [];
-  const upToDbz: number[] = [];
-  const share: number[] = [];
-  for (let place = 0; place < votes.length; place++) {
-    const count = votes[place] as number;
-    if (count < STATIC_SHARE * (told[place] as number) || count < OF_ALL_SHARE * rounds) continue;
-    const mean = (sums[place] as number) / count / 100;
-    const spread = Math.sqrt(Math.max(0, (squares[place] as number) / count / 1e4 - mean * mean));
-    if (spread > WIDEST_SPREAD_DB) continue;
-    places.push(place);
-    upToDbz.push(mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread));
-    share.push(count / (told[place] as number));
-  }
-  return {
-    places: Int32Array.from(places),
-    upToDbz: Float32Array.from(upToDbz),
-    share: Float64Array.from(share),
-  };
+  const epochMs = echo.header.startEpochMs;
+  if (isVote) tally.ground.vote(place, dbz, epochMs);
+  else if (dry >= enough) tally.ground.tell(place);
+  if (isEcho && dbz >= POINT_DBZ && muchWeaker >= enough) tally.points.vote(place, dbz, epochMs);
+  else if (dry >= enough) tally.points.tell(place);
 }

@@ -7,8 +7,12 @@ const LOWEST_AT_1KM_DBZ = -100;
 const CLASSES = 320;
 /** So many of the weakest gates are passed over: a clutter filter leaves echo below what can be seen. House rule. */
 const PASSED_OVER = 0.002;
-/** Every so many rays are enough to tell. */
-const RAY_STRIDE = 4;
+
+/**
+ * No rain radar is less sensitive than this at 1 km, so that a sweep full of rain does not pass for a deaf radar.
+ * House rule; radars for rain have -50 to -30 dBZ.
+ */
+const HIGHEST_NOISE_AT_1KM_DBZ = -20;
 
 /** What several screens need to know of a sweep, worked out once. */
 export interface SweepView {
@@ -21,7 +25,7 @@ export interface SweepView {
   readonly heightM: Float32Array;
   /** Mean step from ray to ray, degrees. */
   readonly rayStepDeg: number;
-  /** Reflectivity at 1 km that equals the noise, as far as the sweep or its header tells; -Infinity if neither. */
+  /** Reflectivity at 1 km that equals the noise, as far as the sweep or its header tells. */
   readonly noiseAt1KmDbz: number;
   /** True where the last ray and the first lie beside each other. */
   readonly closed: boolean;
@@ -49,6 +53,7 @@ export function viewSweep(echo: PolarEcho): SweepView {
   const { echoAt, echoStart } = listEcho(measuredDbz, rayCount, gateCount);
   // A sender's figure is not believed where the sweep itself holds weaker echo.
   const noiseAt1KmDbz = Math.min(
+    HIGHEST_NOISE_AT_1KM_DBZ,
     header.noiseEquivalentDbz ?? Number.POSITIVE_INFINITY,
     weakestAt1KmDbz(measuredDbz, gateCount, rangeGainDb, echoAt, echoStart),
   );
@@ -90,7 +95,7 @@ function weakestAt1KmDbz(
 ): number {
   const classes = new Uint32Array(CLASSES);
   let seen = 0;
-  for (let ray = 0; ray + 1 < echoStart.length; ray += RAY_STRIDE) {
+  for (let ray = 0; ray + 1 < echoStart.length; ray++) {
     for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
       const at = echoAt[k] as number;
       const at1Km = (dbz[at] as number) - (rangeGainDb[at - ray * gateCount] as number);
@@ -100,7 +105,7 @@ function weakestAt1KmDbz(
       seen++;
     }
   }
-  if (seen === 0) return Number.NEGATIVE_INFINITY;
+  if (seen === 0) return Number.POSITIVE_INFINITY;
   let passed = PASSED_OVER * seen;
   let place = 0;
   for (; place < CLASSES - 1; place++) {
