@@ -312,7 +312,8 @@ function loseWhatLiesBehind(
       const lossDb = loss[i] as number;
       if (lossDb === 0) continue;
       const before = total[i] as number;
-      total[i] = before + lossDb;
+      // Behind the stop of Hitschfeld-Bordan the loss itself is not known.
+      total[i] = lossDb === Number.POSITIVE_INFINITY ? Number.NaN : before + lossDb;
       const value = dbz[i] as number;
       if (value === Number.NEGATIVE_INFINITY) {
         if (lossDb > limitDb || before + lossDb > (hiding[gate] as number)) {

@@ -6,7 +6,7 @@ export interface PhaseSettings {
   readonly foldDeg: 360 | 180;
   /** Gates that correlate less carry no phase of rain: clutter, biology, noise. */
   readonly leastCorrelation: number;
-  /** Weaker echo has too noisy a phase. */
+  /** Where the file has no RHOHV, weaker echo has too noisy a phase; else RHOHV itself tells noise. */
   readonly leastDbz: number;
   /** Noise of one gate from which on a sweep's phase is given up. */
   readonly mostNoiseDeg: number;
@@ -17,7 +17,7 @@ export interface PhaseSettings {
 export const DEFAULT_PHASE_SETTINGS: PhaseSettings = {
   foldDeg: 360,
   leastCorrelation: 0.85,
-  leastDbz: 5,
+  leastDbz: 10,
   mostNoiseDeg: 20,
   leastRays: 10,
 };
@@ -28,7 +28,7 @@ export function folded(angleDeg: number, foldDeg: number): number {
 }
 
 /**
- * 1 where a gate's phase may be rain's: measured, echo strong enough, well correlated, not screened.
+ * 1 where a gate's phase may be rain's: measured, with echo, well correlated, not screened.
  *
  * @returns shape [rayCount * gateCount], and how many they are
  */
@@ -41,11 +41,14 @@ export function phaseGates(
   const { leastCorrelation, leastDbz } = settings;
   const good = new Uint8Array(phidpDeg.length);
   let count = 0;
+  // Comparisons with NaN are false: what is not observed, and a phase that is not a number, is never good.
   for (let gate = 0; gate < phidpDeg.length; gate++) {
-    // Comparisons with NaN are false: a gate that is not observed is never good.
-    if (!((measuredDbz[gate] as number) >= leastDbz) || screenedBy[gate] !== 0) continue;
-    if (rhohv !== undefined && !((rhohv[gate] as number) >= leastCorrelation)) continue;
-    if (Number.isNaN(phidpDeg[gate] as number)) continue;
+    if (screenedBy[gate] !== 0 || !((measuredDbz[gate] as number) > Number.NEGATIVE_INFINITY)) continue;
+    const trusted =
+      rhohv === undefined
+        ? (measuredDbz[gate] as number) >= leastDbz
+        : (rhohv[gate] as number) >= leastCorrelation;
+    if (!trusted || Number.isNaN(phidpDeg[gate] as number)) continue;
     good[gate] = 1;
     count++;
   }
@@ -53,6 +56,8 @@ export function phaseGates(
 }
 
 const NOISE_BIN_DEG = 0.5;
+/** A median needs no more rays than about these, spread over the sweep. */
+const NOISE_RAYS = 90;
 /** Median of the absolute value of a normal number, in standard deviations. */
 const MEDIAN_ABSOLUTE = 0.6745;
 
@@ -69,16 +74,19 @@ export function phaseNoiseDeg(
   foldDeg: number,
 ): number {
   const counts = new Uint32Array(Math.ceil(foldDeg / NOISE_BIN_DEG) + 1);
+  const rayCount = phidpDeg.length / gateCount;
+  const stride = Math.max(1, Math.floor(rayCount / NOISE_RAYS));
   let total = 0;
-  for (let gate = 1; gate < phidpDeg.length - 1; gate++) {
-    if ((good[gate - 1] as number) + (good[gate] as number) + (good[gate + 1] as number) !== 3) continue;
-    const place = gate % gateCount;
-    if (place === 0 || place === gateCount - 1) continue;
-    const before = folded((phidpDeg[gate] as number) - (phidpDeg[gate - 1] as number), foldDeg);
-    const after = folded((phidpDeg[gate + 1] as number) - (phidpDeg[gate] as number), foldDeg);
-    const bin = Math.round(Math.abs(after - before) / NOISE_BIN_DEG);
-    counts[bin] = (counts[bin] as number) + 1;
-    total++;
+  for (let ray = 0; ray < rayCount; ray += stride) {
+    const end = (ray + 1) * gateCount - 1;
+    for (let gate = ray * gateCount + 1; gate < end; gate++) {
+      if ((good[gate - 1] as number) + (good[gate] as number) + (good[gate + 1] as number) !== 3) continue;
+      const before = folded((phidpDeg[gate] as number) - (phidpDeg[gate - 1] as number), foldDeg);
+      const after = folded((phidpDeg[gate + 1] as number) - (phidpDeg[gate] as number), foldDeg);
+      const bin = Math.round(Math.abs(after - before) / NOISE_BIN_DEG);
+      counts[bin] = (counts[bin] as number) + 1;
+      total++;
+    }
   }
   if (total === 0) return Number.NaN;
   let below = 0;

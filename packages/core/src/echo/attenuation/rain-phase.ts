@@ -156,11 +156,12 @@ class RayPhase {
       const place = this.#place[i] as number;
       const here = Math.max(0, this.#smooth[i] as number);
       const slope = (here - last) / (place - lastPlace);
-      for (; gate <= place; gate++) out[from + gate] = last + slope * (gate - lastPlace);
+      for (; gate < place; gate++) out[from + gate] = last + slope * (gate - lastPlace);
+      out[from + gate++] = here;
       last = here;
       lastPlace = place;
     }
-    for (; gate < this.unfolded.length; gate++) out[from + gate] = last;
+    out.fill(last, from + gate, from + this.unfolded.length);
     return last;
   }
 }
