@@ -125,6 +125,7 @@ export {
 export { type BlockedSweep, terrainBlockage } from "./echo/blockage/terrain-blockage.ts";
 export { type TerrainGrid, type TerrainRays, terrainCaution } from "./echo/blockage/terrain-model.ts";
 export {
+  attenuationLine,
   type LearnedAlpha,
   type LearnedFactor,
   learnAttenuationFromOverlap,

@@ -1,9 +1,9 @@
 import type { PolarEcho } from "../polar-echo.ts";
-import { rateOfKdp } from "./estimators.ts";
+import { bandLaws, rateOfKdp } from "./estimators.ts";
 import { hailShare, mayBeHail } from "./hail.ts";
-import { isLiquid, type MomentReader } from "./moment-reader.ts";
+import { isLiquid, MomentReader } from "./moment-reader.ts";
 import { ramp } from "./ramp.ts";
-import { type RateTables, rateOfZ } from "./rate-tables.ts";
+import { type RateTables, type ReadyRelation, rateOfZ } from "./ready-relation.ts";
 
 /**
  * Echo in which the two rates are compared: strong enough for KDP to be more than noise, too weak for hail.
@@ -12,16 +12,61 @@ import { type RateTables, rateOfZ } from "./rate-tables.ts";
 const COMPARED_DBZ = { from: 34, full: 37, fading: 47, to: 50 } as const;
 const RAIN_CORRELATION = { from: 0.96, full: 0.98 } as const;
 
-/** Rain that the relation is believed for before KDP has said anything: 10 mm/h over 25 km2. House rule. */
-const PRIOR_RAIN_KM2_MM_PER_HOUR = 250;
+/**
+ * Rain that the relation, or what the run has learned, is believed for before the sweep has said anything: 10 mm/h
+ * over 25 km2, and over 100 km2. House rule.
+ */
+const PRIOR_KM2_MM_PER_HOUR = { relation: 250, learned: 1000 } as const;
 
 /**
  * The ratio that is put down to the shape of drops, and the one that is taken for their number.
  *
  * The assumed shape alone moves R(KDP) by 5 to 40 % against Rayleigh-Gans scattering, and one relation is uncertain
- * by a factor of 1.5 to 2 on one scan: below 1.4 either way nothing is changed, above 1.8 all is. House rule.
+ * by a factor of 1.5 to 2 on one scan: below 1.4 either way nothing is changed, above 1.8 all is. Ten times as many
+ * drops make a factor of 2.15, thirty times 3.1; a KDP that says more, or next to nothing, is broken. House rule.
  */
-const RATIO = { ignored: 1.4, believed: 1.8 } as const;
+const RATIO = { ignored: 1.4, believed: 1.8, doubted: 3, refused: 4 } as const;
+
+/** Where the heavier rain of a run stands between its Z and its KDP; for any relation. */
+export interface LearnedDropNumber {
+  /** Sum of R(KDP) over area, mm/h km2. */
+  readonly rainByKdp: number;
+  /** Area by reflectivity, km2: classes of {@link CLASS_DB} from {@link COMPARED_DBZ}.from up. */
+  readonly areaKm2: Float64Array;
+}
+
+const CLASS_DB = 0.5;
+const CLASSES = (COMPARED_DBZ.to - COMPARED_DBZ.from) / CLASS_DB;
+
+/**
+ * Calls back for each gate in which Z and KDP may be compared.
+ *
+ * @param take - given the area that the gate counts with, its index and its KDP
+ */
+function forEachCompared(
+  { kdpDegPerKm, dbz, marks, header }: PolarEcho,
+  reader: MomentReader,
+  take: (areaKm2: number, gate: number, kdp: number) => void,
+): void {
+  if (kdpDegPerKm === undefined) return;
+  const { gateCount, rayCount, firstGateCentreM, gateLengthM } = header;
+  const km2PerMetre = ((2 * Math.PI) / rayCount) * gateLengthM * 1e-6;
+  for (let gate = 0; gate < dbz.length; gate++) {
+    const value = dbz[gate];
+    if (!(value > COMPARED_DBZ.from && value < COMPARED_DBZ.to)) continue;
+    const kdp = kdpDegPerKm[gate];
+    if (Number.isNaN(kdp) || !isLiquid(marks[gate])) continue;
+    const rhohv = reader.rhohv(gate);
+    let weight =
+      ramp(value, COMPARED_DBZ.from, COMPARED_DBZ.full) *
+      (1 - ramp(value, COMPARED_DBZ.fading, COMPARED_DBZ.to)) *
+      (Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.full));
+    if (mayBeHail(value, rhohv)) weight *= 1 - hailShare(value, reader.zdrDb(gate), rhohv);
+    if (weight > 0) {
+      take(weight * km2PerMetre * (firstGateCentreM + (gate % gateCount) * gateLengthM), gate, kdp);
+    }
+  }
+}
 
 /**
  * Factor on every rate from Z that makes the sweep's rain agree with its KDP, where both disagree by more than
@@ -33,7 +78,7 @@ const RATIO = { ignored: 1.4, believed: 1.8 } as const;
  * The papers are from memory, and the thresholds are ours.
  *
  * @param rainType - numbers of `RAIN_TYPE`, or undefined for one relation everywhere
- * @returns 1 where there is no KDP, no law for the band, or not enough rain
+ * @returns what the run has learned where the sweep has no KDP; 1 where nothing is known, or the band has no law
  */
 export function dropNumberFactor(
   echo: PolarEcho,
@@ -41,30 +86,59 @@ export function dropNumberFactor(
   tables: RateTables,
   reader: MomentReader,
 ): number {
-  const { kdpDegPerKm, dbz, header } = echo;
-  const { laws, byType } = tables;
-  if (kdpDegPerKm === undefined || laws === undefined) return 1;
-  const { gateCount, rayCount, firstGateCentreM, gateLengthM } = header;
-  let sumOfZ = PRIOR_RAIN_KM2_MM_PER_HOUR;
-  let sumOfKdp = PRIOR_RAIN_KM2_MM_PER_HOUR;
-  const km2PerMetre = ((2 * Math.PI) / rayCount) * gateLengthM * 1e-6;
-  for (let gate = 0; gate < dbz.length; gate++) {
-    const value = dbz[gate];
-    if (!(value > COMPARED_DBZ.from && value < COMPARED_DBZ.to)) continue;
-    const kdp = kdpDegPerKm[gate];
-    if (Number.isNaN(kdp) || !isLiquid(echo.marks[gate])) continue;
-    const rhohv = reader.rhohv(gate);
-    let weight =
-      ramp(value, COMPARED_DBZ.from, COMPARED_DBZ.full) *
-      (1 - ramp(value, COMPARED_DBZ.fading, COMPARED_DBZ.to)) *
-      (Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.full));
-    if (mayBeHail(value, rhohv)) weight *= 1 - hailShare(value, reader.zdrDb(gate), rhohv);
-    if (weight === 0) continue;
-    const areaKm2 = km2PerMetre * (firstGateCentreM + (gate % gateCount) * gateLengthM);
-    sumOfZ += weight * areaKm2 * rateOfZ(value, byType[rainType?.[gate] ?? 0]);
-    sumOfKdp += weight * areaKm2 * rateOfKdp(kdp, laws.kdp);
-  }
+  const { laws, byType, dropNumberRatio } = tables;
+  if (laws === undefined) return 1;
+  const prior =
+    dropNumberRatio === undefined ? PRIOR_KM2_MM_PER_HOUR.relation : PRIOR_KM2_MM_PER_HOUR.learned;
+  let byZ = prior;
+  let byKdp = prior * (dropNumberRatio ?? 1);
+  forEachCompared(echo, reader, (areaKm2, gate, kdp) => {
+    byZ += areaKm2 * rateOfZ(echo.dbz[gate], byType[rainType?.[gate] ?? 0]);
+    byKdp += areaKm2 * rateOfKdp(kdp, laws.kdp);
+  });
   // Noise may outweigh what little rain there is.
-  const logRatio = Math.log(Math.max(sumOfKdp, 1) / sumOfZ);
-  return Math.exp(logRatio * ramp(Math.abs(logRatio), Math.log(RATIO.ignored), Math.log(RATIO.believed)));
+  return factorOfRatio(Math.max(byKdp, 1) / byZ);
+}
+
+function factorOfRatio(ratio: number): number {
+  const log = Math.log(ratio);
+  const size = Math.abs(log);
+  const belief =
+    ramp(size, Math.log(RATIO.ignored), Math.log(RATIO.believed)) *
+    (1 - ramp(size, Math.log(RATIO.doubted), Math.log(RATIO.refused)));
+  return Math.exp(belief * log);
+}
+
+/** Learns over a run what {@link dropNumberFactor} starts from, so that a sweep with little heavy rain follows. */
+export class DropNumberLearner {
+  readonly #areaKm2 = new Float64Array(CLASSES);
+  #rainByKdp = 0;
+
+  /** Adds a corrected sweep; one without KDP, or of a band without a law, adds nothing. */
+  add(echo: PolarEcho, zdrOffsetDb = 0): void {
+    const { wavelengthM } = echo.header;
+    const laws = wavelengthM === undefined ? undefined : bandLaws(wavelengthM);
+    if (laws === undefined) return;
+    forEachCompared(echo, new MomentReader(echo, zdrOffsetDb), (areaKm2, gate, kdp) => {
+      this.#areaKm2[Math.floor((echo.dbz[gate] - COMPARED_DBZ.from) / CLASS_DB)] += areaKm2;
+      this.#rainByKdp += areaKm2 * rateOfKdp(kdp, laws.kdp);
+    });
+  }
+
+  finish(): LearnedDropNumber {
+    return { rainByKdp: this.#rainByKdp, areaKm2: this.#areaKm2.slice() };
+  }
+}
+
+/** Rain by KDP over rain by Z under a relation; near 1 where little was learned. */
+export function learnedDropNumberRatio(
+  { rainByKdp, areaKm2 }: LearnedDropNumber,
+  relation: ReadyRelation,
+): number {
+  const prior = PRIOR_KM2_MM_PER_HOUR.relation;
+  const rainByZ = areaKm2.reduce(
+    (sum, area, k) => sum + area * rateOfZ(COMPARED_DBZ.from + (k + 0.5) * CLASS_DB, relation),
+    0,
+  );
+  return (prior + Math.max(0, rainByKdp)) / (prior + rainByZ);
 }

@@ -22,7 +22,7 @@ import {
   rateOfKdpZdr,
   rateOfZZdr,
 } from "./estimators.ts";
-import { rateOfZ, rateTables } from "./rate-tables.ts";
+import { rateOfZ, readyRelation } from "./ready-relation.ts";
 
 const GHZ = { S: 2.8, C: 5.6, X: 9.4 } as const;
 
@@ -53,10 +53,7 @@ function kdpOfPhases(phases: readonly number[], spacingKm: number): number {
 }
 
 /** The U.S. default, 300 and 1.4, whose inverse is printed as 0.0170 Z^0.7143. */
-const INVERSE_OF_300_1_4 = rateTables(
-  { relation: zrRelation(300, 1.4, "test"), cap: { dbz: 53 }, minRateMmPerHour: 0 },
-  undefined,
-).byType[0];
+const INVERSE_OF_300_1_4 = readyRelation(zrRelation(300, 1.4, "test"), { dbz: 53 });
 
 runReferenceSuite({
   topics: ["d-dualpol-rain"],

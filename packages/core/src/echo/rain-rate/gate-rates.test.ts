@@ -3,6 +3,7 @@ import { resolveCap } from "../../cap.ts";
 import { gateRate } from "../../rate-table.ts";
 import { findRelation, rainRateMmPerHour } from "../../relations.ts";
 import { markBit } from "../polar-echo.ts";
+import { DropNumberLearner } from "./drop-number.ts";
 import { kdpLaw, rateOfKdp } from "./estimators.ts";
 import { gateRates, RATE_METHODS, type RateMethod } from "./gate-rates.ts";
 import { rainLimitDbz } from "./hail.ts";
@@ -253,6 +254,10 @@ describe("number of drops", () => {
     expect(Math.abs(factorFor(times) / times - 1)).toBeLessThan(0.02);
   });
 
+  test.each([0, 5])("a ratio of %d is no rain's: KDP is broken and has no say", (times) => {
+    expect(factorFor(times)).toBe(1);
+  });
+
   test("echo of low correlation and echo too weak for KDP have no say", () => {
     expect(factorFor(3, 0.95)).toBe(1);
     expect(factorFor(3, 0.99, 30)).toBe(1);
@@ -270,6 +275,32 @@ describe("number of drops", () => {
     );
     const { dropNumberFactor } = gateRates(echo, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M));
     expect(dropNumberFactor).toBeCloseTo(1, 6);
+  });
+
+  test("what the run has learned speaks for a sweep with little heavy rain, and with no KDP", () => {
+    const many = ((11.53 * 2.2) / 40.5) ** (1 / 0.85);
+    const learner = new DropNumberLearner();
+    learner.add(testEcho(60, 60, () => ({ dbz: 40, rhohv: 0.99, kdpDegPerKm: many }), S_BAND_M));
+    const tables = rateTables(POLARIMETRIC, S_BAND_M, 0, learner.finish());
+    expect(tables.dropNumberRatio).toBeGreaterThan(2.1);
+    expect(tables.dropNumberRatio).toBeLessThan(2.3);
+    for (const gate of [{ dbz: 25, rhohv: 0.99, kdpDegPerKm: 0 }, { dbz: 25 }]) {
+      const rates = gateRates(
+        testEcho(9, 9, () => gate, S_BAND_M),
+        undefined,
+        POLARIMETRIC,
+        tables,
+      );
+      expect(rates.dropNumberFactor).toBeCloseTo(tables.dropNumberRatio ?? Number.NaN, 6);
+    }
+    // Heavy rain of the usual drops outweighs it: 3600 gates of 1 km, 60 km around, against 100 km2.
+    const usual = testEcho(
+      60,
+      60,
+      () => ({ dbz: 40, rhohv: 0.99, kdpDegPerKm: (11.53 / 40.5) ** (1 / 0.85) }),
+      S_BAND_M,
+    );
+    expect(gateRates(usual, undefined, POLARIMETRIC, tables).dropNumberFactor).toBeCloseTo(1, 6);
   });
 
   test("a cap that was set as a rate holds the raised rate too", () => {
@@ -303,7 +334,7 @@ describe("no step anywhere", () => {
     rhohv: [0.65, 1],
     kdpDegPerKm: [-0.5, 4],
   };
-  const STEPS = 500;
+  const STEPS = 200;
 
   /** Echo that varies from gate to gate, some of it hail, with a gate of one's own in its middle. */
   function fieldAround(middle: TestGate) {
@@ -348,8 +379,8 @@ describe("no step anywhere", () => {
       }
       before = rateMmPerHour;
     }
-    // The steepest way, from 0 to 150 mm/h over a seventh of a range, takes 2 mm/h a step; a switch takes more.
-    expect(most).toBeLessThan(3);
+    // The steepest way, from 0 to 150 mm/h over a seventh of a range, takes 5 mm/h a step.
+    expect(most).toBeLessThan(6);
     expect(most).toBeGreaterThan(0);
   });
 });

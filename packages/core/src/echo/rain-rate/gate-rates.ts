@@ -7,7 +7,8 @@ import { hailShare, mayBeHail } from "./hail.ts";
 import { isLiquid, MomentReader } from "./moment-reader.ts";
 import { neighboursOfHail } from "./neighbours-of-hail.ts";
 import { ramp } from "./ramp.ts";
-import { type GateRateSettings, type RateTables, type ReadyRelation, rateOfZ } from "./rate-tables.ts";
+import type { GateRateSettings } from "./rate-tables.ts";
+import { type RateTables, type ReadyRelation, rateOfZ } from "./ready-relation.ts";
 
 /** What the larger part of a gate's rate was made from; the numbers in `GateRatesOfSweep.method`. */
 export const RATE_METHODS = [

@@ -1,8 +1,9 @@
-import { type CapSetting, resolveCap } from "../../cap.ts";
-import { SNOW_EQUIVALENT_TO_MELTED_DB } from "../../relations.ts";
+import type { CapSetting } from "../../cap.ts";
 import type { ZrRelation } from "../../zr-relation.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
-import { type BandLaws, bandLaws } from "./estimators.ts";
+import { type LearnedDropNumber, learnedDropNumberRatio } from "./drop-number.ts";
+import { bandLaws } from "./estimators.ts";
+import { type RateTables, type ReadyRelation, readyRelation } from "./ready-relation.ts";
 
 /** What polarimetric moments may do to the rate. A share of 0 leaves an estimator out. */
 export interface PolarimetricRateSettings {
@@ -46,38 +47,19 @@ export const POLARIMETRIC_RATE_DEFAULTS: PolarimetricRateSettings = {
   attenuationShare: 0,
 };
 
-/** One relation made ready: R = exp(perDb dBZ + constant), which is (Z / a)^(1 / b). */
-export interface ReadyRelation {
-  readonly relation: ZrRelation;
-  readonly perDb: number;
-  readonly constant: number;
-  readonly capDbz: number;
-  readonly capMmPerHour: number;
-  /** True where the cap was set as a rate, so that nothing made from Z may pass it. */
-  readonly capIsRate: boolean;
-}
-
-/** Settings made ready for the gates of one radar; small, and the same for every sweep. */
-export interface RateTables {
-  /** Indexed by the numbers of `RAIN_TYPE`. */
-  readonly byType: readonly [ReadyRelation, ReadyRelation, ReadyRelation];
-  /** Undefined where no coefficients stand for the wavelength, or it is not known. */
-  readonly laws: BandLaws | undefined;
-  /** Taken off every ZDR. */
-  readonly zdrOffsetDb: number;
-}
-
 /**
  * Makes settings ready.
  *
  * @param wavelengthM - of the radar; undefined leaves every polarimetric rate out
  * @param zdrOffsetDb - how much too high the radar's ZDR is, as learned
+ * @param dropNumber - as learned over the run
  * @throws RangeError as `resolveCap`, and where the cut-off, a share or the offset is none
  */
 export function rateTables(
   settings: GateRateSettings,
   wavelengthM: number | undefined,
   zdrOffsetDb = 0,
+  dropNumber?: LearnedDropNumber,
 ): RateTables {
   const {
     relation,
@@ -96,31 +78,14 @@ export function rateTables(
   for (const share of [kdpShare, kdpZdrPart, zZdrShare, attenuationShare]) {
     if (!(share >= 0 && share <= 1)) throw new RangeError(`a share lies between 0 and 1, got ${share}`);
   }
-  const byType: [ReadyRelation, ReadyRelation, ReadyRelation] = [
-    readyRelation(relation, cap),
-    readyRelation(relation, cap),
-    readyRelation(relation, cap),
-  ];
+  const ready = readyRelation(relation, cap);
+  const byType: [ReadyRelation, ReadyRelation, ReadyRelation] = [ready, ready, ready];
   byType[RAIN_TYPE.convective] = readyRelation(convective, cap);
   byType[RAIN_TYPE.stratiform] = readyRelation(stratiform, cap);
-  return { byType, laws: wavelengthM === undefined ? undefined : bandLaws(wavelengthM), zdrOffsetDb };
-}
-
-function readyRelation(relation: ZrRelation, cap: CapSetting): ReadyRelation {
-  const resolved = resolveCap(cap, relation);
-  const perDb = Math.LN10 / (10 * relation.b);
-  const meltedDb = relation.phase === "snow" ? SNOW_EQUIVALENT_TO_MELTED_DB : 0;
   return {
-    relation,
-    perDb,
-    constant: perDb * meltedDb - Math.log(relation.a) / relation.b,
-    capDbz: resolved.dbz,
-    capMmPerHour: resolved.mmPerHour,
-    capIsRate: resolved.given === "mmPerHour",
+    byType,
+    laws: wavelengthM === undefined ? undefined : bandLaws(wavelengthM),
+    zdrOffsetDb,
+    dropNumberRatio: dropNumber === undefined ? undefined : learnedDropNumberRatio(dropNumber, ready),
   };
-}
-
-/** Rain rate of a reflectivity before the cap: `rainRateMmPerHour` with one exponential in place of two powers. */
-export function rateOfZ(reflectivityDbz: number, { perDb, constant }: ReadyRelation): number {
-  return Math.exp(perDb * reflectivityDbz + constant);
 }
