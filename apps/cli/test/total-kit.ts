@@ -34,6 +34,16 @@ export function editPlan(from: string, to: string, change: (plan: Document) => v
   return to;
 }
 
+/** Section `echo` of a plan under which stored numbers go straight to rain, for figures that are worked out by hand. */
+export const NO_ECHO_WORK = {
+  screening: { use: false },
+  blockage: { use: false },
+  gas: { use: "never" },
+  attenuation: { method: "none" },
+  profile: { use: false },
+  rate: { rainType: false, polarimetric: false, hail: false },
+} as const;
+
 /** Runs `total` from the folder that the plan lies in, whose names then stand in messages as people see them. */
 export function total(plan: string, out: string, flags: readonly string[] = [], env = {}): CliResult {
   return cli(["total", path.basename(plan), "--out", out, ...flags], path.dirname(plan), env);

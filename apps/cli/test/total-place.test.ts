@@ -11,6 +11,7 @@ import {
   csvRows,
   FOREIGN,
   manifestOf,
+  NO_ECHO_WORK,
   planFor,
   type ReadArray,
   readNetCdf,
@@ -135,6 +136,8 @@ beforeAll(async () => {
       ny: 180,
     };
     document.set("grid", document.createNode(grid));
+    // An L that never moves is what static echo looks like.
+    document.set("echo", document.createNode(NO_ECHO_WORK));
   });
   const { status, stderr } = total(plan, "run");
   if (status !== 0) throw new Error(`total ended with ${status}: ${stderr}`);

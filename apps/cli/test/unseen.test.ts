@@ -44,6 +44,7 @@ function radar(sensitivity: JobRadar["sensitivity"], offsetDb = 0): JobRadar {
     lookup: { effectiveRadiusFactor: 4 / 3, maxBeamHeightM: 3000, taperM: 0, blockedSectors: [] },
     rounds: [],
     echo: undefined,
+    wavelengthM: undefined,
   };
 }
 

@@ -108,6 +108,7 @@ export class EchoWork {
     const key = [a, b, phase, wavelengthM, isInUse].join();
     const { cap, minRateMmPerHour } = this.#radar;
     const { convective, stratiform, polarimetric } = this.#echo.rate;
+    const { zdrOffsetDb, dropNumber } = this.#echo.learned;
     const settings: GateRateSettings = {
       relation,
       // A headline under another relation is one under it alone.
@@ -118,7 +119,7 @@ export class EchoWork {
     };
     let tables = this.#tables.get(key);
     if (tables === undefined) {
-      tables = rateTables(settings, wavelengthM, this.#echo.learned.zdrOffsetDb);
+      tables = rateTables(settings, wavelengthM, zdrOffsetDb, dropNumber);
       this.#tables.set(key, tables);
     }
     return gateRates(echo, type, settings, tables);

@@ -80,6 +80,8 @@ export interface JobEcho {
 export interface JobRadar extends JobConversion {
   readonly site: RadarSite;
   readonly beamWidthDeg: number;
+  /** From the plan, else from the files; undefined where neither tells. */
+  readonly wavelengthM: number | undefined;
   /** Undefined where nothing tells. */
   readonly sensitivity: JobSensitivity | undefined;
   readonly time: TimeRules;

@@ -1,23 +1,36 @@
 import path from "node:path";
 import {
+  attenuationLine,
   BlockageLearner,
+  DropNumberLearner,
   EchoChain,
   type EchoSettings,
   type Grid,
   InputError,
   type LearnedEcho,
+  LossCoefficientLearner,
+  type LossEstimate,
   layerBelowFreezing,
   MeltingLayerLearner,
   NOTHING_LEARNED,
+  type OverlapPairs,
   type PolarEcho,
   ProfileLearner,
+  phaseCoefficients,
   StaticEchoLearner,
   SystemPhaseLearner,
+  settleLossCoefficients,
   terrainCaution,
+  turned,
+  ZdrOffsetLearner,
 } from "@rainreckon/core";
 import { formatsReady, readTerrain } from "@rainreckon/formats";
 import {
   type HeightAt,
+  OVERLAP_SETTINGS,
+  OverlapSamples,
+  type OverlapSweep,
+  type PolarLookup,
   rainTypeOfGates,
   TERRAIN_SAMPLING,
   terrainAlongRays,
@@ -25,14 +38,19 @@ import {
 } from "@rainreckon/mosaic";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
-import type { JobRadar, JobRound } from "./job.ts";
+import { distanceFrom } from "./distances.ts";
+import type { JobRadar } from "./job.ts";
+import { forEachEcho, type LearningInstant, learningInstants } from "./learning-rounds.ts";
 import { lookupShelf } from "./lookup-shelf.ts";
-import { RoundEchoes } from "./round-echoes.ts";
 
 /** So many rounds of each radar are learned from, spread evenly over the run: it costs the same for a day and a year. */
 export const ROUNDS_LEARNED = 48;
+/** Of those, every so many-th is read a third time, once the loss in rain is settled. */
+const THIRD_READING_EVERY = 2;
 /** Terrain farther away than this stands in no beam that speaks for the ground. */
 const TERRAIN_REACH_M = 250_000;
+/** Sweeps of a round, from the lowest, that are compared with those of another radar. */
+const SWEEPS_COMPARED = 3;
 
 /** A radar and how its echo is to be worked on. */
 export interface Learner {
@@ -42,12 +60,33 @@ export interface Learner {
   readonly rainType: boolean;
 }
 
+/** One radar while it teaches. */
+interface Pupil extends Learner {
+  known: LearnedEcho;
+  readonly staticEcho: StaticEchoLearner;
+  readonly systemPhase: SystemPhaseLearner;
+  readonly loss: LossCoefficientLearner;
+  readonly blockage: BlockageLearner;
+  readonly layer: MeltingLayerLearner;
+  readonly profile: ProfileLearner;
+  readonly zdrOffset: ZdrOffsetLearner;
+  readonly dropNumber: DropNumberLearner;
+}
+
+/** What a run taught: of each radar, and of each two that see the same rain. */
+export interface Lesson {
+  /** In the order of the learners. */
+  readonly learned: readonly LearnedEcho[];
+  readonly overlaps: readonly OverlapPairs[];
+}
+
 /**
- * What a run must know of its radars before its units of work: echo that never moves, sectors that are blocked, the
- * phase of the system, the melting layer and the profile.
+ * What a run must know of its radars before its units of work: echo that never moves, the phase of the system, sectors
+ * that are blocked, the loss in rain, the melting layer and the vertical profile, the offset of ZDR, the number of drops.
  *
- * Some rounds of each radar are read twice: once as they are, for what is static; once screened and corrected by
- * that. It depends on which scans there are and on the plan, not on files, order or the number of workers.
+ * Some rounds of each radar are read up to three times: as they are, for what is static; screened by that, for the
+ * loss in rain; and some of them corrected, for the rest. It depends on which scans there are and on the plan, not on
+ * files, order or the number of workers.
  *
  * @param log - is told what could not be learned
  */
@@ -56,46 +95,214 @@ export async function learnEchoes(
   grid: Grid,
   loaded: LoadedPlan,
   log: LeftOutLog,
-): Promise<LearnedEcho[]> {
+): Promise<Lesson> {
   await formatsReady();
   const heightAt = await terrainOf(loaded, log);
-  const { freezingHeightAslM } = loaded.plan.echo.profile;
-  const { dbPerDeg } = loaded.plan.echo.attenuation;
-  const taught = learners.map((learner): Taught => {
-    const { radar, settings } = learner;
-    const rounds = spreadEvenly(radar.rounds, ROUNDS_LEARNED);
-    const still = learnStill(radar, settings, rounds);
-    const terrain =
-      heightAt === undefined || settings.blockage === undefined
-        ? undefined
-        : terrainAlongRays(heightAt, radar.site, { ...TERRAIN_SAMPLING, reachM: TERRAIN_REACH_M });
-    const caution = terrain === undefined ? undefined : terrainCaution(terrain);
-    if (caution !== undefined)
-      log.add("doubted", {
-        what: caution,
-        where: `radar ${radar.site.id}`,
-        fix: "give a larger terrain model",
+  const instants = learningInstants(
+    learners.map(({ radar }) => radar),
+    ROUNDS_LEARNED,
+  );
+  const pupils = learners.map((learner) => pupil(learner, instants, heightAt, log));
+  learnStill(pupils, instants);
+  const overlaps = learnLoss(pupils, instants, grid);
+  settleLoss(pupils, overlaps, loaded.plan.echo.attenuation.dbPerDeg);
+  learnCorrected(
+    pupils,
+    instants.filter((_, k) => k % THIRD_READING_EVERY === 0),
+    grid,
+  );
+  settleProfile(pupils, loaded.plan.echo.profile.freezingHeightAslM);
+  return { learned: pupils.map(({ known }) => known), overlaps };
+}
+
+function pupil(
+  learner: Learner,
+  instants: readonly LearningInstant[],
+  heightAt: HeightAt | undefined,
+  log: LeftOutLog,
+): Pupil {
+  const { radar, settings } = learner;
+  const terrain =
+    heightAt === undefined || settings.blockage === undefined
+      ? undefined
+      : terrainAlongRays(heightAt, radar.site, { ...TERRAIN_SAMPLING, reachM: TERRAIN_REACH_M });
+  const caution = terrain === undefined ? undefined : terrainCaution(terrain);
+  if (caution !== undefined) {
+    log.add("doubted", {
+      what: caution,
+      where: `radar ${radar.site.id}`,
+      fix: "give a larger terrain model",
+    });
+  }
+  const roundCount = instants.filter(({ rounds }) => rounds.has(radar)).length;
+  return {
+    ...learner,
+    known: { ...NOTHING_LEARNED, roundCount, terrain },
+    staticEcho: new StaticEchoLearner(),
+    systemPhase: new SystemPhaseLearner(),
+    loss: new LossCoefficientLearner(),
+    blockage: new BlockageLearner(),
+    layer: new MeltingLayerLearner(settings.profile),
+    profile: new ProfileLearner(settings.profile),
+    zdrOffset: new ZdrOffsetLearner(),
+    dropNumber: new DropNumberLearner(),
+  };
+}
+
+/** First reading: echo as it was measured. */
+function learnStill(pupils: readonly Pupil[], instants: readonly LearningInstant[]): void {
+  for (const one of pupils) {
+    const { radar, settings, staticEcho, systemPhase } = one;
+    for (const { rounds } of instants) {
+      const round = rounds.get(radar);
+      if (round === undefined) continue;
+      forEachEcho(radar, round, (echo) => {
+        if (settings.screening !== undefined) staticEcho.add(echo);
+        systemPhase.add(echo);
       });
-    const attenuation =
-      dbPerDeg === undefined ? still.attenuation : { ...still.attenuation, alphaDbPerDeg: dbPerDeg };
-    return learnMoving(learner, grid, rounds, { ...still, terrain, attenuation });
-  });
-  const layers = taught.map(({ layer }) => layer.finish()).filter((layer) => layer !== undefined);
-  const surest = layers.toSorted((a, b) => a.uncertaintyM - b.uncertaintyM)[0];
-  return taught.map(({ learned, layer, profile }, k) => {
-    if (learners[k]?.settings.profile === undefined) return learned;
-    // A radar that cannot tell where snow melts takes it from the one that tells best: it is the same air.
-    const melting =
-      freezingHeightAslM === undefined ? (layer.finish() ?? surest) : layerBelowFreezing(freezingHeightAslM);
-    return { ...learned, profile: profile.finish(melting) };
+    }
+    const phase = systemPhase.finish();
+    one.known = {
+      ...one.known,
+      staticEcho: settings.screening === undefined ? undefined : staticEcho.finish(),
+      attenuation: phase === undefined ? {} : { systemPhaseDeg: phase.systemPhaseDeg },
+    };
+  }
+}
+
+/** Second reading: echo without what stands still, before anything is given back for rain. */
+function learnLoss(
+  pupils: readonly Pupil[],
+  instants: readonly LearningInstant[],
+  grid: Grid,
+): OverlapPairs[] {
+  const chains = new Map(
+    pupils.map(({ radar, settings, known }) => [
+      radar,
+      new EchoChain({ ...settings, attenuation: undefined, profile: undefined }, known),
+    ]),
+  );
+  const overlaps = pupils.flatMap((one, k) =>
+    pupils.slice(k + 1).map((other) => ({
+      one: one.radar,
+      other: other.radar,
+      samples: new OverlapSamples({
+        ...OVERLAP_SETTINGS,
+        maxTimeStepMs: Math.min(one.radar.time.medianRoundMs, other.radar.time.medianRoundMs) / 2,
+      }),
+    })),
+  );
+  for (const { rounds } of instants) {
+    const low = new Map<JobRadar, OverlapSweep[]>();
+    for (const { radar, settings, loss, blockage } of pupils) {
+      const round = rounds.get(radar);
+      if (round === undefined) continue;
+      const kept: OverlapSweep[] = [];
+      low.set(radar, kept);
+      forEachEcho(radar, round, (echo, above) => {
+        chains.get(radar)?.correct(echo, above);
+        loss.add(echo);
+        if (settings.blockage !== undefined) blockage.add(echo);
+        if (kept.length >= SWEEPS_COMPARED || overlaps.length === 0) return;
+        kept.push({ echo, lookup: lookupOf(grid, radar, echo), distanceM: distanceFrom(grid, radar) });
+      });
+    }
+    for (const { one, other, samples } of overlaps) {
+      for (const mine of low.get(one) ?? []) {
+        for (const theirs of low.get(other) ?? []) samples.add(mine, theirs);
+      }
+    }
+  }
+  for (const one of pupils) {
+    if (one.settings.blockage !== undefined) one.known = { ...one.known, blockage: one.blockage.finish() };
+  }
+  return overlaps.map(({ samples }) => samples.finish()).filter((pairs) => pairs !== undefined);
+}
+
+/** The loss per degree of phase, from each radar alone and from those that see the same rain, settled for all. */
+function settleLoss(
+  pupils: readonly Pupil[],
+  overlaps: readonly OverlapPairs[],
+  dbPerDeg: number | undefined,
+): void {
+  const wavelengthOf = ({ radar }: Pupil) => radar.wavelengthM;
+  const settled = settleLossCoefficients(
+    pupils.map((one) => ({
+      wavelengthM: wavelengthOf(one) ?? Number.NaN,
+      estimates: [one.loss.finish(), ...fromNeighbours(one, pupils, overlaps)].filter(
+        (estimate) => estimate !== undefined,
+      ),
+    })),
+  );
+  for (const [k, one] of pupils.entries()) {
+    const alphaDbPerDeg = dbPerDeg ?? settled[k]?.alphaDbPerDeg;
+    if (alphaDbPerDeg === undefined) continue;
+    one.known = { ...one.known, attenuation: { ...one.known.attenuation, alphaDbPerDeg } };
+  }
+}
+
+function fromNeighbours(
+  { radar }: Pupil,
+  pupils: readonly Pupil[],
+  overlaps: readonly OverlapPairs[],
+): LossEstimate[] {
+  return overlaps.flatMap((pairs) => {
+    const { id } = radar.site;
+    if (pairs.oneSiteId !== id && pairs.otherSiteId !== id) return [];
+    const mine = pairs.oneSiteId === id ? pairs : turned(pairs);
+    const neighbour = pupils.find((one) => one.radar.site.id === mine.otherSiteId)?.radar.wavelengthM;
+    const neighbourLoss = neighbour === undefined ? undefined : phaseCoefficients(neighbour)?.loss;
+    if (neighbourLoss === undefined) return [];
+    const fit = attenuationLine(mine, neighbourLoss.dbPerDeg);
+    return fit === undefined
+      ? []
+      : [{ alphaDbPerDeg: fit.line.slope, standardErrorDbPerDeg: fit.line.slopeError }];
   });
 }
 
-/** What one radar taught, its profile still to be fitted about a melting layer. */
-interface Taught {
-  readonly learned: LearnedEcho;
-  readonly layer: MeltingLayerLearner;
-  readonly profile: ProfileLearner;
+/** Third reading: echo corrected by all that is known by now. */
+function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningInstant[], grid: Grid): void {
+  for (const one of pupils) {
+    const { radar, settings, rainType, layer, profile, zdrOffset, dropNumber } = one;
+    const chain = new EchoChain({ ...settings, profile: undefined }, one.known);
+    for (const { rounds } of instants) {
+      const round = rounds.get(radar);
+      if (round === undefined) continue;
+      forEachEcho(radar, round, (echo, above) => {
+        chain.correct(echo, above);
+        zdrOffset.add(echo);
+        dropNumber.add(echo);
+        if (settings.profile === undefined) return;
+        const type = rainType ? rainTypeOfGates(lookupOf(grid, radar, echo), grid, echo.dbz) : undefined;
+        layer.add(echo, type);
+        profile.add(echo, type);
+      });
+    }
+    one.known = {
+      ...one.known,
+      zdrOffsetDb: zdrOffset.finish().offsetDb,
+      dropNumber: dropNumber.finish(),
+    };
+  }
+}
+
+/** The vertical profile of each radar about the melting layer. */
+function settleProfile(pupils: readonly Pupil[], freezingHeightAslM: number | undefined): void {
+  const layers = pupils.map(({ layer }) => layer.finish()).filter((layer) => layer !== undefined);
+  const surest = layers.toSorted((a, b) => a.uncertaintyM - b.uncertaintyM)[0];
+  for (const one of pupils) {
+    if (one.settings.profile === undefined) continue;
+    // A radar that cannot tell where snow melts takes it from the one that tells best: it is the same air.
+    const melting =
+      freezingHeightAslM === undefined
+        ? (one.layer.finish() ?? surest)
+        : layerBelowFreezing(freezingHeightAslM);
+    one.known = { ...one.known, profile: one.profile.finish(melting) };
+  }
+}
+
+function lookupOf(grid: Grid, radar: JobRadar, { header, azimuthDeg }: PolarEcho): PolarLookup {
+  return lookupShelf(grid, radar).forSweep({ ...header, azimuthDeg });
 }
 
 /** Heights of the plan's terrain model; one that cannot be read is told of and left out. */
@@ -111,81 +318,5 @@ async function terrainOf(
     const where = error.where.replaceAll(`${folder}${path.sep}`, "");
     log.add("terrain left out", { what: error.what, where, fix: error.fix });
     return undefined;
-  }
-}
-
-/** At most so many of a list, the first and the last among them, at even steps. */
-export function spreadEvenly<Item>(items: readonly Item[], most: number): Item[] {
-  if (items.length <= most) return [...items];
-  return Array.from(
-    { length: most },
-    (_, k) => items[Math.round((k * (items.length - 1)) / (most - 1))] as Item,
-  );
-}
-
-/** First reading: echo as it was measured. */
-function learnStill(radar: JobRadar, { screening }: EchoSettings, rounds: readonly JobRound[]): LearnedEcho {
-  const staticEcho = new StaticEchoLearner();
-  const systemPhase = new SystemPhaseLearner();
-  forEachEcho(radar, rounds, (echo) => {
-    if (screening !== undefined) staticEcho.add(echo);
-    systemPhase.add(echo);
-  });
-  const phase = systemPhase.finish();
-  return {
-    ...NOTHING_LEARNED,
-    roundCount: rounds.length,
-    staticEcho: screening === undefined ? undefined : staticEcho.finish(),
-    attenuation: phase === undefined ? {} : { systemPhaseDeg: phase.systemPhaseDeg },
-  };
-}
-
-/** Second reading: echo without what stands still, corrected as far as is known by then. */
-function learnMoving(
-  { radar, settings, rainType }: Learner,
-  grid: Grid,
-  rounds: readonly JobRound[],
-  known: LearnedEcho,
-): Taught {
-  const blockage = new BlockageLearner();
-  const layer = new MeltingLayerLearner(settings.profile);
-  const profile = new ProfileLearner(settings.profile);
-  const chain = new EchoChain({ ...settings, profile: undefined }, known);
-  forEachEcho(radar, rounds, (echo, above) => {
-    chain.correct(echo, above);
-    if (settings.blockage !== undefined) blockage.add(echo);
-    if (settings.profile === undefined) return;
-    const lookup = lookupShelf(grid, radar).forSweep({ ...echo.header, azimuthDeg: echo.azimuthDeg });
-    const type = rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
-    layer.add(echo, type);
-    profile.add(echo, type);
-  });
-  return {
-    learned: { ...known, blockage: settings.blockage === undefined ? undefined : blockage.finish() },
-    layer,
-    profile,
-  };
-}
-
-/** Every sweep of some rounds that decodes, lowest first in its round; a unit of work tells of those that do not. */
-function forEachEcho(
-  radar: JobRadar,
-  rounds: readonly JobRound[],
-  take: (echo: PolarEcho, above: PolarEcho | undefined) => void,
-): void {
-  for (const round of rounds) {
-    const echoes = new RoundEchoes(radar, round, () => {});
-    try {
-      for (const sweep of round.sweeps) {
-        try {
-          const echo = echoes.echo(sweep);
-          if (echo !== undefined) take(echo, echoes.above(sweep));
-        } catch (error) {
-          echoes.tell(sweep, error);
-        }
-      }
-    } finally {
-      echoes.close();
-    }
   }
 }

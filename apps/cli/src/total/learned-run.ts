@@ -24,7 +24,7 @@ export function learnsBeforehand({ shape }: PreparedRun): boolean {
 export async function learnBeforehand(run: PreparedRun, log: LeftOutLog): Promise<PreparedRun> {
   const worked = run.shape.radars.filter(isWorked);
   if (worked.length === 0) return run;
-  const learned = await learnEchoes(
+  const { learned } = await learnEchoes(
     worked.map((radar) => ({ radar, ...radar.echo })),
     run.grid,
     run.loaded,

@@ -281,6 +281,10 @@ export function jobRadar(
     ...conversionOf({ ...radar, minRateMmPerHour: plan.rain.minRateMmPerHour }, `radar ${radar.id}`, log),
     site,
     beamWidthDeg,
+    wavelengthM:
+      radar.wavelengthCm === undefined
+        ? rounds[0].sweeps.find(({ wavelengthM }) => wavelengthM !== undefined)?.wavelengthM
+        : radar.wavelengthCm / 100,
     sensitivity,
     time: {
       medianRoundMs: radar.medianRoundMinutes * 60_000,

@@ -47,8 +47,9 @@ export class RoundEchoes {
     const { moment } = this.#radar;
     const wanted = ECHO_MOMENTS.filter((name) => name !== moment && header.quantities.includes(name));
     const where = `${sweep.name}, ${header.origin.dataset}`;
+    const { wavelengthM } = this.#radar;
     const decoded = this.#decode(file, sweep, wanted);
-    const echo = polarEcho(decoded, moment, where);
+    const echo = polarEcho(wavelengthM === undefined ? decoded : { ...decoded, wavelengthM }, moment, where);
     if (echo === undefined) throw new InputError(`no ${moment}`, where, "name another moment in the plan");
     this.#raw.set(sweep, echo);
     return echo;

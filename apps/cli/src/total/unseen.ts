@@ -7,17 +7,8 @@ import {
   measuredDetectableDbz,
   type ZrRelation,
 } from "@rainreckon/core";
-import { projection, siteCells } from "@rainreckon/mosaic";
+import { distanceFrom } from "./distances.ts";
 import type { JobRadar } from "./job.ts";
-
-const distances = new WeakMap<JobRadar, Float32Array>();
-
-/** Distance of each cell from a radar, worked out once a worker. */
-function distanceM(grid: Grid, radar: JobRadar): Float32Array {
-  const known = distances.get(radar) ?? siteCells(grid, projection(grid.crs), radar.site).distanceM;
-  distances.set(radar, known);
-  return known;
-}
 
 /**
  * Rain that the radars could not have seen: at every cell and step without rain, the depth that an echo just
@@ -70,7 +61,7 @@ export class UnseenDepth {
     let rates = this.#rates.get(key);
     if (rates === undefined) {
       const { sensitivity, offsetDb } = this.#radars[r];
-      rates = distanceM(this.#grid, this.#radars[r]).map((rangeM) =>
+      rates = distanceFrom(this.#grid, this.#radars[r]).map((rangeM) =>
         sensitivity === undefined
           ? Number.NaN
           : lightestVisibleRainMmPerHour(

@@ -19,6 +19,7 @@ import type { TerrainRays } from "./blockage/terrain-model.ts";
 import { addEffect, type PolarEcho } from "./polar-echo.ts";
 import { correctProfile, type ProfileReport, type ProfileSettings } from "./profile/correct-profile.ts";
 import type { LearnedProfile } from "./profile/learned-profile.ts";
+import type { LearnedDropNumber } from "./rain-rate/drop-number.ts";
 import { screenSweep } from "./screening/screen-sweep.ts";
 import type { ScreeningReport, ScreeningSettings } from "./screening/settings.ts";
 import type { LearnedStaticEcho } from "./screening/static-echo.ts";
@@ -49,6 +50,7 @@ export interface LearnedEcho {
   readonly profile: LearnedProfile | undefined;
   /** How much too high the radar's ZDR is; 0 where the scans do not tell. */
   readonly zdrOffsetDb: number;
+  readonly dropNumber: LearnedDropNumber | undefined;
 }
 
 export const NOTHING_LEARNED: LearnedEcho = {
@@ -59,6 +61,7 @@ export const NOTHING_LEARNED: LearnedEcho = {
   attenuation: {},
   profile: undefined,
   zdrOffsetDb: 0,
+  dropNumber: undefined,
 };
 
 /** What each step did to a sweep; undefined where it was not taken. */
