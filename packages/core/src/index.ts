@@ -194,7 +194,9 @@ export {
   type ZZdrLaw,
 } from "./echo/rain-rate/estimators.ts";
 export {
+  type GateRateAccount,
   type GateRatesOfSweep,
+  gateRateAccount,
   gateRates,
   RATE_METHODS,
   type RateCounts,

@@ -5,7 +5,7 @@ import { findRelation, rainRateMmPerHour } from "../../relations.ts";
 import { markBit } from "../polar-echo.ts";
 import { DropNumberLearner } from "./drop-number.ts";
 import { kdpLaw, rateOfKdp } from "./estimators.ts";
-import { gateRates, RATE_METHODS, type RateMethod } from "./gate-rates.ts";
+import { gateRateAccount, gateRates, RATE_METHODS, type RateMethod } from "./gate-rates.ts";
 import { rainLimitDbz } from "./hail.ts";
 import { type GateRateSettings, POLARIMETRIC_RATE_DEFAULTS, rateTables } from "./rate-tables.ts";
 import { type TestGate, testEcho } from "./test-echo.ts";
@@ -61,9 +61,7 @@ describe("without polarimetric moments", () => {
       const expected = Array.from(echo.dbz, (dbz) => gateRate(dbz, plain));
       expect(rates.rateMmPerHour).toEqual(Float32Array.from(expected, ({ rate }) => rate));
       expect(rates.capped).toEqual(Uint8Array.from(expected, ({ capped }) => capped));
-      expect(rates.lacking).toEqual(
-        wave === undefined ? ["wavelength", "KDP", "ZDR", "RHOHV"] : ["KDP", "ZDR", "RHOHV"],
-      );
+      expect(rates.lacking).toEqual([...(wave === undefined ? ["wavelength"] : []), "KDP", "ZDR", "RHOHV"]);
     },
   );
 
@@ -77,6 +75,13 @@ describe("without polarimetric moments", () => {
         wavelengthM === undefined ? "wavelength" : "coefficients for this wavelength",
       ]);
     }
+  });
+
+  test("under a relation for snow no law of rain has a say, and it is said", () => {
+    const settings = { ...POLARIMETRIC, relation: findRelation("sekhon-1970-1780/2.21") };
+    const { rate, rates } = rateOf({ dbz: 50, zdrDb: 0, rhohv: 0.9, kdpDegPerKm: 1 }, settings);
+    expect(rate).toBe(Math.fround(rainRateMmPerHour(50, settings.relation)));
+    expect(rates.lacking).toEqual(["a relation for rain"]);
   });
 
   test("moments that are not to be used change nothing", () => {
@@ -309,6 +314,42 @@ describe("number of drops", () => {
     const rates = gateRates(echo, undefined, settings, rateTables(settings, S_BAND_M));
     expect(rates.dropNumberFactor).toBeGreaterThan(1.5);
     expect(rates.rateMmPerHour[1800]).toBe(20);
+  });
+});
+
+describe("account of a gate", () => {
+  const echoes = {
+    rain: { dbz: 38, zdrDb: 1.2, rhohv: 0.99, kdpDegPerKm: 0.3 },
+    heavy: { dbz: 50, zdrDb: 2.2, rhohv: 0.975, kdpDegPerKm: 1.4 },
+    hail: { dbz: 55, zdrDb: 1.2, rhohv: 0.96, kdpDegPerKm: 0.8 },
+    "hail without KDP": { dbz: 58, zdrDb: 0.2, rhohv: 0.96 },
+    drizzle: { dbz: 4, zdrDb: 0, rhohv: 0.99, kdpDegPerKm: 0 },
+  };
+  const settings = { ...ALL, minRateMmPerHour: 0.1 };
+
+  test.each(Object.entries(echoes))("of %s ends on the stored rate, and its steps lead there", (_, gate) => {
+    const echo = testEcho(90, 30, (ray, at) => (ray === 40 && at === 20 ? gate : echoes.rain), S_BAND_M);
+    const attenuation = new Float32Array(echo.dbz.length).fill(0.008);
+    const tables = rateTables(settings, S_BAND_M, 0.05);
+    const { rateMmPerHour } = gateRates(echo, undefined, settings, tables, attenuation);
+    const at = 40 * 30 + 20;
+    const account = gateRateAccount(echo, undefined, settings, tables, at, attenuation);
+    expect(Math.fround(account.rateMmPerHour)).toBe(rateMmPerHour[at]);
+    const towards = (from: number, to: number, share: number) =>
+      share > 0 ? from + share * (to - from) : from;
+    let rate = Math.min(rainRateMmPerHour(echo.dbz[at], account.relation), account.capMmPerHour);
+    rate *= account.dropNumberFactor;
+    rate = towards(rate, account.zZdrRate, account.zZdrShare);
+    rate = towards(rate, account.attenuationRate, account.attenuationShare);
+    rate = towards(rate, account.kdpRate, account.kdpShare);
+    rate = towards(rate, account.underHail?.rateMmPerHour ?? Number.NaN, account.hailShare);
+    const expected = rate < settings.minRateMmPerHour ? 0 : rate;
+    expect(Math.abs(account.rateMmPerHour - expected)).toBeLessThan(1e-5 * (1 + expected));
+  });
+
+  test("a gate without echo has none", () => {
+    const { echo } = uniform({ dbz: Number.NEGATIVE_INFINITY });
+    expect(() => gateRateAccount(echo, undefined, ALL, rateTables(ALL, S_BAND_M), 40)).toThrow(RangeError);
   });
 });
 

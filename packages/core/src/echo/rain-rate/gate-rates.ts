@@ -1,14 +1,11 @@
-import { CUSTOMARY_CAP_MM_PER_HOUR } from "../../cap.ts";
+import type { ZrRelation } from "../../zr-relation.ts";
 import { markBit, type PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
-import { dropNumberFactor } from "./drop-number.ts";
-import { rateOfAttenuation, rateOfKdp, rateOfKdpZdr, rateOfZZdr } from "./estimators.ts";
-import { hailShare, mayBeHail } from "./hail.ts";
-import { isLiquid, MomentReader } from "./moment-reader.ts";
+import { isLiquid } from "./moment-reader.ts";
 import { neighboursOfHail } from "./neighbours-of-hail.ts";
-import { ramp } from "./ramp.ts";
+import { RateBlender, type RateParts } from "./rate-blender.ts";
 import type { GateRateSettings } from "./rate-tables.ts";
-import { type RateTables, type ReadyRelation, rateOfZ } from "./ready-relation.ts";
+import type { RateTables } from "./ready-relation.ts";
 
 /** What the larger part of a gate's rate was made from; the numbers in `GateRatesOfSweep.method`. */
 export const RATE_METHODS = [
@@ -65,40 +62,8 @@ export interface RateCounts {
   readonly gatesByMethod: number[];
 }
 
-/** One rate on its way: what each estimator says, and the share that it has. Filled anew for each gate. */
-export interface RateParts {
-  zRate: number;
-  zCapped: boolean;
-  kdpRate: number;
-  kdpShare: number;
-  zZdrRate: number;
-  zZdrShare: number;
-  attenuationRate: number;
-  attenuationShare: number;
-  hailShare: number;
-  /** Without hail. */
-  rainRate: number;
-}
-
 const HAIL = markBit("hail");
 const CONVECTIVE = markBit("convective");
-
-/**
- * Where the estimators meet, dBZ, deg/km and dB/km: between the two numbers the share of one rises and of the other
- * falls. R(KDP) comes in where R(Z) nears the hail cap, above the 38 dBZ and 0.3 deg/km of Cifelli et al. (2011).
- * House rule.
- */
-const KDP_DBZ = { from: 45, to: 53 } as const;
-const KDP_DEG_PER_KM = { from: 0.2, to: 0.5 } as const;
-const Z_ZDR_DBZ = { from: 28, to: 35 } as const;
-const ATTENUATION_DBZ = { from: 25, to: 35 } as const;
-/** RHOHV of rain alone. */
-const RAIN_CORRELATION = { from: 0.95, to: 0.98 } as const;
-
-/** A polarimetric rate passes the hail cap, but not this; there is no customary limit above it. */
-function mostPolarimetric({ capMmPerHour }: ReadyRelation): number {
-  return Math.max(capMmPerHour, CUSTOMARY_CAP_MM_PER_HOUR.high);
-}
 
 /**
  * Rain rate of every gate of a corrected sweep. Marks gates as hail and as convective.
@@ -121,18 +86,105 @@ export function gateRates(
 ): GateRatesOfSweep {
   const { dbz, marks } = echo;
   const blender = new RateBlender(echo, rainType, settings, tables, specificAttenuationDbPerKm);
-  const { parts } = blender;
+  const first = ratesBesideHail(echo, blender);
   const out: GateRatesOfSweep = {
-    rateMmPerHour: new Float32Array(dbz.length),
-    capped: new Uint8Array(dbz.length),
-    method: new Uint8Array(dbz.length),
+    rateMmPerHour: first.rateMmPerHour,
+    capped: first.capped,
+    method: first.method,
     dropNumberFactor: blender.dropNumberFactor,
     counts: emptyCounts(),
     lacking: lackingMoments(echo, settings, tables),
   };
-  const { rateMmPerHour, capped, method } = out;
-  const hailGates: number[] = [];
+  putRainUnderHail(echo, blender, first);
+  const { rateMmPerHour, method } = out;
+  for (let gate = 0; gate < dbz.length; gate++) {
+    if (rainType?.[gate] === RAIN_TYPE.convective && dbz[gate] > Number.NEGATIVE_INFINITY) {
+      marks[gate] |= CONVECTIVE;
+    }
+    if (!(rateMmPerHour[gate] < settings.minRateMmPerHour)) continue;
+    rateMmPerHour[gate] = 0;
+    method[gate] = 0;
+  }
+  count(out, marks);
+  return out;
+}
+
+/** How the rate of one gate came about; with `settings.minRateMmPerHour` all that its last step needs. */
+export interface GateRateAccount extends RateParts {
+  readonly relation: ZrRelation;
+  readonly capDbz: number;
+  readonly capMmPerHour: number;
+  readonly dropNumberFactor: number;
+  /** Rain under hail, and where it is from; undefined where the gate has no part of hail. */
+  readonly underHail: { readonly rateMmPerHour: number; readonly from: "kdp" | "neighbours" } | undefined;
+  /** As {@link gateRates} gives it, before it is rounded to float32. */
+  readonly rateMmPerHour: number;
+}
+
+/**
+ * The account of a gate's rate, step by step: `zRate`, held by the cap and times the drop number's factor; from it
+ * `zZdrShare`, then `attenuationShare`, then `kdpShare` of the way to the rate of each, which is `rainRate`; from
+ * that `hailShare` of the way to the rain under hail; nothing below the cut-off.
+ *
+ * @param gate - ray * gateCount + gate, one with echo
+ * @throws RangeError where the gate has no echo
+ */
+export function gateRateAccount(
+  echo: PolarEcho,
+  rainType: Uint8Array | undefined,
+  settings: GateRateSettings,
+  tables: RateTables,
+  gate: number,
+  specificAttenuationDbPerKm?: Float32Array,
+): GateRateAccount {
+  if (!(echo.dbz[gate] > Number.NEGATIVE_INFINITY)) throw new RangeError(`gate ${gate} has no echo`);
+  const blender = new RateBlender(echo, rainType, settings, tables, specificAttenuationDbPerKm);
+  blender.blend(gate);
+  const parts = { ...blender.parts };
+  const { relation, capDbz, capMmPerHour } = tables.byType[rainType?.[gate] ?? RAIN_TYPE.none];
+  let underHail: GateRateAccount["underHail"];
+  let rate = parts.rainRate;
+  if (parts.hailShare > 0) {
+    const byKdp = blender.kdpRateUnderHail(gate);
+    if (!Number.isNaN(byKdp)) underHail = { rateMmPerHour: byKdp, from: "kdp" };
+    else {
+      const { rateMmPerHour, hail } = ratesBesideHail(echo, blender);
+      underHail = { rateMmPerHour: neighboursOfHail(echo, rateMmPerHour, hail, gate), from: "neighbours" };
+    }
+    // As a gate's rate is kept between the two passes.
+    rate =
+      (1 - Math.fround(parts.hailShare)) * Math.fround(rate) +
+      Math.fround(parts.hailShare) * underHail.rateMmPerHour;
+  }
+  return {
+    ...parts,
+    relation,
+    capDbz,
+    capMmPerHour,
+    dropNumberFactor: blender.dropNumberFactor,
+    underHail,
+    rateMmPerHour: Math.fround(rate) < settings.minRateMmPerHour ? 0 : rate,
+  };
+}
+
+/** Rates as if there were no hail, and where it is; shapes as `dbz`, but that `hail` is empty where none can be told. */
+interface RatesBesideHail {
+  readonly rateMmPerHour: Float32Array;
+  readonly capped: Uint8Array;
+  readonly method: Uint8Array;
+  /** Share of hail by gate, and the gates that have any. */
+  readonly hail: Float32Array;
+  readonly hailGates: readonly number[];
+}
+
+/** First pass, gate by gate. */
+function ratesBesideHail({ dbz }: PolarEcho, blender: RateBlender): RatesBesideHail {
+  const { parts } = blender;
+  const rateMmPerHour = new Float32Array(dbz.length);
+  const capped = new Uint8Array(dbz.length);
+  const method = new Uint8Array(dbz.length);
   const hail = new Float32Array(blender.seesHail ? dbz.length : 0);
+  const hailGates: number[] = [];
   for (let gate = 0; gate < dbz.length; gate++) {
     const value = dbz[gate];
     if (!(value > Number.NEGATIVE_INFINITY)) {
@@ -147,25 +199,15 @@ export function gateRates(
       hail[gate] = parts.hailShare;
       hailGates.push(gate);
     }
-    if (rainType?.[gate] === RAIN_TYPE.convective) marks[gate] |= CONVECTIVE;
   }
-  putRainUnderHail(echo, blender, hail, hailGates, out);
-  for (let gate = 0; gate < dbz.length; gate++) {
-    if (!(rateMmPerHour[gate] < settings.minRateMmPerHour)) continue;
-    rateMmPerHour[gate] = 0;
-    method[gate] = 0;
-  }
-  count(out, marks);
-  return out;
+  return { rateMmPerHour, capped, method, hail, hailGates };
 }
 
 /** Second pass: the rain around hail is known only now. */
 function putRainUnderHail(
   echo: PolarEcho,
   blender: RateBlender,
-  hail: Float32Array,
-  hailGates: readonly number[],
-  { rateMmPerHour, capped, method }: GateRatesOfSweep,
+  { rateMmPerHour, capped, method, hail, hailGates }: RatesBesideHail,
 ): void {
   if (hailGates.length === 0) return;
   const withoutHail = rateMmPerHour.slice();
@@ -179,134 +221,6 @@ function putRainUnderHail(
     echo.marks[gate] |= HAIL;
     capped[gate] = 0;
     method[gate] = byKdp ? METHOD.hailKdp : METHOD.hailNeighbours;
-  }
-}
-
-/** Works out one gate after the other into {@link parts}. */
-export class RateBlender {
-  readonly dropNumberFactor: number;
-  /** Whether hail can be told at all. */
-  readonly seesHail: boolean;
-  readonly parts: RateParts = {
-    zRate: 0,
-    zCapped: false,
-    kdpRate: 0,
-    kdpShare: 0,
-    zZdrRate: 0,
-    zZdrShare: 0,
-    attenuationRate: 0,
-    attenuationShare: 0,
-    hailShare: 0,
-    rainRate: 0,
-  };
-  readonly #echo: PolarEcho;
-  readonly #rainType: Uint8Array | undefined;
-  readonly #settings: GateRateSettings;
-  readonly #tables: RateTables;
-  readonly #attenuation: Float32Array | undefined;
-  readonly #reader: MomentReader;
-  /** Echo below it has no polarimetric part. */
-  readonly #plainBelowDbz: number;
-
-  constructor(
-    echo: PolarEcho,
-    rainType: Uint8Array | undefined,
-    settings: GateRateSettings,
-    tables: RateTables,
-    attenuation: Float32Array | undefined,
-  ) {
-    this.#echo = echo;
-    this.#rainType = rainType;
-    this.#settings = settings;
-    this.#tables = tables;
-    this.#attenuation = attenuation;
-    this.#reader = new MomentReader(echo, tables.zdrOffsetDb);
-    const { polarimetric } = settings;
-    this.seesHail = polarimetric?.hail === true && echo.zdrDb !== undefined;
-    this.#plainBelowDbz =
-      polarimetric === undefined || tables.laws === undefined
-        ? Number.POSITIVE_INFINITY
-        : Math.min(27, Z_ZDR_DBZ.from, ATTENUATION_DBZ.from);
-    this.dropNumberFactor =
-      polarimetric?.dropNumber === true ? dropNumberFactor(echo, rainType, tables, this.#reader) : 1;
-  }
-
-  /** @param gate - one with echo */
-  blend(gate: number): void {
-    const { parts } = this;
-    const dbz = this.#echo.dbz[gate];
-    const ready = this.#readyOf(gate);
-    const factor = this.dropNumberFactor;
-    let zRate = (dbz >= ready.capDbz ? ready.capMmPerHour : rateOfZ(dbz, ready)) * factor;
-    if (ready.capIsRate && zRate > ready.capMmPerHour) zRate = ready.capMmPerHour;
-    parts.zRate = zRate;
-    parts.zCapped = dbz >= ready.capDbz;
-    parts.rainRate = zRate;
-    parts.kdpShare = 0;
-    parts.zZdrShare = 0;
-    parts.attenuationShare = 0;
-    parts.hailShare = 0;
-    if (dbz > this.#plainBelowDbz && isLiquid(this.#echo.marks[gate])) this.#join(gate, dbz, ready);
-  }
-
-  /** R(KDP) of a gate with hail; NaN where there is no KDP. */
-  kdpRateUnderHail(gate: number): number {
-    const { laws } = this.#tables;
-    if (laws === undefined) return Number.NaN;
-    const rate = rateOfKdp(this.#reader.kdpDegPerKm(gate), laws.kdp);
-    return Math.min(mostPolarimetric(this.#readyOf(gate)), Math.max(0, rate));
-  }
-
-  #readyOf(gate: number): ReadyRelation {
-    return this.#tables.byType[this.#rainType?.[gate] ?? RAIN_TYPE.none];
-  }
-
-  #join(gate: number, dbz: number, ready: ReadyRelation): void {
-    const { laws } = this.#tables;
-    const { polarimetric } = this.#settings;
-    if (laws === undefined || polarimetric === undefined) return;
-    const { kdpShare, kdpZdrPart, zZdrShare, attenuationShare } = polarimetric;
-    const parts = this.parts;
-    const reader = this.#reader;
-    const most = mostPolarimetric(ready);
-    const rhohv = reader.rhohv(gate);
-    const rainLike = Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.to);
-    const asksForHail = this.seesHail && mayBeHail(dbz, rhohv);
-    const needsZdr = asksForHail || zZdrShare > 0 || kdpZdrPart > 0;
-    const zdr = needsZdr ? reader.zdrDb(gate) : Number.NaN;
-    const zdrTrust = needsZdr ? reader.trust : 0;
-    if (asksForHail) parts.hailShare = zdrTrust * hailShare(dbz, zdr, rhohv);
-    let rate = parts.zRate;
-    if (zZdrShare > 0 && zdrTrust > 0) {
-      parts.zZdrRate = Math.min(most, rateOfZZdr(Math.min(dbz, ready.capDbz), zdr, laws.zZdr));
-      parts.zZdrShare = zZdrShare * zdrTrust * rainLike * ramp(dbz, Z_ZDR_DBZ.from, Z_ZDR_DBZ.to);
-      rate += parts.zZdrShare * (parts.zZdrRate - rate);
-    }
-    const attenuation = attenuationShare > 0 ? this.#attenuation?.[gate] : undefined;
-    if (attenuation !== undefined && attenuation >= 0) {
-      parts.attenuationRate = Math.min(most, rateOfAttenuation(attenuation, laws.attenuation));
-      parts.attenuationShare =
-        attenuationShare * rainLike * ramp(dbz, ATTENUATION_DBZ.from, ATTENUATION_DBZ.to);
-      rate += parts.attenuationShare * (parts.attenuationRate - rate);
-    }
-    if (kdpShare > 0 && dbz > KDP_DBZ.from) {
-      const kdp = reader.kdpDegPerKm(gate);
-      const share =
-        kdpShare *
-        reader.trust *
-        ramp(dbz, KDP_DBZ.from, KDP_DBZ.to) *
-        ramp(kdp, KDP_DEG_PER_KM.from, KDP_DEG_PER_KM.to);
-      if (share > 0) {
-        let kdpRate = rateOfKdp(kdp, laws.kdp);
-        if (kdpZdrPart > 0 && zdrTrust > 0) {
-          kdpRate += kdpZdrPart * zdrTrust * rainLike * (rateOfKdpZdr(kdp, zdr, laws.kdpZdr) - kdpRate);
-        }
-        parts.kdpRate = Math.min(most, kdpRate);
-        parts.kdpShare = share;
-        rate += share * (parts.kdpRate - rate);
-      }
-    }
-    parts.rainRate = rate;
   }
 }
 
@@ -355,11 +269,12 @@ function count({ rateMmPerHour, method, counts }: GateRatesOfSweep, marks: Uint1
 function lackingMoments(
   { zdrDb, rhohv, kdpDegPerKm, header }: PolarEcho,
   { polarimetric }: GateRateSettings,
-  { laws }: RateTables,
+  { laws, byType }: RateTables,
 ): string[] {
   if (polarimetric === undefined) return [];
   const lacking: string[] = [];
   if (header.wavelengthM === undefined) lacking.push("wavelength");
+  else if (byType.some(({ relation }) => relation.phase === "snow")) lacking.push("a relation for rain");
   else if (laws === undefined) lacking.push("coefficients for this wavelength");
   if (kdpDegPerKm === undefined) lacking.push("KDP");
   if (zdrDb === undefined) lacking.push("ZDR");

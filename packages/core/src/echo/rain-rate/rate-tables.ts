@@ -82,9 +82,11 @@ export function rateTables(
   const byType: [ReadyRelation, ReadyRelation, ReadyRelation] = [ready, ready, ready];
   byType[RAIN_TYPE.convective] = readyRelation(convective, cap);
   byType[RAIN_TYPE.stratiform] = readyRelation(stratiform, cap);
+  // Where snow is said to fall, no law of rain has a say.
+  const isForSnow = byType.some((one) => one.relation.phase === "snow");
   return {
     byType,
-    laws: wavelengthM === undefined ? undefined : bandLaws(wavelengthM),
+    laws: wavelengthM === undefined || isForSnow ? undefined : bandLaws(wavelengthM),
     zdrOffsetDb,
     dropNumberRatio: dropNumber === undefined ? undefined : learnedDropNumberRatio(dropNumber, ready),
   };

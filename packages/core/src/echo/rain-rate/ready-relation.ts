@@ -18,7 +18,7 @@ export interface ReadyRelation {
 export interface RateTables {
   /** Indexed by the numbers of `RAIN_TYPE`. */
   readonly byType: readonly [ReadyRelation, ReadyRelation, ReadyRelation];
-  /** Undefined where no coefficients stand for the wavelength, or it is not known. */
+  /** Undefined where no coefficients stand for the wavelength, it is not known, or a relation is for snow. */
   readonly laws: BandLaws | undefined;
   /** Taken off every ZDR. */
   readonly zdrOffsetDb: number;
