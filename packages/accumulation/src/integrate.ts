@@ -1,6 +1,7 @@
 import { type Interval, MS_PER_HOUR } from "@rainreckon/core";
 import { type CompanionKind, headlinePositions, type RateLayer } from "@rainreckon/mosaic";
 import { instantAt, type Join, Joiner } from "./joins.ts";
+import { addDepth, addMs, addPlane, addTime } from "./part-sums.ts";
 import { type FieldShape, type RadarStep, StepPool } from "./radar-step.ts";
 import { BRIDGED_ABOVE_ROUNDS, type Part, partsOf, type Stretch } from "./stretch.ts";
 
@@ -156,70 +157,26 @@ export class RadarIntegrator {
 
   /** What one stretch adds to one step, at all cells that have it. */
   #addPart({ cells, fromEpochMs, toEpochMs }: Join, part: Part, layer0: RateLayer, layer1: RateLayer): void {
-    const { hours0, hours1, ms } = part;
     const into = this.#stepAt(part.step);
-    const { depthMm, observedMs, heightMMs, weightMs } = into;
-    const [rate0, rate1] = [layer0.rateMmPerHour, layer1.rateMmPerHour];
-    const [height0, height1] = [layer0.beamHeightAslM, layer1.beamHeightAslM];
-    const [weight0, weight1] = [layer0.weight, layer1.weight];
-    for (let k = 0; k < cells.length; k++) {
-      const cell = cells[k];
-      const first = rate0[cell];
-      const last = rate1[cell];
-      // Most cells are dry, and a sum is not touched to add nothing.
-      if (first !== 0 || last !== 0) depthMm[cell] += hours0 * first + hours1 * last;
-      observedMs[cell] += ms;
-      heightMMs[cell] += (ms * (height0[cell] + height1[cell])) / 2;
-      weightMs[cell] += (ms * (weight0[cell] + weight1[cell])) / 2;
+    addDepth(into.depthMm, cells, part, layer0.rateMmPerHour, layer1.rateMmPerHour);
+    for (let v = 0; v < this.#variantCount; v++) {
+      addDepth(into.variantMm[v], cells, part, layer0.variants[v], layer1.variants[v], this.#headlineAt);
     }
+    addTime(into, cells, part.ms, layer0, layer1);
     if (toEpochMs - fromEpochMs > BRIDGED_ABOVE_ROUNDS * this.#rules.medianRoundMs) {
       into.bridgedMs ??= this.#pool.zeros();
-      const bridgedMs = into.bridgedMs;
-      for (let k = 0; k < cells.length; k++) bridgedMs[cells[k]] += ms;
+      addMs(into.bridgedMs, cells, part.ms);
     }
-    into.cappedMm = this.#addPlane(
-      into.cappedMm,
-      cells,
-      part,
-      layer0.cappedRateMmPerHour,
-      layer1.cappedRateMmPerHour,
-    );
+    const [capped0, capped1] = [layer0.cappedRateMmPerHour, layer1.cappedRateMmPerHour];
+    if (capped0 !== undefined || capped1 !== undefined) {
+      into.cappedMm ??= this.#pool.zeros();
+      addPlane(into.cappedMm, cells, part, capped0 ?? this.#zeros, capped1 ?? this.#zeros);
+    }
     for (let c = 0; c < this.#kinds.length; c++) {
-      if (this.#kinds[c] === "toll") continue;
-      const plane = into.companions[c];
-      into.companions[c] = this.#addPlane(plane, cells, part, layer0.companions?.[c], layer1.companions?.[c]);
+      const [values0, values1] = [layer0.companions?.[c], layer1.companions?.[c]];
+      if (this.#kinds[c] === "toll" || (values0 === undefined && values1 === undefined)) continue;
+      addPlane(this.#companion(into, c), cells, part, values0 ?? this.#zeros, values1 ?? this.#zeros);
     }
-    const headlineAt = this.#headlineAt;
-    for (let v = 0; v < this.#variantCount; v++) {
-      const out = into.variantMm[v];
-      const [variant0, variant1] = [layer0.variants[v], layer1.variants[v]];
-      for (let k = 0; k < cells.length; k++) {
-        const h = headlineAt === undefined ? cells[k] : headlineAt[cells[k]];
-        if (h < 0) continue;
-        const first = variant0[h];
-        const last = variant1[h];
-        if (first !== 0 || last !== 0) out[h] += hours0 * first + hours1 * last;
-      }
-    }
-  }
-
-  /** Adds a part of what few layers have; the plane is made when one does. */
-  #addPlane(
-    plane: Float32Array | undefined,
-    cells: Int32Array,
-    { hours0, hours1 }: Part,
-    values0: Float32Array = this.#zeros,
-    values1: Float32Array = this.#zeros,
-  ): Float32Array | undefined {
-    if (values0 === this.#zeros && values1 === this.#zeros) return plane;
-    const sum = plane ?? this.#pool.zeros();
-    for (let k = 0; k < cells.length; k++) {
-      const cell = cells[k];
-      const first = values0[cell];
-      const last = values1[cell];
-      if (first !== 0 || last !== 0) sum[cell] += hours0 * first + hours1 * last;
-    }
-    return sum;
   }
 
   /** Half a round before the very first scan, or after the very last: its rates stand still there. */

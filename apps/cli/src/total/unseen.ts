@@ -39,13 +39,7 @@ export class UnseenDepth {
     const middle = (step.startEpochMs + step.endEpochMs) / 2;
     const rates = this.#radars.map((_, r) => this.#ratesOf(r, relationOf(r, middle)));
     const { depthMm, shareMs } = blended;
-    for (let cell = 0; cell < depthMm.length; cell++) {
-      if (depthMm[cell] !== 0) continue;
-      for (let r = 0; r < shareMs.length; r++) {
-        const ms = shareMs[r][cell];
-        if (ms > 0) this.#sumMm[cell] += (ms / MS_PER_HOUR) * (rates[r]?.[cell] ?? Number.NaN);
-      }
-    }
+    for (let r = 0; r < shareMs.length; r++) addUnseen(this.#sumMm, depthMm, shareMs[r], rates[r]);
   }
 
   /** The depth since the last call, as it is stored; the next interval starts from 0. */
@@ -72,5 +66,19 @@ export class UnseenDepth {
       this.#rates.set(key, rates);
     }
     return rates;
+  }
+}
+
+/** @param rate - of the rain just below detection, mm/h; undefined where it is not known */
+function addUnseen(
+  sumMm: Float64Array,
+  depthMm: Float64Array,
+  shareMs: Float64Array,
+  rate: Float32Array | undefined,
+): void {
+  for (let cell = 0; cell < sumMm.length; cell++) {
+    const ms = shareMs[cell];
+    if (depthMm[cell] !== 0 || !(ms > 0)) continue;
+    sumMm[cell] += (ms / MS_PER_HOUR) * (rate === undefined ? Number.NaN : rate[cell]);
   }
 }
