@@ -113,10 +113,14 @@ const position = z.string().transform((text, context): LonLat => {
   return z.NEVER;
 });
 
+const INSTANT_WORDS = "write an instant with its offset from UTC, like 2031-05-20T12:00Z";
+
 /** An instant with its offset from UTC: without one nobody knows which. */
-const instant = z.iso
-  .datetime({ offset: true, error: "write an instant in UTC, like 2031-05-20T12:00Z" })
-  .transform((text) => Date.parse(text));
+const instant = z
+  .string()
+  .regex(/^\d{4}-\d\d-\d\dT\d\d:\d\d(:\d\d)?(Z|[+-]\d\d:\d\d)$/, INSTANT_WORDS)
+  .transform((text) => Date.parse(text))
+  .refine(Number.isFinite, INSTANT_WORDS);
 
 /** Every flag of every command, each once: name, unit, default, help text. */
 export const flags = {

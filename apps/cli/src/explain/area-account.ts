@@ -63,6 +63,7 @@ export function areaAccount(
       radarMm: finite(window.figure.radarMm),
       adjustedMm: finite(window.figure.adjustedMm),
       observedFraction: window.figure.observedFraction,
+      spanRadarMm: runningMm,
       depthObservedMm: finite(depthObservedMm),
       storedDepthObservedMm: storedDepth,
       exact:

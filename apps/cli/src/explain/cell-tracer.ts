@@ -80,6 +80,14 @@ export class CellTracer implements UnitTrace {
 
   sweep(spoken: SpokenSweep): void {
     const { radar, lookup } = spoken;
+    const heard = this.#heard.get(radar) ?? [];
+    this.#heard.set(radar, heard);
+    const reaches = this.#cells.some((cell) => (lookup.position[cell] as number) >= 0);
+    // Told of all the same, since a layer counts the sweeps that made it.
+    if (!reaches) {
+      heard.push({ spoken, dataset: "", gates: [] });
+      return;
+    }
     const stored = spoken.stored();
     const gates = this.#cells.map((cell) => {
       const at = lookup.position[cell] as number;
@@ -87,9 +95,7 @@ export class CellTracer implements UnitTrace {
       const own = lookup.gates.subarray(lookup.start[at], lookup.start[at + 1]);
       return Array.from(own, (index) => gateAccount(spoken, stored, index));
     });
-    const heard = this.#heard.get(radar) ?? [];
     heard.push({ spoken, dataset: stored.origin.dataset, gates });
-    this.#heard.set(radar, heard);
   }
 
   layer(radar: JobRadar, round: JobRound, layer: RateLayer): void {

@@ -31,11 +31,16 @@ export function explainText(explanation: Explanation): string {
   ].join("\n\n");
 }
 
-function headLines({ run, span, window, remarks }: Explanation): string[] {
+function headLines({ run, span, window, remarks }: Explanation, spanRadarMm: number | null): string[] {
   const isWhole = span.start === window.start && span.end === window.end;
   return [
     `${displayText(run.title)} (${run.status}), ${displayText(run.folder)}`,
-    `${isWhole ? "window" : "part of the window"}: ${instant(span.start)} to ${instant(span.end)}`,
+    `window: ${instant(window.start)} to ${instant(window.end)}`,
+    ...(isWhole
+      ? []
+      : [
+          `below: ${instant(span.start)} to ${instant(span.end)}, with ${fixedDecimals(spanRadarMm, 4)} mm of the radar's depth`,
+        ]),
     ...remarks.map((remark) => `note: ${remark}`),
   ];
 }
@@ -48,24 +53,29 @@ function pointText(point: PointAccount, explanation: Explanation): string {
   const added = addedByScan(point.parts);
   const shown = shownScans(scans, added);
   const left = scans.length - shown.size;
+  const clock = clockOf(explanation);
   const lines = [
     `${figure} (${adjusted}) at ${point.kind === "gauge" ? "gauge " : ""}${displayText(point.name)}: how it came to be`,
-    ...headLines(explanation),
+    ...headLines(explanation, end.spanRadarMm),
     `cell: column ${cell.column}, row ${cell.row} of the grid, ${decimals(cell.sizeM, 1)} m wide, centre ${placeText(cell.centreLonDeg, cell.centreLatDeg)}`,
     ...CHAIN,
     "",
-    `Scans (${scans.length}); rays and gates count from 0`,
+    `Scans (${scans.length}), UTC; rays and gates count from 0`,
   ];
+  let soFarMm = 0;
   for (const scan of scans) {
+    const own = added.get(scan.number);
+    soFarMm += own?.mm ?? 0;
     if (!shown.has(scan.number)) continue;
-    lines.push(...scanLines(scan, added.get(scan.number)));
+    const beside = gauge === null ? undefined : gaugeSoFar(point, scan);
+    lines.push(...scanLines(scan, clock(scan.time), own, soFarMm, beside));
   }
   if (left > 0)
     lines.push(
       `  … ${left} of ${scans.length} scans are left out here: shown are the first, the last and those that add most;`,
       "    --csv and --json hold them all",
     );
-  lines.push("", "Intervals, mm", intervalTable(point));
+  if (point.intervals.length > 0) lines.push("", "Intervals, mm", intervalTable(point));
   if (gauge !== null) lines.push("", ...gaugeLines(gauge));
   lines.push("", ...endLines(end), "", ...adjustmentLines(point.adjustment, end.adjustedMm));
   return lines.join("\n");
@@ -73,24 +83,35 @@ function pointText(point: PointAccount, explanation: Explanation): string {
 
 interface Added {
   readonly mm: number;
-  readonly runningMm: number;
-  readonly shares: ReadonlySet<string>;
-  readonly kinds: ReadonlySet<string>;
+  readonly shares: readonly number[];
+  readonly kinds: ReadonlySet<PartAccount["kind"]>;
 }
 
 /** What the stretches that begin with a scan add, by its number. */
 function addedByScan(parts: readonly PartAccount[]): ReadonlyMap<number, Added> {
-  const sums = new Map<number, { mm: number; runningMm: number; shares: Set<string>; kinds: Set<string> }>();
-  for (const { scan, depthMm, runningMm, share, kind } of parts) {
-    const sum = sums.get(scan) ?? { mm: 0, runningMm: 0, shares: new Set(), kinds: new Set() };
-    sum.mm += depthMm;
-    sum.runningMm = runningMm;
-    sum.shares.add(share.toFixed(2));
-    if (kind !== "usual") sum.kinds.add(kind);
-    sums.set(scan, sum);
+  const sums = new Map<number, Added>();
+  for (const { scan, depthMm, share, kind } of parts) {
+    const before = sums.get(scan);
+    sums.set(scan, {
+      mm: (before?.mm ?? 0) + depthMm,
+      shares: [...(before?.shares ?? []), share],
+      kinds: new Set([...(before?.kinds ?? []), kind]),
+    });
   }
   return sums;
 }
+
+/** What the gauge had measured by the end of the last step before a scan; null before there is one. */
+function gaugeSoFar({ steps }: PointAccount, { time }: ScanAccount): number | null {
+  const before = steps.filter(({ end, gaugeMm }) => gaugeMm !== null && Date.parse(end) <= Date.parse(time));
+  return before.length === 0 ? null : before.reduce((sum, { gaugeMm }) => sum + (gaugeMm ?? 0), 0);
+}
+
+const KIND_WORDS: Readonly<Record<PartAccount["kind"], string>> = {
+  usual: "",
+  bridged: " (over a bridged gap)",
+  edge: " (half a round beyond the first or last scan among it)",
+};
 
 function shownScans(scans: readonly ScanAccount[], added: ReadonlyMap<number, Added>): ReadonlySet<number> {
   if (scans.length <= SCANS_SHOWN) return new Set(scans.map(({ number }) => number));
@@ -102,15 +123,22 @@ function shownScans(scans: readonly ScanAccount[], added: ReadonlyMap<number, Ad
   return new Set([scans[0], scans[scans.length - 1], ...most].flatMap((scan) => (scan ? [scan.number] : [])));
 }
 
-function scanLines(scan: ScanAccount, added: Added | undefined): string[] {
+function scanLines(
+  scan: ScanAccount,
+  time: string,
+  added: Added | undefined,
+  soFarMm: number,
+  gaugeMm: number | null | undefined,
+): string[] {
   const indent = "      ";
   const rate = scan.rateMmPerHour === null ? "not observed" : `${decimals(scan.rateMmPerHour, 3)} mm/h`;
   const depth =
     added === undefined
-      ? "adds nothing by itself"
-      : `share ${[...added.shares].join(", ")}, adds ${fixedDecimals(added.mm, 4)} mm${[...added.kinds].map((kind) => ` (${kind})`).join("")}; total ${fixedDecimals(added.runningMm, 4)}`;
+      ? "no stretch begins with it"
+      : `share ${range(added.shares, 2)}, adds ${fixedDecimals(added.mm, 4)} mm${[...added.kinds].map((kind) => KIND_WORDS[kind]).join("")}`;
+  const gauge = gaugeMm === undefined ? "" : `, gauge ${fixedDecimals(gaugeMm, 2)}`;
   const lines = [
-    `${String(scan.number).padStart(5)} ${instant(scan.time)}  ${displayText(scan.source)}  ${rate}; ${depth}`,
+    `${String(scan.number).padStart(5)} ${time}  ${displayText(scan.source)}  ${rate}; ${depth}; so far ${fixedDecimals(soFarMm, 4)} mm${gauge}`,
   ];
   if (scan.kind === "gridded") {
     const values = scan.gridValues.map(({ value }) => decimals(value ?? Number.NaN, 2)).join(" ");
@@ -138,7 +166,8 @@ function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
   const words = [`measured ${range(gates.map(({ measuredDbz }) => measuredDbz))} dBZ`];
   for (const effect of EFFECTS) {
     const added = gates.filter(({ dbz }) => dbz !== null).map(({ effectsDb }) => effectsDb[effect]);
-    if (added.some((db) => db !== 0)) words.push(`${effect} ${range(added, true)} dB`);
+    const most = Math.max(0, ...added.map(Math.abs));
+    if (most > 0) words.push(`${effect} ${range(added, most < 0.05 ? 3 : 1, true)} dB`);
   }
   const screens = new Map<string, number>();
   for (const { screenedBy } of gates) {
@@ -170,11 +199,11 @@ function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
   return words.join("; ");
 }
 
-/** "31.2", "31.2 to 34.0", "below detection". */
-function range(values: readonly (number | null)[], signed = false): string {
+/** "31.2", "31.2 to 34.0", "no" where there is none. */
+function range(values: readonly (number | null)[], digits = 1, signed = false): string {
   const known = values.filter((value) => value !== null);
   if (known.length === 0) return "no";
-  const text = (value: number) => `${signed && value > 0 ? "+" : ""}${decimals(value, 1)}`;
+  const text = (value: number) => `${signed && value > 0 ? "+" : ""}${decimals(value, digits)}`;
   const [low, high] = [text(Math.min(...known)), text(Math.max(...known))];
   return low === high ? low : `${low} to ${high}`;
 }
@@ -263,7 +292,7 @@ function adjustmentLines(adjustment: AdjustmentAccount, figureMm: number | null)
       ],
       shown.map((gauge) => [
         `  ${gauge.network}/${gauge.gaugeId}`,
-        decimals(gauge.distanceKm ?? Number.NaN, 1),
+        fixedDecimals(gauge.distanceKm, 1),
         fixedDecimals(gauge.gaugeMm, 1),
         fixedDecimals(gauge.radarMm, 1),
         fixedDecimals(gauge.radarMm > 0 ? gauge.gaugeMm / gauge.radarMm : Number.NaN, 2),
@@ -298,7 +327,8 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
     );
   const shown = scans.length <= STEPS_SHOWN ? wettest(scans.length) : wettest(STEPS_SHOWN - 2);
   const percent = (share: number | null) => (share === null ? "–" : `${decimals(100 * share, 0)} %`);
-  const db = (value: number | null) => fixedDecimals(value, 1);
+  const db = (value: number | null) => fixedDecimals(value, 1).replace(/^-(0\.0)$/, "$1");
+  const clock = clockOf(explanation);
   const shownSteps =
     steps.length <= STEPS_SHOWN
       ? steps
@@ -308,11 +338,11 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
           .toSorted((a, b) => (a.end < b.end ? -1 : 1));
   const lines = [
     `${fixedDecimals(end.depthObservedMm, 2)} mm (${end.adjustedMm === null ? "radar, not adjusted" : "adjusted"}) over catchment ${displayText(area.id)}, ${displayText(area.name)}: how it came to be`,
-    ...headLines(explanation),
+    ...headLines(explanation, end.spanRadarMm),
     `${decimals(area.areaKm2, 1)} km², ${area.cellCount} cells by their share inside; observed ${percent(end.observedFraction)} of area and time`,
     ...CHAIN,
     "",
-    `Scans (${scans.length}): means over the area; corrections in dB are means by rain`,
+    `Scans (${scans.length}), UTC: means over the area; corrections in dB are means by rain`,
     textTable(
       [
         right("    #"),
@@ -332,7 +362,7 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
         .filter(({ number }) => shown.has(number))
         .map((scan) => [
           String(scan.number),
-          instant(scan.time),
+          clock(scan.time),
           scan.kind === "gridded" ? `${scan.source} (gridded)` : scan.source,
           fixedDecimals(scan.meanRateMmPerHour, 3),
           percent(scan.observedShare),
@@ -351,7 +381,7 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
         ]
       : []),
     "",
-    "Steps, mm",
+    "Steps, mm, UTC",
     textTable(
       [
         { head: "  to" },
@@ -362,7 +392,7 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
         right("radar so far"),
       ],
       shownSteps.map((step) => [
-        `  ${instant(step.end)}`,
+        `  ${clock(step.end)}`,
         fixedDecimals(step.radarMm, 3),
         step.storedRadarMm ?? "–",
         fixedDecimals(step.adjustedMm, 3),
@@ -390,6 +420,15 @@ function areaText(area: AreaAccount, explanation: Explanation): string {
 /** "2031-05-20 12:05 UTC" of an ISO instant. */
 function instant(iso: string): string {
   return utcText(Date.parse(iso));
+}
+
+/** "12:05:18", with its date where the span holds more than one. */
+function clockOf({ span }: Explanation): (iso: string) => string {
+  const day = span.start.slice(0, 10);
+  const isOneDay = [span.end, new Date(Date.parse(span.end) - 1).toISOString()].some((end) =>
+    end.startsWith(day),
+  );
+  return (iso) => (isOneDay ? iso.slice(11, 19) : iso.slice(0, 19).replace("T", " "));
 }
 
 const WIDTH = 100;

@@ -101,7 +101,7 @@ export function pointAccount(
         gaugeMm: gaugeMm(step),
       })),
     intervals,
-    end: endOf(cell, intervals, remade),
+    end: endOf(cell, met, intervals, remade),
     adjustment: adjustedBy.account(
       {
         cells: [cell],
@@ -122,34 +122,40 @@ function scansOf(met: readonly MetScan[], parts: CellAccount["parts"], span: Int
   );
 }
 
-/** The whole window ends on the totals; part of it on the sum of the intervals that lie in it. */
-function endOf(cell: number, intervals: PointAccount["intervals"], remade: RemadeRun): PointAccount["end"] {
-  const { span, opened, stored } = remade;
-  const { window } = opened.run;
-  const isWhole = span.startEpochMs === window.startEpochMs && span.endEpochMs === window.endEpochMs;
-  const sum = (of: (interval: PointAccount["intervals"][number]) => number | null): number | null => {
-    const parts = intervals.map(of).filter((mm) => mm !== null);
-    return parts.length === 0 ? null : Math.fround(parts.reduce((total, mm) => total + mm, 0));
-  };
-  const figures = {
-    radarMm: isWhole ? finite(remade.total.planes.totalMm[cell]) : sum(({ radarMm }) => radarMm),
-    storedRadarMm: isWhole ? finite(stored.get("radar_total")?.[cell]) : sum(({ storedMm }) => storedMm),
-    adjustedMm: isWhole ? finite(remade.adjustedTotalMm?.[cell]) : sum(({ adjustedMm }) => adjustedMm),
-    storedAdjustedMm: isWhole
-      ? finite(stored.get("adjusted_total")?.[cell])
-      : sum(({ storedAdjustedMm }) => storedAdjustedMm),
-  };
-  const kept = stored.has("radar_depth");
-  const same = intervals.every(
-    (one) => !kept || (one.radarMm === one.storedMm && one.adjustedMm === one.storedAdjustedMm),
+/** The account ends on the totals of the window, whatever part of it was asked for: all of it was made again. */
+function endOf(
+  cell: number,
+  met: CellAccount,
+  intervals: PointAccount["intervals"],
+  remade: RemadeRun,
+): PointAccount["end"] {
+  const { span, opened, stored, total } = remade;
+  const { run } = opened;
+  const sumOf = (parts: readonly number[]) => parts.reduce((sum, mm) => sum + mm, 0);
+  const inSpan = met.steps.filter((step) => isInside(step, span) && !Number.isNaN(step.depthMm));
+  const byInterval = run.intervals.map((interval) =>
+    Math.fround(
+      sumOf(met.parts.filter(({ step }) => isInside(step, interval)).map(({ depthMm }) => depthMm)),
+    ),
   );
+  const figures = {
+    radarMm: finite(total.planes.totalMm[cell]),
+    storedRadarMm: finite(stored.get("radar_total")?.[cell]),
+    adjustedMm: finite(remade.adjustedTotalMm?.[cell]),
+    storedAdjustedMm: finite(stored.get("adjusted_total")?.[cell]),
+  };
   return {
-    what: isWhole
-      ? "radar_total and adjusted_total of totals.nc, float32"
-      : "sum of the whole intervals of radar_depth and adjusted_depth of totals.nc in the span",
+    what: "radar_total and adjusted_total of totals.nc, float32, over the window",
     ...figures,
-    partsMm: sum(({ partsMm, radarMm }) => (radarMm === null ? null : Math.fround(partsMm))),
+    partsMm: met.parts.length === 0 ? null : Math.fround(sumOf(byInterval)),
+    spanRadarMm: inSpan.length === 0 ? null : sumOf(inSpan.map(({ depthMm }) => depthMm)),
     exact:
-      same && figures.radarMm === figures.storedRadarMm && figures.adjustedMm === figures.storedAdjustedMm,
+      figures.radarMm === figures.storedRadarMm &&
+      figures.adjustedMm === figures.storedAdjustedMm &&
+      intervals.every(
+        (one) =>
+          !stored.has("radar_depth") ||
+          (one.radarMm === one.storedMm && one.adjustedMm === one.storedAdjustedMm),
+      ),
   };
 }
