@@ -33,37 +33,38 @@ const NARROWEST_SPREAD_DB = 2;
 class Votes {
   readonly told: Uint16Array;
   readonly count: Uint16Array;
-  /** Sums of reflectivity in hundredths of a dB, and of its squares: whole numbers add up the same in any order. */
-  readonly sums: Float64Array;
-  readonly squares: Float64Array;
-  readonly firstEpochMs: Float64Array;
-  readonly lastEpochMs: Float64Array;
+  /** Sums of reflectivity in tenths of a dB, and of its squares: whole numbers add up the same in any order. */
+  readonly sums: Int32Array;
+  readonly squares: Int32Array;
+  /** Seconds since 1970. */
+  readonly firstS: Uint32Array;
+  readonly lastS: Uint32Array;
 
   constructor(gates: number) {
     this.told = new Uint16Array(gates);
     this.count = new Uint16Array(gates);
-    this.sums = new Float64Array(gates);
-    this.squares = new Float64Array(gates);
-    this.firstEpochMs = new Float64Array(gates).fill(Number.POSITIVE_INFINITY);
-    this.lastEpochMs = new Float64Array(gates).fill(Number.NEGATIVE_INFINITY);
+    this.sums = new Int32Array(gates);
+    this.squares = new Int32Array(gates);
+    this.firstS = new Uint32Array(gates).fill(0xffffffff);
+    this.lastS = new Uint32Array(gates);
   }
 
   tell(place: number): void {
     this.told[place] = (this.told[place] as number) + 1;
   }
 
-  vote(place: number, dbz: number, epochMs: number): void {
+  vote(place: number, dbz: number, timeS: number): void {
     this.tell(place);
-    const centi = Math.round(100 * dbz);
+    const tenths = Math.max(-1000, Math.min(1000, Math.round(10 * dbz)));
     this.count[place] = (this.count[place] as number) + 1;
-    this.sums[place] = (this.sums[place] as number) + centi;
-    this.squares[place] = (this.squares[place] as number) + centi * centi;
-    this.firstEpochMs[place] = Math.min(this.firstEpochMs[place] as number, epochMs);
-    this.lastEpochMs[place] = Math.max(this.lastEpochMs[place] as number, epochMs);
+    this.sums[place] = (this.sums[place] as number) + tenths;
+    this.squares[place] = (this.squares[place] as number) + tenths * tenths;
+    this.firstS[place] = Math.min(this.firstS[place] as number, timeS);
+    this.lastS[place] = Math.max(this.lastS[place] as number, timeS);
   }
 
   /** Gates that show it often and long enough and keep their strength: up to the mean and twice the spread. */
-  settle(rounds: number, spanMs: number): FixedEcho {
+  settle(rounds: number, spanS: number): FixedEcho {
     const places: number[] = [];
     const upToDbz: number[] = [];
     const share: number[] = [];
@@ -71,10 +72,10 @@ class Votes {
       const count = this.count[place] as number;
       const told = this.told[place] as number;
       if (count < STATIC_SHARE * told || count < OF_ALL_SHARE * rounds) continue;
-      if ((this.lastEpochMs[place] as number) - (this.firstEpochMs[place] as number) < SPAN_SHARE * spanMs)
-        continue;
-      const mean = (this.sums[place] as number) / count / 100;
-      const spread = Math.sqrt(Math.max(0, (this.squares[place] as number) / count / 1e4 - mean * mean));
+      const heldS = (this.lastS[place] as number) - (this.firstS[place] as number);
+      if (heldS < SPAN_SHARE * spanS) continue;
+      const mean = (this.sums[place] as number) / count / 10;
+      const spread = Math.sqrt(Math.max(0, (this.squares[place] as number) / count / 100 - mean * mean));
       if (spread > WIDEST_SPREAD_DB) continue;
       places.push(place);
       upToDbz.push(mean + 2 * Math.max(NARROWEST_SPREAD_DB, spread));
@@ -94,8 +95,8 @@ class Tally {
   readonly ground: Votes;
   readonly points: Votes;
   rounds = 0;
-  firstEpochMs = Number.POSITIVE_INFINITY;
-  lastEpochMs = Number.NEGATIVE_INFINITY;
+  firstS = Number.POSITIVE_INFINITY;
+  lastS = Number.NEGATIVE_INFINITY;
 
   constructor(geometry: SweepGeometry) {
     this.geometry = geometry;
@@ -105,12 +106,12 @@ class Tally {
   }
 
   settle(): LearnedSweep {
-    const spanMs = this.lastEpochMs - this.firstEpochMs;
+    const spanS = this.lastS - this.firstS;
     return {
       ...this.geometry,
       rounds: this.rounds,
-      static: this.ground.settle(this.rounds, spanMs),
-      points: this.points.settle(this.rounds, spanMs),
+      static: this.ground.settle(this.rounds, spanS),
+      points: this.points.settle(this.rounds, spanS),
     };
   }
 }
@@ -137,8 +138,9 @@ export class StaticEchoLearner {
       this.#tallies.push(tally);
     }
     tally.rounds++;
-    tally.firstEpochMs = Math.min(tally.firstEpochMs, echo.header.startEpochMs);
-    tally.lastEpochMs = Math.max(tally.lastEpochMs, echo.header.startEpochMs);
+    const timeS = secondsOf(echo);
+    tally.firstS = Math.min(tally.firstS, timeS);
+    tally.lastS = Math.max(tally.lastS, timeS);
     const view = viewSweep(echo);
     const around = placesAround(view);
     for (let ray = 0; ray < view.rayCount; ray++) {
@@ -233,9 +235,13 @@ function countGate(
     (weaker >= enough ||
       (rhohv !== undefined && (rhohv[at] as number) < STATIC_RHOHV) ||
       (isMovingAround && own > -STILL_M_PER_S && own < STILL_M_PER_S));
-  const epochMs = echo.header.startEpochMs;
-  if (isVote) tally.ground.vote(place, dbz, epochMs);
+  const timeS = secondsOf(echo);
+  if (isVote) tally.ground.vote(place, dbz, timeS);
   else if (dry >= enough) tally.ground.tell(place);
-  if (isEcho && dbz >= POINT_DBZ && muchWeaker >= enough) tally.points.vote(place, dbz, epochMs);
+  if (isEcho && dbz >= POINT_DBZ && muchWeaker >= enough) tally.points.vote(place, dbz, timeS);
   else if (dry >= enough) tally.points.tell(place);
+}
+
+function secondsOf({ header }: PolarEcho): number {
+  return Math.round(header.startEpochMs / 1000);
 }
