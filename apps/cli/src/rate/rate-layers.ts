@@ -1,18 +1,13 @@
-import { type Grid, InputError, type Notice } from "@rainreckon/core";
-import { type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
-import { openScans } from "../scans/scan-files.ts";
-import type { JobRadar, JobRound } from "../total/job.ts";
-import { lookupShelf } from "../total/lookup-shelf.ts";
-import { placesOf } from "../total/places-of.ts";
-import { countCapped, RateMaker } from "../total/rate-maker.ts";
+import type { Grid, Notice } from "@rainreckon/core";
+import type { RateLayer } from "@rainreckon/mosaic";
+import { type JobRadar, type JobRound, noCounts } from "../total/job.ts";
+import { RoundLayers } from "../total/round-layers.ts";
 
 /** What one radar shows of one round. */
 export interface RateLayerOfRadar extends RateLayer {
   readonly radar: JobRadar;
   readonly gatesCapped: number;
 }
-
-const NO_CELLS = new Int32Array();
 
 /** One round of one radar on the grid, lowest sweeps first; undefined where it shows nothing of the grid. */
 export function rateLayer(
@@ -21,31 +16,10 @@ export function rateLayer(
   round: JobRound,
   onNotice: (notice: Notice) => void,
 ): RateLayerOfRadar | undefined {
-  const builder = new RateLayerBuilder(grid.nx * grid.ny, NO_CELLS, 0);
-  const rates = new RateMaker(radar);
-  let spoken = 0;
-  let gatesCapped = 0;
-  for (const volume of round.sweeps) {
-    const { path, name, index, midEpochMs } = volume;
-    try {
-      const file = openScans(volume, placesOf(radar));
-      try {
-        const lookup = lookupShelf(grid, radar).forSweep(file.readSweep(index, []));
-        if (!builder.canFill(lookup)) continue;
-        const sweep = file.readSweep(index, [radar.moment]);
-        const where = `${name}, ${sweep.origin.dataset}`;
-        const gates = rates.rates(sweep, rates.relationAt(midEpochMs), where);
-        spoken += builder.add(lookup, gates, [], midEpochMs);
-        gatesCapped += countCapped(gates);
-      } finally {
-        file.close();
-      }
-    } catch (error) {
-      if (!(error instanceof InputError)) throw error;
-      onNotice({ what: error.what, where: error.where.replace(path, name), fix: error.fix });
-    }
-  }
-  return spoken > 0 ? { ...builder.finish(), radar, gatesCapped } : undefined;
+  const layers = new RoundLayers(radar, { grid, variants: [], headlineCells: new Int32Array() });
+  const counts = noCounts();
+  const layer = layers.layer(round, counts, ({ what, where, fix }) => onNotice({ what, where, fix }));
+  return layer === undefined ? undefined : { ...layer, radar, gatesCapped: counts.gatesCapped };
 }
 
 /**

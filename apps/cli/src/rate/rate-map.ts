@@ -6,6 +6,7 @@ import type { ManifestInput } from "../manifest.ts";
 import { loadPlan } from "../plan/load.ts";
 import { indexScans, type RadarInput } from "../total/inputs.ts";
 import type { JobRadar, JobRound } from "../total/job.ts";
+import { learnFor } from "../total/learned-run.ts";
 import { gridMap, jobRadar } from "../total/prepare.ts";
 import { leftOutLog } from "../ui/left-out.ts";
 import { counted, decimals, isoUtc, utcText } from "../ui/numbers.ts";
@@ -45,7 +46,12 @@ export async function makeRateMap(planPath: string, out: string, terminal: Termi
   const radars = await indexScans(loaded, log, (input) => inputs.push(input), indexing);
   indexing.end();
   const toMs = Date.parse(loaded.plan.window.to);
-  const chosen = radars.flatMap((radar) => roundOf(radar, jobRadar(radar, loaded, undefined, log), toMs));
+  const jobs = await learnFor(
+    radars.map((radar) => jobRadar(radar, loaded, undefined, log)),
+    loaded,
+    log,
+  );
+  const chosen = radars.flatMap((radar, k) => roundOf(radar, jobs[k] as JobRadar, toMs));
   const layers: RateLayerOfRadar[] = [];
   for (const { radar, round } of chosen) {
     const layer = rateLayer(grid, radar, round, (notice) => log.add("sweep left out", notice));

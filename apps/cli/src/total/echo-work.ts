@@ -16,7 +16,8 @@ import {
 } from "@rainreckon/core";
 import { type GateRates, type PolarLookup, rainTypeOfGates, trustIn } from "@rainreckon/mosaic";
 import { COMPANIONS, companionIndex } from "./companions.ts";
-import type { JobEcho, JobRadar, RatesMade, RunShape, UnitCounts } from "./job.ts";
+import type { JobEcho, JobRadar, RatesMade, UnitCounts } from "./job.ts";
+import type { LayerShape } from "./round-layers.ts";
 
 /** What a worked sweep says, by gate: under the relation in use, and under each other one. */
 export interface WorkedRain {
@@ -40,11 +41,11 @@ const BITS = {
 export class EchoWork {
   readonly #radar: JobRadar;
   readonly #echo: JobEcho;
-  readonly #shape: RunShape;
+  readonly #shape: LayerShape;
   readonly #chain: EchoChain;
   readonly #tables = new Map<string, RateTables>();
 
-  constructor(radar: JobRadar, echo: JobEcho, shape: RunShape) {
+  constructor(radar: JobRadar, echo: JobEcho, shape: LayerShape) {
     this.#radar = radar;
     this.#echo = echo;
     this.#shape = shape;

@@ -1,5 +1,6 @@
 import type { LearnedEcho } from "@rainreckon/core";
 import { type LearnedValue, writeLearned } from "@rainreckon/formats";
+import type { LoadedPlan } from "../plan/load.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { version } from "../version.ts";
 import type { JobEcho, JobRadar } from "./job.ts";
@@ -22,26 +23,39 @@ export function learnsBeforehand({ shape }: PreparedRun): boolean {
 
 /** The run with what its scans teach of its radars in the job of every unit. */
 export async function learnBeforehand(run: PreparedRun, log: LeftOutLog): Promise<PreparedRun> {
-  const worked = run.shape.radars.filter(isWorked);
-  if (worked.length === 0) return run;
+  const radars = await learnFor(run.shape.radars, run.loaded, log);
+  return { ...run, shape: { ...run.shape, radars } };
+}
+
+/** Radars with what their scans teach; one whose echo is not worked on stays as it is. */
+export async function learnFor(
+  radars: readonly JobRadar[],
+  loaded: LoadedPlan,
+  log: LeftOutLog,
+): Promise<JobRadar[]> {
+  const worked = radars.filter(isWorked);
+  if (worked.length === 0) return [...radars];
   const { learned } = await learnEchoes(
     worked.map((radar) => ({ radar, ...radar.echo })),
-    run.grid,
-    run.loaded,
+    loaded.plan.grid,
+    loaded,
     log,
   );
-  return withLearned(run, new Map(worked.map(({ site }, k) => [site.id, learned[k] as LearnedEcho])));
+  return withKnowledge(radars, new Map(worked.map(({ site }, k) => [site.id, learned[k] as LearnedEcho])));
 }
 
 /** The run with what is known of its radars, by site id. */
 export function withLearned(run: PreparedRun, learned: ReadonlyMap<string, LearnedEcho>): PreparedRun {
-  const radars = run.shape.radars.map((radar): JobRadar => {
+  return { ...run, shape: { ...run.shape, radars: withKnowledge(run.shape.radars, learned) } };
+}
+
+function withKnowledge(radars: readonly JobRadar[], learned: ReadonlyMap<string, LearnedEcho>): JobRadar[] {
+  return radars.map((radar): JobRadar => {
     const known = learned.get(radar.site.id);
     return radar.echo === undefined || known === undefined
       ? radar
       : { ...radar, echo: { ...radar.echo, learned: known } };
   });
-  return { ...run, shape: { ...run.shape, radars } };
 }
 
 /** Leaves what was learned in a file. */
