@@ -124,6 +124,8 @@ export {
 } from "./echo/blockage/correct-blockage.ts";
 export { type BlockedSweep, terrainBlockage } from "./echo/blockage/terrain-blockage.ts";
 export { type TerrainGrid, type TerrainRays, terrainCaution } from "./echo/blockage/terrain-model.ts";
+export { type ConsistencyEstimate, ConsistencyLearner } from "./echo/calibration/consistency-learner.ts";
+export { type OblateEcho, oblateEcho } from "./echo/calibration/drop-phase.ts";
 export {
   attenuationLine,
   type LearnedAlpha,
@@ -138,6 +140,13 @@ export {
   overlapDifference,
 } from "./echo/calibration/overlap-difference.ts";
 export { type OverlapPairs, turned } from "./echo/calibration/overlap-pairs.ts";
+export {
+  type CalibrationProposal,
+  type CalibrationWord,
+  type GaugeEvidence,
+  proposeCalibration,
+  type RadarEvidence,
+} from "./echo/calibration/propose-calibration.ts";
 export {
   EchoChain,
   type EchoReport,
