@@ -102,6 +102,13 @@ test("showers keep their value above the layer; within it their type is worth ha
   expect(added(echo, 26)).toBeCloseTo(-3.9, 0);
 });
 
+test("showers get the profile by the share that was measured", () => {
+  const echo = upright(0);
+  correctProfile(echo, { ...learned, convectiveShare: 0.25 }, new Uint8Array(80).fill(RAIN_TYPE.convective));
+  // 4.05 km: 1.05 km of snow, -4.725 dB, in a quarter of the rain: 10 log10(0.75 + 0.25 * 10^-0.4725) = -0.788 dB.
+  expect(added(echo, 40)).toBeCloseTo(0.788, 2);
+});
+
 test("RHOHV decides over the type where the beam is in the layer", () => {
   const known = { ...learned, layer: { ...layer, correlation: { inRain: 0.99, drop: 0.08 } } };
   const fallen = (gate: number) => (gate >= 23 && gate < 30 ? 0.91 : 0.99);

@@ -36,7 +36,7 @@ export interface ProfileReport {
  *
  * Beam-averaged: dBZ at the ground = dBZ of the gate + P(ground) - P(beam) (Kitchen, Brown and Davies 1994,
  * Q. J. R. Meteorol. Soc. 120, 1231-1254; Joss and Lee 1995, J. Appl. Meteorol. 34, 2612-2630). Convective rain has
- * no such profile and keeps its value; where RHOHV tells how much of a gate's echo is melting snow, that decides over
+ * no such profile and keeps its value, but for the share that the run has taught; where RHOHV tells how much of a gate's echo is melting snow, that decides over
  * the rain type. What lies so high that it needs more than the limit is not observed, dry or wet and of either type,
  * so that no sample of rain alone remains.
  *
@@ -63,18 +63,14 @@ export function correctProfile(
     snowGates: 0,
   };
   countWet(echo, band, report.wetGates);
-  const table = learned.profile === undefined ? undefined : tableOf(echo, learned, settings);
+  const table = tableOf(echo, learned, settings);
   if (table === undefined || table.firstTouched === gateCount) return report;
 
   const added = new Float32Array(echo.dbz.length);
   const share = new Float64Array(gateCount);
-  const correlation = learned.layer?.correlation;
   for (let ray = 0; ray < rayCount; ray++) {
     const rayStart = ray * gateCount;
-    shareByType(share, rainType, rayStart, table);
-    if (correlation !== undefined && echo.rhohv !== undefined) {
-      correctShareByRhohv(share, echo.rhohv, rayStart, table.firstTouched, table.meltingShare, correlation);
-    }
+    shareOfRay(share, echo, learned, rainType, rayStart, table);
     correctRay(echo, rayStart, share, table, settings.largestCorrectionDb, band, added, report);
   }
   addEffect(echo, "profile", added);
@@ -95,19 +91,24 @@ function countWet({ dbz }: PolarEcho, band: Uint16Array, wetGates: Float64Array)
 }
 
 /**
- * Share of the rain that has the profile, by its type alone: all of stratiform, none of convective. Within a melting
- * layer stratiform echo passes for convective by its strength, so that the type is worth half there; house rule.
+ * Share of the rain that has the profile: all of stratiform, of convective as much as was measured, unless RHOHV knows
+ * better. Where it was not measured convective rain has none of it, but within a melting layer stratiform echo passes
+ * for convective by its strength, so that the type is worth half there; house rule.
  */
-function shareByType(
+function shareOfRay(
   share: Float64Array,
+  { rhohv }: PolarEcho,
+  { layer, convectiveShare }: LearnedProfile,
   rainType: Uint8Array | undefined,
   rayStart: number,
   { firstTouched, meltingShare }: GateTable,
 ): void {
   for (let gate = firstTouched; gate < share.length; gate++) {
     const convective = rainType !== undefined && rainType[rayStart + gate] === RAIN_TYPE.convective;
-    share[gate] = convective ? (meltingShare[gate] as number) / 2 : 1;
+    share[gate] = convective ? (convectiveShare ?? (meltingShare[gate] as number) / 2) : 1;
   }
+  if (layer?.correlation === undefined || rhohv === undefined) return;
+  correctShareByRhohv(share, rhohv, rayStart, firstTouched, meltingShare, layer.correlation);
 }
 
 function correctRay(

@@ -50,11 +50,21 @@ interface CellGrid {
   readonly sigmaM: Float64Array;
 }
 
-/** Sums of a pair of elevations and a band. */
+/** What kind of rain a cell has, in the lowest sweep. */
+type RainKind = "widespread" | "showers";
+const LIGHT = 0;
+const WIDESPREAD = 1;
+const SHOWERS = 2;
+
+/** Sums of a pair of elevations, for each kind of rain. */
 interface PairSums {
   readonly lowest: CellGrid;
   readonly aloft: CellGrid;
-  /** Shape [BANDS] each. */
+  readonly of: Readonly<Record<RainKind, BandSums>>;
+}
+
+/** Shape [BANDS] each. */
+interface BandSums {
   readonly aloftZ: Float64Array;
   readonly lowestZ: Float64Array;
   readonly cells: Float64Array;
@@ -87,42 +97,43 @@ export class EchoRatios {
     this.#round.push(cellGrid(echo, rainType, this.#settings));
   }
 
-  ratios(): EchoRatio[] {
+  /** @param kind - showers are cells with convective echo, or very strong ones where nobody tells the type */
+  ratios(kind: RainKind = "widespread"): EchoRatio[] {
     this.#closeRound();
-    return [...this.#pairs.keys()].sort().flatMap((key) => ratiosOf(this.#pairs.get(key) as PairSums));
+    return [...this.#pairs.keys()].sort().flatMap((key) => ratiosOf(this.#pairs.get(key) as PairSums, kind));
   }
 
   #closeRound(): void {
     const [lowest, ...higher] = this.#round.sort((a, b) => a.elevationDeg - b.elevationDeg);
     this.#round = [];
     if (lowest === undefined) return;
-    const chosen = chooseCells(lowest);
+    const kinds = kindsOfCells(lowest);
     for (const aloft of higher) {
       const key = `${aloft.elevationDeg.toFixed(1)} ${lowest.elevationDeg.toFixed(1)}`;
       const sums = this.#pairs.get(key) ?? emptySums(lowest, aloft);
       this.#pairs.set(key, sums);
-      addPair(sums, lowest, aloft, chosen);
+      addPair(sums.of.widespread, lowest, aloft, kinds, WIDESPREAD);
+      addPair(sums.of.showers, lowest, aloft, kinds, SHOWERS);
     }
   }
 }
 
 function emptySums(lowest: CellGrid, aloft: CellGrid): PairSums {
   const zeros = () => new Float64Array(BANDS);
-  return {
-    lowest,
-    aloft,
+  const bands = (): BandSums => ({
     aloftZ: zeros(),
     lowestZ: zeros(),
     cells: zeros(),
     rounds: zeros(),
     sumDb: zeros(),
     sumDb2: zeros(),
-  };
+  });
+  return { lowest, aloft, of: { widespread: bands(), showers: bands() } };
 }
 
-/** Cells of the lowest sweep with widespread rain, by the rain around them so that no cell is chosen for its own chance. */
-function chooseCells({ z, convective }: CellGrid): Uint8Array {
-  const chosen = new Uint8Array(BANDS * SECTORS);
+/** Kinds of the cells of the lowest sweep, by the rain around them so that no cell is chosen for its own chance. */
+function kindsOfCells({ z, convective }: CellGrid): Uint8Array {
+  const kinds = new Uint8Array(BANDS * SECTORS).fill(LIGHT);
   for (let band = 0; band < BANDS; band++) {
     for (let sector = 0; sector < SECTORS; sector++) {
       let sum = 0;
@@ -138,20 +149,20 @@ function chooseCells({ z, convective }: CellGrid): Uint8Array {
           shower ||= convective === undefined ? value > SHOWER_Z : convective[cell] === 1;
         }
       }
-      if (!shower && sum > count * LIGHTEST_Z) chosen[band * SECTORS + sector] = 1;
+      if (sum > count * LIGHTEST_Z) kinds[band * SECTORS + sector] = shower ? SHOWERS : WIDESPREAD;
     }
   }
-  return chosen;
+  return kinds;
 }
 
-function addPair(sums: PairSums, lowest: CellGrid, aloft: CellGrid, chosen: Uint8Array): void {
+function addPair(sums: BandSums, lowest: CellGrid, aloft: CellGrid, kinds: Uint8Array, kind: number): void {
   for (let band = 0; band < BANDS; band++) {
     let aloftZ = 0;
     let lowestZ = 0;
     let cells = 0;
     for (let cell = band * SECTORS; cell < (band + 1) * SECTORS; cell++) {
       const [below, above] = [lowest.z[cell] as number, aloft.z[cell] as number];
-      if (chosen[cell] !== 1 || Number.isNaN(below) || Number.isNaN(above)) continue;
+      if (kinds[cell] !== kind || Number.isNaN(below) || Number.isNaN(above)) continue;
       aloftZ += above;
       lowestZ += below;
       cells++;
@@ -167,20 +178,21 @@ function addPair(sums: PairSums, lowest: CellGrid, aloft: CellGrid, chosen: Uint
   }
 }
 
-function ratiosOf(sums: PairSums): EchoRatio[] {
+function ratiosOf({ lowest, aloft, of }: PairSums, kind: RainKind): EchoRatio[] {
+  const sums = of[kind];
   const found: EchoRatio[] = [];
   for (let band = 0; band < BANDS; band++) {
     const rounds = sums.rounds[band] as number;
-    const aloftM = sums.aloft.centreM[band] as number;
-    const lowestM = sums.lowest.centreM[band] as number;
+    const aloftM = aloft.centreM[band] as number;
+    const lowestM = lowest.centreM[band] as number;
     if (rounds === 0 || Number.isNaN(aloftM) || Number.isNaN(lowestM)) continue;
     const meanDb = (sums.sumDb[band] as number) / rounds;
     const variance = Math.max(0, (sums.sumDb2[band] as number) / rounds - meanDb * meanDb);
     found.push({
       aloftM,
-      aloftSigmaM: sums.aloft.sigmaM[band] as number,
+      aloftSigmaM: aloft.sigmaM[band] as number,
       lowestM,
-      lowestSigmaM: sums.lowest.sigmaM[band] as number,
+      lowestSigmaM: lowest.sigmaM[band] as number,
       ratioDb: 10 * Math.log10((sums.aloftZ[band] as number) / (sums.lowestZ[band] as number)),
       errorDb: Math.sqrt(variance / rounds),
       rounds,

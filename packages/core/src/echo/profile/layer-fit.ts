@@ -40,11 +40,15 @@ export function modelledRatioDb(ratio: EchoRatio, profile: VerticalProfile): num
 export function ratioMisfit(ratios: readonly EchoRatio[], profile: VerticalProfile | undefined): number {
   let sum = 0;
   for (const ratio of ratios) {
-    const modelDb = profile === undefined ? 0 : modelledRatioDb(ratio, profile);
-    const errors = Math.abs(ratio.ratioDb - modelDb) / Math.hypot(ratio.errorDb, LEAST_ERROR_DB);
-    sum += errors < OUTLYING ? errors * errors : OUTLYING * (2 * errors - OUTLYING);
+    sum += outlierSafe(ratio, profile === undefined ? 0 : modelledRatioDb(ratio, profile));
   }
   return sum;
+}
+
+/** What a ratio adds to the chi-square of a model. */
+export function outlierSafe({ ratioDb, errorDb }: EchoRatio, modelDb: number): number {
+  const errors = Math.abs(ratioDb - modelDb) / Math.hypot(errorDb, LEAST_ERROR_DB);
+  return errors < OUTLYING ? errors * errors : OUTLYING * (2 * errors - OUTLYING);
 }
 
 /** Search stops when its steps have been halved so often. */

@@ -26,6 +26,8 @@ export interface LearnedProfile {
   readonly reason: string;
   readonly layer?: MeltingLayer | undefined;
   readonly profile?: VerticalProfile | undefined;
+  /** Share of the rain told to be convective that follows the profile nevertheless, 0 to 1; undefined if not measured. */
+  readonly convectiveShare?: number | undefined;
   /** Pairs of elevation and range band that the fit had, and what it leaves unexplained (root mean square). */
   readonly pairCount: number;
   readonly misfitDb: number;

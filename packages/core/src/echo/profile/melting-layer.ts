@@ -28,8 +28,12 @@ const LEAST_DROP = 0.02;
 const LEAST_PEAK_DB = 2;
 /** Points that must be there to tell the layer from the rain below. */
 const ENOUGH_POINTS = 8;
-/** A height is not known better than this, whatever the fit says; house rule. */
+/**
+ * A height is not known better than this, nor than this share of the distance and spread of the beam that comes
+ * closest to the layer, whatever the fit says: house rules.
+ */
 const LEAST_UNCERTAINTY_M = 50;
+const BEAM_SHARE = 0.25;
 
 /**
  * Learns the height of the melting layer from scans: where RHOHV is least and Z greatest by height, both as a beam of
@@ -163,7 +167,7 @@ class LayerEvidence {
     return fit !== undefined && fit.drop >= LEAST_DROP ? fit : undefined;
   }
 
-  /** Half the way in height between the places where the misfit has grown by one. */
+  /** Half the way in height between the places where the misfit has grown by one, and what beams can tell at best. */
   uncertaintyM([middleM, ...rest]: ProfileNumbers, least: number): number {
     let wide = 0;
     for (const sign of [1, -1]) {
@@ -174,6 +178,10 @@ class LayerEvidence {
       }
       wide += away / 2;
     }
-    return Math.max(LEAST_UNCERTAINTY_M, wide);
+    const beams = [
+      ...this.#ratios.map(({ aloftM, aloftSigmaM }) => Math.hypot(aloftM - middleM, aloftSigmaM)),
+      ...this.#means.map(({ centreM, sigmaM }) => Math.hypot(centreM - middleM, sigmaM)),
+    ];
+    return Math.max(LEAST_UNCERTAINTY_M, wide, BEAM_SHARE * Math.min(...beams));
   }
 }

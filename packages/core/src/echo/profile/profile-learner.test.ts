@@ -1,5 +1,6 @@
 import { expect, test } from "vitest";
 import type { PolarEcho } from "../polar-echo.ts";
+import { RAIN_TYPE } from "../rain-type/steiner.ts";
 import { type LayeredRain, roundsOf } from "./layered-rain.ts";
 import { layerBelowFreezing, MeltingLayerLearner } from "./melting-layer.ts";
 import { ProfileLearner } from "./profile-learner.ts";
@@ -117,6 +118,28 @@ test("a freezing height that the plan gives stands above what the scans say", ()
     },
   });
 });
+
+// A rain type may take strong widespread rain for showers; the volume says whether it did.
+test.each([
+  ["layered rain all through", planted, 1],
+  ["level rain in the showers", level, 0],
+] as const)(
+  "told to be showers, half of the circle, %s: share that follows the profile",
+  (_, inShowers, share) => {
+    const profiles = new ProfileLearner();
+    const showers = roundsOf({ ...rain, profile: inShowers }, 3).flat();
+    const half = 90 * 50;
+    const types = new Uint8Array(2 * half).fill(RAIN_TYPE.stratiform).fill(RAIN_TYPE.convective, 0, half);
+    for (const [k, echo] of roundsOf(rain, 3).flat().entries()) {
+      echo.dbz.set((showers[k] as PolarEcho).dbz.subarray(0, half));
+      profiles.add(echo, types);
+    }
+    const layer = { bottomM: 1500, topM: 1940, basis: "scans", uncertaintyM: 50 } as const;
+    const learned = profiles.finish(layer);
+    expect(learned.basis).toBe("measured");
+    expect(Math.abs((learned.convectiveShare ?? Number.NaN) - share)).toBeLessThanOrEqual(0.05);
+  },
+);
 
 test("what is screened does not teach", () => {
   const rounds = roundsOf(rain, 2);

@@ -1,10 +1,18 @@
+import { decibels, ratioFromDecibels } from "../../units.ts";
 import type { PolarEcho } from "../polar-echo.ts";
 import { type EchoRatio, EchoRatios } from "./echo-ratios.ts";
 import type { BeamSettings } from "./gate-table.ts";
-import { leastNear, modelledRatioDb, type ProfileNumbers, profileOf, ratioMisfit } from "./layer-fit.ts";
+import {
+  leastNear,
+  modelledRatioDb,
+  outlierSafe,
+  type ProfileNumbers,
+  profileOf,
+  ratioMisfit,
+} from "./layer-fit.ts";
 import type { LearnedProfile, MeltingLayer } from "./learned-profile.ts";
 import { PROFILE_LIMITS, PROFILE_STEPS } from "./melting-layer.ts";
-import { idealisedProfile, USUAL_PROFILE } from "./vertical-profile.ts";
+import { beamProfileDb, idealisedProfile, USUAL_PROFILE, type VerticalProfile } from "./vertical-profile.ts";
 
 /** Snow that is farther above the layer than this may fall off otherwise; house rule. */
 const SNOW_DEPTH_M = 3000;
@@ -36,7 +44,9 @@ export class ProfileLearner {
 
   /** @param layer - from the scans or the plan; undefined means that nothing will be corrected */
   finish(layer: MeltingLayer | undefined): LearnedProfile {
-    return fitProfile(this.#ratios.ratios(), layer);
+    const learned = fitProfile(this.#ratios.ratios(), layer);
+    if (learned.basis !== "measured" || learned.profile === undefined) return learned;
+    return { ...learned, convectiveShare: shareInShowers(this.#ratios.ratios("showers"), learned.profile) };
   }
 }
 
@@ -102,4 +112,37 @@ export function fitProfile(all: readonly EchoRatio[], layer: MeltingLayer | unde
     pairCount: ratios.length,
     misfitDb,
   };
+}
+
+/** Steps in which the share of showers that follow the profile is tried. */
+const SHARE_STEPS = 20;
+/** A pair of beams tells the share where the profile makes so much difference between them. */
+const TELLING_DB = 1;
+
+/**
+ * How much of the rain in cells of showers has the profile of widespread rain, the rest being level: least squares on
+ * a mixture of the two. A rain type told from echo takes strong widespread rain for showers; how often, the volume says.
+ */
+function shareInShowers(all: readonly EchoRatio[], profile: VerticalProfile): number | undefined {
+  const telling = all
+    .filter(({ aloftM }) => aloftM < profile.topM + SNOW_DEPTH_M)
+    .map((ratio) => ({
+      ratio,
+      aloft: ratioFromDecibels(beamProfileDb(profile, ratio.aloftM, ratio.aloftSigmaM)),
+      lowest: ratioFromDecibels(beamProfileDb(profile, ratio.lowestM, ratio.lowestSigmaM)),
+    }))
+    .filter(({ aloft, lowest }) => Math.abs(decibels(aloft / lowest)) > TELLING_DB);
+  if (telling.length < ENOUGH_RATIOS) return undefined;
+  let best = 0;
+  let least = Number.POSITIVE_INFINITY;
+  for (let step = 0; step <= SHARE_STEPS; step++) {
+    const share = step / SHARE_STEPS;
+    const misfit = telling.reduce(
+      (sum, { ratio, aloft, lowest }) =>
+        sum + outlierSafe(ratio, decibels((1 + share * (aloft - 1)) / (1 + share * (lowest - 1)))),
+      0,
+    );
+    if (misfit < least) [best, least] = [share, misfit];
+  }
+  return best;
 }
