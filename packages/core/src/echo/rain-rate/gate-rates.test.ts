@@ -123,7 +123,10 @@ describe("R(KDP) in heavy rain", () => {
   });
 
   test("has half a say midway between 45 and 53 dBZ, none at 45", () => {
-    const settings = { ...ALL, polarimetric: { ...POLARIMETRIC_RATE_DEFAULTS, dropNumber: false } };
+    const settings = {
+      ...PLAIN,
+      polarimetric: { ...POLARIMETRIC_RATE_DEFAULTS, dropNumber: false, zZdrShare: 0 },
+    };
     const byZ = rainRateMmPerHour(49, RELATION);
     const byKdp = rateOfKdp(1.5, kdpLaw(2.8));
     expect(rateOf({ ...rain, dbz: 49, kdpDegPerKm: 1.5 }, settings).rate).toBeCloseTo((byZ + byKdp) / 2, 4);
@@ -156,6 +159,40 @@ describe("R(KDP) in heavy rain", () => {
     );
     const rates = gateRates(echo, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M));
     expect(Math.abs(rates.rateMmPerHour[40] / (40.5 * 2 ** 0.85) - 1)).toBeLessThan(1e-6);
+  });
+});
+
+describe("R(Z, ZDR) in moderate rain", () => {
+  const rain = { dbz: 38, zdrDb: 1.2, rhohv: 0.99 };
+  const byZ = rainRateMmPerHour(38, RELATION);
+  /** 6.7e-3 Z^0.927 10^(-0.343 ZDR), by hand: 6.7e-3 · 10^(3.5226 − 0.4116) = 8.65 mm/h. */
+  const byZZdr = 6.7e-3 * 10 ** (0.927 * 3.8 - 0.343 * 1.2);
+
+  test("has half a say at S band, by the published law", () => {
+    expect(byZZdr).toBeCloseTo(8.65, 2);
+    expect(rateOf(rain, POLARIMETRIC).rate).toBeCloseTo((byZ + byZZdr) / 2, 4);
+  });
+
+  test("has none at C band, unless it is set", () => {
+    const rateAt = (settings: GateRateSettings) =>
+      gateRates(
+        testEcho(9, 9, () => rain, 0.053),
+        undefined,
+        settings,
+        rateTables(settings, 0.053),
+      ).rateMmPerHour[40];
+    expect(rateAt(POLARIMETRIC)).toBeCloseTo(byZ, 4);
+    const all = { ...PLAIN, polarimetric: { ...POLARIMETRIC_RATE_DEFAULTS, zZdrShare: 1 } };
+    expect(rateAt(all)).toBeCloseTo(5.8e-3 * 10 ** (0.91 * 3.8 - 0.209 * 1.2), 4);
+  });
+
+  test.each([
+    ["light rain", { ...rain, dbz: 28 }],
+    ["rain near the cap", { ...rain, dbz: 48 }],
+    ["a low correlation", { ...rain, rhohv: 0.97 }],
+    ["no ZDR", { dbz: 38, rhohv: 0.99 }],
+  ])("has none in %s", (_, gate) => {
+    expect(rateOf(gate, POLARIMETRIC).rate).toBeCloseTo(rainRateMmPerHour(gate.dbz, RELATION), 4);
   });
 });
 

@@ -38,8 +38,12 @@ export interface RateParts {
  */
 const KDP_DBZ = { from: 45, to: 53 } as const;
 const KDP_DEG_PER_KM = { from: 0.2, to: 0.5 } as const;
-const Z_ZDR_DBZ = { from: 28, to: 35 } as const;
+const Z_ZDR_DBZ = { from: 28, full: 35, fading: 42, to: 48 } as const;
 const ATTENUATION_DBZ = { from: 25, to: 35 } as const;
+/** Drop number's factor beyond which R(Z, ZDR), made for the usual number, is out. */
+const Z_ZDR_MOST_FACTOR = 1.5;
+/** RHOHV of rain without a trace of hail, which lowers ZDR. */
+const Z_ZDR_CORRELATION = { from: 0.97, to: 0.985 } as const;
 /** RHOHV of rain alone. */
 const RAIN_CORRELATION = { from: 0.95, to: 0.98 } as const;
 
@@ -73,6 +77,7 @@ export class RateBlender {
   readonly #tables: RateTables;
   readonly #attenuation: Float32Array | undefined;
   readonly #reader: MomentReader;
+  readonly #zZdrShare: number;
   /** Echo below it has no polarimetric part. */
   readonly #plainBelowDbz: number;
 
@@ -97,6 +102,8 @@ export class RateBlender {
         : Math.min(27, Z_ZDR_DBZ.from, ATTENUATION_DBZ.from);
     this.dropNumberFactor =
       polarimetric?.dropNumber === true ? dropNumberFactor(echo, rainType, tables, this.#reader) : 1;
+    const unusual = ramp(Math.abs(Math.log(this.dropNumberFactor)), 0, Math.log(Z_ZDR_MOST_FACTOR));
+    this.#zZdrShare = polarimetric === undefined ? 0 : (1 - unusual) * tables.zZdrShare;
   }
 
   /** @param gate - one with echo */
@@ -138,22 +145,26 @@ export class RateBlender {
     const { laws } = this.#tables;
     const { polarimetric } = this.#settings;
     if (laws === undefined || polarimetric === undefined) return;
-    const { kdpShare, kdpZdrPart, zZdrShare, attenuationShare } = polarimetric;
+    const { kdpShare, kdpZdrPart, attenuationShare } = polarimetric;
+    const mayUseZdr = this.#zZdrShare > 0 && dbz > Z_ZDR_DBZ.from && dbz < Z_ZDR_DBZ.to;
     const parts = this.parts;
     const reader = this.#reader;
     const most = mostPolarimetric(ready);
     const rhohv = reader.rhohv(gate);
     const rainLike = Number.isNaN(rhohv) ? 1 : ramp(rhohv, RAIN_CORRELATION.from, RAIN_CORRELATION.to);
     const asksForHail = this.seesHail && mayBeHail(dbz, rhohv);
-    const needsZdr = asksForHail || zZdrShare > 0 || kdpZdrPart > 0;
+    const needsZdr = asksForHail || mayUseZdr || kdpZdrPart > 0;
     const zdr = needsZdr ? reader.zdrDb(gate) : Number.NaN;
     const zdrTrust = needsZdr ? reader.trust : 0;
     parts.zdrDb = zdr;
     if (asksForHail) parts.hailShare = zdrTrust * hailShare(dbz, zdr, rhohv);
     let rate = parts.zRate;
-    if (zZdrShare > 0 && zdrTrust > 0) {
+    if (mayUseZdr && zdrTrust > 0) {
       parts.zZdrRate = Math.min(most, rateOfZZdr(Math.min(dbz, ready.capDbz), zdr, laws.zZdr));
-      parts.zZdrShare = zZdrShare * zdrTrust * rainLike * ramp(dbz, Z_ZDR_DBZ.from, Z_ZDR_DBZ.to);
+      const correlation = Number.isNaN(rhohv) ? 1 : ramp(rhohv, Z_ZDR_CORRELATION.from, Z_ZDR_CORRELATION.to);
+      const { from, full, fading, to } = Z_ZDR_DBZ;
+      parts.zZdrShare =
+        this.#zZdrShare * zdrTrust * correlation * ramp(dbz, from, full) * (1 - ramp(dbz, fading, to));
       rate += parts.zZdrShare * (parts.zZdrRate - rate);
     }
     const attenuation = attenuationShare > 0 ? this.#attenuation?.[gate] : undefined;

@@ -15,8 +15,8 @@ export interface PolarimetricRateSettings {
   readonly kdpShare: number;
   /** Part of R(KDP) that R(KDP, ZDR) takes over where ZDR is measured. */
   readonly kdpZdrPart: number;
-  /** Share of R(Z, ZDR) in moderate rain. */
-  readonly zZdrShare: number;
+  /** Share of R(Z, ZDR) in moderate rain; undefined takes what the band usually has. */
+  readonly zZdrShare?: number | undefined;
   /** Share of R(A) in moderate and heavy rain, where a specific attenuation is given. */
   readonly attenuationShare: number;
 }
@@ -36,14 +36,13 @@ export interface GateRateSettings {
 
 /**
  * House rule, from what helps in storms with known rain: R(KDP) in the heaviest rain and under hail, the number
- * of drops over whole sweeps. R(Z, ZDR) and R(A) are there to be asked for.
+ * of drops over whole sweeps, R(Z, ZDR) at S band. R(KDP, ZDR) and R(A) are there to be asked for.
  */
 export const POLARIMETRIC_RATE_DEFAULTS: PolarimetricRateSettings = {
   dropNumber: true,
   hail: true,
   kdpShare: 1,
   kdpZdrPart: 0,
-  zZdrShare: 0,
   attenuationShare: 0,
 };
 
@@ -74,8 +73,8 @@ export function rateTables(
       `a rate needs a finite cut-off of 0 or more and a finite ZDR offset, got ${minRateMmPerHour} mm/h, ${zdrOffsetDb} dB`,
     );
   }
-  const { kdpShare = 0, kdpZdrPart = 0, zZdrShare = 0, attenuationShare = 0 } = polarimetric ?? {};
-  for (const share of [kdpShare, kdpZdrPart, zZdrShare, attenuationShare]) {
+  const { kdpShare = 0, kdpZdrPart = 0, zZdrShare, attenuationShare = 0 } = polarimetric ?? {};
+  for (const share of [kdpShare, kdpZdrPart, zZdrShare ?? 0, attenuationShare]) {
     if (!(share >= 0 && share <= 1)) throw new RangeError(`a share lies between 0 and 1, got ${share}`);
   }
   const ready = readyRelation(relation, cap);
@@ -84,9 +83,11 @@ export function rateTables(
   byType[RAIN_TYPE.stratiform] = readyRelation(stratiform, cap);
   // Where snow is said to fall, no law of rain has a say.
   const isForSnow = byType.some((one) => one.relation.phase === "snow");
+  const laws = wavelengthM === undefined || isForSnow ? undefined : bandLaws(wavelengthM);
   return {
     byType,
-    laws: wavelengthM === undefined || isForSnow ? undefined : bandLaws(wavelengthM),
+    laws,
+    zZdrShare: zZdrShare ?? laws?.usualZZdrShare ?? 0,
     zdrOffsetDb,
     dropNumberRatio: dropNumber === undefined ? undefined : learnedDropNumberRatio(dropNumber, ready),
   };
