@@ -31,15 +31,16 @@ export interface AblationOptions {
   readonly steps: boolean;
   readonly cache: string;
   readonly workers: number;
-  readonly json: string | undefined;
+  /** A file of results: what it holds is not measured again. */
+  readonly results: string | undefined;
 }
 
-export const USAGE = `npm run bench -- ablation [--worlds a,b] [--seeds 1-2,5] [--size small|full] [--steps] [--workers 1|2] [--cache DIR] [--json FILE]
+export const USAGE = `npm run bench -- ablation [--worlds a,b] [--seeds 1-2,5] [--size small|full] [--steps] [--workers 1|2] [--cache DIR] [--results FILE]
   --worlds A,B   ${RADAR_WORLDS.join(", ")}   [all of them]
   --seeds LIST   1 to 10 are for tuning, 11 to 30 for reporting   [1]
   --steps        each step added in turn, and each removed alone, too
   --cache DIR    where worlds are made and kept; RAINRECKON_WORLDS says it too   [a folder in the temp folder]
-  --json FILE    all scores, for tables of one's own`;
+  --results FILE a line of JSON for each world and seed; what this state of the code measured before is not measured again`;
 
 /** @throws Error with the usage where the words make no sense */
 export function ablationOptions(args: readonly string[]): AblationOptions {
@@ -53,7 +54,7 @@ export function ablationOptions(args: readonly string[]): AblationOptions {
       headline: { type: "boolean", default: false },
       workers: { type: "string", default: "1" },
       cache: { type: "string" },
-      json: { type: "string" },
+      results: { type: "string" },
     },
   });
   const worlds = values.worlds?.split(",") ?? RADAR_WORLDS;
@@ -71,7 +72,7 @@ export function ablationOptions(args: readonly string[]): AblationOptions {
       values.cache ?? process.env.RAINRECKON_WORLDS ?? path.join(os.tmpdir(), "rainreckon-worlds"),
     ),
     workers: Number(values.workers),
-    json: values.json,
+    results: values.results,
   };
 }
 

@@ -1,7 +1,7 @@
 import { type Column, textTable } from "../../src/ui/table.ts";
 import type { Measured, TwoScores, VariantScore } from "./measure.ts";
 import { median, RANGE_BANDS_KM } from "./scores.ts";
-import { ALL, CAPPED_AND_MASKED, RAW, STEP_WITHOUT_WORK, without } from "./variants.ts";
+import { ALL, CAPPED_AND_MASKED, RAW, STEP_WITHOUT_WORK, STEPS, without } from "./variants.ts";
 
 const BANDS = [...RANGE_BANDS_KM.map((km) => `<${km} km`), "beyond"];
 const right = (head: string): Column => ({ head, align: "right" });
@@ -97,6 +97,87 @@ export function worldTable(runs: readonly Measured[]): string {
     `${runs[0].world}, seed${runs.length > 1 ? "s" : ""} ${seeds}: ${runs[0].cells} cells, ${leftOut} left out that some variant did not observe`,
     textTable(columns, rows),
   ].join("\n");
+}
+
+/** Runs of each world, in the order in which they come. */
+function byWorld(runs: readonly Measured[]): ReadonlyMap<string, readonly Measured[]> {
+  const worlds = new Map<string, Measured[]>();
+  for (const run of runs) worlds.set(run.world, [...(worlds.get(run.world) ?? []), run]);
+  return worlds;
+}
+
+/** A line a world: how far raw, masked and all are from the truth; of several seeds the medians. */
+export function summaryTable(runs: readonly Measured[]): string {
+  const columns = [
+    { head: "world" },
+    ...[
+      "seeds",
+      "raw mm",
+      "masked mm",
+      "all mm",
+      "of raw",
+      "raw mm*",
+      "masked mm*",
+      "all mm*",
+      "of masked*",
+    ].map(right),
+    ...["bias raw", "bias masked", "bias all", "corr. raw", "corr. all", "left out"].map(right),
+  ];
+  const rows = [...byWorld(runs)].map(([world, some]) => {
+    const over = (name: string, figure: (score: VariantScore, run: Measured) => number) =>
+      median(some.map((run) => figure(scoreOf(run, name), run)));
+    const names = [RAW.name, CAPPED_AND_MASKED.name, ALL.name];
+    return [
+      world,
+      String(some.length),
+      ...names.map((name) =>
+        digits(
+          over(name, ({ all }) => all.rmseMm),
+          2,
+        ),
+      ),
+      percent(over(ALL.name, (score, run) => ratios(run, score)[0])),
+      ...names.map((name) =>
+        digits(
+          over(name, ({ clutterFree }) => clutterFree.rmseMm),
+          2,
+        ),
+      ),
+      percent(over(ALL.name, (score, run) => ratios(run, score)[1])),
+      ...names.map((name) =>
+        digits(
+          over(name, ({ all }) => all.biasRatio),
+          2,
+        ),
+      ),
+      ...[RAW.name, ALL.name].map((name) =>
+        digits(
+          over(name, ({ all }) => all.correlation),
+          3,
+        ),
+      ),
+      digits(median(some.map(({ leftOutCells }) => leftOutCells)), 0),
+    ];
+  });
+  return `RMSE, bias and correlation of the storm total by world, medians over seeds\n${textTable(columns, rows)}`;
+}
+
+/** What each step is worth: by how much the RMSE grows without it. Steps by worlds. */
+export function stepTable(runs: readonly Measured[]): string {
+  const worlds = byWorld(runs);
+  const rows = STEPS.map(({ name }) => [
+    name,
+    ...[...worlds.values()].map((some) => {
+      const growth = median(
+        some.map(
+          (run) => scoreOf(run, without(name).name).all.rmseMm / scoreOf(run, ALL.name).all.rmseMm - 1,
+        ),
+      );
+      return `${growth > 0 ? "+" : ""}${(100 * growth).toFixed(0)}`;
+    }),
+  ]);
+  const columns = [{ head: "without" }, ...[...worlds.keys()].map((world) => right(world))];
+  return `RMSE without one step, against all, in %, all cells: above 0 the step pays\n${textTable(columns, rows)}`;
 }
 
 const judged = (met: boolean) => (met ? "met" : "NOT MET");
