@@ -53,6 +53,17 @@ export const manifestSchema = z.strictObject({
       ),
       gates: z.record(z.string(), z.number().int()),
       learned: z.record(z.string(), z.array(z.string())),
+      /** Proposed, never applied. */
+      calibration: z.array(
+        z.strictObject({
+          radar: z.string(),
+          errorDb: z.number().nullable(),
+          lowDb: z.number().nullable(),
+          highDb: z.number().nullable(),
+          proposedOffsetDb: z.number().nullable(),
+          reason: z.string(),
+        }),
+      ),
     })
     .nullable(),
 });

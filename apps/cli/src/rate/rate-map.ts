@@ -46,7 +46,7 @@ export async function makeRateMap(planPath: string, out: string, terminal: Termi
   const radars = await indexScans(loaded, log, (input) => inputs.push(input), indexing);
   indexing.end();
   const toMs = Date.parse(loaded.plan.window.to);
-  const jobs = await learnFor(
+  const { radars: jobs } = await learnFor(
     radars.map((radar) => jobRadar(radar, loaded, undefined, log)),
     loaded,
     log,

@@ -4,6 +4,7 @@ import { parsePlanDocument } from "../plan/load.ts";
 import { DEFAULT_RELATION } from "../plan/schema.ts";
 import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
+import { calibrationProposals, proposalWords } from "./calibration.ts";
 import type { ArealFigure } from "./figures.ts";
 import { isAtCap } from "./figures.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -95,6 +96,10 @@ export function runCautions(
       say(
         `"${id}" came as rain: no relation of this run plays a part in it, and its figures under other relations are the same.`,
       );
+  }
+  for (const proposal of calibrationProposals(run, comparison)) {
+    const words = proposalWords(proposal);
+    if (words !== undefined) say(words.text, words.detail);
   }
   if (district.observedFraction < plan.rain.minObserved) {
     say(

@@ -1,5 +1,7 @@
-import { type LearnedEcho, SCREENS, type Screen } from "@rainreckon/core";
+import { type CalibrationProposal, type LearnedEcho, SCREENS, type Screen } from "@rainreckon/core";
+import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
+import { calibrationProposals } from "./calibration.ts";
 import { COMPANIONS, companionIndex } from "./companions.ts";
 import type { PreparedRun } from "./prepare.ts";
 
@@ -37,10 +39,15 @@ export interface EchoAccount {
   };
   /** By site id. */
   readonly learned: ReadonlyMap<string, LearnedEcho>;
+  readonly calibration: readonly CalibrationProposal[];
 }
 
 /** @returns undefined where no echo of the run was worked on */
-export function echoAccount(run: PreparedRun, total: AssembledRun): EchoAccount | undefined {
+export function echoAccount(
+  run: PreparedRun,
+  total: AssembledRun,
+  comparison: Comparison,
+): EchoAccount | undefined {
   const worked = run.shape.radars.filter(({ echo }) => echo !== undefined);
   if (worked.length === 0) return undefined;
   const { counts, planes } = total;
@@ -72,6 +79,7 @@ export function echoAccount(run: PreparedRun, total: AssembledRun): EchoAccount 
       snow: counts.gatesSnow,
       besideCores: counts.gatesBesideCores,
     },
+    calibration: calibrationProposals(run, comparison),
     learned: new Map(worked.map(({ site, echo }) => [site.id, (echo as { learned: LearnedEcho }).learned])),
   };
 }
@@ -124,12 +132,14 @@ function meanByDepth({ district }: PreparedRun, { sum }: AssembledRun, plane: Fl
 }
 
 /** What a run learned of a radar, one statement each, for people. */
-export function learnedWords(learned: LearnedEcho): string[] {
+function learnedWords(learned: LearnedEcho, proposal?: CalibrationProposal): string[] {
   const words: string[] = [`learned from ${learned.roundCount} rounds`];
   const { systemPhaseDeg, alphaDbPerDeg } = learned.attenuation;
   if (systemPhaseDeg !== undefined) words.push(`phase of the system ${systemPhaseDeg.toFixed(1)}°`);
   if (alphaDbPerDeg !== undefined)
     words.push(`two-way loss in rain ${alphaDbPerDeg.toFixed(3)} dB per degree of PHIDP`);
+  if (proposal !== undefined) words.push(`calibration: ${proposal.reason}`);
+  if (learned.zdrOffsetDb !== 0) words.push(`its ZDR reads ${learned.zdrOffsetDb.toFixed(2)} dB too high`);
   const { profile } = learned;
   if (profile !== undefined) {
     const { layer, basis, reason } = profile;
@@ -140,4 +150,15 @@ export function learnedWords(learned: LearnedEcho): string[] {
     );
   }
   return words;
+}
+
+/** {@link learnedWords} of every radar, by site id. */
+export function wordsByRadar({ learned, calibration }: EchoAccount): [string, string[]][] {
+  return [...learned].map(([id, one]) => [
+    id,
+    learnedWords(
+      one,
+      calibration.find(({ siteId }) => siteId === id),
+    ),
+  ]);
 }

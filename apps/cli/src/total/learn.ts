@@ -2,6 +2,7 @@ import path from "node:path";
 import {
   attenuationLine,
   BlockageLearner,
+  ConsistencyLearner,
   DropNumberLearner,
   EchoChain,
   type EchoSettings,
@@ -13,7 +14,9 @@ import {
   layerBelowFreezing,
   MeltingLayerLearner,
   NOTHING_LEARNED,
+  type OverlapDifference,
   type OverlapPairs,
+  overlapDifference,
   type PolarEcho,
   ProfileLearner,
   phaseCoefficients,
@@ -71,13 +74,14 @@ interface Pupil extends Learner {
   readonly profile: ProfileLearner;
   readonly zdrOffset: ZdrOffsetLearner;
   readonly dropNumber: DropNumberLearner;
+  readonly consistency: ConsistencyLearner;
 }
 
 /** What a run taught: of each radar, and of each two that see the same rain. */
 export interface Lesson {
   /** In the order of the learners. */
   readonly learned: readonly LearnedEcho[];
-  readonly overlaps: readonly OverlapPairs[];
+  readonly overlaps: readonly OverlapDifference[];
 }
 
 /**
@@ -112,7 +116,10 @@ export async function learnEchoes(
     grid,
   );
   settleProfile(pupils, loaded.plan.echo.profile.freezingHeightAslM);
-  return { learned: pupils.map(({ known }) => known), overlaps };
+  return {
+    learned: pupils.map(({ known }) => known),
+    overlaps: overlaps.map((pairs) => differenceOf(pairs, pupils)).filter((one) => one !== undefined),
+  };
 }
 
 function pupil(
@@ -146,6 +153,7 @@ function pupil(
     profile: new ProfileLearner(settings.profile),
     zdrOffset: new ZdrOffsetLearner(),
     dropNumber: new DropNumberLearner(),
+    consistency: new ConsistencyLearner(),
   };
 }
 
@@ -241,6 +249,19 @@ function settleLoss(
   }
 }
 
+/** How much more one radar of a pair shows than the other. */
+function differenceOf(pairs: OverlapPairs, pupils: readonly Pupil[]): OverlapDifference | undefined {
+  const lossOf = (siteId: string) => {
+    const wavelengthM = pupils.find(({ radar }) => radar.site.id === siteId)?.radar.wavelengthM;
+    return wavelengthM === undefined ? undefined : phaseCoefficients(wavelengthM)?.loss.dbPerDeg;
+  };
+  const [oneDbPerDeg, otherDbPerDeg] = [lossOf(pairs.oneSiteId), lossOf(pairs.otherSiteId)];
+  return overlapDifference(
+    pairs,
+    oneDbPerDeg === undefined || otherDbPerDeg === undefined ? undefined : { oneDbPerDeg, otherDbPerDeg },
+  );
+}
+
 function fromNeighbours(
   { radar }: Pupil,
   pupils: readonly Pupil[],
@@ -263,7 +284,7 @@ function fromNeighbours(
 /** Third reading: echo corrected by all that is known by now. */
 function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningInstant[], grid: Grid): void {
   for (const one of pupils) {
-    const { radar, settings, rainType, layer, profile, zdrOffset, dropNumber } = one;
+    const { radar, settings, rainType, layer, profile, zdrOffset, dropNumber, consistency } = one;
     const chain = new EchoChain({ ...settings, profile: undefined }, one.known);
     for (const { rounds } of instants) {
       const round = rounds.get(radar);
@@ -272,6 +293,7 @@ function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningIns
         chain.correct(echo, above);
         zdrOffset.add(echo);
         dropNumber.add(echo);
+        consistency.add(echo);
         if (settings.profile === undefined) return;
         const type = rainType ? rainTypeOfGates(lookupOf(grid, radar, echo), grid, echo.dbz) : undefined;
         layer.add(echo, type);
@@ -282,6 +304,7 @@ function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningIns
       ...one.known,
       zdrOffsetDb: zdrOffset.finish().offsetDb,
       dropNumber: dropNumber.finish(),
+      consistency: consistency.finish(),
     };
   }
 }

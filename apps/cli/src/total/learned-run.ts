@@ -1,4 +1,4 @@
-import type { LearnedEcho } from "@rainreckon/core";
+import type { LearnedEcho, OverlapDifference } from "@rainreckon/core";
 import { type LearnedValue, writeLearned } from "@rainreckon/formats";
 import type { LoadedPlan } from "../plan/load.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
@@ -23,25 +23,26 @@ export function learnsBeforehand({ shape }: PreparedRun): boolean {
 
 /** The run with what its scans teach of its radars in the job of every unit. */
 export async function learnBeforehand(run: PreparedRun, log: LeftOutLog): Promise<PreparedRun> {
-  const radars = await learnFor(run.shape.radars, run.loaded, log);
-  return { ...run, shape: { ...run.shape, radars } };
+  const { radars, overlaps } = await learnFor(run.shape.radars, run.loaded, log);
+  return { ...run, shape: { ...run.shape, radars }, overlaps };
 }
 
-/** Radars with what their scans teach; one whose echo is not worked on stays as it is. */
+/** Radars with what their scans teach, and how they compare; one whose echo is not worked on stays as it is. */
 export async function learnFor(
   radars: readonly JobRadar[],
   loaded: LoadedPlan,
   log: LeftOutLog,
-): Promise<JobRadar[]> {
+): Promise<{ readonly radars: readonly JobRadar[]; readonly overlaps: readonly OverlapDifference[] }> {
   const worked = radars.filter(isWorked);
-  if (worked.length === 0) return [...radars];
-  const { learned } = await learnEchoes(
+  if (worked.length === 0) return { radars, overlaps: [] };
+  const { learned, overlaps } = await learnEchoes(
     worked.map((radar) => ({ radar, ...radar.echo })),
     loaded.plan.grid,
     loaded,
     log,
   );
-  return withKnowledge(radars, new Map(worked.map(({ site }, k) => [site.id, learned[k] as LearnedEcho])));
+  const bySite = new Map(worked.map(({ site }, k) => [site.id, learned[k] as LearnedEcho]));
+  return { radars: withKnowledge(radars, bySite), overlaps };
 }
 
 /** The run with what is known of its radars, by site id. */

@@ -26,7 +26,7 @@ import {
 } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { STANDING_CAUTIONS } from "./cautions.ts";
-import { echoAccount, learnedWords, shownCompanions } from "./echo-account.ts";
+import { echoAccount, shownCompanions, wordsByRadar } from "./echo-account.ts";
 import { bestMm, type CatchmentFigure, catchmentFigures, isAtCap } from "./figures.ts";
 import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -359,8 +359,8 @@ function adjustmentLines({ adjustment, choice }: Comparison): string[] {
 }
 
 /** What was done to the echo before it became rain, for people who have only the files. */
-function echoLines({ run, total }: OutputSources): string[] {
-  const account = echoAccount(run, total);
+function echoLines({ run, total, comparison }: OutputSources): string[] {
+  const account = echoAccount(run, total, comparison);
   if (account === undefined) return [];
   return [
     "From echo to rain",
@@ -368,7 +368,7 @@ function echoLines({ run, total }: OutputSources): string[] {
     ...shownCompanions(total).map(({ name, longName }) => `  ${name.padEnd(34)}  ${longName}`),
     "  A toll (screened_depth_…) is the depth that screened echo would have made, each gate under the first screen that",
     "  took it, each round standing for one median round; it is no part of the total.",
-    ...[...account.learned].map(([id, learned]) => `  radar ${id}: ${learnedWords(learned).join("; ")}`),
+    ...wordsByRadar(account).map(([id, words]) => `  radar ${id}: ${words.join("; ")}`),
     "",
   ];
 }

@@ -9,6 +9,7 @@ import {
   midEpochMs,
   NOTHING_LEARNED,
   type Notice,
+  type OverlapDifference,
   type ZrRelation,
 } from "@rainreckon/core";
 import { readCatchments } from "@rainreckon/formats";
@@ -48,6 +49,8 @@ export interface PreparedRun {
   readonly headlineRelations: readonly { readonly name: string; readonly relation: ZrRelation }[];
   readonly shape: RunShape;
   readonly jobs: readonly UnitJob[];
+  /** How radars compare in the same rain; known once the run has learned. */
+  readonly overlaps: readonly OverlapDifference[];
   readonly inputs: readonly ManifestInput[];
   /** SHA-256 of plan, inputs, program and what was said of them: the same digest means the same bytes. */
   readonly runDigest: string;
@@ -135,6 +138,7 @@ export async function prepareRun(
     headlineRelations,
     shape,
     jobs: cutIntoUnits(intervals, stepMs, [...shape.radars, ...shape.grids]),
+    overlaps: [],
     inputs: sorted,
     runDigest,
   };

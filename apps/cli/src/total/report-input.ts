@@ -24,7 +24,7 @@ import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import { relationOf } from "./conversion.ts";
-import { echoAccount, learnedWords, screenedDepthMm } from "./echo-account.ts";
+import { echoAccount, screenedDepthMm, wordsByRadar } from "./echo-account.ts";
 import {
   type ArealFigure,
   adjustedSteps,
@@ -151,7 +151,7 @@ export function reportInput(sources: ReportSources): ReportInput {
       radar: reportScores(comparison.before),
       crossValidated: "whole" in comparison.after ? reportScores(comparison.after) : [],
     },
-    ...echoStatement(run, total),
+    ...echoStatement(sources),
     accounts: accountsOf(sources),
     provenance: {
       software: `rainreckon ${version()}`,
@@ -353,14 +353,14 @@ function reportScores(table: ScoreTable): ReportScore[] {
   ];
 }
 
-function echoStatement(run: PreparedRun, total: AssembledRun): Pick<ReportInput, "echo"> {
-  const account = echoAccount(run, total);
+function echoStatement({ run, total, comparison }: ReportSources): Pick<ReportInput, "echo"> {
+  const account = echoAccount(run, total, comparison);
   if (account === undefined) return {};
   return {
     echo: {
       screens: account.screens.map(({ screen, ...toll }) => ({ name: screen.replaceAll("-", " "), ...toll })),
       corrections: account.corrections.map(({ correction, ...effect }) => ({ name: correction, ...effect })),
-      radars: [...account.learned].map(([id, learned]) => ({ id, statements: learnedWords(learned) })),
+      radars: wordsByRadar(account).map(([id, statements]) => ({ id, statements })),
     },
   };
 }

@@ -15,7 +15,7 @@ import { sumAdjusted } from "./adjust.ts";
 import { compareWithGauges } from "./against-gauges.ts";
 import { type AssembledRun, assemble } from "./assemble.ts";
 import { runCautions, STANDING_CAUTIONS } from "./cautions.ts";
-import { echoAccount, learnedWords } from "./echo-account.ts";
+import { echoAccount, wordsByRadar } from "./echo-account.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
 import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
@@ -256,18 +256,27 @@ async function manifestOf(
       }),
       cautions: [...cautions, ...STANDING_CAUTIONS],
     },
-    echo: manifestEcho(run, total),
+    echo: manifestEcho(sources),
   };
 }
 
-function manifestEcho(run: PreparedRun, total: AssembledRun): Manifest["echo"] {
-  const account = echoAccount(run, total);
+function manifestEcho(sources: Pick<OutputSources, "run" | "total" | "comparison">): Manifest["echo"] {
+  const account = echoAccount(sources.run, sources.total, sources.comparison);
   if (account === undefined) return null;
-  const { screens, corrections, gates, learned } = account;
+  const { screens, corrections, gates, calibration } = account;
+  const known = (db: number) => (Number.isFinite(db) ? db : null);
   return {
     screens: [...screens],
     corrections: [...corrections],
     gates: { ...gates },
-    learned: Object.fromEntries([...learned].map(([id, one]) => [id, learnedWords(one)])),
+    learned: Object.fromEntries(wordsByRadar(account)),
+    calibration: calibration.map(({ siteId, errorDb, lowDb, highDb, offsetDb, reason }) => ({
+      radar: siteId,
+      errorDb: known(errorDb),
+      lowDb: known(lowDb),
+      highDb: known(highDb),
+      proposedOffsetDb: offsetDb ?? null,
+      reason,
+    })),
   };
 }

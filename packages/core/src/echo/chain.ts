@@ -16,6 +16,7 @@ import type { LearnedBlockage } from "./blockage/blockage-learner.ts";
 import { type BlockageSettings, correctBlockage, joinBlockage } from "./blockage/correct-blockage.ts";
 import { terrainBlockage } from "./blockage/terrain-blockage.ts";
 import type { TerrainRays } from "./blockage/terrain-model.ts";
+import type { ConsistencyEstimate } from "./calibration/consistency-learner.ts";
 import { addEffect, type PolarEcho } from "./polar-echo.ts";
 import { correctProfile, type ProfileReport, type ProfileSettings } from "./profile/correct-profile.ts";
 import type { LearnedProfile } from "./profile/learned-profile.ts";
@@ -51,6 +52,8 @@ export interface LearnedEcho {
   /** How much too high the radar's ZDR is; 0 where the scans do not tell. */
   readonly zdrOffsetDb: number;
   readonly dropNumber: LearnedDropNumber | undefined;
+  /** How much more the radar shows than its own Z, ZDR and PHIDP allow; proposed, never applied. */
+  readonly consistency: ConsistencyEstimate | undefined;
 }
 
 export const NOTHING_LEARNED: LearnedEcho = {
@@ -62,6 +65,7 @@ export const NOTHING_LEARNED: LearnedEcho = {
   profile: undefined,
   zdrOffsetDb: 0,
   dropNumber: undefined,
+  consistency: undefined,
 };
 
 /** What each step did to a sweep; undefined where it was not taken. */
