@@ -3,7 +3,15 @@ import { fileURLToPath } from "node:url";
 import { type Measured, measure, type Place, type Task } from "./ablation/measure.ts";
 import { ablationOptions } from "./ablation/options.ts";
 import { ResultsFile } from "./ablation/results.ts";
-import { aimLines, idleLines, stepTable, summaryTable, tollTable, worldTable } from "./ablation/tables.ts";
+import {
+  aimLines,
+  calibrationLines,
+  idleLines,
+  stepTable,
+  summaryTable,
+  tollTable,
+  worldTable,
+} from "./ablation/tables.ts";
 import { variantsFor } from "./ablation/variants.ts";
 
 /** Measures the chain from echo to rain against the truth of invented worlds, step by step. */
@@ -40,7 +48,7 @@ export default async function run(args: readonly string[], generator: string): P
   for (const table of [summaryTable(done), steps ? stepTable(done) : "", tollTable(done)]) {
     if (table !== "") console.log(`${table}\n`);
   }
-  for (const line of [...aimLines(done), ...idleLines(done)]) console.log(line);
+  for (const line of [...aimLines(done), ...idleLines(done), ...calibrationLines(done)]) console.log(line);
 }
 
 /** Deals tasks to processes of this same file. */

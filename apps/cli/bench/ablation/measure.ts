@@ -1,9 +1,9 @@
-import { runVariant, worldPlan } from "./run-variant.ts";
+import { runVariant, type VariantMaps, withOffers, worldPlan } from "./run-variant.ts";
 import { samplingAlone } from "./sampling.ts";
 import { commonCells, type Extremes, extremesOf, type MapScore, scoreMap } from "./scores.ts";
 import { type ScreenToll, ScreenTolls } from "./screen-tolls.ts";
-import { ALL, type Variant } from "./variants.ts";
-import { trueWorld, type WorldSize, worldFolder } from "./worlds.ts";
+import { ALL, OFFERS_TAKEN, type Variant } from "./variants.ts";
+import { isRadar, trueWorld, type WorldSize, worldFolder } from "./worlds.ts";
 
 /** Share of the window from which a cell counts as observed; that of a fresh plan, below which no depth is printed. */
 const LEAST_OBSERVED = 0.9;
@@ -36,6 +36,18 @@ export interface VariantScore extends TwoScores {
   readonly seconds: number;
 }
 
+/** What was offered as the calibration error of a radar, and what it truly was; dB. */
+export interface CalibrationScore {
+  readonly node: string;
+  readonly plantedDb: number;
+  /** Best estimate with its interval of 95 %; NaN where nothing could be told. */
+  readonly errorDb: number;
+  readonly lowDb: number;
+  readonly highDb: number;
+  /** To be added to every reflectivity; NaN where nothing was offered. */
+  readonly offsetDb: number;
+}
+
 /** Scores of one world and seed: every variant on the same cells. */
 export interface Measured {
   readonly world: string;
@@ -48,6 +60,7 @@ export interface Measured {
   readonly sampling: TwoScores;
   /** With every step. */
   readonly tolls: readonly ScreenToll[];
+  readonly calibration: readonly CalibrationScore[];
 }
 
 /** Makes a world if need be, runs every variant on it, and scores them on the cells that all observed. */
@@ -57,10 +70,20 @@ export async function measure(task: Task, { generator, cache }: Place): Promise<
   const plan = await worldPlan(world);
   const windowHours = (Date.parse(window.to) - Date.parse(window.from)) / 3_600_000;
   const tolls = new ScreenTolls(world.radars, totalMm.length, windowHours);
-  const maps = [];
+  const maps: VariantMaps[] = [];
+  const names: string[] = [];
+  let offers: VariantMaps["offers"] = [];
   for (const variant of task.variants) {
-    const trace = variant.name === ALL.name ? tolls : undefined;
-    maps.push(await runVariant(world, plan, variant, trace));
+    const isAll = variant.name === ALL.name;
+    const map = await runVariant(world, plan, variant, isAll ? tolls : undefined);
+    maps.push(map);
+    names.push(variant.name);
+    if (!isAll) continue;
+    offers = map.offers;
+    names.push(OFFERS_TAKEN);
+    // Where nothing is offered, nothing changes.
+    const isOffered = offers.some(({ offsetDb }) => offsetDb !== undefined);
+    maps.push(isOffered ? await runVariant(world, withOffers(plan, offers), variant) : map);
   }
   const use = commonCells(
     maps.map(({ observed }) => observed),
@@ -77,7 +100,7 @@ export async function measure(task: Task, { generator, cache }: Place): Promise<
     cells: use.length,
     leftOutCells: use.length - count(use),
     scores: maps.map((map, k) => ({
-      name: task.variants[k].name,
+      name: names[k],
       ...scores(map.totalMm),
       extremes: extremesOf(map.totalMm, map.hoursMm, use),
       unobservedCells: use.length - count(commonCells([map.observed], LEAST_OBSERVED)),
@@ -85,6 +108,17 @@ export async function measure(task: Task, { generator, cache }: Place): Promise<
     })),
     sampling: scores(samplingAlone(world)),
     tolls: tolls.finish(),
+    calibration: world.radars.map(({ node, calibrationErrorDb }) => {
+      const offer = offers.find(({ siteId }) => isRadar(siteId, node));
+      return {
+        node,
+        plantedDb: calibrationErrorDb,
+        errorDb: offer?.errorDb ?? Number.NaN,
+        lowDb: offer?.lowDb ?? Number.NaN,
+        highDb: offer?.highDb ?? Number.NaN,
+        offsetDb: offer?.offsetDb ?? Number.NaN,
+      };
+    }),
   };
 }
 

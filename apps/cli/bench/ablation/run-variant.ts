@@ -1,5 +1,6 @@
 import { rmSync, writeFileSync } from "node:fs";
 import path from "node:path";
+import { type CalibrationProposal, proposeCalibration } from "@rainreckon/core";
 import { parse } from "yaml";
 import { composePlan } from "../../src/plan/compose.ts";
 import { loadPlan } from "../../src/plan/load.ts";
@@ -22,6 +23,8 @@ export interface VariantMaps {
   readonly observed: Float32Array;
   /** Shape [hours][cells]. */
   readonly hoursMm: readonly Float32Array[];
+  /** What the scans say of each radar's calibration; empty where no echo is worked on. */
+  readonly offers: readonly CalibrationProposal[];
   readonly seconds: number;
 }
 
@@ -70,14 +73,29 @@ export async function runVariant(
       load: (job: UnitJob) => results.get(job.number)!,
     };
     const windowMs = run.window.endEpochMs - run.window.startEpochMs;
+    const worked = run.shape.radars.filter(({ echo }) => echo !== undefined);
+    const evidence = worked.map(({ site, echo }) => ({
+      siteId: site.id,
+      consistency: echo?.learned.consistency,
+    }));
     const { planes } = assemble(run.shape, run.jobs, store, windowMs);
     return {
       totalMm: planes.totalMm,
       observed: planes.observedFraction,
       hoursMm: [...results.values()].flatMap(({ intervals }) => intervals.map(({ depthMm }) => depthMm)),
+      offers: proposeCalibration(evidence, run.overlaps),
       seconds: (performance.now() - started) / 1000,
     };
   } finally {
     rmSync(planFile, { force: true });
   }
+}
+
+/** The plan of a world with the calibration that was offered for each radar, as a user who believes it would write it. */
+export function withOffers(plan: Overlay, offers: readonly CalibrationProposal[]): Overlay {
+  const radars = (plan.radars as readonly { readonly id: string }[]).map((radar) => {
+    const offsetDb = offers.find(({ siteId }) => siteId === radar.id)?.offsetDb;
+    return offsetDb === undefined ? radar : { ...radar, offsetDb };
+  });
+  return { ...plan, radars };
 }

@@ -1,6 +1,6 @@
 import { SCREENS, type Screen } from "@rainreckon/core";
 import type { SpokenSweep, UnitTrace } from "../../src/total/job.ts";
-import type { TrueRadar } from "./worlds.ts";
+import { isRadar, type TrueRadar } from "./worlds.ts";
 
 /** Depth of a cell from which it may not lose much, mm. */
 const DEEP_CELL_MM = 5;
@@ -50,7 +50,7 @@ export class ScreenTolls implements UnitTrace {
   /** Takes in a sweep when it has spoken. */
   sweep({ radar, sweep: { elevationDeg, midEpochMs }, echo }: SpokenSweep): void {
     if (echo === undefined) return;
-    const r = this.#truth.findIndex(({ node }) => radar.site.id.toLowerCase().includes(node));
+    const r = this.#truth.findIndex(({ node }) => isRadar(radar.site.id, node));
     const truth = this.#truth[r];
     if (truth === undefined) throw new Error(`no truth for radar ${radar.site.id}`);
     if (elevationDeg > Math.min(...truth.sweeps.map((one) => one.elevationDeg)) + 0.05) return;

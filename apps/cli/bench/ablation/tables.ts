@@ -1,7 +1,7 @@
 import { type Column, textTable } from "../../src/ui/table.ts";
 import type { Measured, TwoScores, VariantScore } from "./measure.ts";
 import { median, RANGE_BANDS_KM } from "./scores.ts";
-import { ALL, CAPPED_AND_MASKED, RAW, STEP_WITHOUT_WORK, STEPS, without } from "./variants.ts";
+import { ALL, CAPPED_AND_MASKED, OFFERS_TAKEN, RAW, STEP_WITHOUT_WORK, STEPS, without } from "./variants.ts";
 
 const BANDS = [...RANGE_BANDS_KM.map((km) => `<${km} km`), "beyond"];
 const right = (head: string): Column => ({ head, align: "right" });
@@ -121,7 +121,9 @@ export function summaryTable(runs: readonly Measured[]): string {
       "all mm*",
       "of masked*",
     ].map(right),
-    ...["bias raw", "bias masked", "bias all", "corr. raw", "corr. all", "left out"].map(right),
+    ...["bias raw", "bias masked", "bias all", "corr. raw", "corr. all", "offers taken mm", "left out"].map(
+      right,
+    ),
   ];
   const rows = [...byWorld(runs)].map(([world, some]) => {
     const over = (name: string, figure: (score: VariantScore, run: Measured) => number) =>
@@ -155,6 +157,10 @@ export function summaryTable(runs: readonly Measured[]): string {
           over(name, ({ all }) => all.correlation),
           3,
         ),
+      ),
+      digits(
+        over(OFFERS_TAKEN, ({ all }) => all.rmseMm),
+        2,
       ),
       digits(median(some.map(({ leftOutCells }) => leftOutCells)), 0),
     ];
@@ -222,6 +228,25 @@ export function tollTable(runs: readonly Measured[]): string {
       rows,
     ),
   ].join("\n");
+}
+
+/** Planted calibration errors against what is offered: how near, and how often something is offered where nothing was planted. */
+export function calibrationLines(runs: readonly Measured[]): string[] {
+  const signed = (db: number) => (Number.isNaN(db) ? "none" : `${db >= 0 ? "+" : ""}${db.toFixed(1)}`);
+  const radars = runs.flatMap((run) => run.calibration.map((score) => ({ run, score })));
+  const planted = radars.filter(({ score }) => score.plantedDb !== 0);
+  const near = planted.filter(({ score }) => Math.abs(score.errorDb - score.plantedDb) <= 0.7);
+  const none = radars.filter(({ score }) => score.plantedDb === 0);
+  const falsely = none.filter(({ score }) => !Number.isNaN(score.offsetDb));
+  const told = [...planted.filter((one) => !near.includes(one)), ...falsely].map(
+    ({ run, score }) =>
+      `${nameOf(run)} ${score.node}: planted ${signed(score.plantedDb)} dB, found ${signed(score.errorDb)} (${signed(score.lowDb)} to ${signed(score.highDb)}), offered ${signed(score.offsetDb)}`,
+  );
+  return [
+    `calibration error found within 0.7 dB: ${near.length} of ${planted.length} radars with one; aim 8 of 10: ${judged(near.length >= 0.8 * planted.length)}`,
+    `offered where none was planted: ${falsely.length} of ${none.length} radars; aim none: ${judged(falsely.length === 0)}`,
+    ...told.map((line) => `  ${line}`),
+  ];
 }
 
 /** How far a step moves the map of a world that has nothing for it to do. */

@@ -98,6 +98,9 @@ export const CAPPED_AND_MASKED: Variant = {
 /** Every step. */
 export const ALL = chain("all", () => true);
 
+/** Every step, and the calibration that is offered written into the plan, which only a user does. */
+export const OFFERS_TAKEN = "all, offers taken";
+
 /** Raw, with the steps up to each in turn; the last of these is `ALL`, under the name of its last step. */
 export const ADDED: readonly Variant[] = STEPS.map(({ name }, last) =>
   chain(`+ ${name}`, (_, k) => k <= last),

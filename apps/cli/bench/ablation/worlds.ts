@@ -23,6 +23,8 @@ export interface TrueWorld {
 /** The gates of one radar as they truly were. */
 export interface TrueRadar {
   readonly node: string;
+  /** What was planted: by how much every reflectivity is too high. */
+  readonly calibrationErrorDb: number;
   readonly rayCount: number;
   readonly gateCount: number;
   readonly sweeps: readonly { readonly start: string; readonly elevationDeg: number }[];
@@ -33,6 +35,11 @@ export interface TrueRadar {
   /** Shape [rayCount * gateCount]: bits of gates.json. */
   flags(sweep: number): Uint8Array;
   readonly falseEchoBits: number;
+}
+
+/** Whether a radar of a run is one of the truth: sites are named after their node. */
+export function isRadar(siteId: string, node: string): boolean {
+  return siteId.toLowerCase().includes(node);
 }
 
 /** Makes a world unless the cache holds it. @returns its folder */
@@ -60,7 +67,12 @@ interface TruthFile {
   readonly window: { readonly from: string; readonly to: string };
   readonly files: { readonly total: string };
   readonly planted: {
-    readonly radars: readonly { readonly node: string; readonly lonDeg: number; readonly latDeg: number }[];
+    readonly radars: readonly {
+      readonly node: string;
+      readonly lonDeg: number;
+      readonly latDeg: number;
+      readonly calibrationOffsetDb: number;
+    }[];
   };
 }
 
@@ -129,6 +141,7 @@ export function trueWorld(folder: string): TrueWorld {
     const gateTotal = rayCount * gateCount;
     const one: TrueRadar = {
       node,
+      calibrationErrorDb: placed.calibrationOffsetDb,
       rayCount,
       gateCount,
       sweeps,
