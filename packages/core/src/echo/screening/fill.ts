@@ -2,11 +2,15 @@ import { decibels, zMm6PerM3 } from "../../units.ts";
 import { markBit } from "../polar-echo.ts";
 import { rayBeside, type SweepView } from "./sweep-view.ts";
 
-/** Rays and gates to either side that may fill a gate, and the distance that they must lie within. House rules. */
-const RAY_REACH = 6;
-const GATE_REACH = 3;
+/**
+ * Windows around a gate, rays and gates to either side: the near one where it holds enough, else the wide one; and
+ * the distance that neighbours must lie within. House rules.
+ */
+const NEAR = { rays: 2, gates: 1 };
+const WIDE = { rays: 6, gates: 3 };
 const WITHIN_M = 3000;
-/** Neighbours that it takes. House rule. */
+/** Neighbours that it takes: of the near window, and of the wide one. House rule. */
+const ENOUGH_NEAR = 6;
 const ENOUGH = 3;
 /** Z by reflectivity in steps of 0.05 dB from -100 to 100 dBZ, since powers are slow. */
 const STEPS_PER_DB = 20;
@@ -33,7 +37,8 @@ export function fillFromNeighbours(view: SweepView): number {
     for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
       const at = echoAt[k] as number;
       if (screenedBy[at] === 0) continue;
-      const value = meanAround(view, ray, at - ray * gateCount);
+      let value = meanAround(view, ray, at - ray * gateCount, NEAR, ENOUGH_NEAR);
+      if (Number.isNaN(value)) value = meanAround(view, ray, at - ray * gateCount, WIDE, ENOUGH);
       if (Number.isNaN(value)) continue;
       dbz[at] = Math.min(value, measuredDbz[at] as number);
       marks[at] = (marks[at] as number) | bit;
@@ -44,14 +49,20 @@ export function fillFromNeighbours(view: SweepView): number {
 }
 
 /** Weighted mean Z around a gate, as dBZ; NaN where too few gates tell. */
-function meanAround(view: SweepView, ray: number, gate: number): number {
+function meanAround(
+  view: SweepView,
+  ray: number,
+  gate: number,
+  window: { readonly rays: number; readonly gates: number },
+  enough: number,
+): number {
   const { echo, rayCount, gateCount, rayStepDeg } = view;
   const { measuredDbz, screenedBy, header } = echo;
   const { gateLengthM } = header;
   const rangeM = Math.max(0, header.firstGateCentreM + gate * gateLengthM);
   const rayApartM = Math.max(1, (rangeM * rayStepDeg * Math.PI) / 180);
-  const rays = Math.min(RAY_REACH, Math.floor(WITHIN_M / rayApartM), (rayCount - 1) >> 1);
-  const gates = Math.min(GATE_REACH, Math.floor(WITHIN_M / gateLengthM));
+  const rays = Math.min(window.rays, Math.floor(WITHIN_M / rayApartM), (rayCount - 1) >> 1);
+  const gates = Math.min(window.gates, Math.floor(WITHIN_M / gateLengthM));
   const first = Math.max(0, gate - gates);
   const last = Math.min(gateCount - 1, gate + gates);
   let sum = 0;
@@ -72,7 +83,7 @@ function meanAround(view: SweepView, ray: number, gate: number): number {
       count++;
     }
   }
-  return count >= ENOUGH ? decibels(sum / weights) : Number.NaN;
+  return count >= enough ? decibels(sum / weights) : Number.NaN;
 }
 
 function tabulatedZ(dbz: number): number {

@@ -52,14 +52,22 @@ export function screenNoisyPhase(view: SweepView, { strong, weak }: Evidence): v
     for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
       const at = echoAt[k] as number;
       const here = phase[at] as number;
-      const before = phaseApartDeg(here, phase[at - 1] as number);
-      const after = phaseApartDeg(here, phase[at + 1] as number);
-      if (before < WEAK_PHASE_DEG && after < WEAK_PHASE_DEG) continue;
+      const toBefore = here - (phase[at - 1] as number);
+      const toAfter = here - (phase[at + 1] as number);
+      // Nearly every gate of rain ends here.
+      if (
+        toBefore < WEAK_PHASE_DEG &&
+        toBefore > -WEAK_PHASE_DEG &&
+        toAfter < WEAK_PHASE_DEG &&
+        toAfter > -WEAK_PHASE_DEG
+      ) {
+        continue;
+      }
       const gate = at - ray * gateCount;
       if (gate < 2 || gate + 2 >= gateCount) continue;
       const deg = secondSmallest(
-        before,
-        after,
+        phaseApartDeg(here, phase[at - 1] as number),
+        phaseApartDeg(here, phase[at + 1] as number),
         phaseApartDeg(here, phase[at - 2] as number),
         phaseApartDeg(here, phase[at + 2] as number),
       );
@@ -105,8 +113,9 @@ export function screenClearAir(view: SweepView, { strong }: Evidence): void {
   for (let ray = 0; ray < rayCount; ray++) {
     for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
       const at = echoAt[k] as number;
+      if (!((rhohv[at] as number) < CLEAR_AIR.belowRhohv)) continue;
       const dbz = echo.measuredDbz[at] as number;
-      if (!(dbz < CLEAR_AIR.belowDbz && (rhohv[at] as number) < CLEAR_AIR.belowRhohv)) continue;
+      if (!(dbz < CLEAR_AIR.belowDbz)) continue;
       const gate = at - ray * gateCount;
       if (!((zdr[at] as number) > CLEAR_AIR.aboveZdrDb && (heightM[gate] as number) < CLEAR_AIR.belowHeightM))
         continue;

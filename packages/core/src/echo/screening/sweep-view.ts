@@ -7,6 +7,8 @@ const LOWEST_AT_1KM_DBZ = -100;
 const CLASSES = 320;
 /** So many of the weakest gates are passed over: a clutter filter leaves echo below what can be seen. House rule. */
 const PASSED_OVER = 0.002;
+/** Every so many gates with echo of a ray are enough to tell. */
+const STRIDE = 4;
 
 /**
  * No rain radar is less sensitive than this at 1 km, so that a sweep full of rain does not pass for a deaf radar.
@@ -96,7 +98,7 @@ function weakestAt1KmDbz(
   const classes = new Uint32Array(CLASSES);
   let seen = 0;
   for (let ray = 0; ray + 1 < echoStart.length; ray++) {
-    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
+    for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k += STRIDE) {
       const at = echoAt[k] as number;
       const at1Km = (dbz[at] as number) - (rangeGainDb[at - ray * gateCount] as number);
       const place = ((at1Km - LOWEST_AT_1KM_DBZ) / CLASS_DB) | 0;
