@@ -18,7 +18,7 @@ interface Rain {
   readonly seed: number;
 }
 
-/** Three showers along each ray, whose drops differ: KDP = c Z^0.76 with c off by a fifth from shower to shower. */
+/** Three showers along each ray, whose drops differ: KDP = c Z^0.76 with c off by a tenth from shower to shower. */
 function showers({ alphaDbPerDeg, calibrationDb = 0, seed }: Rain): PolarEcho {
   const rayCount = 120;
   const gateCount = 60;
@@ -31,7 +31,7 @@ function showers({ alphaDbPerDeg, calibrationDb = 0, seed }: Rain): PolarEcho {
     let peak = 45;
     for (let gate = 0; gate < gateCount; gate++) {
       if (gate % 20 === 0) {
-        drops = Math.exp(0.2 * noise());
+        drops = Math.exp(0.1 * noise());
         peak = 40 + 4 * noise();
       }
       const z = peak - 0.25 * (10 - (gate % 20)) ** 2;
@@ -133,14 +133,23 @@ describe("settleLossCoefficients", () => {
     expect(settled[0]!.alphaDbPerDeg).toBeLessThan(0.002);
   });
 
-  test("two estimates of one radar count by their precision: 0.06 and 0.10 at equal errors are one of 0.08", () => {
+  test("two estimates of one radar count by their precision: 0.073 and 0.087 at equal errors are one of 0.08", () => {
     const both = settleLossCoefficients([
-      { wavelengthM: C_BAND_M, estimates: [estimate(0.06, 0.01), estimate(0.1, 0.01)] },
+      { wavelengthM: C_BAND_M, estimates: [estimate(0.073, 0.01), estimate(0.087, 0.01)] },
     ]);
     const one = settleLossCoefficients([
       { wavelengthM: C_BAND_M, estimates: [estimate(0.08, 0.01 / Math.SQRT2)] },
     ]);
     expect(both[0]!.alphaDbPerDeg).toBeCloseTo(one[0]!.alphaDbPerDeg, 10);
+  });
+
+  test("estimates that contradict each other weigh less: 0.02 and 0.12, each 0.01, are 0.07 with an error of 0.05", () => {
+    // Birge's ratio by hand: chi square 25 + 25 over one degree of freedom, variance 0.01^2 / 2 * 50 = 0.05^2.
+    const settled = settleLossCoefficients([
+      { wavelengthM: C_BAND_M, estimates: [estimate(0.02, 0.01), estimate(0.12, 0.01)] },
+    ]);
+    const one = settleLossCoefficients([{ wavelengthM: C_BAND_M, estimates: [estimate(0.07, 0.05)] }]);
+    expect(settled[0]!.alphaDbPerDeg).toBeCloseTo(one[0]!.alphaDbPerDeg, 10);
   });
 
   test("a band without a published value is left to the caller", () => {

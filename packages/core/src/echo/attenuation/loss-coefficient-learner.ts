@@ -56,6 +56,9 @@ const WILD_STEP_DEG = 45;
  * J. Appl. Meteorol. 39, 1405-1433 (both from memory); turned here into a regression of KDP, which alone is noisy,
  * on Z and PHIDP, so that noise does not bias it and weak echo may be left out.
  *
+ * A shower whose drops make more KDP than its Z tells also lies behind more phase, its own: this draws alpha up a
+ * little where showers differ much, and is among what `dropSizeErrorDb` stands for.
+ *
  * The sums are of whole numbers: any order of sweeps gives the same.
  */
 export class LossCoefficientLearner {

@@ -73,7 +73,12 @@ function weigh(published: PhaseCoefficient, estimates: readonly LossEstimate[]) 
   }
   if (precision === 0) return { ifCorrected: 1, ifNot: 1, alphaIfNot: published.dbPerDeg };
   const alpha = weighted / precision;
-  const variance = 1 / precision;
+  // Estimates that contradict each other have larger errors than they say: Birge (1932), Phys. Rev. 40, 207-227.
+  let chiSquare = 0;
+  for (const { alphaDbPerDeg, standardErrorDbPerDeg } of estimates) {
+    chiSquare += ((alphaDbPerDeg - alpha) / standardErrorDbPerDeg) ** 2;
+  }
+  const variance = Math.max(1, chiSquare / Math.max(1, estimates.length - 1)) / precision;
   const both = variance + spread * spread;
   const before = spread ** -2;
   return {
@@ -81,7 +86,7 @@ function weigh(published: PhaseCoefficient, estimates: readonly LossEstimate[]) 
     ...likelihoods(alpha, published.dbPerDeg, variance, both),
     alphaIfNot: Math.max(
       published.lowDbPerDeg / 2,
-      (published.dbPerDeg * before + weighted) / (before + precision),
+      (published.dbPerDeg * before + alpha / variance) / (before + 1 / variance),
     ),
   };
 }

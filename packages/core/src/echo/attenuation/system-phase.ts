@@ -3,8 +3,9 @@ import { DEFAULT_PHASE_SETTINGS, folded, type PhaseSettings, phaseGates } from "
 
 /** Good gates at the near edge of the rain whose median speaks for a ray. */
 const FIRST_GATES = 5;
-/** Stronger echo raises the phase within those gates already. */
-const MOST_DBZ = 35;
+/** Stronger echo raises the phase within those gates already; a single sweep cannot be as choosy as a run. */
+const MOST_DBZ_OF_RUN = 30;
+const MOST_DBZ_OF_SWEEP = 35;
 const BIN_DEG = 0.5;
 /** Half the width of what is gathered about the commonest value: noise and slow changes with azimuth. */
 const ABOUT_DEG = 8;
@@ -22,10 +23,12 @@ export interface SystemPhase {
 export class PhaseStarts {
   readonly #counts: Uint32Array;
   readonly #foldDeg: number;
+  readonly #mostDbz: number;
   rays = 0;
 
-  constructor(foldDeg: number) {
+  constructor(foldDeg: number, mostDbz = MOST_DBZ_OF_SWEEP) {
     this.#foldDeg = foldDeg;
+    this.#mostDbz = mostDbz;
     this.#counts = new Uint32Array(Math.round(foldDeg / BIN_DEG));
   }
 
@@ -38,7 +41,7 @@ export class PhaseStarts {
       for (let gate = from; gate < from + gateCount && found < FIRST_GATES; gate++) {
         if (good[gate] === 0) continue;
         // A heavy start tells nothing of the phase before it.
-        if ((echo.measuredDbz[gate] as number) > MOST_DBZ) break;
+        if ((echo.measuredDbz[gate] as number) > this.#mostDbz) break;
         const value = phidpDeg[gate] as number;
         first[found] =
           found === 0 ? value : (first[0] as number) + folded(value - (first[0] as number), this.#foldDeg);
@@ -90,7 +93,7 @@ export class SystemPhaseLearner {
 
   constructor(settings: PhaseSettings = DEFAULT_PHASE_SETTINGS) {
     this.#settings = settings;
-    this.#starts = new PhaseStarts(settings.foldDeg);
+    this.#starts = new PhaseStarts(settings.foldDeg, MOST_DBZ_OF_RUN);
   }
 
   /** Does nothing with a sweep that has no PHIDP. */
