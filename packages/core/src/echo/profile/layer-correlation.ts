@@ -1,5 +1,5 @@
 import type { CorrelationMean } from "./correlation-sums.ts";
-import { type LayerHeights, layerShares } from "./vertical-profile.ts";
+import { type LayerHeights, type LayerShares, layerShares } from "./vertical-profile.ts";
 
 /** RHOHV = inRain + perKm * range - drop * share of the beam in the layer, fitted to means. */
 export interface CorrelationFit {
@@ -24,16 +24,19 @@ export function fitCorrelation(
   means: readonly CorrelationMean[],
   layer: LayerHeights,
 ): CorrelationFit | undefined {
-  let inRain = 0;
-  let inLayer = 0;
-  const shares = means.map(({ centreM, sigmaM }) => {
-    const { rain, melting } = layerShares(layer, centreM, sigmaM);
-    if (rain >= RAIN_ALONE) inRain++;
-    if (melting >= SHOWS_LAYER) inLayer++;
-    return melting;
-  });
-  if (inRain < ENOUGH || inLayer < ENOUGH) return undefined;
-  return solve(means, shares);
+  const shares = means.map(({ centreM, sigmaM }) => layerShares(layer, centreM, sigmaM));
+  if (!seesLayer(shares)) return undefined;
+  return solve(
+    means,
+    shares.map(({ melting }) => melting),
+  );
+}
+
+/** Whether some beams are in rain alone and some show the layer, so that a fit means anything. */
+export function seesLayer(shares: readonly LayerShares[]): boolean {
+  const inRain = shares.filter(({ rain }) => rain >= RAIN_ALONE).length;
+  const inLayer = shares.filter(({ melting }) => melting >= SHOWS_LAYER).length;
+  return inRain >= ENOUGH && inLayer >= ENOUGH;
 }
 
 /** Chi-square that is left where no layer is assumed: a line over range. */

@@ -25,6 +25,8 @@ export function heightsOf([middleM, thicknessM]: ProfileNumbers): LayerHeights {
 
 /** Error of a mean ratio that no number of rounds takes away: rain changes with height for other reasons too. House rule. */
 const LEAST_ERROR_DB = 0.4;
+/** Scatter of a single cell; rain drifts from one to the next between two sweeps. House rule. */
+const CELL_ERROR_DB = 3;
 /** From this many errors on, a misfit counts by its size and not by its square (Huber 1964, Ann. Math. Stat. 35, 73-101). */
 const OUTLYING = 2;
 
@@ -46,9 +48,39 @@ export function ratioMisfit(ratios: readonly EchoRatio[], profile: VerticalProfi
 }
 
 /** What a ratio adds to the chi-square of a model. */
-export function outlierSafe({ ratioDb, errorDb }: EchoRatio, modelDb: number): number {
-  const errors = Math.abs(ratioDb - modelDb) / Math.hypot(errorDb, LEAST_ERROR_DB);
+export function outlierSafe({ ratioDb, errorDb, cells }: EchoRatio, modelDb: number): number {
+  const errorOfAllDb = Math.hypot(errorDb, LEAST_ERROR_DB, CELL_ERROR_DB / Math.sqrt(cells));
+  const errors = Math.abs(ratioDb - modelDb) / errorOfAllDb;
   return errors < OUTLYING ? errors * errors : OUTLYING * (2 * errors - OUTLYING);
+}
+
+/** An excess that is wrong by this much must be told at two standard deviations, else it was not measured. */
+const TOLD_APART_DB = 2;
+const TOLD_APART_CHI2 = 4;
+/** Ratios that scatter more than this about the fit (root mean square) do not come from one profile; house rule. */
+const MOST_MISFIT_DB = 1.5;
+
+/** How well ratios tell the excess of a melting layer that was fitted to them. */
+export interface ExcessTold {
+  readonly told: boolean;
+  /** Root mean square of what the fit leaves unexplained. */
+  readonly misfitDb: number;
+  /** Whether the ratios may come from one profile. */
+  readonly agree: boolean;
+}
+
+export function excessTold(ratios: readonly EchoRatio[], profile: VerticalProfile): ExcessTold {
+  const least = ratioMisfit(ratios, profile);
+  const scale = Math.max(1, least / Math.max(1, ratios.length - 4));
+  const told = [TOLD_APART_DB, -TOLD_APART_DB].every(
+    (db) =>
+      ratioMisfit(ratios, { ...profile, peakDb: profile.peakDb + db }) - least >= TOLD_APART_CHI2 * scale,
+  );
+  const misfitDb = Math.sqrt(
+    ratios.reduce((sum, ratio) => sum + (ratio.ratioDb - modelledRatioDb(ratio, profile)) ** 2, 0) /
+      ratios.length,
+  );
+  return { told, misfitDb, agree: misfitDb <= MOST_MISFIT_DB };
 }
 
 /** Search stops when its steps have been halved so often. */

@@ -2,10 +2,22 @@ import type { PolarEcho } from "../polar-echo.ts";
 import { type CorrelationMean, CorrelationSums } from "./correlation-sums.ts";
 import { type EchoRatio, EchoRatios } from "./echo-ratios.ts";
 import type { BeamSettings } from "./gate-table.ts";
-import { type CorrelationFit, correlationWithoutLayer, fitCorrelation } from "./layer-correlation.ts";
-import { heightsOf, leastNear, type ProfileNumbers, profileOf, ratioMisfit } from "./layer-fit.ts";
+import {
+  type CorrelationFit,
+  correlationWithoutLayer,
+  fitCorrelation,
+  seesLayer,
+} from "./layer-correlation.ts";
+import {
+  excessTold,
+  heightsOf,
+  leastNear,
+  type ProfileNumbers,
+  profileOf,
+  ratioMisfit,
+} from "./layer-fit.ts";
 import type { MeltingLayer } from "./learned-profile.ts";
-import { USUAL_PROFILE } from "./vertical-profile.ts";
+import { layerShares, USUAL_PROFILE } from "./vertical-profile.ts";
 
 /** Middles of the layer that are tried first, above mean sea level. */
 const HIGHEST_MIDDLE_M = 6000;
@@ -89,21 +101,28 @@ export function findLayer(
     ratios.length >= ENOUGH_POINTS ? ratios : [],
     means.length >= ENOUGH_POINTS ? means : [],
   );
-  const start = evidence.best();
-  if (start === undefined) return undefined;
-  const { at, least } = leastNear(start, PROFILE_STEPS, PROFILE_LIMITS, (numbers) =>
+  const { at, least } = leastNear(evidence.best(), PROFILE_STEPS, PROFILE_LIMITS, (numbers) =>
     evidence.misfit(numbers),
   );
-  const [, , peakDb] = at;
-  const correlation = evidence.correlation(at);
   if (evidence.withoutLayer - least < EVIDENCE) return undefined;
-  if (correlation === undefined && peakDb < LEAST_PEAK_DB) return undefined;
+  const correlation = evidence.tellingCorrelation(at);
+  if (correlation === undefined && !echoAloneTells(ratios, at)) return undefined;
   return {
     ...heightsOf(at),
     basis: "scans",
     uncertaintyM: evidence.uncertaintyM(at, least),
     correlation: correlation && { inRain: correlation.inRain, drop: correlation.drop },
   };
+}
+
+/** Without RHOHV the peak itself must be told, with beams both in the rain below and in the layer. */
+function echoAloneTells(ratios: readonly EchoRatio[], numbers: ProfileNumbers): boolean {
+  const [, , peakDb] = numbers;
+  const { told, agree } = excessTold(ratios, profileOf(numbers));
+  const shares = ratios.map(({ aloftM, aloftSigmaM }) =>
+    layerShares(heightsOf(numbers), aloftM, aloftSigmaM),
+  );
+  return peakDb >= LEAST_PEAK_DB && told && agree && seesLayer(shares);
 }
 
 /** How well layers explain what was collected; both kinds of evidence are scaled to what their best fit leaves. */
@@ -127,7 +146,7 @@ class LayerEvidence {
   }
 
   /** The first guess, on a coarse ladder of heights; sets the scales by it. */
-  best(): ProfileNumbers | undefined {
+  best(): ProfileNumbers {
     const thicknessM = USUAL_PROFILE.thicknessM.value;
     const slope = USUAL_PROFILE.slopeAboveDbPerKm.value;
     const rungs: { numbers: ProfileNumbers; echo: number; correlation: number }[] = [];
@@ -165,6 +184,13 @@ class LayerEvidence {
   correlation(numbers: ProfileNumbers): CorrelationFit | undefined {
     const fit = fitCorrelation(this.#means, heightsOf(numbers));
     return fit !== undefined && fit.drop >= LEAST_DROP ? fit : undefined;
+  }
+
+  /** RHOHV where it alone is evidence enough. */
+  tellingCorrelation(numbers: ProfileNumbers): CorrelationFit | undefined {
+    const fit = this.correlation(numbers);
+    if (fit === undefined) return undefined;
+    return (this.#correlationNone - fit.chi2) / this.#correlationScale >= EVIDENCE ? fit : undefined;
   }
 
   /** Half the way in height between the places where the misfit has grown by one, and what beams can tell at best. */

@@ -77,6 +77,12 @@ test("echo that weakens aloft without a peak is no melting layer", () => {
   expect(learn(roundsOf({ profile: shower, rhohvDrop: 0 }, 2)).layer).toBeUndefined();
 });
 
+// Nothing below the layer is seen, so that its peak might as well be echo from the ground.
+test("a layer at the antenna itself is not told from echo alone", () => {
+  const low = { ...planted, bottomM: -100, peakM: 100, topM: 300 };
+  expect(learn(roundsOf({ profile: low }, 2)).layer).toBeUndefined();
+});
+
 test("RHOHV that falls with range alone is no melting layer", () => {
   expect(learn(roundsOf({ profile: level, rhohvDrop: 0, rhohvPerKm: 8e-4 }, 2)).layer).toBeUndefined();
 });

@@ -3,8 +3,8 @@ import type { PolarEcho } from "../polar-echo.ts";
 import { type EchoRatio, EchoRatios } from "./echo-ratios.ts";
 import type { BeamSettings } from "./gate-table.ts";
 import {
+  excessTold,
   leastNear,
-  modelledRatioDb,
   outlierSafe,
   type ProfileNumbers,
   profileOf,
@@ -18,12 +18,6 @@ import { beamProfileDb, idealisedProfile, USUAL_PROFILE, type VerticalProfile } 
 const SNOW_DEPTH_M = 3000;
 /** Ratios that a fit needs. */
 const ENOUGH_RATIOS = 8;
-/** An excess that is wrong by this much must be told at two standard deviations, else nothing was measured. */
-const TOLD_APART_DB = 2;
-const TOLD_APART_CHI2 = 4;
-/** Ratios that scatter more than this about the fit (root mean square) do not come from one profile; house rule. */
-const MOST_MISFIT_DB = 1.5;
-
 /**
  * Learns the mean apparent profile of a run and fits a {@link VerticalProfile} to it, seen through the beams it was
  * measured with: least squares on ratios of linear Z, held near common practice by the usual spread of each number.
@@ -92,18 +86,9 @@ export function fitProfile(all: readonly EchoRatio[], layer: MeltingLayer | unde
       ((numbers[3] - usual.slopeAboveDbPerKm.value) / usual.slopeAboveDbPerKm.spread) ** 2,
   );
   const profile = profileOf(at);
-  const least = ratioMisfit(ratios, profile);
-  const scale = Math.max(1, least / Math.max(1, ratios.length - at.length));
-  const told = [TOLD_APART_DB, -TOLD_APART_DB].every(
-    (db) =>
-      ratioMisfit(ratios, { ...profile, peakDb: profile.peakDb + db }) - least >= TOLD_APART_CHI2 * scale,
-  );
+  const { told, agree, misfitDb } = excessTold(ratios, profile);
   if (!told) return idealised("the sweeps do not tell the excess of the melting layer", ratios.length);
-  const misfitDb = Math.sqrt(
-    ratios.reduce((sum, ratio) => sum + (ratio.ratioDb - modelledRatioDb(ratio, profile)) ** 2, 0) /
-      ratios.length,
-  );
-  if (misfitDb > MOST_MISFIT_DB) return idealised("the sweeps do not agree on one profile", ratios.length);
+  if (!agree) return idealised("the sweeps do not agree on one profile", ratios.length);
   return {
     basis: "measured",
     reason: "fitted to the sweeps of the run",
