@@ -109,10 +109,10 @@ describe("what is proposed", () => {
 
   test("by hand: one radar with one source has its value and the errors of it", () => {
     const [one] = proposeCalibration([{ siteId: "a", consistency: sure(2) }], []);
-    // Of 0.1 and 0.7 dB, and 6 dB of what is thinkable: weights 1 / 0.5 and 1 / 36.
-    const expected = 2 / 0.5 / (1 / 0.5 + 1 / 36);
+    // Errors of 0.1, 0.4 and 0.6 dB make a variance of 0.53; 6 dB of what is thinkable one of 36.
+    const expected = 2 / 0.53 / (1 / 0.53 + 1 / 36);
     expect(one!.errorDb).toBeCloseTo(expected, 6);
-    expect(one!.highDb - one!.errorDb).toBeCloseTo(1.96 / Math.sqrt(1 / 0.5 + 1 / 36), 6);
+    expect(one!.highDb - one!.errorDb).toBeCloseTo(1.96 / Math.sqrt(1 / 0.53 + 1 / 36), 6);
   });
 
   test("a radar without ZDR has its level from its neighbour", () => {

@@ -43,11 +43,15 @@ export interface CalibrationProposal {
 }
 
 /**
- * What each absolute source is wrong by in common for all radars, as a standard deviation. Consistency: shapes of drops and
- * ZDR's own calibration; 0.5 dB is claimed for the method (Goddard, Tan and Thurai 1994, from memory), 0.7 dB is taken.
+ * What each absolute source is wrong by in common for all radars, as a standard deviation. Consistency: shapes of drops.
  * Gauges: a Z-R relation that does not fit the storm, which looks just like a calibration error (house rule).
  */
-const COMMON_ERROR_DB = { consistency: 0.7, gauges: 2 } as const;
+const COMMON_ERROR_DB = { consistency: 0.6, gauges: 2 } as const;
+/**
+ * What consistency is wrong by for each radar by itself: ZDR's own calibration, and loss. Together with the above 0.7 dB;
+ * for the method 0.5 dB is claimed (Goddard, Tan and Thurai 1994, from memory).
+ */
+const OWN_CONSISTENCY_ERROR_DB = 0.4;
 /** Radars are rarely farther off; keeps what nobody knows from being infinite (house rule). */
 const UNKNOWN_DB = 6;
 const INTERVAL = 1.96;
@@ -78,7 +82,8 @@ export function proposeCalibration(
   radars.forEach(({ consistency, gauges }, at) => {
     normal.add([[at, 1]], 0, UNKNOWN_DB);
     if (consistency !== undefined) {
-      const { valueDb, standardErrorDb } = consistency;
+      const { valueDb } = consistency;
+      const standardErrorDb = Math.hypot(consistency.standardErrorDb, OWN_CONSISTENCY_ERROR_DB);
       normal.add(
         [
           [at, 1],

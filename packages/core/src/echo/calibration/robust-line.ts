@@ -17,6 +17,8 @@ export interface RobustLine {
 const HUBER = 1.345;
 const DEVIATIONS_PER_MAD = 1.4826;
 const TURNS = 20;
+/** dB, and dB per degree, that a line may still move. */
+const STILL = 1e-4;
 /** Into so many blocks of time a run is cut. */
 export const TIME_BLOCKS = 10;
 /** Fewer blocks of time than this say nothing of the scatter between them. */
@@ -35,9 +37,10 @@ export const LEAST_BLOCKS = 4;
 export function robustLine(points: LinePoints, fitted: "level" | "line"): RobustLine | undefined {
   const blocks = [...new Set(points.block)];
   if (blocks.length < LEAST_BLOCKS) return undefined;
-  const whole = huberFit(points, fitted, undefined);
+  const whole = huberFit(points, fitted, undefined, undefined);
   if (whole === undefined) return undefined;
-  const parts = blocks.map((left) => huberFit(points, fitted, left));
+  // From the line of all points, so that few turns are left to do.
+  const parts = blocks.map((left) => huberFit(points, fitted, left, whole));
   if (parts.some((part) => part === undefined)) return undefined;
   const spread = (of: (line: Line) => number): number => {
     const values = parts.map((part) => of(part as Line));
@@ -58,20 +61,27 @@ interface Line {
 }
 
 /** @param left - a block that is left out */
-function huberFit(points: LinePoints, fitted: "level" | "line", left: number | undefined): Line | undefined {
-  const used = Array.from(points.block.keys()).filter((at) => points.block[at] !== left);
-  let line = leastSquares(points, used, fitted, undefined);
+function huberFit(
+  points: LinePoints,
+  fitted: "level" | "line",
+  left: number | undefined,
+  start: Line | undefined,
+): Line | undefined {
+  const { block } = points;
+  const used = Int32Array.from(block.keys()).filter((at) => block[at] !== left);
+  const trust = new Float64Array(used.length).fill(1);
+  let line = start ?? leastSquares(points, used, fitted, trust);
   for (let turn = 0; turn < TURNS && line !== undefined; turn++) {
-    const off = used.map((at) => Math.abs(residual(points, at, line as Line)));
-    const scale = DEVIATIONS_PER_MAD * median(off);
+    for (let k = 0; k < used.length; k++) trust[k] = Math.abs(residual(points, used[k] as number, line));
+    const held = HUBER * DEVIATIONS_PER_MAD * median(trust);
     // All on the line: nothing to hold back.
-    if (!(scale > 1e-9)) return line;
-    const trust = off.map((distance) => Math.min(1, (HUBER * scale) / distance));
+    if (!(held > 1e-9)) return line;
+    for (let k = 0; k < used.length; k++) trust[k] = Math.min(1, held / (trust[k] as number));
     const next = leastSquares(points, used, fitted, trust);
     if (next === undefined) return undefined;
     const moved = Math.abs(next.level - line.level) + Math.abs(next.slope - line.slope);
     line = next;
-    if (moved < 1e-6) break;
+    if (moved < STILL) break;
   }
   return line;
 }
@@ -82,20 +92,21 @@ function residual({ x, y }: LinePoints, at: number, { level, slope }: Line): num
 
 function leastSquares(
   { x, y, weight }: LinePoints,
-  used: readonly number[],
+  used: Int32Array,
   fitted: "level" | "line",
-  trust: readonly number[] | undefined,
+  trust: Float64Array,
 ): Line | undefined {
   let [sum, sumX, sumY, sumXX, sumXY] = [0, 0, 0, 0, 0];
-  used.forEach((at, k) => {
-    const w = (weight[at] as number) * (trust?.[k] ?? 1);
+  for (let k = 0; k < used.length; k++) {
+    const at = used[k] as number;
+    const w = (weight[at] as number) * (trust[k] as number);
     const [atX, atY] = [x[at] as number, y[at] as number];
     sum += w;
     sumX += w * atX;
     sumY += w * atY;
     sumXX += w * atX * atX;
     sumXY += w * atX * atY;
-  });
+  }
   if (!(sum > 0)) return undefined;
   if (fitted === "level") return { level: sumY / sum, slope: 0 };
   const spread = sumXX - (sumX * sumX) / sum;
@@ -104,10 +115,11 @@ function leastSquares(
   return { level: (sumY - slope * sumX) / sum, slope };
 }
 
-export function median(values: readonly number[]): number {
-  const sorted = [...values].sort((one, other) => one - other);
-  const upper = sorted[Math.floor(sorted.length / 2)] as number;
-  const lower = sorted[Math.floor((sorted.length - 1) / 2)] as number;
+/** Middle value; NaN of none. */
+export function median(values: ArrayLike<number>): number {
+  const sorted = Float64Array.from(values).sort();
+  const upper = sorted[Math.floor(sorted.length / 2)] ?? Number.NaN;
+  const lower = sorted[Math.floor((sorted.length - 1) / 2)] ?? Number.NaN;
   return (lower + upper) / 2;
 }
 
