@@ -1,12 +1,13 @@
 import type { Grid, Notice } from "@rainreckon/core";
 import type { RateLayer } from "@rainreckon/mosaic";
-import { type JobRadar, type JobRound, noCounts } from "../total/job.ts";
+import { type JobRadar, type JobRound, noCounts, type UnitCounts } from "../total/job.ts";
 import { RoundLayers } from "../total/round-layers.ts";
 
 /** What one radar shows of one round. */
 export interface RateLayerOfRadar extends RateLayer {
   readonly radar: JobRadar;
-  readonly gatesCapped: number;
+  /** What was read, and what was done to it. */
+  readonly counts: UnitCounts;
 }
 
 /** One round of one radar on the grid, lowest sweeps first; undefined where it shows nothing of the grid. */
@@ -19,7 +20,7 @@ export function rateLayer(
   const layers = new RoundLayers(radar, { grid, variants: [], headlineCells: new Int32Array() });
   const counts = noCounts();
   const layer = layers.layer(round, counts, ({ what, where, fix }) => onNotice({ what, where, fix }));
-  return layer === undefined ? undefined : { ...layer, radar, gatesCapped: counts.gatesCapped };
+  return layer === undefined ? undefined : { ...layer, radar, counts };
 }
 
 /**

@@ -1,11 +1,11 @@
 import { existsSync, mkdirSync, readdirSync, renameSync } from "node:fs";
 import path from "node:path";
-import { InputError, midEpochMs } from "@rainreckon/core";
+import { InputError, midEpochMs, SCREENS } from "@rainreckon/core";
 import { displayText, type JsonValue, writeGeoTiff, writeJson } from "@rainreckon/formats";
 import type { ManifestInput } from "../manifest.ts";
 import { loadPlan } from "../plan/load.ts";
 import { indexScans, type RadarInput } from "../total/inputs.ts";
-import type { JobRadar, JobRound } from "../total/job.ts";
+import type { JobRadar, JobRound, UnitCounts } from "../total/job.ts";
 import { learnFor } from "../total/learned-run.ts";
 import { gridMap, jobRadar } from "../total/prepare.ts";
 import { leftOutLog } from "../ui/left-out.ts";
@@ -134,10 +134,11 @@ function factsOf(
     format: "rainreckon-rate-1" as const,
     file: MAP_FILE,
     unit: "mm/h",
-    radars: layers.map(({ radar, sweepMidEpochMs, gatesCapped }) => ({
+    radars: layers.map(({ radar, sweepMidEpochMs, counts }) => ({
       id: radar.site.id,
       instants: sweepMidEpochMs.map(isoUtc),
-      gatesCapped,
+      gatesCapped: counts.gatesCapped,
+      echo: radar.echo === undefined ? null : echoFacts(counts),
     })),
     cellCount: values.length,
     observedCells,
@@ -147,13 +148,33 @@ function factsOf(
   };
 }
 
+/** What was done to the echo, in gates. */
+function echoFacts(counts: UnitCounts) {
+  return {
+    gatesWithEcho: counts.gatesWithEcho,
+    screened: Object.fromEntries(SCREENS.map((screen, k) => [screen, counts.gatesScreened[k]])),
+    filled: counts.gatesFilled,
+    lostInAttenuation: counts.gatesLostInAttenuation,
+    blocked: counts.gatesBlocked,
+    hail: counts.gatesHail,
+    melting: counts.gatesMelting,
+    snow: counts.gatesSnow,
+  };
+}
+
+function screenedText(echo: ReturnType<typeof echoFacts> | null): string {
+  if (echo === null || echo.gatesWithEcho === 0) return "";
+  const screened = Object.values(echo.screened).reduce((sum, gates) => sum + gates, 0);
+  return `, ${decimals((100 * screened) / echo.gatesWithEcho, 1)} % of its echo taken for no rain`;
+}
+
 function rateText(facts: RateFacts, out: string): string {
   const share = (100 * facts.observedCells) / facts.cellCount;
   return [
     "Rain rate at one instant per radar; this is no total",
-    ...facts.radars.map(({ id, instants, gatesCapped }) => {
+    ...facts.radars.map(({ id, instants, gatesCapped, echo }) => {
       const first = utcText(Date.parse(instants[0] as string));
-      return `  ${displayText(id)}: ${first}, ${counted(instants.length, "sweep")}, ${counted(gatesCapped, "gate")} at cap`;
+      return `  ${displayText(id)}: ${first}, ${counted(instants.length, "sweep")}, ${counted(gatesCapped, "gate")} at cap${screenedText(echo)}`;
     }),
     `  highest cell ${decimals(facts.maxRateMmPerHour ?? 0, 1)} mm/h; ${decimals(share, 1)} % of the grid observed`,
     `  ${displayText(path.join(out, MAP_FILE))}, ${FACTS_FILE} beside it`,

@@ -1,7 +1,11 @@
 import { displayText } from "@rainreckon/formats";
+import type { Manifest } from "../manifest.ts";
 import { counted, countText, depthText, fixedDecimals, localText, utcText } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import type { TotalOutcome } from "./run-total.ts";
+
+/** A correction smaller than this on the mean is not worth a word on the terminal. */
+const LEAST_SHOWN_DB = 0.05;
 
 /** What a run tells people on the terminal: the headline, how far to trust it, and where the rest is. */
 export function totalText(outcome: TotalOutcome, folder: string, terminal: Terminal): string {
@@ -63,6 +67,7 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     headline.adjustmentMethod === null
       ? `not adjusted: ${headline.adjustmentReason}`
       : `${headline.adjustmentMethod}${factor}${error}`,
+    ...echoLine(outcome.manifest),
     `${headline.adjustmentMethod === null ? "" : "before adjustment, "}under published relations: ${relations.map(({ name, mm }) => `${name} ${depthText(mm)} mm`).join(", ")}`,
     "",
     ...(headline.cautions as string[]).slice(0, 3).map((caution) => `! ${caution}`),
@@ -72,4 +77,19 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
       ? [`(${counted(outcome.resumedUnits, "unit")} of work was there from before)`]
       : []),
   ].join("\n");
+}
+
+/** What was done to the echo, in one line; nothing where nothing was. */
+function echoLine({ echo }: Manifest): string[] {
+  if (echo === null) return [];
+  const screenedMm = echo.screens.reduce((sum, { districtMm }) => sum + districtMm, 0);
+  const corrections = echo.corrections
+    .filter(({ meanDb }) => Math.abs(meanDb) >= LEAST_SHOWN_DB)
+    .map(
+      ({ correction, meanDb }) =>
+        `${correction} ${meanDb > 0 ? "+" : "\u2212"}${fixedDecimals(Math.abs(meanDb), 1)} dB`,
+    );
+  return [
+    `echo: ${depthText(screenedMm)} mm taken for no rain; ${corrections.length === 0 ? "nothing corrected" : `corrected on average for ${corrections.join(", ")}`}`,
+  ];
 }
