@@ -2,7 +2,7 @@ import type { Interval } from "@rainreckon/core";
 import { headlinePositions, type RateLayer } from "@rainreckon/mosaic";
 import type { RadarIntegrator } from "./integrate.ts";
 import type { FieldShape, RadarStep } from "./radar-step.ts";
-import { type Span, spansAt } from "./spans.ts";
+import { type Span, SpanCutter } from "./spans.ts";
 
 /** Time that may be missing from a step before it counts as partly observed: rounding of float32 milliseconds. */
 export const FULL_SLACK_MS = 2;
@@ -120,6 +120,7 @@ export class StepBlender {
     const seenMs = radars.map((radar) => radar.step.observedMs);
     const weightMs = radars.map((radar) => radar.step.weightMs);
     const heights = radars.map((radar) => radar.step.heightMMs);
+    const cutter = new SpanCutter(step, stepIndex, radars);
     const partly: PartlySeen[] = [];
     for (let cell = 0; cell < observedMs.length; cell++) {
       let observing = 0;
@@ -139,7 +140,7 @@ export class StepBlender {
       if (observing === 0) continue;
       const cut = observing > 1 && full < observing;
       if (cut) {
-        const spans = spansAt(step, stepIndex, cell, radars);
+        const spans = cutter.at(cell);
         for (const { radar, ms } of spans) shareMs[radar][cell] += ms;
         partly.push({ cell, spans });
       }

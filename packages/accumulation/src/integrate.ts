@@ -50,6 +50,10 @@ export class RadarIntegrator {
   readonly #joiner: Joiner;
   readonly #layers: (HeldLayer | undefined)[] = [];
   #lent: RadarStep[] = [];
+  /** The stretches asked for last, their step, and by layer the sweep that spoke for their cell, -1 for none. */
+  #stretches: readonly LayerStretch[] = [];
+  #stretchesOfStep = -1;
+  readonly #spoken: number[] = [];
   #taken = 0;
   #released = 0;
 
@@ -126,8 +130,31 @@ export class RadarIntegrator {
 
   /**
    * The same with the layers at both ends. Needed only where two radars observed different parts of a step.
+   *
+   * @returns the same array as the last time where the same sweeps spoke for the cell as for the last one
    */
-  layerStretches(step: number, cell: number): LayerStretch[] {
+  layerStretches(step: number, cell: number): readonly LayerStretch[] {
+    if (this.#isSeenAlike(cell) && this.#stretchesOfStep === step) return this.#stretches;
+    this.#stretches = this.#stretchesAt(step, cell);
+    this.#stretchesOfStep = step;
+    return this.#stretches;
+  }
+
+  /** Whether the same sweep of each layer speaks for a cell as did for the one asked about last. */
+  #isSeenAlike(cell: number): boolean {
+    let alike = this.#spoken.length === this.#layers.length;
+    for (let n = this.#released; n < this.#layers.length; n++) {
+      const layer = this.#layers[n];
+      const speaks = layer !== undefined && layer.rateMmPerHour[cell] >= 0;
+      const sweep = speaks ? (layer.slot?.[cell] ?? 0) : -1;
+      if (this.#spoken[n] === sweep) continue;
+      this.#spoken[n] = sweep;
+      alike = false;
+    }
+    return alike;
+  }
+
+  #stretchesAt(step: number, cell: number): LayerStretch[] {
     const { startEpochMs, endEpochMs } = this.#steps[step];
     const { medianRoundMs, maxGapMs } = this.#rules;
     const half = medianRoundMs / 2;

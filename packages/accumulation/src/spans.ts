@@ -20,19 +20,62 @@ export interface Span extends Interval {
   readonly layer1: RateLayer;
 }
 
-/**
- * Cuts a step where any radar's view of a cell begins, ends or bends, and shares out each span by weight.
- *
- * @returns in time order; within a span in the order of the radars
- */
+/** What one radar says in a span, before it is shared out. */
+type Saying = Omit<Span, "share" | "ms">;
+
+/** Cuts a step at one cell; see {@link SpanCutter}. */
 export function spansAt(
   step: Interval,
   stepIndex: number,
   cell: number,
   radars: readonly RadarInStep[],
 ): Span[] {
-  const stretches = radars.map(({ integrator }) => integrator.layerStretches(stepIndex, cell));
-  const weights = radars.map((radar) => radar.step.weightMs[cell] / radar.step.observedMs[cell]);
+  return new SpanCutter(step, stepIndex, radars).at(cell);
+}
+
+/**
+ * Cuts a step where any radar's view of a cell begins, ends or bends, and shares out each span by weight.
+ * Cells that are seen alike lie beside each other, so the last cut is kept.
+ */
+export class SpanCutter {
+  readonly #step: Interval;
+  readonly #stepIndex: number;
+  readonly #radars: readonly RadarInStep[];
+  #stretches: readonly (readonly LayerStretch[])[] = [];
+  #cuts: readonly (readonly Saying[])[] = [];
+
+  /** @param stepIndex - of the step among those of the integrators */
+  constructor(step: Interval, stepIndex: number, radars: readonly RadarInStep[]) {
+    this.#step = step;
+    this.#stepIndex = stepIndex;
+    this.#radars = radars;
+  }
+
+  /** @returns in time order; within a span in the order of the radars */
+  at(cell: number): Span[] {
+    const stretches = this.#radars.map(({ integrator }) => integrator.layerStretches(this.#stepIndex, cell));
+    if (stretches.some((ofRadar, r) => ofRadar !== this.#stretches[r])) {
+      this.#stretches = stretches;
+      this.#cuts = cutsOf(this.#step, stretches);
+    }
+    const weights = this.#radars.map((radar) => radar.step.weightMs[cell] / radar.step.observedMs[cell]);
+    const spans: Span[] = [];
+    for (const sayings of this.#cuts) {
+      let sum = 0;
+      for (const { radar } of sayings) sum += weights[radar];
+      for (const saying of sayings) {
+        const share = weights[saying.radar] / sum;
+        const { startEpochMs, endEpochMs, radar, kind, hours0, hours1, layer0, layer1 } = saying;
+        const ms = share * (endEpochMs - startEpochMs);
+        spans.push({ startEpochMs, endEpochMs, radar, share, ms, kind, hours0, hours1, layer0, layer1 });
+      }
+    }
+    return spans;
+  }
+}
+
+/** What the radars say in each span of a step over which the same ones speak. */
+function cutsOf(step: Interval, stretches: readonly (readonly LayerStretch[])[]): Saying[][] {
   const borders = [step.startEpochMs, step.endEpochMs];
   for (const ofRadar of stretches) {
     for (const { fromEpochMs, toEpochMs } of ofRadar) {
@@ -41,24 +84,18 @@ export function spansAt(
     }
   }
   borders.sort((a, b) => a - b);
-  const spans: Span[] = [];
-  for (let k = 0; k + 1 < borders.length; k++) {
-    const [from, to] = [borders[k], borders[k + 1]];
-    if (from === to) continue;
-    const speaking = stretches.map((ofRadar) => stretchOver(ofRadar, from, to));
-    let sum = 0;
-    for (let r = 0; r < speaking.length; r++) if (speaking[r] !== undefined) sum += weights[r];
-    for (let radar = 0; radar < speaking.length; radar++) {
-      const stretch = speaking[radar];
-      if (stretch === undefined) continue;
+  return borders.slice(1).flatMap((endEpochMs, k) => {
+    const startEpochMs = borders[k];
+    if (startEpochMs === endEpochMs) return [];
+    const sayings = stretches.flatMap((ofRadar, radar): Saying[] => {
+      const stretch = stretchOver(ofRadar, startEpochMs, endEpochMs);
+      if (stretch === undefined) return [];
       const { fromEpochMs, toEpochMs, layer0, layer1, kind } = stretch;
-      const { hours0, hours1 } = trapezoidHours(fromEpochMs, toEpochMs, from, to);
-      const share = weights[radar] / sum;
-      const span = { startEpochMs: from, endEpochMs: to, radar, share, ms: share * (to - from) };
-      spans.push({ ...span, kind, hours0, hours1, layer0, layer1 });
-    }
-  }
-  return spans;
+      const { hours0, hours1 } = trapezoidHours(fromEpochMs, toEpochMs, startEpochMs, endEpochMs);
+      return [{ startEpochMs, endEpochMs, radar, kind, hours0, hours1, layer0, layer1 }];
+    });
+    return [sayings];
+  });
 }
 
 function stretchOver(stretches: readonly LayerStretch[], from: number, to: number): LayerStretch | undefined {
