@@ -22,8 +22,9 @@ const PRIOR_KM2_MM_PER_HOUR = { relation: 250, learned: 1000 } as const;
  * The ratio that is put down to the shape of drops, and the one that is taken for their number.
  *
  * The assumed shape alone moves R(KDP) by 5 to 40 % against Rayleigh-Gans scattering, and one relation is uncertain
- * by a factor of 1.5 to 2 on one scan: below 1.4 either way nothing is changed, above 1.8 all is. Ten times as many
- * drops make a factor of 2.15, thirty times 3.1; a KDP that says more, or next to nothing, is broken. House rule.
+ * by a factor of 1.5 to 2 on one scan: below 1.4 nothing is changed, above 1.8 all is. Ten times as many drops make
+ * a factor of 2.15, thirty times 3.1; a KDP that says more is broken. One that says less is never followed: hail and
+ * ice that nobody marked, or too long a window, are likelier than few drops. House rule.
  */
 const RATIO = { ignored: 1.4, believed: 1.8, doubted: 3, refused: 4 } as const;
 
@@ -69,7 +70,7 @@ function forEachCompared(
 }
 
 /**
- * Factor on every rate from Z that makes the sweep's rain agree with its KDP, where both disagree by more than
+ * Factor on every rate from Z that makes the sweep's rain agree with its KDP, where KDP tells more rain by more than
  * the shape of drops explains: many small drops, as in warm rain, echo less for the same rain.
  *
  * With a fixed exponent, Z = a R^b follows the number of drops through a. Source: Bringi, Tang and Chandrasekar
@@ -78,7 +79,7 @@ function forEachCompared(
  * The papers are from memory, and the thresholds are ours.
  *
  * @param rainType - numbers of `RAIN_TYPE`, or undefined for one relation everywhere
- * @returns what the run has learned where the sweep has no KDP; 1 where nothing is known, or the band has no law
+ * @returns 1 or more: what the run has learned where the sweep has no KDP; 1 where nothing is known, or the band has no law
  */
 export function dropNumberFactor(
   echo: PolarEcho,
@@ -96,17 +97,12 @@ export function dropNumberFactor(
     byZ += areaKm2 * rateOfZ(echo.dbz[gate], byType[rainType?.[gate] ?? 0]);
     byKdp += areaKm2 * rateOfKdp(kdp, laws.kdp);
   });
-  // Noise may outweigh what little rain there is.
-  return factorOfRatio(Math.max(byKdp, 1) / byZ);
+  return factorOfRatio(Math.max(0, byKdp) / byZ);
 }
 
 function factorOfRatio(ratio: number): number {
-  const log = Math.log(ratio);
-  const size = Math.abs(log);
-  const belief =
-    ramp(size, Math.log(RATIO.ignored), Math.log(RATIO.believed)) *
-    (1 - ramp(size, Math.log(RATIO.doubted), Math.log(RATIO.refused)));
-  return Math.exp(belief * log);
+  const belief = ramp(ratio, RATIO.ignored, RATIO.believed) * (1 - ramp(ratio, RATIO.doubted, RATIO.refused));
+  return ratio ** belief;
 }
 
 /** Learns over a run what {@link dropNumberFactor} starts from, so that a sweep with little heavy rain follows. */

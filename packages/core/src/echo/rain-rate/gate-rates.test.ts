@@ -247,7 +247,7 @@ describe("hail", () => {
     ["big drops", { dbz: 55, zdrDb: 3, rhohv: 0.98 }],
     ["rain of the usual shape", { dbz: 45, zdrDb: 1.2, rhohv: 0.985 }],
     ["many small drops", { dbz: 42, zdrDb: 0.6, rhohv: 0.99 }],
-    ["weak echo of low correlation", { dbz: 25, zdrDb: 0, rhohv: 0.9 }],
+    ["moderate echo of low correlation", { dbz: 37, zdrDb: 0, rhohv: 0.9 }],
     ["strong echo without ZDR", { dbz: 60, rhohv: 0.9 }],
   ])("%s is none", (_, gate) => {
     expect(rateOf(gate, POLARIMETRIC).rates.counts.hailGates).toBe(0);
@@ -288,15 +288,15 @@ describe("number of drops", () => {
     return gateRates(echo, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M)).dropNumberFactor;
   }
 
-  test.each([0.75, 1, 1.35])("a ratio of %d is the shape of drops: nothing is changed", (times) => {
+  test.each([0.75, 1, 1.39])("a ratio of %d is the shape of drops: nothing is changed", (times) => {
     expect(factorFor(times)).toBeCloseTo(1, 6);
   });
 
-  test.each([0.4, 2, 2.5])("a ratio of %d is their number: the sweep's rain follows KDP", (times) => {
+  test.each([1.9, 2, 2.5])("a ratio of %d is their number: the sweep's rain follows KDP", (times) => {
     expect(Math.abs(factorFor(times) / times - 1)).toBeLessThan(0.02);
   });
 
-  test.each([0, 5])("a ratio of %d is no rain's: KDP is broken and has no say", (times) => {
+  test.each([0, 0.4, 5])("a ratio of %d speaks of hail, ice or a broken KDP: nothing is changed", (times) => {
     expect(factorFor(times)).toBe(1);
   });
 

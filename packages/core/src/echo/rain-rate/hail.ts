@@ -19,12 +19,14 @@ export function rainLimitDbz(zdrDb: number): number {
  */
 const HDR_DB = { from: 0, to: 8 } as const;
 const HDR_ALONE_DB = { from: 12, to: 20 } as const;
+/** Weaker echo is no hail to speak of, whatever its ZDR: common practice, where 45 dBZ is a usual threshold. */
+const HAIL_DBZ = { none: 37, full: 43 } as const;
 /** Rain has 0.98 and more, melting hail 0.95 and less: common practice at S and C band. */
 const CORRELATION = { rain: 0.98, hail: 0.95 } as const;
 
 /** False where no ZDR could make the echo look like hail, so that none need be asked for. */
 export function mayBeHail(reflectivityDbz: number, rhohv: number): boolean {
-  return reflectivityDbz > LEAST_LIMIT_DBZ && !(rhohv >= CORRELATION.rain);
+  return reflectivityDbz > HAIL_DBZ.none && !(rhohv >= CORRELATION.rain);
 }
 
 /**
@@ -36,6 +38,7 @@ export function mayBeHail(reflectivityDbz: number, rhohv: number): boolean {
 export function hailShare(reflectivityDbz: number, zdrDb: number, rhohv: number): number {
   const hdr = reflectivityDbz - rainLimitDbz(zdrDb);
   if (!(hdr > 0)) return 0;
-  if (Number.isNaN(rhohv)) return ramp(hdr, HDR_ALONE_DB.from, HDR_ALONE_DB.to);
-  return ramp(hdr, HDR_DB.from, HDR_DB.to) * (1 - ramp(rhohv, CORRELATION.hail, CORRELATION.rain));
+  const strength = ramp(reflectivityDbz, HAIL_DBZ.none, HAIL_DBZ.full);
+  if (Number.isNaN(rhohv)) return strength * ramp(hdr, HDR_ALONE_DB.from, HDR_ALONE_DB.to);
+  return strength * ramp(hdr, HDR_DB.from, HDR_DB.to) * (1 - ramp(rhohv, CORRELATION.hail, CORRELATION.rain));
 }

@@ -102,7 +102,7 @@ export class RateBlender {
         : Math.min(27, Z_ZDR_DBZ.from, ATTENUATION_DBZ.from);
     this.dropNumberFactor =
       polarimetric?.dropNumber === true ? dropNumberFactor(echo, rainType, tables, this.#reader) : 1;
-    const unusual = ramp(Math.abs(Math.log(this.dropNumberFactor)), 0, Math.log(Z_ZDR_MOST_FACTOR));
+    const unusual = ramp(this.dropNumberFactor, 1, Z_ZDR_MOST_FACTOR);
     this.#zZdrShare = polarimetric === undefined ? 0 : (1 - unusual) * tables.zZdrShare;
   }
 
