@@ -28,7 +28,11 @@ export function explainText(explanation: Explanation): string {
   return [
     ...explanation.points.map((point) => pointText(point, explanation)),
     ...explanation.catchments.map((area) => areaText(area, explanation)),
-  ].join("\n\n");
+  ]
+    .join("\n\n")
+    .split("\n")
+    .flatMap(wrapped)
+    .join("\n");
 }
 
 function headLines({ run, span, window, remarks }: Explanation, spanRadarMm: number | null): string[] {
@@ -146,7 +150,7 @@ function scanLines(
       `${indent}gridded rain, ${displayText(scan.file ?? "")}, ${displayText(scan.dataset ?? "")}: no sweep, ray or gate is known`,
       `${indent}values in the cell (${scan.gridQuantity}): ${values}`,
     );
-    return lines.flatMap((line) => wrapped(line, indent));
+    return lines;
   }
   if (scan.file !== null) {
     lines.push(
@@ -158,7 +162,7 @@ function scanLines(
   }
   for (const { elevationDeg, why } of scan.passedOver)
     lines.push(`${indent}the sweep at ${decimals(elevationDeg, 2)}° did not speak: ${why}`);
-  return lines.flatMap((line) => wrapped(line, indent));
+  return lines;
 }
 
 /** Measured and corrected dBZ, every effect by name, screens, estimator, cap. */
@@ -433,15 +437,16 @@ function clockOf({ span }: Explanation): (iso: string) => string {
 
 const WIDTH = 100;
 
-/** Breaks a line at blanks; what follows is indented. */
-function wrapped(line: string, indent: string): string[] {
+/** Breaks a line at blanks; what follows is indented a little further. */
+function wrapped(line: string): string[] {
+  const indent = `${/^ */.exec(line)?.[0] ?? ""}  `;
   const lines: string[] = [];
   let rest = line;
   while (rest.length > WIDTH) {
     const cut = rest.lastIndexOf(" ", WIDTH);
-    if (cut <= indent.length + 4) break;
+    if (cut <= indent.length) break;
     lines.push(rest.slice(0, cut));
-    rest = `${indent}  ${rest.slice(cut + 1)}`;
+    rest = `${indent}${rest.slice(cut + 1)}`;
   }
   return [...lines, rest];
 }

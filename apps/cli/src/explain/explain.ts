@@ -17,7 +17,7 @@ import { AdjustedBy } from "./adjusted-by.ts";
 import { areaAccount } from "./area-account.ts";
 import { AreaTracer, together } from "./area-tracer.ts";
 import { CellTracer } from "./cell-tracer.ts";
-import { checkedOutput, type OpenedRun, openRun } from "./open-run.ts";
+import { type OpenedRun, openRun } from "./open-run.ts";
 import { type Asked, findAsked } from "./places-asked.ts";
 import { pointAccount } from "./point-account.ts";
 import type { Explanation } from "./schema.ts";
@@ -69,7 +69,7 @@ export async function explainRun(
   const cellTracer = new CellTracer(run.grid, run.map, cells);
   const areaTracers = areas.map(({ catchment }) => new AreaTracer(catchment.cells));
   const trace = together([...(cells.length > 0 ? [cellTracer] : []), ...areaTracers]);
-  const stored = await readTotals(await checkedOutput(folder, done, "totals.nc"), [
+  const stored = await readTotals(opened.totalsFile, [
     "radar_total",
     "adjusted_total",
     "radar_depth",

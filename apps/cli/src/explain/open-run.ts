@@ -18,6 +18,8 @@ import { version } from "../version.ts";
 export interface OpenedRun {
   readonly done: Run;
   readonly run: PreparedRun;
+  /** Its totals.nc. */
+  readonly totalsFile: string;
   /** What keeps the account from being of one piece with the run, in sentences. */
   readonly remarks: readonly string[];
 }
@@ -51,6 +53,10 @@ export async function openRun(
       "name the plan as it was with --plan, or run total again",
     );
   }
+  const learnedFile = manifest.outputs.some(({ file }) => file === LEARNED)
+    ? await checkedOutput(folder, done, LEARNED)
+    : undefined;
+  const totalsFile = await checkedOutput(folder, done, "totals.nc");
   await checkInputs(found, manifest.inputs, progressOf);
   const loaded = onlyKnown(found, manifest.inputs);
   // What has to be said of the inputs was said by total, and stands in the manifest.
@@ -60,8 +66,11 @@ export async function openRun(
   const remarks: string[] = [];
   if (manifest.version !== version())
     remarks.push(`the run was made by rainreckon ${manifest.version}, this account by ${version()}`);
-  const run = learnsBeforehand(planned) ? withLearned(planned, await learnedOf(folder, done)) : planned;
-  return { done, run, remarks };
+  const run =
+    learnedFile === undefined || !learnsBeforehand(planned)
+      ? planned
+      : withLearned(planned, await learnedOf(learnedFile));
+  return { done, run, totalsFile, remarks };
 }
 
 /** The plan as the run's log has it, from the run's folder on. */
@@ -123,13 +132,12 @@ function onlyKnown(loaded: LoadedPlan, inputs: readonly ManifestInput[]): Loaded
 }
 
 /** What the run learned of its radars, by site. */
-async function learnedOf(folder: string, done: Run): Promise<ReadonlyMap<string, LearnedEcho>> {
-  const file = await checkedOutput(folder, done, LEARNED);
+async function learnedOf(file: string): Promise<ReadonlyMap<string, LearnedEcho>> {
   return new Map(Object.entries((await readLearned(file)) as unknown as Record<string, LearnedEcho>));
 }
 
 /** The path of an output whose SHA-256 is that of the manifest. @throws InputError (kind "usage") where it is not */
-export async function checkedOutput(folder: string, { manifest }: Run, name: string): Promise<string> {
+async function checkedOutput(folder: string, { manifest }: Run, name: string): Promise<string> {
   const file = path.join(folder, name);
   const known = manifest.outputs.find((output) => output.file === name);
   const fix = "put it back as it was, or run total again with --force";
