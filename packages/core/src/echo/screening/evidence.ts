@@ -21,7 +21,7 @@ const ROUGHNESS = screenBit("still-echo") | screenBit("texture");
  * seldom do. Such a gate is cleared of what speaks against it by strength, place and roughness alone.
  * Common practice takes 0.9 to 0.97.
  */
-export const WEATHER_LIKE_RHOHV = 0.9;
+const WEATHER_LIKE_RHOHV = 0.9;
 
 /** What a weather-like correlation clears a gate of. */
 const CLEARED = bitsOf([
@@ -34,7 +34,7 @@ const CLEARED = bitsOf([
   "fixed-point",
 ]);
 
-export function bitsOf(screens: readonly Screen[]): number {
+function bitsOf(screens: readonly Screen[]): number {
   return screens.reduce((bits, screen) => bits | screenBit(screen), 0);
 }
 

@@ -12,6 +12,11 @@ const WITHIN_M = 3000;
 /** Neighbours that it takes: of the near window, and of the wide one. House rule. */
 const ENOUGH_NEAR = 6;
 const ENOUGH = 3;
+/**
+ * And this share of what was observed there: amid much false echo what is left of it is no better, and the next
+ * sweep may speak. House rule.
+ */
+const SOUND_SHARE = 0.5;
 /** Z by reflectivity in steps of 0.05 dB from -100 to 100 dBZ, since powers are slow. */
 const STEPS_PER_DB = 20;
 const LOWEST_DBZ = -100;
@@ -67,6 +72,7 @@ function meanAround(
   const last = Math.min(gateCount - 1, gate + gates);
   let sum = 0;
   let weights = 0;
+  let observed = 0;
   let count = 0;
   for (let side = -rays; side <= rays; side++) {
     const beside = rayBeside(view, ray, side);
@@ -75,7 +81,9 @@ function meanAround(
     for (let other = first; other <= last; other++) {
       const at = beside * gateCount + other;
       const value = measuredDbz[at] as number;
-      if (screenedBy[at] !== 0 || Number.isNaN(value)) continue;
+      if (Number.isNaN(value)) continue;
+      observed++;
+      if (screenedBy[at] !== 0) continue;
       const alongM = (other - gate) * gateLengthM;
       const weight = 1 / (acrossM * acrossM + alongM * alongM);
       if (value > Number.NEGATIVE_INFINITY) sum += weight * tabulatedZ(value);
@@ -83,7 +91,7 @@ function meanAround(
       count++;
     }
   }
-  return count >= enough ? decibels(sum / weights) : Number.NaN;
+  return count >= enough && count >= SOUND_SHARE * observed ? decibels(sum / weights) : Number.NaN;
 }
 
 function tabulatedZ(dbz: number): number {

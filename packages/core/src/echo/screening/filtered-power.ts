@@ -3,9 +3,9 @@ import type { Evidence } from "./evidence.ts";
 import type { SweepView } from "./sweep-view.ts";
 
 /** From here on the filter found ground echo in the gate. House rule. */
-export const FILTERED_WEAK_DB = 6;
+const FILTERED_WEAK_DB = 6;
 /** From here on what is left may as well be what the filter could not take. House rule. */
-export const FILTERED_STRONG_DB = 25;
+const FILTERED_STRONG_DB = 25;
 
 /**
  * TH well above DBZH: the clutter filter took much away, and what it leaves of ground echo is no rain.

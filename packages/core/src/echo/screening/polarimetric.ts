@@ -5,9 +5,9 @@ import type { SweepView } from "./sweep-view.ts";
 /** Noise spoils correlation and phase of echo less than this above it. House rule. */
 const CLEAR_OF_NOISE_DB = 6;
 /** Weather seldom correlates worse than this, even melting snow and hail. Common practice: 0.8 to 0.85. */
-export const WEAK_RHOHV = 0.85;
+const WEAK_RHOHV = 0.85;
 /** No weather does. House rule, below what is reported of melting layers. */
-export const STRONG_RHOHV = 0.75;
+const STRONG_RHOHV = 0.75;
 
 /**
  * RHOHV: ground, blades and foreign pulses correlate badly, hydrometeors well.
@@ -33,8 +33,8 @@ export function screenLowCorrelation(view: SweepView, { strong, weak }: Evidence
 }
 
 /** Phase that a gate may be off its neighbours along the ray, degrees. House rule; rain scatters by 2 to 5. */
-export const WEAK_PHASE_DEG = 15;
-export const STRONG_PHASE_DEG = 45;
+const WEAK_PHASE_DEG = 15;
+const STRONG_PHASE_DEG = 45;
 
 /**
  * PHIDP: in rain it changes slowly along a ray, in ground echo it is anything.
@@ -98,7 +98,7 @@ function secondSmallest(a: number, b: number, c: number, d: number): number {
 }
 
 /** Insects and birds: weak, long in the horizontal, badly correlated. Common practice for the three; house rule in sum. */
-export const CLEAR_AIR = { belowDbz: 20, aboveZdrDb: 2.5, belowRhohv: 0.9, belowHeightM: 3000 } as const;
+const CLEAR_AIR = { belowDbz: 20, aboveZdrDb: 2.5, belowRhohv: 0.9, belowHeightM: 3000 } as const;
 
 /**
  * Strong, since it asks for four things at once: weak echo near the ground with high ZDR and low RHOHV.

@@ -219,6 +219,17 @@ describe("filling", () => {
     const { report, dbz, isMarked } = island(55, NO_FILL);
     expect([report.filledGates, dbz, isMarked]).toEqual([0, Number.NaN, false]);
   });
+  test("amid much false echo a gate is not observed, so that the next sweep may speak", () => {
+    const isFalse = (ray: number, gate: number) =>
+      ray >= 80 && ray < 110 && gate >= 20 && gate < 40 && (ray + gate) % 3 > 0;
+    const echo = sketchSweep({ dbz: () => 25, rhohv: (ray, gate) => (isFalse(ray, gate) ? 0.4 : 0.98) });
+    screenSweep(echo, undefined, undefined, DEFAULT_SCREENING);
+    // Two gates of three are false in the middle; at the corner a quarter of the window is.
+    expect(isFalse(95, 30)).toBe(true);
+    expect(echo.dbz[95 * 60 + 30]).toBeNaN();
+    expect(isFalse(80, 21)).toBe(true);
+    expect(echo.dbz[80 * 60 + 21]).toBeCloseTo(25, 5);
+  });
   test("amid dry gates it becomes dry", () => {
     const echo = sketchSweep({ dbz: (ray, gate) => (ray === 90 && gate === 40 ? 40 : DRY) });
     screenSweep(echo, undefined, undefined, DEFAULT_SCREENING);

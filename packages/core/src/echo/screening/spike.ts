@@ -24,17 +24,14 @@ const CLASSES = 160;
  *
  * Source of the signature: Holleman, Huuskonen, Gill and Tabary (2010), J. Atmos. Oceanic Technol. 27, 881-887;
  * the test is a house rule. Strong, for the gates whose echo is no stronger than the spike; rain above it stays.
- *
- * @returns number of rays found to be spikes
  */
-export function screenSpikes(view: SweepView, { strong }: Evidence): number {
+export function screenSpikes(view: SweepView, { strong }: Evidence): void {
   const { echo, rayCount, gateCount, rangeGainDb, rayStepDeg, echoAt, echoStart } = view;
   const reach = Math.max(3, Math.round(REACH_DEG / rayStepDeg));
-  if (rayCount < 2 * reach + 1 || gateCount < OPEN_GATES) return 0;
+  if (rayCount < 2 * reach + 1 || gateCount < OPEN_GATES) return;
   const bit = screenBit("spike");
   const { measuredDbz } = echo;
   const classes = new Uint32Array(CLASSES);
-  let found = 0;
   for (let ray = 0; ray < rayCount; ray++) {
     const left = rayBeside(view, ray, -reach);
     const right = rayBeside(view, ray, reach);
@@ -46,14 +43,12 @@ export function screenSpikes(view: SweepView, { strong }: Evidence): number {
     if (standing < OPEN_GATES || standing < SHOWN_SHARE * OPEN_SHARE * gateCount) continue;
     const powerDb = medianOf(classes, standing);
     if (!isSpike(view, ray, left, right, powerDb)) continue;
-    found++;
     for (let k = echoStart[ray] as number; k < (echoStart[ray + 1] as number); k++) {
       const at = echoAt[k] as number;
       const overDb = (measuredDbz[at] as number) - (rangeGainDb[at - start] as number) - powerDb;
       if (overDb <= EVEN_WITHIN_DB) strong[at] = (strong[at] as number) | bit;
     }
   }
-  return found;
 }
 
 /** Sorts the power of the gates that stand out on both sides into classes. */

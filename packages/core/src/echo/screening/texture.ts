@@ -6,7 +6,7 @@ import type { SweepView } from "./sweep-view.ts";
 export const SUSPECT_TEXTURE_DB2 = 45;
 export const SUSPECT_SPIN_PERCENT = 50;
 /** Mean difference between neighbours from which a change of sign counts. From memory of Steiner and Smith (2002). */
-export const SPIN_THRESHOLD_DB = 2;
+const SPIN_THRESHOLD_DB = 2;
 /** Gates to either side that a window holds, and pairs of neighbours that it needs. House rule. */
 const REACH = 2;
 const ENOUGH_PAIRS = 3;

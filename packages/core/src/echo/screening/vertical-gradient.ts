@@ -4,9 +4,9 @@ import type { Evidence } from "./evidence.ts";
 import { nearestRay, type SweepView } from "./sweep-view.ts";
 
 /** Weather rarely loses more than 10 to 20 dB from the lowest sweep to the next (common practice). */
-export const WEAK_DROP_DB = 15;
+const WEAK_DROP_DB = 15;
 /** House rule: what no weather is known to lose over the height that is allowed here. */
-export const STRONG_DROP_DB = 25;
+const STRONG_DROP_DB = 25;
 /** Above these the next beam may pass over shallow rain, or lie in the ice above the melting layer. House rules. */
 const HIGHEST_UPPER_BEAM_M = 2000;
 const WIDEST_GAP_M = 1000;
