@@ -109,7 +109,7 @@ export {
 } from "./echo/attenuation/settle-loss-coefficients.ts";
 export { DEFAULT_KDP_SETTINGS, type KdpSettings } from "./echo/attenuation/specific-phase.ts";
 export { type SystemPhase, SystemPhaseLearner } from "./echo/attenuation/system-phase.ts";
-export { zphiAttenuationOneWayDbPerKm, zphiLossTwoWayDb } from "./echo/attenuation/zphi.ts";
+export { zphiAttenuationOneWayDbPerKm, zphiConstant, zphiLossTwoWayDb } from "./echo/attenuation/zphi.ts";
 export {
   BlockageLearner,
   type LearnedBlockage,

@@ -10,7 +10,7 @@ import {
 import { hitschfeldBordanBracket, lossOfBracketTwoWayDb } from "./hitschfeld-bordan.ts";
 import type { LearnedAttenuation } from "./learned.ts";
 import { phaseCoefficients } from "./phase-coefficients.ts";
-import { zphiLossTwoWayDb } from "./zphi.ts";
+import { zphiConstant, zphiLossTwoWayDb } from "./zphi.ts";
 
 /** What the correction of attenuation did to a sweep. */
 export interface AttenuationReport {
@@ -96,12 +96,11 @@ export function correctAttenuation(
   let reason: string | undefined;
   let method: "linear" | "zphi" | "hitschfeld-bordan";
   let zdrCorrected = false;
-  const skip = notRain(echo, settings);
   if (byPhase) {
     method = settings.method === "linear" ? "linear" : "zphi";
     const phase = echo.rainPhaseDeg as Float32Array;
     for (let gate = 0; gate < loss.length; gate++) loss[gate] = alpha * (phase[gate] as number);
-    if (method === "zphi") shareOutByZphi(echo, loss, skip, alpha, settings);
+    if (method === "zphi") shareOutByZphi(echo, loss, notRain(echo, settings), alpha, settings);
     const ratio = published === undefined ? 0 : published.differentialLoss.dbPerDeg / published.loss.dbPerDeg;
     zdrCorrected = correctZdr(echo, loss, (learned.differentialDbPerDeg ?? ratio * alpha) / alpha);
   } else {
@@ -112,7 +111,7 @@ export function correctAttenuation(
     if (settings.method === "linear" || settings.method === "zphi") {
       reason = `${settings.method} needs a PHIDP that was worked up, and a coefficient`;
     }
-    lossByReflectivity(echo, loss, skip, factor, settings);
+    lossByReflectivity(echo, loss, notRain(echo, settings), factor, settings);
   }
   const limitDb = byPhase ? settings.phaseLimitDb : settings.hitschfeldBordanLimitDb;
   const lost = loseWhatLiesBehind(echo, loss, limitDb, settings);
@@ -193,9 +192,10 @@ function shareOutByZphi(
       const pathLossDb = (loss[r2] as number) - start;
       if (pathLossDb < enoughDb) continue;
       const total = integrate(dbz, table, r1, r2, before);
+      const constant = zphiConstant(pathLossDb, settings.zphiExponent);
       for (let i = r1; i <= r2; i++) {
         loss[i] =
-          start + zphiLossTwoWayDb((before[i - r1] as number) / total, pathLossDb, settings.zphiExponent);
+          start + zphiLossTwoWayDb((before[i - r1] as number) / total, constant, settings.zphiExponent);
       }
     }
   }

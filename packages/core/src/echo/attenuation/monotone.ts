@@ -1,11 +1,11 @@
 /** Room for the rays of a sweep, made once: nothing is allocated ray by ray. */
 export class MonotoneFit {
   readonly #level: Float64Array;
-  readonly #weight: Float64Array;
+  readonly #weight: Int32Array;
 
   constructor(most: number) {
     this.#level = new Float64Array(most);
-    this.#weight = new Float64Array(most);
+    this.#weight = new Int32Array(most);
   }
 
   /**

@@ -80,7 +80,11 @@ export function workUpPhase(
   const antenna = -header.firstGateCentreM / header.gateLengthM;
   let most = 0;
   for (let from = 0; from < phidpDeg.length; from += gateCount) {
-    ray.unfold(phidpDeg, good, from, systemPhaseDeg, settings.foldDeg);
+    const found = ray.unfold(phidpDeg, good, from, systemPhaseDeg, settings.foldDeg);
+    if (found === 0) {
+      kdp?.fill(Number.NaN, from, from + gateCount);
+      continue;
+    }
     if (kdp !== undefined) {
       slopes.load(ray.unfolded);
       kdpOfRay(slopes, echo.dbz, from, kdp, gateCount, gateKm, noiseDeg, kdpSettings);
@@ -118,15 +122,17 @@ class RayPhase {
     this.#fit = new MonotoneFit(gateCount);
   }
 
-  /** Unfolds each gate to the level of those before it: a level, not a neighbour, so that one wild gate harms none. */
+  /** Unfolds each gate to the level of those before it: a level, not a neighbour, so that one wild gate harms none. Gives the good gates. */
   unfold(
     phidpDeg: Float32Array,
     good: Uint8Array,
     from: number,
     systemPhaseDeg: number,
     foldDeg: number,
-  ): void {
+  ): number {
     const { unfolded } = this;
+    const places = this.#place;
+    const values = this.#value;
     unfolded.fill(Number.NaN);
     let level = 0;
     let count = 0;
@@ -135,28 +141,33 @@ class RayPhase {
       const off = folded((phidpDeg[from + gate] as number) - systemPhaseDeg - level, foldDeg);
       const value = level + off;
       unfolded[gate] = value;
-      this.#place[count] = gate;
-      this.#value[count] = value;
+      places[count] = gate;
+      values[count] = value;
       count++;
       level += Math.max(-LEVEL_STEP_DEG, Math.min(LEVEL_STEP_DEG, LEVEL_SHARE * off));
     }
     this.#count = count;
+    return count;
   }
 
   /** Writes the rise that never falls, filled along the ray, and gives its end. */
   rise(out: Float32Array, from: number, antenna: number): number {
     const count = this.#count;
     if (count === 0) return 0;
-    medianOfFive(this.#value, count, this.#smooth);
-    this.#fit.fit(this.#smooth, count);
+    const smooth = this.#smooth;
+    const places = this.#place;
+    medianOfFive(this.#value, count, smooth);
+    this.#fit.fit(smooth, count);
     let lastPlace = antenna;
     let last = 0;
     let gate = 0;
     for (let i = 0; i < count; i++) {
-      const place = this.#place[i] as number;
-      const here = Math.max(0, this.#smooth[i] as number);
-      const slope = (here - last) / (place - lastPlace);
-      for (; gate < place; gate++) out[from + gate] = last + slope * (gate - lastPlace);
+      const place = places[i] as number;
+      const here = Math.max(0, smooth[i] as number);
+      if (gate < place) {
+        const slope = (here - last) / (place - lastPlace);
+        for (; gate < place; gate++) out[from + gate] = last + slope * (gate - lastPlace);
+      }
       out[from + gate++] = here;
       last = here;
       lastPlace = place;

@@ -16,7 +16,7 @@ import {
   runawayLossTwoWayDb,
 } from "./hitschfeld-bordan.ts";
 import { lossOfPhaseTwoWayDb, phaseCoefficients } from "./phase-coefficients.ts";
-import { zphiAttenuationOneWayDbPerKm } from "./zphi.ts";
+import { zphiAttenuationOneWayDbPerKm, zphiConstant } from "./zphi.ts";
 
 /** Fine enough that the trapezoids below err by less than the tolerances of the entries. */
 const STEPS = 40_000;
@@ -145,7 +145,7 @@ runReferenceSuite({
           attenuatedZToB(pathKm / 2),
           whole,
           half / whole,
-          lossDb,
+          zphiConstant(lossDb, exponent),
           exponent,
         );
       },
@@ -163,7 +163,7 @@ runReferenceSuite({
           10 ** (0.1 * law.exponent * attenuatedDbz),
           path.integral / law.coefficient,
           (path.integrals[place] as number) / path.integral,
-          path.lossDb,
+          zphiConstant(path.lossDb, law.exponent),
           law.exponent,
         );
       },

@@ -20,53 +20,60 @@ const HEAVY_DBZ = 40;
 /** Radians in a degree of phase: what KDP in rad/km is to KDP in deg/km. */
 export const RAD_PER_DEG = Math.PI / 180;
 
+const SUMS = 5;
+
 /** Slopes of phase along rays by least squares over windows, from running sums. */
 export class SlopeOfPhase {
-  readonly #n: Float64Array;
-  readonly #x: Float64Array;
-  readonly #xx: Float64Array;
-  readonly #y: Float64Array;
-  readonly #xy: Float64Array;
+  /** Of all gates before one: how many, places, their squares, phases, products; one after another. */
+  readonly #sums: Float64Array;
   readonly #gateCount: number;
 
   constructor(gateCount: number) {
     this.#gateCount = gateCount;
-    this.#n = new Float64Array(gateCount + 1);
-    this.#x = new Float64Array(gateCount + 1);
-    this.#xx = new Float64Array(gateCount + 1);
-    this.#y = new Float64Array(gateCount + 1);
-    this.#xy = new Float64Array(gateCount + 1);
+    this.#sums = new Float64Array(SUMS * (gateCount + 1));
   }
 
   /** Takes a ray in: gates that are NaN do not count. */
   load(phaseDeg: Float64Array): void {
+    const sums = this.#sums;
+    let n = 0;
+    let x = 0;
+    let xx = 0;
+    let y = 0;
+    let xy = 0;
     for (let gate = 0; gate < this.#gateCount; gate++) {
-      const y = phaseDeg[gate] as number;
-      const seen = Number.isNaN(y) ? 0 : 1;
-      const x = seen * gate;
-      const value = seen === 1 ? y : 0;
-      this.#n[gate + 1] = (this.#n[gate] as number) + seen;
-      this.#x[gate + 1] = (this.#x[gate] as number) + x;
-      this.#xx[gate + 1] = (this.#xx[gate] as number) + x * gate;
-      this.#y[gate + 1] = (this.#y[gate] as number) + value;
-      this.#xy[gate + 1] = (this.#xy[gate] as number) + x * value;
+      const value = phaseDeg[gate] as number;
+      if (!Number.isNaN(value)) {
+        n++;
+        x += gate;
+        xx += gate * gate;
+        y += value;
+        xy += gate * value;
+      }
+      const to = SUMS * (gate + 1);
+      sums[to] = n;
+      sums[to + 1] = x;
+      sums[to + 2] = xx;
+      sums[to + 3] = y;
+      sums[to + 4] = xy;
     }
   }
 
   /** Half of the slope in degrees per gate, over gates within `half` of one. Read `variance` after it. */
   kdpPerGate(gate: number, half: number): number {
-    const from = Math.max(0, gate - half);
-    const to = Math.min(this.#gateCount, gate + half + 1);
-    const n = (this.#n[to] as number) - (this.#n[from] as number);
-    const x = (this.#x[to] as number) - (this.#x[from] as number);
-    const xx = (this.#xx[to] as number) - (this.#xx[from] as number) - (x * x) / n;
+    const sums = this.#sums;
+    const from = SUMS * Math.max(0, gate - half);
+    const to = SUMS * Math.min(this.#gateCount, gate + half + 1);
+    const n = (sums[to] as number) - (sums[from] as number);
+    const x = (sums[to + 1] as number) - (sums[from + 1] as number);
+    const xx = (sums[to + 2] as number) - (sums[from + 2] as number) - (x * x) / n;
     // Fewer than half of the window's gates do not stand for it.
     if (n < 3 || n < half + 1 || !(xx > 0)) {
       this.variance = Number.POSITIVE_INFINITY;
       return Number.NaN;
     }
-    const y = (this.#y[to] as number) - (this.#y[from] as number);
-    const xy = (this.#xy[to] as number) - (this.#xy[from] as number) - (x * y) / n;
+    const y = (sums[to + 3] as number) - (sums[from + 3] as number);
+    const xy = (sums[to + 4] as number) - (sums[from + 4] as number) - (x * y) / n;
     this.variance = 0.25 / xx;
     return (0.5 * xy) / xx;
   }

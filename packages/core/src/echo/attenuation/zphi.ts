@@ -1,20 +1,28 @@
 import { TWO_WAY_EXPONENT } from "./hitschfeld-bordan.ts";
 
 /**
- * Loss both ways along a path through rain whose phase is known at both ends, dB.
+ * C of ZPHI, 10^(0.1 b L) - 1: once for a path.
  *
- * Specific attenuation is A = Za^b C / (I(r1,r2) + C I(r,r2)), with C = 10^(0.1 b L) - 1, L the loss over the
- * whole path, and I the integral 0.2 ln10 b Int Za^b ds; its integral is closed and is what stands here. Free
- * of the calibration of Z. Source: Testud et al. (2000), J. Atmos. Oceanic Technol. 17, 332-356.
- *
- * @param share - part of the path's integral of Za^b that lies before the place, 0 to 1
- * @param pathLossDb - loss over the whole path: alpha times the rise of PHIDP
+ * @param pathLossDb - two-way loss over the whole path: alpha times the rise of PHIDP
  * @param exponent - b of A = a Z^b
  */
-export function zphiLossTwoWayDb(share: number, pathLossDb: number, exponent: number): number {
+export function zphiConstant(pathLossDb: number, exponent: number): number {
+  return Math.expm1(0.1 * Math.LN10 * exponent * pathLossDb);
+}
+
+/**
+ * Loss both ways along a path through rain whose phase is known at both ends, dB.
+ *
+ * Specific attenuation is A = Za^b C / (I(r1,r2) + C I(r,r2)), with I the integral 0.2 ln10 b Int Za^b ds; its
+ * integral is closed and is what stands here. Free of the calibration of Z. Source: Testud et al. (2000), J. Atmos.
+ * Oceanic Technol. 17, 332-356.
+ *
+ * @param share - part of the path's integral of Za^b that lies before the place, 0 to 1
+ * @param constant - from {@link zphiConstant}
+ */
+export function zphiLossTwoWayDb(share: number, constant: number, exponent: number): number {
   // I(r,r2) = (1 - share) I: the loss up to r is (10/b) log10((1 + C) / (1 + C (1 - share))).
-  const c = Math.expm1(0.1 * Math.LN10 * exponent * pathLossDb);
-  return pathLossDb - (10 / exponent) * Math.log10(1 + c * (1 - share));
+  return (10 / exponent) * Math.log10((1 + constant) / (1 + constant * (1 - share)));
 }
 
 /**
@@ -27,9 +35,8 @@ export function zphiAttenuationOneWayDbPerKm(
   zToB: number,
   pathZToBKm: number,
   share: number,
-  pathLossDb: number,
+  constant: number,
   exponent: number,
 ): number {
-  const c = Math.expm1(0.1 * Math.LN10 * exponent * pathLossDb);
-  return (zToB * c) / (TWO_WAY_EXPONENT * exponent * pathZToBKm * (1 + c * (1 - share)));
+  return (zToB * constant) / (TWO_WAY_EXPONENT * exponent * pathZToBKm * (1 + constant * (1 - share)));
 }
