@@ -238,6 +238,20 @@ describe("hail", () => {
     expect(rates.rateMmPerHour[at]).toBeLessThan(12.5);
   });
 
+  test("over a sector it does not look across the gap", () => {
+    const sector = testEcho(
+      90,
+      40,
+      (ray, gate) =>
+        ray < 40 ? { dbz: ray === 0 && gate === 20 ? 60 : 5, zdrDb: 0, rhohv: 0.92 } : { dbz: 40 },
+      S_BAND_M,
+    );
+    for (let ray = 0; ray < 90; ray++) sector.azimuthDeg[ray] = ray;
+    const rates = gateRates(sector, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M));
+    expect(RATE_METHODS[rates.method[20]]).toBe("hail-neighbours");
+    expect(Math.round(rates.rateMmPerHour[20])).toBe(75);
+  });
+
   test("without KDP and without rain around it the cap holds", () => {
     const { rate, method } = rateOf(hail, POLARIMETRIC);
     expect([Math.round(rate), method]).toEqual([75, "hail-neighbours"]);

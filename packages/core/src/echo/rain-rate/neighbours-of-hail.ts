@@ -1,5 +1,5 @@
 import type { PolarEcho } from "../polar-echo.ts";
-import { isLiquid } from "./moment-reader.ts";
+import { isClosed, isLiquid } from "./moment-reader.ts";
 import { ramp } from "./ramp.ts";
 
 /** Half width of the square that is searched, and the most rays that it takes close to the radar. House rule. */
@@ -18,7 +18,7 @@ const RAIN_DBZ = { from: 15, to: 25 } as const;
  * @param hailShare - by gate
  */
 export function neighboursOfHail(
-  { dbz, marks, header }: PolarEcho,
+  { dbz, marks, header, azimuthDeg }: PolarEcho,
   rateMmPerHour: Float32Array,
   hailShare: Float32Array,
   gate: number,
@@ -35,9 +35,11 @@ export function neighboursOfHail(
   );
   const from = Math.max(0, middle - gates);
   const to = Math.min(gateCount - 1, middle + gates);
+  const closed = isClosed(azimuthDeg);
   let sum = rateMmPerHour[gate];
   let weights = 1;
   for (let step = -rays; step <= rays; step++) {
+    if (!closed && (ray + step < 0 || ray + step >= rayCount)) continue;
     const other = (ray + step + rayCount) % rayCount;
     for (let at = other * gateCount + from; at <= other * gateCount + to; at++) {
       const value = dbz[at];
