@@ -25,7 +25,7 @@ console.log(
 );
 
 /** A bench of a package, bundled and loaded. @returns its default export */
-async function bundled(file) {
+async function bundled(file, plugins = []) {
   // Beside the package, so that it finds the libraries the package has.
   const name = `.bench-${path.basename(file, ".ts")}-${process.pid}.mjs`;
   const out = path.join(root, path.dirname(file), "../node_modules", name);
@@ -40,6 +40,7 @@ async function bundled(file) {
     alias: Object.fromEntries(
       PACKAGES.map((name) => [`@rainreckon/${name}`, path.join(root, "packages", name, "src/index.ts")]),
     ),
+    plugins,
     logLevel: "warning",
   });
   process.on("exit", () => rmSync(out, { force: true }));
@@ -86,7 +87,18 @@ function total(plan) {
   return { ...log, peakMb: Number(readFileSync(peak, "utf8")) / 1024 };
 }
 
-if (ablation) await (await bundled("apps/cli/bench/ablation.ts"))(wanted.slice(1), generator);
+/** The ablation reckons a world in many ways: what opens scans is replaced by what keeps them decoded. */
+const keptScans = {
+  name: "kept-scans",
+  setup({ onResolve }) {
+    onResolve({ filter: /\/scans\/scan-files\.ts$/ }, ({ importer }) =>
+      importer.endsWith("kept-scans.ts")
+        ? undefined
+        : { path: path.join(root, "apps/cli/bench/ablation/kept-scans.ts") },
+    );
+  },
+};
+if (ablation) await (await bundled("apps/cli/bench/ablation.ts", [keptScans]))(wanted.slice(1), generator);
 
 const median = (values) => values.toSorted((a, b) => a - b)[Math.floor(values.length / 2)];
 

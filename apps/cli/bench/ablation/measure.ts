@@ -1,3 +1,4 @@
+import { keepScans } from "./kept-scans.ts";
 import { runVariant, type VariantMaps, withOffers, worldPlan } from "./run-variant.ts";
 import { samplingAlone } from "./sampling.ts";
 import { commonCells, type Extremes, extremesOf, type MapScore, scoreMap } from "./scores.ts";
@@ -66,6 +67,7 @@ export interface Measured {
 /** Makes a world if need be, runs every variant on it, and scores them on the cells that all observed. */
 export async function measure(task: Task, { generator, cache }: Place): Promise<Measured> {
   const world = trueWorld(worldFolder(generator, cache, task.world, task.seed, task.size));
+  keepScans(task.size === "small");
   const { totalMm, rangeKm, clutterFree, window } = world;
   const plan = await worldPlan(world);
   const windowHours = (Date.parse(window.to) - Date.parse(window.from)) / 3_600_000;

@@ -1,0 +1,67 @@
+import type { InputError, Sweep } from "@rainreckon/core";
+import type { ScanFile, ScanOptions } from "@rainreckon/formats";
+import { openScans as openOnDisk, type ScanPaths } from "../../src/scans/scan-files.ts";
+
+export { joinChunks, type ScanPaths } from "../../src/scans/scan-files.ts";
+
+/** Stands for `src/scans/scan-files.ts` in the bundle of the ablation: a world is reckoned in many ways, and read once. */
+const kept = new Map<string, KeptScan>();
+let isKeeping = false;
+
+/** Forgets all scans, and keeps those that are opened from now on or not: a large world does not fit into memory. */
+export function keepScans(keep: boolean): void {
+  kept.clear();
+  isKeeping = keep;
+}
+
+/** As the function of the same name that it stands for. */
+export function openScans(paths: ScanPaths, options: ScanOptions = {}): ScanFile {
+  if (!isKeeping) return openOnDisk(paths, options);
+  const key = JSON.stringify([paths.path, paths.chunks, options]);
+  const known = kept.get(key) ?? new KeptScan(paths, options);
+  kept.set(key, known);
+  return known;
+}
+
+/** A file whose sweeps stay decoded; it is opened again where something else is asked of it. */
+class KeptScan implements ScanFile {
+  readonly format: string;
+  readonly headers: ScanFile["headers"];
+  readonly remarks: ScanFile["remarks"];
+  readonly leftOut: ScanFile["leftOut"];
+  readonly #open: () => ScanFile;
+  readonly #sweeps = new Map<string, Sweep>();
+  #file: ScanFile | undefined;
+  #faults: readonly InputError[] | undefined;
+
+  constructor(paths: ScanPaths, options: ScanOptions) {
+    this.#open = () => openOnDisk(paths, options);
+    const file = this.#opened();
+    this.format = file.format;
+    this.headers = file.headers;
+    this.remarks = file.remarks;
+    this.leftOut = file.leftOut;
+  }
+
+  inspect(): readonly InputError[] {
+    this.#faults ??= this.#opened().inspect();
+    return this.#faults;
+  }
+
+  readSweep(index: number, quantities?: readonly string[]): Sweep {
+    const key = `${index} ${quantities?.join() ?? "all"}`;
+    const sweep = this.#sweeps.get(key) ?? this.#opened().readSweep(index, quantities);
+    this.#sweeps.set(key, sweep);
+    return sweep;
+  }
+
+  close(): void {
+    this.#file?.close();
+    this.#file = undefined;
+  }
+
+  #opened(): ScanFile {
+    this.#file ??= this.#open();
+    return this.#file;
+  }
+}
