@@ -1,5 +1,13 @@
 import { LEAST_WEIGHT } from "./blend-weight.ts";
 import { CellTolls } from "./cell-tolls.ts";
+import {
+  gatherCapped,
+  gatherMean,
+  gatherRates,
+  gatherVariant,
+  isDryWhere,
+  type OwnCells,
+} from "./gather-gates.ts";
 import { headlinePositions } from "./headline-positions.ts";
 
 /**
@@ -75,13 +83,6 @@ export interface RateLayer {
   readonly companions?: readonly (Float32Array | undefined)[] | undefined;
 }
 
-/** Whether nothing rains under one relation that does not under another: then a dry cell is dry under both. */
-function isDryWhere(dry: Float32Array, other: Float32Array): boolean {
-  if (dry.length !== other.length) return false;
-  for (let key = 0; key < dry.length; key++) if (dry[key] === 0 && other[key] !== 0) return false;
-  return true;
-}
-
 /**
  * Builds the layer of one round from its sweeps, lowest first: each cell is spoken for by the lowest
  * sweep that observed it. Later sweeps fill only what is still not observed, so a caller may stop as
@@ -101,9 +102,8 @@ export class RateLayerBuilder {
   #trust: Float32Array | undefined;
   readonly #tolls: CellTolls;
   #spoken = 0;
-  /** Places in the lookup's list of the cells that the sweep in work speaks for, as many as `#ownCount`. */
-  #own = new Int32Array(0);
-  #ownCount = 0;
+  /** Room for the cells that a sweep speaks for. */
+  #room = new Int32Array(0);
 
   /**
    * @param headlineCells - flat cell indices, each once, at which rates under other relations are kept
@@ -148,48 +148,29 @@ export class RateLayerBuilder {
    */
   add(lookup: CellLookup, gates: GateRates, variants: readonly GateRates[], midEpochMs: number): number {
     const slotIndex = this.#mids.length;
-    const first = slotIndex === 0;
-    const { cells, start, gates: gateIndex } = lookup;
-    const { codes, rateMmPerHour, capped } = gates;
     const rate = this.#rate;
-    if (this.#own.length < cells.length) this.#own = new Int32Array(cells.length);
-    const own = this.#own;
-    let spoken = 0;
-    let cappedSeen = false;
-    for (let at = 0; at < cells.length; at++) {
-      const cell = cells[at];
-      if (!first && !Number.isNaN(rate[cell])) continue;
-      let sum = 0;
-      let count = 0;
-      let cap = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const key = codes === undefined ? gateIndex[k] : codes[gateIndex[k]];
-        const value = rateMmPerHour[key];
-        // False for NaN: nodata stays out of the mean.
-        if (value >= 0) {
-          sum += value;
-          count++;
-          cap |= capped[key];
-        }
-      }
-      if (count === 0) continue;
-      rate[cell] = sum / count;
-      if (cap !== 0) cappedSeen = true;
-      own[spoken++] = at;
-    }
-    if (!first && spoken > 0) {
+    if (this.#room.length < lookup.cells.length) this.#room = new Int32Array(lookup.cells.length);
+    const own = gatherRates(lookup, gates, rate, this.#room);
+    if (slotIndex > 0 && own.count > 0) {
       this.#slot ??= new Uint8Array(rate.length);
-      for (let o = 0; o < spoken; o++) this.#slot[cells[own[o]]] = slotIndex;
+      for (let o = 0; o < own.count; o++) this.#slot[lookup.cells[own.own[o]]] = slotIndex;
     }
-    this.#ownCount = spoken;
-    this.#spoken += spoken;
-    if (cappedSeen) this.#addCapped(lookup, gates);
-    for (let v = 0; v < variants.length; v++) this.#addVariant(lookup, gates, variants[v], this.#variants[v]);
-    if (gates.trust !== undefined) this.#addTrust(lookup, gates, gates.trust);
-    if (gates.companions !== undefined) this.#addCompanions(lookup, gates, gates.companions, slotIndex);
+    this.#spoken += own.count;
+    if (own.anyCapped) {
+      this.#capped ??= new Float32Array(rate.length);
+      gatherCapped(lookup, gates, own, this.#capped);
+    }
+    for (let v = 0; v < variants.length; v++) {
+      const dryTogether = isDryWhere(gates.rateMmPerHour, variants[v].rateMmPerHour);
+      gatherVariant(lookup, variants[v], own, rate, dryTogether, this.#headlineAt, this.#variants[v]);
+    }
+    if (gates.trust !== undefined) {
+      this.#trust = gatherMean(lookup, gates, own, gates.trust, rate, false, 1, this.#trust);
+    }
+    if (gates.companions !== undefined) this.#addCompanions(lookup, gates, gates.companions, own, slotIndex);
     this.#mids.push(midEpochMs);
     this.#lookups.push(lookup);
-    return spoken;
+    return own.count;
   }
 
   finish(): RateLayer {
@@ -225,131 +206,29 @@ export class RateLayerBuilder {
     };
   }
 
-  /** A second pass for the few sweeps with hail: the part of each mean that comes from capped gates. */
-  #addCapped({ cells, start, gates }: CellLookup, { codes, rateMmPerHour, capped }: GateRates): void {
-    const cappedRate = this.#capped ?? new Float32Array(this.#rate.length);
-    this.#capped = cappedRate;
-    const own = this.#own;
-    for (let o = 0; o < this.#ownCount; o++) {
-      const at = own[o];
-      let sum = 0;
-      let count = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const key = codes === undefined ? gates[k] : codes[gates[k]];
-        const value = rateMmPerHour[key];
-        if (!(value >= 0)) continue;
-        count++;
-        if (capped[key] !== 0) sum += value;
-      }
-      cappedRate[cells[at]] = sum / count;
-    }
-  }
-
-  #addVariant(
-    { cells, start, gates }: CellLookup,
-    main: GateRates,
-    { codes, rateMmPerHour }: GateRates,
-    out: Float32Array,
-  ): void {
-    const headlineAt = this.#headlineAt;
-    const rate = this.#rate;
-    const own = this.#own;
-    const dryTogether = isDryWhere(main.rateMmPerHour, rateMmPerHour);
-    for (let o = 0; o < this.#ownCount; o++) {
-      const at = own[o];
-      const h = headlineAt === undefined ? cells[at] : headlineAt[cells[at]];
-      if (h < 0) continue;
-      if (dryTogether && rate[cells[at]] === 0) {
-        out[h] = 0;
-        continue;
-      }
-      let sum = 0;
-      let count = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const value = rateMmPerHour[codes === undefined ? gates[k] : codes[gates[k]]];
-        if (!(value >= 0)) continue;
-        sum += value;
-        count++;
-      }
-      if (count > 0) out[h] = sum / count;
-    }
-  }
-
-  /** Mean trust in the gates that speak for a cell. */
-  #addTrust(
-    { cells, start, gates }: CellLookup,
-    { codes, rateMmPerHour }: GateRates,
-    trust: Float32Array,
-  ): void {
-    const own = this.#own;
-    let mean = this.#trust;
-    for (let o = 0; o < this.#ownCount; o++) {
-      const at = own[o];
-      let sum = 0;
-      let count = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const gate = gates[k];
-        if (!(rateMmPerHour[codes === undefined ? gate : codes[gate]] >= 0)) continue;
-        sum += trust[gate];
-        count++;
-      }
-      if (sum === count) continue;
-      mean ??= new Float32Array(this.#rate.length).fill(1);
-      mean[cells[at]] = sum / count;
-    }
-    this.#trust = mean;
-  }
-
   #addCompanions(
     lookup: CellLookup,
     gates: GateRates,
     values: readonly (Float32Array | undefined)[],
+    own: OwnCells,
     slotIndex: number,
   ): void {
+    const [rate, slot] = [this.#rate, this.#slot];
     const tolls: number[] = [];
     for (let c = 0; c < this.#kinds.length; c++) {
       const ofGates = values[c];
       if (ofGates === undefined) continue;
-      if (this.#kinds[c] === "toll") tolls.push(c);
-      else this.#addMean(lookup, gates, ofGates, c);
+      const kind = this.#kinds[c];
+      if (kind === "toll") tolls.push(c);
+      else {
+        const plane = this.#companions[c];
+        this.#companions[c] = gatherMean(lookup, gates, own, ofGates, rate, kind === "depth", 0, plane);
+      }
     }
     if (tolls.length === 0) return;
     // A cell that a lower sweep speaks for would not have been looked at.
-    const [rate, slot] = [this.#rate, this.#slot];
     const isLowest = (cell: number) =>
       Number.isNaN(rate[cell]) || (slot === undefined ? 0 : slot[cell]) === slotIndex;
     this.#tolls.add(lookup, gates, values, tolls, isLowest, this.#companions);
-  }
-
-  /** A companion's mean over the gates that speak for a cell, by their rate where it goes by depth. */
-  #addMean(
-    { cells, start, gates }: CellLookup,
-    { codes, rateMmPerHour }: GateRates,
-    values: Float32Array,
-    companion: number,
-  ): void {
-    const byDepth = this.#kinds[companion] === "depth";
-    const own = this.#own;
-    const cellRate = this.#rate;
-    let plane = this.#companions[companion];
-    for (let o = 0; o < this.#ownCount; o++) {
-      const at = own[o];
-      const cell = cells[at];
-      if (byDepth && cellRate[cell] === 0) continue;
-      let sum = 0;
-      let count = 0;
-      for (let k = start[at]; k < start[at + 1]; k++) {
-        const gate = gates[k];
-        const rate = rateMmPerHour[codes === undefined ? gate : codes[gate]];
-        if (!(rate >= 0)) continue;
-        count++;
-        const value = values[gate];
-        if (!Number.isNaN(value)) sum += byDepth ? rate * value : value;
-      }
-      if (sum === 0) continue;
-      plane ??= new Float32Array(this.#rate.length);
-      plane[cell] = sum / count;
-    }
-    this.#companions[companion] = plane;
   }
 }
