@@ -20,14 +20,15 @@ export class MonotoneFit {
     const weight = this.#weight;
     let blocks = 0;
     for (let i = 0; i < count; i++) {
-      let sum = values[i] as number;
+      let mean = values[i] as number;
       let many = 1;
-      while (blocks > 0 && (level[blocks - 1] as number) >= sum / many) {
+      while (blocks > 0 && (level[blocks - 1] as number) >= mean) {
         blocks--;
-        sum += (level[blocks] as number) * (weight[blocks] as number);
-        many += weight[blocks] as number;
+        const before = weight[blocks] as number;
+        mean = (mean * many + (level[blocks] as number) * before) / (many + before);
+        many += before;
       }
-      level[blocks] = sum / many;
+      level[blocks] = mean;
       weight[blocks] = many;
       blocks++;
     }

@@ -24,6 +24,8 @@ export const DEFAULT_PHASE_SETTINGS: PhaseSettings = {
 
 /** Puts an angle into -fold/2 to fold/2. */
 export function folded(angleDeg: number, foldDeg: number): number {
+  const half = foldDeg / 2;
+  if (angleDeg >= -half && angleDeg <= half) return angleDeg;
   return angleDeg - foldDeg * Math.round(angleDeg / foldDeg);
 }
 

@@ -65,17 +65,19 @@ export class SlopeOfPhase {
     const from = SUMS * Math.max(0, gate - half);
     const to = SUMS * Math.min(this.#gateCount, gate + half + 1);
     const n = (sums[to] as number) - (sums[from] as number);
+    const share = 1 / n;
     const x = (sums[to + 1] as number) - (sums[from + 1] as number);
-    const xx = (sums[to + 2] as number) - (sums[from + 2] as number) - (x * x) / n;
+    const xx = (sums[to + 2] as number) - (sums[from + 2] as number) - x * x * share;
     // Fewer than half of the window's gates do not stand for it.
     if (n < 3 || n < half + 1 || !(xx > 0)) {
       this.variance = Number.POSITIVE_INFINITY;
       return Number.NaN;
     }
     const y = (sums[to + 3] as number) - (sums[from + 3] as number);
-    const xy = (sums[to + 4] as number) - (sums[from + 4] as number) - (x * y) / n;
-    this.variance = 0.25 / xx;
-    return (0.5 * xy) / xx;
+    const xy = (sums[to + 4] as number) - (sums[from + 4] as number) - x * y * share;
+    const half2 = 0.5 / xx;
+    this.variance = 0.5 * half2;
+    return half2 * xy;
   }
 
   /** Variance of the last KDP per gate, in units of that of one gate's phase. */
