@@ -1,4 +1,4 @@
-import { EFFECTS } from "@rainreckon/core";
+import { EFFECTS, type RateMethod } from "@rainreckon/core";
 import { displayText } from "@rainreckon/formats";
 import { decimals, fixedDecimals, placeText, utcText } from "../ui/numbers.ts";
 import { textTable } from "../ui/table.ts";
@@ -165,6 +165,16 @@ function scanLines(
   return lines;
 }
 
+const METHOD_WORDS: Readonly<Record<RateMethod, string>> = {
+  none: "nothing",
+  z: "R(Z)",
+  "z-zdr": "R(Z, ZDR)",
+  attenuation: "R(A)",
+  kdp: "R(KDP)",
+  "hail-kdp": "R(KDP) under hail",
+  "hail-neighbours": "the rain around hail",
+};
+
 /** Measured and corrected dBZ, every effect by name, screens, estimator, cap. */
 function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
   const words = [`measured ${range(gates.map(({ measuredDbz }) => measuredDbz))} dBZ`];
@@ -192,7 +202,14 @@ function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
     );
     for (const relation of byZ) words.push(`by Z = ${relation.replace("/", " R^")}`);
     const others = new Set(wet.flatMap(({ method }) => (method === null || method === "z" ? [] : [method])));
-    if (others.size > 0) words.push(`by ${[...others].join(", ")}`);
+    for (const method of others) {
+      const kdp = range(
+        wet.filter((gate) => gate.method === method).map(({ kdpDegPerKm }) => kdpDegPerKm),
+        2,
+      );
+      const ofKdp = method === "kdp" || method === "hail-kdp" ? `, KDP ${kdp} deg/km` : "";
+      words.push(`mostly by ${METHOD_WORDS[method]}${ofKdp}`);
+    }
     if (dropNumberFactor !== null && dropNumberFactor !== 1)
       words.push(`times ${decimals(dropNumberFactor, 3)} for the number of drops`);
   }

@@ -3,7 +3,7 @@ import { join } from "node:path";
 import Papa from "papaparse";
 import { expect, test } from "vitest";
 import { FOREIGN_TOOLS, FULL_DEVICE, outputOf, scratchFolder } from "../../test/foreign-tools.ts";
-import { type CsvColumn, writeCsv } from "./csv.ts";
+import { type CsvColumn, csvText, writeCsv } from "./csv.ts";
 
 const folder = scratchFolder();
 
@@ -25,6 +25,11 @@ async function written(rows: readonly Row[]): Promise<string> {
 
 test("a header, then a line a row, with LF at the end of each", async () => {
   expect(await written([{ id: "0042", depthMm: 1.5 }])).toBe("gauge_id,depth_mm\n0042,1.50\n");
+});
+
+test("a table that goes to no file is the same text", async () => {
+  const rows = [{ id: "=1+1", depthMm: 1.5 }, {}];
+  expect(await csvText(COLUMNS, rows)).toBe(await written(rows));
 });
 
 test("missing is empty, and never 0", async () => {

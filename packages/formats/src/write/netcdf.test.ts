@@ -12,6 +12,7 @@ import {
   valuesByGdal,
 } from "../../test/foreign-tools.ts";
 import { createTotalsFile, type TotalsSpec } from "./netcdf.ts";
+import { readTotals } from "./read-totals.ts";
 import { TOTALS_VARIABLES } from "./totals-variables.ts";
 
 const folder = scratchFolder();
@@ -78,6 +79,16 @@ test("the same values give the same bytes whatever the clock says", async () => 
   expect(Date.now()).toBe(2e12);
   const [a, b] = await Promise.all(paths.map((path) => readFile(path)));
   expect(a.equals(b)).toBe(true);
+});
+
+test("what is read back is what was written, to the bit, and what is not there is left out", async () => {
+  const path = join(folder, "read.nc");
+  await writeAll(path);
+  const read = await readTotals(path, ["radar_total", "radar_depth", "adjusted_total"]);
+  expect([...read.keys()]).toEqual(["radar_total", "radar_depth"]);
+  expect(read.get("radar_total")).toEqual(plane(0));
+  expect(read.get("radar_depth")).toEqual(Float32Array.from([...plane(0.25), ...plane(1.25)]));
+  await expect(readTotals(path, ["lat"])).rejects.toThrow("float32");
 });
 
 test("a write that fails alone, whichever one, ends the file with one clear fault", async () => {
