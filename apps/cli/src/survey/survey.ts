@@ -155,6 +155,10 @@ function belongsToShapefile(file: string, shapefiles: ReadonlySet<string>): bool
 
 async function lookAtFile(volume: ScanPaths, seen: Seen, wrong: LeftOutLog): Promise<void> {
   const { path: file } = volume;
+  if (isOwnOutput(file)) {
+    wrong.add("file left out", { what: "a result of an earlier run", where: file, fix: "nothing to do" });
+    return;
+  }
   if (recogniseScan(file) !== undefined) {
     try {
       lookAtScan(volume, seen, wrong);
@@ -205,24 +209,28 @@ function lookAtScan(volume: ScanPaths, seen: Seen, wrong: LeftOutLog): void {
   }
 }
 
-/** Totals are never made of totals, even where a run lies among its own input. */
+const OWN_OUTPUTS = new Set([
+  "totals.nc",
+  "learned.nc",
+  "radar_total.tif",
+  "adjusted_total.tif",
+  "rain_rate.tif",
+  "isohyets.geojson",
+  "catchments.csv",
+  "pairs.csv",
+  "gauges.csv",
+]);
+
+/** Totals are never made of totals, nor checked by them, even where a run lies among its own input. */
 function isOwnOutput(file: string): boolean {
-  const isNamed = ["totals.nc", "radar_total.tif", "adjusted_total.tif", "rain_rate.tif"].includes(
-    path.basename(file),
-  );
   const beside = ["manifest.json", "rate.json"].map((name) => path.join(path.dirname(file), name));
-  return isNamed && beside.some((name) => existsSync(name));
+  return OWN_OUTPUTS.has(path.basename(file)) && beside.some((name) => existsSync(name));
 }
 
 /** @returns false where the file holds no gridded rain or reflectivity */
 async function lookAtGrid(file: string, seen: Seen, wrong: LeftOutLog): Promise<boolean> {
   const grid = await openGridded(file);
   if (grid === undefined) return false;
-  if (isOwnOutput(file)) {
-    grid.close();
-    wrong.add("file left out", { what: "a result of an earlier run", where: file, fix: "nothing to do" });
-    return true;
-  }
   try {
     seen.grids.push(...gridFindings(file, grid));
     for (const fault of grid.leftOut) wrong.add("layer left out", fault);

@@ -4,7 +4,11 @@ import { openScans } from "../scans/scan-files.ts";
 import type { JobRadar, JobRound, JobSweep, SweepFault } from "./job.ts";
 import { placesOf } from "./places-of.ts";
 
-/** Two sweeps of one round closer in elevation than this see the same, one a moment later. */
+/**
+ * The sweep above that echo is compared with: the next one so much higher that clutter at the ground is out of its beam,
+ * half a degree for the usual beam, else the next one that is no repetition of the same elevation. House rule.
+ */
+const CLEAR_STEP_DEG = 0.45;
 const SAME_ELEVATION_DEG = 0.2;
 
 /** The sweeps of one round of one radar, decoded when they are asked for, each once. */
@@ -55,11 +59,11 @@ export class RoundEchoes {
     return echo;
   }
 
-  /** The next sweep above another, as it was measured; undefined where there is none, or none that decodes. */
+  /** The sweep above another to compare it with, as it was measured; undefined where there is none, or it does not decode. */
   above(sweep: JobSweep): PolarEcho | undefined {
-    const higher = this.#round.sweeps.find(
-      ({ elevationDeg }) => elevationDeg > sweep.elevationDeg + SAME_ELEVATION_DEG,
-    );
+    const over = (stepDeg: number) =>
+      this.#round.sweeps.find(({ elevationDeg }) => elevationDeg > sweep.elevationDeg + stepDeg);
+    const higher = over(CLEAR_STEP_DEG) ?? over(SAME_ELEVATION_DEG);
     if (higher === undefined) return undefined;
     try {
       return this.echo(higher);
