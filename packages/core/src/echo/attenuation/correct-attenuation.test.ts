@@ -4,6 +4,7 @@ import { type EchoSketch, echoOf } from "../blockage/echo-fixture.ts";
 import { markBit, type PolarEcho } from "../polar-echo.ts";
 import { attenuationLawOfWavelength, DEFAULT_ATTENUATION_SETTINGS } from "./attenuation-settings.ts";
 import { correctAttenuation } from "./correct-attenuation.ts";
+import type { LearnedAttenuation } from "./learned.ts";
 
 const C_BAND_M = 0.0535;
 const GATE_KM = 0.5;
@@ -195,6 +196,16 @@ describe("by reflectivity", () => {
     expect(lossAt(0)).toBe(0);
     expect(lossAt(2) / lossAt(1)).toBeGreaterThan(2);
     expect(lossAt(2) / lossAt(1)).toBeLessThan(2.3);
+  });
+
+  test("a loss per degree that was learned goes for reflectivity too: twice the 0.08 of C band is twice the law", () => {
+    const lossAt = (learned: LearnedAttenuation) => {
+      const echo = oneRay(new Array(20).fill(40));
+      const { method: used } = correctAttenuation(echo, learned);
+      return [used, echo.twoWayLossDb?.[19]];
+    };
+    expect(lossAt({ alphaDbPerDeg: 0.16 })).toEqual(lossAt({ hitschfeldBordanFactor: 2 }));
+    expect(lossAt({ alphaDbPerDeg: 0 })).toEqual(["none", undefined]);
   });
 
   test("a method by phase that has no phase says so", () => {
