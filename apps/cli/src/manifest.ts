@@ -52,6 +52,16 @@ export const manifestSchema = z.strictObject({
         z.strictObject({ correction: z.string(), meanDb: z.number(), largestDb: z.number() }),
       ),
       gates: z.record(z.string(), z.number().int()),
+      /** What the vertical profile added, by range. */
+      profile: z.array(
+        z.strictObject({
+          fromKm: z.number(),
+          toKm: z.number(),
+          wetGates: z.number().int(),
+          meanDb: z.number(),
+          lostGates: z.number().int(),
+        }),
+      ),
       learned: z.record(z.string(), z.array(z.string())),
       /** Proposed, never applied. */
       calibration: z.array(

@@ -1,9 +1,10 @@
 import { existsSync, readdirSync, readFileSync, writeFileSync } from "node:fs";
 import path from "node:path";
+import { inflateSync } from "node:zlib";
 import { SCREENS } from "@rainreckon/core";
 import { readLearned } from "@rainreckon/formats";
 import { generateStorm, SMALL } from "@rainreckon/test-data/storm";
-import h5wasm from "h5wasm/node";
+import h5wasm, { type Dataset, type Group } from "h5wasm/node";
 import { beforeAll, describe, expect, test } from "vitest";
 import type { Document } from "yaml";
 import {
@@ -169,14 +170,13 @@ async function spoilMoment(file: string, quantity: string): Promise<string> {
   let place = "";
   let stored: Uint8Array = new Uint8Array();
   for (let k = 1; place === ""; k++) {
-    const what = opened.get(`dataset1/data${k}/what`);
+    const what = opened.get(`dataset1/data${k}/what`) as Group | null;
     if (what === null) throw new Error(`no ${quantity} in ${file}`);
     if (String(what.attrs.quantity?.value) !== quantity) continue;
     place = `dataset1/data${k}`;
-    stored = (opened.get(`${place}/data`) as unknown as { value: Uint8Array }).value;
+    stored = (opened.get(`${place}/data`) as Dataset).value as Uint8Array;
   }
   opened.close();
-  const { inflateSync } = await import("node:zlib");
   const bytes = readFileSync(file);
   const wanted = Buffer.from(stored.buffer, stored.byteOffset, stored.byteLength);
   for (let at = bytes.indexOf(0x78); at >= 0; at = bytes.indexOf(0x78, at + 1)) {

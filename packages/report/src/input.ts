@@ -78,6 +78,15 @@ export interface EchoStatement {
     readonly meanDb: number;
     readonly largestDb: number;
   }[];
+  /** What the vertical profile added, by range from the radar. */
+  readonly profile: readonly {
+    readonly fromKm: number;
+    readonly toKm: number;
+    readonly wetGates: number;
+    readonly meanDb: number;
+    /** Gates that lie too high for it, and became not observed. */
+    readonly lostGates: number;
+  }[];
   /** What was learned of each radar, and what may be wrong with it. */
   readonly radars: readonly { readonly id: string; readonly statements: readonly string[] }[];
 }

@@ -3,9 +3,9 @@ import { sourceIds } from "../total/job.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import type { AdjustedBy } from "./adjusted-by.ts";
 import type { AreaTracer } from "./area-tracer.ts";
-import { isInside, type RemadeRun, spanText } from "./explain.ts";
 import { finite } from "./gate-account.ts";
 import type { AskedArea } from "./places-asked.ts";
+import { isInside, type RemadeRun, spanText } from "./remade-run.ts";
 import type { AreaAccount } from "./schema.ts";
 
 /** Decimals of the depths in catchments.csv. */

@@ -3,13 +3,8 @@ import { tmpdir } from "node:os";
 import path from "node:path";
 import { InputError, type Interval } from "@rainreckon/core";
 import { readTotals } from "@rainreckon/formats";
-import { adjustedIntervals, rangeAt, sumAdjusted } from "../total/adjust.ts";
-import { type Comparison, compareWithGauges } from "../total/against-gauges.ts";
-import { type AssembledRun, assemble } from "../total/assemble.ts";
-import type { UnitTrace } from "../total/job.ts";
+import { rangeAt } from "../total/adjust.ts";
 import type { PreparedRun } from "../total/prepare.ts";
-import { runUnit } from "../total/run-unit.ts";
-import { type UnitStore, unitStore } from "../total/unit-store.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
@@ -17,9 +12,10 @@ import { AdjustedBy } from "./adjusted-by.ts";
 import { areaAccount } from "./area-account.ts";
 import { AreaTracer, together } from "./area-tracer.ts";
 import { CellTracer } from "./cell-tracer.ts";
-import { type OpenedRun, openRun } from "./open-run.ts";
+import { openRun } from "./open-run.ts";
 import { type Asked, findAsked } from "./places-asked.ts";
 import { pointAccount } from "./point-account.ts";
+import { remake, spanText } from "./remade-run.ts";
 import type { Explanation } from "./schema.ts";
 
 export interface ExplainOptions {
@@ -29,23 +25,6 @@ export interface ExplainOptions {
   /** Undefined is the whole window; widened to whole steps. */
   readonly from: number | undefined;
   readonly to: number | undefined;
-}
-
-/** A run made again, as far as accounts need it. */
-export interface RemadeRun {
-  readonly opened: OpenedRun;
-  readonly span: Interval;
-  readonly total: AssembledRun;
-  readonly comparison: Comparison;
-  readonly store: UnitStore;
-  /** Shape [cells]; undefined where there is no adjustment. */
-  readonly adjustedTotalMm: Float32Array | undefined;
-  /** Shape [intervals][cells]: adjusted depth at some cells, by flat index. */
-  readonly adjustedAt: (interval: number, cell: number) => number;
-  /** Radar depth of an interval at a cell, as the units leave it. */
-  readonly radarAt: (interval: number, cell: number) => number;
-  /** What DIR holds, by name of variable. */
-  readonly stored: ReadonlyMap<string, Float32Array>;
 }
 
 /**
@@ -76,6 +55,9 @@ export async function explainRun(
     "adjusted_depth",
   ]);
   const scratch = mkdtempSync(path.join(tmpdir(), "rainreckon-explain-"));
+  const clear = () => rmSync(scratch, { recursive: true, force: true });
+  // An interrupted account must not leave the results of its units behind.
+  process.once("exit", clear);
   try {
     const remade = await remake(
       opened,
@@ -109,53 +91,9 @@ export async function explainRun(
       catchments: areas.map((area, k) => areaAccount(area, areaTracers[k] as AreaTracer, remade, adjustedBy)),
     };
   } finally {
-    rmSync(scratch, { recursive: true, force: true });
+    process.off("exit", clear);
+    clear();
   }
-}
-
-async function remake(
-  opened: OpenedRun,
-  span: Interval,
-  trace: UnitTrace,
-  scratch: string,
-  stored: ReadonlyMap<string, Float32Array>,
-  terminal: Terminal,
-  cells: readonly number[],
-): Promise<RemadeRun> {
-  const { run } = opened;
-  // The headline's other relations have no part in any figure that is accounted for.
-  const shape = { ...run.shape, variants: [], headlineCells: new Int32Array() };
-  const lean: PreparedRun = { ...run, shape };
-  const store = unitStore(scratch);
-  const progress = progressBar(terminal, run.jobs.length, "units of work");
-  for (const job of run.jobs) {
-    store.save(job, await runUnit(shape, job, trace));
-    progress.advance();
-  }
-  progress.end();
-  const total = assemble(shape, run.jobs, store, run.window.endEpochMs - run.window.startEpochMs);
-  const comparison = compareWithGauges(lean, total);
-  const { adjustment } = comparison;
-  const place = new Map(cells.map((cell, k) => [cell, k]));
-  const at = (rows: readonly Float32Array[]) => (interval: number, cell: number) =>
-    rows[interval]?.[place.get(cell) ?? -1] ?? Number.NaN;
-  const pick = (field: Float32Array) => Float32Array.from(cells, (cell) => field[cell] as number);
-  const radar: Float32Array[] = [];
-  for (const job of run.jobs) for (const { depthMm } of store.load(job).intervals) radar.push(pick(depthMm));
-  const adjusted: Float32Array[] = [];
-  if (adjustment.applied)
-    for (const depthMm of adjustedIntervals(lean, total, adjustment, store)) adjusted.push(pick(depthMm));
-  return {
-    opened: { ...opened, run: lean },
-    span,
-    total,
-    comparison,
-    store,
-    adjustedTotalMm: adjustment.applied ? sumAdjusted(lean, total, adjustment, store) : undefined,
-    adjustedAt: at(adjusted),
-    radarAt: at(radar),
-    stored,
-  };
 }
 
 function cellsOf(
@@ -181,13 +119,4 @@ function spanOf({ window, steps }: PreparedRun, { from, to }: ExplainOptions): I
     );
   }
   return { startEpochMs: first.startEpochMs, endEpochMs: last.endEpochMs };
-}
-
-export function spanText({ startEpochMs, endEpochMs }: Interval): { start: string; end: string } {
-  return { start: isoUtc(startEpochMs), end: isoUtc(endEpochMs) };
-}
-
-/** Whether one interval lies wholly in another. */
-export function isInside(inner: Interval, outer: Interval): boolean {
-  return inner.startEpochMs >= outer.startEpochMs && inner.endEpochMs <= outer.endEpochMs;
 }

@@ -3,9 +3,9 @@ import { gaugeDepth } from "@rainreckon/verification";
 import { isoUtc } from "../ui/numbers.ts";
 import type { AdjustedBy } from "./adjusted-by.ts";
 import type { CellAccount, MetScan } from "./cell-tracer.ts";
-import { isInside, type RemadeRun, spanText } from "./explain.ts";
 import { finite } from "./gate-account.ts";
 import type { AskedPoint } from "./places-asked.ts";
+import { isInside, type RemadeRun, spanText } from "./remade-run.ts";
 import type { PartAccount, PointAccount } from "./schema.ts";
 
 /** The account of one cell: what a run told of it, cut to the span, with what DIR holds beside it. */

@@ -96,9 +96,15 @@ export function assemble(
 }
 
 function addCounts(sum: UnitCounts, part: UnitCounts): void {
-  const { gatesScreened, ...plain } = part;
+  const { gatesScreened, profileBands, ...plain } = part;
   for (const key of Object.keys(plain) as (keyof typeof plain)[]) sum[key] += plain[key];
   gatesScreened.forEach((gates, screen) => {
     sum.gatesScreened[screen] += gates;
+  });
+  profileBands.forEach(({ wetGates, addedCentiDb, lostGates }, band) => {
+    const into = sum.profileBands[band];
+    into.wetGates += wetGates;
+    into.addedCentiDb += addedCentiDb;
+    into.lostGates += lostGates;
   });
 }

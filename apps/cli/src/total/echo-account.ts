@@ -1,8 +1,15 @@
-import { type CalibrationProposal, type LearnedEcho, SCREENS, type Screen } from "@rainreckon/core";
+import {
+  type CalibrationProposal,
+  type LearnedEcho,
+  PROFILE_BAND_M,
+  SCREENS,
+  type Screen,
+} from "@rainreckon/core";
 import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { calibrationProposals } from "./calibration.ts";
 import { COMPANIONS, companionIndex } from "./companions.ts";
+import type { UnitCounts } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
 
 /** What one screen took away. */
@@ -23,6 +30,15 @@ export interface CorrectionEffect {
   readonly largestDb: number;
 }
 
+/** What the vertical profile did to gates of one band of range. */
+export interface ProfileEffect {
+  readonly fromKm: number;
+  readonly toKm: number;
+  readonly wetGates: number;
+  readonly meanDb: number;
+  readonly lostGates: number;
+}
+
 /** What was done to the echo of a run before it became rain. */
 export interface EchoAccount {
   readonly screens: readonly ScreenToll[];
@@ -37,6 +53,8 @@ export interface EchoAccount {
     readonly snow: number;
     readonly besideCores: number;
   };
+  /** What the vertical profile added, by range; bands without echo or loss are left out. */
+  readonly profile: readonly ProfileEffect[];
   /** By site id. */
   readonly learned: ReadonlyMap<string, LearnedEcho>;
   readonly calibration: readonly CalibrationProposal[];
@@ -79,9 +97,27 @@ export function echoAccount(
       snow: counts.gatesSnow,
       besideCores: counts.gatesBesideCores,
     },
+    profile: profileEffects(counts),
     calibration: calibrationProposals(run, comparison),
     learned: new Map(worked.map(({ site, echo }) => [site.id, (echo as { learned: LearnedEcho }).learned])),
   };
+}
+
+function profileEffects({ profileBands }: UnitCounts): ProfileEffect[] {
+  const bandKm = PROFILE_BAND_M / 1000;
+  return profileBands.flatMap(({ wetGates, addedCentiDb, lostGates }, band) =>
+    wetGates + lostGates === 0
+      ? []
+      : [
+          {
+            fromKm: band * bandKm,
+            toKm: (band + 1) * bandKm,
+            wetGates,
+            meanDb: wetGates === 0 ? 0 : addedCentiDb / 100 / wetGates,
+            lostGates,
+          },
+        ],
+  );
 }
 
 /** Companions that are anything but 0 in this run, with their planes. */

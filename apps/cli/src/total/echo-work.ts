@@ -7,6 +7,7 @@ import {
   gateRates,
   markBit,
   type PolarEcho,
+  PROFILE_BAND_M,
   type RateSettings,
   type RateTables,
   rateTables,
@@ -69,14 +70,24 @@ export class EchoWork {
       gates: { rateMmPerHour, capped, ...beside, companions },
       made: { method, dropNumberFactor, rainType: type },
       others: variants.map((variant) => {
+        // The relation in use is mostly one of those that the headline is asked under.
+        if (this.#isAlone && sameRelation(variant, relation)) return { rateMmPerHour, capped, ...beside };
         const other = this.#rates(echo, type, variant, false);
         return { rateMmPerHour: other.rateMmPerHour, capped: other.capped, ...beside };
       }),
     };
   }
 
+  /** True where one relation makes all rain. */
+  get #isAlone(): boolean {
+    const { convective, stratiform } = this.#echo.rate;
+    return convective === undefined && stratiform === undefined;
+  }
+
   /** Adds what was done to a worked sweep to the counts. */
-  count({ measuredDbz, screenedBy, marks }: PolarEcho, counts: UnitCounts): void {
+  count(echo: PolarEcho, counts: UnitCounts): void {
+    const { measuredDbz, screenedBy, marks } = echo;
+    countProfile(echo, counts);
     for (let gate = 0; gate < marks.length; gate++) {
       if ((measuredDbz[gate] as number) > Number.NEGATIVE_INFINITY) counts.gatesWithEcho++;
       const screened = screenedBy[gate] as number;
@@ -159,6 +170,28 @@ export class EchoWork {
       const at = first + SCREENS.indexOf(firstScreenOf(bits));
       list[at] ??= new Float32Array(screenedBy.length);
       (list[at] as Float32Array)[gate] = rate;
+    }
+  }
+}
+
+function sameRelation(one: ZrRelation, other: ZrRelation): boolean {
+  return one.a === other.a && one.b === other.b && one.phase === other.phase;
+}
+
+/** What the vertical profile added, by range. */
+function countProfile({ header, dbz, effectsDb }: PolarEcho, { profileBands }: UnitCounts): void {
+  const added = effectsDb.get("profile");
+  if (added === undefined) return;
+  const { gateCount, firstGateCentreM, gateLengthM } = header;
+  for (let gate = 0; gate < gateCount; gate++) {
+    const at = Math.floor((firstGateCentreM + gate * gateLengthM) / PROFILE_BAND_M);
+    const band = profileBands[Math.min(Math.max(at, 0), profileBands.length - 1)];
+    for (let k = gate; k < dbz.length; k += gateCount) {
+      if (Number.isNaN(added[k])) band.lostGates++;
+      if (!(dbz[k] > Number.NEGATIVE_INFINITY)) continue;
+      band.wetGates++;
+      // Whole hundredths, so that the sum does not depend on how a run was cut.
+      band.addedCentiDb += Math.round(100 * added[k]);
     }
   }
 }

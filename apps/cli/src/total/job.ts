@@ -169,7 +169,19 @@ export interface UnitCounts {
   gatesBesideCores: number;
   /** Shape [SCREENS]: gates by the first screen that took them. */
   readonly gatesScreened: number[];
+  /** By 10 km of range, the last one all beyond: what the vertical profile added. */
+  readonly profileBands: ProfileBand[];
 }
+
+/** Gates with echo in a band of range, the decibels added to them in hundredths, and gates that it cost. */
+export interface ProfileBand {
+  wetGates: number;
+  addedCentiDb: number;
+  lostGates: number;
+}
+
+/** Bands of 10 km that are told apart; farther out no weather radar looks. */
+const PROFILE_BANDS = 50;
 
 export function noCounts(): UnitCounts {
   return {
@@ -189,6 +201,11 @@ export function noCounts(): UnitCounts {
     gatesSnow: 0,
     gatesBesideCores: 0,
     gatesScreened: SCREENS.map(() => 0),
+    profileBands: Array.from({ length: PROFILE_BANDS }, () => ({
+      wetGates: 0,
+      addedCentiDb: 0,
+      lostGates: 0,
+    })),
   };
 }
 

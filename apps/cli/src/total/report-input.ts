@@ -360,6 +360,7 @@ function echoStatement({ run, total, comparison }: ReportSources): Pick<ReportIn
     echo: {
       screens: account.screens.map(({ screen, ...toll }) => ({ name: screen.replaceAll("-", " "), ...toll })),
       corrections: account.corrections.map(({ correction, ...effect }) => ({ name: correction, ...effect })),
+      profile: account.profile,
       radars: wordsByRadar(account).map(([id, statements]) => ({ id, statements })),
     },
   };

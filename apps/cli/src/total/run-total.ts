@@ -263,12 +263,13 @@ async function manifestOf(
 function manifestEcho(sources: Pick<OutputSources, "run" | "total" | "comparison">): Manifest["echo"] {
   const account = echoAccount(sources.run, sources.total, sources.comparison);
   if (account === undefined) return null;
-  const { screens, corrections, gates, calibration } = account;
+  const { screens, corrections, gates, profile, calibration } = account;
   const known = (db: number) => (Number.isFinite(db) ? db : null);
   return {
     screens: [...screens],
     corrections: [...corrections],
     gates: { ...gates },
+    profile: [...profile],
     learned: Object.fromEntries(wordsByRadar(account)),
     calibration: calibration.map(({ siteId, errorDb, lowDb, highDb, offsetDb, reason }) => ({
       radar: siteId,
