@@ -115,6 +115,23 @@ describe("what is proposed", () => {
     expect(one!.highDb - one!.errorDb).toBeCloseTo(1.96 / Math.sqrt(1 / 0.53 + 1 / 36), 6);
   });
 
+  test("sources that contradict each other make the interval wider", () => {
+    const by = (differenceDb: number) =>
+      proposeCalibration(
+        [
+          { siteId: "a", consistency: sure(-2) },
+          { siteId: "b", consistency: sure(0) },
+        ],
+        [{ oneSiteId: "a", otherSiteId: "b", valueDb: differenceDb, standardErrorDb: 0.2, sampleCount: 500 }],
+      )[0]!;
+    const [agreed, torn] = [by(-2), by(2)];
+    expect(agreed.offsetDb).toBeCloseTo(2, 0);
+    // By hand: 4 dB apart, errors of 0.412, 0.412 and 0.2 dB make 0.617 dB: 6.5 times as much as they allow.
+    const ratio = (torn.highDb - torn.lowDb) / (agreed.highDb - agreed.lowDb);
+    expect(Math.abs(ratio - 6.5)).toBeLessThan(0.2);
+    expect(torn.offsetDb).toBeUndefined();
+  });
+
   test("a radar without ZDR has its level from its neighbour", () => {
     const [, plain] = proposeCalibration(
       [{ siteId: "a", consistency: sure(0) }, { siteId: "b" }],

@@ -62,8 +62,9 @@ const LEAST_OFFSET_DB = 0.5;
  *
  * Rule (ours): consistency of Z, ZDR and KDP gives the absolute level; overlaps tie radars to each other; gauges weigh by
  * their spread, and little, since they cannot tell a calibration from drops of unusual size. All are joined by least
- * squares weighted with their errors, those that a source makes for all radars alike among them. An offset is proposed
- * only where the interval of 95 % leaves out 0, and where it is 0.5 dB or more.
+ * squares weighted with their errors, those that a source makes for all radars alike among them. Where sources contradict
+ * each other by more than their errors allow, all errors are raised by as much (Birge 1932, Phys. Rev. 40, 207-227). An
+ * offset is proposed only where the interval of 95 % leaves out 0, and where it is 0.5 dB or more.
  *
  * @param overlaps - from `overlapDifference`; those of radars that are not listed are passed over
  * @returns in the order of `radars`; what was found is on top of any offset that the echo had been given already
@@ -127,8 +128,9 @@ export function proposeCalibration(
     words[other]?.push({ ...wordOf("overlap", 0 - valueDb, standardErrorDb), relativeTo: oneSiteId });
   }
   const { value, error } = normal.solve();
+  const discord = normal.discord(value, words.filter((said) => said.length > 0).length);
   return radars.map(({ siteId }, at) =>
-    proposalOf(siteId, value[at] as number, error[at] as number, words[at] as CalibrationWord[]),
+    proposalOf(siteId, value[at] as number, (error[at] as number) * discord, words[at] as CalibrationWord[]),
   );
 }
 
@@ -169,11 +171,18 @@ function proposalOf(
   return { siteId, errorDb, lowDb, highDb, offsetDb, reason, words };
 }
 
+interface Observation {
+  readonly terms: readonly (readonly [at: number, factor: number])[];
+  readonly value: number;
+  readonly error: number;
+}
+
 /** Weighted least squares of few unknowns by its normal equations. */
 class NormalEquations {
   readonly #size: number;
   readonly #matrix: Float64Array;
   readonly #right: Float64Array;
+  readonly #observations: Observation[] = [];
 
   constructor(size: number) {
     this.#size = size;
@@ -181,8 +190,28 @@ class NormalEquations {
     this.#right = new Float64Array(size);
   }
 
+  /**
+   * How many times their errors the observations are off, on the mean; 1 where they agree, or none is more than is needed.
+   *
+   * @param unknowns - how many the observations, those of 0 left out, decide
+   */
+  discord(value: Float64Array, unknowns: number): number {
+    const said = this.#observations.filter(({ terms }) => terms.length > 1);
+    const spare = said.length - unknowns;
+    if (spare <= 0) return 1;
+    const squares = said.reduce((sum, observation) => {
+      const fitted = observation.terms.reduce(
+        (total, [at, factor]) => total + factor * (value[at] as number),
+        0,
+      );
+      return sum + ((observation.value - fitted) / observation.error) ** 2;
+    }, 0);
+    return Math.sqrt(Math.max(1, squares / spare));
+  }
+
   /** One observation: a sum of factors times unknowns has a value, with its error. */
-  add(terms: readonly (readonly [at: number, factor: number])[], value: number, error: number): void {
+  add(terms: Observation["terms"], value: number, error: number): void {
+    this.#observations.push({ terms, value, error: Math.max(error, 0.01) });
     const weight = 1 / Math.max(error, 0.01) ** 2;
     for (const [row, one] of terms) {
       this.#right[row] = (this.#right[row] as number) + weight * one * value;
