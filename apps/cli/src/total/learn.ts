@@ -227,19 +227,26 @@ function learnLoss(
   return overlaps.map(({ samples }) => samples.finish()).filter((pairs) => pairs !== undefined);
 }
 
-/** The loss per degree of phase, from each radar alone and from those that see the same rain, settled for all. */
+/**
+ * The loss per degree of phase, settled for all radars: first from each alone, then with what others show that see the
+ * same rain, whose own loss is the one settled first.
+ */
 function settleLoss(
   pupils: readonly Pupil[],
   overlaps: readonly OverlapPairs[],
   dbPerDeg: number | undefined,
 ): void {
-  const wavelengthOf = ({ radar }: Pupil) => radar.wavelengthM;
+  const alone = pupils.map(({ radar, loss }) => {
+    const own = loss.finish();
+    return { wavelengthM: radar.wavelengthM ?? Number.NaN, estimates: own === undefined ? [] : [own] };
+  });
+  const first = settleLossCoefficients(alone);
+  const lossOf = (siteId: string) =>
+    first[pupils.findIndex(({ radar }) => radar.site.id === siteId)]?.alphaDbPerDeg;
   const settled = settleLossCoefficients(
-    pupils.map((one) => ({
-      wavelengthM: wavelengthOf(one) ?? Number.NaN,
-      estimates: [one.loss.finish(), ...fromNeighbours(one, pupils, overlaps)].filter(
-        (estimate) => estimate !== undefined,
-      ),
+    alone.map(({ wavelengthM, estimates }, k) => ({
+      wavelengthM,
+      estimates: [...estimates, ...fromNeighbours(pupils[k] as Pupil, overlaps, lossOf)],
     })),
   );
   for (const [k, one] of pupils.entries()) {
@@ -264,17 +271,16 @@ function differenceOf(pairs: OverlapPairs, pupils: readonly Pupil[]): OverlapDif
 
 function fromNeighbours(
   { radar }: Pupil,
-  pupils: readonly Pupil[],
   overlaps: readonly OverlapPairs[],
+  lossOf: (siteId: string) => number | undefined,
 ): LossEstimate[] {
   return overlaps.flatMap((pairs) => {
     const { id } = radar.site;
     if (pairs.oneSiteId !== id && pairs.otherSiteId !== id) return [];
     const mine = pairs.oneSiteId === id ? pairs : turned(pairs);
-    const neighbour = pupils.find((one) => one.radar.site.id === mine.otherSiteId)?.radar.wavelengthM;
-    const neighbourLoss = neighbour === undefined ? undefined : phaseCoefficients(neighbour)?.loss;
-    if (neighbourLoss === undefined) return [];
-    const fit = attenuationLine(mine, neighbourLoss.dbPerDeg);
+    const neighbourDbPerDeg = lossOf(mine.otherSiteId);
+    if (neighbourDbPerDeg === undefined) return [];
+    const fit = attenuationLine(mine, neighbourDbPerDeg);
     return fit === undefined
       ? []
       : [{ alphaDbPerDeg: fit.line.slope, standardErrorDbPerDeg: fit.line.slopeError }];
