@@ -3,7 +3,7 @@ import path from "node:path";
 import { inflateSync } from "node:zlib";
 import geodesicLibrary from "geographiclib-geodesic";
 import { RAYS, SWEEP_SECONDS, type SweepToWrite, storedDbz, writeVolume } from "./odim-scans.ts";
-import { writeIn } from "./total-kit.ts";
+import { NO_ECHO_WORK, writeIn } from "./total-kit.ts";
 
 // An hour of even rain over everything that one radar sees: whatever is found wrong below was put there on purpose.
 export const RADAR = { node: "zzeve", lonDeg: 3, latDeg: 52.5, gateM: 1000, gateCount: 60 };
@@ -111,6 +111,8 @@ export function planText(change: Readonly<Record<string, string>> = {}): string 
     unit: mm
     stepMinutes: 5`,
     catchments: "{ file: areas.geojson, id: id, name: name }",
+    // Figures are worked out by hand here, from echo as it was written.
+    echo: JSON.stringify(NO_ECHO_WORK),
     grid: "{ crs: +proj=laea +lat_0=52.5 +lon_0=3 +ellps=GRS80 +units=m, westM: -40000, northM: 40000, cellM: 1000, nx: 80, ny: 80 }",
     ...change,
   };

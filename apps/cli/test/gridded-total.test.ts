@@ -15,6 +15,7 @@ import {
   editPlan,
   fingerprints,
   manifestOf,
+  NO_ECHO_WORK,
   type ReadArray,
   readNetCdf,
   scratchFolder,
@@ -52,7 +53,7 @@ async function planFor(folder: string, change: Readonly<Record<string, unknown>>
   const { status, stderr } = await inProcess(["plan", folder, "-o", plan, "--quiet"]);
   expect([status, stderr]).toEqual([0, expect.not.stringContaining("error")]);
   return editPlan(plan, plan, (document) => {
-    for (const [key, value] of Object.entries({ grid: GRID, ...change }))
+    for (const [key, value] of Object.entries({ grid: GRID, echo: NO_ECHO_WORK, ...change }))
       document.setIn(key.split("."), document.createNode(value));
   });
 }

@@ -11,7 +11,15 @@ import {
   volumeHeader,
 } from "../../../packages/formats/test/level2-bytes.ts";
 import { inProcess } from "./run-cli.ts";
-import { arrayOf, editPlan, manifestOf, type ReadArray, readNetCdf, scratchFolder } from "./total-kit.ts";
+import {
+  arrayOf,
+  editPlan,
+  manifestOf,
+  NO_ECHO_WORK,
+  type ReadArray,
+  readNetCdf,
+  scratchFolder,
+} from "./total-kit.ts";
 
 const FIXTURES = fileURLToPath(new URL("../../../packages/formats/test/fixtures", import.meta.url));
 const scratch = scratchFolder("other-scans");
@@ -33,6 +41,8 @@ async function totalOf(
     document.setIn(["grid"], document.createNode(grid));
     document.setIn(["radars", 0, "offsetDb"], offsetDb);
     document.setIn(["window"], document.createNode(window));
+    // Figures are worked out by hand here, from echo as it was written.
+    document.setIn(["echo"], document.createNode(NO_ECHO_WORK));
     document.setIn(["intervals"], document.createNode({ grids: "PT4M", series: "PT1M" }));
   });
   const out = path.join(folder, "run");
