@@ -94,6 +94,8 @@ export async function writeShowers(folder: string): Promise<string> {
     folder,
     "plan.yaml",
     planText({
+      // As a fresh plan has it: every step from echo to rain is taken.
+      echo: "",
       title: "Showers",
       grid: "{ crs: +proj=laea +lat_0=52.5 +lon_0=3 +ellps=GRS80 +units=m, westM: -25000, northM: 35000, cellM: 1000, nx: 60, ny: 60 }",
       window: "{ from: 2031-06-01T12:00:00Z, to: 2031-06-01T14:00:00Z }",

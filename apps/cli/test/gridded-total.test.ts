@@ -261,6 +261,7 @@ describe("reflectivity", () => {
         }),
       );
       document.setIn(["intervals", "grids"], "PT10M");
+      document.setIn(["echo"], document.createNode(NO_ECHO_WORK));
     });
     const both = await totalOf(beside, "both");
     const [middle, corner] = [20 * NX + 25, 0];

@@ -88,8 +88,8 @@ export interface BandLaws {
   readonly kdp: KdpLaw;
   readonly kdpZdr: KdpZdrLaw;
   readonly zZdr: ZZdrLaw;
-  /** Share of R(Z, ZDR) in moderate rain where none is set. */
-  readonly usualZZdrShare: number;
+  /** Share of R(Z, ZDR) in moderate rain, and part of R(KDP) that R(KDP, ZDR) has, where none is set. */
+  readonly usualZdrShare: number;
   /** At 20 degrees C. */
   readonly attenuation: AttenuationRateLaw;
 }
@@ -102,28 +102,30 @@ export const RYZHKOV_2014_S_10C: AttenuationRateLaw = {
 };
 
 /**
- * Half at S band: the mean of R(Z) and R(Z, ZDR) came nearer to storms with known rain than either. At C band it did
- * not, where ZDR must first be freed of its loss and big drops resonate; X band was not tried. House rule.
+ * All of it at S band: it follows the size of drops, which changes R(Z) by 40 % either way from storm to storm. In
+ * eight storms with known rain (one radar, loss given back) it took the error of the total from 1.0-5.4 mm to 0.8-2.8.
+ * At C band, where ZDR must first be freed of its loss and big drops resonate, it made the total wetter by a tenth and
+ * more, and has no part; X band was not tried. House rule.
  */
-const Z_ZDR_SHARE = { S: 0.5, others: 0 } as const;
+const ZDR_SHARE = { S: 1, others: 0 } as const;
 
 const BY_BAND: Readonly<Record<string, Omit<BandLaws, "kdp">>> = {
   S: {
     kdpZdr: CIFELLI_2011_KDP_ZDR,
     zZdr: CIFELLI_2011_Z_ZDR,
-    usualZZdrShare: Z_ZDR_SHARE.S,
+    usualZdrShare: ZDR_SHARE.S,
     attenuation: { coefficient: 4120, exponent: 1.03, source: RYZHKOV_2014 },
   },
   C: {
     kdpZdr: { coefficient: 37.9, exponent: 0.89, perZdrDb: -0.072, source: BRINGI_2001 },
     zZdr: { coefficient: 5.8e-3, exponent: 0.91, perZdrDb: -0.209, source: BRINGI_2001 },
-    usualZZdrShare: Z_ZDR_SHARE.others,
+    usualZdrShare: ZDR_SHARE.others,
     attenuation: { coefficient: 294, exponent: 0.89, source: RYZHKOV_2014 },
   },
   X: {
     kdpZdr: { coefficient: 28.6, exponent: 0.95, perZdrDb: -0.137, source: BRINGI_2001 },
     zZdr: { coefficient: 3.9e-3, exponent: 1.07, perZdrDb: -0.597, source: BRINGI_2001 },
-    usualZZdrShare: Z_ZDR_SHARE.others,
+    usualZdrShare: ZDR_SHARE.others,
     attenuation: { coefficient: 43.5, exponent: 0.79, source: RYZHKOV_2014 },
   },
 };

@@ -142,10 +142,10 @@ export class RateBlender {
   }
 
   #join(gate: number, dbz: number, ready: ReadyRelation): void {
-    const { laws } = this.#tables;
+    const { laws, kdpZdrPart } = this.#tables;
     const { polarimetric } = this.#settings;
     if (laws === undefined || polarimetric === undefined) return;
-    const { kdpShare, kdpZdrPart, attenuationShare } = polarimetric;
+    const { kdpShare, attenuationShare } = polarimetric;
     const mayUseZdr = this.#zZdrShare > 0 && dbz > Z_ZDR_DBZ.from && dbz < Z_ZDR_DBZ.to;
     const parts = this.parts;
     const reader = this.#reader;

@@ -13,8 +13,8 @@ export interface PolarimetricRateSettings {
   readonly hail: boolean;
   /** Share of R(KDP) in heavy rain, 0 to 1, where it is well measured. */
   readonly kdpShare: number;
-  /** Part of R(KDP) that R(KDP, ZDR) takes over where ZDR is measured. */
-  readonly kdpZdrPart: number;
+  /** Part of R(KDP) that R(KDP, ZDR) takes over where ZDR is measured; undefined takes what the band usually has. */
+  readonly kdpZdrPart?: number | undefined;
   /** Share of R(Z, ZDR) in moderate rain; undefined takes what the band usually has. */
   readonly zZdrShare?: number | undefined;
   /** Share of R(A) in moderate and heavy rain, where a specific attenuation is given. */
@@ -36,13 +36,12 @@ export interface GateRateSettings {
 
 /**
  * House rule, from what helps in storms with known rain: R(KDP) in the heaviest rain and under hail, the number
- * of drops over whole sweeps, R(Z, ZDR) at S band. R(KDP, ZDR) and R(A) are there to be asked for.
+ * of drops over whole sweeps, R(Z, ZDR) and R(KDP, ZDR) at S band. R(A) is there to be asked for.
  */
 export const POLARIMETRIC_RATE_DEFAULTS: PolarimetricRateSettings = {
   dropNumber: true,
   hail: true,
   kdpShare: 1,
-  kdpZdrPart: 0,
   attenuationShare: 0,
 };
 
@@ -73,8 +72,8 @@ export function rateTables(
       `a rate needs a finite cut-off of 0 or more and a finite ZDR offset, got ${minRateMmPerHour} mm/h, ${zdrOffsetDb} dB`,
     );
   }
-  const { kdpShare = 0, kdpZdrPart = 0, zZdrShare, attenuationShare = 0 } = polarimetric ?? {};
-  for (const share of [kdpShare, kdpZdrPart, zZdrShare ?? 0, attenuationShare]) {
+  const { kdpShare = 0, kdpZdrPart, zZdrShare, attenuationShare = 0 } = polarimetric ?? {};
+  for (const share of [kdpShare, kdpZdrPart ?? 0, zZdrShare ?? 0, attenuationShare]) {
     if (!(share >= 0 && share <= 1)) throw new RangeError(`a share lies between 0 and 1, got ${share}`);
   }
   const ready = readyRelation(relation, cap);
@@ -87,7 +86,8 @@ export function rateTables(
   return {
     byType,
     laws,
-    zZdrShare: zZdrShare ?? laws?.usualZZdrShare ?? 0,
+    zZdrShare: zZdrShare ?? laws?.usualZdrShare ?? 0,
+    kdpZdrPart: kdpZdrPart ?? laws?.usualZdrShare ?? 0,
     zdrOffsetDb,
     dropNumberRatio: dropNumber === undefined ? undefined : learnedDropNumberRatio(dropNumber, ready),
   };

@@ -21,6 +21,7 @@ export interface RateTables {
   /** Undefined where no coefficients stand for the wavelength, it is not known, or a relation is for snow. */
   readonly laws: BandLaws | undefined;
   readonly zZdrShare: number;
+  readonly kdpZdrPart: number;
   /** Taken off every ZDR. */
   readonly zdrOffsetDb: number;
   /** Rain by KDP over rain by Z under `relation`, as the run has learned it; undefined where it has not. */

@@ -35,8 +35,11 @@ const HIGHEST_DBZ = 28;
 const LEAST_CORRELATION = 0.98;
 /** Phase of rain behind which a differential loss would pull ZDR down, degrees. House rule. */
 const MOST_RAIN_PHASE_DEG = 15;
-/** What the climate of drop sizes makes of the mean; the papers keep to 0.1 to 0.2 dB. */
-const WEATHER_DB = 0.2;
+/**
+ * What drops of one storm may make of the mean. The papers keep to 0.1 to 0.2 dB over many; in a single storm of large drops
+ * light rain has more, and to take that for the radar's would take away what ZDR tells of them. House rule.
+ */
+const WEATHER_DB = 0.5;
 const LEAST_GATES = 2000;
 /** Differences beyond it are no rain's. */
 const MOST_DIFFERENCE_DB = 4;
