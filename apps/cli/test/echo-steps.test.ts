@@ -9,7 +9,6 @@ import { beforeAll, describe, expect, test } from "vitest";
 import type { Document } from "yaml";
 import {
   arrayOf,
-  csvRows,
   editPlan,
   manifestOf,
   NO_ECHO_WORK,
@@ -51,13 +50,11 @@ describe("a run whose echo is worked on", () => {
     expect(status, stderr).toBe(0);
   });
 
-  test("tells of every screen, and its number is the mean of its map over the catchments", async () => {
+  test("tells of every screen, and the worst cell it names is that of its map", async () => {
     const echo = echoOf(run);
     expect(echo?.screens.map(({ screen }) => screen)).toEqual(SCREENS);
     expect(echo?.screens.some(({ gates }) => gates > 0)).toBe(true);
     const arrays = await readNetCdf(path.join(run, "totals.nc"));
-    const areas = csvRows(path.join(run, "catchments.csv"));
-    expect(areas.length).toBeGreaterThan(0);
     for (const { screen, worstCellMm } of echo?.screens ?? []) {
       const name = `screened_depth_${screen.replaceAll("-", "_")}`;
       if (!arrays.has(name)) {

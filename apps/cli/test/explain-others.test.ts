@@ -40,21 +40,13 @@ async function explained(folder: string, ...flags: readonly string[]): Promise<E
   return JSON.parse(stdout) as Explanation;
 }
 
-/** Every step from echo to rain switched off. */
-const ECHO_AS_IT_IS =
-  "{ screening: { use: false }, blockage: { use: false }, gas: { use: never }, attenuation: { method: none }, profile: { use: false }, rate: { rainType: false, polarimetric: false, hail: false } }";
-
 describe("even rain of a radar whose echo is not worked on", () => {
   test("stored numbers go straight to rain; a mean-field bias weighs each gauge by its radar depth", async () => {
     const folder = freshFolder("plain");
     await writeScans(folder);
     writeGauges(folder, SOUND_GAUGES);
     writeAreas(folder, [SOUND_AREA]);
-    writeIn(
-      folder,
-      "plan.yaml",
-      planText({ echo: ECHO_AS_IT_IS, adjustment: "{ method: mean-field-bias }" }),
-    );
+    writeIn(folder, "plan.yaml", planText({ adjustment: "{ method: mean-field-bias }" }));
     await totalIn(folder);
     const { points, catchments } = await explained(folder, "--gauge", "g1", "--catchment", "A");
     const [point] = points as [PointAccount];

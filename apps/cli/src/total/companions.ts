@@ -1,4 +1,4 @@
-import { SCREENS } from "@rainreckon/core";
+import { SCREENS, type Screen } from "@rainreckon/core";
 import type { CompanionKind } from "@rainreckon/mosaic";
 
 /** A value that travels with the rain from gate to total, and what people read of it. */
@@ -84,13 +84,18 @@ export const COMPANIONS: readonly Companion[] = [
   ...EFFECTS_SHOWN,
   ...SCREENS.map(
     (screen): Companion => ({
-      name: `screened_depth_${screen.replaceAll("-", "_")}`,
+      name: tollName(screen),
       kind: "toll",
       longName: `depth that echo taken out as ${screen.replaceAll("-", " ")} would have made`,
       units: "mm",
     }),
   ),
 ];
+
+/** Name of the companion that holds what a screen took away. */
+export function tollName(screen: Screen): string {
+  return `screened_depth_${screen.replaceAll("-", "_")}`;
+}
 
 /** Place of a companion in {@link COMPANIONS}. */
 export function companionIndex(name: string): number {

@@ -8,7 +8,7 @@ import {
 import type { Comparison } from "./against-gauges.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { calibrationProposals } from "./calibration.ts";
-import { COMPANIONS, companionIndex } from "./companions.ts";
+import { COMPANIONS, companionIndex, tollName } from "./companions.ts";
 import type { UnitCounts } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
 
@@ -71,7 +71,7 @@ export function echoAccount(
   const { counts, planes } = total;
   return {
     screens: SCREENS.map((screen, s): ScreenToll => {
-      const plane = planes.companions[companionIndex(`screened_depth_${screen.replaceAll("-", "_")}`)];
+      const plane = planes.companions[companionIndex(tollName(screen))];
       return {
         screen,
         gates: counts.gatesScreened[s],

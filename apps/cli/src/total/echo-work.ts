@@ -16,7 +16,7 @@ import {
   type ZrRelation,
 } from "@rainreckon/core";
 import { type GateRates, type PolarLookup, rainTypeOfGates, trustIn } from "@rainreckon/mosaic";
-import { COMPANIONS, companionIndex } from "./companions.ts";
+import { COMPANIONS, companionIndex, tollName } from "./companions.ts";
 import type { JobEcho, JobRadar, RatesMade, UnitCounts } from "./job.ts";
 import type { LayerShape } from "./round-layers.ts";
 
@@ -161,7 +161,7 @@ export class EchoWork {
     list: (Float32Array | undefined)[],
   ): void {
     const settings = { ...this.#settings(relation), offsetDb: this.#echo.settings.offsetDb };
-    const first = companionIndex(`screened_depth_${SCREENS[0].replaceAll("-", "_")}`);
+    const first = companionIndex(tollName(SCREENS[0]));
     for (let gate = 0; gate < screenedBy.length; gate++) {
       const bits = screenedBy[gate] as number;
       if (bits === 0) continue;

@@ -150,7 +150,6 @@ export async function prepareRun(
  * @throws InputError (usage) where its coordinate system is unknown, or puts the grid nowhere on Earth: such
  * a grid would hold nothing, and every gauge would lie outside it
  */
-/** The grid's projection. @throws InputError (usage) where it is none, or the grid lies nowhere */
 export function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection {
   const where = `plan, grid.crs: ${crs}`;
   let map: Projection;
