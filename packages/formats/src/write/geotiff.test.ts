@@ -50,6 +50,30 @@ test.each([
   tiff.close();
 });
 
+test("a plane larger than a tile carries overviews of means of what was observed", async () => {
+  const one = spec(300, 517);
+  const tiff = await fromFile(await written("overviews.tif", one));
+  expect(await tiff.getImageCount()).toBe(3);
+  const sizes = await Promise.all(
+    [0, 1, 2].map(async (index) => {
+      const image = await tiff.getImage(index);
+      return [image.getWidth(), image.getHeight(), image.fileDirectory.getValue("NewSubfileType") ?? 0];
+    }),
+  );
+  expect(sizes).toEqual([
+    [300, 517, 0],
+    [150, 259, 1],
+    [75, 130, 1],
+  ]);
+  const [half] = await (await tiff.getImage(1)).readRasters();
+  const at = (column: number, row: number) => (row * 300 + column) / 8 - 3;
+  // Cells (4, 0) and (5, 1) are observed, (5, 0) is not: index 5 of every 17; (4, 1) is index 304 = 15 mod 17.
+  expect((half as Float32Array)[2]).toBeCloseTo((at(4, 0) + at(4, 1) + at(5, 1)) / 3, 5);
+  // An odd last row has no row below it.
+  expect((half as Float32Array)[258 * 150]).toBeCloseTo((at(0, 516) + at(1, 516)) / 2, 3);
+  tiff.close();
+});
+
 test("a system with a code is its code, and nothing else is said of it", async () => {
   const one = spec(2, 2);
   const path = await written("code.tif", { ...one, grid: { ...one.grid, crs: "EPSG:3035" } });
@@ -112,6 +136,7 @@ test.skipIf(!FOREIGN_TOOLS)(
       "AREA_OR_POINT=Area",
       "COMPRESSION=DEFLATE",
       "PREDICTOR=3",
+      "Overviews: 150x5",
       "Block=256x256 Type=Float32",
       "NoData Value=nan",
       "Unit Type: mm",

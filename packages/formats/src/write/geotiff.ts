@@ -2,7 +2,7 @@ import { open } from "node:fs/promises";
 import { deflateSync } from "node:zlib";
 import type { Grid } from "@rainreckon/core";
 import { outputFault } from "./fault.ts";
-import { type GeoKeyTags, geoKeys } from "./geo-keys.ts";
+import { geoKeys } from "./geo-keys.ts";
 import { withoutControlCharacters } from "./text.ts";
 
 /** One plane as a picture that knows its place. */
@@ -26,7 +26,8 @@ const DOUBLE = { type: 12, bytes: 8 };
 
 /**
  * Write a plane as GeoTIFF to exactly this path: float32, 256 × 256 tiles, deflate with the
- * floating-point predictor, nodata NaN, pixels as areas.
+ * floating-point predictor, nodata NaN, pixels as areas; a plane larger than a tile carries overviews,
+ * each of half the size of the one before, of means of the observed cells.
  *
  * The same values give the same bytes. On failure the file is left incomplete: whoever chose the
  * path removes it.
@@ -41,12 +42,19 @@ export async function writeGeoTiff(path: string, spec: GeoTiffSpec): Promise<voi
   if (values.length !== grid.nx * grid.ny) {
     throw new RangeError(`${values.length} values do not fill ${grid.ny} rows of ${grid.nx}`);
   }
-  const tiles = tilesOf(grid, values);
-  const header = headerBytes(fieldsOf(spec, geoKeys(grid.crs, spec.projString)), tiles);
+  const pictures: Picture[] = [
+    { fields: [...sizeFields(grid), ...placeFields(spec)], tiles: tilesOf(grid, values) },
+  ];
+  for (let plane = halved({ nx: grid.nx, ny: grid.ny, values }); plane !== undefined; plane = halved(plane)) {
+    const reduced = { tag: 254, of: LONG, values: [1] };
+    const fields = [reduced, ...sizeFields(plane), noDataField()];
+    pictures.push({ fields, tiles: tilesOf(plane, plane.values) });
+  }
+  const header = headerBytes(pictures);
   try {
     const handle = await open(path, "w");
     try {
-      for (const bytes of [header, ...tiles]) await handle.writeFile(bytes);
+      for (const bytes of [header, ...pictures.flatMap(({ tiles }) => tiles)]) await handle.writeFile(bytes);
     } finally {
       await handle.close();
     }
@@ -55,8 +63,42 @@ export async function writeGeoTiff(path: string, spec: GeoTiffSpec): Promise<voi
   }
 }
 
+/** A picture of the file: the plane itself, or one of its overviews. */
+interface Picture {
+  readonly fields: readonly TiffField[];
+  readonly tiles: readonly Buffer[];
+}
+
+interface Shape {
+  readonly nx: number;
+  readonly ny: number;
+}
+
+/** The same plane in cells of twice the size; undefined for one that fits into a tile. */
+function halved({ nx, ny, values }: Shape & { readonly values: Float32Array }) {
+  if (nx <= TILE && ny <= TILE) return undefined;
+  const half = { nx: Math.ceil(nx / 2), ny: Math.ceil(ny / 2) };
+  const means = new Float32Array(half.nx * half.ny);
+  for (let cell = 0; cell < means.length; cell++) {
+    const column = 2 * (cell % half.nx);
+    const row = 2 * Math.floor(cell / half.nx);
+    let sum = 0;
+    let observed = 0;
+    for (let y = row; y < Math.min(row + 2, ny); y++) {
+      for (let x = column; x < Math.min(column + 2, nx); x++) {
+        const value = values[y * nx + x];
+        if (Number.isNaN(value)) continue;
+        sum += value;
+        observed += 1;
+      }
+    }
+    means[cell] = observed === 0 ? Number.NaN : sum / observed;
+  }
+  return { ...half, values: means };
+}
+
 /** Compressed tiles, row by row of tiles. Cells beyond the grid's edge are NaN. */
-function tilesOf(grid: Grid, values: Float32Array): Buffer[] {
+function tilesOf(grid: Shape, values: Float32Array): Buffer[] {
   const tiles: Buffer[] = [];
   const cells = new Float32Array(TILE * TILE);
   // Little-endian, as on every machine that Node.js runs on but one.
@@ -101,10 +143,10 @@ interface TiffField {
   readonly values: ArrayLike<number>;
 }
 
-function fieldsOf({ grid, description, unit }: GeoTiffSpec, keys: GeoKeyTags): TiffField[] {
-  const fields: TiffField[] = [
-    { tag: 256, of: LONG, values: [grid.nx] },
-    { tag: 257, of: LONG, values: [grid.ny] },
+function sizeFields({ nx, ny }: Shape): TiffField[] {
+  return [
+    { tag: 256, of: LONG, values: [nx] },
+    { tag: 257, of: LONG, values: [ny] },
     { tag: 258, of: SHORT, values: [32] },
     { tag: 259, of: SHORT, values: [8] }, // deflate
     { tag: 262, of: SHORT, values: [1] }, // more is brighter
@@ -114,11 +156,21 @@ function fieldsOf({ grid, description, unit }: GeoTiffSpec, keys: GeoKeyTags): T
     { tag: 322, of: LONG, values: [TILE] },
     { tag: 323, of: LONG, values: [TILE] },
     { tag: 339, of: SHORT, values: [3] }, // floating point
+  ];
+}
+
+function noDataField(): TiffField {
+  return { tag: 42113, of: ASCII, values: asciiBytes("nan") };
+}
+
+function placeFields({ grid, projString, description, unit }: GeoTiffSpec): TiffField[] {
+  const keys = geoKeys(grid.crs, projString);
+  const fields: TiffField[] = [
     { tag: 33550, of: DOUBLE, values: [grid.cellM, grid.cellM, 0] },
     { tag: 33922, of: DOUBLE, values: [0, 0, 0, grid.westM, grid.northM, 0] },
     { tag: 34735, of: SHORT, values: keys.directory },
     { tag: 42112, of: ASCII, values: asciiBytes(bandMetadata(description, unit)) },
-    { tag: 42113, of: ASCII, values: asciiBytes("nan") },
+    noDataField(),
   ];
   if (keys.doubles.length > 0) fields.push({ tag: 34736, of: DOUBLE, values: keys.doubles });
   if (keys.ascii !== "") fields.push({ tag: 34737, of: ASCII, values: asciiBytes(keys.ascii) });
@@ -144,47 +196,66 @@ function asciiBytes(text: string): Uint8Array {
   return Buffer.from(`${text}\0`, "utf8");
 }
 
-/** Everything before the tiles: header, directory, and the values too long for it. */
-function headerBytes(described: readonly TiffField[], tiles: readonly Buffer[]): Buffer {
-  const sizes = tiles.map((tile) => tile.length);
-  const offsets = sizes.map(() => 0);
-  const fields = [
-    ...described,
-    { tag: 324, of: LONG, values: offsets },
-    { tag: 325, of: LONG, values: sizes },
-  ].sort((a, b) => a.tag - b.tag);
-  const directoryEnd = 8 + 2 + fields.length * 12 + 4;
-  const valuesBytes = fields.map(({ of, values }) => of.bytes * values.length);
-  const outside = valuesBytes.reduce((sum, bytes) => sum + (bytes > 4 ? evenly(bytes) : 0), 0);
-
-  let tileAt = directoryEnd + outside;
-  for (let tile = 0; tile < tiles.length; tile++) {
-    offsets[tile] = tileAt;
-    tileAt += sizes[tile];
+/** Everything before the tiles: header, and for each picture its directory and the values too long for that. */
+function headerBytes(pictures: readonly Picture[]): Buffer {
+  const directories = pictures.map(({ fields, tiles }) => {
+    const offsets = tiles.map(() => 0);
+    const sizes = tiles.map((tile) => tile.length);
+    const all = [
+      ...fields,
+      { tag: 324, of: LONG, values: offsets },
+      { tag: 325, of: LONG, values: sizes },
+    ].sort((a, b) => a.tag - b.tag);
+    const outside = all.map(bytesOf).filter((bytes) => bytes > 4);
+    const entryBytes = 2 + all.length * 12 + 4;
+    const bytes = entryBytes + outside.reduce((sum, size) => sum + evenly(size), 0);
+    return { fields: all, offsets, sizes, entryBytes, bytes };
+  });
+  const headerLength = directories.reduce((sum, { bytes }) => sum + bytes, 8);
+  let tileAt = headerLength;
+  for (const { offsets, sizes } of directories) {
+    for (let tile = 0; tile < sizes.length; tile++) {
+      offsets[tile] = tileAt;
+      tileAt += sizes[tile];
+    }
   }
   if (tileAt >= 2 ** 32) throw new RangeError("the picture is longer than the 4 GiB that TIFF can address");
 
-  const bytes = Buffer.alloc(directoryEnd + outside);
+  const bytes = Buffer.alloc(headerLength);
   bytes.write("II", 0, "latin1");
   bytes.writeUInt16LE(42, 2);
   bytes.writeUInt32LE(8, 4);
-  bytes.writeUInt16LE(fields.length, 8);
-  let entryAt = 10;
-  let valuesAt = directoryEnd;
-  fields.forEach((field, index) => {
+  let start = 8;
+  for (const [index, directory] of directories.entries()) {
+    writeDirectory(bytes, start, directory.fields, start + directory.entryBytes);
+    start += directory.bytes;
+    const isLast = index === directories.length - 1;
+    bytes.writeUInt32LE(isLast ? 0 : start, start - directory.bytes + directory.entryBytes - 4);
+  }
+  return bytes;
+}
+
+function writeDirectory(bytes: Buffer, start: number, fields: readonly TiffField[], outsideAt: number): void {
+  bytes.writeUInt16LE(fields.length, start);
+  let entryAt = start + 2;
+  let valuesAt = outsideAt;
+  for (const field of fields) {
     bytes.writeUInt16LE(field.tag, entryAt);
     bytes.writeUInt16LE(field.of.type, entryAt + 2);
     bytes.writeUInt32LE(field.values.length, entryAt + 4);
-    if (valuesBytes[index] > 4) {
+    if (bytesOf(field) > 4) {
       bytes.writeUInt32LE(valuesAt, entryAt + 8);
       writeValues(bytes, valuesAt, field);
-      valuesAt += evenly(valuesBytes[index]);
+      valuesAt += evenly(bytesOf(field));
     } else {
       writeValues(bytes, entryAt + 8, field);
     }
     entryAt += 12;
-  });
-  return bytes;
+  }
+}
+
+function bytesOf({ of, values }: TiffField): number {
+  return of.bytes * values.length;
 }
 
 /** TIFF wants values to begin on even bytes. */
