@@ -148,7 +148,7 @@ function gauges(): ReportGauge[] {
       ...(isUnseen
         ? { reason: "radar did not observe this place" }
         : { radarId: radars[nearest(xM, yM)].id, rangeKm: nearestM(xM, yM) / 1000 }),
-      verdict: isStuck || i === ODD_UNIT ? "doubt" : "use",
+      verdict: isStuck || i === ODD_UNIT ? "leave out" : "use",
       cause: isStuck
         ? "silent gauge"
         : i === ODD_UNIT

@@ -1,6 +1,6 @@
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import { decibels } from "./numbers.ts";
-import type { GaugeVerdict } from "./suspect.ts";
+import type { GaugeVerdict } from "./verdict.ts";
 
 /** One row of `gauges.csv`, by the names of its columns. NaN is written as an empty cell. */
 export interface GaugeRow {
@@ -38,7 +38,7 @@ export function gaugeRows(wholePairs: readonly Pair[], verdicts: readonly GaugeV
       radar_total_mm: pair.radarMm,
       ratio_db: pair.gaugeMm > 0 ? decibels(pair.radarMm / pair.gaugeMm) : Number.NaN,
       verdict: verdict.verdict,
-      cause: verdict.cause,
+      cause: verdict.cause?.words ?? "",
       evidence: verdict.evidence,
     };
   });

@@ -20,6 +20,13 @@ export {
   type ScoreName,
 } from "./definitions.ts";
 export type { ScoreValue } from "./evaluator.ts";
+export type {
+  FieldSamples,
+  GaugeEvidence,
+  GaugeOverride,
+  JudgeContext,
+  RadarSight,
+} from "./evidence.ts";
 export { type DoubtedReadings, type GaugeSteps, gaugeDepth, gaugeSteps } from "./gauge-steps.ts";
 export { type GaugeRow, gaugeRows } from "./gauge-table.ts";
 export { DEPTH_SLACK_MM, decibels, quotient } from "./numbers.ts";
@@ -31,6 +38,31 @@ export {
   type RadarSteps,
 } from "./pairs.ts";
 export { type RatioStandardError, ratioStandardError } from "./ratio-error.ts";
+export type { Doubt } from "./relation-fit/fit-doubts.ts";
+export {
+  type FitSettings,
+  type FittedRelations,
+  fitRelations,
+  MIN_FIT_PAIRS,
+  type PairCover,
+  RELATION_FITS,
+  type RelationFit,
+  type RelationFitName,
+} from "./relation-fit/fit-relations.ts";
+export { logFits } from "./relation-fit/log-fits.ts";
+export { matchedRate, matchProbabilities } from "./relation-fit/probability-matching.ts";
+export {
+  RANK_RULE,
+  type RankCandidate,
+  type RankedRelation,
+  type Ranking,
+  type RankMode,
+  type RelationRanks,
+  rankRelations,
+} from "./relation-fit/rank-relations.ts";
+export type { PairUnits } from "./relation-fit/resample-pairs.ts";
+export { biasFreeFit, biasFreeLaw, relationError } from "./relation-fit/sum-fits.ts";
+export type { PowerLaw, ZrPairs } from "./relation-fit/zr-pairs.ts";
 export {
   type ContingencyScore,
   type GaugeGroup,
@@ -49,10 +81,19 @@ export {
   scoresDocument,
   scoresSchema,
 } from "./scores-document.ts";
+export { judgeGauges, leftOutReasons } from "./suspect.ts";
 export {
-  type GaugeEvidence,
-  type GaugeOverride,
+  type BiasGroup,
+  type Blame,
+  CAUSES,
+  type CauseName,
+  CHECKS,
+  type CheckName,
+  type Finding,
   type GaugeVerdict,
-  judgeGauges,
-  leftOutReasons,
-} from "./suspect.ts";
+  type LikelyCause,
+  likelyCause,
+  type NeighbourBias,
+  type RadarVerdict,
+  type Verdict,
+} from "./verdict.ts";

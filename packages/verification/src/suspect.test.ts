@@ -3,16 +3,43 @@ import { type GaugeSeries, QUALITY_DROP } from "@rainreckon/core";
 import { checkValue, inputNumbers } from "@rainreckon/test-data/published";
 import fc from "fast-check";
 import { describe, expect, test } from "vitest";
+import type { GaugeEvidence, RadarSight } from "./evidence.ts";
 import { gaugeRows } from "./gauge-table.ts";
 import { makePairs } from "./pairs.ts";
 import { uniformStream } from "./random.ts";
 import { impossibleDepthMm } from "./reading-checks.ts";
-import { type GaugeEvidence, type GaugeVerdict, judgeGauges, leftOutReasons } from "./suspect.ts";
+import { judgeGauges as judge, leftOutReasons } from "./suspect.ts";
+import type { GaugeVerdict } from "./verdict.ts";
 
 const MINUTE = 60_000;
 const START = Date.UTC(2031, 4, 3, 12);
 const HOURS = 6;
 const STEPS = HOURS * 12;
+const WINDOW = { startEpochMs: START, endEpochMs: START + HOURS * 60 * MINUTE };
+
+/** A radar of which no plane is known. */
+const UNKNOWN_SIGHT: RadarSight = {
+  beamHeightAslM: Number.NaN,
+  antennaAslM: Number.NaN,
+  blockedFraction: Number.NaN,
+  blockageCorrectionDb: Number.NaN,
+  attenuationCorrectionDb: Number.NaN,
+  twoWayLossDb: Number.NaN,
+  profileCorrectionDb: Number.NaN,
+  meltingFraction: Number.NaN,
+  snowFraction: Number.NaN,
+  hailFraction: Number.NaN,
+  convectiveFraction: Number.NaN,
+  cappedFraction: Number.NaN,
+  filledFraction: Number.NaN,
+  screenedMm: Number.NaN,
+  unseenMm: Number.NaN,
+  observedFraction: Number.NaN,
+  bridgedFraction: Number.NaN,
+  edgeFraction: Number.NaN,
+};
+
+const judgeGauges = (gauges: readonly GaugeEvidence[]) => judge(gauges, { window: WINDOW });
 
 interface Storm {
   readonly seed: number;
@@ -27,6 +54,7 @@ interface Storm {
 /** An invented storm of six hours over some gauges, each with its radar cell; gauges count tips of 0.2 mm. */
 function storm({ seed, gauges, scatterDb, spoil, network }: Storm): GaugeEvidence[] {
   const uniform = uniformStream(seed);
+  const place01 = uniformStream(seed + 1e6);
   return Array.from({ length: gauges }, (_, g) => {
     const peak = 1 + 2 * uniform();
     const radarMm = Float64Array.from(
@@ -42,11 +70,18 @@ function storm({ seed, gauges, scatterDb, spoil, network }: Storm): GaugeEvidenc
       return tips * 0.2;
     });
     spoil?.(g, readings, radarMm);
-    return evidence(network?.(g) ?? "moor", `g${g}`, readings, radarMm);
+    const place = { xKm: 60 * place01(), yKm: 60 * place01() };
+    return evidence(network?.(g) ?? "moor", `g${g}`, readings, radarMm, place);
   });
 }
 
-function evidence(network: string, id: string, depthMm: Float64Array, radarMm: Float64Array): GaugeEvidence {
+function evidence(
+  network: string,
+  id: string,
+  depthMm: Float64Array,
+  radarMm: Float64Array,
+  place: { readonly xKm: number; readonly yKm: number },
+): GaugeEvidence {
   const startEpochMs = depthMm.map((_, k) => START + k * 5 * MINUTE);
   const series: GaugeSeries = {
     network,
@@ -58,21 +93,22 @@ function evidence(network: string, id: string, depthMm: Float64Array, radarMm: F
     depthMm,
     quality: new Uint8Array(depthMm.length),
   };
+  const radar = {
+    startEpochMs: START,
+    stepMs: 5 * MINUTE,
+    depthMm: radarMm,
+    observedFraction: new Float64Array(STEPS).fill(1),
+  };
   const pairs = makePairs({
     series,
-    radar: {
-      startEpochMs: START,
-      stepMs: 5 * MINUTE,
-      depthMm: radarMm,
-      observedFraction: new Float64Array(STEPS).fill(1),
-    },
-    intervals: cutWindow({ startEpochMs: START, endEpochMs: START + HOURS * 60 * MINUTE }, 60 * MINUTE),
+    radar,
+    intervals: cutWindow(WINDOW, 60 * MINUTE),
     minCommonFraction: 0.5,
     radarId: "sabird",
     rangeKm: 42,
     beamHeightAslM: 900,
   });
-  return { series, whole: pairs.whole, byInterval: pairs.byInterval };
+  return { series, radar, whole: pairs.whole, byInterval: pairs.byInterval, sight: UNKNOWN_SIGHT, ...place };
 }
 
 const scale = (readings: Float64Array, by: number) =>
@@ -80,7 +116,7 @@ const scale = (readings: Float64Array, by: number) =>
     readings[k] = depth * by;
   });
 const doubted = (verdicts: readonly GaugeVerdict[]) =>
-  verdicts.filter(({ verdict }) => verdict === "doubt").map(({ gaugeId }) => gaugeId);
+  verdicts.filter(({ verdict }) => verdict === "leave out").map(({ gaugeId }) => gaugeId);
 
 describe("a planted fault is found, named, and found alone", () => {
   test.each([
@@ -100,7 +136,7 @@ describe("a planted fault is found, named, and found alone", () => {
       }),
     );
     expect(doubted(verdicts)).toEqual(["g3"]);
-    expect(verdicts[3].cause).toMatch(cause);
+    expect(verdicts[3].cause?.words).toMatch(cause);
     expect(verdicts[3].evidence).toMatch(/in 6 of 6 wet intervals/);
   });
 
@@ -123,7 +159,7 @@ describe("a planted fault is found, named, and found alone", () => {
       storm({ seed: 3, gauges: 8, scatterDb: 1.5, spoil: (g, readings) => g === 5 && readings.fill(0) }),
     );
     expect(doubted(verdicts)).toEqual(["g5"]);
-    expect(verdicts[5]).toMatchObject({ cause: "silent gauge", trusted: false });
+    expect(verdicts[5]).toMatchObject({ cause: { name: "dead" }, trusted: false });
     expect(verdicts[5].evidence).toMatch(
       /^0 mm while the radar saw \d+\.\d mm over it; 7 other gauges agree/,
     );
@@ -134,7 +170,7 @@ describe("a planted fault is found, named, and found alone", () => {
       storm({ seed: 3, gauges: 8, scatterDb: 1.5, spoil: (g, readings) => g === 5 && readings.fill(0, 24) }),
     );
     expect(doubted(verdicts)).toEqual(["g5"]);
-    expect(verdicts[5].cause).toBe("silent for part of the time");
+    expect(verdicts[5].cause?.name).toBe("dies-part-way");
     expect(verdicts[5].evidence).toContain("from 2031-05-03T14:00Z to 2031-05-03T18:00Z");
   });
 
@@ -153,7 +189,7 @@ describe("a planted fault is found, named, and found alone", () => {
       }),
     );
     expect(doubted(verdicts)).toEqual(["g2"]);
-    expect(verdicts[2].cause).toBe("single spike");
+    expect(verdicts[2].cause?.name).toBe("spike");
     expect(verdicts[2].evidence).toMatch(/^45\.0 mm in 5 min to 2031-05-03T12:35Z/);
   });
 
@@ -169,7 +205,7 @@ describe("a planted fault is found, named, and found alone", () => {
       }),
     );
     expect(doubted(verdicts)).toEqual(["g2"]);
-    expect(verdicts[2].cause).toBe("single spike");
+    expect(verdicts[2].cause?.name).toBe("spike");
   });
 
   test("a reading beyond every record", () => {
@@ -184,7 +220,7 @@ describe("a planted fault is found, named, and found alone", () => {
       }),
     );
     expect(doubted(verdicts)).toEqual(["g2"]);
-    expect(verdicts[2]).toMatchObject({ cause: "impossible value" });
+    expect(verdicts[2]).toMatchObject({ cause: { name: "impossible-value" } });
   });
 });
 
@@ -326,7 +362,6 @@ describe("too little to judge by", () => {
     const [verdict] = judgeGauges([gauge]);
     expect(verdict).toMatchObject({
       verdict: "too little rain to judge",
-      cause: "no comparison with the radar",
       evidence: "Not compared: no gauge data.",
     });
   });
@@ -339,15 +374,17 @@ describe("overrides", () => {
     scatterDb: 1.5,
     spoil: (g, readings) => g === 5 && readings.fill(0),
   });
-  const override = { reason: "checked on site" };
+  const override = { reason: "checked on site", by: "A. Nobody", date: "2031-05-04" };
 
   test("a doubted gauge is used where a person says so, and both are said", () => {
     const asked = gauges.map((gauge, g) =>
       g === 5 ? { ...gauge, override: { verdict: "use" as const, ...override } } : gauge,
     );
     const [, , , , , verdict] = judgeGauges(asked);
-    expect(verdict).toMatchObject({ verdict: "doubt", trusted: true });
-    expect(verdict.evidence).toContain("Used all the same, by override: checked on site.");
+    expect(verdict).toMatchObject({ verdict: "leave out", trusted: true });
+    expect(verdict.evidence).toContain(
+      "Used all the same, by override: checked on site (A. Nobody, 2031-05-04).",
+    );
   });
 
   test("a sound gauge is left out where a person says so", () => {
@@ -358,8 +395,8 @@ describe("overrides", () => {
     expect(verdicts[0]).toMatchObject({ verdict: "use", trusted: false });
     expect(leftOutReasons(verdicts)).toEqual(
       new Map([
-        ["moor\u001fg0", "left out by override: checked on site"],
-        ["moor\u001fg5", "doubted: silent gauge"],
+        ["moor\u001fg0", "left out by override: checked on site (A. Nobody, 2031-05-04)"],
+        ["moor\u001fg5", "doubted: dead"],
       ]),
     );
   });

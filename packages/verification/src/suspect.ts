@@ -1,8 +1,16 @@
-import { type GaugeSeries, gaugeKey, type Pair } from "@rainreckon/core";
+import { gaugeKey, type Pair } from "@rainreckon/core";
 import { median } from "simple-statistics";
+import type { GaugeEvidence, GaugeOverride, JudgeContext } from "./evidence.ts";
 import { decibels, fromDecibels } from "./numbers.ts";
 import { findImpossibleReading, findSpike } from "./reading-checks.ts";
 import { findUnitMistake, isNearOne, referenceOf, unitMistakes } from "./unit-checks.ts";
+import {
+  type CauseName,
+  type CheckName,
+  type GaugeVerdict,
+  type LikelyCause,
+  likelyCause,
+} from "./verdict.ts";
 
 /** Radar depth over the window from which a gauge can be judged by it. */
 const JUDGE_MM = 5;
@@ -17,36 +25,6 @@ const LEAST_WITNESSES = 3;
 const WET_INTERVAL_MM = 0.5;
 /** "The usual spread" about the median of the others. */
 const USUAL_SPREADS = 3;
-
-/** What a person decided about a gauge, against any check. */
-export interface GaugeOverride {
-  readonly verdict: "use" | "leave-out";
-  readonly reason: string;
-}
-
-/** What is known of one gauge: its series, its pairs, and what a person said of it. */
-export interface GaugeEvidence {
-  readonly series: GaugeSeries;
-  /** Over the whole window and by interval, as `makePairs` gives them. */
-  readonly whole: Pair;
-  readonly byInterval: readonly Pair[];
-  readonly override?: GaugeOverride;
-}
-
-/** A first judgement of a gauge, with the numbers it rests on. */
-export interface GaugeVerdict {
-  readonly network: string;
-  readonly gaugeId: string;
-  readonly verdict: "use" | "doubt" | "too little rain to judge";
-  /** In a few words; empty where nothing is doubted. */
-  readonly cause: string;
-  /** One sentence with numbers. */
-  readonly evidence: string;
-  /** Whether the gauge may shape an adjustment and enter scores. */
-  readonly trusted: boolean;
-  /** Why a gauge is not trusted: what its pairs carry as their reason; empty for a trusted one. */
-  readonly leftOutReason: string;
-}
 
 /**
  * First doubts about gauges, from their own readings and from the radar and the other gauges.
@@ -63,7 +41,7 @@ export interface GaugeVerdict {
  * @param gauges - all gauges of the run
  * @returns one verdict per gauge, in the same order
  */
-export function judgeGauges(gauges: readonly GaugeEvidence[]): GaugeVerdict[] {
+export function judgeGauges(gauges: readonly GaugeEvidence[], _context: JudgeContext): GaugeVerdict[] {
   return gauges.map((gauge) => withOverride(judge(gauge, gauges), gauge.override));
 }
 
@@ -76,61 +54,68 @@ export function leftOutReasons(verdicts: readonly GaugeVerdict[]): Map<string, s
   );
 }
 
-interface Judgement {
-  readonly network: string;
-  readonly gaugeId: string;
-  readonly verdict: GaugeVerdict["verdict"];
-  readonly cause: string;
-  readonly evidence: string;
-}
+type Judgement = Omit<GaugeVerdict, "trusted" | "leftOutReason">;
 
 function judge(gauge: GaugeEvidence, all: readonly GaugeEvidence[]): Judgement {
   const { whole } = gauge;
-  const result = (verdict: GaugeVerdict["verdict"], cause: string, evidence: string): Judgement => ({
+  const result = (verdict: GaugeVerdict["verdict"], evidence: string): Judgement => ({
     network: whole.network,
     gaugeId: whole.gaugeId,
     verdict,
-    cause,
+    cause: undefined,
+    findings: [],
     evidence,
   });
+  const doubted = ({ cause, evidence, check }: Doubt): Judgement => ({
+    ...result("leave out", evidence),
+    cause,
+    findings: [{ check, speaksFor: cause.name, numbers: {}, sentence: evidence }],
+  });
   const ofReadings = doubtOfReadings(gauge);
-  if (ofReadings !== undefined) return result("doubt", ...ofReadings);
+  if (ofReadings !== undefined) return doubted(ofReadings);
   if (!whole.used) {
-    return result(
-      "too little rain to judge",
-      "no comparison with the radar",
-      `Not compared: ${whole.reason}.`,
-    );
+    return result("too little rain to judge", `Not compared: ${whole.reason}.`);
   }
   const others = all.filter((other) => other !== gauge && other.whole.used);
   const silent = doubtOfSilence(gauge, others);
-  if (silent !== undefined) return result("doubt", ...silent);
+  if (silent !== undefined) return doubted(silent);
   const sums = `gauge ${mm(whole.gaugeMm)}, radar ${mm(whole.radarMm)}`;
   if (!(whole.radarMm >= JUDGE_MM)) {
     return result(
       "too little rain to judge",
-      "",
       `Over the common time: ${sums}; ${JUDGE_MM} mm of radar needed.`,
     );
   }
   const unit = doubtOfUnit(gauge, others);
-  if (unit !== undefined) return result("doubt", ...unit);
-  return result("use", "", `Over the common time: ${sums}${ratioWords(whole)}.`);
+  if (unit !== undefined) return doubted(unit);
+  return result("use", `Over the common time: ${sums}${ratioWords(whole)}.`);
 }
 
-type Doubt = readonly [cause: string, evidence: string];
+interface Doubt {
+  readonly cause: LikelyCause;
+  readonly evidence: string;
+  readonly check: CheckName;
+}
+
+function doubt(check: CheckName, name: CauseName, evidence: string, details = ""): Doubt {
+  return { check, cause: likelyCause(name, details), evidence };
+}
 
 function doubtOfReadings({ series, whole, byInterval }: GaugeEvidence): Doubt | undefined {
   const impossible = findImpossibleReading(series, whole);
   if (impossible !== undefined) {
     const limit =
       impossible.depthMm < 0 ? "rain is never negative" : `the limit is ${mm(impossible.limitMm)}`;
-    return ["impossible value", `${mm(impossible.depthMm)} in ${span(impossible)}; ${limit}.`];
+    return doubt(
+      "rate limits",
+      "impossible-value",
+      `${mm(impossible.depthMm)} in ${span(impossible)}; ${limit}.`,
+    );
   }
   const spike = findSpike(series, whole, byInterval);
   if (spike !== undefined) {
     const evidence = `${mm(spike.depthMm)} in ${span(spike)}, next to nothing before and after it; the radar saw ${mm(spike.radarMm)} in the interval around it.`;
-    return ["single spike", evidence];
+    return doubt("isolated spike", "spike", evidence);
   }
   return undefined;
 }
@@ -144,7 +129,7 @@ function doubtOfSilence(gauge: GaugeEvidence, others: readonly GaugeEvidence[]):
     );
     if (witnesses < LEAST_WITNESSES) return undefined;
     const evidence = `0 mm while the radar saw ${mm(whole.radarMm)} over it; ${witnesses} other gauges agree with the radar.`;
-    return ["silent gauge", evidence];
+    return doubt("silence", "dead", evidence);
   }
   const run = wettestSilentRun(gauge.byInterval);
   if (run === undefined || run.radarMm < SILENT_PART_MM) return undefined;
@@ -153,7 +138,7 @@ function doubtOfSilence(gauge: GaugeEvidence, others: readonly GaugeEvidence[]):
   );
   if (witnesses < LEAST_WITNESSES) return undefined;
   const evidence = `0 mm from ${utc(run.startEpochMs)} to ${utc(run.endEpochMs)} while the radar saw ${mm(run.radarMm)} over it; ${witnesses} other gauges agree with the radar over that time.`;
-  return ["silent for part of the time", evidence];
+  return doubt("silence", "dies-part-way", evidence);
 }
 
 interface Sums {
@@ -232,26 +217,30 @@ function doubtOfUnit(gauge: GaugeEvidence, others: readonly GaugeEvidence[]): Do
       mistakes,
     );
     if (found === undefined) continue;
-    const cause = `unit looks wrong: ${found.mistakes.map((mistake) => mistake.words).join(", or ")}`;
+    const details = found.mistakes.map((mistake) => mistake.words).join(", or ");
     const middle = fromDecibels(reference.medianDb).toFixed(2);
     const evidence = `Gauge ${mm(whole.gaugeMm)}, radar ${mm(whole.radarMm)}: ${times(found.offset)} the median gauge/radar ratio of ${reference.count} ${words} (${middle}), and alike in ${found.fitting} of ${found.intervals} wet intervals.`;
-    return [cause, evidence];
+    return doubt("unit", "wrong-unit", evidence, details);
   }
   return undefined;
 }
 
 function withOverride(judgement: Judgement, override: GaugeOverride | undefined): GaugeVerdict {
   if (override?.verdict === "leave-out") {
-    const leftOutReason = `left out by override: ${override.reason}`;
-    const evidence = `${judgement.evidence} Left out by override: ${override.reason}.`;
+    const leftOutReason = `left out by override: ${overrideWords(override)}`;
+    const evidence = `${judgement.evidence} Left out by override: ${overrideWords(override)}.`;
     return { ...judgement, evidence, trusted: false, leftOutReason };
   }
-  if (judgement.verdict !== "doubt") return { ...judgement, trusted: true, leftOutReason: "" };
+  if (judgement.verdict !== "leave out") return { ...judgement, trusted: true, leftOutReason: "" };
   if (override?.verdict === "use") {
-    const evidence = `${judgement.evidence} Used all the same, by override: ${override.reason}.`;
+    const evidence = `${judgement.evidence} Used all the same, by override: ${overrideWords(override)}.`;
     return { ...judgement, evidence, trusted: true, leftOutReason: "" };
   }
-  return { ...judgement, trusted: false, leftOutReason: `doubted: ${judgement.cause}` };
+  return { ...judgement, trusted: false, leftOutReason: `doubted: ${judgement.cause?.words}` };
+}
+
+function overrideWords({ reason, by, date }: GaugeOverride): string {
+  return `${reason} (${by}, ${date})`;
 }
 
 /** Gauge over radar, in decibels. */

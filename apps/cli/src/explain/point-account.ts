@@ -84,7 +84,7 @@ export function pointAccount(
             gaugeId: compared.gauge.series.id,
             name: compared.gauge.station.name ?? null,
             verdict: compared.verdict.verdict,
-            cause: compared.verdict.cause,
+            cause: compared.verdict.cause?.words ?? "",
             readingMinutes: finite((compared.gauge.series.stepMs ?? Number.NaN) / 60_000),
             gaugeMm: finite(compared.whole.gaugeMm),
             radarMm: finite(compared.whole.radarMm),

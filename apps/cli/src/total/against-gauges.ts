@@ -10,7 +10,6 @@ import { gaugeKey, type Interval, type Pair } from "@rainreckon/core";
 import { geodesicInverse } from "@rainreckon/mosaic";
 import {
   closestOf3x3,
-  type GaugeEvidence,
   type GaugeVerdict,
   judgeGauges,
   leaveOut,
@@ -22,6 +21,7 @@ import {
 } from "@rainreckon/verification";
 import { type AdjustmentResult, adjust, loudestRadar } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
+import { gaugeEvidence } from "./gauge-evidence.ts";
 import type { GaugeInput } from "./gauges.ts";
 import { sourceIds } from "./job.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -79,13 +79,7 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
       rainDays: days.length === 0 ? [] : makePairs({ ...input, intervals: days }).byInterval,
     };
   });
-  const evidence = compared.map(({ gauge, whole, byInterval }): GaugeEvidence => {
-    const override = plan.overrides.find(
-      (one) => one.network === gauge.series.network && one.gauge === gauge.series.id,
-    );
-    return { series: gauge.series, whole, byInterval, ...(override === undefined ? {} : { override }) };
-  });
-  const verdicts = judgeGauges(evidence);
+  const verdicts = judgeGauges(gaugeEvidence(run, total, compared), { window: run.window });
   const reasons = leftOutReasons(verdicts);
   const byInterval = compared.flatMap((one) => one.byInterval);
   const pairs = leaveOut(byInterval, reasons);

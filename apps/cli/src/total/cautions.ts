@@ -133,7 +133,7 @@ export function runCautions(
     if (adjustment.method === "gauges-alone")
       say("The adjusted total is interpolated between gauges: the radar gives it only its shape in time.");
   }
-  const doubted = comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length;
+  const doubted = comparison.gauges.filter(({ verdict }) => verdict.verdict === "leave out").length;
   if (doubted > 0) {
     say(
       `${doubted} of ${comparison.gauges.length} gauges are doubted and shape nothing unless the plan says so.`,

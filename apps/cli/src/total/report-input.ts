@@ -264,7 +264,7 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
     ...(station.name === undefined ? {} : { name: station.name }),
     xM: gauge.xM,
     yM: gauge.yM,
-    role: whole.used ? "used" : verdict.verdict === "doubt" ? "doubted" : "left-out",
+    role: whole.used ? "used" : verdict.verdict === "leave out" ? "doubted" : "left-out",
     gaugeMm: whole.gaugeMm,
     radarMm: whole.radarMm,
     crossValidatedMm: crossValidatedPairMm(comparison, compared, whole),
@@ -272,7 +272,7 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
     ...(whole.radarId === "" ? {} : { radarId: whole.radarId }),
     ...(Number.isNaN(whole.rangeKm) ? {} : { rangeKm: whole.rangeKm }),
     verdict: verdict.verdict,
-    cause: verdict.cause,
+    cause: verdict.cause?.words ?? "",
     evidence: verdict.evidence,
     ...(whole.reason === "" ? {} : { reason: whole.reason }),
   };

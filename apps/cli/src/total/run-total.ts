@@ -219,7 +219,7 @@ async function manifestOf(
       gridCellsCapped: total.counts.gridCellsCapped,
       gauges: comparison.gauges.length,
       gaugesUsed: comparison.gauges.filter(({ whole }) => whole.used).length,
-      gaugesDoubted: comparison.gauges.filter(({ verdict }) => verdict.verdict === "doubt").length,
+      gaugesDoubted: comparison.gauges.filter(({ verdict }) => verdict.verdict === "leave out").length,
       pairs: comparison.pairs.length,
       pairsUsed: comparison.before.usedCount,
       catchments: run.catchments.length,
