@@ -1,4 +1,4 @@
-// Benches, as ratios in one run: `npm run bench [rate|decode|cost|memory]`. Machines are noisy: read the ratios.
+// Benches, as ratios in one run: `npm run bench [rate|decode|kriging|cost|memory]`. Machines are noisy: read the ratios.
 // And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
@@ -6,6 +6,7 @@ import os from "node:os";
 import path from "node:path";
 import { fileURLToPath, pathToFileURL } from "node:url";
 import { build } from "esbuild";
+import { pageScriptForBuild } from "../../../packages/report/scripts/page-script.mjs";
 
 const root = fileURLToPath(new URL("../../..", import.meta.url));
 const program = path.join(root, "apps/cli/dist/main.js");
@@ -40,7 +41,7 @@ async function bundled(file, plugins = []) {
     alias: Object.fromEntries(
       PACKAGES.map((name) => [`@rainreckon/${name}`, path.join(root, "packages", name, "src/index.ts")]),
     ),
-    plugins,
+    plugins: [pageScriptForBuild, ...plugins],
     logLevel: "warning",
   });
   process.on("exit", () => rmSync(out, { force: true }));
@@ -107,6 +108,8 @@ if (asked("decode")) {
   process.env.RAINRECKON_BENCH_DIR = path.join(path.dirname(await volumes(288)), "radar");
   await packageBench("packages/formats/bench/decode.ts");
 }
+
+if (asked("kriging")) await packageBench("packages/adjustment/bench/local-kriging.ts");
 
 // A script of another language's array libraries can do the plain decoding, as a floor that is not ours.
 function decodeSeconds(folder, count) {

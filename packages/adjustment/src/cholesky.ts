@@ -36,6 +36,45 @@ export function solveLowerInPlace(lower: Float64Array, n: number, b: Float64Arra
   }
 }
 
+/**
+ * Solves L Y = B in place for many right-hand sides at once, four rows of Y at a time: several times faster than
+ * one after the other.
+ *
+ * @param rows - shape [n, count], row-major; may be longer
+ */
+export function solveLowerRowsInPlace(
+  lower: Float64Array,
+  n: number,
+  rows: Float64Array,
+  count: number,
+): void {
+  for (let i = 0; i < n; i++) {
+    const own = i * count;
+    const row = i * n;
+    let k = 0;
+    for (; k + 3 < i; k += 4) {
+      const l0 = lower[row + k];
+      const l1 = lower[row + k + 1];
+      const l2 = lower[row + k + 2];
+      const l3 = lower[row + k + 3];
+      const r0 = k * count;
+      const r1 = r0 + count;
+      const r2 = r1 + count;
+      const r3 = r2 + count;
+      for (let t = 0; t < count; t++) {
+        rows[own + t] -= l0 * rows[r0 + t] + l1 * rows[r1 + t] + l2 * rows[r2 + t] + l3 * rows[r3 + t];
+      }
+    }
+    for (; k < i; k++) {
+      const l = lower[row + k];
+      const at = k * count;
+      for (let t = 0; t < count; t++) rows[own + t] -= l * rows[at + t];
+    }
+    const inverse = 1 / lower[row + i];
+    for (let t = 0; t < count; t++) rows[own + t] *= inverse;
+  }
+}
+
 /** Solves Lᵀ x = y in place. */
 export function solveUpperInPlace(lower: Float64Array, n: number, y: Float64Array): void {
   for (let i = n - 1; i >= 0; i--) {

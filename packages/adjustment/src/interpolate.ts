@@ -9,7 +9,6 @@ import type { VariogramModel, VariogramShape } from "./variogram-model.ts";
 export const OWN_VARIOGRAM_FROM = 8;
 /** More places than this are kriged from the nearest alone. */
 const LOCAL_FROM = 100;
-const NEIGHBOURS = 32;
 /** Bins of a sample variogram: one for so many pairs, within these limits. Common practice. */
 const PAIRS_PER_BIN = 10;
 const BIN_LIMITS = [4, 12] as const;
@@ -106,8 +105,8 @@ export function krigedOr(
     const { field, errors } = nuggetAsError(model, errorVariance);
     const input = { places, values, model: field, errorVariance: errors };
     if (values.length > LOCAL_FROM) {
-      const local = localKriging(input, NEIGHBOURS);
-      if (local !== "singular") return (x, y) => local.estimate(x, y).value;
+      const local = localKriging(input);
+      if (local !== "singular") return local.value;
     } else {
       const system = krigingSystem(input);
       if (typeof system !== "string") return (x, y) => system.value(x, y);
