@@ -267,6 +267,7 @@ export {
 export { type DropScattering, mieEfficiency, type ScatteringEfficiency, scatteringOfDrop } from "./mie.ts";
 export * from "./model/catchment.ts";
 export * from "./model/errors.ts";
+export * from "./model/frequency.ts";
 export * from "./model/gauge.ts";
 export * from "./model/grid.ts";
 export * from "./model/interval.ts";
