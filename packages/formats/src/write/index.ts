@@ -12,6 +12,7 @@ export type { AttributeValue } from "./grid-mapping.ts";
 export { finiteOrNull, type JsonValue, toJson, writeJson } from "./json.ts";
 export type { MapReference } from "./map-reference.ts";
 export { createTotalsFile, type TotalsFile, type TotalsSpec } from "./netcdf.ts";
+export { type ParquetColumn, writeParquet } from "./parquet.ts";
 export { readTotals } from "./read-totals.ts";
 export { sha256OfFile, writeText } from "./text.ts";
 export { TOTALS_VARIABLES, type TotalsVariable } from "./totals-variables.ts";
