@@ -1,4 +1,4 @@
-import { cutWindow, durationMs, rainDays } from "@rainreckon/accumulation";
+import { durationMs } from "@rainreckon/accumulation";
 import {
   crossValidatedPairs,
   type HeldOutGauge,
@@ -6,24 +6,22 @@ import {
   spanDepthAt,
   windowGauges,
 } from "@rainreckon/adjustment";
-import { gaugeKey, type Interval, type Pair } from "@rainreckon/core";
-import { geodesicInverse } from "@rainreckon/mosaic";
+import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   closestOf3x3,
   type GaugeVerdict,
   judgeGauges,
   leaveOut,
   leftOutReasons,
-  makePairs,
   type ScoreOptions,
   type ScoreTable,
   scorePairs,
 } from "@rainreckon/verification";
-import { type AdjustmentResult, adjust, loudestRadar } from "./adjust.ts";
+import { type AdjustmentResult, adjust } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
-import { gaugeEvidence } from "./gauge-evidence.ts";
+import { gaugeEvidence, judgeContext } from "./gauge-evidence.ts";
 import type { GaugeInput } from "./gauges.ts";
-import { sourceIds } from "./job.ts";
+import { pairGauges } from "./pair-gauges.ts";
 import type { PreparedRun } from "./prepare.ts";
 
 /** A gauge beside the radar, over the whole window and by interval. */
@@ -53,33 +51,9 @@ export interface Comparison extends AdjustmentResult {
 /** Pairs every gauge with its cells, doubts what must be doubted, adjusts and scores. */
 export function compareWithGauges(run: PreparedRun, total: AssembledRun): Comparison {
   const { plan } = run.loaded;
-  const anchor = run.window.startEpochMs % run.stepMs;
   const pairMs = durationMs(plan.pairs.interval);
-  const intervals = cutWindow(run.window, pairMs, anchor);
-  const days = wholeRainDays(run);
-  let splitMm = 0;
-  const compared = run.gauges.gauges.map((gauge, g) => {
-    const input = {
-      series: gauge.series,
-      radar: {
-        startEpochMs: run.window.startEpochMs,
-        stepMs: run.stepMs,
-        depthMm: total.gauges.depthMm[g],
-        observedFraction: total.gauges.observedFraction[g],
-      },
-      minCommonFraction: plan.pairs.minCommonFraction,
-      ...radarAt(run, total, gauge),
-    };
-    const made = makePairs({ ...input, intervals });
-    splitMm += made.splitMm;
-    return {
-      gauge,
-      whole: made.whole,
-      byInterval: made.byInterval,
-      rainDays: days.length === 0 ? [] : makePairs({ ...input, intervals: days }).byInterval,
-    };
-  });
-  const verdicts = judgeGauges(gaugeEvidence(run, total, compared), { window: run.window });
+  const compared = pairGauges(run, total);
+  const verdicts = judgeGauges(gaugeEvidence(run, total, compared), judgeContext(run, total));
   const reasons = leftOutReasons(verdicts);
   const byInterval = compared.flatMap((one) => one.byInterval);
   const pairs = leaveOut(byInterval, reasons);
@@ -134,7 +108,7 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
     after: adjustment.applied
       ? scorePairs(crossValidatedPairs(pairs, adjustment.crossValidation), scoreOptions)
       : { reason: `no adjustment: ${adjustment.reason}` },
-    splitMm,
+    splitMm: compared.reduce((sum, { splitMm }) => sum + splitMm, 0),
   };
 }
 
@@ -179,32 +153,4 @@ function byKey<G extends { readonly network: string; readonly gaugeId: string }>
   gauges: readonly G[],
 ): Map<string, G> {
   return new Map(gauges.map((gauge) => [gaugeKey({ network: gauge.network, id: gauge.gaugeId }), gauge]));
-}
-
-/** Rain days that lie wholly in the window: over part of a day there is no daily pair. */
-function wholeRainDays(run: PreparedRun): Interval[] {
-  const rule = run.loaded.plan.intervals.rainDay;
-  if (rule === undefined) return [];
-  return rainDays(run.window, rule).filter(
-    (day) =>
-      day.startEpochMs >= run.window.startEpochMs &&
-      day.endEpochMs <= run.window.endEpochMs &&
-      (day.startEpochMs - run.window.startEpochMs) % run.stepMs === 0 &&
-      (day.endEpochMs - day.startEpochMs) % run.stepMs === 0,
-  );
-}
-
-/** The radar that speaks loudest at a gauge, how far it is, and how high its beam. */
-function radarAt(
-  run: PreparedRun,
-  total: AssembledRun,
-  { cell, station }: GaugeInput,
-): { radarId: string; rangeKm: number; beamHeightAslM: number } {
-  const loudest = loudestRadar(total, cell);
-  const site = run.shape.radars[loudest]?.site;
-  return {
-    radarId: sourceIds(run.shape)[loudest] ?? "",
-    rangeKm: site === undefined ? Number.NaN : geodesicInverse(site, station).distanceM / 1000,
-    beamHeightAslM: total.planes.beamHeightAslM[cell],
-  };
 }

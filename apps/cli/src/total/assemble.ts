@@ -23,6 +23,8 @@ export interface AssembledRun {
   readonly sum: FieldSum;
   /** Shapes [gauges or areas][steps of the window]. */
   readonly gauges: StepSeries;
+  /** Shape [field cells][steps of the window]: NaN where not observed. */
+  readonly fieldMm: readonly Float32Array[];
   readonly areas: AreaStepSeries;
   readonly counts: UnitCounts;
   readonly notices: readonly SweepFault[];
@@ -84,6 +86,7 @@ export function assemble(
       depthMm: joined((piece) => piece.gauges.depthMm, gaugeCount),
       observedFraction: joined((piece) => piece.gauges.observedFraction, gaugeCount),
     },
+    fieldMm: shape.fieldCells.length === 0 ? [] : joinedField(pieces, shape.fieldCells.length),
     areas: {
       depthMm: joined((piece) => piece.areas.depthMm, areaCount),
       observedFraction: joined((piece) => piece.areas.observedFraction, areaCount),
@@ -93,6 +96,19 @@ export function assemble(
     counts,
     notices: [...notices.values()].sort((a, b) => (a.where < b.where ? -1 : 1)),
   };
+}
+
+function joinedField(pieces: readonly UnitResult[], rows: number): Float32Array[] {
+  const length = pieces.reduce((sum, { fieldMm }) => sum + fieldMm[0].length, 0);
+  return Array.from({ length: rows }, (_, row) => {
+    const whole = new Float32Array(length);
+    let at = 0;
+    for (const { fieldMm } of pieces) {
+      whole.set(fieldMm[row], at);
+      at += fieldMm[row].length;
+    }
+    return whole;
+  });
 }
 
 function addCounts(sum: UnitCounts, part: UnitCounts): void {

@@ -1,8 +1,9 @@
-import type { GaugeEvidence, GaugePairs, RadarSight } from "@rainreckon/verification";
+import type { GaugeEvidence, GaugePairs, JudgeContext, RadarSight } from "@rainreckon/verification";
 import { loudestRadar } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { companionIndex } from "./companions.ts";
 import { screenedDepthMm } from "./echo-account.ts";
+import { fieldSamples } from "./field-places.ts";
 import type { GaugeInput } from "./gauges.ts";
 import type { PreparedRun } from "./prepare.ts";
 
@@ -34,6 +35,15 @@ export function gaugeEvidence(
       ...(override === undefined ? {} : { override }),
     };
   });
+}
+
+/** What all gauges of a run are judged with. */
+export function judgeContext(
+  { window, grid, shape, stepMs }: PreparedRun,
+  { fieldMm }: AssembledRun,
+): JudgeContext {
+  const field = fieldSamples(grid, shape.fieldCells, fieldMm, window.startEpochMs, stepMs);
+  return { window, ...(field === undefined ? {} : { field }) };
 }
 
 function radarSight(

@@ -127,6 +127,8 @@ export interface RunShape {
   readonly headlineCells: Int32Array;
   /** Shape [gauges]: the cells that stand for each gauge. */
   readonly gaugeCells: readonly (readonly number[])[];
+  /** Cells spread over the map, of which steps are kept beside those of gauges. */
+  readonly fieldCells: Int32Array;
   readonly areas: readonly CellFractions[];
 }
 
@@ -224,6 +226,8 @@ export interface UnitResult {
   /** Shape [intervals][cells]: depth of the rain that the radars could not have seen. */
   readonly unseenMm: readonly Float32Array[];
   readonly gauges: StepSeries;
+  /** Shape [field cells][steps]: depth, NaN where not observed. */
+  readonly fieldMm: readonly Float32Array[];
   readonly areas: AreaStepSeries;
   readonly counts: UnitCounts;
   /** Sweeps that could not be decoded. */

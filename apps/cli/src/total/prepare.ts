@@ -24,6 +24,7 @@ import { checkAssets } from "./assets.ts";
 import { relationWasNotChosen } from "./cautions.ts";
 import { conversionOf } from "./conversion.ts";
 import { echoSettings, rateSettings } from "./echo-settings.ts";
+import { fieldCells } from "./field-places.ts";
 import { type GaugeInputs, readGauges } from "./gauges.ts";
 import { type GridInput, indexGrids } from "./grid-inputs.ts";
 import { hashFile, indexScans, type RadarInput } from "./inputs.ts";
@@ -108,6 +109,7 @@ export async function prepareRun(
     variants: headlineRelations.map(({ relation }) => relation),
     headlineCells: district.cells,
     gaugeCells: gauges.gauges.map((gauge) => gauge.cells),
+    fieldCells: fieldCells(grid, gauges.gauges.length, steps.length),
     areas: catchments.map((catchment) => catchment.cells),
   };
   const sorted = inputs.toSorted((a, b) => (a.path < b.path ? -1 : a.path > b.path ? 1 : 0));

@@ -34,6 +34,7 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
   const radars = shape.radars.map((radar) => new RadarFeed(radar, shape, job, trace));
   const feeds = [...radars, ...shape.grids.map((grids) => new GridFeed(grids, shape, job, trace))];
   const gauges = emptySeries(shape.gaugeCells.length, job.steps.length);
+  const fieldMm = Array.from(shape.fieldCells, () => new Float32Array(job.steps.length));
   const areas: AreaStepSeries = {
     ...emptySeries(shape.areas.length, job.steps.length),
     maxCellMm: emptyRows(shape.areas.length, job.steps.length),
@@ -63,6 +64,9 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
       gauges.depthMm[g][step] = point.depthMm;
       gauges.observedFraction[g][step] = point.observedFraction;
     }
+    fieldMm.forEach((row, f) => {
+      row[step] = blended.depthMm[shape.fieldCells[f]];
+    });
     for (let a = 0; a < shape.areas.length; a++) {
       const areal = arealDepth(shape.areas[a], blended, lengthMs);
       areas.depthMm[a][step] = areal.depthMm;
@@ -79,7 +83,7 @@ export async function runUnit(shape: RunShape, job: UnitJob, trace?: UnitTrace):
       sum = new FieldSum(cellCount, feeds.length, variants.length, headlineCells.length, COMPANIONS);
     }
   }
-  return { intervals, unseenMm, gauges, areas, counts, notices };
+  return { intervals, unseenMm, gauges, fieldMm, areas, counts, notices };
 }
 
 function emptyRows(rows: number, columns: number): Float64Array[] {
