@@ -83,11 +83,17 @@ export function bootstrapIntervals<Name extends string>(
   settings: BootstrapSettings,
 ): Record<Name, ScoreInterval> {
   const scores = resampledScores(evaluator, unitCount, blockLength, settings);
-  const entries = evaluator.names.map((name) => [name, limits(scores[name], settings.level)]);
+  const entries = evaluator.names.map((name) => [name, limitsOf(scores[name], settings.level)]);
   return Object.fromEntries(entries) as Record<Name, ScoreInterval>;
 }
 
-function limits(scores: Float64Array, level: number): ScoreInterval {
+/**
+ * Type 7 percentiles of resampled values.
+ *
+ * @param scores - shape [samples], NaN where a resample leaves the value undefined
+ * @returns NaN with the reason where more than 5 % of them do
+ */
+export function limitsOf(scores: Float64Array, level: number): ScoreInterval {
   // The standard sorts NaN to the end.
   const ascending = scores.slice().sort();
   let definedCount = ascending.length;
