@@ -67,8 +67,12 @@ export interface GaugeEvidence {
   readonly sight: RadarSight;
   /** Whether the gauge is heated; undefined where nobody says. */
   readonly heated?: boolean;
-  /** Rows of its files that gave a stamp twice. */
-  readonly duplicateRows?: number;
+  /** What was wrong with the rows of its files and has been settled: stamps given twice, resets, readings that cannot be. */
+  readonly rowFaults?: {
+    readonly duplicateRows: number;
+    readonly counterResets: number;
+    readonly impossible: number;
+  };
   readonly override?: GaugeOverride;
 }
 

@@ -31,6 +31,7 @@ export function gaugeEvidence(
         observedFraction: total.gauges.observedFraction[g],
       },
       sight: radarSight(run, total, gauge, screenedMm),
+      ...(gauge.rowFaults === undefined ? {} : { rowFaults: gauge.rowFaults }),
       ...(station.heated === undefined ? {} : { heated: station.heated }),
       ...(override === undefined ? {} : { override }),
     };

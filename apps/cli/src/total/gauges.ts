@@ -11,6 +11,7 @@ import {
 import {
   displayText,
   type GaugeFileCounts,
+  type GaugeRowFaults,
   looksSwapped,
   readGaugeFiles,
   readStations,
@@ -34,6 +35,8 @@ export interface GaugeInput {
   readonly cell: number;
   /** The cells that stand for it. */
   readonly cells: readonly number[];
+  /** What was wrong with its rows; undefined for nothing. */
+  readonly rowFaults: GaugeRowFaults | undefined;
 }
 
 /** What the gauge files of a plan came to. */
@@ -82,7 +85,7 @@ export async function readGauges(
         });
         if ("what" in placed)
           log.add("gauge left out", { ...placed, where: `${network} ${displayText(series.id)}` });
-        else gauges.push(placed);
+        else gauges.push({ ...placed, rowFaults: contents.rowFaults.get(series.id) });
       }
     } catch (error) {
       if (!(error instanceof InputError)) throw error;
@@ -164,7 +167,7 @@ function placeGauge(
   stations: Stations,
   toWgs84: Projection,
   { grid, map, near, rule }: Surroundings,
-): GaugeInput | { readonly what: string; readonly fix: string } {
+): Omit<GaugeInput, "rowFaults"> | { readonly what: string; readonly fix: string } {
   const row = stations.byId.get(series.id);
   if (row === undefined && stations.otherTimes.has(series.id)) {
     return {

@@ -7,6 +7,7 @@ export type { Guess } from "./guess.ts";
 export {
   type GaugeFileContents,
   type GaugeFileOptions,
+  type GaugeRowFaults,
   readGaugeFile,
   readGaugeFiles,
 } from "./read-gauge-files.ts";

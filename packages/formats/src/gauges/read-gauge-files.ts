@@ -41,9 +41,20 @@ export interface GaugeFileOptions {
   readonly window?: Interval;
 }
 
+/** What was wrong with the rows of one gauge and has been settled. */
+export interface GaugeRowFaults {
+  /** Rows with an instant that another has, whether their values agree or not. */
+  readonly duplicateRows: number;
+  readonly counterResets: number;
+  /** Readings that cannot be, and are not observed. */
+  readonly impossible: number;
+}
+
 export interface GaugeFileContents {
   /** One per gauge, by id in code-unit order. */
   readonly series: readonly GaugeSeries[];
+  /** By id; gauges without any are absent. */
+  readonly rowFaults: ReadonlyMap<string, GaugeRowFaults>;
   readonly counts: GaugeFileCounts;
   /** First and last stamp with a settled instant; NaN where there is none. */
   readonly firstEpochMs: number;
@@ -95,7 +106,10 @@ export async function readGaugeFiles(
     }
   }
 
-  const gauges = [...pieces.keys()].sort().map((id) => joinPieces(id, pieces.get(id)!, counts, notices));
+  const faults = new RowFaults(counts);
+  const gauges = [...pieces.keys()]
+    .sort()
+    .map((id) => faults.during(id, () => joinPieces(id, pieces.get(id)!, counts, notices)));
   const { firstEpochMs, lastEpochMs } = spanOf(gauges);
   const span = options.window ?? { startEpochMs: firstEpochMs, endEpochMs: lastEpochMs };
   if (silence.rule === "dry" && span.endEpochMs - lastEpochMs > HOUR_MS) {
@@ -109,7 +123,7 @@ export async function readGaugeFiles(
   }
   const context = { spec, silence, counts, notices, clock };
   const series = gauges.map((rows) => {
-    const { readings, stepMs } = readingsOf(rows, context);
+    const { readings, stepMs } = faults.during(rows.id, () => readingsOf(rows, context));
     const { readings: filled, dryMs } = fillSilence(readings, silence, span, rows.uncertain);
     counts.silentDryHours += dryMs / HOUR_MS;
     const resolutionMm = resolutionOf(rows, spec, stepMs);
@@ -136,7 +150,33 @@ export async function readGaugeFiles(
     );
   }
   notices.close();
-  return { series, counts, firstEpochMs, lastEpochMs };
+  return { series, rowFaults: faults.byId, counts, firstEpochMs, lastEpochMs };
+}
+
+/** Tells the counts of a network apart by gauge. */
+class RowFaults {
+  readonly byId = new Map<string, GaugeRowFaults>();
+  readonly #counts: GaugeFileCounts;
+
+  constructor(counts: GaugeFileCounts) {
+    this.#counts = counts;
+  }
+
+  /** Whatever is counted while `work` runs is the gauge's. */
+  during<T>(id: string, work: () => T): T {
+    const before = { ...this.#counts };
+    const done = work();
+    const risen = (...keys: (keyof GaugeFileCounts)[]) =>
+      keys.reduce((sum, key) => sum + this.#counts[key] - before[key], 0);
+    const known = this.byId.get(id);
+    const faults = {
+      duplicateRows: (known?.duplicateRows ?? 0) + risen("duplicatesSame", "duplicatesDifferent"),
+      counterResets: (known?.counterResets ?? 0) + risen("counterResets"),
+      impossible: (known?.impossible ?? 0) + risen("impossible"),
+    };
+    if (Object.values(faults).some((count) => count > 0)) this.byId.set(id, faults);
+    return done;
+  }
 }
 
 function spanOf(gauges: readonly GaugeRows[]): { firstEpochMs: number; lastEpochMs: number } {
