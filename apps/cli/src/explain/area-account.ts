@@ -1,4 +1,4 @@
-import { bestMm, type CatchmentFigure, catchmentFigures } from "../total/figures.ts";
+import { bestMm, catchmentFigures, type PlaceFigure } from "../total/figures.ts";
 import { sourceIds } from "../total/job.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import type { AdjustedBy } from "./adjusted-by.ts";
@@ -22,12 +22,12 @@ export function areaAccount(
   const { run, done } = opened;
   const ids = sourceIds(run.shape);
   const figures = [...catchmentFigures({ run, total, comparison, adjustedTotalMm })].filter(
-    (figure) => figure.catchment === run.catchments[index],
+    ({ place }) => place === run.catchments[index],
   );
   const rows = (done.catchments ?? []).filter((row) => row.catchment_id === catchment.id);
-  const rowOf = ({ startEpochMs, endEpochMs }: CatchmentFigure) =>
+  const rowOf = ({ startEpochMs, endEpochMs }: PlaceFigure<unknown>) =>
     rows.find((row) => row.start === isoUtc(startEpochMs) && row.end === isoUtc(endEpochMs));
-  const window = figures.find((figure) => figure.span === "window") as CatchmentFigure;
+  const window = figures.find((figure) => figure.span === "window") as (typeof figures)[number];
   let runningMm = 0;
   const steps = figures
     .filter((figure) => figure.span === "step")

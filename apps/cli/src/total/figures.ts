@@ -31,10 +31,15 @@ export function isAtCap(figure: ArealFigure): boolean {
   return figure.cappedFraction >= AT_CAP_FROM;
 }
 
-export interface CatchmentFigure extends Interval {
-  readonly catchment: PreparedRun["catchments"][number];
+export interface PlaceFigure<Place> extends Interval {
+  readonly place: Place;
   readonly span: "window" | "rain day" | "step";
   readonly figure: ArealFigure;
+}
+
+/** What figures are made of: an area of the run's shape. */
+export interface FigurePlace {
+  readonly cells: PreparedRun["district"];
 }
 
 /** What all the depths of a run are made from. */
@@ -118,21 +123,38 @@ export function headlineUnderRelations({
 }
 
 /** Depths of every catchment: over the window, over rain days, and on each step. */
-export function* catchmentFigures(sources: FigureSources): Generator<CatchmentFigure> {
+export function catchmentFigures(
+  sources: FigureSources,
+): Generator<PlaceFigure<PreparedRun["catchments"][number]>> {
+  return placeFigures(sources.run.catchments, 0, sources);
+}
+
+/** The same of every asset. */
+export function assetFigures(sources: FigureSources): Generator<PlaceFigure<PreparedRun["assets"][number]>> {
+  return placeFigures(sources.run.assets, sources.run.catchments.length, sources);
+}
+
+/** @param firstArea - place of the first one among the areas of the run's shape */
+export function* placeFigures<Place extends FigurePlace>(
+  places: readonly Place[],
+  firstArea: number,
+  sources: FigureSources,
+): Generator<PlaceFigure<Place>> {
   const { run } = sources;
   const rule = run.loaded.plan.intervals.rainDay;
   const days = rule === undefined ? [] : rainDays(run.window, rule);
-  for (const [a, catchment] of run.catchments.entries()) {
-    const whole = windowFigure(catchment.cells, sources);
-    const adjustedMm = adjustedSteps(a, whole.adjustedMm, sources);
-    const spanOf = (span: Interval) => spanFigure(a, span, adjustedMm, sources);
-    yield { ...run.window, catchment, span: "window", figure: whole };
+  for (const [k, place] of places.entries()) {
+    const area = firstArea + k;
+    const whole = windowFigure(place.cells, sources);
+    const adjustedMm = adjustedSteps(area, whole.adjustedMm, sources);
+    const spanOf = (span: Interval) => spanFigure(area, span, adjustedMm, sources);
+    yield { ...run.window, place, span: "window", figure: whole };
     for (const day of days) {
       const { startEpochMs, endEpochMs } = day;
-      yield { startEpochMs, endEpochMs, catchment, span: "rain day", figure: spanOf(day) };
+      yield { startEpochMs, endEpochMs, place, span: "rain day", figure: spanOf(day) };
     }
     for (const step of run.steps) {
-      yield { ...step, catchment, span: "step", figure: spanOf(step) };
+      yield { ...step, place, span: "step", figure: spanOf(step) };
     }
   }
 }

@@ -129,6 +129,7 @@ export interface RunShape {
   readonly gaugeCells: readonly (readonly number[])[];
   /** Cells spread over the map, of which steps are kept beside those of gauges. */
   readonly fieldCells: Int32Array;
+  /** Those of catchments, then those of assets. */
   readonly areas: readonly CellFractions[];
 }
 

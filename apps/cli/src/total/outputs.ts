@@ -1,4 +1,4 @@
-import { durationMs, isohyetLevels, isohyets } from "@rainreckon/accumulation";
+import { durationMs, isohyetLevels, isohyets, volumeM3 } from "@rainreckon/accumulation";
 import { CHOICE_RULE, METHOD_TITLES, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
@@ -27,8 +27,17 @@ import {
 import type { AssembledRun } from "./assemble.ts";
 import { STANDING_CAUTIONS } from "./cautions.ts";
 import { echoAccount, shownCompanions, wordsByRadar } from "./echo-account.ts";
-import { bestMm, type CatchmentFigure, catchmentFigures, isAtCap } from "./figures.ts";
+import {
+  type ArealFigure,
+  assetFigures,
+  bestMm,
+  catchmentFigures,
+  type FigurePlace,
+  isAtCap,
+  type PlaceFigure,
+} from "./figures.ts";
 import { sourceIds } from "./job.ts";
+import { rangeOf3x3, shareOfDepth } from "./place-planes.ts";
 import type { PreparedRun } from "./prepare.ts";
 import type { UnitStore } from "./unit-store.ts";
 
@@ -196,35 +205,81 @@ function columnsOf<Row>() {
 
 /** `catchments.csv`: the window, rain days and every step. */
 export async function writeCatchments(sources: OutputSources): Promise<void> {
+  const { text, number } = columnsOf<PlaceFigure<PreparedRun["catchments"][number]>>();
   const { minObserved } = sources.run.loaded.plan.rain;
-  const whole = ({ figure }: CatchmentFigure) => figure.observedFraction >= minObserved;
-  const none = Number.NaN;
-  const { text, number } = columnsOf<CatchmentFigure>();
   await writeCsv(
     sources.draft("catchments.csv"),
     [
-      text("catchment_id", ({ catchment }) => catchment.id),
-      text("name", ({ catchment }) => catchment.name),
-      text("start", ({ startEpochMs }) => isoUtc(startEpochMs)),
-      text("end", ({ endEpochMs }) => isoUtc(endEpochMs)),
-      number("depth_mm", 3, (row) => (whole(row) ? bestMm(row.figure) : none)),
-      number("depth_observed_mm", 3, ({ figure }) => bestMm(figure)),
-      text("reason", (row) => reasonOf(row, minObserved)),
-      number("radar_mm", 3, (row) => (whole(row) ? row.figure.radarMm : none)),
-      number("adjusted_mm", 3, (row) => (whole(row) ? row.figure.adjustedMm : none)),
-      number("gauges_only_mm", 3, ({ figure }) => figure.gaugesOnlyMm),
-      number("p10_mm", 3, () => none),
-      number("p90_mm", 3, () => none),
-      number("observed_fraction", 4, ({ figure }) => figure.observedFraction),
+      text("catchment_id", ({ place }) => place.id),
+      text("name", ({ place }) => place.name),
+      ...depthColumns(minObserved),
       number("max_cell_mm", 3, ({ figure }) => figure.maxCellMm),
-      number("area_km2", 3, ({ catchment }) => catchment.areaKm2),
+      number("area_km2", 3, ({ place }) => place.areaKm2),
+      number("volume_m3", 0, ({ place, figure }) =>
+        figure.observedFraction >= minObserved ? volumeM3(bestMm(figure), place.areaKm2) : Number.NaN,
+      ),
+      ...snowColumns(sources),
     ],
     catchmentFigures(sources),
   );
 }
 
+/** `assets.csv`: the same of the cell that holds each asset, with the range of the nine cells about it. */
+export async function writeAssets(sources: OutputSources): Promise<void> {
+  const { run, total, adjustedTotalMm } = sources;
+  const { text, number } = columnsOf<PlaceFigure<PreparedRun["assets"][number]>>();
+  const field = adjustedTotalMm ?? total.planes.totalMm;
+  const rangeOf = ({ place, span }: PlaceFigure<PreparedRun["assets"][number]>) =>
+    span === "window" ? rangeOf3x3(run.grid, field, place.cell) : undefined;
+  await writeCsv(
+    sources.draft("assets.csv"),
+    [
+      text("asset_id", ({ place }) => place.id),
+      text("name", ({ place }) => place.name),
+      ...depthColumns(run.loaded.plan.rain.minObserved),
+      number("min_3x3_mm", 3, (row) => rangeOf(row)?.leastMm),
+      number("max_3x3_mm", 3, (row) => rangeOf(row)?.mostMm),
+      number("lon_deg", 6, ({ place }) => place.lonDeg),
+      number("lat_deg", 6, ({ place }) => place.latDeg),
+      ...snowColumns(sources),
+    ],
+    assetFigures(sources),
+  );
+}
+
+/** What is told of the depth of any place, from its start to the share observed. */
+function depthColumns(minObserved: number): CsvColumn<PlaceFigure<unknown>>[] {
+  const { text, number } = columnsOf<PlaceFigure<unknown>>();
+  const none = Number.NaN;
+  const whole = (figure: ArealFigure, mm: number) => (figure.observedFraction >= minObserved ? mm : none);
+  return [
+    text("start", ({ startEpochMs }) => isoUtc(startEpochMs)),
+    text("end", ({ endEpochMs }) => isoUtc(endEpochMs)),
+    number("depth_mm", 3, ({ figure }) => whole(figure, bestMm(figure))),
+    number("depth_observed_mm", 3, ({ figure }) => bestMm(figure)),
+    text("reason", (row) => reasonOf(row, minObserved)),
+    number("radar_mm", 3, ({ figure }) => whole(figure, figure.radarMm)),
+    number("adjusted_mm", 3, ({ figure }) => whole(figure, figure.adjustedMm)),
+    number("gauges_only_mm", 3, ({ figure }) => figure.gaugesOnlyMm),
+    number("p10_mm", 3, () => none),
+    number("p90_mm", 3, () => none),
+    number("observed_fraction", 4, ({ figure }) => figure.observedFraction),
+  ];
+}
+
+/** Shares of the window's depth by what the beam met; steps do not tell them apart. */
+function snowColumns({ run, total }: OutputSources): CsvColumn<PlaceFigure<FigurePlace>>[] {
+  const { number } = columnsOf<PlaceFigure<FigurePlace>>();
+  const toldApart = run.shape.radars.some(({ echo }) => echo !== undefined);
+  return ["snow_fraction", "melting_fraction"].map((name) =>
+    number(name, 4, ({ place, span }) =>
+      toldApart && span === "window" ? shareOfDepth(place.cells, total.sum, name) : Number.NaN,
+    ),
+  );
+}
+
 /** Why a depth is missing, a lower bound, or at the cap; empty where it is plain. */
-export function reasonOf({ figure }: Pick<CatchmentFigure, "figure">, minObserved: number): string {
+export function reasonOf({ figure }: Pick<PlaceFigure<unknown>, "figure">, minObserved: number): string {
   const reasons: string[] = [];
   if (figure.observedFraction === 0) reasons.push("not observed");
   else if (figure.observedFraction < minObserved) {
@@ -410,6 +465,16 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "                      below detection at that range would have added; the most that may be missing for that, no estimate",
     "  max_cell_mm         deepest cell of a catchment, over the window or in one step; empty in steps where the adjustment",
     "                      changes from cell to cell",
+    "  volume_m3           depth_mm over the whole area of the catchment: 1 mm on 1 km2 is 1000 m3",
+    "  snow_fraction       share of the window's depth from gates mostly in snow, melting_fraction in melting snow: at the",
+    "                      height of the beam, which says nothing sure of what reached the ground; empty where no step from",
+    "                      echo to rain was taken, and in rows of steps and rain days",
+    ...(run.assets.length === 0
+      ? []
+      : [
+          "  assets.csv          depths of the grid cell that holds each asset; min_3x3_mm and max_3x3_mm are the range of the",
+          "                      nine cells about it: a single cell is the least certain of all figures",
+        ]),
     "  gauges_only_mm      ordinary kriging of the trusted gauges without the radar, over the window; empty in other rows, and",
     "                      where gauges or their rain are too few",
     "  ratio_db            10 log10(radar/gauge): positive is radar wetter than gauge",

@@ -20,7 +20,7 @@ import type { LoadedPlan } from "../plan/load.ts";
 import type { LeftOutLog } from "../ui/left-out.ts";
 import type { Progress } from "../ui/progress.ts";
 import { version } from "../version.ts";
-import { checkAssets } from "./assets.ts";
+import { assetsOf, type PlacedAsset } from "./assets.ts";
 import { relationWasNotChosen } from "./cautions.ts";
 import { conversionOf } from "./conversion.ts";
 import { echoSettings, rateSettings } from "./echo-settings.ts";
@@ -45,6 +45,7 @@ export interface PreparedRun {
   readonly radars: readonly RadarInput[];
   readonly gauges: GaugeInputs;
   readonly catchments: readonly PlacedCatchment[];
+  readonly assets: readonly PlacedAsset[];
   /** What the headline speaks of: all catchments together, or the whole grid. */
   readonly district: CellFractions;
   readonly headlineRelations: readonly { readonly name: string; readonly relation: ZrRelation }[];
@@ -89,7 +90,7 @@ export async function prepareRun(
   const sites = radars.map(({ sweeps }) => sweeps[0].header.site);
   const gauges = await readGauges(loaded, grid, map, window, sites, log, seen);
   const catchments = await catchmentsOf(loaded, grid, map, log, seen);
-  await checkAssets(loaded, grid, map, log, seen);
+  const assets = await assetsOf(loaded, grid, map, steps.length, log, seen);
   await hashTerrain(loaded, log, seen);
   const district = catchments.length > 0 ? unionOfAreas(catchments, grid) : wholeGrid(grid);
   const headlineRelations = plan.rain.headlineRelations.map((name) => ({
@@ -110,7 +111,7 @@ export async function prepareRun(
     headlineCells: district.cells,
     gaugeCells: gauges.gauges.map((gauge) => gauge.cells),
     fieldCells: fieldCells(grid, gauges.gauges.length, steps.length),
-    areas: catchments.map((catchment) => catchment.cells),
+    areas: [...catchments, ...assets].map(({ cells }) => cells),
   };
   const sorted = inputs.toSorted((a, b) => (a.path < b.path ? -1 : a.path > b.path ? 1 : 0));
   const runDigest = sha256Hex(
@@ -136,6 +137,7 @@ export async function prepareRun(
     radars,
     gauges,
     catchments,
+    assets,
     district,
     headlineRelations,
     shape,
@@ -216,7 +218,8 @@ async function hashTerrain(
   }
 }
 
-async function catchmentsOf(
+/** Catchments of the plan on its grid; what is wrong with one goes to the log. */
+export async function catchmentsOf(
   loaded: LoadedPlan,
   grid: Grid,
   map: Projection,

@@ -22,6 +22,7 @@ import { inputsAfterWork } from "./inputs-after-work.ts";
 import { LEARNED, learnBeforehand, learnsBeforehand, writeLearnedOf } from "./learned-run.ts";
 import {
   type OutputSources,
+  writeAssets,
   writeCatchments,
   writeGauges,
   writeMaps,
@@ -122,6 +123,7 @@ export async function runTotal(
   await writeTotals(sources);
   const maps = await writeMaps(sources);
   await writeCatchments(sources);
+  if (run.assets.length > 0) await writeAssets(sources);
   await writePairs(sources);
   await writeGauges(sources);
   await writeScores(sources);
@@ -133,6 +135,7 @@ export async function runTotal(
     "totals.nc",
     ...maps,
     "catchments.csv",
+    ...(run.assets.length > 0 ? ["assets.csv"] : []),
     "pairs.csv",
     "gauges.csv",
     "scores.json",
@@ -223,6 +226,7 @@ async function manifestOf(
       pairs: comparison.pairs.length,
       pairsUsed: comparison.before.usedCount,
       catchments: run.catchments.length,
+      assets: run.assets.length,
       units: run.jobs.length,
     },
     notices: [...notices],
