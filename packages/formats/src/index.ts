@@ -1,3 +1,4 @@
+export * from "./frequency/index.ts";
 export * from "./gauges/index.ts";
 export * from "./gridded/index.ts";
 export * from "./learned/index.ts";

@@ -1,0 +1,2 @@
+export { readArealReduction } from "./areal-reduction.ts";
+export { readFrequencyTable } from "./frequency-table.ts";
