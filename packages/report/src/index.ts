@@ -1,5 +1,11 @@
 export { type BudgetChart, type BudgetCurve, budgetPage, svgBudget } from "./charts/budget-chart.ts";
 export { svgHyetograph } from "./charts/hyetograph.ts";
+export {
+  type RelationChart,
+  type RelationLine,
+  relationPage,
+  svgRelations,
+} from "./charts/relation-chart.ts";
 export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
 export type {
   AccountLine,

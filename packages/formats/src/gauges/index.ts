@@ -25,3 +25,4 @@ export {
 } from "./stations.ts";
 export { looksSwapped } from "./swapped.ts";
 export { TEXT_ENCODINGS } from "./text-encoding.ts";
+export { readZrPairs, type ZrPairTable } from "./zr-pairs-file.ts";
