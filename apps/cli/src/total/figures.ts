@@ -147,14 +147,15 @@ export function* placeFigures<Place extends FigurePlace>(
     const area = firstArea + k;
     const whole = windowFigure(place.cells, sources);
     const adjustedMm = adjustedSteps(area, whole.adjustedMm, sources);
-    const spanOf = (span: Interval) => spanFigure(area, span, adjustedMm, sources);
+    const spanOf = (span: Interval, from = 0, to = run.steps.length) =>
+      spanFigure(area, span, { from, to }, adjustedMm, sources);
     yield { ...run.window, place, span: "window", figure: whole };
     for (const day of days) {
       const { startEpochMs, endEpochMs } = day;
       yield { startEpochMs, endEpochMs, place, span: "rain day", figure: spanOf(day) };
     }
-    for (const step of run.steps) {
-      yield { ...step, place, span: "step", figure: spanOf(step) };
+    for (const [s, step] of run.steps.entries()) {
+      yield { ...step, place, span: "step", figure: spanOf(step, s, s + 1) };
     }
   }
 }
@@ -190,11 +191,13 @@ export function adjustedSteps(
 /**
  * A catchment over a span, from its steps; time of the span outside the window was not observed.
  *
+ * @param among - steps that may lie in the span
  * @param adjustedMm - as {@link adjustedSteps} gives it
  */
 function spanFigure(
   area: number,
   span: Interval,
+  among: { readonly from: number; readonly to: number },
   adjustedMm: Float64Array,
   { run, total, comparison }: FigureSources,
 ): ArealFigure {
@@ -206,7 +209,8 @@ function spanFigure(
   let cappedMm = 0;
   let maxStepMm = Number.NaN;
   let seen = 0;
-  for (const [k, step] of run.steps.entries()) {
+  for (let k = among.from; k < among.to; k++) {
+    const step = run.steps[k];
     if (step.startEpochMs < span.startEpochMs || step.endEpochMs > span.endEpochMs) continue;
     const depthMm = areas.depthMm[area][k];
     if (Number.isNaN(depthMm)) continue;
