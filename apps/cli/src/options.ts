@@ -1,3 +1,4 @@
+import { durationMs } from "@rainreckon/accumulation";
 import { InvalidArgumentError, Option } from "commander";
 import { z } from "zod";
 import type { LonLat } from "./explain/places-asked.ts";
@@ -122,6 +123,32 @@ const instant = z
   .transform((text) => Date.parse(text))
   .refine(Number.isFinite, INSTANT_WORDS);
 
+/** A length of time in whole minutes up to a day, as ISO 8601 writes it. */
+const stepLength = z
+  .string()
+  .refine(
+    (text) => durationMs(text) >= 60_000,
+    "write a length such as PT15M, PT1H or P1D, from a minute on",
+  );
+
+/** "UTC" or "+01:00" as minutes. */
+const clockOffset = z.string().transform((text, context): number => {
+  const parts = /^([+-])(\d\d):([0-5]\d)$/.exec(text);
+  const minutes = parts === null ? Number.NaN : Number(parts[2]) * 60 + Number(parts[3]);
+  if (text === "UTC") return 0;
+  if (minutes <= 14 * 60) return parts?.[1] === "-" ? -minutes : minutes;
+  context.addIssue({ code: "custom", message: 'write UTC, or an offset from it like "+01:00"' });
+  return z.NEVER;
+});
+
+/** A code that nobody can take for a depth. */
+const missingCode = z
+  .string()
+  .refine(
+    (text) => /^(-[\d.]+|[A-Za-z]\w*)$/.test(text) && !(Number(text) >= 0),
+    "write a negative number or a word, such as -999 or NaN: 0 and what is above it are depths",
+  );
+
 /** Every flag of every command, each once: name, unit, default, help text. */
 export const flags = {
   // All commands
@@ -192,6 +219,41 @@ export const flags = {
   csv: () => new Option("--csv", "all rows as CSV on stdout, one a stretch between two scans"),
   planOfRun: () =>
     new Option("--plan <file>", "the plan of the run, where it and its inputs were moved away from the run"),
+
+  // export
+  outFile: () => new Option("-o, --out <file>", "the file to write").makeOptionMandatory(),
+  outFolder: () => new Option("-o, --out <dir>", "the folder to write into").makeOptionMandatory(),
+  overwrite: () => new Option("--force", "write over files that are there"),
+  step: () =>
+    new Option(
+      "--step <length>",
+      "length of a step, PT15M or PT1H say; that of the run's series where left out",
+    ).argParser(through(stepLength)),
+  depthOrRate: () =>
+    new Option("--as <what>", "depth of the step, or mean rate per hour over it")
+      .choices(["depth", "rate"])
+      .default("depth"),
+  whichDepth: () =>
+    new Option("--value <which>", "best is adjusted where there is an adjustment, else radar")
+      .choices(["best", "radar", "adjusted"])
+      .default("best"),
+  stampAt: () =>
+    new Option("--stamp <which>", "which end of the step its time stands for")
+      .choices(["end", "start"])
+      .default("end"),
+  clockOffset: () =>
+    new Option("--offset <offset>", "clock of the stamps and of whole steps: UTC, or +01:00 say, all year")
+      .argParser(through(clockOffset))
+      .default(0, "UTC"),
+  missingCode: () =>
+    new Option("--missing <code>", "what stands for a step that was not observed: never 0")
+      .argParser(through(missingCode))
+      .default("-999"),
+  units: () => new Option("--units <unit>", "unit of depth").choices(["mm", "in"]).default("mm"),
+  inches: () =>
+    new Option("--units <unit>", "unit of depth; mm is what the run holds")
+      .choices(["in"])
+      .makeOptionMandatory(),
 
   // budget
   band: () =>

@@ -3,6 +3,7 @@ import { EXIT_WORDS, NothingLeft, speakPlainly } from "./command.ts";
 import { registerBudget } from "./commands/budget.ts";
 import { registerCompare } from "./commands/compare.ts";
 import { registerExplain } from "./commands/explain.ts";
+import { registerExport } from "./commands/export.ts";
 import { registerPlan } from "./commands/plan.ts";
 import { registerRelate } from "./commands/relate.ts";
 import { registerSurvey } from "./commands/survey.ts";
@@ -28,6 +29,7 @@ export function buildProgram(): Command {
   registerPlan(program);
   registerTotal(program);
   registerExplain(program);
+  registerExport(program);
   registerRelate(program);
   registerBudget(program);
   registerCompare(program);

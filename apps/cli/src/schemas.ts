@@ -4,6 +4,7 @@ import { planReportSchema } from "./commands/plan.ts";
 import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
 import { explainSchema } from "./explain/schema.ts";
+import { exportSchema } from "./export/schema.ts";
 import { manifestSchema } from "./manifest.ts";
 import { relationTableSchema } from "./relate/relation-table.ts";
 import { surveySchema } from "./survey/findings.ts";
@@ -14,6 +15,7 @@ export const schemas = {
   plan: planReportSchema,
   total: totalSchema,
   explain: explainSchema,
+  export: exportSchema,
   "relate table": relationTableSchema,
   budget: budgetSchema,
   compare: compareSchema,

@@ -73,8 +73,8 @@ export async function openRun(
   return { done, run, totalsFile, remarks };
 }
 
-/** The plan as the run's log has it, from the run's folder on. */
-function planOf(folder: string): string {
+/** The plan as the run's log has it, from the run's folder on. @throws InputError (kind "usage") where it is not there */
+export function planOf(folder: string): string {
   const fix = "name the plan with --plan";
   const file = path.join(folder, RUN_LOG);
   let plan: unknown;
@@ -93,7 +93,7 @@ function planOf(folder: string): string {
 }
 
 /** Every input must be there with the SHA-256 that the manifest has. */
-async function checkInputs(
+export async function checkInputs(
   { folder }: LoadedPlan,
   inputs: readonly ManifestInput[],
   progressOf: (total: number, noun: string) => Progress,
@@ -137,7 +137,7 @@ async function learnedOf(file: string): Promise<ReadonlyMap<string, LearnedEcho>
 }
 
 /** The path of an output whose SHA-256 is that of the manifest. @throws InputError (kind "usage") where it is not */
-async function checkedOutput(folder: string, { manifest }: Run, name: string): Promise<string> {
+export async function checkedOutput(folder: string, { manifest }: Run, name: string): Promise<string> {
   const file = path.join(folder, name);
   const known = manifest.outputs.find((output) => output.file === name);
   const fix = "put it back as it was, or run total again with --force";

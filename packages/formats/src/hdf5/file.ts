@@ -61,8 +61,14 @@ export interface Hdf5File {
   describe(dataset: string): DatasetShape | undefined;
   /** The whole array in storage order, a copy of its own. Throws `InputError` where it is absent or fails to decode. */
   read(dataset: string): StoredValues;
+  /** One layer of an array of two dimensions or more, by the first; what {@link Hdf5File.read} says holds here too. */
+  readLayer(dataset: string, index: number): StoredValues;
   /** Closes the file; a second time does nothing. */
   close(): void;
+}
+
+function product(lengths: readonly number[]): number {
+  return lengths.reduce((sum, length) => sum * length, 1);
 }
 
 /**
@@ -240,6 +246,23 @@ class OpenFile implements Hdf5File {
     return values;
   }
 
+  readLayer(dataset: string, index: number): StoredValues {
+    const metadata = this.#datasetMetadata(dataset);
+    if (metadata === undefined) {
+      throw new InputError("there is no such array", this.#at(dataset), "ask for one that the file holds");
+    }
+    const [layers = 0, ...layer] = metadata.shape ?? [];
+    if (layer.length === 0 || !(Number.isInteger(index) && index >= 0 && index < layers))
+      throw new RangeError(`there is no layer ${index} in ${dataset}: it has ${layers}`);
+    const { type } = this.#checkedShape(dataset, { ...metadata, shape: layer, total_size: product(layer) });
+    const bytes = this.#arrayBytes(dataset, product(layer) * metadata.size, {
+      count: [1, ...layer].map(BigInt),
+      offset: [index, ...layer.map(() => 0)].map(BigInt),
+    });
+    this.#mustBeUnpacked(dataset, metadata, bytes);
+    return typedArray(type, bytes.buffer);
+  }
+
   /**
    * Where the index of an array's chunks is lost, or they were never written, the library hands out the fill value
    * without a word: a sweep of echo would become one of none. The first read has brought the index into memory, so
@@ -268,11 +291,18 @@ class OpenFile implements Hdf5File {
     throw damaged("this array comes back packed", this.#at(dataset));
   }
 
-  #arrayBytes(dataset: string, byteCount: number): Uint8Array<ArrayBuffer> {
+  /** @param part - which elements of it, by dimension; all where left out */
+  #arrayBytes(
+    dataset: string,
+    byteCount: number,
+    part?: { readonly count: bigint[]; readonly offset: bigint[] },
+  ): Uint8Array<ArrayBuffer> {
+    const [count, offset] = [part?.count ?? null, part?.offset ?? null];
+    const strides = part?.count.map(() => 1n) ?? null;
     let bytes: Uint8Array<ArrayBuffer> | undefined;
     try {
       bytes = readBytes(this.#full, byteCount, (library, address) =>
-        library.get_dataset_data(this.#id, dataset, null, null, null, BigInt(address)),
+        library.get_dataset_data(this.#id, dataset, count, offset, strides, BigInt(address)),
       );
     } catch (error) {
       if (error instanceof RangeError) throw error;

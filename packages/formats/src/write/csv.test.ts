@@ -117,3 +117,17 @@ test.skipIf(!FULL_DEVICE)(
     await expect(writeCsv("/dev/full", COLUMNS, [{ id: "a" }])).rejects.toMatchObject({ kind: "midway" });
   },
 );
+
+test("a column may have a code for missing, which is no depth and no formula", async () => {
+  const column = (missing: string) => ({
+    kind: "number" as const,
+    name: "depth_mm",
+    decimals: 1,
+    missing,
+    of: (value: number) => value,
+  });
+  expect(await csvText([column("-999")], [0, Number.NaN, 1.25])).toBe("depth_mm\n0.0\n-999\n1.3\n");
+  expect(await csvText([column("NaN")], [Number.NaN])).toBe("depth_mm\nNaN\n");
+  for (const code of ["0", "0.0", "7", "=1+1", "a,b", '"'])
+    await expect(csvText([column(code)], [1])).rejects.toThrow(RangeError);
+});

@@ -14,6 +14,8 @@ export interface CsvNumberColumn<Row> {
   /** Digits after the point, 0 to 15. */
   readonly decimals: number;
   readonly of: (row: Row) => number | undefined;
+  /** What stands for a missing number, for a reader that takes no empty cell; empty where left out. */
+  readonly missing?: string;
 }
 
 export type CsvColumn<Row> = CsvTextColumn<Row> | CsvNumberColumn<Row>;
@@ -21,7 +23,7 @@ export type CsvColumn<Row> = CsvTextColumn<Row> | CsvNumberColumn<Row>;
 /**
  * Write a table as CSV: RFC 4180 with LF, UTF-8, one header line and no comment lines.
  *
- * - Missing is an empty cell, never 0.
+ * - Missing is an empty cell or the column's own code, never 0.
  * - Numbers have their column's decimals, no exponent and no "-0".
  * - Text loses its control characters, and text that a spreadsheet would take for a formula gets
  *   an apostrophe in front; numbers never do.
@@ -69,19 +71,27 @@ async function* csvLines<Row>(
   }
 }
 
-function checkColumns(columns: readonly { name: string; kind: string; decimals?: number }[]): void {
+function checkColumns(
+  columns: readonly { name: string; kind: string; decimals?: number; missing?: string }[],
+): void {
   const names = new Set<string>();
-  for (const { name, kind, decimals } of columns) {
+  for (const { name, kind, decimals, missing = "" } of columns) {
     if (names.has(name)) throw new RangeError(`two columns are named ${name}`);
     names.add(name);
     if (kind === "number" && !(Number.isInteger(decimals) && decimals! >= 0 && decimals! <= 15)) {
       throw new RangeError(`column ${name} needs 0 to 15 decimals, got ${decimals}`);
     }
+    // A code that reads as a depth would be one; only a sign, letters and digits make a cell of its own.
+    if (Number(missing) >= 0 && missing !== "") throw new RangeError(`${missing} is no code for missing`);
+    if (!/^-?[\w.]*$/.test(missing)) throw new RangeError(`${missing} is no code for missing`);
   }
 }
 
-function numberCell(value: number | undefined, column: { name: string; decimals: number }): string {
-  if (value === undefined || Number.isNaN(value)) return "";
+function numberCell(
+  value: number | undefined,
+  column: { name: string; decimals: number; missing?: string },
+): string {
+  if (value === undefined || Number.isNaN(value)) return column.missing ?? "";
   if (!(Math.abs(value) < 1e21)) {
     throw new RangeError(`column ${column.name} cannot hold ${value}: leave it missing and give the reason`);
   }

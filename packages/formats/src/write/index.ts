@@ -13,6 +13,6 @@ export { finiteOrNull, type JsonValue, toJson, writeJson } from "./json.ts";
 export type { MapReference } from "./map-reference.ts";
 export { createTotalsFile, type TotalsFile, type TotalsSpec } from "./netcdf.ts";
 export { type ParquetColumn, writeParquet } from "./parquet.ts";
-export { readTotals } from "./read-totals.ts";
+export { openTotalsLayers, readTotals, type TotalsLayers } from "./read-totals.ts";
 export { sha256OfFile, writeText } from "./text.ts";
 export { TOTALS_VARIABLES, type TotalsVariable } from "./totals-variables.ts";

@@ -12,7 +12,7 @@ import {
   valuesByGdal,
 } from "../../test/foreign-tools.ts";
 import { createTotalsFile, type TotalsSpec } from "./netcdf.ts";
-import { readTotals } from "./read-totals.ts";
+import { openTotalsLayers, readTotals } from "./read-totals.ts";
 import { TOTALS_VARIABLES } from "./totals-variables.ts";
 
 const folder = scratchFolder();
@@ -89,6 +89,16 @@ test("what is read back is what was written, to the bit, and what is not there i
   expect(read.get("radar_total")).toEqual(plane(0));
   expect(read.get("radar_depth")).toEqual(Float32Array.from([...plane(0.25), ...plane(1.25)]));
   await expect(readTotals(path, ["lat"])).rejects.toThrow("float32");
+});
+
+test("intervals are read one at a time, each as it was written", async () => {
+  const path = join(folder, "layers.nc");
+  await writeAll(path);
+  const layers = await openTotalsLayers(path, "radar_depth");
+  expect([1, 0].map((index) => layers!.layer(index))).toEqual([plane(1.25), plane(0.25)]);
+  expect(() => layers!.layer(2)).toThrow("there is no layer 2");
+  layers!.close();
+  expect(await openTotalsLayers(path, "adjusted_depth")).toBeUndefined();
 });
 
 test("a write that fails alone, whichever one, ends the file with one clear fault", async () => {

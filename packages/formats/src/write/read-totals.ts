@@ -29,3 +29,33 @@ export async function readTotals(
     file.close();
   }
 }
+
+/** Layers of one variable of a totals file, read one at a time, so that a year of maps needs the room of one. */
+export interface TotalsLayers {
+  /** Shape [ny, nx], float32 with NaN for not observed. @throws InputError where the file is damaged */
+  layer(index: number): Float32Array;
+  close(): void;
+}
+
+/**
+ * Opens a variable over time of a totals file, such as `radar_depth`.
+ *
+ * @returns undefined where the file holds no variable of that name
+ * @throws InputError where the file is damaged, or the variable is no float32
+ */
+export async function openTotalsLayers(path: string, name: string): Promise<TotalsLayers | undefined> {
+  await hdf5Ready();
+  const file = openHdf5(path);
+  if (file.kindOf(`/${name}`) !== "array") {
+    file.close();
+    return undefined;
+  }
+  return {
+    layer(index) {
+      const values = file.readLayer(`/${name}`, index);
+      if (values instanceof Float32Array) return values;
+      throw new InputError(`${name} is no variable of float32`, path, "run total again");
+    },
+    close: () => file.close(),
+  };
+}
