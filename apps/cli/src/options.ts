@@ -1,4 +1,6 @@
 import { durationMs } from "@rainreckon/accumulation";
+import type { CapSetting } from "@rainreckon/core";
+import { RELATION_FITS } from "@rainreckon/verification";
 import { InvalidArgumentError, Option } from "commander";
 import { z } from "zod";
 import type { LonLat } from "./explain/places-asked.ts";
@@ -55,6 +57,18 @@ const capValue = z.string().transform((text, context): { dbz: number } | { mmPer
     return z.NEVER;
   }
   return inDbz ? { dbz: value } : { mmPerHour: value };
+});
+
+/** Caps with commas; "none" is no cap. */
+const capList = z.string().transform((text, context): readonly (CapSetting | "none")[] => {
+  const caps = text
+    .split(",")
+    .map((one) => (one === "none" ? ("none" as const) : capValue.safeParse(one).data));
+  if (caps.some((one) => one === undefined)) {
+    context.addIssue({ code: "custom", message: 'write caps with commas, like "50dBZ,100mm/h,none"' });
+    return z.NEVER;
+  }
+  return caps as (CapSetting | "none")[];
 });
 
 /** A number between two ends, both allowed; an end that is open says so in words. */
@@ -163,6 +177,11 @@ export const flags = {
   update: () => new Option("--update", "add what is new to an existing plan; edits and comments stay"),
   replacePlan: () => new Option("--force", "write over an existing plan"),
   title: () => new Option("--title <text>", "title of the plan").default("Rain total"),
+  gridLike: () =>
+    new Option(
+      "--grid-like <file>",
+      "lay the plan's grid cell upon cell with this raster (GeoTIFF, square cells in metres, EPSG code)",
+    ),
 
   // total
   runFolder: () => new Option("--out <dir>", "folder for the results").makeOptionMandatory(),
@@ -196,6 +215,47 @@ export const flags = {
     new Option("--cap <cap>", "hail cap, in dBZ or mm/h: 53dBZ, 100mm/h")
       .argParser(through(capValue))
       .default({ dbz: 53 }, "53dBZ"),
+
+  // relate fit, relate rank
+  pairsFile: () =>
+    new Option(
+      "--pairs <file>",
+      "fit to a table instead: columns reflectivity_dbz or z_mm6_per_m3, rain_rate_mm_per_h, and gauge and end where known",
+    ),
+  pairMinutes: () =>
+    new Option(
+      "--interval <min>",
+      "length of a pair, minutes, whole steps; the plan's pair interval where left out",
+    ).argParser(through(wholeNumber(1, 1440))),
+  leastRate: () =>
+    new Option("--least-rate <mm/h>", "what counts as rain, mm/h: lighter pairs enter no logarithm")
+      .argParser(numberFrom(0.01, 10, "write a rate from 0.01 to 10 mm/h"))
+      .default(0.1),
+  fitReference: () =>
+    new Option(
+      "--relation <name>",
+      "relation to stand beside, by name or as A,b; its b is the fixed one. The plan's where left out, else marshall-1955-200/1.6",
+    ),
+  fitMethod: () =>
+    new Option("--method <name>", "the fit to offer for the plan, whatever the pairs can tell").choices([
+      ...RELATION_FITS,
+    ]),
+  rankOrder: () =>
+    new Option(
+      "--order <mode>",
+      "which errors decide: with the depths as they are, or after each one's own bias",
+    )
+      .choices(["alone", "after-bias"])
+      .default("after-bias"),
+  ownRelations: () =>
+    new Option(
+      "--relation <name...>",
+      "only these relations, by name or as A,b; the plan's always takes part. All published ones for rain where left out",
+    ),
+  caps: () =>
+    new Option("--caps <list>", "hail caps to rank too, in dBZ or mm/h, with commas: 50dBZ,100mm/h,none")
+      .argParser(through(capList))
+      .default(capList.parse("50dBZ,53dBZ,55dBZ,none"), "50dBZ,53dBZ,55dBZ,none"),
 
   // explain
   at: () =>

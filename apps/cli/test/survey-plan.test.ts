@@ -12,6 +12,7 @@ import {
 import { tmpdir } from "node:os";
 import path from "node:path";
 import type { Notice } from "@rainreckon/core";
+import { writeGeoTiff } from "@rainreckon/formats";
 import { generateStorm, TINY } from "@rainreckon/test-data/storm";
 import { afterAll, beforeAll, describe, expect, test } from "vitest";
 import { parseDocument } from "yaml";
@@ -251,6 +252,36 @@ describe("plan", () => {
     expect(status).toBe(2);
     expect(stderr).toMatch(/error: there is a plan already\n {2}where: .*\n {2}fix: .*--update.*--force/);
     expect(readFileSync(planFile, "utf8")).toBe(before);
+  });
+
+  test("lays the grid cell upon cell with a raster, and not over the grid of a plan that is there", async () => {
+    const grid = { crs: "EPSG:32631", westM: 480_050, northM: 5_830_100, cellM: 500, nx: 90, ny: 70 };
+    const raster = path.join(scratch, "like.tif");
+    const values = new Float32Array(grid.nx * grid.ny);
+    const projString = "+proj=utm +zone=31 +datum=WGS84 +units=m";
+    await writeGeoTiff(raster, { grid, projString, values, description: "height", unit: "m" });
+    const like = path.join(scratch, "like.yaml");
+    const args = ["plan", storm, "-o", like, "--quiet", "--grid-like", raster];
+    expect((await inProcess(args)).status).toBe(0);
+    expect((await loadPlan(like)).plan.grid).toEqual(grid);
+    expect(readFileSync(like, "utf8")).toContain("westM: 480050 # found: that of like.tif");
+    // EPSG:2263 counts in feet of the survey of the United States.
+    const feet = path.join(scratch, "feet.tif");
+    await writeGeoTiff(feet, {
+      grid: { ...grid, crs: "EPSG:2263" },
+      projString,
+      values,
+      description: "height",
+      unit: "m",
+    });
+    const other = ["plan", storm, "-o", path.join(scratch, "feet.yaml"), "--grid-like", feet];
+    const refused = await inProcess(other);
+    expect([refused.status, refused.stderr]).toEqual([
+      2,
+      expect.stringContaining("does not count in metres"),
+    ]);
+    const again = await inProcess([...args, "--update"]);
+    expect([again.status, again.stderr]).toEqual([2, expect.stringContaining("leaves the grid alone")]);
   });
 
   test("stays byte for byte the same when --update finds nothing new", async () => {

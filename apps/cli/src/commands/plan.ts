@@ -5,6 +5,7 @@ import type { Command } from "commander";
 import { z } from "zod";
 import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { flags } from "../options.ts";
+import type { GridLike } from "../plan/compose.ts";
 import type { SurveyResult } from "../survey/survey-result.ts";
 import { walkFiles } from "../survey/walk.ts";
 import { noticeLine } from "../ui/left-out.ts";
@@ -32,6 +33,7 @@ interface PlanFlags {
   readonly update?: boolean;
   readonly force?: boolean;
   readonly rate?: boolean;
+  readonly gridLike?: string;
 }
 
 /** `plan PATH…`: writes a plan from what a survey finds. */
@@ -40,25 +42,31 @@ export function registerPlan(program: Command): void {
     program,
     "plan <path...>",
     "Write a plan (YAML) for a rain total from what lies in files and folders. Every value says whether it was found, guessed or is a default.",
-    ["rainreckon plan data/ -o plan.yaml", "rainreckon plan data/ -o plan.yaml --update"],
+    [
+      "rainreckon plan data/ -o plan.yaml",
+      "rainreckon plan data/ -o plan.yaml --update",
+      "rainreckon plan data/ -o plan.yaml --grid-like model/elevation.tif",
+    ],
   )
     .addOption(flags.planFile())
     .addOption(flags.title())
     .addOption(flags.update())
     .addOption(flags.replacePlan())
-    .addOption(flags.planRate());
+    .addOption(flags.planRate())
+    .addOption(flags.gridLike());
   addSchemaFlag(command, planReportSchema);
   command.action(async (paths: string[]) => {
     const options = command.opts<PlanFlags>();
     const terminal = terminalOf(command);
     refuseToOverwrite(options);
+    const gridLike = await gridLikeOf(options);
     const walk = walkFiles(paths);
     terminal.note(`${counted(walk.files.length, "file")} under ${paths.join(", ")}`);
     const { survey } = await import("../survey/survey.ts");
     const surveyed = await survey(paths, walk, terminal);
     const result = options.rate === true ? asOneInstant(surveyed) : surveyed;
     await requireTotal(result, paths);
-    const report = await writePlan(options, result, surveyed.findings.window === null);
+    const report = await writePlan(options, result, surveyed.findings.window === null, gridLike);
     tellPlan(terminal, report, result);
   });
 }
@@ -107,6 +115,28 @@ function refuseToOverwrite({ out, update, force }: PlanFlags): void {
   );
 }
 
+/** The grid of the raster that was named. @throws InputError (kind "usage") where it has none, or the plan keeps its own */
+async function gridLikeOf({ out, gridLike, update }: PlanFlags): Promise<GridLike | undefined> {
+  if (gridLike === undefined) return undefined;
+  if (update === true && existsSync(out))
+    throw new InputError(
+      "an update leaves the grid alone, for every figure stands on it",
+      out,
+      "write a new plan: leave --update out",
+      { kind: "usage" },
+    );
+  const { readRasterGrid } = await import("@rainreckon/formats");
+  const { gridMap } = await import("../total/prepare.ts");
+  const grid = await readRasterGrid(gridLike);
+  try {
+    gridMap(grid);
+  } catch (cause) {
+    if (!(cause instanceof InputError)) throw cause;
+    throw new InputError(cause.what, gridLike, cause.fix, { kind: "usage", cause });
+  }
+  return { grid, file: gridLike };
+}
+
 async function requireTotal({ findings }: SurveyResult, paths: readonly string[]): Promise<void> {
   if (findings.window !== null) return;
   const { RATE_NOT_TOTAL } = await import("../survey/possible.ts");
@@ -122,6 +152,7 @@ async function writePlan(
   { out, title, update }: PlanFlags,
   result: SurveyResult,
   rateOnly: boolean,
+  gridLike: GridLike | undefined,
 ): Promise<PlanReport> {
   const { composePlan } = await import("../plan/compose.ts");
   const { parsePlan } = await import("../plan/load.ts");
@@ -136,7 +167,7 @@ async function writePlan(
     action = changes.length === 0 ? "unchanged" : "updated";
     if (action === "updated") replaceFile(out, updated.text);
   } else {
-    const text = composePlan(result, folder, title);
+    const text = composePlan(result, folder, title, gridLike);
     parsePlan(text, out);
     replaceFile(out, text);
   }

@@ -82,7 +82,12 @@ function oneLine(text: string): string {
  * @param folder - the folder that the plan will lie in: its paths count from there
  * @returns YAML 1.2 with comments
  */
-export function composePlan(result: SurveyResult, folder: string, title: string): string {
+export function composePlan(
+  result: SurveyResult,
+  folder: string,
+  title: string,
+  gridLike?: GridLike,
+): string {
   const { findings } = result;
   const upper = mapNode({
     title: byDefault(title),
@@ -119,7 +124,7 @@ export function composePlan(result: SurveyResult, folder: string, title: string)
       markedNode(found(globsFor(scans, result.files, folder), "recognised by content")),
     );
   }
-  upper.set(factory.createNode("grid"), gridNode(result));
+  upper.set(factory.createNode("grid"), gridLike === undefined ? gridNode(result) : likeNode(gridLike));
   for (const section of ["rain", "echo", "pairs", "bootstrap"] as const) {
     upper.set(
       factory.createNode(section),
@@ -404,6 +409,17 @@ export function assetsNode({ findings }: SurveyResult, folder: string): Node | u
     crs: guessed(table.crs.value ?? "WRITE ITS EPSG CODE", table.crs.reason),
     columns: inline(by({ ...table.columns, value: { id, ...(name === undefined ? {} : { name }), x, y } })),
   });
+}
+
+/** A grid that somebody asked for, cell upon cell with a raster of theirs. */
+export interface GridLike {
+  readonly grid: Grid;
+  readonly file: string;
+}
+
+function likeNode({ grid, file }: GridLike): Node {
+  const why = `that of ${path.basename(file)}`;
+  return mapNode(Object.fromEntries(Object.entries(grid).map(([key, value]) => [key, found(value, why)])));
 }
 
 function gridNode(result: SurveyResult): Node {

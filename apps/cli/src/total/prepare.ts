@@ -163,6 +163,15 @@ export function gridMap({ crs, westM, northM, cellM, nx, ny }: Grid): Projection
     if (!(cause instanceof InputError)) throw cause;
     throw new InputError(cause.what, where, cause.fix, { kind: "usage", cause });
   }
+  if (/\+units=(?!m\b)|\+to_meter=/.test(map.projString))
+    throw new InputError(
+      "this system does not count in metres",
+      where,
+      "choose a projected system in metres",
+      {
+        kind: "usage",
+      },
+    );
   const [lonDeg, latDeg] = map.inverse(westM + (nx * cellM) / 2, northM - (ny * cellM) / 2);
   if (Number.isFinite(lonDeg) && Number.isFinite(latDeg)) return map;
   throw new InputError(

@@ -7,9 +7,9 @@
 export interface Grid {
   /** A PROJ string or an authority code such as "EPSG:3035". */
   readonly crs: string;
-  /** x of the western edge of column 0, a whole multiple of cellM. */
+  /** x of the western edge of column 0; a whole multiple of cellM unless laid upon another raster. */
   readonly westM: number;
-  /** y of the northern edge of row 0, a whole multiple of cellM. */
+  /** y of the northern edge of row 0; as `westM`. */
   readonly northM: number;
   readonly cellM: number;
   readonly nx: number;

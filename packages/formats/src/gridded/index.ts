@@ -8,3 +8,4 @@ export type {
   GridPlace,
 } from "./gridded-file.ts";
 export { GRIDDED_FORMATS, openGridded } from "./gridded-formats.ts";
+export { readRasterGrid } from "./raster-grid.ts";
