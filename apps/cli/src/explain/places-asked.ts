@@ -27,6 +27,9 @@ export interface AskedPoint extends LonLat {
   readonly gauge: GaugeInput | undefined;
 }
 
+/** What of a run is needed to find places on it. */
+export type PlacesOfRun = Pick<PreparedRun, "grid" | "map" | "gauges" | "catchments">;
+
 /** A catchment, with its place in the run's list. */
 export interface AskedArea {
   readonly index: number;
@@ -39,7 +42,7 @@ export interface AskedArea {
  * @throws InputError (kind "usage") for a position outside the grid, and a gauge or catchment that takes no part
  */
 export function findAsked(
-  run: PreparedRun,
+  run: PlacesOfRun,
   asked: Asked,
 ): { readonly points: AskedPoint[]; readonly areas: AskedArea[] } {
   const points = [
@@ -53,7 +56,7 @@ export function findAsked(
   return { points, areas: asked.catchments.map((id) => findCatchment(run, id)) };
 }
 
-function placed(run: PreparedRun, point: LonLat): { readonly cell: number; readonly name: string } {
+function placed(run: Pick<PreparedRun, "grid" | "map">, point: LonLat): { readonly cell: number; readonly name: string } {
   const name = placeText(point.lonDeg, point.latDeg);
   const { cell } = placePoint(run.grid, run.map, point, "nearest");
   if (cell >= 0) return { cell, name };
@@ -75,7 +78,7 @@ export function gaugeName({ series }: GaugeInput): string {
   return `${series.network}/${series.id}`;
 }
 
-function findGauge({ gauges: { gauges } }: PreparedRun, asked: string): GaugeInput {
+function findGauge({ gauges: { gauges } }: PlacesOfRun, asked: string): GaugeInput {
   const exact = gauges.find((gauge) => gaugeName(gauge) === asked);
   if (exact !== undefined) return exact;
   const named = gauges.filter(({ series }) => series.id === asked);
@@ -95,7 +98,7 @@ function findGauge({ gauges: { gauges } }: PreparedRun, asked: string): GaugeInp
   );
 }
 
-function findCatchment({ catchments }: PreparedRun, asked: string): AskedArea {
+function findCatchment({ catchments }: PlacesOfRun, asked: string): AskedArea {
   const index = catchments.findIndex(({ id }) => id === asked);
   const byName = index >= 0 ? index : catchments.findIndex(({ name }) => name === asked);
   const catchment = catchments[byName];

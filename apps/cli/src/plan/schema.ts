@@ -305,6 +305,15 @@ export const planSchema = z.strictObject({
     })
     .optional(),
   assets: assets.optional(),
+  /** How rain is cut into events; the usual rule where left out. */
+  events: z
+    .strictObject({
+      dryTime: duration.optional().describe("dry time from which on a new event begins"),
+      minDepthMm: z.number().min(0).max(1000).optional(),
+      /** Whose rule it is: a contract, a guideline with its edition. */
+      rule: z.string().min(1).max(200).optional(),
+    })
+    .optional(),
   intervals: z
     .strictObject({
       grids: duration.default("PT1H"),
