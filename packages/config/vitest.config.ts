@@ -1,11 +1,13 @@
 import { fileURLToPath } from "node:url";
 import { defineConfig } from "vitest/config";
+import { pageScriptForTests } from "../report/scripts/page-script.mjs";
 
 const root = fileURLToPath(new URL("../..", import.meta.url));
 
 /** One vitest start for the whole workspace: one summary, one count, never a cached pass. */
 export default defineConfig({
   root,
+  plugins: [pageScriptForTests],
   test: {
     include: [
       "packages/*/src/**/*.test.ts",

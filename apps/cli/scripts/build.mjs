@@ -3,6 +3,7 @@ import { chmodSync, existsSync, mkdirSync, mkdtempSync, readFileSync, renameSync
 import path from "node:path";
 import { fileURLToPath } from "node:url";
 import { build } from "esbuild";
+import { pageScriptForBuild } from "../../../packages/report/scripts/page-script.mjs";
 
 const root = fileURLToPath(new URL("..", import.meta.url));
 const { dependencies } = JSON.parse(readFileSync(path.join(root, "package.json"), "utf8"));
@@ -41,7 +42,7 @@ try {
     format: "esm",
     platform: "node",
     target: "node20",
-    plugins: [onlyWhatIsUsed],
+    plugins: [pageScriptForBuild, onlyWhatIsUsed],
     external: Object.keys(dependencies),
     banner: { js: "#!/usr/bin/env node" },
     sourcemap: true,

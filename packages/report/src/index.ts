@@ -7,6 +7,7 @@ export {
   svgRelations,
 } from "./charts/relation-chart.ts";
 export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
+export { type FrameSeries, FrameStack } from "./data/frame-stack.ts";
 export type {
   AccountLine,
   AdjustmentStatement,
@@ -16,12 +17,14 @@ export type {
   DepthFigure,
   EchoStatement,
   GaugeRole,
+  GeographicLattice,
   Hyetograph,
   MapLayer,
   MethodChoiceStatement,
   Provenance,
   ProvenanceInput,
   RelationFigure,
+  ReportAsset,
   ReportCatchment,
   ReportGauge,
   ReportInput,

@@ -1,4 +1,5 @@
 import type { Grid, Interval, Ring, Score } from "@rainreckon/core";
+import type { FrameSeries } from "./data/frame-stack.ts";
 
 /** A depth with all that decides how it may be printed. */
 export interface DepthFigure {
@@ -92,24 +93,26 @@ export interface EchoStatement {
 }
 
 /** Values over the grid: shape [ny, nx], row-major, row 0 in the north, NaN not observed. */
-export type MapLayer =
-  | {
-      readonly quantity: "depthMm" | "fraction" | "heightM";
-      readonly id: string;
-      /** Short, as a button says it: "Radar total". */
-      readonly label: string;
-      /** One sentence on what the numbers are, with heights said above what. */
-      readonly what: string;
-      readonly values: Float32Array;
-    }
-  | {
-      readonly quantity: "radarIndex";
-      readonly id: string;
-      readonly label: string;
-      readonly what: string;
-      /** Index into `radars` of {@link ReportInput}; NaN where no radar spoke. */
-      readonly values: Float32Array;
-    };
+export interface MapLayer {
+  /**
+   * What the values are: a depth, mm; a share of time that was observed, 0 to 1; any other share, 0 to 1, usually
+   * small; a height, m; decibels; or an index into `radars` of {@link ReportInput}, NaN where no radar spoke.
+   */
+  readonly quantity: "depthMm" | "fraction" | "share" | "heightM" | "decibel" | "radarIndex";
+  readonly id: string;
+  /** Short, as a button says it: "Radar total". */
+  readonly label: string;
+  /** One sentence on what the numbers are, with heights said above what. */
+  readonly what: string;
+  readonly values: Float32Array;
+  /** For depths that are no rain totals: their colours are their own, not those that all totals share. */
+  readonly scale?: "error" | "own";
+  /**
+   * Heading of the list that it stands under where the page runs its script. Layers without one have a button of
+   * their own, and are there without script and in print.
+   */
+  readonly group?: string;
+}
 
 export interface ReportRadar {
   readonly id: string;
@@ -146,6 +149,24 @@ export interface ReportGauge {
   readonly reason?: string;
 }
 
+/** A point that figures are asked for. */
+export interface ReportAsset {
+  readonly id: string;
+  readonly name?: string;
+  /** In the grid's coordinates, metres. */
+  readonly xM: number;
+  readonly yM: number;
+}
+
+/** Longitudes and latitudes at the corners of equal parts of the grid; rows from the north. */
+export interface GeographicLattice {
+  /** Parts across and down: there is one more corner than parts each way. */
+  readonly across: number;
+  readonly down: number;
+  readonly lonDeg: readonly number[];
+  readonly latDeg: readonly number[];
+}
+
 export interface ReportCatchment {
   readonly id: string;
   readonly name: string;
@@ -157,6 +178,8 @@ export interface ReportCatchment {
   readonly adjusted?: DepthFigure;
   readonly maxCell: DepthFigure;
   readonly areaKm2: number;
+  /** Bounds of the depth; absent where there is no error model. */
+  readonly range?: { readonly p10Mm: number; readonly p90Mm: number };
 }
 
 /** Depths per step of one side: shape [stepCount] each; depth over the observed part, NaN where none was. */
@@ -172,7 +195,7 @@ export interface Hyetograph {
   readonly label: string;
   readonly startEpochMs: number;
   readonly stepMs: number;
-  /** One or two sides: the first is drawn as bars, the second as a line. */
+  /** The first is drawn as bars, the others as lines; small charts show the first two. */
   readonly sides: readonly StepSeries[];
 }
 
@@ -270,6 +293,11 @@ export interface ReportInput {
   /** In the order of their buttons. The first one is shown, or the one named here. */
   readonly layers: readonly MapLayer[];
   readonly shownLayerId?: string;
+  /** Intervals that add up to layers of the map: they are there where the page runs its script. */
+  readonly frames?: readonly FrameSeries[];
+  /** Absent where the grid's place on Earth is not to be told. */
+  readonly lattice?: GeographicLattice;
+  readonly assets?: readonly ReportAsset[];
   readonly radars: readonly ReportRadar[];
   readonly gauges: readonly ReportGauge[];
   readonly catchments: readonly ReportCatchment[];

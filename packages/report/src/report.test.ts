@@ -12,6 +12,7 @@ const page = renderReport(input);
 function words(html: string): string {
   return html
     .replace(/<style>.*?<\/style>/s, "")
+    .replace(/<script.*?<\/script>/gs, "")
     .replace(/<[^>]*>/g, " ")
     .replaceAll("&#39;", "'")
     .replaceAll("&quot;", '"')
@@ -19,6 +20,11 @@ function words(html: string): string {
     .replaceAll("&gt;", ">")
     .replaceAll("&amp;", "&")
     .replace(/[\s\u00a0\u202f]+/g, " ");
+}
+
+/** The JSON that the page's script reads, as it stands in the page. */
+function dataOf(html: string): string {
+  return /<script type="application\/json" id="report-data">(.*?)<\/script>/s.exec(html)![1];
 }
 
 function renderWith(change: Partial<ReportInput>): string {
@@ -149,7 +155,11 @@ test("hostile names are text everywhere: no tag, attribute or address of theirs 
       ),
     );
   expect(attributes(bad)).toEqual(attributes(page));
-  expect(bad).not.toMatch(/<script|javascript:"|\u202e/);
+  expect(bad).not.toMatch(/javascript:"|\u202e/);
+  // Two script elements open and close: the data and the script, with nothing of theirs between or in them.
+  expect(bad.match(/<script/g)?.length).toBe(2);
+  expect(bad.match(/<\/script/g)?.length).toBe(2);
+  expect(dataOf(bad)).not.toMatch(/<|\u202e|\\u202e|\\u0000/);
   expect(bad.match(/<style>/g)?.length).toBe(1);
   // The hostile words are still there to be read.
   expect(words(bad)).toContain("</script><script>window.broken=1</script>");

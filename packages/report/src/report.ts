@@ -1,5 +1,9 @@
+/// <reference path="./bundled.d.ts" />
 import { createHash } from "node:crypto";
+import { jsonForScript, pageData } from "./data/page-data.ts";
 import type { ReportInput } from "./input.ts";
+import { classLayers } from "./map/layer.ts";
+import pageScript from "./page/main.ts?bundled";
 import { catchmentSection, relationSection } from "./sections/catchments.ts";
 import { echoSection } from "./sections/echo.ts";
 import { scatterSection, verdictSection } from "./sections/gauges.ts";
@@ -32,27 +36,31 @@ const SECTIONS: readonly {
   { id: "glossary", words: "Words", write: () => glossarySection() },
 ];
 
+/** A page stays below 5 MB, so that it can be sent: what the script is told is thinned to the room that is left. */
+const MOST_BYTES = 4_900_000;
+
 /** Digits of the run digest that are printed: enough to tell runs apart by eye. */
 const DIGEST_DIGITS = 16;
 
 /**
- * The report as one HTML file that needs nothing else: no network, no script, no font.
+ * The report as one HTML file that needs nothing else: no network, no font.
  *
- * The content policy in its head forbids everything but pictures inside the file and its own style sheet.
- * The same input gives the same bytes.
+ * Everything it has to say stands in the page without script; the script makes the map and the tables answer, see
+ * `page/`. The content policy in its head forbids everything but pictures inside the file, its own style sheet and
+ * its own script. The same input gives the same bytes.
  *
  * @throws RangeError where the input contradicts itself: a layer that does not fill the grid or names a
  * radar that is not there, a zone that does not exist
  */
 export function renderReport(input: ReportInput): string {
   const footer = footerText(input);
-  const style = styleSheet(input.layers.length, footer);
-  const styleHash = createHash("sha256").update(style).digest("base64");
-  const policy = `default-src 'none'; img-src data:; style-src 'sha256-${styleHash}'; base-uri 'none'; form-action 'none'`;
+  const style = styleSheet(input.layers.filter(({ group }) => group === undefined).length, footer);
+  const policy = `default-src 'none'; img-src data:; style-src 'sha256-${sha256(style)}'; script-src 'sha256-${sha256(pageScript)}'; base-uri 'none'; form-action 'none'`;
+  const classed = classLayers(input.layers, input.grid.nx, input.grid.ny);
   const sections = SECTIONS.map((section) => ({ ...section, markup: section.write(input) })).filter(
     ({ markup }) => markup.text !== "",
   );
-  return html`<!doctype html>
+  const standing = html`<!doctype html>
 <html lang="en">
 <head>
 <meta charset="utf-8">
@@ -70,15 +78,24 @@ ${trustLine(input)}
 ${firstCautions(input)}
 </header>
 <main>
-${mapSection(input)}
+${mapSection(input, classed)}
 <nav class="contents" aria-label="Contents"><ul>${sections.map(
     ({ id, words }) => html`<li><a href="#${id}">${words}</a></li>`,
   )}</ul></nav>
 ${sections.map(({ markup }) => html`${markup}\n`)}</main>
-<footer>${footer}. ${input.provenance.software}.</footer>
+<footer>${footer}. ${input.provenance.software}.</footer>`;
+  const room = MOST_BYTES - Buffer.byteLength(standing.text) - pageScript.length;
+  const data = jsonForScript(pageData(input, classed, room));
+  return html`${standing}
+<script type="application/json" id="report-data">${new Markup(data)}</script>
+<script>${new Markup(pageScript)}</script>
 </body>
 </html>
 `.text;
+}
+
+function sha256(text: string): string {
+  return createHash("sha256").update(text).digest("base64");
 }
 
 function footerText(input: ReportInput): string {

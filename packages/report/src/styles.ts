@@ -1,15 +1,18 @@
+import { SCRIPTED } from "./styles-page.ts";
+
 /**
  * The page's style sheet: system type, one accent, light and dark, narrow and wide, paper.
  *
  * Maps stay on light paper in the dark too: a colour must mean the same depth on every screen and in print.
  *
- * @param layerCount - number of map layers, each with a rule that shows it when its button is chosen
+ * @param layerCount - number of map layers with a button, each with a rule that shows it when that is chosen
  * @param printFooter - text at the foot of every printed page; see {@link cssString}
  */
 export function styleSheet(layerCount: number, printFooter: string): string {
   const shown = Array.from({ length: layerCount }, (_, i) => i);
   return `${BASE}
 ${shown.map((i) => `#show-${i}:checked~.map-body .layer-${i}`).join(",")}{display:revert}
+${SCRIPTED}
 ${PRINT}
 @page{size:A4;margin:16mm 15mm 20mm;@bottom-left{content:${cssString(printFooter)};font:8pt ${FONT};color:#444;border-top:.5pt solid #999;padding-top:2mm;vertical-align:top;width:82%}@bottom-right{content:"Page " counter(page) " of " counter(pages);font:8pt ${FONT};color:#444;border-top:.5pt solid #999;padding-top:2mm;vertical-align:top;width:18%}}`;
 }
@@ -27,8 +30,25 @@ export function cssString(text: string): string {
 
 const FONT = `system-ui,-apple-system,"Segoe UI",Roboto,"Helvetica Neue",Arial,sans-serif`;
 
-const BASE = `:root{color-scheme:light dark;--page:#fbfaf8;--panel:#fff;--ink:#1c2227;--soft:#5b656d;--line:#dcdad4;--accent:#1d5a6e;--warn:#8a4b08;--warn-bg:#fdf4e6;--warn-line:#e3b778;--gauge:#2f6f86;--radar:#c4620a;--adjusted:#8b3f7f;--hatch:#a3a9ad;--final:#1f6b45}
-@media (prefers-color-scheme:dark){:root{--page:#14181b;--panel:#1b2024;--ink:#e6e8e6;--soft:#a3adb3;--line:#343b40;--accent:#7cc0d6;--warn:#f0c07c;--warn-bg:#2a2317;--warn-line:#6b5429;--gauge:#5fa9c4;--radar:#f0a04b;--adjusted:#d795cb;--hatch:#6b757b;--final:#7fcf9f}}
+const DARK =
+  "--page:#14181b;--panel:#1b2024;--ink:#e6e8e6;--soft:#a3adb3;--line:#343b40;--accent:#7cc0d6;--warn:#f0c07c;--warn-bg:#2a2317;--warn-line:#6b5429;--gauge:#5fa9c4;--radar:#f0a04b;--adjusted:#d795cb;--hatch:#6b757b;--final:#7fcf9f";
+
+/** A rule for dark pages: where the system is dark and the reader did not choose light, or where the reader chose dark. */
+function inTheDark(selectors: string, rules: string): string {
+  const under = (root: string) =>
+    selectors
+      .split(",")
+      .map((selector) => `${root} ${selector}`.trim())
+      .join(",");
+  return `@media screen and (prefers-color-scheme:dark){${under(":root:not([data-theme=light])")}{${rules}}}
+@media screen{${under(":root[data-theme=dark]")}{${rules}}}`;
+}
+
+const BASE = `:root{color-scheme:light dark}
+:root[data-theme=light]{color-scheme:light}
+:root[data-theme=dark]{color-scheme:dark}
+:root{--page:#fbfaf8;--panel:#fff;--ink:#1c2227;--soft:#5b656d;--line:#dcdad4;--accent:#1d5a6e;--warn:#8a4b08;--warn-bg:#fdf4e6;--warn-line:#e3b778;--gauge:#2f6f86;--radar:#c4620a;--adjusted:#8b3f7f;--hatch:#a3a9ad;--final:#1f6b45}
+${inTheDark("", DARK)}
 *{box-sizing:border-box}
 html{-webkit-text-size-adjust:100%;text-size-adjust:100%}
 body{margin:0;background:var(--page);color:var(--ink);font:16px/1.5 ${FONT};font-variant-numeric:tabular-nums;overflow-wrap:anywhere}
@@ -115,7 +135,8 @@ svg text{font:12px ${FONT};font-variant-numeric:tabular-nums;fill:var(--soft)}
 .gauge .casing{stroke:#fff;stroke-width:5}
 .scatter .gauge.used,.role .gauge.used,.places-legend .gauge.used{fill:var(--gauge);stroke:var(--panel);stroke-width:1}
 .map .gauge.used,.places-legend .gauge.used{fill:#fff;stroke:#14171a;stroke-width:1.8}
-@media (prefers-color-scheme:dark){.scatter .gauge .casing,.role .gauge .casing,.places-legend .gauge .casing{stroke:none}.scatter .left-out,.role .left-out,.places-legend .left-out{stroke:#ee8fc6}}
+${inTheDark(".scatter .gauge .casing,.role .gauge .casing,.places-legend .gauge .casing", "stroke:none")}
+${inTheDark(".scatter .left-out,.role .left-out,.places-legend .left-out", "stroke:#ee8fc6")}
 .radar{fill:none;stroke:#14171a;stroke-width:1.5}
 .radar .casing{fill:#fff;fill-opacity:.8;stroke:none}
 .radar .dot{fill:#14171a}
@@ -183,7 +204,7 @@ footer{margin-top:56px;padding-top:14px;padding-bottom:36px;font-size:.85rem;col
 @media (max-width:900px){.map-body,.beside{grid-template-columns:minmax(0,1fr)}.trust{grid-template-columns:1fr 1fr}.trust div:nth-child(3){border-left:0}.trust div:nth-child(n+3){border-top:1px solid var(--line)}.legend ul,.places-legend{display:flex;flex-wrap:wrap;gap:0 18px}}
 @media (max-width:560px){header,main,footer{padding-left:16px;padding-right:16px}header{padding-top:22px}section{margin-top:44px}h1{font-size:1.4rem}.headline{font-size:1.14rem}.trust div{padding:10px 12px}.map-block>legend{float:none;margin-bottom:2px}.map-block>input{float:left;clear:left;margin-top:5px}.map-block>label{display:block;margin-left:24px;line-height:1.75}.map-sheet{margin:0 -8px;padding:2px}svg.map text{font-size:22px}.map .gauge-label,.map .axis-title{display:none}.map .gauge>*,.map .radar>*{transform:scale(1.7)}.map .catchment-names text{font-size:22px}.map .radar-label{font-size:20px}.scatter text{font-size:14px}.facts div{grid-template-columns:1fr;gap:0}}`;
 
-const PRINT = `@media print{:root{color-scheme:light;--page:#fff;--panel:#fff;--ink:#111;--soft:#444;--line:#c9c9c9;--accent:#111;--warn:#6b3a05;--warn-bg:#fff;--warn-line:#b98436;--gauge:#2f6f86;--radar:#c4620a;--adjusted:#8b3f7f;--hatch:#8e9498;--final:#1f6b45}
+const PRINT = `@media print{:root,:root[data-theme]{color-scheme:light;--page:#fff;--panel:#fff;--ink:#111;--soft:#444;--line:#c9c9c9;--accent:#111;--warn:#6b3a05;--warn-bg:#fff;--warn-line:#b98436;--gauge:#2f6f86;--radar:#c4620a;--adjusted:#8b3f7f;--hatch:#8e9498;--final:#1f6b45}
 body{font-size:9.5pt;line-height:1.4;-webkit-print-color-adjust:exact;print-color-adjust:exact}
 header,main{max-width:none;padding:0}
 header{padding-top:0}

@@ -1,12 +1,15 @@
 import type { Grid, Ring, Score } from "@rainreckon/core";
-import type {
-  GaugeRole,
-  Hyetograph,
-  MapLayer,
-  ReportCatchment,
-  ReportGauge,
-  ReportInput,
-  ReportScore,
+import {
+  type FrameSeries,
+  FrameStack,
+  type GaugeRole,
+  type GeographicLattice,
+  type Hyetograph,
+  type MapLayer,
+  type ReportCatchment,
+  type ReportGauge,
+  type ReportInput,
+  type ReportScore,
 } from "../src/index.ts";
 
 // Everything here is invented: the district, its rain, its gauges, and the scores, which are plausible
@@ -107,7 +110,76 @@ function layers(): MapLayer[] {
       what: "The radar that carries most of the weight in each cell.",
       values: field(seen(nearest)),
     },
+    {
+      quantity: "depthMm",
+      scale: "error",
+      group: "How sure",
+      id: "error",
+      label: "Standard error",
+      what: "Standard error of the adjusted total.",
+      values: field(seen((x, y) => 1 + inventedDepthMm(x, y) * 0.12)),
+    },
+    {
+      quantity: "share",
+      group: "Time",
+      id: "bridged",
+      label: "Bridged",
+      what: "Share of the window between scans far apart, bridged all the same.",
+      values: field(seen((x, y) => Math.max(0, (nearestM(x, y) - 30_000) / 300_000))),
+    },
+    {
+      quantity: "decibel",
+      group: "What was corrected",
+      id: "profile",
+      label: "Vertical profile",
+      what: "Decibels added to bring echo aloft to the ground, mean by depth.",
+      values: field(seen((x, y) => (nearestM(x, y) - 35_000) / 9000)),
+    },
+    {
+      quantity: "depthMm",
+      scale: "own",
+      group: "What was screened",
+      id: "static",
+      label: "Static echo",
+      what: "Depth that echo taken out as static would have made.",
+      values: field((x, y) => (rangeM(0, x, y) < 6000 ? 9 : 0)),
+    },
   ];
+}
+
+/** Shares of the six hours in the depth of a place: the rain drifts east. */
+function hourShare(hour: number, xM: number): number {
+  const weights = Array.from({ length: 6 }, (_, k) => Math.exp(-0.5 * (k - 2.5 - xM / 40_000) ** 2));
+  return weights[hour] / weights.reduce((sum, weight) => sum + weight, 0);
+}
+
+function frames(): FrameSeries[] {
+  const hour = (endEpochMs - startEpochMs) / 6;
+  return [
+    { layerId: "adjusted", times: 1 },
+    { layerId: "radar", times: 0.85 },
+  ].map(({ layerId, times }) => {
+    const stack = new FrameStack(layerId, grid, 6);
+    for (let k = 0; k < 6; k += 1) {
+      const interval = { startEpochMs: startEpochMs + k * hour, endEpochMs: startEpochMs + (k + 1) * hour };
+      const depthMm = field((x, y) =>
+        isSeen(x, y) ? times * inventedDepthMm(x, y) * hourShare(k, x) : Number.NaN,
+      );
+      stack.add(interval, depthMm);
+    }
+    return stack.finish();
+  });
+}
+
+/** Corners of a grid that is taken to lie on a plane of degrees: good enough for an invented district. */
+function lattice(): GeographicLattice {
+  const corners = [0, 1, 2, 3, 4];
+  return {
+    across: 4,
+    down: 4,
+    lonDeg: corners.flatMap(() => corners.map((k) => 5 - 0.87 + 0.4375 * k)),
+    latDeg: corners.flatMap((k) => corners.map(() => 52.4 - 0.2025 * k)),
+  };
 }
 
 const STUCK = 4;
@@ -254,6 +326,7 @@ function catchments(): ReportCatchment[] {
       adjusted: { mm: adjusted, observedFraction, atCap: i === 1, ...partly },
       maxCell: { mm: most, observedFraction: 1, atCap: i === 1 },
       areaKm2,
+      range: { p10Mm: adjusted * 0.85, p90Mm: adjusted * 1.18 },
     };
   });
 }
@@ -394,6 +467,9 @@ export function inventedInput(): ReportInput {
     grid,
     layers: layers(),
     shownLayerId: "adjusted",
+    frames: frames(),
+    lattice: lattice(),
+    assets: [{ id: "P7", name: "Pumping station", xM: 9500, yM: 9500 }],
     radars,
     gauges: allGauges,
     catchments: allCatchments,
@@ -404,6 +480,14 @@ export function inventedInput(): ReportInput {
           role: "radar",
           ...steps(
             Number.isNaN(gauge.radarMm) ? 0 : gauge.radarMm,
+            21 + i,
+            Number.isNaN(gauge.radarMm) ? [0, STEPS] : i % 6 === 3 ? [40, 46] : undefined,
+          ),
+        },
+        {
+          role: "adjusted",
+          ...steps(
+            Number.isNaN(gauge.radarMm) ? 0 : gauge.radarMm * 1.176,
             21 + i,
             Number.isNaN(gauge.radarMm) ? [0, STEPS] : i % 6 === 3 ? [40, 46] : undefined,
           ),

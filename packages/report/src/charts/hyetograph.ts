@@ -82,7 +82,7 @@ function gaps(side: StepSeries, x: (step: number) => number, floor: number): str
 
 /**
  * Rain against time at one place, in mm per step: the first side as bars, the second as a line along the
- * tops. Steps in which a side saw nothing are hatched, rising for the first side, falling for the second.
+ * tops; further sides are not drawn. Steps in which a side saw nothing are hatched, rising for the first side, falling for the second.
  *
  * @param id - unique on the page
  * @param zone - zone of the upper row of times; the lower row is UTC
@@ -108,7 +108,7 @@ export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm
     3,
   ).map(
     (mm) =>
-      html`<path class="grid-line" d="M${MARGIN.left} ${svgNumber(y(mm))}H${WIDTH - MARGIN.right}"/><text x="${MARGIN.left - 5}" y="${svgNumber(y(mm) + 4)}" text-anchor="end">${mm}</text>`,
+      html`<path class="grid-line" d="M${MARGIN.left} ${svgNumber(y(mm))}H${WIDTH - MARGIN.right}"/><text class="depth" x="${MARGIN.left - 5}" y="${svgNumber(y(mm) + 4)}" text-anchor="end">${mm}</text>`,
   )}${times.map(({ epochMs, local, utc }) => {
     const tx = svgNumber(x((epochMs - window.startEpochMs) / graph.stepMs));
     // Words at the ends lean inwards, so that the frame does not cut them.

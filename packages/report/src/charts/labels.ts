@@ -15,7 +15,8 @@ export interface PlacedLabel {
   readonly anchor: "start" | "end" | "middle";
 }
 
-function overlap(a: Box, b: Box): boolean {
+/** True where two boxes share more than an edge. */
+export function overlap(a: Box, b: Box): boolean {
   return a.x < b.x + b.width && b.x < a.x + a.width && a.y < b.y + b.height && b.y < a.y + a.height;
 }
 
@@ -25,13 +26,15 @@ function overlap(a: Box, b: Box): boolean {
  *
  * @param marks - in order of importance, each with its centre and label
  * @param frame - where labels may stand
+ * @param held - boxes that other things hold already
  */
 export function placeLabels(
   marks: readonly { readonly x: number; readonly y: number; readonly text: string }[],
   frame: Box,
   fontPx: number,
+  held: readonly Box[] = [],
 ): PlacedLabel[] {
-  const taken: Box[] = marks.map(({ x, y }) => ({ x: x - 5, y: y - 5, width: 10, height: 10 }));
+  const taken: Box[] = [...held, ...marks.map(({ x, y }) => ({ x: x - 5, y: y - 5, width: 10, height: 10 }))];
   const placed: PlacedLabel[] = [];
   for (const [mark, { x, y, text }] of marks.entries()) {
     // Without a font at hand: letters are about 0.6 of their size wide in the usual sans-serif faces.

@@ -16,14 +16,27 @@ const SHAPES: Readonly<Record<GaugeRole, Markup>> = {
   "left-out": html`<path d="M-4.5 -4.5L4.5 4.5M4.5 -4.5L-4.5 4.5"/>`,
 };
 
-/** The mark of a gauge at a place of a chart or map, with its words on hover, if any. */
-export function gaugeMark(role: GaugeRole, x: number, y: number, words: string): Markup {
-  return html`<g class="gauge ${role}" transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}${
+function placeKey(key: string | undefined): Markup | false {
+  return key !== undefined && html` data-place="${key}"`;
+}
+
+/**
+ * The mark of a gauge at a place of a chart or map, with its words on hover, if any.
+ *
+ * @param key - of the place it stands for, by which the page's script links marks
+ */
+export function gaugeMark(role: GaugeRole, x: number, y: number, words: string, key?: string): Markup {
+  return html`<g class="gauge ${role}"${placeKey(key)} transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}${
     role === "left-out" && html`<path class="casing" d="M-4.5 -4.5L4.5 4.5M4.5 -4.5L-4.5 4.5"/>`
   }${SHAPES[role]}</g>`;
 }
 
 /** The mark of a radar: two rings and a dot. */
-export function radarMark(x: number, y: number, words: string): Markup {
-  return html`<g class="radar" transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}<circle r="8" class="casing"/><circle r="8"/><circle r="4"/><circle r="1.2" class="dot"/></g>`;
+export function radarMark(x: number, y: number, words: string, key?: string): Markup {
+  return html`<g class="radar"${placeKey(key)} transform="translate(${svgNumber(x)} ${svgNumber(y)})">${words !== "" && html`<title>${words}</title>`}<circle r="8" class="casing"/><circle r="8"/><circle r="4"/><circle r="1.2" class="dot"/></g>`;
+}
+
+/** The mark of an asset: a square with a dot. */
+export function assetMark(x: number, y: number, words: string, key: string): Markup {
+  return html`<g class="asset"${placeKey(key)} transform="translate(${svgNumber(x)} ${svgNumber(y)})"><title>${words}</title><rect x="-4.5" y="-4.5" width="9" height="9"/><circle r="1.4" class="dot"/></g>`;
 }

@@ -13,6 +13,8 @@ export interface ScatterPoint {
   readonly radarMm: number;
   /** Shown on hover. */
   readonly words: string;
+  /** Key of the gauge, by which the page's script links its marks. */
+  readonly key?: string;
 }
 
 const SIDE = 440;
@@ -59,9 +61,9 @@ export function svgScatter(
   const labels = placeLabels(marks, { x: MARGIN.left, y: MARGIN.top, width: inner, height: inner }, LABEL_PX);
   return html`<svg class="chart scatter" role="img" aria-labelledby="${id}-title ${id}-desc" viewBox="0 0 ${SIDE} ${height}"><title id="${id}-title">${title}</title><desc id="${id}-desc">${points.length} gauges on square-root axes. Above the line of equality radar saw more than the gauge. The numbers are in the table of gauges.</desc><g class="axis">${ticksMm.map(
     (mm) =>
-      html`<path class="grid-line" d="M${svgNumber(across(mm))} ${MARGIN.top}V${bottom}M${MARGIN.left} ${svgNumber(upwards(mm))}H${right}"/><text x="${svgNumber(across(mm))}" y="${bottom + 18}" text-anchor="middle">${mm}</text><text x="${MARGIN.left - 8}" y="${svgNumber(upwards(mm) + 4)}" text-anchor="end">${mm}</text>`,
+      html`<path class="grid-line" d="M${svgNumber(across(mm))} ${MARGIN.top}V${bottom}M${MARGIN.left} ${svgNumber(upwards(mm))}H${right}"/><text class="depth" x="${svgNumber(across(mm))}" y="${bottom + 18}" text-anchor="middle">${mm}</text><text class="depth" x="${MARGIN.left - 8}" y="${svgNumber(upwards(mm) + 4)}" text-anchor="end">${mm}</text>`,
   )}<rect class="frame" x="${MARGIN.left}" y="${MARGIN.top}" width="${inner}" height="${inner}"/><text x="${MARGIN.left + inner / 2}" y="${height - 8}" text-anchor="middle">gauge, mm</text><text transform="translate(14 ${MARGIN.top + inner / 2}) rotate(-90)" text-anchor="middle">${radarAxis}</text></g><path class="equal" d="${line(1)}"/><path class="factor" d="${line(2)}${line(0.5)}"/><g class="line-names"><text x="${svgNumber(across(most / 2))}" y="${MARGIN.top - 8}" text-anchor="middle">radar/gauge 2</text><text x="${right + 6}" y="${svgNumber(upwards(most / 2) + 4)}">½</text><text x="${right + 6}" y="${MARGIN.top + 4}">1 : 1</text></g>${marks.map(
-    ({ role, x, y, words }) => gaugeMark(role, x, y, words),
+    ({ role, x, y, words, key }) => gaugeMark(role, x, y, words, key),
   )}${labels.map(
     ({ text, x, y, anchor }) =>
       html`<text class="gauge-label" x="${svgNumber(x)}" y="${svgNumber(y)}" text-anchor="${anchor}">${text}</text>`,

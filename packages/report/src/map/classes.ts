@@ -1,5 +1,11 @@
 import { quantileSorted, ticks } from "d3-array";
-import { interpolateCividis, interpolateMagma, interpolateViridis } from "d3-scale-chromatic";
+import {
+  interpolateCividis,
+  interpolateMagma,
+  interpolatePlasma,
+  interpolatePuOr,
+  interpolateViridis,
+} from "d3-scale-chromatic";
 import { mmText } from "../text/numbers.ts";
 import type { Rgba } from "./png.ts";
 
@@ -68,7 +74,7 @@ function upperEnd(fields: readonly Float32Array[]): number {
  * One set for all depth layers, so that their colours can be compared.
  * Ramp: Nuñez, Anderton and Renslow (2018), PLOS ONE 13(7) e0199239, through d3-scale-chromatic.
  */
-export function depthClasses(fields: readonly Float32Array[]): ColourClasses {
+export function depthClasses(fields: readonly Float32Array[], ramp = interpolateCividis): ColourClasses {
   const round = ticks(0, Math.max(1, upperEnd(fields)), 7).filter((edge) => edge > LEAST_DRAWN_MM);
   // Most of a field is usually in the lowest class: it is cut once more where that leaves a round edge.
   const low = round[0] / 5 >= 4 * LEAST_DRAWN_MM ? [round[0] / 5] : [];
@@ -76,9 +82,54 @@ export function depthClasses(fields: readonly Float32Array[]): ColourClasses {
   const labels = spanLabels(edges, (mm) => mmText(mm).replace(/\.0$/, ""));
   return {
     edges,
-    colours: [CLEAR, ...paled(sample(interpolateCividis, 0.97, 0, edges.length - 1))],
+    colours: [CLEAR, ...paled(sample(ramp, 0.97, 0, edges.length - 1))],
     labels: [`none, or below ${LEAST_DRAWN_MM}`, ...labels.slice(1)],
     unit: "mm",
+  };
+}
+
+/** Classes for errors of depths: as depths, but in the colours of plasma, so that no one takes one for the other. */
+export function errorClasses(values: Float32Array): ColourClasses {
+  return depthClasses([values], interpolatePlasma);
+}
+
+/** Classes for shares that are mostly small and better so: paper for none, then viridis from light to dark. */
+export function shareClasses(): ColourClasses {
+  const edges = [0, 0.005, 0.05, 0.1, 0.25, 0.5, 0.75];
+  return {
+    edges,
+    colours: [CLEAR, ...sample(interpolateViridis, 0.95, 0.05, edges.length - 1)],
+    labels: ["none, or below 0.5", "0.5 – 5", "5 – 10", "10 – 25", "25 – 50", "50 – 75", "75 – 100"],
+    unit: "%",
+  };
+}
+
+/**
+ * Classes for decibels: viridis from light (none) to dark where nothing is below zero; else purple to orange through
+ * the paper about zero, which stays apart under the common kinds of colour blindness (Brewer's PuOr).
+ */
+export function decibelClasses(values: Float32Array): ColourClasses {
+  const least = values.reduce((low, db) => Math.min(low, Number.isNaN(db) ? low : db), 0);
+  const most = Math.max(1, upperEnd([values]));
+  const text = (db: number) => String(db).replace("-", "\u2212");
+  if (least > -0.05) {
+    const edges = [0, 0.1, ...ticks(0, most, 6).filter((db) => db > 0.1 && db < most)];
+    return {
+      edges,
+      colours: [CLEAR, ...sample(interpolateViridis, 0.95, 0.05, edges.length - 1)],
+      labels: ["none, or below 0.1", ...spanLabels(edges, text).slice(1)],
+      unit: "dB",
+    };
+  }
+  const far = Math.max(most, -least);
+  const upwards = ticks(0, far, 4).filter((db) => db > 0 && db < far);
+  const steps = upwards.length > 0 ? upwards : [far / 2];
+  const edges = [-1000, ...steps.toReversed().map((db) => -db), ...steps];
+  return {
+    edges,
+    colours: sample(interpolatePuOr, 0.92, 0.08, edges.length),
+    labels: [`below ${text(-steps[steps.length - 1])}`, ...spanLabels(edges, text).slice(1)],
+    unit: "dB",
   };
 }
 

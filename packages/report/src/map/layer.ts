@@ -6,9 +6,12 @@ import {
   CLEAR,
   type ColourClasses,
   classIndex,
+  decibelClasses,
   depthClasses,
+  errorClasses,
   fractionClasses,
   heightClasses,
+  shareClasses,
 } from "./classes.ts";
 import { palettePng, type Rgba } from "./png.ts";
 import { type Picture, thin } from "./thin.ts";
@@ -99,37 +102,60 @@ function drawRadars(
   };
 }
 
-/** Thins, classes and colours the layers; all depth layers share one set of classes. */
-export function drawLayers(
-  layers: readonly MapLayer[],
-  nx: number,
-  ny: number,
-  radars: readonly ReportRadar[],
-): DrawnLayer[] {
-  const pictures = layers.map((layer) =>
-    thin(layer.values, nx, ny, layer.quantity === "radarIndex" ? "most" : "mean"),
-  );
-  const depths = depthClasses(
-    pictures.filter((_, i) => layers[i].quantity === "depthMm").map((p) => p.values),
-  );
-  return layers.map((layer, i) => drawLayer(layer, i, pictures[i], depths, radars));
+/** A layer thinned for the page, with its classes; names have none. */
+export interface ClassedLayer {
+  readonly layer: MapLayer;
+  readonly picture: Picture;
+  readonly classes: ColourClasses | undefined;
 }
 
-function drawLayer(
-  layer: MapLayer,
-  index: number,
-  picture: Picture,
-  depths: ColourClasses,
-  radars: readonly ReportRadar[],
-): DrawnLayer {
-  switch (layer.quantity) {
+/** Thins and classes the layers; all totals share one set of classes, so that their colours can be compared. */
+export function classLayers(layers: readonly MapLayer[], nx: number, ny: number): ClassedLayer[] {
+  const thinned = layers.map((layer) => ({
+    layer,
+    picture: thin(layer.values, nx, ny, layer.quantity === "radarIndex" ? "most" : "mean"),
+  }));
+  const totals = depthClasses(
+    thinned
+      .filter(({ layer }) => layer.quantity === "depthMm" && layer.scale === undefined)
+      .map(({ picture }) => picture.values),
+  );
+  return thinned.map(({ layer, picture }) => ({
+    layer,
+    picture,
+    classes: classesOf(layer, picture.values, totals),
+  }));
+}
+
+function classesOf(
+  { quantity, scale }: MapLayer,
+  values: Float32Array,
+  totals: ColourClasses,
+): ColourClasses | undefined {
+  switch (quantity) {
     case "depthMm":
-      return drawAmounts(layer, index, picture, depths);
+      if (scale === undefined) return totals;
+      return scale === "error" ? errorClasses(values) : depthClasses([values]);
     case "fraction":
-      return drawAmounts(layer, index, picture, fractionClasses());
+      return fractionClasses();
+    case "share":
+      return shareClasses();
     case "heightM":
-      return drawAmounts(layer, index, picture, heightClasses(picture.values));
+      return heightClasses(values);
+    case "decibel":
+      return decibelClasses(values);
     case "radarIndex":
-      return drawRadars(layer, index, picture, radars);
+      return undefined;
   }
+}
+
+/** The layers that stand on the page without script, ready to be drawn. */
+export function drawLayers(classed: readonly ClassedLayer[], radars: readonly ReportRadar[]): DrawnLayer[] {
+  return classed
+    .filter(({ layer }) => layer.group === undefined)
+    .map(({ layer, picture, classes }, index) =>
+      classes === undefined
+        ? drawRadars(layer, index, picture, radars)
+        : drawAmounts(layer, index, picture, classes),
+    );
 }

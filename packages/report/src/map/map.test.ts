@@ -3,7 +3,7 @@ import { expect, test } from "vitest";
 import { inventedInput } from "../../test/invented-input.ts";
 import { readPalettePng } from "../../test/png-reader.ts";
 import type { ReportInput } from "../input.ts";
-import { drawLayers } from "./layer.ts";
+import { classLayers, drawLayers } from "./layer.ts";
 import { svgMap } from "./map.ts";
 
 // One wet cell in the north-east of a field that is wider than high, so that no mirror or swap of axes
@@ -41,13 +41,15 @@ function pictureOf(svg: string) {
 }
 
 function gaugeOf(svg: string): { x: number; y: number } {
-  const [, x, y] = /class="gauge used" transform="translate\((\S+) (\S+)\)"/.exec(svg)!.map(Number);
+  const [, x, y] = /class="gauge used" data-place="g0" transform="translate\((\S+) (\S+)\)"/
+    .exec(svg)!
+    .map(Number);
   return { x, y };
 }
 
 test("the wet cell is the one coloured pixel, and the gauge in it stands in its middle", () => {
   const input = place(oneWetCell(), grid);
-  const svg = svgMap(input, drawLayers(input.layers, grid.nx, grid.ny, input.radars)).text;
+  const svg = svgMap(input, drawLayers(classLayers(input.layers, grid.nx, grid.ny), input.radars)).text;
   const { left, top, scale, width, height, png } = pictureOf(svg);
   expect([width, height, png.width, png.height]).toEqual([40, 20, 40, 20]);
   const drawn = [...png.indices.entries()].filter(([, index]) => png.palette[index][3] === 255);
@@ -60,8 +62,8 @@ test("the wet cell is the one coloured pixel, and the gauge in it stands in its 
 
 test("the cell that was not observed is hatched, and only it", () => {
   const input = place(oneWetCell(), grid);
-  const svg = svgMap(input, drawLayers(input.layers, grid.nx, grid.ny, input.radars)).text;
-  expect(svg).toContain('<path d="M0 0h1v1h-1z" fill="url(#map-hatch)"/>');
+  const svg = svgMap(input, drawLayers(classLayers(input.layers, grid.nx, grid.ny), input.radars)).text;
+  expect(svg).toContain('<path id="unseen-0" d="M0 0h1v1h-1z" fill="url(#map-hatch)"/>');
 });
 
 // A height has no class that is left clear, so a hole painted as a class would show as a low beam.
@@ -69,7 +71,7 @@ test.each(["depthMm", "fraction", "heightM"] as const)(
   "a hole in a layer of %s has no colour of its own",
   (quantity) => {
     const values = Float32Array.of(Number.NaN, 0, 1, 900);
-    const [drawn] = drawLayers([{ quantity, id: "a", label: "A", what: "", values }], 2, 2, []);
+    const [drawn] = drawLayers(classLayers([{ quantity, id: "a", label: "A", what: "", values }], 2, 2), []);
     const { indices, palette } = readPalettePng(drawn.png);
     expect([...indices.entries()].filter(([, index]) => index === indices[0]).map(([cell]) => cell)).toEqual([
       0,
@@ -84,7 +86,7 @@ test("thinned, the wet cell lies in its block and the gauge still over it", () =
   const column = (WET_PLACE.xM - fine.westM) / 25;
   const row = (fine.northM - WET_PLACE.yM) / 25;
   const input = place(oneWetCell(800, 400, row, column), fine);
-  const svg = svgMap(input, drawLayers(input.layers, 800, 400, input.radars)).text;
+  const svg = svgMap(input, drawLayers(classLayers(input.layers, 800, 400), input.radars)).text;
   const { left, top, scale, png } = pictureOf(svg);
   expect([png.width, png.height]).toEqual([267, 134]);
   const drawn = [...png.indices.entries()].filter(([, index]) => png.palette[index][3] === 255);
@@ -98,15 +100,13 @@ test("radars share out the cells: each has its own pattern over its own cells", 
   const input = inventedInput();
   const who = Float32Array.from({ length: 800 }, (_, i) => (i % 40 < 10 ? 0 : i % 40 < 30 ? 1 : Number.NaN));
   const layers = drawLayers(
-    [{ quantity: "radarIndex", id: "who", label: "Who", what: "", values: who }],
-    40,
-    20,
+    classLayers([{ quantity: "radarIndex", id: "who", label: "Who", what: "", values: who }], 40, 20),
     input.radars,
   );
   const svg = svgMap({ ...input, grid }, layers).text;
   expect(svg).toContain('<path d="M0 0h10v20h-10z" fill="url(#radar-tile-0)"/>');
   expect(svg).toContain('<path d="M10 0h20v20h-20z" fill="url(#radar-tile-1)"/>');
-  expect(svg).toContain('<path d="M30 0h10v20h-10z" fill="url(#map-hatch)"/>');
+  expect(svg).toContain('<path id="unseen-0" d="M30 0h10v20h-10z" fill="url(#map-hatch)"/>');
 });
 
 test("a layer that names a radar that is not there is refused", () => {
@@ -117,14 +117,16 @@ test("a layer that names a radar that is not there is refused", () => {
     what: "",
     values: Float32Array.of(2),
   } as const;
-  expect(() => drawLayers([who], 1, 1, inventedInput().radars)).toThrow("layer who names radar 2 of 2");
+  expect(() => drawLayers(classLayers([who], 1, 1), inventedInput().radars)).toThrow(
+    "layer who names radar 2 of 2",
+  );
 });
 
 test("what lies off the map is not drawn on it", () => {
   const input = place(oneWetCell(), grid);
   const svg = svgMap(
     { ...input, gauges: [{ ...input.gauges[0], xM: 4_020_001 }] },
-    drawLayers(input.layers, 40, 20, []),
+    drawLayers(classLayers(input.layers, 40, 20), []),
   ).text;
   expect(svg).not.toContain('class="gauge');
   expect(svg).not.toContain('class="radar"');

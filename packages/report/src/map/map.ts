@@ -1,9 +1,9 @@
 import type { Grid, Ring } from "@rainreckon/core";
 import { ticks } from "d3-array";
 import { hatchPattern } from "../charts/hatch.ts";
-import { placeLabels } from "../charts/labels.ts";
-import { gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
-import type { ReportCatchment, ReportGauge, ReportInput, ReportRadar } from "../input.ts";
+import { type Box, overlap, placeLabels } from "../charts/labels.ts";
+import { assetMark, gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
+import type { ReportCatchment, ReportGauge, ReportInput } from "../input.ts";
 import { html, type Markup } from "../text/html.ts";
 import { mmText, svgNumber } from "../text/numbers.ts";
 import { categoryPattern } from "./categories.ts";
@@ -38,6 +38,14 @@ export function mapFrame(grid: Grid): MapFrame {
   };
 }
 
+/** Size of the whole drawing, axes and all. */
+export function mapSize(frame: MapFrame): { width: number; height: number } {
+  return {
+    width: svgNumber(frame.left + frame.width + MARGIN.right),
+    height: svgNumber(frame.top + frame.height + MARGIN.bottom),
+  };
+}
+
 /** Place on the drawing of a place of the grid's coordinate system. */
 export function toDrawing(frame: MapFrame, xM: number, yM: number): { x: number; y: number } {
   return {
@@ -65,14 +73,26 @@ function ringPath(frame: MapFrame, ring: Ring): string {
   return `${path}Z`;
 }
 
-function layerGroup(frame: MapFrame, drawn: DrawnLayer, index: number): Markup {
+/** What was not observed, hatched: drawn once, and used again by each further layer with the same holes. */
+function unseenCells(layers: readonly DrawnLayer[]): Markup[] {
+  const seen = new Map<string, string>();
+  return layers.map(({ picture: { nx, ny, values } }) => {
+    const path = cellsPath(nx, ny, (cell) => Number.isNaN(values[cell]));
+    if (path === "") return html``;
+    const known = seen.get(path);
+    if (known !== undefined) return html`<use href="#${known}"/>`;
+    const id = `unseen-${seen.size}`;
+    seen.set(path, id);
+    return html`<path id="${id}" d="${path}" fill="url(#map-hatch)"/>`;
+  });
+}
+
+function layerGroup(frame: MapFrame, drawn: DrawnLayer, unseen: Markup, index: number): Markup {
   const { picture } = drawn;
   // The last row and column of blocks may reach beyond the grid; the clip cuts them there.
   const unitsPerCell = frame.grid.cellM * frame.unitsPerM * picture.block;
   const cells = (passes: (cell: number) => boolean) => cellsPath(picture.nx, picture.ny, passes);
-  return html`<g class="layer layer-${index}"><g transform="translate(${frame.left} ${frame.top}) scale(${unitsPerCell})"><path d="${cells(
-    (cell) => Number.isNaN(picture.values[cell]),
-  )}" fill="url(#map-hatch)"/><image class="cells" width="${picture.nx}" height="${picture.ny}" preserveAspectRatio="none" href="${pngDataUri(
+  return html`<g class="layer layer-${index}"><g transform="translate(${frame.left} ${frame.top}) scale(${unitsPerCell})">${unseen}<image class="cells" width="${picture.nx}" height="${picture.ny}" preserveAspectRatio="none" href="${pngDataUri(
     drawn.png,
   )}"/>${drawn.overlays.map(
     ({ id, category, passes }) =>
@@ -117,18 +137,46 @@ function catchmentOutlines(frame: MapFrame, catchments: readonly ReportCatchment
     path: catchment.polygons.flatMap((rings) => rings.map((ring) => ringPath(frame, ring))).join(""),
   }));
   return html`<g class="catchments">${paths.map(({ path }) => html`<path class="casing" d="${path}"/>`)}${paths.map(
-    ({ path, name }) => html`<path class="outline" d="${path}"><title>${name}</title></path>`,
+    ({ path, name }, index) =>
+      html`<path class="outline" data-place="c${index}" d="${path}"><title>${name}</title></path>`,
   )}</g>`;
 }
 
-function catchmentNames(frame: MapFrame, catchments: readonly ReportCatchment[]): Markup {
-  return html`<g class="catchment-names">${catchments.map(({ name, polygons }) => {
-    const ring = polygons[0]?.[0] ?? [];
-    const middle = ringMiddle(ring);
+const NAME_PX = 13;
+
+/** Names in the middle of their catchments, moved up or down where marks stand. */
+function catchmentNames(
+  frame: MapFrame,
+  catchments: readonly ReportCatchment[],
+  marks: readonly { readonly x: number; readonly y: number }[],
+): { readonly markup: Markup; readonly boxes: readonly Box[] } {
+  const boxes: Box[] = [];
+  const names = catchments.map(({ name, polygons }) => {
+    const middle = ringMiddle(polygons[0]?.[0] ?? []);
     if (middle === undefined || !isOnMap(frame, middle)) return undefined;
     const { x, y } = toDrawing(frame, middle.xM, middle.yM);
-    return html`<text x="${svgNumber(x)}" y="${svgNumber(y)}" text-anchor="middle">${name}</text>`;
-  })}</g>`;
+    const width = name.length * NAME_PX * 0.6;
+    const boxAt = (down: number) => ({
+      x: x - width / 2,
+      y: y + down - NAME_PX,
+      width,
+      height: NAME_PX * 1.3,
+    });
+    const met = (box: Box) =>
+      marks.filter(
+        (mark) =>
+          mark.x > box.x - 6 &&
+          mark.x < box.x + box.width + 6 &&
+          mark.y > box.y - 6 &&
+          mark.y < box.y + box.height + 6,
+      ).length + boxes.filter((other) => overlap(box, other)).length;
+    const down = [0, -16, 16, -30, 30].reduce((best, next) =>
+      met(boxAt(next)) < met(boxAt(best)) ? next : best,
+    );
+    boxes.push(boxAt(down));
+    return html`<text x="${svgNumber(x)}" y="${svgNumber(y + down)}" text-anchor="middle">${name}</text>`;
+  });
+  return { markup: html`<g class="catchment-names">${names}</g>`, boxes };
 }
 
 /** Centre of gravity of a ring (the usual sum over its corners); undefined where it encloses nothing. */
@@ -154,27 +202,38 @@ function gaugeWords(gauge: ReportGauge): string {
   return `Gauge ${gauge.id}${name} (${gauge.network}), ${ROLE_WORDS[gauge.role]}: gauge ${mm(gauge.gaugeMm)}, radar ${mm(gauge.radarMm)}`;
 }
 
-function places(frame: MapFrame, gauges: readonly ReportGauge[], radars: readonly ReportRadar[]): Markup {
-  const shownGauges = gauges.filter((gauge) => isOnMap(frame, gauge));
-  const shownRadars = radars.filter((radar) => isOnMap(frame, radar));
-  const at = (place: { xM: number; yM: number }) => toDrawing(frame, place.xM, place.yM);
-  const labels = placeLabels(
-    [
-      ...shownRadars.map((radar) => ({ ...at(radar), text: radar.id })),
-      ...shownGauges.map((gauge) => ({ ...at(gauge), text: gauge.id })),
-    ],
-    { x: frame.left, y: frame.top, width: frame.width, height: frame.height },
-    LABEL_PX,
-  );
-  return html`<g class="places">${shownRadars.map((radar) => {
-    const { x, y } = at(radar);
-    return radarMark(x, y, `Radar ${radar.id}${radar.name === undefined ? "" : ` ${radar.name}`}`);
-  })}${shownGauges.map((gauge) => {
-    const { x, y } = at(gauge);
-    return gaugeMark(gauge.role, x, y, gaugeWords(gauge));
-  })}${labels.map(
+/** Gauges, radars and assets that lie on the map, with what is drawn of each. */
+function marksOf(frame: MapFrame, { gauges, radars, assets = [] }: ReportInput) {
+  const marks = [
+    ...radars.map((radar, i) => ({
+      kind: "radar-label",
+      place: radar,
+      draw: (x: number, y: number) =>
+        radarMark(x, y, `Radar ${radar.id}${radar.name === undefined ? "" : ` ${radar.name}`}`, `r${i}`),
+    })),
+    ...assets.map((asset, i) => ({
+      kind: "asset-label",
+      place: asset,
+      draw: (x: number, y: number) =>
+        assetMark(x, y, `Asset ${asset.id}${asset.name === undefined ? "" : ` ${asset.name}`}`, `a${i}`),
+    })),
+    ...gauges.map((gauge, i) => ({
+      kind: "gauge-label",
+      place: gauge,
+      draw: (x: number, y: number) => gaugeMark(gauge.role, x, y, gaugeWords(gauge), `g${i}`),
+    })),
+  ];
+  return marks
+    .filter(({ place }) => isOnMap(frame, place))
+    .map((mark) => ({ ...mark, ...toDrawing(frame, mark.place.xM, mark.place.yM), text: mark.place.id }));
+}
+
+function places(frame: MapFrame, marks: ReturnType<typeof marksOf>, taken: readonly Box[]): Markup {
+  const sheet = { x: frame.left, y: frame.top, width: frame.width, height: frame.height };
+  const labels = placeLabels(marks, sheet, LABEL_PX, taken);
+  return html`<g class="places">${marks.map(({ draw, x, y }) => draw(x, y))}${labels.map(
     ({ mark, text, x, y, anchor }) =>
-      html`<text class="${mark < shownRadars.length ? "radar-label" : "gauge-label"}" x="${svgNumber(x)}" y="${svgNumber(y)}" text-anchor="${anchor}">${text}</text>`,
+      html`<text class="${marks[mark].kind}" x="${svgNumber(x)}" y="${svgNumber(y)}" text-anchor="${anchor}">${text}</text>`,
   )}</g>`;
 }
 
@@ -185,11 +244,13 @@ function places(frame: MapFrame, gauges: readonly ReportGauge[], radars: readonl
  */
 export function svgMap(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
   const frame = mapFrame(input.grid);
-  const width = svgNumber(frame.left + frame.width + MARGIN.right);
-  const height = svgNumber(frame.top + frame.height + MARGIN.bottom);
+  const { width, height } = mapSize(frame);
+  const unseen = unseenCells(layers);
+  const marks = marksOf(frame, input);
+  const names = catchmentNames(frame, input.catchments, marks);
   const first = layers[0]?.picture;
   const unitsPerCell = input.grid.cellM * frame.unitsPerM * (first?.block ?? 1);
   return html`<svg class="map" role="img" aria-labelledby="map-title map-desc" viewBox="0 0 ${width} ${height}"><title id="map-title">Map of the chosen layer</title><desc id="map-desc">Grid of ${input.grid.nx} by ${input.grid.ny} cells with catchment outlines, rain gauges and radars. The depths are in the tables of catchments and gauges below.</desc><defs><clipPath id="map-clip"><rect x="${frame.left}" y="${frame.top}" width="${svgNumber(frame.width)}" height="${svgNumber(frame.height)}"/></clipPath>${hatchPattern("map-hatch", "rising", 1 / unitsPerCell)}</defs><rect class="paper" x="${frame.left}" y="${frame.top}" width="${svgNumber(frame.width)}" height="${svgNumber(frame.height)}"/><g clip-path="url(#map-clip)">${layers.map(
-    (layer, index) => layerGroup(frame, layer, index),
-  )}${catchmentOutlines(frame, input.catchments)}</g>${axes(frame)}${catchmentNames(frame, input.catchments)}${places(frame, input.gauges, input.radars)}${scaleBar(frame)}${northArrow(frame)}</svg>`;
+    (layer, index) => layerGroup(frame, layer, unseen[index], index),
+  )}${catchmentOutlines(frame, input.catchments)}</g>${axes(frame)}${names.markup}${places(frame, marks, names.boxes)}${scaleBar(frame)}${northArrow(frame)}</svg>`;
 }

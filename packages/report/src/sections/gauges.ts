@@ -12,8 +12,10 @@ function points(
   side: string,
 ): ScatterPoint[] {
   return gauges
-    .filter((gauge) => Number.isFinite(gauge.gaugeMm) && Number.isFinite(depth(gauge)))
-    .map((gauge) => ({
+    .map((gauge, index) => ({ gauge, index }))
+    .filter(({ gauge }) => Number.isFinite(gauge.gaugeMm) && Number.isFinite(depth(gauge)))
+    .map(({ gauge, index }) => ({
+      key: `g${index}`,
       label: gauge.id,
       role: gauge.role,
       gaugeMm: gauge.gaugeMm,

@@ -1,16 +1,16 @@
 import { swatch } from "../charts/hatch.ts";
-import { gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
+import { assetMark, gaugeMark, ROLE_WORDS, radarMark } from "../charts/marks.ts";
 import type { GaugeRole, ReportInput, ReportRadar } from "../input.ts";
-import { type DrawnLayer, drawLayers } from "../map/layer.ts";
+import { type ClassedLayer, type DrawnLayer, drawLayers } from "../map/layer.ts";
 import { isOnMap, mapFrame, svgMap } from "../map/map.ts";
 import { html, joined, type Markup } from "../text/html.ts";
 import { projectionWords } from "../text/projection-words.ts";
 
 const ROLES: readonly GaugeRole[] = ["used", "doubted", "left-out"];
 
-/** The map with a plain button per layer: they work without any script. */
-export function mapSection(input: ReportInput): Markup {
-  const layers = drawLayers(input.layers, input.grid.nx, input.grid.ny, input.radars);
+/** The map with a plain button per layer: they work without any script. The script adds the rest, see `page/`. */
+export function mapSection(input: ReportInput, classed: readonly ClassedLayer[]): Markup {
+  const layers = drawLayers(classed, input.radars);
   if (layers.length === 0) return html``;
   const shown = Math.max(
     0,
@@ -35,6 +35,10 @@ function placesLegend(input: ReportInput): Markup {
   return html`<ul class="places-legend">${roles.map(
     (role) => html`<li>${swatch(gaugeMark(role, 11, 7, ""))}gauge ${ROLE_WORDS[role]}</li>`,
   )}${input.radars.some(standsSomewhere) && html`<li>${swatch(html`<g transform="scale(0.75)">${radarMark(14.7, 9.3, "")}</g>`)}radar</li>`}${
+    input.assets !== undefined &&
+    input.assets.length > 0 &&
+    html`<li>${swatch(assetMark(11, 7, "", ""))}asset</li>`
+  }${
     input.catchments.length > 0 &&
     html`<li>${swatch(html`<path class="outline" d="M2 11L7 3L16 4L20 11Z"/>`)}catchment</li>`
   }</ul>`;
@@ -52,6 +56,7 @@ function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
       .filter((radar) => standsSomewhere(radar) && !isOnMap(frame, radar))
       .map(({ id }) => `radar ${id}`),
     ...input.gauges.filter((gauge) => !isOnMap(frame, gauge)).map(({ id }) => `gauge ${id}`),
+    ...(input.assets ?? []).filter((asset) => !isOnMap(frame, asset)).map(({ id }) => `asset ${id}`),
   ];
   const block = layers[0].picture.block;
   const cellKm = grid.cellM / 1000;

@@ -36,9 +36,15 @@ export function depthCell(figure: DepthFigure, minObserved: number): Markup {
   }`;
 }
 
+/** The same as plain words with the unit, and with the reason where it is missing. */
+export function depthWords(figure: DepthFigure, minObserved: number): string {
+  if (!Number.isFinite(figure.mm)) return `– (${reasonOf(figure)})`;
+  const depth = isPartial(figure, minObserved) ? atLeastText(figure.mm) : mmText(figure.mm);
+  return `${depth}\u00a0mm${figure.atCap === true ? " (at cap)" : ""}`;
+}
+
 /** The same with its unit, for running text. */
 export function depthInText(figure: DepthFigure, minObserved: number): Markup {
   if (!Number.isFinite(figure.mm)) return missing(reasonOf(figure));
-  const depth = isPartial(figure, minObserved) ? atLeastText(figure.mm) : mmText(figure.mm);
-  return html`${depth}\u00a0mm${figure.atCap === true && " (at cap)"}`;
+  return html`${depthWords(figure, minObserved)}`;
 }

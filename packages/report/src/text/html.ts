@@ -37,6 +37,11 @@ export function escapeText(text: string): string {
   return text.replace(UNSAFE, (character) => ENTITIES[character] ?? "\ufffd");
 }
 
+/** The same without the entities: for text that a script sets as text. */
+export function plainText(text: string): string {
+  return text.replace(UNSAFE, (character) => (ENTITIES[character] === undefined ? "\ufffd" : character));
+}
+
 function render(insert: Insert): string {
   if (insert === undefined || insert === false) return "";
   if (insert instanceof Markup) return insert.text;
