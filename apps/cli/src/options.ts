@@ -284,6 +284,10 @@ export const flags = {
   outFile: () => new Option("-o, --out <file>", "the file to write").makeOptionMandatory(),
   outFolder: () => new Option("-o, --out <dir>", "the folder to write into").makeOptionMandatory(),
   overwrite: () => new Option("--force", "write over files that are there"),
+  seriesOf: () =>
+    new Option("--of <places>", "whose depths: the mean over each catchment, or the cell of each asset")
+      .choices(["catchments", "assets"])
+      .default("catchments"),
   step: () =>
     new Option(
       "--step <length>",

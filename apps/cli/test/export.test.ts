@@ -19,13 +19,17 @@ import { csvRows, FOREIGN, scratchFolder, writeIn } from "./total-kit.ts";
 // An hour of even rain, but for noise of half a decibel, with a hole from 12:20 to 12:40, longer than is bridged: what is exported is known by hand.
 const scratch = scratchFolder("export");
 const RUN = path.join(scratch, "run");
+/** An id of digits, which must not become a number. */
+const ASSETS = "id,name,lon,lat\n007,Pump,3.1,52.6\n";
 const at = (name: string) => path.join(scratch, "out", name);
 
 beforeAll(async () => {
   await writeScans(scratch, [25, 30, 35]);
   writeGauges(scratch, SOUND_GAUGES);
   writeAreas(scratch, [SOUND_AREA]);
-  const plan = writeIn(scratch, "plan.yaml", planText());
+  writeIn(scratch, "assets.csv", ASSETS);
+  const assets = "{ file: assets.csv, columns: { id: id, name: name, x: lon, y: lat } }";
+  const plan = writeIn(scratch, "plan.yaml", planText({ assets }));
   const { status, stderr } = await inProcess(["total", plan, "--out", RUN]);
   if (status !== 0) throw new Error(stderr);
 });
@@ -80,6 +84,12 @@ describe("series", () => {
       ["2031-06-01T13:00:00+00:15", "-999"],
       ["2031-06-01T13:30:00+00:15", "-999"],
     ]);
+  });
+
+  test("assets have a series too, of their cell", async () => {
+    await exported("series", RUN, "-o", at("assets.csv"), "--of", "assets", "--value", "radar");
+    const [first] = csvRows(at("assets.csv"));
+    expect(Math.abs(Number(first!["007_mm"]) / STEP_MM - 1)).toBeLessThan(0.08);
   });
 
   test("inches are millimetres over 25.4, and best is what was adjusted", async () => {

@@ -10,6 +10,7 @@ interface CommonFlags {
 }
 
 interface SeriesFlags extends CommonFlags {
+  readonly of: "catchments" | "assets";
   readonly step?: string;
   readonly as: "depth" | "rate";
   readonly value: "best" | "radar" | "adjusted";
@@ -31,7 +32,7 @@ export function registerExport(program: Command): void {
   const series = exportCommand(
     group,
     "series <dir>",
-    "One row a step, one column a catchment: no row is missing, a step that was not observed has a code of its own, and a change of step neither gains nor loses water.",
+    "One row a step, one column a catchment or asset: no row is missing, a step that was not observed has a code of its own, and a change of step neither gains nor loses water.",
     [
       "rainreckon export series run -o rain.csv",
       "rainreckon export series run -o rain.csv --step PT15M --as rate --stamp start --offset +01:00",
@@ -40,6 +41,7 @@ export function registerExport(program: Command): void {
   );
   for (const option of [
     flags.outFile(),
+    flags.seriesOf(),
     flags.step(),
     flags.depthOrRate(),
     flags.whichDepth(),

@@ -15,6 +15,7 @@ const DAY_MS = 24 * HOUR_MS;
 export interface SeriesAsked {
   readonly file: string;
   readonly replace: boolean;
+  readonly of: "catchments" | "assets";
   /** Length of a step; that of the run's series where left out. */
   readonly step?: string;
   readonly as: "depth" | "rate";
@@ -30,10 +31,10 @@ const COLUMN = { best: "depth_mm", radar: "radar_mm", adjusted: "adjusted_mm" } 
 const DECIMALS = { mm: 3, in: 5 } as const;
 
 /**
- * Writes one row a step and one column a catchment. Every step of the window is there; one that was not observed whole
+ * Writes one row a step and one column a catchment or asset. Every step of the window is there; one that was not observed whole
  * has the code for missing, and so has a first or last step that the window covers in part.
  *
- * @throws InputError (kind "usage") where the run has no catchments, or the step fits no day
+ * @throws InputError (kind "usage") where the run has no such places, or the step fits no day
  */
 export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promise<ExportReport> {
   const steps = stepsOf(run);
@@ -46,15 +47,15 @@ export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promis
       { kind: "usage" },
     );
   const wanted = wholeSteps(steps, stepMs, asked.offsetMinutes * 60_000);
-  const series = [...(await depthsById(run, steps, COLUMN[asked.value]))].map(([id, depthMm]) => ({
+  const series = [...(await depthsById(run, steps, asked))].map(([id, depthMm]) => ({
     id,
     values: inUnits(changeSteps(steps, depthMm, wanted), asked, stepMs),
   }));
   if (series.length === 0)
     throw new InputError(
-      "the run has no depths of catchments",
+      `the run has no depths of ${asked.of}`,
       run.folder,
-      "name a map of catchments in the plan, and run total again",
+      `name a file of ${asked.of} in the plan, and run total again`,
       { kind: "usage" },
     );
   const unit = unitName(asked);
@@ -91,7 +92,7 @@ export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promis
     rows: wanted.length,
     missing,
     says: [
-      `${counted(wanted.length, "step")} of ${lengthText(stepMs)}, ${counted(series.length, "catchment")}, ${asked.as === "rate" ? `mean rate in ${asked.units}/h` : `depth in ${asked.units}`} (${COLUMN[asked.value]} of catchments.csv)`,
+      `${counted(wanted.length, "step")} of ${lengthText(stepMs)}, ${counted(series.length, asked.of.slice(0, -1))}, ${asked.as === "rate" ? `mean rate in ${asked.units}/h` : `depth in ${asked.units}`} (${COLUMN[asked.value]} of ${asked.of}.csv)`,
       `stamped at the ${asked.stamp} of the step, ${asked.offsetMinutes === 0 ? "UTC" : `UTC${offsetText(asked.offsetMinutes)}`}`,
       missing === 0
         ? "no step is missing"
@@ -120,17 +121,18 @@ function wholeSteps(steps: readonly Interval[], stepMs: number, offsetMs: number
 async function depthsById(
   run: FinishedRun,
   steps: readonly Interval[],
-  column: string,
+  { of, value }: SeriesAsked,
 ): Promise<ReadonlyMap<string, Float64Array>> {
   const stepAt = new Map(steps.map(({ startEpochMs }, k) => [startEpochMs, k]));
+  const idColumn = of === "assets" ? "asset_id" : "catchment_id";
   const byId = new Map<string, Float64Array>();
-  for (const row of await tableOf(run, "catchments.csv")) {
-    const id = row.catchment_id ?? "";
+  for (const row of await tableOf(run, `${of}.csv`)) {
+    const id = row[idColumn] ?? "";
     const k = stepAt.get(Date.parse(row.start ?? ""));
     const depths = byId.get(id) ?? new Float64Array(steps.length).fill(Number.NaN);
     byId.set(id, depths);
     if (k !== undefined && Date.parse(row.end ?? "") === steps[k]!.endEpochMs)
-      depths[k] = numberOf(row[column]);
+      depths[k] = numberOf(row[COLUMN[value]]);
   }
   return byId;
 }
