@@ -6,6 +6,8 @@ import { compareSchema } from "./compare/compare-runs.ts";
 import { explainSchema } from "./explain/schema.ts";
 import { exportSchema } from "./export/schema.ts";
 import { manifestSchema } from "./manifest.ts";
+import { relationFitSchema } from "./relate/fit-schema.ts";
+import { relationRankSchema } from "./relate/rank-schema.ts";
 import { relationTableSchema } from "./relate/relation-table.ts";
 import { surveySchema } from "./survey/findings.ts";
 
@@ -17,6 +19,8 @@ export const schemas = {
   explain: explainSchema,
   export: exportSchema,
   "relate table": relationTableSchema,
+  "relate fit": relationFitSchema,
+  "relate rank": relationRankSchema,
   budget: budgetSchema,
   compare: compareSchema,
   manifest: manifestSchema,

@@ -61,8 +61,14 @@ export {
   rankRelations,
 } from "./relation-fit/rank-relations.ts";
 export type { PairUnits } from "./relation-fit/resample-pairs.ts";
-export { biasFreeFit, biasFreeLaw, relationError } from "./relation-fit/sum-fits.ts";
-export type { PowerLaw, ZrPairs } from "./relation-fit/zr-pairs.ts";
+export { biasFreeFit, biasFreeLaw, type RelationError, relationError } from "./relation-fit/sum-fits.ts";
+export {
+  choosePairs,
+  type PairChoice,
+  type PowerLaw,
+  pickPairs,
+  type ZrPairs,
+} from "./relation-fit/zr-pairs.ts";
 export {
   type ContingencyScore,
   type GaugeGroup,
