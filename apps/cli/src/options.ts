@@ -108,6 +108,26 @@ const layerHeights = z
   })
   .refine(({ bottomM, topM }) => bottomM < topM && topM <= 20_000, "the top must lie above the bottom");
 
+/** One length of time as ISO 8601 writes it, in ms. */
+const lengthOfTime = z
+  .string()
+  .transform(durationMs)
+  .refine((ms) => ms >= 60_000, "write a length such as PT30M, PT6H or P1D, from a minute on");
+
+/** Durations in minutes, or as ISO 8601 writes them, with commas: ms, ascending, each once. */
+const durationList = z.string().transform((text, context): readonly number[] => {
+  const list = text
+    .split(",")
+    .map((one) => (/^\d+$/.test(one.trim()) ? Number(one) * 60_000 : durationMs(one.trim())));
+  if (list.length <= 100 && list.every((ms) => ms >= 60_000 && ms <= 366 * 86_400_000))
+    return [...new Set(list)].sort((a, b) => a - b);
+  context.addIssue({
+    code: "custom",
+    message: 'write durations in minutes, or as lengths of time, with commas: "5,15,60" or "PT5M,PT1H,P1D"',
+  });
+  return z.NEVER;
+});
+
 /** A file that a chart is written to; its ending says what it holds. */
 const chartFile = z.string().regex(/\.(svg|html)$/i, "name a file that ends in .svg or .html");
 
@@ -279,6 +299,73 @@ export const flags = {
   csv: () => new Option("--csv", "all rows as CSV on stdout, one a stretch between two scans"),
   planOfRun: () =>
     new Option("--plan <file>", "the plan of the run, where it and its inputs were moved away from the run"),
+
+  // event
+  assetAsked: () =>
+    new Option(
+      "--asset <id>",
+      "an asset of the plan, or of --assets, by id or name; may be given several times",
+    ).argParser(several((value) => value)),
+  assetsFile: () =>
+    new Option(
+      "--assets <file>",
+      "points in place of the plan's assets: CSV with the columns id, name, lon, lat (WGS 84, degrees)",
+    ),
+  frequencyTable: () =>
+    new Option(
+      "--frequency <file>",
+      "your own table of return periods: CSV with duration_min, return_period_years, depth_mm[, low_mm, high_mm], and lines like # series: AMS, # kind: point, # source, # edition above the header",
+    ),
+  arealReduction: () =>
+    new Option(
+      "--areal-reduction <file>",
+      "factors on point depths, for means over areas: CSV with duration_min, area_km2, factor",
+    ),
+  asSeries: () =>
+    new Option(
+      "--as-series <which>",
+      "show periods of annual maxima (AMS) or of all exceedances (PDS), converted from the table's own by Langbein 1949",
+    ).choices(["AMS", "PDS"]),
+  dryTime: () =>
+    new Option(
+      "--dry-time <length>",
+      "dry time from which on a new event begins; the plan's where left out, else PT6H (common practice)",
+    ).argParser(through(lengthOfTime)),
+  thresholdMm: () =>
+    new Option(
+      "--threshold-mm <mm>",
+      "least depth of an event, mm; the plan's where left out, else 5 (house rule)",
+    ).argParser(numberFrom(0, 1000, "write a depth from 0 to 1000 mm")),
+  durations: () =>
+    new Option(
+      "--durations <list>",
+      'durations of largest depths, minutes or lengths of time with commas: "5,15,60", "PT1H,P1D"; 5 min to 7 days where left out',
+    ).argParser(through(durationList)),
+  clockAligned: () =>
+    new Option(
+      "--clock-aligned",
+      "only windows that begin at whole multiples of the duration from midnight (or the rain day's hour)",
+    ),
+  fromGrid: () =>
+    new Option(
+      "--from-grid",
+      "take places that the run holds no steps of from the intervals of totals.nc, instead of making the run again",
+    ),
+  eventCsv: () => new Option("--csv", "largest depths of all places as CSV on stdout, one a row"),
+  pages: () =>
+    new Option("--html", "a page for each place, and an index, in the folder of --out; they print and need no network"),
+  pagesFolder: () => new Option("--out <dir>", "folder for the pages of --html: a new or empty one"),
+  bundleFile: () =>
+    new Option(
+      "--bundle <file>",
+      "one archive (.tar.gz) of all that stands behind the figure of one place, and the command that makes it again",
+    ),
+  licence: () =>
+    new Option(
+      "--licence <text>",
+      'licence of data in the bundle, "radar: CC BY 4.0" say; may be given several times',
+    ).argParser(several((value) => value)),
+  preparedBy: () => new Option("--prepared-by <name>", "who prepared the bundle; a line to fill in where left out"),
 
   // export
   outFile: () => new Option("-o, --out <file>", "the file to write").makeOptionMandatory(),

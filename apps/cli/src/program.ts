@@ -2,6 +2,7 @@ import { Command } from "commander";
 import { EXIT_WORDS, NothingLeft, speakPlainly } from "./command.ts";
 import { registerBudget } from "./commands/budget.ts";
 import { registerCompare } from "./commands/compare.ts";
+import { registerEvent } from "./commands/event.ts";
 import { registerExplain } from "./commands/explain.ts";
 import { registerExport } from "./commands/export.ts";
 import { registerPlan } from "./commands/plan.ts";
@@ -28,6 +29,7 @@ export function buildProgram(): Command {
   registerSurvey(program);
   registerPlan(program);
   registerTotal(program);
+  registerEvent(program);
   registerExplain(program);
   registerExport(program);
   registerRelate(program);

@@ -3,6 +3,7 @@ import { budgetSchema } from "./budget/schema.ts";
 import { planReportSchema } from "./commands/plan.ts";
 import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
+import { eventSchema } from "./event/schema.ts";
 import { explainSchema } from "./explain/schema.ts";
 import { exportSchema } from "./export/schema.ts";
 import { manifestSchema } from "./manifest.ts";
@@ -16,6 +17,7 @@ export const schemas = {
   survey: surveySchema,
   plan: planReportSchema,
   total: totalSchema,
+  event: eventSchema,
   explain: explainSchema,
   export: exportSchema,
   "relate table": relationTableSchema,
