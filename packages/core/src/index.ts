@@ -190,6 +190,13 @@ export {
 } from "./echo/profile/vertical-profile.ts";
 export { DropNumberLearner, type LearnedDropNumber } from "./echo/rain-rate/drop-number.ts";
 export {
+  DropSizeLearner,
+  type DropSizeRatio,
+  dropSizeRatio,
+  joinDropSizes,
+  type LearnedDropSize,
+} from "./echo/rain-rate/drop-size.ts";
+export {
   type AttenuationRateLaw,
   type BandLaws,
   bandLaws,

@@ -122,6 +122,7 @@ export class CellTracer implements UnitTrace {
         azimuthDeg: null,
         rangeKm: null,
         beamHeightAslM: null,
+        dropSizeFactor: null,
         dropNumberFactor: null,
         gates: [],
         gridValues: Array.from(own, (index) => ({
@@ -186,6 +187,7 @@ export class CellTracer implements UnitTrace {
         azimuthDeg,
         rangeKm: distanceM / 1000,
         beamHeightAslM: speaker === undefined ? null : finite(layer.beamHeightAslM[cell]),
+        dropSizeFactor: finite(speaker?.spoken.made?.dropSizeFactor),
         dropNumberFactor: finite(speaker?.spoken.made?.dropNumberFactor),
         gates: [...(speaker?.gates[k] ?? [])],
         gridValues: [],

@@ -137,7 +137,7 @@ const METHOD_WORDS: Readonly<Record<RateMethod, string>> = {
 };
 
 /** Measured and corrected dBZ, every effect by name, screens, estimator, cap. */
-function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
+function dbzText({ gates, dropSizeFactor, dropNumberFactor }: ScanAccount): string {
   const words = [`measured ${range(gates.map(({ measuredDbz }) => measuredDbz))} dBZ`];
   for (const effect of EFFECTS) {
     const added = gates.filter(({ dbz }) => dbz !== null).map(({ effectsDb }) => effectsDb[effect]);
@@ -171,6 +171,8 @@ function dbzText({ gates, dropNumberFactor }: ScanAccount): string {
       const ofKdp = method === "kdp" || method === "hail-kdp" ? `, KDP ${kdp} deg/km` : "";
       words.push(`mostly by ${METHOD_WORDS[method]}${ofKdp}`);
     }
+    if (dropSizeFactor !== null && dropSizeFactor !== 1)
+      words.push(`R(Z) times ${decimals(dropSizeFactor, 3)} for the size of drops`);
     if (dropNumberFactor !== null && dropNumberFactor !== 1)
       words.push(`times ${decimals(dropNumberFactor, 3)} for the number of drops`);
   }

@@ -53,7 +53,10 @@ const scanSchema = z.strictObject({
   azimuthDeg: known.describe("of the cell's centre, from the radar"),
   rangeKm: known.describe("along the ground to the cell's centre"),
   beamHeightAslM: known,
-  dropNumberFactor: known.describe("factor on every rate from Z in this sweep"),
+  dropSizeFactor: known.describe(
+    "factor on every rate from Z for the size of drops, as ZDR tells it over the run",
+  ),
+  dropNumberFactor: known.describe("a further factor, for the number of drops, in this sweep"),
   gates: z.array(gateSchema),
   gridValues: z
     .array(z.strictObject({ value: known, rateMmPerHour: known }))

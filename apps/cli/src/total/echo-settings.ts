@@ -72,6 +72,7 @@ export function rateSettings({ echo: { rate } }: Plan): JobEcho["rate"] {
   const { convective, stratiform, polarimetric, hail } = rate;
   const none = {
     dropNumber: false,
+    dropSize: false,
     hail: false,
     kdpShare: 0,
     kdpZdrPart: 0,

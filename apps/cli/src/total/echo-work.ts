@@ -62,13 +62,18 @@ export class EchoWork {
     this.#chain.correct(echo, above);
     const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
     this.#chain.bringDown(echo, type);
-    const { rateMmPerHour, capped, method, dropNumberFactor } = this.#rates(echo, type, relation, true);
+    const { rateMmPerHour, capped, method, ...factors } = this.#rates(echo, type, relation, true);
     const companions = this.#companions(echo, relation);
     const trust = trustOf(echo);
     const beside = { codes: undefined, trust };
     return {
       gates: { rateMmPerHour, capped, ...beside, companions },
-      made: { method, dropNumberFactor, rainType: type },
+      made: {
+        method,
+        dropSizeFactor: factors.dropSizeFactor,
+        dropNumberFactor: factors.dropNumberFactor,
+        rainType: type,
+      },
       others: variants.map((variant) => {
         // The relation in use is mostly one of those that the headline is asked under.
         if (this.#isAlone && sameRelation(variant, relation)) return { rateMmPerHour, capped, ...beside };
@@ -120,7 +125,6 @@ export class EchoWork {
     const key = [a, b, phase, wavelengthM, isInUse].join();
     const { cap, minRateMmPerHour } = this.#radar;
     const { convective, stratiform, polarimetric } = this.#echo.rate;
-    const { zdrOffsetDb, dropNumber } = this.#echo.learned;
     const settings: GateRateSettings = {
       relation,
       // A headline under another relation is one under it alone.
@@ -131,7 +135,7 @@ export class EchoWork {
     };
     let tables = this.#tables.get(key);
     if (tables === undefined) {
-      tables = rateTables(settings, wavelengthM, zdrOffsetDb, dropNumber);
+      tables = rateTables(settings, wavelengthM, this.#echo.learned);
       this.#tables.set(key, tables);
     }
     return gateRates(echo, type, settings, tables);

@@ -239,7 +239,8 @@ export interface UnitResult {
 export interface RatesMade {
   /** Indices of `RATE_METHODS`. */
   readonly method: Uint8Array;
-  /** Factor on every rate from Z. */
+  /** Factors on every rate from Z, for the size and for the number of drops. */
+  readonly dropSizeFactor: number;
   readonly dropNumberFactor: number;
   /** Numbers of `RAIN_TYPE`; undefined where showers and widespread rain were not told apart. */
   readonly rainType: Uint8Array | undefined;

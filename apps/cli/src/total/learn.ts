@@ -4,10 +4,12 @@ import {
   BlockageLearner,
   ConsistencyLearner,
   DropNumberLearner,
+  DropSizeLearner,
   EchoChain,
   type EchoSettings,
   type Grid,
   InputError,
+  joinDropSizes,
   type LearnedEcho,
   LossCoefficientLearner,
   type LossEstimate,
@@ -74,6 +76,7 @@ interface Pupil extends Learner {
   readonly profile: ProfileLearner;
   readonly zdrOffset: ZdrOffsetLearner;
   readonly dropNumber: DropNumberLearner;
+  readonly dropSize: DropSizeLearner;
   readonly consistency: ConsistencyLearner;
 }
 
@@ -86,7 +89,8 @@ export interface Lesson {
 
 /**
  * What a run must know of its radars before its units of work: echo that never moves, the phase of the system, sectors
- * that are blocked, the loss in rain, the melting layer and the vertical profile, the offset of ZDR, the number of drops.
+ * that are blocked, the loss in rain, the melting layer and the vertical profile, the offset of ZDR, size and
+ * number of drops.
  *
  * Some rounds of each radar are read up to three times: as they are, for what is static; screened by that, for the
  * loss in rain; and some of them corrected, for the rest. It depends on which scans there are and on the plan, not on
@@ -153,6 +157,7 @@ function pupil(
     profile: new ProfileLearner(settings.profile),
     zdrOffset: new ZdrOffsetLearner(),
     dropNumber: new DropNumberLearner(),
+    dropSize: new DropSizeLearner(),
     consistency: new ConsistencyLearner(),
   };
 }
@@ -290,7 +295,7 @@ function fromNeighbours(
 /** Third reading: echo corrected by all that is known by now. */
 function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningInstant[], grid: Grid): void {
   for (const one of pupils) {
-    const { radar, settings, rainType, layer, profile, zdrOffset, dropNumber, consistency } = one;
+    const { radar, settings, rainType, layer, profile, zdrOffset, dropNumber, dropSize, consistency } = one;
     const chain = new EchoChain({ ...settings, profile: undefined }, one.known);
     for (const { rounds } of instants) {
       const round = rounds.get(radar);
@@ -299,6 +304,7 @@ function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningIns
         chain.correct(echo, above);
         zdrOffset.add(echo);
         dropNumber.add(echo);
+        dropSize.add(echo);
         consistency.add(echo);
         if (settings.profile === undefined) return;
         const type = rainType ? rainTypeOfGates(lookupOf(grid, radar, echo), grid, echo.dbz) : undefined;
@@ -306,13 +312,18 @@ function learnCorrected(pupils: readonly Pupil[], instants: readonly LearningIns
         profile.add(echo, type);
       });
     }
+    const { offsetDb } = zdrOffset.finish();
     one.known = {
       ...one.known,
-      zdrOffsetDb: zdrOffset.finish().offsetDb,
+      zdrOffsetDb: offsetDb,
       dropNumber: dropNumber.finish(),
+      dropSize: dropSize.finish(offsetDb),
       consistency: consistency.finish(),
     };
   }
+  // Drops are the rain's, not the radar's: one that cannot tell takes it from those that can.
+  const joined = joinDropSizes(pupils.map(({ known }) => known.dropSize));
+  for (const one of pupils) one.known = { ...one.known, dropSize: joined };
 }
 
 /** The vertical profile of each radar about the melting layer. */

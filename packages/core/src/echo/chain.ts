@@ -21,6 +21,7 @@ import { addEffect, type PolarEcho } from "./polar-echo.ts";
 import { correctProfile, type ProfileReport, type ProfileSettings } from "./profile/correct-profile.ts";
 import type { LearnedProfile } from "./profile/learned-profile.ts";
 import type { LearnedDropNumber } from "./rain-rate/drop-number.ts";
+import type { LearnedDropSize } from "./rain-rate/drop-size.ts";
 import { screenSweep } from "./screening/screen-sweep.ts";
 import type { ScreeningReport, ScreeningSettings } from "./screening/settings.ts";
 import type { LearnedStaticEcho } from "./screening/static-echo.ts";
@@ -52,6 +53,8 @@ export interface LearnedEcho {
   /** How much too high the radar's ZDR is; 0 where the scans do not tell. */
   readonly zdrOffsetDb: number;
   readonly dropNumber: LearnedDropNumber | undefined;
+  /** Of all radars of the run that tell of it. */
+  readonly dropSize: LearnedDropSize | undefined;
   /** How much more the radar shows than its own Z, ZDR and PHIDP allow; proposed, never applied. */
   readonly consistency: ConsistencyEstimate | undefined;
 }
@@ -65,6 +68,7 @@ export const NOTHING_LEARNED: LearnedEcho = {
   profile: undefined,
   zdrOffsetDb: 0,
   dropNumber: undefined,
+  dropSize: undefined,
   consistency: undefined,
 };
 

@@ -23,6 +23,7 @@ const ALL: GateRateSettings = {
   ...PLAIN,
   polarimetric: {
     dropNumber: true,
+    dropSize: true,
     hail: true,
     kdpShare: 0.9,
     kdpZdrPart: 0.5,
@@ -32,6 +33,11 @@ const ALL: GateRateSettings = {
 };
 /** S band of 2.8 GHz, for which the law of R(KDP) is 40.5 KDP^0.85 as it stands. */
 const S_BAND_M = 0.299792458 / 2.8;
+/** Ten blocks of 1000 km2 at 38.25 dBZ, whose R(Z) is 8.96 mm/h, with a fifth less by ZDR. */
+const DROP_SIZE = {
+  rainByZZdr: new Float64Array(10).fill(7171),
+  areaKm2: Float64Array.from({ length: 400 }, (_, at) => (at % 40 === 20 ? 1000 : 0)),
+};
 
 /** Every gate alike, 9 × 9 around the one that is looked at. */
 function uniform(gate: TestGate) {
@@ -199,9 +205,10 @@ describe("R(Z, ZDR) in moderate rain", () => {
 
   test.each([
     ["light rain", { ...rain, dbz: 28 }],
-    ["rain near the cap", { ...rain, dbz: 48 }],
+    ["rain at the cap", { ...rain, dbz: 53 }],
     ["a low correlation", { ...rain, rhohv: 0.97 }],
     ["no ZDR", { dbz: 38, rhohv: 0.99 }],
+    ["rain whose drops look round", { ...rain, zdrDb: 0.3 }],
   ])("has none in %s", (_, gate) => {
     expect(rateOf(gate, POLARIMETRIC).rate).toBeCloseTo(rainRateMmPerHour(gate.dbz, RELATION), 4);
   });
@@ -286,7 +293,12 @@ describe("hail", () => {
   test("an offset of ZDR is taken off first", () => {
     const { echo } = uniform({ dbz: 45, zdrDb: 0.4, rhohv: 0.94 });
     // 45 − (19 · 1.0 + 27) < 0 with ZDR 0.6 dB too low; without the offset 45 − 34.6 > 8.
-    const low = gateRates(echo, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M, -0.6));
+    const low = gateRates(
+      echo,
+      undefined,
+      POLARIMETRIC,
+      rateTables(POLARIMETRIC, S_BAND_M, { zdrOffsetDb: -0.6 }),
+    );
     expect(low.counts.hailGates).toBe(0);
     const plain = gateRates(echo, undefined, POLARIMETRIC, rateTables(POLARIMETRIC, S_BAND_M));
     expect(plain.counts.hailGates).toBe(81);
@@ -348,7 +360,7 @@ describe("number of drops", () => {
     const many = ((11.53 * 2.2) / 40.5) ** (1 / 0.85);
     const learner = new DropNumberLearner();
     learner.add(testEcho(60, 60, () => ({ dbz: 40, rhohv: 0.99, kdpDegPerKm: many }), S_BAND_M));
-    const tables = rateTables(POLARIMETRIC, S_BAND_M, 0, learner.finish());
+    const tables = rateTables(POLARIMETRIC, S_BAND_M, { zdrOffsetDb: 0, dropNumber: learner.finish() });
     expect(tables.dropNumberRatio).toBeGreaterThan(2.1);
     expect(tables.dropNumberRatio).toBeLessThan(2.3);
     for (const gate of [{ dbz: 25, rhohv: 0.99, kdpDegPerKm: 0 }, { dbz: 25 }]) {
@@ -392,7 +404,7 @@ describe("account of a gate", () => {
   test.each(Object.entries(echoes))("of %s ends on the stored rate, and its steps lead there", (_, gate) => {
     const echo = testEcho(90, 30, (ray, at) => (ray === 40 && at === 20 ? gate : echoes.rain), S_BAND_M);
     const attenuation = new Float32Array(echo.dbz.length).fill(0.008);
-    const tables = rateTables(settings, S_BAND_M, 0.05);
+    const tables = rateTables(settings, S_BAND_M, { zdrOffsetDb: 0.05, dropSize: DROP_SIZE });
     const { rateMmPerHour } = gateRates(echo, undefined, settings, tables, attenuation);
     const at = 40 * 30 + 20;
     const account = gateRateAccount(echo, undefined, settings, tables, at, attenuation);
@@ -400,7 +412,7 @@ describe("account of a gate", () => {
     const towards = (from: number, to: number, share: number) =>
       share > 0 ? from + share * (to - from) : from;
     let rate = Math.min(rainRateMmPerHour(echo.dbz[at], account.relation), account.capMmPerHour);
-    rate *= account.dropNumberFactor;
+    rate *= account.dropSizeFactor * account.dropNumberFactor;
     rate = towards(rate, account.zZdrRate, account.zZdrShare);
     rate = towards(rate, account.attenuationRate, account.attenuationShare);
     rate = towards(rate, account.kdpRate, account.kdpShare);

@@ -39,7 +39,9 @@ export interface GateRatesOfSweep {
   readonly capped: Uint8Array;
   /** Indices of {@link RATE_METHODS}. */
   readonly method: Uint8Array;
-  /** Factor on every rate from Z, see `dropNumberFactor`; 1 where nothing was changed. */
+  /** Factor on every rate from Z, see `dropSizeRatio`; 1 where nothing was changed. */
+  readonly dropSizeFactor: number;
+  /** A further one, see `dropNumberFactor`. */
   readonly dropNumberFactor: number;
   readonly counts: RateCounts;
   /** What the settings ask for and the sweep does not have, by name. */
@@ -69,7 +71,7 @@ const CONVECTIVE = markBit("convective");
  * Rain rate of every gate of a corrected sweep. Marks gates as hail and as convective.
  *
  * R(Z) of the relation for the gate's type, held by the cap. Where the band's polarimetric moments hold (liquid
- * rain, RHOHV of rain), the number of drops, R(Z, ZDR), R(A) and R(KDP) take over by shares that rise and fall
+ * rain, RHOHV of rain), size and number of drops, R(Z, ZDR), R(A) and R(KDP) take over by shares that rise and fall
  * without steps; under hail R(KDP) does, or the rain around it. Without those moments it is `gateRate`.
  *
  * @param echo - corrected for attenuation, ZDR and all; its `marks` are written to
@@ -91,6 +93,7 @@ export function gateRates(
     rateMmPerHour: first.rateMmPerHour,
     capped: first.capped,
     method: first.method,
+    dropSizeFactor: tables.dropSizeFactor,
     dropNumberFactor: blender.dropNumberFactor,
     counts: emptyCounts(),
     lacking: lackingMoments(echo, settings, tables),
@@ -114,6 +117,7 @@ export interface GateRateAccount extends RateParts {
   readonly relation: ZrRelation;
   readonly capDbz: number;
   readonly capMmPerHour: number;
+  readonly dropSizeFactor: number;
   readonly dropNumberFactor: number;
   /** Rain under hail, and where it is from; undefined where the gate has no part of hail. */
   readonly underHail: { readonly rateMmPerHour: number; readonly from: "kdp" | "neighbours" } | undefined;
@@ -122,7 +126,8 @@ export interface GateRateAccount extends RateParts {
 }
 
 /**
- * The account of a gate's rate, step by step: `zRate`, held by the cap and times the drop number's factor; from it
+ * The account of a gate's rate, step by step: `zRate`, held by the cap and times the factors of size and number of
+ * drops; from it
  * `zZdrShare`, then `attenuationShare`, then `kdpShare` of the way to the rate of each, which is `rainRate`; from
  * that `hailShare` of the way to the rain under hail; nothing below the cut-off.
  *
@@ -161,6 +166,7 @@ export function gateRateAccount(
     relation,
     capDbz,
     capMmPerHour,
+    dropSizeFactor: tables.dropSizeFactor,
     dropNumberFactor: blender.dropNumberFactor,
     underHail,
     rateMmPerHour: Math.fround(rate) < settings.minRateMmPerHour ? 0 : rate,

@@ -2,6 +2,7 @@ import { CUSTOMARY_CAP_MM_PER_HOUR } from "../../cap.ts";
 import type { PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
 import { dropNumberFactor } from "./drop-number.ts";
+import { Z_ZDR_CORRELATION, Z_ZDR_FROM_ZDR_DB } from "./drop-size.ts";
 import { rateOfAttenuation, rateOfKdp, rateOfKdpZdr, rateOfZZdr } from "./estimators.ts";
 import { hailShare, mayBeHail } from "./hail.ts";
 import { isLiquid, MomentReader } from "./moment-reader.ts";
@@ -38,12 +39,10 @@ export interface RateParts {
  */
 const KDP_DBZ = { from: 45, to: 53 } as const;
 const KDP_DEG_PER_KM = { from: 0.2, to: 0.5 } as const;
-const Z_ZDR_DBZ = { from: 28, full: 35, fading: 42, to: 48 } as const;
+const Z_ZDR_DBZ = { from: 28, full: 35, fading: 45, to: 53 } as const;
 const ATTENUATION_DBZ = { from: 25, to: 35 } as const;
 /** Drop number's factor beyond which R(Z, ZDR), made for the usual number, is out. */
 const Z_ZDR_MOST_FACTOR = 1.5;
-/** RHOHV of rain without a trace of hail, which lowers ZDR. */
-const Z_ZDR_CORRELATION = { from: 0.97, to: 0.985 } as const;
 /** RHOHV of rain alone. */
 const RAIN_CORRELATION = { from: 0.95, to: 0.98 } as const;
 
@@ -111,7 +110,7 @@ export class RateBlender {
     const { parts } = this;
     const dbz = this.#echo.dbz[gate];
     const ready = this.#readyOf(gate);
-    const factor = this.dropNumberFactor;
+    const factor = this.#tables.dropSizeFactor * this.dropNumberFactor;
     let zRate = (dbz >= ready.capDbz ? ready.capMmPerHour : rateOfZ(dbz, ready)) * factor;
     if (ready.capIsRate && zRate > ready.capMmPerHour) zRate = ready.capMmPerHour;
     parts.zRate = zRate;
@@ -131,9 +130,9 @@ export class RateBlender {
 
   /** R(KDP) of a gate with hail; NaN where there is no KDP. */
   kdpRateUnderHail(gate: number): number {
-    const { laws } = this.#tables;
+    const { laws, kdpFactor } = this.#tables;
     if (laws === undefined) return Number.NaN;
-    const rate = rateOfKdp(this.#reader.kdpDegPerKm(gate), laws.kdp);
+    const rate = kdpFactor * rateOfKdp(this.#reader.kdpDegPerKm(gate), laws.kdp);
     return Math.min(mostPolarimetric(this.#readyOf(gate)), Math.max(0, rate));
   }
 
@@ -142,7 +141,7 @@ export class RateBlender {
   }
 
   #join(gate: number, dbz: number, ready: ReadyRelation): void {
-    const { laws, kdpZdrPart } = this.#tables;
+    const { laws, kdpZdrPart, kdpFactor } = this.#tables;
     const { polarimetric } = this.#settings;
     if (laws === undefined || polarimetric === undefined) return;
     const { kdpShare, attenuationShare } = polarimetric;
@@ -161,10 +160,17 @@ export class RateBlender {
     let rate = parts.zRate;
     if (mayUseZdr && zdrTrust > 0) {
       parts.zZdrRate = Math.min(most, rateOfZZdr(Math.min(dbz, ready.capDbz), zdr, laws.zZdr));
-      const correlation = Number.isNaN(rhohv) ? 1 : ramp(rhohv, Z_ZDR_CORRELATION.from, Z_ZDR_CORRELATION.to);
+      const correlation = Number.isNaN(rhohv)
+        ? 1
+        : ramp(rhohv, Z_ZDR_CORRELATION.from, Z_ZDR_CORRELATION.full);
       const { from, full, fading, to } = Z_ZDR_DBZ;
       parts.zZdrShare =
-        this.#zZdrShare * zdrTrust * correlation * ramp(dbz, from, full) * (1 - ramp(dbz, fading, to));
+        this.#zZdrShare *
+        zdrTrust *
+        correlation *
+        ramp(zdr, Z_ZDR_FROM_ZDR_DB.from, Z_ZDR_FROM_ZDR_DB.full) *
+        ramp(dbz, from, full) *
+        (1 - ramp(dbz, fading, to));
       rate += parts.zZdrShare * (parts.zZdrRate - rate);
     }
     const attenuation = attenuationShare > 0 ? this.#attenuation?.[gate] : undefined;
@@ -183,7 +189,7 @@ export class RateBlender {
         ramp(dbz, KDP_DBZ.from, KDP_DBZ.to) *
         ramp(kdp, KDP_DEG_PER_KM.from, KDP_DEG_PER_KM.to);
       if (share > 0) {
-        let kdpRate = rateOfKdp(kdp, laws.kdp);
+        let kdpRate = kdpFactor * rateOfKdp(kdp, laws.kdp);
         if (kdpZdrPart > 0 && zdrTrust > 0) {
           kdpRate += kdpZdrPart * zdrTrust * rainLike * (rateOfKdpZdr(kdp, zdr, laws.kdpZdr) - kdpRate);
         }

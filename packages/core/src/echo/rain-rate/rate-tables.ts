@@ -2,6 +2,7 @@ import type { CapSetting } from "../../cap.ts";
 import type { ZrRelation } from "../../zr-relation.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
 import { type LearnedDropNumber, learnedDropNumberRatio } from "./drop-number.ts";
+import { dropSizeRatio, kdpFactorOf, type LearnedDropSize } from "./drop-size.ts";
 import { bandLaws } from "./estimators.ts";
 import { type RateTables, type ReadyRelation, readyRelation } from "./ready-relation.ts";
 
@@ -9,6 +10,8 @@ import { type RateTables, type ReadyRelation, readyRelation } from "./ready-rela
 export interface PolarimetricRateSettings {
   /** Lets the relation follow the number of drops that KDP tells, see `dropNumberFactor`. */
   readonly dropNumber: boolean;
+  /** Lets the relation follow the size of drops that ZDR tells over the run, see `dropSizeRatio`. */
+  readonly dropSize: boolean;
   /** Marks hail and takes it out of the rain. */
   readonly hail: boolean;
   /** Share of R(KDP) in heavy rain, 0 to 1, where it is well measured. */
@@ -36,28 +39,35 @@ export interface GateRateSettings {
 
 /**
  * House rule, from what helps in storms with known rain: R(KDP) in the heaviest rain and under hail, the number
- * of drops over whole sweeps, R(Z, ZDR) and R(KDP, ZDR) at S band. R(A) is there to be asked for.
+ * of drops over whole sweeps, their size over the run, R(Z, ZDR) and R(KDP, ZDR) at S band. R(A) is there to be asked for.
  */
 export const POLARIMETRIC_RATE_DEFAULTS: PolarimetricRateSettings = {
   dropNumber: true,
+  dropSize: true,
   hail: true,
   kdpShare: 1,
   attenuationShare: 0,
 };
 
+/** What a run has learned of a radar that its rates depend on. */
+export interface LearnedRates {
+  /** How much too high the radar's ZDR is; 0 where nothing is known. */
+  readonly zdrOffsetDb: number;
+  readonly dropNumber?: LearnedDropNumber | undefined;
+  /** Of all radars that tell of it: the size of drops is the rain's. */
+  readonly dropSize?: LearnedDropSize | undefined;
+}
+
 /**
  * Makes settings ready.
  *
  * @param wavelengthM - of the radar; undefined leaves every polarimetric rate out
- * @param zdrOffsetDb - how much too high the radar's ZDR is, as learned
- * @param dropNumber - as learned over the run
  * @throws RangeError as `resolveCap`, and where the cut-off, a share or the offset is none
  */
 export function rateTables(
   settings: GateRateSettings,
   wavelengthM: number | undefined,
-  zdrOffsetDb = 0,
-  dropNumber?: LearnedDropNumber,
+  { zdrOffsetDb, dropNumber, dropSize }: LearnedRates = { zdrOffsetDb: 0 },
 ): RateTables {
   const {
     relation,
@@ -83,6 +93,8 @@ export function rateTables(
   // Where snow is said to fall, no law of rain has a say.
   const isForSnow = byType.some((one) => one.relation.phase === "snow");
   const laws = wavelengthM === undefined || isForSnow ? undefined : bandLaws(wavelengthM);
+  const follows = polarimetric?.dropSize === true && laws !== undefined && dropSize !== undefined;
+  const dropSizeFactor = follows ? (dropSizeRatio(dropSize, ready)?.factor ?? 1) : 1;
   return {
     byType,
     laws,
@@ -90,5 +102,7 @@ export function rateTables(
     kdpZdrPart: kdpZdrPart ?? laws?.usualZdrShare ?? 0,
     zdrOffsetDb,
     dropNumberRatio: dropNumber === undefined ? undefined : learnedDropNumberRatio(dropNumber, ready),
+    dropSizeFactor,
+    kdpFactor: laws === undefined ? 1 : kdpFactorOf(dropSizeFactor, relation.b, laws.kdp.exponent),
   };
 }

@@ -26,6 +26,10 @@ export interface RateTables {
   readonly zdrOffsetDb: number;
   /** Rain by KDP over rain by Z under `relation`, as the run has learned it; undefined where it has not. */
   readonly dropNumberRatio: number | undefined;
+  /** Factor on every R(Z) for the size of drops, as the run has learned it; 1 where it has not. See `dropSizeRatio`. */
+  readonly dropSizeFactor: number;
+  /** The same on R(KDP), see `kdpFactorOf`. */
+  readonly kdpFactor: number;
 }
 
 /** @throws RangeError as `resolveCap` */
