@@ -56,7 +56,10 @@ export function findAsked(
   return { points, areas: asked.catchments.map((id) => findCatchment(run, id)) };
 }
 
-function placed(run: Pick<PreparedRun, "grid" | "map">, point: LonLat): { readonly cell: number; readonly name: string } {
+function placed(
+  run: Pick<PreparedRun, "grid" | "map">,
+  point: LonLat,
+): { readonly cell: number; readonly name: string } {
   const name = placeText(point.lonDeg, point.latDeg);
   const { cell } = placePoint(run.grid, run.map, point, "nearest");
   if (cell >= 0) return { cell, name };
