@@ -156,6 +156,11 @@ export interface ReportAsset {
   /** In the grid's coordinates, metres. */
   readonly xM: number;
   readonly yM: number;
+  /** Of the cell that holds it. */
+  readonly depth?: DepthFigure;
+  /** Shallowest and deepest of the nine cells about it, mm. */
+  readonly nineCells?: { readonly leastMm: number; readonly mostMm: number };
+  readonly series?: Hyetograph;
 }
 
 /** Longitudes and latitudes at the corners of equal parts of the grid; rows from the north. */
@@ -184,7 +189,8 @@ export interface ReportCatchment {
 
 /** Depths per step of one side: shape [stepCount] each; depth over the observed part, NaN where none was. */
 export interface StepSeries {
-  readonly role: "gauge" | "radar" | "adjusted";
+  /** "held-out" is adjusted radar as it would be without the gauge that it stands beside. */
+  readonly role: "gauge" | "radar" | "adjusted" | "held-out";
   readonly depthMm: ArrayLike<number>;
   readonly observedFraction: ArrayLike<number>;
 }
@@ -298,6 +304,8 @@ export interface ReportInput {
   /** Absent where the grid's place on Earth is not to be told. */
   readonly lattice?: GeographicLattice;
   readonly assets?: readonly ReportAsset[];
+  /** How many more assets there are than the page shows. */
+  readonly assetsLeftOut?: number;
   readonly radars: readonly ReportRadar[];
   readonly gauges: readonly ReportGauge[];
   readonly catchments: readonly ReportCatchment[];

@@ -159,10 +159,10 @@ figcaption{font-size:.85rem;margin:4px 0 0}
 .bars{stroke:none}
 .bars.gauge{fill:var(--gauge)}
 .bars.radar{fill:var(--radar);fill-opacity:.55}
-.bars.adjusted{fill:var(--adjusted)}
+.bars.adjusted,.bars.held-out{fill:var(--adjusted)}
 .step-line{fill:none;stroke-width:1.6}
 .step-line.radar{stroke:var(--radar)}
-.step-line.adjusted{stroke:var(--adjusted)}
+.step-line.adjusted,.step-line.held-out{stroke:var(--adjusted)}
 .step-line.gauge{stroke:var(--gauge)}
 .cut{font-size:11px;font-weight:600}
 .scroll{position:relative;overflow:auto;max-width:100%;border:1px solid var(--line);border-radius:8px;background:var(--panel);overflow-wrap:normal}

@@ -485,7 +485,7 @@ export function inventedInput(): ReportInput {
           ),
         },
         {
-          role: "adjusted",
+          role: "held-out",
           ...steps(
             Number.isNaN(gauge.radarMm) ? 0 : gauge.radarMm * 1.176,
             21 + i,

@@ -1,20 +1,18 @@
 import { type CellFractions, durationMs } from "@rainreckon/accumulation";
 import { CHOICE_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
-import { gaugeKey, RELATIONS } from "@rainreckon/core";
+import { RELATIONS } from "@rainreckon/core";
 import { displayText } from "@rainreckon/formats";
 import type {
   AccountLine,
   DepthFigure,
-  Hyetograph,
-  MapLayer,
   RelationFigure,
+  ReportAsset,
   ReportCatchment,
   ReportGauge,
   ReportInput,
   ReportScore,
 } from "@rainreckon/report";
 import type { ScoreTable } from "@rainreckon/verification";
-import { gaugeSteps } from "@rainreckon/verification";
 import type { ManifestNotice } from "../manifest.ts";
 import type { PlanRadar } from "../plan/schema.ts";
 import { countText, lengthText } from "../ui/numbers.ts";
@@ -24,10 +22,9 @@ import type { AssembledRun } from "./assemble.ts";
 import { districtMean, type RunCaution } from "./cautions.ts";
 import { changedSettings } from "./changed-settings.ts";
 import { relationOf } from "./conversion.ts";
-import { echoAccount, screenedDepthMm, wordsByRadar } from "./echo-account.ts";
+import { echoAccount, wordsByRadar } from "./echo-account.ts";
 import {
   type ArealFigure,
-  adjustedSteps,
   bestMm,
   districtFigure,
   headlineUnderRelations,
@@ -35,7 +32,11 @@ import {
   windowFigure,
 } from "./figures.ts";
 import { reasonOf } from "./outputs.ts";
+import { rangeOf3x3 } from "./place-planes.ts";
 import type { PreparedRun } from "./prepare.ts";
+import { reportMap } from "./report-map.ts";
+import { areaHyetograph, gaugeHyetograph } from "./report-series.ts";
+import type { UnitStore } from "./unit-store.ts";
 
 interface ReportSources {
   readonly run: PreparedRun;
@@ -44,7 +45,11 @@ interface ReportSources {
   readonly cautions: readonly RunCaution[];
   readonly adjustedTotalMm: Float32Array | undefined;
   readonly notices: readonly ManifestNotice[];
+  readonly store: UnitStore;
 }
+
+/** Assets that the report's map shows; assets.csv has them all. */
+const MOST_ASSETS = 200;
 
 /** All that the report says, from what a run came to. */
 export function reportInput(sources: ReportSources): ReportInput {
@@ -102,9 +107,9 @@ export function reportInput(sources: ReportSources): ReportInput {
           },
         }),
     cautions,
-    grid: run.grid,
-    layers: layersOf(sources),
-    shownLayerId: sources.adjustedTotalMm === undefined ? "radar-total" : "adjusted-total",
+    ...reportMap(sources),
+    assets: run.assets.slice(0, MOST_ASSETS).map((asset, k) => assetOf(asset, k, figure, sources)),
+    assetsLeftOut: Math.max(0, run.assets.length - MOST_ASSETS),
     radars: run.shape.radars
       .map(({ site }) => {
         const [xM, yM] = run.map.forward(site.lonDeg, site.latDeg);
@@ -129,22 +134,9 @@ export function reportInput(sources: ReportSources): ReportInput {
       };
     }),
     gaugeHyetographs: comparison.gauges.map((gauge, g) => gaugeHyetograph(gauge, g, sources)),
-    catchmentHyetographs: run.catchments.map((catchment, a): Hyetograph => {
-      const windowMm = windowFigure(catchment.cells, sources).adjustedMm;
-      return {
-        id: catchment.id,
-        label: catchment.name,
-        startEpochMs: run.window.startEpochMs,
-        stepMs: run.stepMs,
-        sides: [
-          {
-            role: adjustment.applied ? "adjusted" : "radar",
-            depthMm: adjustment.applied ? adjustedSteps(a, windowMm, sources) : total.areas.depthMm[a],
-            observedFraction: total.areas.observedFraction[a],
-          },
-        ],
-      };
-    }),
+    catchmentHyetographs: run.catchments.map((catchment, a) =>
+      areaHyetograph(catchment, a, windowFigure(catchment.cells, sources).adjustedMm, sources),
+    ),
     relations: relationFigures(sources, district),
     scores: {
       pairs: `pairs over ${lengthText(durationMs(plan.pairs.interval))}, on the time that gauge and radar both observed`,
@@ -189,72 +181,6 @@ function crossValidationStatement({ adjustment, choice }: Comparison): ReportInp
   };
 }
 
-function layersOf({ total, adjustedTotalMm }: ReportSources): MapLayer[] {
-  const { planes } = total;
-  const loudest = new Float32Array(planes.totalMm.length).fill(Number.NaN);
-  for (let cell = 0; cell < loudest.length; cell++) {
-    let most = 0;
-    for (let r = 0; r < planes.radarShare.length; r++) {
-      if (planes.radarShare[r][cell] > most) {
-        most = planes.radarShare[r][cell];
-        loudest[cell] = r;
-      }
-    }
-  }
-  const layers: MapLayer[] = [
-    {
-      quantity: "depthMm",
-      id: "radar-total",
-      label: "Radar total",
-      what: "Depth from radar alone over the observed part of the window, mm.",
-      values: planes.totalMm,
-    },
-  ];
-  if (adjustedTotalMm !== undefined) {
-    layers.unshift({
-      quantity: "depthMm",
-      id: "adjusted-total",
-      label: "Adjusted total",
-      what: "Depth from radar adjusted to the gauges over the observed part of the window, mm.",
-      values: adjustedTotalMm,
-    });
-  }
-  layers.push(
-    {
-      quantity: "fraction",
-      id: "observed",
-      label: "Observed",
-      what: "Share of the window that at least one radar observed.",
-      values: planes.observedFraction,
-    },
-    {
-      quantity: "heightM",
-      id: "beam-height",
-      label: "Beam height",
-      what: "Height of the beam centre above mean sea level, averaged over the observed time, m.",
-      values: planes.beamHeightAslM,
-    },
-    {
-      quantity: "radarIndex",
-      id: "who-spoke",
-      label: "Who spoke",
-      what: "The radar that carries most of the weight in each cell.",
-      values: loudest,
-    },
-  );
-  const screened = screenedDepthMm(total);
-  if (screened.some((mm) => mm > 0)) {
-    layers.push({
-      quantity: "depthMm",
-      id: "screened",
-      label: "Screened out",
-      what: "Depth that echo taken out as no rain would have made, mm; no part of the total.",
-      values: screened,
-    });
-  }
-  return layers;
-}
-
 function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGauge {
   const { gauge, verdict, whole } = compared;
   const { series, station } = gauge;
@@ -278,32 +204,25 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
   };
 }
 
-function gaugeHyetograph({ gauge }: ComparedGauge, g: number, { run, total }: ReportSources): Hyetograph {
-  const { series, station } = gauge;
-  // A gauge that reports less often than the series step is drawn on its own step.
-  const own = series.stepMs ?? run.stepMs;
-  const perStep = Math.max(1, Math.ceil(own / run.stepMs));
-  const stepMs = perStep * run.stepMs;
-  const count = Math.floor(run.steps.length / perStep);
-  const measured = gaugeSteps(series, run.window.startEpochMs, stepMs, Math.max(1, count));
-  const depthMm = new Float64Array(count).fill(Number.NaN);
-  const observedFraction = new Float64Array(count);
-  for (let step = 0; step < count * perStep; step++) {
-    const mm = total.gauges.depthMm[g][step];
-    if (Number.isNaN(mm)) continue;
-    const into = Math.floor(step / perStep);
-    depthMm[into] = Number.isNaN(depthMm[into]) ? mm : depthMm[into] + mm;
-    observedFraction[into] += total.gauges.observedFraction[g][step] / perStep;
-  }
+/** An asset: the figures of its cell, and the range of the nine cells about it. */
+function assetOf(
+  asset: PreparedRun["assets"][number],
+  k: number,
+  figure: (areal: ArealFigure, mm: number) => DepthFigure,
+  sources: ReportSources,
+): ReportAsset {
+  const { run, total, adjustedTotalMm } = sources;
+  const areal = windowFigure(asset.cells, sources);
+  const around = rangeOf3x3(run.grid, adjustedTotalMm ?? total.planes.totalMm, asset.cell);
+  const [xM, yM] = run.map.forward(asset.lonDeg, asset.latDeg);
   return {
-    id: gaugeKey(series),
-    label: station.name === undefined ? `${series.network} ${series.id}` : `${series.id} ${station.name}`,
-    startEpochMs: run.window.startEpochMs,
-    stepMs,
-    sides: [
-      { role: "gauge", depthMm: measured.depthMm, observedFraction: measured.observedFraction },
-      { role: "radar", depthMm, observedFraction },
-    ],
+    id: asset.id,
+    ...(asset.name === "" ? {} : { name: asset.name }),
+    xM,
+    yM,
+    depth: figure(areal, bestMm(areal)),
+    ...(around === undefined ? {} : { nineCells: around }),
+    series: areaHyetograph(asset, run.catchments.length + k, areal.adjustedMm, sources),
   };
 }
 

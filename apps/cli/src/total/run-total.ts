@@ -128,7 +128,7 @@ export async function runTotal(
   await writeGauges(sources);
   await writeScores(sources);
   const report = renderReport(
-    reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all }),
+    reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all, store }),
   );
   await writeText(folder.draft("report.html"), report);
   const files = [

@@ -4,17 +4,12 @@ import { html, type Markup } from "../text/html.ts";
 import { mmText, svgNumber } from "../text/numbers.ts";
 import { timeTicks } from "../text/times.ts";
 import { hatchPattern } from "./hatch.ts";
+import { SIDE_WORDS } from "./sides.ts";
 import { observedSumMm, stepCount } from "./steps.ts";
 
 const WIDTH = 360;
 const HEIGHT = 178;
 const MARGIN = { left: 34, right: 8, top: 10, bottom: 40 };
-
-export const SIDE_WORDS: Readonly<Record<StepSeries["role"], string>> = {
-  gauge: "gauge",
-  radar: "radar",
-  adjusted: "adjusted radar",
-};
 
 /** Edges of the bars of one side, as path data; steps below the width of a hair are still drawn. */
 function bars(
@@ -97,7 +92,7 @@ export function svgHyetograph(id: string, graph: Hyetograph, zone: string, topMm
   const x = (step: number) => MARGIN.left + (innerWidth * step) / Math.max(1, count);
   const y = (mm: number) => floor - ((floor - MARGIN.top) * Math.min(mm, topMm)) / topMm;
   const times = timeTicks(window, zone, 4);
-  const sums = graph.sides.map((side) => {
+  const sums = graph.sides.slice(0, 2).map((side) => {
     const sum = observedSumMm(side);
     return `${SIDE_WORDS[side.role]} ${Number.isNaN(sum) ? "not observed" : `${mmText(sum)} mm`}`;
   });

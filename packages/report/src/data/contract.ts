@@ -1,3 +1,5 @@
+import type { StepSeries } from "../input.ts";
+
 /**
  * What the page's script is handed, as JSON inside the page. Plain data, shared by the writer of the page and the
  * script that reads it; texts are clean of control characters and are only ever set as text.
@@ -109,7 +111,7 @@ export interface PageSeries {
   /** True where steps were joined to keep the page small. */
   readonly joined: boolean;
   readonly sides: readonly {
-    readonly role: "gauge" | "radar" | "adjusted";
+    readonly role: StepSeries["role"];
     /** Hundredths of a millimetre; null where not observed. */
     readonly centiMm: readonly (number | null)[];
     /** Steps that were observed in part, each with its share in per cent. */

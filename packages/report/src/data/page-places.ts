@@ -1,6 +1,13 @@
 import { ROLE_WORDS } from "../charts/marks.ts";
 import { coarsen, stepCount } from "../charts/steps.ts";
-import type { DepthFigure, Hyetograph, ReportCatchment, ReportGauge, ReportInput } from "../input.ts";
+import type {
+  DepthFigure,
+  Hyetograph,
+  ReportAsset,
+  ReportCatchment,
+  ReportGauge,
+  ReportInput,
+} from "../input.ts";
 import { depthWords, isPartial } from "../text/figures.ts";
 import { plainText } from "../text/html.ts";
 import { areaText, mmText, percentText, ratioText } from "../text/numbers.ts";
@@ -12,7 +19,11 @@ const MOST_PANEL_STEPS = 288;
 
 /** Whatever on the map can be picked, with what is known of it. */
 export function placesOf(input: ReportInput): PagePlace[] {
-  const all = [...input.gaugeHyetographs, ...input.catchmentHyetographs];
+  const all = [
+    ...input.gaugeHyetographs,
+    ...input.catchmentHyetographs,
+    ...(input.assets ?? []).flatMap(({ series }) => series ?? []),
+  ];
   const sides = all.reduce((sum, graph) => sum + graph.sides.length, 0);
   const most = Math.max(24, Math.min(MOST_PANEL_STEPS, Math.floor(MOST_NUMBERS / Math.max(1, sides))));
   const seriesOf = (graph: Hyetograph | undefined) =>
@@ -37,10 +48,9 @@ export function placesOf(input: ReportInput): PagePlace[] {
           ]
         : [],
     ),
-    ...(input.assets ?? []).map(({ id, name, xM, yM }, i) => ({
-      ...plainPlace(`a${i}`, "asset", id, name, xM, yM),
-      facts: [],
-      cautions: ["A single cell of the map is less certain than a mean over a catchment."],
+    ...(input.assets ?? []).map((asset, i) => ({
+      ...assetPlace(asset, i, input.minObserved),
+      ...seriesOf(asset.series),
     })),
   ];
 }
@@ -128,15 +138,42 @@ function catchmentPlace(catchment: ReportCatchment, index: number, input: Report
       ...fact("Wettest cell", words(maxCell)),
       ...fact("Area", `${areaText(areaKm2)} km²`),
     ],
-    cautions: [
-      ...(depth.reason === undefined || depth.reason === "" ? [] : [plainText(depth.reason)]),
-      ...(isPartial(depth, minObserved)
-        ? ["Part was not observed: the true depth is at least what is printed."]
-        : []),
-      ...(depth.atCap === true ? ["At cap: a capped rain rate went into it, so it may be too low."] : []),
-    ],
+    cautions: marksOf(depth, minObserved),
     ...(range === undefined ? {} : { range: [range.p10Mm, range.p90Mm] as const }),
   };
+}
+
+function assetPlace(
+  { id, name, xM, yM, depth, nineCells }: ReportAsset,
+  index: number,
+  minObserved: number,
+): PagePlace {
+  return {
+    ...plainPlace(`a${index}`, "asset", id, name, xM, yM),
+    facts: [
+      ...(depth === undefined ? [] : fact("Depth of its cell", depthWords(depth, minObserved))),
+      ...(nineCells === undefined
+        ? []
+        : fact("The nine cells about it", `${mmText(nineCells.leastMm)} to ${mmText(nineCells.mostMm)} mm`)),
+      ...(depth === undefined ? [] : fact("Observed, of the time", percentText(depth.observedFraction))),
+    ],
+    cautions: [
+      "A single cell of the map is less certain than a mean over a catchment.",
+      ...marksOf(depth, minObserved),
+    ],
+  };
+}
+
+/** Cautions that a depth carries. */
+function marksOf(depth: DepthFigure | undefined, minObserved: number): string[] {
+  if (depth === undefined) return [];
+  return [
+    ...(depth.reason === undefined || depth.reason === "" ? [] : [plainText(depth.reason)]),
+    ...(isPartial(depth, minObserved)
+      ? ["Part was not observed: the true depth is at least what is printed."]
+      : []),
+    ...(depth.atCap === true ? ["At cap: a capped rain rate went into it, so it may be too low."] : []),
+  ];
 }
 
 /** A point to fly the cursor to: the middle of the first ring's box. */

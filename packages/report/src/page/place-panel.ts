@@ -1,7 +1,8 @@
+import { SIDE_WORDS } from "../charts/sides.ts";
 import type { PageData, PagePlace, PageSeries } from "../data/contract.ts";
 import { depthText, inInches, type Unit } from "./depths.ts";
 import { button, el, need } from "./dom.ts";
-import { type SeriesChart, SIDE_NAMES, seriesChart } from "./series-chart.ts";
+import { type SeriesChart, seriesChart } from "./series-chart.ts";
 import type { Choice, Store } from "./store.ts";
 import { tableTools } from "./tables.ts";
 import type { Clock } from "./times.ts";
@@ -108,10 +109,8 @@ function notesOn({ kind }: PagePlace, { joined, sides }: PageSeries): string {
   const notes = [
     "Each side sums the steps that it observed; what it did not observe is hatched and adds nothing.",
   ];
-  if (kind === "gauge" && sides.some(({ role }) => role === "adjusted")) {
-    notes.push(
-      "The adjusted series had this gauge in it where the gauge is used: judge by “adjusted without it”.",
-    );
+  if (kind === "gauge" && sides.some(({ role }) => role === "held-out")) {
+    notes.push("Adjusted without it: what the adjustment would give here had this gauge no part in it.");
   }
   if (joined) notes.push("Steps are joined to keep this page small.");
   return notes.join(" ");
@@ -149,7 +148,7 @@ function stepTable({ title }: PagePlace, series: PageSeries, unit: Unit, clock: 
         el("th", { scope: "col" }, "Local"),
         el("th", { scope: "col" }, "UTC"),
         ...series.sides.map(({ role }) =>
-          el("th", { scope: "col", class: "number" }, `${SIDE_NAMES[role]} ${unit}`),
+          el("th", { scope: "col", class: "number" }, `${SIDE_WORDS[role]} ${unit}`),
         ),
       ),
     ),

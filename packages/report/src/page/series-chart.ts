@@ -1,4 +1,5 @@
 import { ticks } from "d3-array";
+import { SIDE_WORDS } from "../charts/sides.ts";
 import type { PageSeries } from "../data/contract.ts";
 import { depthText, MM_PER_INCH, type Unit } from "./depths.ts";
 import { el, svg } from "./dom.ts";
@@ -14,12 +15,6 @@ const BOTTOM = 24;
 const INNER = WIDTH - LEFT - RIGHT;
 const SUMS_TOP = TOP + PANEL + GAP;
 const HEIGHT = SUMS_TOP + PANEL + BOTTOM;
-
-export const SIDE_NAMES: Readonly<Record<Side["role"], string>> = {
-  gauge: "gauge",
-  radar: "radar",
-  adjusted: "adjusted radar",
-};
 
 type Side = PageSeries["sides"][number];
 
@@ -110,18 +105,18 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
     const at = clock.instant(series.startEpochMs + (step + 1) * series.stepMs);
     const parts = sides.map(({ role, centiMm, partly }, k) => {
       const centi = centiMm[step];
-      if (centi === null || centi === undefined) return `${SIDE_NAMES[role]} not observed`;
+      if (centi === null || centi === undefined) return `${SIDE_WORDS[role]} not observed`;
       const share = partly.find(([which]) => which === step)?.[1];
       const depth = `${share === undefined ? "" : "≥ "}${depthText(centi / 100, unit)}`;
       const sum = depthText((sums[k][step] * scale) / 100, unit);
-      return `${SIDE_NAMES[role]} ${depth} ${unit}${share === undefined ? "" : ` (${share} % seen)`}, so far ${sum}`;
+      return `${SIDE_WORDS[role]} ${depth} ${unit}${share === undefined ? "" : ` (${share} % seen)`}, so far ${sum}`;
     });
     return `Ending ${at}: ${parts.join("; ")}`;
   };
   const sumWords = sides.map(({ role, depths }, k) => {
     const known = sums[k].filter(Number.isFinite);
     const hole = depths.some(Number.isNaN) ? "≥ " : "";
-    return `${SIDE_NAMES[role]} ${known.length === 0 ? "not observed" : `${hole}${depthText((known[known.length - 1] * scale) / 100, unit)} ${unit}`}`;
+    return `${SIDE_WORDS[role]} ${known.length === 0 ? "not observed" : `${hole}${depthText((known[known.length - 1] * scale) / 100, unit)} ${unit}`}`;
   });
   let step = -1;
   const move = (to: number) => {
@@ -274,7 +269,7 @@ function key(sides: readonly Side[], hasRange: boolean): HTMLUListElement {
         at === 0
           ? svg("path", { class: `bars ${role}`, d: "M4 14V4H10V14ZM12 14V8H18V14Z" })
           : svg("path", { class: `step-line ${role}`, d: "M1 11H8V4H15V9H21" }),
-        SIDE_NAMES[role],
+        SIDE_WORDS[role],
       ),
     ),
     hasRange && item(svg("path", { class: "range", d: "M7 2h8M11 2V12M7 12h8" }), "p10 to p90 of the sum"),

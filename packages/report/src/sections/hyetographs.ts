@@ -1,5 +1,6 @@
 import { hatchPattern, swatch } from "../charts/hatch.ts";
-import { SIDE_WORDS, svgHyetograph } from "../charts/hyetograph.ts";
+import { svgHyetograph } from "../charts/hyetograph.ts";
+import { SIDE_WORDS } from "../charts/sides.ts";
 import { coarsen, deepestStepMm, observedSumMm, stepCount } from "../charts/steps.ts";
 import type { Hyetograph, ReportInput, StepSeries } from "../input.ts";
 import { missing } from "../text/figures.ts";
@@ -85,7 +86,7 @@ function sumText(side: StepSeries): string {
 }
 
 function chart(id: string, graph: Hyetograph, zone: string, topMm: number): Markup {
-  return html`<figure class="multiple"><figcaption><b>${graph.label}</b><span>${joined(graph.sides.map(sumText), " · ")}</span></figcaption>${svgHyetograph(
+  return html`<figure class="multiple"><figcaption><b>${graph.label}</b><span>${joined(graph.sides.slice(0, 2).map(sumText), " · ")}</span></figcaption>${svgHyetograph(
     id,
     graph,
     zone,

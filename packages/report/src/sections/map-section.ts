@@ -4,6 +4,7 @@ import type { GaugeRole, ReportInput, ReportRadar } from "../input.ts";
 import { type ClassedLayer, type DrawnLayer, drawLayers } from "../map/layer.ts";
 import { isOnMap, mapFrame, svgMap } from "../map/map.ts";
 import { html, joined, type Markup } from "../text/html.ts";
+import { countText } from "../text/numbers.ts";
 import { projectionWords } from "../text/projection-words.ts";
 
 const ROLES: readonly GaugeRole[] = ["used", "doubted", "left-out"];
@@ -63,5 +64,9 @@ function mapNotes(input: ReportInput, layers: readonly DrawnLayer[]): Markup {
   return html`<p class="small">${grid.nx} × ${grid.ny} cells of ${cellKm} km. ${
     block > 1 &&
     html`Drawn thinned, ${block} × ${block} cells to one of ${block * cellKm} km: the mean of the observed ones (for radars the most frequent). Tables use every cell. `
-  }Axes: km east and north of the origin of ${projectionWords(grid.crs)}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}</p>`;
+  }Axes: km east and north of the origin of ${projectionWords(grid.crs)}.${outside.length > 0 && html` Beyond the edge: ${joined(outside, ", ")}.`}${
+    input.assetsLeftOut !== undefined &&
+    input.assetsLeftOut > 0 &&
+    html` Of the assets the first ${countText(input.assets?.length ?? 0)} are drawn; ${countText(input.assetsLeftOut)} more are in assets.csv.`
+  }</p>`;
 }
