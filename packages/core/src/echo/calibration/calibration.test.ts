@@ -2,7 +2,7 @@ import { describe, expect, test } from "vitest";
 import { marshallPalmerSpectrum, normalisedSpectrum } from "../../drop-sizes.ts";
 import { echoOf, noiseOf } from "../blockage/echo-fixture.ts";
 import { ConsistencyLearner } from "./consistency-learner.ts";
-import { oblateEcho, phaseOfEcho, ZDR_STEP_DB } from "./drop-phase.ts";
+import { DROP_SHAPES, oblateEcho, phaseOfEcho, ZDR_STEP_DB } from "./drop-phase.ts";
 import { proposeCalibration } from "./propose-calibration.ts";
 
 const S_BAND_M = 299_792_458 / 2.8e9;
@@ -36,6 +36,34 @@ describe("oblate drops", () => {
     expect(s.kdpOfZ[at(1)]! / s.kdpOfZ[at(2)]!).toBeGreaterThan(1.5);
     // Rayleigh-Gans: KDP is proportional to the frequency but for the permittivity, which hardly changes.
     expect(c.kdpOfZ[at(1.5)]! / s.kdpOfZ[at(1.5)]!).toBeCloseTo(2, 1);
+  });
+});
+
+describe("shapes of drops", () => {
+  // Axis ratios as the papers' formulas give them, by hand: at 2 and 4 mm.
+  test.each([
+    ["pruppacherBeard", 0.906, 0.782],
+    ["beardChuang", 0.92758, 0.77935],
+    ["andsager", 0.9419, 0.7894],
+    ["brandes", 0.938, 0.78807],
+  ] as const)("%s", (name, at2Mm, at4Mm) => {
+    expect(DROP_SHAPES[name](2)).toBeCloseTo(at2Mm, 3);
+    expect(DROP_SHAPES[name](4)).toBeCloseTo(at4Mm, 3);
+  });
+
+  // Worked out independently with numpy (same scattering, own code): dB below the first shape, mean over mu of 0 to 4.
+  test.each([
+    [1.2, [0, -1.82, -3.01, -2.75]],
+    [1.5, [0, -1.38, -2.44, -2.17]],
+    [2, [0, -0.81, -1.66, -1.46]],
+  ])("at a ZDR of %d dB they have KDP over Z apart by what the interval is made of", (zdrDb, expected) => {
+    const at = Math.round(zdrDb / ZDR_STEP_DB);
+    const db = Object.values(DROP_SHAPES).map(
+      (shape) => 10 * Math.log10(phaseOfEcho(S_BAND_M, shape).kdpOfZ[at]!),
+    );
+    db.forEach((value, k) => {
+      expect(Math.abs(value - db[0]! - expected[k]!)).toBeLessThan(0.1);
+    });
   });
 });
 
@@ -109,10 +137,39 @@ describe("what is proposed", () => {
 
   test("by hand: one radar with one source has its value and the errors of it", () => {
     const [one] = proposeCalibration([{ siteId: "a", consistency: sure(2) }], []);
-    // Errors of 0.1, 0.4 and 0.6 dB make a variance of 0.53; 6 dB of what is thinkable one of 36.
-    const expected = 2 / 0.53 / (1 / 0.53 + 1 / 36);
+    // Errors of 0.1, 0.4 and 1 dB make a variance of 1.17; 6 dB of what is thinkable one of 36.
+    const expected = 2 / 1.17 / (1 / 1.17 + 1 / 36);
     expect(one!.errorDb).toBeCloseTo(expected, 6);
-    expect(one!.highDb - one!.errorDb).toBeCloseTo(1.96 / Math.sqrt(1 / 0.53 + 1 / 36), 6);
+    expect(one!.highDb - one!.errorDb).toBeCloseTo(1.96 / Math.sqrt(1 / 1.17 + 1 / 36), 6);
+    // 1.9 ± 2.1 dB may be the shape of drops; 3 dB and more is none's.
+    expect(one!.offsetDb).toBeUndefined();
+    expect(proposeCalibration([{ siteId: "a", consistency: sure(3) }], [])[0]!.offsetDb).toBeCloseTo(-2.9, 1);
+  });
+
+  test.each([1.8, -1.8])(
+    "two radars that are both %d dB off may have met drops of another shape",
+    (errorDb) => {
+      const both = proposeCalibration(
+        [
+          { siteId: "s", consistency: sure(errorDb) },
+          { siteId: "c", consistency: sure(1.1 * errorDb) },
+        ],
+        [{ oneSiteId: "s", otherSiteId: "c", valueDb: 0, standardErrorDb: 0.2, sampleCount: 500 }],
+      );
+      expect(both.map(({ offsetDb }) => offsetDb)).toEqual([undefined, undefined]);
+      expect(both[0]!.reason).toMatch(/may read true: -?1\.[789]/);
+    },
+  );
+
+  test("two radars that differ, and are off by the same either way: neither is named", () => {
+    const both = proposeCalibration(
+      [
+        { siteId: "s", consistency: sure(1) },
+        { siteId: "c", consistency: sure(-1) },
+      ],
+      [{ oneSiteId: "s", otherSiteId: "c", valueDb: 2, standardErrorDb: 0.2, sampleCount: 500 }],
+    );
+    expect(both.map(({ offsetDb }) => offsetDb)).toEqual([undefined, undefined]);
   });
 
   test("sources that contradict each other make the interval wider", () => {

@@ -15,10 +15,27 @@ export interface OblateEcho {
 const CLASS_MM = 0.1;
 const CLASS_COUNT = 80;
 
-/** Axis ratio of falling drops, 1.03 - 0.062 D, D in mm. Pruppacher and Beard (1970), Q. J. R. Meteorol. Soc. 96, 247-256. */
-function axisRatio(diameterMm: number): number {
-  return Math.min(1, 1.03 - 0.062 * diameterMm);
-}
+/** Axis ratio of falling drops by their diameter in mm, not held to 1. */
+export type DropShape = (diameterMm: number) => number;
+
+/** Beard and Chuang (1987), J. Atmos. Sci. 44, 1509-1524: drops at rest in their fall. From memory. */
+const equilibrium: DropShape = (d) => 1.0048 + d * (5.7e-4 + d * (-2.628e-2 + d * (3.682e-3 - d * 1.677e-4)));
+
+/**
+ * Shapes that are published; the first one is used.
+ *
+ * Pruppacher and Beard (1970), Q. J. R. Meteorol. Soc. 96, 247-256; Beard and Chuang (1987); Andsager, Beard and Laird
+ * (1999), J. Atmos. Sci. 56, 2673-2683, for drops of 1.1 to 4.4 mm that oscillate, equilibrium beside them; Brandes, Zhang
+ * and Vivekanandan (2002), J. Appl. Meteorol. 41, 674-685. All but the first from memory.
+ */
+export const DROP_SHAPES: Readonly<
+  Record<"pruppacherBeard" | "beardChuang" | "andsager" | "brandes", DropShape>
+> = {
+  pruppacherBeard: (d) => 1.03 - 0.062 * d,
+  beardChuang: equilibrium,
+  andsager: (d) => (d > 1.1 && d < 4.4 ? 1.012 - d * (0.01445 + d * 0.0103) : equilibrium(d)),
+  brandes: (d) => 0.9951 + d * (0.0251 + d * (-0.03644 + d * (5.303e-3 - d * 2.492e-4))),
+};
 
 /**
  * Polarisability of an oblate drop over that of a sphere of vacuum's size, along one axis: (eps - 1) / (1 + L (eps - 1)) / 3,
@@ -44,7 +61,12 @@ function depolarisingFactor(ratio: number): number {
  * Z, ZDR and KDP of a spectrum of drops with upright axes, all small against the wavelength (Rayleigh-Gans scattering): good
  * at S band, and at C and X band as long as ZDR stays below about 2 dB, before large drops resonate.
  */
-export function oblateEcho(spectrum: DropSpectrum, wavelengthM: number, temperatureC = 10): OblateEcho {
+export function oblateEcho(
+  spectrum: DropSpectrum,
+  wavelengthM: number,
+  temperatureC = 10,
+  shape: DropShape = DROP_SHAPES.pruppacherBeard,
+): OblateEcho {
   const permittivity = waterPermittivity(frequencyHz(wavelengthM) / 1e9, temperatureC);
   const sphere = dielectricFactor(permittivity);
   let [zH, zV, phase] = [0, 0, 0];
@@ -52,7 +74,7 @@ export function oblateEcho(spectrum: DropSpectrum, wavelengthM: number, temperat
     const diameterMm = (k + 0.5) * CLASS_MM;
     const count =
       spectrum.n0 * diameterMm ** spectrum.mu * Math.exp(-spectrum.lambdaPerMm * diameterMm) * CLASS_MM;
-    const vertical = depolarisingFactor(axisRatio(diameterMm));
+    const vertical = depolarisingFactor(Math.min(1, shape(diameterMm)));
     const alongH = polarisability(permittivity, (1 - vertical) / 2);
     const alongV = polarisability(permittivity, vertical);
     const z = (count * diameterMm ** 6) / sphere;
@@ -85,7 +107,7 @@ export const ZDR_RANGE_DB = { low: 0.5, high: 2.5 } as const;
  * coefficients are not taken over but worked out by {@link oblateEcho}: the mean in dB over gamma spectra with mu of 0 to
  * 4. Drop shapes decide the level: others that are published lower KDP / Z by 1 to 3 dB.
  */
-export function phaseOfEcho(wavelengthM: number): PhaseOfEcho {
+export function phaseOfEcho(wavelengthM: number, shape?: DropShape): PhaseOfEcho {
   const steps = Math.round(ZDR_RANGE_DB.high / ZDR_STEP_DB) + 1;
   const sumDb = new Float64Array(steps);
   const shapes = [0, 1, 2, 3, 4];
@@ -93,7 +115,7 @@ export function phaseOfEcho(wavelengthM: number): PhaseOfEcho {
     let before: { zdrDb: number; db: number } | undefined;
     let step = 0;
     for (let dm = 0.5; step < steps && dm < 6; dm += 0.05) {
-      const echo = oblateEcho(normalisedSpectrum(8000, mu, dm), wavelengthM);
+      const echo = oblateEcho(normalisedSpectrum(8000, mu, dm), wavelengthM, undefined, shape);
       const here = { zdrDb: echo.zdrDb, db: 10 * Math.log10(echo.kdpDegPerKm / echo.zMm6PerM3) };
       for (; step < steps && step * ZDR_STEP_DB <= here.zdrDb; step++) {
         const from = before ?? here;

@@ -43,19 +43,22 @@ export interface CalibrationProposal {
 }
 
 /**
- * What each absolute source is wrong by in common for all radars, as a standard deviation. Consistency: shapes of drops.
- * Gauges: a Z-R relation that does not fit the storm, which looks just like a calibration error (house rule).
+ * What each absolute source is wrong by in common for all radars, as a standard deviation. Consistency: shapes of drops;
+ * the four of `DROP_SHAPES` have KDP / Z spread by 1.2 dB at a ZDR of 1.2 dB, 1.0 at 1.5 dB and 0.7 at 2 dB. Gauges: a Z-R
+ * relation that does not fit the storm, which looks just like a calibration error (house rule).
  */
-const COMMON_ERROR_DB = { consistency: 0.6, gauges: 2 } as const;
+const COMMON_ERROR_DB = { consistency: 1, gauges: 2 } as const;
 /**
- * What consistency is wrong by for each radar by itself: ZDR's own calibration, and loss. Together with the above 0.7 dB;
- * for the method 0.5 dB is claimed (Goddard, Tan and Thurai 1994, from memory).
+ * What consistency is wrong by for each radar by itself: ZDR's own calibration, and loss. 0.5 dB is claimed for the method
+ * where the shape is known (Goddard, Tan and Thurai 1994, from memory).
  */
 const OWN_CONSISTENCY_ERROR_DB = 0.4;
 /** Radars are rarely farther off; keeps what nobody knows from being infinite (house rule). */
 const UNKNOWN_DB = 6;
 const INTERVAL = 1.96;
 const LEAST_OFFSET_DB = 0.5;
+/** Of two radars that cannot both read true, one is named where it is farther off by this than the other (house rule). */
+const FARTHER_OFF_DB = 1;
 
 /**
  * Proposes one calibration offset for each radar.
@@ -64,7 +67,9 @@ const LEAST_OFFSET_DB = 0.5;
  * their spread, and little, since they cannot tell a calibration from drops of unusual size. All are joined by least
  * squares weighted with their errors, those that a source makes for all radars alike among them. Where sources contradict
  * each other by more than their errors allow, all errors are raised by as much (Birge 1932, Phys. Rev. 40, 207-227). An
- * offset is proposed only where the interval of 95 % leaves out 0, and where it is 0.5 dB or more.
+ * offset is proposed only where it is 0.5 dB or more and the interval of 95 % leaves out 0. What a source is wrong by for
+ * all radars alike does not make them differ: where the interval of the difference of two radars leaves out 0, one of them
+ * is off in any case, and an offset is proposed to the one that is farther off by 1 dB or more.
  *
  * @param overlaps - from `overlapDifference`; those of radars that are not listed are passed over
  * @returns in the order of `radars`; what was found is on top of any offset that the echo had been given already
@@ -127,11 +132,26 @@ export function proposeCalibration(
     words[one]?.push({ ...wordOf("overlap", valueDb, standardErrorDb), relativeTo: otherSiteId });
     words[other]?.push({ ...wordOf("overlap", 0 - valueDb, standardErrorDb), relativeTo: oneSiteId });
   }
-  const { value, error } = normal.solve();
+  const { value, error, errorOfDifference } = normal.solve();
   const discord = normal.discord(value, words.filter((said) => said.length > 0).length);
-  return radars.map(({ siteId }, at) =>
-    proposalOf(siteId, value[at] as number, (error[at] as number) * discord, words[at] as CalibrationWord[]),
-  );
+  return radars.map(({ siteId }, at) => {
+    const own = value[at] as number;
+    const said = words[at] as CalibrationWord[];
+    const nearer = radars.findIndex((_, other) => {
+      const theirs = value[other] as number;
+      return (
+        other !== at &&
+        (words[other] as CalibrationWord[]).length > 0 &&
+        Math.abs(own) - Math.abs(theirs) >= FARTHER_OFF_DB &&
+        Math.abs(own - theirs) > INTERVAL * discord * errorOfDifference(at, other)
+      );
+    });
+    const beside =
+      nearer < 0
+        ? undefined
+        : { siteId: radars[nearer]?.siteId as string, differenceDb: own - (value[nearer] as number) };
+    return proposalOf(siteId, own, (error[at] as number) * discord, said, beside);
+  });
 }
 
 function wordOf(source: CalibrationWord["source"], valueDb: number, errorDb: number): CalibrationWord {
@@ -143,6 +163,7 @@ function proposalOf(
   errorDb: number,
   standardErrorDb: number,
   words: readonly CalibrationWord[],
+  beside: { readonly siteId: string; readonly differenceDb: number } | undefined,
 ): CalibrationProposal {
   if (words.length === 0) {
     const reason = "nothing tells: no ZDR and PHIDP in rain, no overlap with another radar, no gauges";
@@ -163,11 +184,14 @@ function proposalOf(
   const interval = `${lowDb.toFixed(1)} to ${highDb.toFixed(1)} dB`;
   const reason = isSmall
     ? `reads true within ${LEAST_OFFSET_DB} dB (${interval})`
-    : holdsZero
-      ? `may read true: ${errorDb.toFixed(1)} dB, but anything from ${interval} fits`
-      : `reads ${Math.abs(errorDb).toFixed(1)} dB too ${errorDb > 0 ? "high" : "low"} (${interval})`;
+    : holdsZero && beside !== undefined
+      ? `reads ${Math.abs(errorDb).toFixed(1)} dB too ${errorDb > 0 ? "high" : "low"} (${interval}): it stands ${Math.abs(beside.differenceDb).toFixed(1)} dB ${beside.differenceDb > 0 ? "above" : "below"} ${beside.siteId}, and is farther off`
+      : holdsZero
+        ? `may read true: ${errorDb.toFixed(1)} dB, but anything from ${interval} fits`
+        : `reads ${Math.abs(errorDb).toFixed(1)} dB too ${errorDb > 0 ? "high" : "low"} (${interval})`;
   // The sum keeps an offset of nothing at 0, not -0.
-  const offsetDb = holdsZero || isSmall ? undefined : 0 - Math.round(10 * errorDb) / 10;
+  const offsetDb =
+    isSmall || (holdsZero && beside === undefined) ? undefined : 0 - Math.round(10 * errorDb) / 10;
   return { siteId, errorDb, lowDb, highDb, offsetDb, reason, words };
 }
 
@@ -223,7 +247,11 @@ class NormalEquations {
   }
 
   /** Values of the unknowns with their standard errors; every unknown has an observation of its own, so there is one answer. */
-  solve(): { readonly value: Float64Array; readonly error: Float64Array } {
+  solve(): {
+    readonly value: Float64Array;
+    readonly error: Float64Array;
+    errorOfDifference(one: number, other: number): number;
+  } {
     const inverse = inverseOf(this.#matrix, this.#size);
     const value = new Float64Array(this.#size);
     const error = new Float64Array(this.#size);
@@ -235,7 +263,13 @@ class NormalEquations {
       }
       error[row] = Math.sqrt(inverse[row * this.#size + row] as number);
     }
-    return { value, error };
+    const covariance = (row: number, column: number) => inverse[row * this.#size + column] as number;
+    return {
+      value,
+      error,
+      errorOfDifference: (one, other) =>
+        Math.sqrt(covariance(one, one) + covariance(other, other) - 2 * covariance(one, other)),
+    };
   }
 }
 
