@@ -1,4 +1,5 @@
-// Benches, as ratios in one run: `npm run bench [rate|decode|kriging|cost|memory]`. Machines are noisy: read the ratios.
+// Benches, as ratios in one run: `npm run bench [rate|decode|kriging|cost|memory|chain]`. Machines are noisy: read the ratios.
+// What the steps from echo to rain cost: `npm run bench -- chain [--storm FOLDER]`, the demo's storm, made there once.
 // And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
@@ -110,6 +111,17 @@ if (asked("decode")) {
 }
 
 if (asked("kriging")) await packageBench("packages/adjustment/bench/local-kriging.ts");
+
+if (asked("chain")) {
+  const at = wanted.indexOf("--storm");
+  const storm = at < 0 ? path.join(scratch, "storm") : path.resolve(wanted[at + 1]);
+  const plan = path.join(storm, "plan.yaml");
+  if (!existsSync(plan)) {
+    must([generator, storm, "--preset", "demo"]);
+    must([program, "plan", storm, "-o", plan, "--quiet"]);
+  }
+  await (await bundled("apps/cli/bench/chain.ts"))(plan);
+}
 
 // A script of another language's array libraries can do the plain decoding, as a floor that is not ours.
 function decodeSeconds(folder, count) {
