@@ -9,6 +9,16 @@ export {
 export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
 export { type FrameSeries, FrameStack } from "./data/frame-stack.ts";
 export type {
+  EventIndexInput,
+  EventIndexRow,
+  EventPageInput,
+  EventPeak,
+  EventRunWords,
+  EventWords,
+  FrequencyCurve,
+} from "./event/event-input.ts";
+export { renderEventIndex, renderEventPage } from "./event/event-page.ts";
+export type {
   AccountLine,
   AdjustmentStatement,
   Caution,

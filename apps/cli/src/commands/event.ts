@@ -4,6 +4,7 @@ import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { eventSchema } from "../event/schema.ts";
 import type { LonLat } from "../explain/places-asked.ts";
 import { flags } from "../options.ts";
+import { counted } from "../ui/numbers.ts";
 import { terminalOf } from "../ui/terminal.ts";
 
 interface EventFlags {
@@ -22,6 +23,8 @@ interface EventFlags {
   readonly fromGrid?: boolean;
   readonly plan?: string;
   readonly csv?: boolean;
+  readonly html?: boolean;
+  readonly out?: string;
 }
 
 const WORDS = `
@@ -68,6 +71,8 @@ export function registerEvent(program: Command): void {
     flags.clockAligned(),
     flags.fromGrid(),
     flags.eventCsv(),
+    flags.pages(),
+    flags.pagesFolder(),
     flags.planOfRun(),
   ])
     command.addOption(option);
@@ -81,7 +86,7 @@ export function registerEvent(program: Command): void {
       });
     }
     const { eventsOfRun } = await import("../event/event.ts");
-    const { report } = await eventsOfRun(
+    const outcome = await eventsOfRun(
       folder,
       {
         catchments: options.catchment ?? [],
@@ -101,6 +106,12 @@ export function registerEvent(program: Command): void {
       },
       terminal,
     );
+    const { report } = outcome;
+    if (options.out !== undefined) {
+      const { writePages } = await import("../event/pages.ts");
+      const files = await writePages(outcome, options.out);
+      terminal.note(`${counted(files.length, "page")} in ${options.out}: begin with ${files[0]}`);
+    }
     if (options.csv === true) {
       const { eventCsv } = await import("../event/event-csv.ts");
       terminal.result((await eventCsv(report)).trimEnd());

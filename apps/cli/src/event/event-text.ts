@@ -1,6 +1,7 @@
 import { displayText } from "@rainreckon/formats";
 import { counted, depthText, lengthText, localText, placeText, utcText } from "../ui/numbers.ts";
 import { textTable } from "../ui/table.ts";
+import { boundedText, eventDetails, reasonsOf, shareText, windowDetails } from "./event-words.ts";
 import { areaText, yearsText } from "./frequency-told.ts";
 import type { EventAccount, EventReport, Peak, PlaceReport } from "./schema.ts";
 
@@ -57,7 +58,10 @@ function placeLines(place: PlaceReport, zone: string, withPeriods: boolean): str
       "",
       "  ",
     ),
-    ...wrapped(windowWords(place), "  "),
+    ...wrapped(
+      `${boundedText(place.window.depthMm, place.window.lowerBound)} mm in the window, ${windowDetails(place).join("; ")}`,
+      "  ",
+    ),
     ...place.notes.flatMap((note) => wrapped(note, "  note: ", "        ")),
     ...(events.length === 0
       ? wrapped(
@@ -84,59 +88,24 @@ function placeLines(place: PlaceReport, zone: string, withPeriods: boolean): str
       : [
           "",
           ...wrapped(
-            `largest depths by the gauge itself, a point (verdict: ${displayText(place.gauge.verdict)}; ${depthText(place.gauge.depthMm)} mm, observed ${percent(place.gauge.observedFraction)})`,
+            `largest depths by the gauge itself, a point (verdict: ${displayText(place.gauge.verdict)}; ${depthText(place.gauge.depthMm)} mm, observed ${shareText(place.gauge.observedFraction)})`,
             "  ",
           ),
           ...indented(peakTable(place.gauge.maxima, withPeriods)),
         ]),
-    ...reasonLines(maxima),
+    ...reasonsOf(maxima).flatMap((line) => wrapped(line, "  ")),
   ];
-}
-
-function windowWords({ window, figure, kind }: PlaceReport): string {
-  const words = [
-    `${bounded(window.depthMm, window.lowerBound)} mm in the window, ${figure === "adjusted" ? "radar adjusted to gauges" : "radar alone"}`,
-    `observed ${percent(window.observedFraction)}`,
-    ...(window.atCap ? ["at cap: a lower bound"] : []),
-    ...(figure === "adjusted" ? [`${depthText(window.radarMm)} mm before adjustment`] : []),
-    ...(window.gaugesOnlyMm === null ? [] : [`${depthText(window.gaugesOnlyMm)} mm by the gauges alone`]),
-    ...(window.range3x3 === null
-      ? []
-      : [
-          `${depthText(window.range3x3.leastMm)} to ${depthText(window.range3x3.mostMm)} mm in the ${window.range3x3.cellCount} cells about it`,
-        ]),
-    window.p10Mm === null || window.p90Mm === null
-      ? "how sure it is the run does not say"
-      : `p10 to p90 ${depthText(window.p10Mm)} to ${depthText(window.p90Mm)} mm`,
-    ...(kind === "catchment" && window.volumeM3 !== null ? [`${volumeText(window.volumeM3)} m3`] : []),
-  ];
-  return words.join("; ");
 }
 
 function eventLines(event: EventAccount, zone: string): string[] {
   const [start, end] = [Date.parse(event.start), Date.parse(event.end)];
-  const known = [
-    ...(event.mayBeginEarlier ? ["may have begun before the window"] : []),
-    ...(event.mayEndLater ? ["may go on after it"] : []),
-    ...(event.unseenSteps > 0 ? [`${counted(event.unseenSteps, "step")} within it not seen`] : []),
-    ...(event.atCap ? ["at cap"] : []),
-  ];
-  const before = event.antecedent.map(
-    ({ hours, depthMm, lowerBound, observedFraction }) =>
-      `${hours} h ${observedFraction === 0 ? "not known" : `${bounded(depthMm, lowerBound)} mm`}`,
-  );
-  const interval =
-    event.p10Mm === null || event.p90Mm === null
-      ? ""
-      : ` (${depthText(event.p10Mm)} to ${depthText(event.p90Mm)})`;
   return [
     ...wrapped(
-      `event ${event.number}: ${bounded(event.depthMm, event.lowerBound)} mm${interval} in ${lengthText(end - start)}, observed ${percent(event.observedFraction)}${known.length === 0 ? "" : `; ${known.join("; ")}`}`,
+      `event ${event.number}: ${boundedText(event.depthMm, event.lowerBound)} mm in ${lengthText(end - start)}; ${eventDetails(event).join("; ")}`,
       "  ",
       "    ",
     ),
     ...spanLines(start, end, zone, "    "),
-    ...wrapped(`rain before it: ${before.join(", ")}`, "    "),
   ];
 }
 
@@ -162,7 +131,7 @@ function peakTable(peaks: readonly Peak[], withPeriods: boolean): string {
     ],
     seen.map((peak) => [
       lengthText(peak.durationMinutes * MINUTE_MS),
-      bounded(peak.depthMm, peak.lowerBound),
+      boundedText(peak.depthMm, peak.lowerBound),
       ...(withInterval ? [rangeText(depthOrNull(peak.p10Mm), depthOrNull(peak.p90Mm))] : []),
       rateText(peak.meanMmPerHour),
       (peak.start ?? "").slice(5, 16).replace("T", " "),
@@ -175,22 +144,10 @@ function peakTable(peaks: readonly Peak[], withPeriods: boolean): string {
         : []),
       [
         ...(peak.atCap ? ["at cap"] : []),
-        ...(peak.observedFraction < 0.995 ? [`seen ${percent(peak.observedFraction)}`] : []),
+        ...(peak.observedFraction < 0.995 ? [`seen ${shareText(peak.observedFraction)}`] : []),
       ].join(", "),
     ]),
   );
-}
-
-/** Durations that cannot be told, with the reason, one line a reason. */
-function reasonLines(peaks: readonly Peak[]): string[] {
-  const reasons = new Map<string, string[]>();
-  for (const { durationMinutes, reason, period } of peaks) {
-    const why =
-      reason ?? (period?.reason === null || period === null ? null : `no return period: ${period.reason}`);
-    if (why !== null)
-      reasons.set(why, [...(reasons.get(why) ?? []), lengthText(durationMinutes * MINUTE_MS)]);
-  }
-  return [...reasons].flatMap(([reason, lengths]) => wrapped(`${lengths.join(", ")}: ${reason}`, "  "));
 }
 
 function exceedanceLines({ rows, words, placeCount }: NonNullable<EventReport["exceedances"]>): string[] {
@@ -259,10 +216,6 @@ function spanLines(start: number, end: number, zone: string, indent: string): st
   return /\+0 /.test(`${local} `) ? [`${indent}${utc}`] : [`${indent}${local}`, `${indent}${utc}`];
 }
 
-function bounded(mm: number | null, lowerBound: boolean): string {
-  return mm === null ? "–" : `${lowerBound ? "≥ " : ""}${depthText(mm)}`;
-}
-
 function depthOrNull(mm: number | null): string | null {
   return mm === null ? null : depthText(mm);
 }
@@ -274,14 +227,6 @@ function rangeText(low: string | null, high: string | null): string {
 function rateText(mmPerHour: number | null): string {
   if (mmPerHour === null) return "–";
   return mmPerHour >= 10 ? mmPerHour.toFixed(0) : mmPerHour.toFixed(1);
-}
-
-function volumeText(m3: number): string {
-  return Number(m3.toPrecision(3)).toLocaleString("en-US");
-}
-
-function percent(share: number): string {
-  return share > 0.995 && share < 1 ? ">99 %" : `${Math.floor(100 * share)} %`;
 }
 
 function indented(text: string): string[] {

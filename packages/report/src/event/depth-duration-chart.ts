@@ -51,6 +51,16 @@ export function svgDepthDuration(
     ({ durationMinutes, depthMm, lowerBound }) =>
       `${durationText(durationMinutes)} ${lowerBound ? "at least " : ""}${mmText(depthMm)} mm`,
   );
+  // From the rarest down, so that no two names of curves run into each other.
+  let lowestName = Number.NEGATIVE_INFINITY;
+  const names = inRange
+    .toReversed()
+    .filter(({ points }) => points.length > 0)
+    .map(({ years, points }) => {
+      const last = points[points.length - 1];
+      lowestName = Math.max(py(last.mm) + 4, lowestName + 12);
+      return html`<text class="period-name" x="${px(last.minutes) + 4}" y="${svgNumber(lowestName)}">${years} a</text>`;
+    });
   return html`<svg class="chart depth-duration" role="img" aria-labelledby="${id}-title ${id}-desc" viewBox="0 0 ${WIDTH} ${HEIGHT}"><title id="${id}-title">${title}</title><desc id="${id}-desc">${words.join(", ")}.</desc><g class="axis">${DEPTHS_MM.filter(
     (mm) => mm >= bottomMm && mm <= topMm,
   ).map(
@@ -61,11 +71,10 @@ export function svgDepthDuration(
       html`<path d="M${px(minutes)} ${floor}v4"/><text x="${px(minutes)}" y="${floor + 16}" text-anchor="middle">${durationText(minutes)}</text>`,
   )}<text x="2" y="${MARGIN.top - 2}">mm</text></g>${inRange
     .filter(({ points }) => points.length > 0)
-    .map(({ years, points }) => {
-      const last = points[points.length - 1];
+    .map(({ points }) => {
       const path = points.map(({ minutes, mm }, k) => `${k === 0 ? "M" : "L"}${px(minutes)} ${py(mm)}`);
-      return html`<path class="period" d="${path.join("")}"/><text class="period-name" x="${px(last.minutes) + 4}" y="${py(last.mm) + 4}">${years} a</text>`;
-    })}<path class="base" d="M${MARGIN.left} ${floor}H${WIDTH - MARGIN.right}"/>${wet.map((peak) => {
+      return html`<path class="period" d="${path.join("")}"/>`;
+    })}${names}<path class="base" d="M${MARGIN.left} ${floor}H${WIDTH - MARGIN.right}"/>${wet.map((peak) => {
     const { durationMinutes, depthMm, p10Mm, p90Mm, lowerBound } = peak;
     const [cx, cy] = [px(durationMinutes), py(depthMm)];
     return html`${

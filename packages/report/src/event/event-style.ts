@@ -5,7 +5,7 @@ export const EVENT_STYLE = `:root{color-scheme:light dark;--page:#fbfaf8;--ink:#
 @media (prefers-color-scheme:dark){:root{--page:#14181b;--ink:#e6e8e6;--soft:#a3adb3;--line:#343b40;--accent:#7cc0d6;--warn:#f0c07c;--gauge:#5fa9c4;--radar:#f0a04b;--adjusted:#d795cb;--hatch:#6b757b}}
 *{box-sizing:border-box}
 body{margin:0 auto;max-width:960px;padding:28px 24px 40px;background:var(--page);color:var(--ink);font:15px/1.5 ${FONT};font-variant-numeric:tabular-nums;overflow-wrap:anywhere}
-.of{margin:0 0 6px;display:flex;flex-wrap:wrap;gap:2px 18px;justify-content:space-between;color:var(--soft);font-size:.87rem}
+.of{margin:0 0 6px;max-width:none;display:flex;flex-wrap:wrap;gap:2px 18px;justify-content:space-between;color:var(--soft);font-size:.87rem}
 h1{font-size:1.6rem;line-height:1.2;margin:0;padding-bottom:10px;border-bottom:3px solid var(--accent)}
 h1 small{display:block;font-size:.95rem;font-weight:400;color:var(--soft);margin-top:4px}
 h2{font-size:1.1rem;margin:30px 0 8px}
@@ -45,7 +45,7 @@ th,td{text-align:left;vertical-align:top;padding:4px 14px 4px 0;border-top:1px s
 thead th{border-top:0;color:var(--soft);vertical-align:bottom}
 .n{text-align:right}
 td.words{white-space:normal;min-width:9em}
-ul{margin:0 0 10px;padding-left:20px;max-width:82ch}
+ul{margin:8px 0 10px;padding-left:20px;max-width:82ch}
 .caution{border-left:4px solid var(--warn);padding-left:14px}
 .caution h2{color:var(--warn)}
 .hands{display:grid;grid-template-columns:repeat(3,1fr);gap:24px;margin-top:34px}
