@@ -29,6 +29,7 @@ export type {
 } from "./evidence.ts";
 export { type DoubtedReadings, type GaugeSteps, gaugeDepth, gaugeSteps } from "./gauge-steps.ts";
 export { type GaugeRow, gaugeRows } from "./gauge-table.ts";
+export { judgeGauges, leftOutReasons } from "./judging/judge.ts";
 export { DEPTH_SLACK_MM, decibels, quotient } from "./numbers.ts";
 export {
   type GaugePairs,
@@ -87,7 +88,6 @@ export {
   scoresDocument,
   scoresSchema,
 } from "./scores-document.ts";
-export { judgeGauges, leftOutReasons } from "./suspect.ts";
 export {
   type BiasGroup,
   type Blame,

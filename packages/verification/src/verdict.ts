@@ -41,6 +41,8 @@ export const CAUSES = {
   "below-detection": { blame: "radar", words: "radar: below detection" },
   "at-cap": { blame: "radar", words: "radar: at the cap" },
   "hole-in-time": { blame: "radar", words: "radar: hole in time" },
+  hail: { blame: "radar", words: "radar: hail taken for rain" },
+  "radar-clock": { blame: "radar", words: "radar: clock off against all gauges" },
   "radar-level": { blame: "radar", words: "radar: level of the whole radar (calibration or relation)" },
   "small-shower": { blame: "nobody", words: "a shower smaller than a cell" },
   unexplained: { blame: "nobody", words: "differs, and no check says why" },
