@@ -79,7 +79,15 @@ test("--version is the package's version", () => {
   expect(cli(["--version"])).toEqual({ status: 0, stdout: `${card.version}\n`, stderr: "" });
 });
 
-describe.each([["survey"], ["plan"], ["total"], ["compare"], ["relate", "table"]])("%s %s", (...name) => {
+describe.each([
+  ["survey"],
+  ["plan"],
+  ["total"],
+  ["compare"],
+  ["relate", "table"],
+  ["relate", "fit"],
+  ["relate", "rank"],
+])("%s %s", (...name) => {
   const command = name.filter((word) => word !== undefined);
 
   test("helps on stdout, with examples and the flags of all commands", async () => {
