@@ -16,8 +16,9 @@ export interface GaugeOverride {
  */
 export interface RadarSight {
   readonly beamHeightAslM: number;
-  /** Antenna of the radar that speaks loudest, above the sea. */
+  /** Of the radar that speaks loudest: its antenna above the sea, and the direction in which it sees the gauge, from north. */
   readonly antennaAslM: number;
+  readonly azimuthDeg: number;
   /** Share of the beam that terrain takes, mean by time. */
   readonly blockedFraction: number;
   readonly blockageCorrectionDb: number;

@@ -30,6 +30,7 @@ export type {
 export { type DoubtedReadings, type GaugeSteps, gaugeDepth, gaugeSteps } from "./gauge-steps.ts";
 export { type GaugeRow, gaugeRows } from "./gauge-table.ts";
 export { judgeGauges, leftOutReasons } from "./judging/judge.ts";
+export { judgeRadars, type RadarContext } from "./judging/judge-radars.ts";
 export { DEPTH_SLACK_MM, decibels, quotient } from "./numbers.ts";
 export {
   type GaugePairs,

@@ -11,15 +11,17 @@ import {
   closestOf3x3,
   type GaugeVerdict,
   judgeGauges,
+  judgeRadars,
   leaveOut,
   leftOutReasons,
+  type RadarVerdict,
   type ScoreOptions,
   type ScoreTable,
   scorePairs,
 } from "@rainreckon/verification";
 import { type AdjustmentResult, adjust } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
-import { gaugeEvidence, judgeContext } from "./gauge-evidence.ts";
+import { gaugeEvidence, judgeContext, radarContext } from "./gauge-evidence.ts";
 import type { GaugeInput } from "./gauges.ts";
 import { pairGauges } from "./pair-gauges.ts";
 import type { PreparedRun } from "./prepare.ts";
@@ -39,6 +41,8 @@ export interface ComparedGauge {
 /** What comparing with the gauges came to. */
 export interface Comparison extends AdjustmentResult {
   readonly gauges: readonly ComparedGauge[];
+  /** One per radar of the run. */
+  readonly radars: readonly RadarVerdict[];
   /** By interval, all gauges; those of gauges that are not trusted are not used. */
   readonly pairs: readonly Pair[];
   readonly scoreOptions: ScoreOptions;
@@ -53,7 +57,8 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
   const { plan } = run.loaded;
   const pairMs = durationMs(plan.pairs.interval);
   const compared = pairGauges(run, total);
-  const verdicts = judgeGauges(gaugeEvidence(run, total, compared), judgeContext(run, total));
+  const evidence = gaugeEvidence(run, total, compared);
+  const verdicts = judgeGauges(evidence, judgeContext(run, total));
   const reasons = leftOutReasons(verdicts);
   const byInterval = compared.flatMap((one) => one.byInterval);
   const pairs = leaveOut(byInterval, reasons);
@@ -101,6 +106,7 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
       whole: leaveOut([whole], reasons)[0],
       rainDays: leaveOut(ofDays, reasons),
     })),
+    radars: judgeRadars(evidence, verdicts, radarContext(run)),
     ...result,
     pairs,
     scoreOptions,

@@ -1,4 +1,11 @@
-import type { GaugeEvidence, GaugePairs, JudgeContext, RadarSight } from "@rainreckon/verification";
+import { geodesicInverse } from "@rainreckon/mosaic";
+import type {
+  GaugeEvidence,
+  GaugePairs,
+  JudgeContext,
+  RadarContext,
+  RadarSight,
+} from "@rainreckon/verification";
 import { loudestRadar } from "./adjust.ts";
 import type { AssembledRun } from "./assemble.ts";
 import { companionIndex } from "./companions.ts";
@@ -47,17 +54,28 @@ export function judgeContext(
   return { window, ...(field === undefined ? {} : { field }) };
 }
 
+/** What the radars of a run are judged by beside its gauges. */
+export function radarContext({ shape, overlaps, loaded }: PreparedRun): RadarContext {
+  return {
+    radarIds: shape.radars.map(({ site }) => site.id),
+    rangeBandsKm: loaded.plan.pairs.rangeBandsKm,
+    overlaps,
+  };
+}
+
 function radarSight(
   run: PreparedRun,
   total: AssembledRun,
-  { cell }: GaugeInput,
+  { cell, station }: GaugeInput,
   screenedMm: Float32Array,
 ): RadarSight {
   const { planes, unseenMm } = total;
   const companion = (name: string) => planes.companions[companionIndex(name)]?.[cell] ?? Number.NaN;
+  const site = run.shape.radars[loudestRadar(total, cell)]?.site;
   return {
     beamHeightAslM: planes.beamHeightAslM[cell],
-    antennaAslM: run.shape.radars[loudestRadar(total, cell)]?.site.antennaHeightM ?? Number.NaN,
+    antennaAslM: site?.antennaHeightM ?? Number.NaN,
+    azimuthDeg: site === undefined ? Number.NaN : geodesicInverse(site, station).azimuthDeg,
     blockedFraction: companion("blocked_fraction"),
     blockageCorrectionDb: companion("blockage_correction"),
     attenuationCorrectionDb: companion("attenuation_correction"),

@@ -21,6 +21,7 @@ const WINDOW = { startEpochMs: START, endEpochMs: START + HOURS * 60 * MINUTE };
 const UNKNOWN_SIGHT: RadarSight = {
   beamHeightAslM: Number.NaN,
   antennaAslM: Number.NaN,
+  azimuthDeg: Number.NaN,
   blockedFraction: Number.NaN,
   blockageCorrectionDb: Number.NaN,
   attenuationCorrectionDb: Number.NaN,
