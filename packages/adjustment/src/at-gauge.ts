@@ -1,12 +1,40 @@
-import type { Interval } from "@rainreckon/core";
+import { cellCentre, type Grid, type Interval } from "@rainreckon/core";
 import type { LearnedMethod } from "./methods.ts";
 import type { WindowGauge } from "./window-gauges.ts";
 
 /** What is asked of a place that has pairs, trusted or not. */
 export type PairedPlace = Pick<
   WindowGauge,
-  "xKm" | "yKm" | "rangeKm" | "radarMm" | "radarTotalMm" | "coverage" | "readings"
+  "xKm" | "yKm" | "rangeKm" | "radarMm" | "radarTotalMm" | "radarPointTotalMm" | "coverage" | "readings"
 >;
+
+/**
+ * Depth at a point, linear between the middles of the four cells around it: a point is not the middle of its cell,
+ * and in showers that is worth more than most errors of a gauge. Where one of the four is not observed or there is
+ * none, the depth of the point's own cell stands.
+ *
+ * @param depthMm - shape [ny, nx]; NaN is not observed
+ * @param ownMm - the depth of the cell that the point lies in
+ */
+export function depthAtPoint(
+  grid: Grid,
+  depthMm: Float32Array,
+  xM: number,
+  yM: number,
+  ownMm: number,
+): number {
+  const first = cellCentre(grid, 0);
+  const column = (xM - first.xM) / grid.cellM;
+  const row = (first.yM - yM) / grid.cellM;
+  const [west, north] = [Math.floor(column), Math.floor(row)];
+  if (west < 0 || north < 0 || west + 1 >= grid.nx || north + 1 >= grid.ny) return ownMm;
+  const [east, south] = [column - west, row - north];
+  const at = north * grid.nx + west;
+  const mm =
+    (1 - south) * ((1 - east) * depthMm[at] + east * depthMm[at + 1]) +
+    south * ((1 - east) * depthMm[at + grid.nx] + east * depthMm[at + grid.nx + 1]);
+  return Number.isNaN(mm) ? ownMm : mm;
+}
 
 /** Share of the window's rain that fell in a span. Shares of spans that fill the window add up to 1. */
 export type RainShare = (span: Interval) => number;
@@ -50,9 +78,9 @@ export function pairedDepthAt(learned: LearnedMethod, place: PairedPlace): numbe
 
 function fieldAt(
   learned: Extract<LearnedMethod, { kind: "field" }>,
-  { xKm, yKm, radarTotalMm, rangeKm }: PairedPlace,
+  { xKm, yKm, radarPointTotalMm, rangeKm }: PairedPlace,
 ): number {
-  return learned.depthMm(xKm, yKm, radarTotalMm, rangeKm);
+  return learned.depthMm(xKm, yKm, radarPointTotalMm, rangeKm);
 }
 
 /**

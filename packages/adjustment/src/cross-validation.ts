@@ -1,6 +1,7 @@
 import { gaugeKey, type Pair } from "@rainreckon/core";
-import { meanRainShare, pairedDepthAt, type RainShare, spanDepthAt } from "./at-gauge.ts";
+import { pairedDepthAt, type RainShare, spanDepthAt } from "./at-gauge.ts";
 import type { LearnedMethod } from "./methods.ts";
+import type { Trial, Trials } from "./trials.ts";
 import type { WindowGauge } from "./window-gauges.ts";
 
 /** What the other gauges make of one gauge. */
@@ -16,6 +17,7 @@ export interface HeldOutGauge {
 
 /** How well gauges are met by what learned without them. Errors are adjusted minus gauge. */
 export interface CrossValidation {
+  /** The trusted gauges. */
   readonly gauges: readonly HeldOutGauge[];
   /** Root mean square over judged gauges of the error of depths over the time of their pairs, mm; NaN without a gauge. */
   readonly errorMm: number;
@@ -31,42 +33,36 @@ export interface CrossValidation {
 }
 
 /**
- * Which gauges are held out together: each alone up to a count, else ten groups by turns.
+ * Holds out gauges in turn and asks what learned from the rest for their depths: a gauge that shaped the field
+ * cannot also judge it, nor say which of the others are to be trusted.
  *
- * @returns fold of each gauge, shape [count]
- */
-export function foldsOf(count: number, aloneUpTo: number): Int32Array {
-  return Int32Array.from({ length: count }, (_, i) => (count <= aloneUpTo ? i : i % 10));
-}
-
-/**
- * Holds out each gauge in turn, or in groups, and asks what learned from the rest for its depth: a gauge that
- * shaped the field cannot also judge it.
- *
- * @param folds - as {@link foldsOf} gives them
- * @param learn - all that is learned, choices included, must come from the gauges it is handed
+ * @param scored - the gauges to be met: those that are trusted when all are known
+ * @param folds - fold of each of them, as `foldsOf` or `clustersOf` gives them
+ * @param learn - all that is learned, choices included, must come from the trial it is handed
  */
 export function crossValidate(
-  gauges: readonly WindowGauge[],
+  trials: Trials,
+  scored: readonly WindowGauge[],
   folds: Int32Array,
-  learn: (others: readonly WindowGauge[]) => LearnedMethod,
+  learn: (trial: Trial, heldOut: readonly WindowGauge[]) => LearnedMethod,
 ): CrossValidation {
   const trained = new Map<number, Pick<HeldOutGauge, "learned" | "share">>();
-  const heldOut = gauges.map((gauge, i): HeldOutGauge => {
+  const gauges = scored.map((gauge, i): HeldOutGauge => {
     let known = trained.get(folds[i]);
     if (known === undefined) {
-      const others = gauges.filter((_, other) => folds[other] !== folds[i]);
-      known = { learned: learn(others), share: meanRainShare(others) };
+      const heldOut = scored.filter((_, other) => folds[other] === folds[i]);
+      const trial = trials.without(heldOut);
+      known = { learned: learn(trial, heldOut), share: trial.share };
       trained.set(folds[i], known);
     }
     return { gauge, ...known, crossValidatedMm: pairedDepthAt(known.learned, gauge) };
   });
-  const judged = heldOut.filter(({ crossValidatedMm }) => !Number.isNaN(crossValidatedMm));
+  const judged = gauges.filter(({ crossValidatedMm }) => !Number.isNaN(crossValidatedMm));
   const errors = judged.map(({ gauge, crossValidatedMm }) => crossValidatedMm - gauge.gaugeMm);
   const errorMm = rootMeanSquare(errors);
   const meanGaugeMm = mean(judged.map(({ gauge }) => gauge.gaugeMm));
   return {
-    gauges: heldOut,
+    gauges,
     errorMm,
     meanErrorMm: mean(errors),
     errorPercent: meanGaugeMm > 0 ? (100 * errorMm) / meanGaugeMm : Number.NaN,
@@ -75,7 +71,6 @@ export function crossValidate(
     withoutFigure: gauges.length - judged.length,
   };
 }
-
 /**
  * The pairs with the radar depth of used ones replaced by what the others make of it: what scores after
  * adjustment are worked out on. A pair without a figure is unused, and so is one that took no part.

@@ -4,6 +4,7 @@ export {
   fieldAdjuster,
 } from "./adjusted-field.ts";
 export {
+  depthAtPoint,
   meanRainShare,
   type PairedPlace,
   type RainShare,
@@ -14,10 +15,12 @@ export {
   CHOICE_RULE,
   chooseMethod,
   type MethodChoice,
+  type ValidatedChoice,
   validateChoice,
   validateMethod,
 } from "./choose-method.ts";
 export { type CrossValidation, crossValidatedPairs, type HeldOutGauge } from "./cross-validation.ts";
+export { CLUSTER_RULE } from "./folds.ts";
 export {
   type AppliedBias,
   type FactorBasis,
@@ -37,5 +40,6 @@ export {
   type MethodSettings,
 } from "./methods.ts";
 export { radarVariogram } from "./radar-variogram.ts";
+export type { TrustRule } from "./trials.ts";
 export { VARIOGRAM_SHAPES, type VariogramModel, type VariogramShape } from "./variogram-model.ts";
 export { type GaugePlaces, type GaugeReading, type WindowGauge, windowGauges } from "./window-gauges.ts";

@@ -32,6 +32,8 @@ export function gaugeAt(
     gaugeMm,
     radarMm,
     radarTotalMm: radarMm,
+    radarPointMm: radarMm,
+    radarPointTotalMm: radarMm,
     coverage: 1,
     complete: true,
     readings: [0, 1, 2, 3].map((hour) => ({

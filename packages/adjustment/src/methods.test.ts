@@ -125,7 +125,7 @@ describe("stated fallbacks", () => {
     [
       "kriging-external-drift",
       "the same radar depth at every gauge (check value f-degenerate)",
-      network(10, (mm) => mm).map((gauge) => ({ ...gauge, radarMm: 9 })),
+      network(10, (mm) => mm).map((gauge) => ({ ...gauge, radarMm: 9, radarPointMm: 9 })),
       "the radar depth does not tell the gauges apart: ordinary kriging of the gauges in its place",
     ],
     [

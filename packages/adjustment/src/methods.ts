@@ -1,4 +1,5 @@
 import type { Interval } from "@rainreckon/core";
+import { bayesianLogFactor } from "./bayesian-kriging.ts";
 import {
   type Interpolant,
   krigedOr,
@@ -31,6 +32,8 @@ export const METHOD_NAMES = [
   "kriging-mixed",
   "conditional-merging",
   "kriging-external-drift",
+  "kriging-bayesian",
+  "combined",
 ] as const;
 export type MethodName = (typeof METHOD_NAMES)[number];
 
@@ -51,6 +54,8 @@ export const METHOD_TITLES: Readonly<Record<MethodName, string>> = {
   "kriging-mixed": "kriging of mixed residuals",
   "conditional-merging": "conditional merging",
   "kriging-external-drift": "kriging with external drift",
+  "kriging-bayesian": "Bayesian kriging of log factors",
+  combined: "mean of Brandes' factors and Bayesian kriging",
 };
 
 export interface MethodSettings extends VariogramSettings {
@@ -84,9 +89,12 @@ export type LearnedMethod = { readonly notes: readonly string[] } & (
     }
 );
 
-/** Places needed by a range polynomial, and by a drift. House rules. */
+/** Places needed by a range polynomial, by a drift, and to weigh variograms. House rules. */
 const RANGE_FROM = 8;
 const DRIFT_FROM = 8;
+const BAYESIAN_FROM = 5;
+/** What `combined` is the mean of: one spreads factors by distance alone, the other by what the gauges say of them. */
+const COMBINED = ["brandes", "kriging-bayesian"] as const;
 /** Smallest error of a gauge's depth, mm: half a tip of 0.2 mm. House rule. */
 const LEAST_ERROR_MM = 0.1;
 /** Radar depth at which a mismatch turns from absolute to relative, mm. House rule. */
@@ -167,6 +175,33 @@ export function learnMethod(
         const { factor } = spread.at(x, y);
         return radarMm * (Number.isNaN(factor) ? mean : limited(factor, settings.factorLimits));
       });
+    }
+    case "kriging-bayesian": {
+      const ratios = logRatios(places, settings);
+      if (ratios.length < BAYESIAN_FROM) return instead(`${ratios.length} ratios, ${BAYESIAN_FROM} needed`);
+      const at = ratios.map((ratio) => ratio.at);
+      const log = bayesianLogFactor(
+        {
+          places: placesOf(at),
+          logFactor: ratios.map((ratio) => ratio.log),
+          logRadar: at.map(({ radarMm }) => Math.log(radarMm)),
+          errorVariance: depthErrors(at, settings).map((error, i) => error / at[i].gaugeMm ** 2),
+        },
+        Math.sqrt(networkAreaKm2(at) / at.length),
+      );
+      return field((x, y, radarMm) =>
+        radarMm > 0 ? radarMm * limited(Math.exp(log(x, y, Math.log(radarMm))), settings.factorLimits) : 0,
+      );
+    }
+    case "combined": {
+      // Two sound forecasts that err in different ways are worth more together, and equal weights do as well as
+      // fitted ones (Bates & Granger 1969, Operational Research Quarterly 20, 451-468).
+      const parts = COMBINED.map((part) => learnMethod(part, gauges, settings));
+      for (const part of parts) notes.push(...part.notes);
+      return field(
+        (x, y, radarMm, rangeKm) =>
+          parts.reduce((sum, part) => sum + windowDepthMm(part, x, y, radarMm, rangeKm), 0) / parts.length,
+      );
     }
     case "gauges-alone": {
       if (places.length === 0) return instead("no gauge with a whole window");
@@ -308,6 +343,11 @@ function interpolant(
   const at = placesOf(places);
   if (!kriged) return (x, y) => inverseDistance(at, values, 2, x, y);
   return krigedOr(at, values, errorVariance, variogramOf(at, values, settings), (note) => notes.push(note));
+}
+
+/** Depth of the window by one of the parts of a combination, whose factors, if it has fallen back on one, are constant. */
+function windowDepthMm(part: LearnedMethod, x: number, y: number, radarMm: number, rangeKm: number): number {
+  return part.kind === "field" ? part.depthMm(x, y, radarMm, rangeKm) : radarMm * part.factorAt(0);
 }
 
 function constantFactor(factor: number): LearnedMethod {

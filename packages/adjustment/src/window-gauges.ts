@@ -16,8 +16,14 @@ export interface WindowGauge {
   /** Sums over the used pairs, mm. */
   readonly gaugeMm: number;
   readonly radarMm: number;
-  /** Radar depth there over all the time that the radar observed, mm. */
+  /** Radar depth of its cell over all the time that the radar observed, mm. */
   readonly radarTotalMm: number;
+  /**
+   * The same two at the very point, between the middles of four cells, mm: a gauge at the edge of its cell sees
+   * another rain than the middle does. Methods that interpolate compare with these.
+   */
+  readonly radarPointMm: number;
+  readonly radarPointTotalMm: number;
   /** Share of that time that the pairs cover, at most 1. */
   readonly coverage: number;
   /**
@@ -31,10 +37,18 @@ export interface WindowGauge {
 /** Share of the radar's observed time that the pairs of a complete gauge cover. House rule. */
 const COMPLETE_FROM = 0.95;
 
-/** Where gauges stand in the grid's plane, metres, and the radar's window depth there, by `gaugeKey`. */
+/**
+ * Where gauges stand in the grid's plane, metres, and the radar's window depth of their cell and at their point
+ * (`depthAtPoint`), mm; by `gaugeKey`.
+ */
 export type GaugePlaces = ReadonlyMap<
   string,
-  { readonly xM: number; readonly yM: number; readonly radarTotalMm: number }
+  {
+    readonly xM: number;
+    readonly yM: number;
+    readonly radarTotalMm: number;
+    readonly radarPointTotalMm: number;
+  }
 >;
 
 /**
@@ -58,6 +72,9 @@ export function windowGauges(pairs: readonly Pair[], places: GaugePlaces): Windo
     if (place === undefined || used.length === 0) continue;
     const observedMs = own.reduce((sum, pair) => sum + pair.radarObservedFraction * lengthMs(pair), 0);
     const commonMs = used.reduce((sum, pair) => sum + pair.commonFraction * lengthMs(pair), 0);
+    const radarMm = used.reduce((sum, pair) => sum + pair.radarMm, 0);
+    const coverage = observedMs > 0 ? Math.min(1, commonMs / observedMs) : 0;
+    const { radarTotalMm, radarPointTotalMm } = place;
     gauges.push({
       network: used[0].network,
       gaugeId: used[0].gaugeId,
@@ -65,9 +82,11 @@ export function windowGauges(pairs: readonly Pair[], places: GaugePlaces): Windo
       yKm: place.yM / 1000,
       rangeKm: used[0].rangeKm,
       gaugeMm: used.reduce((sum, pair) => sum + pair.gaugeMm, 0),
-      radarMm: used.reduce((sum, pair) => sum + pair.radarMm, 0),
-      radarTotalMm: place.radarTotalMm,
-      coverage: observedMs > 0 ? Math.min(1, commonMs / observedMs) : 0,
+      radarMm,
+      radarTotalMm,
+      radarPointMm: radarPointTotalMm * (radarTotalMm > 0 ? radarMm / radarTotalMm : coverage),
+      radarPointTotalMm,
+      coverage,
       complete: commonMs >= COMPLETE_FROM * observedMs,
       readings: used.map(({ startEpochMs, endEpochMs, gaugeMm, radarMm }) => ({
         startEpochMs,
@@ -93,6 +112,7 @@ export interface GaugePlace {
   readonly yKm: number;
   /** Means over its gauges. */
   readonly gaugeMm: number;
+  /** At the very point. */
   readonly radarMm: number;
   readonly rangeKm: number;
   /** How many gauges; the variance of the mean's error is that of one over this. */
@@ -119,7 +139,7 @@ export function mergeCoincident(gauges: readonly WindowGauge[]): GaugePlace[] {
       xKm,
       yKm,
       gaugeMm: mean((gauge) => gauge.gaugeMm),
-      radarMm: mean((gauge) => gauge.radarMm),
+      radarMm: mean((gauge) => gauge.radarPointMm),
       rangeKm: mean((gauge) => gauge.rangeKm),
       count: members.length,
     };

@@ -15,6 +15,8 @@ export interface Task {
   readonly seed: number;
   readonly size: WorldSize;
   readonly variants: readonly Variant[];
+  /** Moments that the files are to have, by name; undefined for all. */
+  readonly moments: readonly string[] | undefined;
 }
 
 /** Where worlds are made and kept. */
@@ -67,7 +69,7 @@ export interface Measured {
 /** Makes a world if need be, runs every variant on it, and scores them on the cells that all observed. */
 export async function measure(task: Task, { generator, cache }: Place): Promise<Measured> {
   const world = trueWorld(worldFolder(generator, cache, task.world, task.seed, task.size));
-  keepScans(task.size === "small");
+  keepScans(task.size === "small", task.moments);
   const { totalMm, rangeKm, clutterFree, window } = world;
   const plan = await worldPlan(world);
   const windowHours = (Date.parse(window.to) - Date.parse(window.from)) / 3_600_000;

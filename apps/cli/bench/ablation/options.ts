@@ -29,16 +29,19 @@ export interface AblationOptions {
   readonly size: WorldSize;
   /** Each step added in turn and each removed alone; or only what the aims speak of. */
   readonly steps: boolean;
+  /** Moments that the files are to have, by name: what is a step worth in archives of reflectivity alone? */
+  readonly moments: readonly string[] | undefined;
   readonly cache: string;
   readonly workers: number;
   /** A file of results: what it holds is not measured again. */
   readonly results: string | undefined;
 }
 
-export const USAGE = `npm run bench -- ablation [--worlds a,b] [--seeds 1-2,5] [--size small|full] [--steps] [--workers 1|2] [--cache DIR] [--results FILE]
+export const USAGE = `npm run bench -- ablation [--worlds a,b] [--seeds 1-2,5] [--size small|full] [--steps] [--moments DBZH] [--workers 1|2] [--cache DIR] [--results FILE]
   --worlds A,B   ${RADAR_WORLDS.join(", ")}   [all of them]
   --seeds LIST   1 to 10 are for tuning, 11 to 30 for reporting   [1]
   --steps        each step added in turn, and each removed alone, too
+  --moments LIST as if the scans held no other moments than these, such as DBZH
   --cache DIR    where worlds are made and kept; RAINRECKON_WORLDS says it too   [a folder in the temp folder]
   --results FILE a line of JSON for each world and seed; what this state of the code measured before is not measured again`;
 
@@ -52,6 +55,7 @@ export function ablationOptions(args: readonly string[]): AblationOptions {
       size: { type: "string", default: "small" },
       steps: { type: "boolean", default: false },
       headline: { type: "boolean", default: false },
+      moments: { type: "string" },
       workers: { type: "string", default: "1" },
       cache: { type: "string" },
       results: { type: "string" },
@@ -68,6 +72,7 @@ export function ablationOptions(args: readonly string[]): AblationOptions {
     seeds: seedsOf(values.seeds),
     size: values.size,
     steps: values.steps,
+    moments: values.moments?.split(","),
     cache: path.resolve(
       values.cache ?? process.env.RAINRECKON_WORLDS ?? path.join(os.tmpdir(), "rainreckon-worlds"),
     ),

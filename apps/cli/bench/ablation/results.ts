@@ -6,6 +6,8 @@ import type { WorldSize } from "./worlds.ts";
 /** A line of a file of results. */
 interface Line extends Measured {
   readonly size: WorldSize;
+  /** As `Task.moments`, joined; empty for all. */
+  readonly moments: string;
   /** SHA-256 of the bundled program: what another state of the code measured is void. */
   readonly program: string;
 }
@@ -27,20 +29,21 @@ export class ResultsFile {
   }
 
   /** What this very program measured of a task before; undefined where it did not, or in other ways. */
-  known({ world, seed, size, variants }: Task): Measured | undefined {
+  known({ world, seed, size, moments, variants }: Task): Measured | undefined {
     return this.#lines.find(
       (line) =>
         line.program === this.#program &&
         line.world === world &&
         line.seed === seed &&
         line.size === size &&
+        line.moments === (moments ?? []).join() &&
         variants.every(({ name }) => line.scores.some((score) => score.name === name)),
     );
   }
 
-  keep({ size }: Task, measured: Measured): void {
+  keep({ size, moments }: Task, measured: Measured): void {
     if (this.#file === undefined) return;
-    const line: Line = { ...measured, size, program: this.#program };
+    const line: Line = { ...measured, size, moments: (moments ?? []).join(), program: this.#program };
     appendFileSync(this.#file, `${JSON.stringify(line)}\n`);
   }
 }

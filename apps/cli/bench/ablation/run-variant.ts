@@ -28,7 +28,7 @@ export interface VariantMaps {
   readonly seconds: number;
 }
 
-const SILENT: Terminal = {
+export const SILENT: Terminal = {
   json: false,
   quiet: true,
   debug: false,

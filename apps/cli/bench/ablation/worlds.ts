@@ -192,7 +192,7 @@ export function trueWorld(folder: string): TrueWorld {
 }
 
 /** Little-endian float32 numbers of a file. */
-function floats(file: string, count: number): Float32Array {
+export function floats(file: string, count: number): Float32Array {
   const bytes = readFileSync(file);
   if (bytes.length !== 4 * count) throw new Error(`${file}: ${bytes.length} bytes, wanted ${4 * count}`);
   return Float32Array.from({ length: count }, (_, i) => bytes.readFloatLE(4 * i));

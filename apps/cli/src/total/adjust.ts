@@ -1,18 +1,18 @@
 import { durationMs } from "@rainreckon/accumulation";
 import {
   type CrossValidation,
-  chooseMethod,
   fieldAdjuster,
   type LearnedMethod,
   learnMethod,
   METHOD_TITLES,
-  type MethodChoice,
   type MethodName,
   type MethodSettings,
   meanFieldBias,
   meanRainShare,
   type RainShare,
   radarVariogram,
+  type TrustRule,
+  type ValidatedChoice,
   validateChoice,
   validateMethod,
   type WindowGauge,
@@ -22,12 +22,6 @@ import { geodesicInverse } from "@rainreckon/mosaic";
 import type { AssembledRun } from "./assemble.ts";
 import type { PreparedRun } from "./prepare.ts";
 import type { UnitStore } from "./unit-store.ts";
-
-/** How candidates did, and how well the choice among them meets gauges that had no part in it. */
-export interface ChosenMethod extends MethodChoice {
-  readonly chosenInFolds: ReadonlyMap<MethodName, number>;
-  readonly validation: CrossValidation;
-}
 
 interface AppliedAdjustment {
   readonly applied: true;
@@ -43,7 +37,10 @@ interface AppliedAdjustment {
   readonly notes: readonly string[];
   readonly learned: LearnedMethod;
   readonly share: RainShare;
+  /** The outer one where the method was chosen: held out were verdicts, choice and learning. Gauge by gauge. */
   readonly crossValidation: CrossValidation;
+  /** The same, cluster by cluster. */
+  readonly clusterValidation: CrossValidation;
 }
 
 /** How a total is adjusted to its gauges, or why it is not. */
@@ -53,7 +50,7 @@ export type Adjustment = AppliedAdjustment | { readonly applied: false; readonly
 export interface AdjustmentResult {
   readonly adjustment: Adjustment;
   /** Undefined where the plan names the method, or nothing could be chosen from. */
-  readonly choice: ChosenMethod | undefined;
+  readonly choice: ValidatedChoice | undefined;
   /** Depth by the gauges alone at a place, mm; undefined where they do not allow it. */
   readonly gaugesOnlyMm: ((xKm: number, yKm: number) => number) | undefined;
 }
@@ -61,17 +58,18 @@ export interface AdjustmentResult {
 /**
  * Adjusts by the plan's method, or by the one that cross-validation picks.
  *
- * The doubts about gauges are those of the whole run: they rest on each gauge's own readings and on medians
- * over the others, and are not made anew in the folds.
+ * Where gauges are held out, the others are judged anew, as if those were not there.
  *
  * @param pairs - by interval; those of gauges that are not trusted are not used
- * @param gauges - the trusted gauges of those pairs
+ * @param all - every gauge with pairs, trusted or not
+ * @param trust - which of some of them are to be trusted
  */
 export function adjust(
   run: PreparedRun,
   total: AssembledRun,
   pairs: readonly Pair[],
-  gauges: readonly WindowGauge[],
+  all: readonly WindowGauge[],
+  trust: TrustRule,
 ): AdjustmentResult {
   const { plan } = run.loaded;
   const { method, minGauges, minGaugeSumMm, factorLimits } = plan.adjustment;
@@ -84,20 +82,19 @@ export function adjust(
   const floors = meanFieldBias(pairs, { minGauges, minGaugeSumMm, factorLimits });
   if (!floors.applied) return refused(method === "none" ? "switched off in the plan" : floors.reason);
   const settings = settingsOf(run, total);
+  const gauges = trust(all);
   const alone = learnMethod("gauges-alone", gauges, settings);
   const gaugesOnlyMm =
     alone.kind === "field" ? (xKm: number, yKm: number) => alone.depthMm(xKm, yKm, 0, Number.NaN) : undefined;
   if (method === "none") return { ...refused("switched off in the plan"), gaugesOnlyMm };
-  const choice =
-    method === "by-cross-validation"
-      ? { ...chooseMethod(gauges, settings), ...validateChoice(gauges, settings) }
-      : undefined;
+  const choice = method === "by-cross-validation" ? validateChoice(all, settings, trust) : undefined;
   const name = choice?.chosen ?? (method === "by-cross-validation" ? "mean-field-bias" : method);
   if (name === "none") {
     const reason = "no method met held-out gauges better than the radar as it is";
     return { adjustment: { applied: false, reason }, choice, gaugesOnlyMm };
   }
   const learned = learnMethod(name, gauges, settings);
+  const { validation, clusterValidation } = choice ?? validateMethod(name, all, settings, trust);
   const byBias = name === "mean-field-bias";
   return {
     adjustment: {
@@ -110,7 +107,8 @@ export function adjust(
       notes: learned.notes,
       learned,
       share: meanRainShare(gauges),
-      crossValidation: choice?.validation ?? validateMethod(name, gauges, settings),
+      crossValidation: validation,
+      clusterValidation,
     },
     choice,
     gaugesOnlyMm,

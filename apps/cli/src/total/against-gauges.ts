@@ -1,15 +1,20 @@
 import { durationMs } from "@rainreckon/accumulation";
 import {
   crossValidatedPairs,
+  depthAtPoint,
   type HeldOutGauge,
   type PairedPlace,
   spanDepthAt,
+  type TrustRule,
+  type WindowGauge,
   windowGauges,
 } from "@rainreckon/adjustment";
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   closestOf3x3,
+  type GaugeEvidence,
   type GaugeVerdict,
+  type JudgeContext,
   judgeGauges,
   judgeRadars,
   leaveOut,
@@ -58,19 +63,22 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
   const pairMs = durationMs(plan.pairs.interval);
   const compared = pairGauges(run, total);
   const evidence = gaugeEvidence(run, total, compared);
-  const verdicts = judgeGauges(evidence, judgeContext(run, total));
+  const context = judgeContext(run, total);
+  const verdicts = judgeGauges(evidence, context);
   const reasons = leftOutReasons(verdicts);
   const byInterval = compared.flatMap((one) => one.byInterval);
   const pairs = leaveOut(byInterval, reasons);
   const where = new Map(
-    compared.map(({ gauge: { series, xM, yM } }, g) => [
-      gaugeKey(series),
-      { xM, yM, radarTotalMm: observedSum(total.gauges.depthMm[g]) },
-    ]),
+    compared.map(({ gauge: { series, xM, yM } }, g) => {
+      const radarTotalMm = observedSum(total.gauges.depthMm[g]);
+      const radarPointTotalMm = depthAtPoint(run.grid, total.planes.totalMm, xM, yM, radarTotalMm);
+      return [gaugeKey(series), { xM, yM, radarTotalMm, radarPointTotalMm }];
+    }),
   );
-  const result = adjust(run, total, pairs, windowGauges(pairs, where));
+  const all = windowGauges(byInterval, where);
+  const result = adjust(run, total, pairs, all, trustWhenJudged(evidence, context, all));
   const { adjustment } = result;
-  const places = byKey(windowGauges(byInterval, where));
+  const places = byKey(all);
   const heldOut = new Map(
     (adjustment.applied ? adjustment.crossValidation.gauges : []).map((held) => [
       gaugeKey({ network: held.gauge.network, id: held.gauge.gaugeId }),
@@ -98,6 +106,7 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
         rangeKm: whole.rangeKm,
         radarMm: whole.radarMm,
         radarTotalMm: observedSum(total.gauges.depthMm[g]),
+        radarPointTotalMm: observedSum(total.gauges.depthMm[g]),
         coverage: 0,
         readings: [],
       },
@@ -115,6 +124,22 @@ export function compareWithGauges(run: PreparedRun, total: AssembledRun): Compar
       ? scorePairs(crossValidatedPairs(pairs, adjustment.crossValidation), scoreOptions)
       : { reason: `no adjustment: ${adjustment.reason}` },
     splitMm: compared.reduce((sum, { splitMm }) => sum + splitMm, 0),
+  };
+}
+
+/** Which gauges are trusted where only some of them are known: judged anew, without the evidence of the others. */
+function trustWhenJudged(
+  evidence: readonly GaugeEvidence[],
+  context: JudgeContext,
+  all: readonly WindowGauge[],
+): TrustRule {
+  const keyOf = ({ network, gaugeId }: WindowGauge) => gaugeKey({ network, id: gaugeId });
+  return (some) => {
+    const known = new Set(some);
+    const absent = new Set(all.filter((gauge) => !known.has(gauge)).map(keyOf));
+    const judged = evidence.filter(({ series }) => !absent.has(gaugeKey(series)));
+    const reasons = leftOutReasons(judgeGauges(judged, context));
+    return some.filter((gauge) => !reasons.has(keyOf(gauge)));
   };
 }
 
