@@ -70,7 +70,7 @@ function forEachCompared(
 }
 
 /**
- * Factor on every rate from Z, beside that of the size of drops, that makes the sweep's rain agree with its KDP, where KDP tells more rain by more than
+ * Factor on every rate from Z that makes the sweep's rain agree with its KDP, where KDP tells more rain by more than
  * the shape of drops explains: many small drops, as in warm rain, echo less for the same rain.
  *
  * With a fixed exponent, Z = a R^b follows the number of drops through a. Source: Bringi, Tang and Chandrasekar
@@ -87,17 +87,15 @@ export function dropNumberFactor(
   tables: RateTables,
   reader: MomentReader,
 ): number {
-  const { laws, byType, dropNumberRatio, dropSizeFactor, kdpFactor } = tables;
+  const { laws, byType, dropNumberRatio } = tables;
   if (laws === undefined) return 1;
   const prior =
     dropNumberRatio === undefined ? PRIOR_KM2_MM_PER_HOUR.relation : PRIOR_KM2_MM_PER_HOUR.learned;
   let byZ = prior;
-  // What the size of drops explains is not their number's.
-  const explained = dropSizeFactor / kdpFactor;
-  let byKdp = prior * (dropNumberRatio === undefined ? 1 : dropNumberRatio / explained);
+  let byKdp = prior * (dropNumberRatio ?? 1);
   forEachCompared(echo, reader, (areaKm2, gate, kdp) => {
-    byZ += areaKm2 * dropSizeFactor * rateOfZ(echo.dbz[gate], byType[rainType?.[gate] ?? 0]);
-    byKdp += areaKm2 * kdpFactor * rateOfKdp(kdp, laws.kdp);
+    byZ += areaKm2 * rateOfZ(echo.dbz[gate], byType[rainType?.[gate] ?? 0]);
+    byKdp += areaKm2 * rateOfKdp(kdp, laws.kdp);
   });
   return factorOfRatio(Math.max(0, byKdp) / byZ);
 }

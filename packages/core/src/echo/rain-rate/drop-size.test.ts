@@ -20,9 +20,9 @@ const SETTINGS: GateRateSettings = {
 /** In the middles of classes, and exact in float32. */
 const RAIN: TestGate = { dbz: 38.25, zdrDb: 1.25, rhohv: 0.99 };
 /**
- * By hand: 6.7e-3 · 10^(0.927 · 3.825 − 0.343 · 1.25) = 8.772 mm/h over (10^3.825 / 200)^(1 / 1.6) = 8.964 mm/h.
+ * By hand: 9.754e-3 · 10^(0.8485 · 3.825 − 0.255 · 1.25) = 8.240 mm/h over (10^3.825 / 200)^(1 / 1.6) = 8.964 mm/h.
  */
-const RATIO = 0.9787;
+const RATIO = 0.9193;
 
 /** Rounds of a sweep of 60 × 60 gates, five minutes apart. */
 function learned(
@@ -48,10 +48,10 @@ const ratioOf = (learner: DropSizeLearner, zdrOffsetDb = 0) => {
 
 describe("what the size of drops makes of R(Z)", () => {
   test.each([
-    // 1 dB of ZDR is a factor of 10^-0.343 = 0.4539.
+    // 1 dB of ZDR is a factor of 10^-0.255 = 0.5559.
     [1.25, RATIO],
-    [2.25, RATIO * 0.4539],
-    [0.75, RATIO / 0.4539 ** 0.5],
+    [2.25, RATIO * 0.5559],
+    [0.75, RATIO / 0.5559 ** 0.5],
   ])("with a ZDR of %d dB is as worked out by hand", (zdrDb, expected) => {
     const found = ratioOf(learned(() => ({ ...RAIN, zdrDb })))!;
     expect(Math.abs(found.ratio / expected - 1)).toBeLessThan(1e-3);
@@ -63,9 +63,9 @@ describe("what the size of drops makes of R(Z)", () => {
   test("differs from time to time: the factor is drawn towards 1 by the error that this makes", () => {
     const found = ratioOf(learned((round) => ({ ...RAIN, zdrDb: round % 2 === 0 ? 0.75 : 2.25 })))!;
     expect(found.blockCount).toBe(8);
-    // Eight values of R(Z, ZDR) over R(Z), 1.453 and 0.444 by turns: mean 0.9485, standard error 0.2 of it.
-    expect(Math.abs(found.ratio / 0.9485 - 1)).toBeLessThan(2e-3);
-    expect(Math.abs(found.standardError / (Math.sqrt((8 * 0.5045 ** 2) / 7 / 8) / 0.9485) - 1)).toBeLessThan(
+    // Eight values of R(Z, ZDR) over R(Z), 1.233 and 0.511 by turns, 0.361 about their mean of 0.872.
+    expect(Math.abs(found.ratio / 0.872 - 1)).toBeLessThan(2e-3);
+    expect(Math.abs(found.standardError / (Math.sqrt((8 * 0.361 ** 2) / 7 / 8) / 0.872) - 1)).toBeLessThan(
       0.03,
     );
     const share = 0.1225 / (0.145 + found.standardError ** 2);
@@ -109,7 +109,7 @@ describe("what the size of drops makes of R(Z)", () => {
   });
 
   test("beyond a factor of 4 it is a broken ZDR: nothing is changed", () => {
-    const found = ratioOf(learned(() => ({ ...RAIN, zdrDb: 3.25 })))!;
+    const found = ratioOf(learned(() => ({ ...RAIN, zdrDb: 3.75 })))!;
     expect(found.ratio).toBeLessThan(0.25);
     expect(found.factor).toBe(1);
   });
@@ -117,7 +117,7 @@ describe("what the size of drops makes of R(Z)", () => {
   test("of two radars goes by their rain; one that tells nothing has no part", () => {
     const [one, other] = [1.25, 2.25].map((zdrDb) => learned(() => ({ ...RAIN, zdrDb })).finish(0));
     const both = dropSizeRatio(joinDropSizes([one, undefined, other])!, READY)!;
-    expect(Math.abs(both.ratio / ((RATIO * (1 + 0.4539)) / 2) - 1)).toBeLessThan(1e-3);
+    expect(Math.abs(both.ratio / ((RATIO * (1 + 0.5559)) / 2) - 1)).toBeLessThan(1e-3);
     expect(joinDropSizes([undefined, undefined])).toBeUndefined();
   });
 });
@@ -153,8 +153,8 @@ describe("rates that follow the size of drops", () => {
     expect(light.rates.dropNumberFactor).toBe(1);
     const moderate = rateOf({ dbz: 40, zdrDb: 1.9, rhohv: 0.99 }, C_BAND_M);
     expect(moderate.rate / (factor * rainRateMmPerHour(40, RELATION))).toBeCloseTo(1, 6);
-    // 6.7e-3 · 10^(3.708 − 0.4116) = 13.26 mm/h.
-    expect(rateOf({ dbz: 40, zdrDb: 1.2, rhohv: 0.99 }, S_BAND_M).rate).toBeCloseTo(13.26, 2);
+    // 9.754e-3 · 10^(3.394 − 0.306) = 11.94 mm/h.
+    expect(rateOf({ dbz: 40, zdrDb: 1.2, rhohv: 0.99 }, S_BAND_M).rate).toBeCloseTo(11.94, 1);
   });
 
   test("are those of KDP at C band by a lesser power", () => {
@@ -170,4 +170,21 @@ describe("rates that follow the size of drops", () => {
     expect(rateOf({ dbz: 25 }, S_BAND_M, off).rate).toBe(plain);
     expect(rateOf({ dbz: 25 }, 0.022).rate).toBe(plain);
   });
+});
+
+test("where KDP tells more drops, and ZDR smaller ones, rain is raised once", () => {
+  // R(Z) at 40 dBZ is 11.53 mm/h; KDP says 2.5 times as much, ZDR of moderate rain 1.3 times.
+  const kdpDegPerKm = ((11.53 * 2.5) / 40.5) ** (1 / 0.85);
+  const small = learned(() => ({ ...RAIN, zdrDb: 0.65 })).finish(0)!;
+  const { factor } = dropSizeRatio(small, READY)!;
+  expect(factor).toBeGreaterThan(1.2);
+  const echo = testEcho(60, 60, () => ({ dbz: 40, zdrDb: 0.3, rhohv: 0.99, kdpDegPerKm }), S_BAND_M);
+  const rates = gateRates(
+    echo,
+    undefined,
+    SETTINGS,
+    rateTables(SETTINGS, S_BAND_M, { zdrOffsetDb: 0, dropSize: small }),
+  );
+  expect(Math.abs((rates.dropSizeFactor * rates.dropNumberFactor) / 2.5 - 1)).toBeLessThan(0.02);
+  expect(Math.abs(rates.rateMmPerHour[1800] / (2.5 * 11.53) - 1)).toBeLessThan(0.02);
 });

@@ -12,7 +12,9 @@ import {
   bandLaws,
   bringiKdpLaw,
   CIFELLI_2011_KDP,
+  CIFELLI_2011_Z_ZDR,
   kdpLaw,
+  type MEAN_Z_ZDR,
   RYZHKOV_2005_KDP,
   RYZHKOV_2005_KDP_ZDR,
   RYZHKOV_2005_Z_ZDR,
@@ -62,7 +64,7 @@ runReferenceSuite({
     ["ryzhkov-kdp-*", (entry) => rateOfKdp(kdpOf(entry), RYZHKOV_2005_KDP)],
     ["cifelli-kdp-*", (entry) => rateOfKdp(kdpOf(entry), CIFELLI_2011_KDP)],
     ["cifelli-kdpzdr-*", (entry) => rateOfKdpZdr(kdpOf(entry), zdrOf(entry), lawsOf("S").kdpZdr)],
-    ["cifelli-zzdr-*", (entry) => rateOfZZdr(dbzOf(entry), zdrOf(entry), lawsOf("S").zZdr)],
+    ["cifelli-zzdr-*", (entry) => rateOfZZdr(dbzOf(entry), zdrOf(entry), CIFELLI_2011_Z_ZDR)],
     ["ryzhkov-zzdr-*", (entry) => rateOfZZdr(dbzOf(entry), zdrOf(entry), RYZHKOV_2005_Z_ZDR)],
     ["ryzhkov-kdpzdr-*", (entry) => rateOfKdpZdr(kdpOf(entry), zdrOf(entry), RYZHKOV_2005_KDP_ZDR)],
     ["bc-kdpzdr-*", (entry) => rateOfKdpZdr(kdpOf(entry), zdrOf(entry), lawsOf(bandOfId(entry)).kdpZdr)],
@@ -124,4 +126,17 @@ describe("estimators", () => {
     expect(bandLaws(wavelengthM(1.3e9))).toBeUndefined();
     expect(bandLaws(wavelengthM(13.6e9))).toBeUndefined();
   });
+});
+
+test("at S band R(Z, ZDR) lies midway between the two published laws, in the logarithm", () => {
+  for (const [dbz, zdr] of [
+    [30, 0.6],
+    [40, 1.3],
+    [50, 2.8],
+  ] as const) {
+    const of = (law: typeof MEAN_Z_ZDR) => rateOfZZdr(dbz, zdr, law);
+    expect(
+      of(bandLaws(0.107)!.zZdr) / Math.sqrt(of(CIFELLI_2011_Z_ZDR) * of(RYZHKOV_2005_Z_ZDR)),
+    ).toBeCloseTo(1, 9);
+  }
 });

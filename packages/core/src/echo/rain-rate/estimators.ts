@@ -57,11 +57,22 @@ const CIFELLI_2011_KDP_ZDR: KdpZdrLaw = {
   perZdrDb: -0.169,
   source: CIFELLI_2011,
 };
-const CIFELLI_2011_Z_ZDR: ZZdrLaw = {
+export const CIFELLI_2011_Z_ZDR: ZZdrLaw = {
   coefficient: 6.7e-3,
   exponent: 0.927,
   perZdrDb: -0.343,
   source: CIFELLI_2011,
+};
+
+/**
+ * Geometric mean of the two laws of S band: that of 2005 makes 0.8 to 1.1 times the rain of that of 2011, and nothing says
+ * which holds. House rule.
+ */
+export const MEAN_Z_ZDR: ZZdrLaw = {
+  coefficient: Math.sqrt(RYZHKOV_2005_Z_ZDR.coefficient * CIFELLI_2011_Z_ZDR.coefficient),
+  exponent: (RYZHKOV_2005_Z_ZDR.exponent + CIFELLI_2011_Z_ZDR.exponent) / 2,
+  perZdrDb: (RYZHKOV_2005_Z_ZDR.perZdrDb + CIFELLI_2011_Z_ZDR.perZdrDb) / 2,
+  source: `mean of ${RYZHKOV_2005} and ${CIFELLI_2011}`,
 };
 
 /** R = 129 (KDP / f)^0.85, f in GHz. From memory. Source: Bringi and Chandrasekar (2001), chapter 8. */
@@ -112,7 +123,7 @@ const ZDR_SHARE = { S: 1, others: 0 } as const;
 const BY_BAND: Readonly<Record<string, Omit<BandLaws, "kdp">>> = {
   S: {
     kdpZdr: CIFELLI_2011_KDP_ZDR,
-    zZdr: CIFELLI_2011_Z_ZDR,
+    zZdr: MEAN_Z_ZDR,
     usualZdrShare: ZDR_SHARE.S,
     attenuation: { coefficient: 4120, exponent: 1.03, source: RYZHKOV_2014 },
   },

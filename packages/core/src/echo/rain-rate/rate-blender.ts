@@ -53,6 +53,7 @@ function mostPolarimetric({ capMmPerHour }: ReadyRelation): number {
 
 /** Works out one gate after the other into {@link parts}. */
 export class RateBlender {
+  /** On top of the factor for the size of drops. */
   readonly dropNumberFactor: number;
   /** Whether hail can be told at all. */
   readonly seesHail: boolean;
@@ -99,9 +100,11 @@ export class RateBlender {
       polarimetric === undefined || tables.laws === undefined
         ? Number.POSITIVE_INFINITY
         : Math.min(27, Z_ZDR_DBZ.from, ATTENUATION_DBZ.from);
-    this.dropNumberFactor =
+    const byNumber =
       polarimetric?.dropNumber === true ? dropNumberFactor(echo, rainType, tables, this.#reader) : 1;
-    const unusual = ramp(this.dropNumberFactor, 1, Z_ZDR_MOST_FACTOR);
+    // Many drops are small drops: what their size has raised already is not raised again.
+    this.dropNumberFactor = Math.max(1, byNumber / Math.max(1, tables.dropSizeFactor));
+    const unusual = ramp(byNumber, 1, Z_ZDR_MOST_FACTOR);
     this.#zZdrShare = polarimetric === undefined ? 0 : (1 - unusual) * tables.zZdrShare;
   }
 
