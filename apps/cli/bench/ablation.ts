@@ -16,9 +16,9 @@ import { variantsFor } from "./ablation/variants.ts";
 
 /** Measures the chain from echo to rain against the truth of invented worlds, step by step. */
 export default async function run(args: readonly string[], generator: string): Promise<void> {
-  const { worlds, seeds, size, steps, cache, workers, results } = ablationOptions(args);
+  const { worlds, seeds, size, steps, moments, cache, workers, results } = ablationOptions(args);
   const tasks = worlds.flatMap((world) =>
-    seeds.map((seed): Task => ({ world, seed, size, variants: variantsFor(world, steps) })),
+    seeds.map((seed): Task => ({ world, seed, size, variants: variantsFor(world, steps), moments })),
   );
   const place: Place = { generator, cache };
   const kept = new ResultsFile(results, fileURLToPath(import.meta.url));
