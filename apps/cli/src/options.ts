@@ -165,6 +165,15 @@ const stepLength = z
     "write a length such as PT15M, PT1H or P1D, from a minute on",
   );
 
+/** "3h", "90min" or an ISO 8601 duration, as milliseconds. */
+const timeSpan = z.string().transform((text, context): number => {
+  const parts = /^(\d{1,4})\s*(h|min)$/.exec(text);
+  const ms = parts === null ? durationMs(text) : Number(parts[1]) * (parts[2] === "h" ? 3_600_000 : 60_000);
+  if (ms >= 300_000) return ms;
+  context.addIssue({ code: "custom", message: 'write a length of time from 5 min on: "3h", "90min", PT3H' });
+  return z.NEVER;
+});
+
 /** "UTC" or "+01:00" as minutes. */
 const clockOffset = z.string().transform((text, context): number => {
   const parts = /^([+-])(\d\d):([0-5]\d)$/.exec(text);
@@ -353,7 +362,10 @@ export const flags = {
     ),
   eventCsv: () => new Option("--csv", "largest depths of all places as CSV on stdout, one a row"),
   pages: () =>
-    new Option("--html", "a page for each place, and an index, in the folder of --out; they print and need no network"),
+    new Option(
+      "--html",
+      "a page for each place, and an index, in the folder of --out; they print and need no network",
+    ),
   pagesFolder: () => new Option("--out <dir>", "folder for the pages of --html: a new or empty one"),
   bundleFile: () =>
     new Option(
@@ -365,7 +377,21 @@ export const flags = {
       "--licence <text>",
       'licence of data in the bundle, "radar: CC BY 4.0" say; may be given several times',
     ).argParser(several((value) => value)),
-  preparedBy: () => new Option("--prepared-by <name>", "who prepared the bundle; a line to fill in where left out"),
+  preparedBy: () =>
+    new Option("--prepared-by <name>", "who prepared the bundle; a line to fill in where left out"),
+
+  // check
+  since: () =>
+    new Option("--since <time>", "only so long before the newest scan: 3h, 90min").argParser(
+      through(timeSpan),
+    ),
+  everyGauge: () => new Option("--all", "every gauge, not only what fits on a screen"),
+  checkHtml: () => new Option("--html <file>", "write it as a page as well, with the evidence"),
+  failOn: () =>
+    new Option(
+      "--fail-on <verdict>",
+      "exit with 1 where a gauge or radar has this verdict or a worse one",
+    ).choices(["leave-out", "care"]),
 
   // export
   outFile: () => new Option("-o, --out <file>", "the file to write").makeOptionMandatory(),

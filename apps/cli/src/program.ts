@@ -1,6 +1,7 @@
 import { Command } from "commander";
 import { EXIT_WORDS, NothingLeft, speakPlainly } from "./command.ts";
 import { registerBudget } from "./commands/budget.ts";
+import { registerCheck } from "./commands/check.ts";
 import { registerCompare } from "./commands/compare.ts";
 import { registerEvent } from "./commands/event.ts";
 import { registerExplain } from "./commands/explain.ts";
@@ -30,6 +31,7 @@ export function buildProgram(): Command {
   registerPlan(program);
   registerTotal(program);
   registerEvent(program);
+  registerCheck(program);
   registerExplain(program);
   registerExport(program);
   registerRelate(program);

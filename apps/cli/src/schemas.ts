@@ -1,5 +1,6 @@
 import type { z } from "zod";
 import { budgetSchema } from "./budget/schema.ts";
+import { checkSchema } from "./check/schema.ts";
 import { planReportSchema } from "./commands/plan.ts";
 import { totalSchema } from "./commands/total.ts";
 import { compareSchema } from "./compare/compare-runs.ts";
@@ -18,6 +19,7 @@ export const schemas = {
   plan: planReportSchema,
   total: totalSchema,
   event: eventSchema,
+  check: checkSchema,
   explain: explainSchema,
   export: exportSchema,
   "relate table": relationTableSchema,

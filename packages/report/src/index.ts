@@ -7,6 +7,7 @@ export {
   svgRelations,
 } from "./charts/relation-chart.ts";
 export { type ScatterPoint, svgScatter } from "./charts/scatter.ts";
+export { type CheckBias, type CheckPage, type CheckRadar, type CheckRow, checkPage } from "./check-page.ts";
 export { type FrameSeries, FrameStack } from "./data/frame-stack.ts";
 export type {
   EventIndexInput,

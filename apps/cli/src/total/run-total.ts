@@ -4,6 +4,7 @@ import path from "node:path";
 import { InputError } from "@rainreckon/core";
 import { type JsonValue, sha256OfFile, writeJson, writeText } from "@rainreckon/formats";
 import { renderReport } from "@rainreckon/report";
+import { CHECKS_FILE, checkDocument } from "../check/document.ts";
 import type { Manifest } from "../manifest.ts";
 import { loadPlan } from "../plan/load.ts";
 import { leftOutLog } from "../ui/left-out.ts";
@@ -34,6 +35,7 @@ import {
 import { type PreparedRun, prepareRun } from "./prepare.ts";
 import { reportInput } from "./report-input.ts";
 import { MANIFEST, openRunFolder, RUN_LOG } from "./run-folder.ts";
+import { learnUncertainty } from "./uncertainty.ts";
 import { workUnits } from "./work.ts";
 
 export interface TotalOptions {
@@ -117,6 +119,7 @@ export async function runTotal(
     comparison,
     store,
     adjustedTotalMm,
+    uncertainty: learnUncertainty(run, total, comparison, adjustedTotalMm),
     cautions: cautions.map((caution) => caution.text),
     draft: folder.draft,
   };
@@ -127,6 +130,7 @@ export async function runTotal(
   await writePairs(sources);
   await writeGauges(sources);
   await writeScores(sources);
+  await writeJson(folder.draft(CHECKS_FILE), checkDocument(run, comparison) as JsonValue);
   const report = renderReport(
     reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all, store }),
   );
@@ -139,6 +143,7 @@ export async function runTotal(
     "pairs.csv",
     "gauges.csv",
     "scores.json",
+    CHECKS_FILE,
     "report.html",
     ...(learnsBeforehand(run) ? [LEARNED] : []),
   ];
