@@ -38,7 +38,8 @@ button:not(:disabled):hover{border-color:var(--accent);color:var(--accent)}
 .live-legend li{display:flex;align-items:center;gap:8px;font-size:.88rem;line-height:1.65;break-inside:avoid}
 .swatch-hatch{stroke:#b4b9bc;stroke-width:1.6;fill:none}
 .live-legend .swatch{overflow:hidden}
-.place-panel{margin:0;border:1px solid var(--line);border-radius:8px;background:var(--panel);padding:12px 14px;align-self:start;grid-column:1/-1}
+.place-panel,.place-rain{margin:0;border:1px solid var(--line);border-radius:8px;background:var(--panel);padding:12px 14px;align-self:start;grid-column:1/-1}
+.place-rain h3{margin:0 0 4px}
 .finder{display:flex;flex-wrap:wrap;align-items:center;gap:4px 8px;margin:0 0 8px;font-size:.9rem}
 .finder select{flex:1 1 180px;min-width:0}
 .place-head{display:flex;justify-content:space-between;align-items:flex-start;gap:12px;margin:0 0 8px}
@@ -62,6 +63,6 @@ button:not(:disabled):hover{border-color:var(--accent);color:var(--accent)}
 .sort-sign::after{content:"\\2195";margin-left:4px;font-size:.9em;opacity:.6}
 [aria-sort=ascending] .sort-sign::after{content:"\\2191";opacity:1}
 [aria-sort=descending] .sort-sign::after{content:"\\2193";opacity:1}
-@media (min-width:1081px){.scripted .places-legend{columns:2;column-gap:16px}.scripted .map-side>p{margin-bottom:0}.scripted .map-body{grid-template-columns:minmax(0,1fr) 392px;grid-template-rows:auto 1fr}.scripted .map-sheet{grid-row:1/3}.scripted .place-panel{grid-column:2}}
+@media (min-width:1081px){.scripted .places-legend{columns:2;column-gap:16px}.scripted .map-side>p{margin-bottom:0}.scripted .map-body{grid-template-columns:minmax(0,1fr) 392px;grid-template-rows:auto auto auto}.scripted .map-sheet{grid-row:1/3}.scripted .place-panel{grid-column:2;grid-row:2/4}.scripted .place-rain{grid-column:1;grid-row:3}}
 @media (max-width:560px){.page-tools{justify-content:flex-start;margin-top:-6px}.page-tools fieldset{flex:1 0 100%}.map-block>select{display:block;width:100%;margin-top:4px}.map-block>.more-layers{margin:6px 0 0}.place-facts div{grid-template-columns:1fr;gap:0}.readout{padding:0 6px}.time-bar{padding:8px 6px}}
-@media print{.page-tools,.time-bar button,.time-bar input,.hint,.finder,.place-head button,.table-tools,.sort-sign,.map-cursor,.map-tip,.readout,.map-block>select,.place-panel details{display:none}.time-bar{border:0;margin:0;padding:2pt 0 0}.place-panel{break-inside:avoid;margin-top:6pt}.place-panel:not(:has(.place-head)){display:none}.place-body{display:grid;grid-template-columns:1fr 1fr;gap:0 12pt}.place-body>*{grid-column:1}.place-body>.series-figure{grid-column:2;grid-row:1/12;margin:0}.series-words{min-height:0}.live-legend ul{columns:1}.live-legend li{font-size:7.5pt;line-height:1.35;gap:5pt}.place-facts{font-size:8.5pt}}`;
+@media print{.page-tools,.time-bar button,.time-bar input,.hint,.finder,.place-head button,.table-tools,.sort-sign,.map-cursor,.map-tip,.readout,.map-block>select,.place-rain details{display:none}.time-bar{border:0;margin:0;padding:2pt 0 0}.place-panel{break-inside:avoid;margin-top:6pt}.place-panel:not(:has(.place-head)){display:none}.place-panel,.place-rain{grid-column:1/-1!important;grid-row:auto!important}.place-rain{break-inside:avoid;margin-top:6pt}.series-words{min-height:0}.live-legend ul{columns:1}.live-legend li{font-size:7.5pt;line-height:1.35;gap:5pt}.place-facts{font-size:8.5pt}}`;

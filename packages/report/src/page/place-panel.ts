@@ -17,7 +17,8 @@ const KINDS: readonly (readonly [PagePlace["kind"], string])[] = [
 /** What is known of the place that was picked, beside or below the map. */
 export function placePanel(data: PageData, store: Store, clock: Clock): void {
   const panel = el("section", { class: "place-panel", "aria-label": "The place looked at" });
-  need(".map-body").append(panel);
+  const rain = el("section", { class: "place-rain", "aria-label": "Its rain against time", hidden: true });
+  need(".map-body").append(panel, rain);
   const finder = el("select", { id: "find-place" }, el("option", { value: "" }, "pick on the map, or here"));
   for (const [kind, words] of KINDS) {
     const options = data.places
@@ -38,6 +39,9 @@ export function placePanel(data: PageData, store: Store, clock: Clock): void {
   const show = (choice: Choice) => {
     finder.value = choice.place ?? "";
     chart = undefined;
+    const wasOpen = rain.querySelector("details")?.open ?? false;
+    rain.replaceChildren();
+    rain.hidden = true;
     const place = data.places.find(({ key }) => key === choice.place);
     if (place === undefined) {
       body.replaceChildren(
@@ -49,7 +53,6 @@ export function placePanel(data: PageData, store: Store, clock: Clock): void {
       );
       return;
     }
-    const wasOpen = body.querySelector("details")?.open ?? false;
     const { unit } = choice;
     const say = (text: string) => (unit === "mm" ? text : inInches(text));
     body.replaceChildren(
@@ -68,8 +71,10 @@ export function placePanel(data: PageData, store: Store, clock: Clock): void {
         ...place.facts.map(([label, text]) => el("div", {}, el("dt", {}, label), el("dd", {}, say(text)))),
       ),
       ...place.cautions.map((caution) => el("p", { class: "place-caution" }, say(caution))),
-      ...(place.series === undefined ? [] : seriesOf(place, place.series, choice, wasOpen)),
     );
+    if (place.series === undefined) return;
+    rain.hidden = false;
+    rain.append(...seriesOf(place, place.series, choice, wasOpen));
   };
   const seriesOf = (
     place: PagePlace,
@@ -88,10 +93,12 @@ export function placePanel(data: PageData, store: Store, clock: Clock): void {
       title: place.title,
       unit: choice.unit,
       clock,
+      width: Math.max(320, Math.min(760, rain.clientWidth - 28)),
       ...(place.range === undefined ? {} : { range: place.range }),
     });
     showBand(choice);
-    return [chart.element, el("p", { class: "small" }, notesOn(place, series)), table];
+    const heading = el("h3", {}, `${place.title}: rain against time`);
+    return [heading, chart.element, el("p", { class: "small" }, notesOn(place, series)), table];
   };
   store.on(["place", "unit"], show);
   store.on(["layer", "frame"], showBand);

@@ -5,14 +5,12 @@ import { depthText, MM_PER_INCH, type Unit } from "./depths.ts";
 import { el, svg } from "./dom.ts";
 import type { Clock } from "./times.ts";
 
-const WIDTH = 420;
 const LEFT = 40;
 const RIGHT = 14;
 const PANEL = 118;
 const TOP = 22;
-const GAP = 34;
+const GAP = 48;
 const BOTTOM = 24;
-const INNER = WIDTH - LEFT - RIGHT;
 const SUMS_TOP = TOP + PANEL + GAP;
 const HEIGHT = SUMS_TOP + PANEL + BOTTOM;
 
@@ -23,6 +21,8 @@ export interface ChartSettings {
   readonly title: string;
   readonly unit: Unit;
   readonly clock: Clock;
+  /** Pixels of the page that it has. */
+  readonly width: number;
   /** Bounds of the sum, mm. */
   readonly range?: readonly [number, number];
 }
@@ -36,7 +36,8 @@ export interface SeriesChart {
 
 /** Rain by step over its running sums, on one time axis, with a cursor that says what stands where. */
 export function seriesChart(series: PageSeries, settings: ChartSettings): SeriesChart {
-  const { unit, clock, title, id } = settings;
+  const { unit, clock, title, id, width } = settings;
+  const inner = width - LEFT - RIGHT;
   const scale = unit === "mm" ? 100 : 100 * MM_PER_INCH;
   const sides = series.sides.map((side) => ({
     ...side,
@@ -44,7 +45,7 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
   }));
   const count = Math.max(0, ...sides.map(({ depths }) => depths.length));
   const sums = sides.map(({ depths }) => running(depths));
-  const x = (step: number) => LEFT + (INNER * step) / Math.max(1, count);
+  const x = (step: number) => LEFT + (inner * step) / Math.max(1, count);
   const end = series.startEpochMs + count * series.stepMs;
   const deepest = Math.max(
     unit === "mm" ? 0.5 : 0.02,
@@ -59,16 +60,16 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
   const bands = [TOP, SUMS_TOP].map((top) => svg("rect", { class: "band", y: top, height: PANEL, width: 0 }));
   const drawing = svg(
     "svg",
-    { class: "chart series", viewBox: `0 0 ${WIDTH} ${HEIGHT}`, "aria-hidden": "true" },
+    { class: "chart series", viewBox: `0 0 ${width} ${HEIGHT}`, "aria-hidden": "true" },
     ...bands,
-    axis(yDepth, deepest * 1.05, TOP, `${unit} in ${minutes} minutes`),
-    axis(ySum, highest * 1.05, SUMS_TOP, `${unit} since the start`),
+    axis(yDepth, deepest * 1.05, TOP, `${unit} in ${minutes} minutes`, width),
+    axis(ySum, highest * 1.05, SUMS_TOP, `${unit} since the start`, width),
     svg(
       "g",
       { class: "axis" },
-      ...clock.ticks(series.startEpochMs, end, 6).flatMap(({ epochMs, label }) => {
+      ...clock.ticks(series.startEpochMs, end, Math.max(4, inner / 80)).flatMap(({ epochMs, label }) => {
         const tx = x((epochMs - series.startEpochMs) / series.stepMs);
-        const anchor = tx < LEFT + 12 ? "start" : tx > WIDTH - RIGHT - 12 ? "end" : "middle";
+        const anchor = tx > width - 16 ? "end" : "middle";
         return [SUMS_TOP + PANEL, TOP + PANEL].flatMap((floor) => [
           svg("path", { d: `M${tx} ${floor}v4` }),
           svg("text", { x: tx, y: floor + 16, "text-anchor": anchor }, label),
@@ -82,7 +83,7 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
         : svg("path", { class: `step-line ${role}`, d: stepLine(depths, x, yDepth) }),
       svg("path", { class: `step-line sum ${role}`, d: sumLine(sums[at], x, ySum) }),
     ]),
-    ...(range === undefined ? [] : rangeMark(range as [number, number], ySum)),
+    ...(range === undefined ? [] : rangeMark(range as [number, number], ySum, width)),
   );
   const line = svg("path", { class: "series-cursor", visibility: "hidden" });
   drawing.append(line);
@@ -140,8 +141,8 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
   rest();
   holder.addEventListener("pointermove", (event) => {
     const box = drawing.getBoundingClientRect();
-    const at = ((event.clientX - box.left) / box.width) * WIDTH;
-    move(Math.floor(((at - LEFT) / INNER) * count));
+    const at = ((event.clientX - box.left) / box.width) * width;
+    move(Math.floor(((at - LEFT) / inner) * count));
   });
   holder.addEventListener("pointerleave", rest);
   holder.addEventListener("blur", rest);
@@ -181,16 +182,22 @@ function running(depths: readonly number[]): number[] {
   });
 }
 
-function axis(y: (value: number) => number, most: number, top: number, words: string): SVGGElement {
+function axis(
+  y: (value: number) => number,
+  most: number,
+  top: number,
+  words: string,
+  width: number,
+): SVGGElement {
   return svg(
     "g",
     { class: "axis" },
     svg("text", { x: LEFT, y: top - 8 }, words),
     ...ticks(0, most, 4).flatMap((value) => [
-      svg("path", { class: "grid-line", d: `M${LEFT} ${y(value)}H${WIDTH - RIGHT}` }),
+      svg("path", { class: "grid-line", d: `M${LEFT} ${y(value)}H${width - RIGHT}` }),
       svg("text", { x: LEFT - 5, y: y(value) + 4, "text-anchor": "end" }, String(value)),
     ]),
-    svg("path", { class: "base", d: `M${LEFT} ${top + PANEL}H${WIDTH - RIGHT}` }),
+    svg("path", { class: "base", d: `M${LEFT} ${top + PANEL}H${width - RIGHT}` }),
   );
 }
 
@@ -239,8 +246,12 @@ function gaps(depths: readonly number[], x: (step: number) => number, side: numb
   return svg("path", { class: "hatch-line", d: path });
 }
 
-function rangeMark([low, high]: readonly [number, number], y: (value: number) => number): SVGElement[] {
-  const at = WIDTH - RIGHT + 5;
+function rangeMark(
+  [low, high]: readonly [number, number],
+  y: (value: number) => number,
+  width: number,
+): SVGElement[] {
+  const at = width - RIGHT + 5;
   return [
     svg("path", {
       class: "range",
