@@ -1,6 +1,7 @@
 // Benches, as ratios in one run: `npm run bench [rate|decode|kriging|cost|memory|chain]`. Machines are noisy: read the ratios.
 // What the steps from echo to rain cost: `npm run bench -- chain [--storm FOLDER]`, the demo's storm, made there once.
-// And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`.
+// And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`;
+// verdicts on gauges against what was planted in them: `npm run bench -- faults [--worlds …] [--seeds …]`.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
 import os from "node:os";
@@ -14,8 +15,10 @@ const program = path.join(root, "apps/cli/dist/main.js");
 const generator = path.join(root, "test-data/dist/storm.mjs");
 const wanted = process.argv.slice(2);
 const ablation = wanted[0] === "ablation";
-const asked = (name) => wanted.length === 0 || (!ablation && wanted.includes(name));
-for (const built of ablation ? [generator] : [program, generator]) {
+const faults = wanted[0] === "faults";
+const onWorlds = ablation || faults;
+const asked = (name) => wanted.length === 0 || (!onWorlds && wanted.includes(name));
+for (const built of onWorlds ? [generator] : [program, generator]) {
   if (!existsSync(built))
     throw new Error(`${path.relative(root, built)} is missing: run npm test or npm run demo once`);
 }
@@ -101,6 +104,7 @@ const keptScans = {
   },
 };
 if (ablation) await (await bundled("apps/cli/bench/ablation.ts", [keptScans]))(wanted.slice(1), generator);
+if (faults) await (await bundled("apps/cli/bench/faults.ts"))(wanted.slice(1), generator);
 
 const median = (values) => values.toSorted((a, b) => a - b)[Math.floor(values.length / 2)];
 

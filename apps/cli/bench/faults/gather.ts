@@ -23,8 +23,8 @@ export interface TrueGauge {
   readonly network: string;
   readonly id: string;
   readonly trueMm: number;
-  /** Undefined for a sound one. */
-  readonly fault: string | undefined;
+  /** Null for a sound one. */
+  readonly fault: string | null;
 }
 
 /** A world after its `total` job: all that its gauges are judged by, and what is true of them. */
@@ -44,16 +44,18 @@ const SALTWATER = { network: "saltwater", zone: "UTC+01:00" };
 /**
  * Runs the `total` job on a world by a fresh plan, without leaving anything on disk.
  *
+ * @param makeWorld - makes the world, if need be, and gives its folder
  * @param keep - folder in which what the run gave is kept, to be judged anew; undefined to run each time
  */
 export async function gatherFaults(
-  folder: string,
+  makeWorld: () => string,
   world: string,
   seed: number,
   keep: string | undefined,
 ): Promise<FaultWorld> {
   const kept = keep === undefined ? undefined : path.join(keep, `${world}-${seed}.bin`);
   if (kept !== undefined && existsSync(kept)) return deserialize(readFileSync(kept)) as FaultWorld;
+  const folder = makeWorld();
   const gathered = { world, seed, ...(await runWorld(folder)), gauges: trueGauges(folder) };
   if (kept !== undefined) {
     mkdirSync(path.dirname(kept), { recursive: true });
@@ -101,7 +103,7 @@ interface TruthFile {
     readonly network: string;
     readonly id: string;
     readonly trueTotalMm: number;
-    readonly fault?: string;
+    readonly fault: string | null;
   }[];
 }
 

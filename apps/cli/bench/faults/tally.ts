@@ -29,8 +29,8 @@ export interface Judged {
   readonly network: string;
   readonly id: string;
   readonly trueMm: number;
-  /** Undefined for a sound one; "cloudburst" for the gauge below one. */
-  readonly planted: string | undefined;
+  /** Null for a sound one. */
+  readonly planted: string | null;
   /** Undefined where the run left the gauge out before judging. */
   readonly verdict: GaugeVerdict | undefined;
   /** Doubted (care or leave out), or left out and named. */
@@ -54,7 +54,7 @@ export function judgeWorld(gathered: FaultWorld): Judged[] {
     const right = isNetworks ? [RIGHT_NETWORK_CAUSES[fault ?? ""]] : (RIGHT_CAUSES[fault ?? ""] ?? []);
     const named = isUnplaced
       ? leftOut.includes(key)
-      : fault !== undefined && verdict?.cause !== undefined && right.includes(verdict.cause.name);
+      : fault !== null && verdict?.cause !== undefined && right.includes(verdict.cause.name);
     return {
       world,
       seed,
