@@ -1,6 +1,7 @@
-import type { JudgeContext } from "../evidence.ts";
+import type { FieldSamples, JudgeContext } from "../evidence.ts";
 import { decibels } from "../numbers.ts";
 import { type UnitMistake, unitMistakes } from "../unit-checks.ts";
+import type { Aligned } from "./aligned.ts";
 import {
   bestClock,
   bestFactor,
@@ -12,6 +13,7 @@ import {
   type SilentFrom,
 } from "./alternatives.ts";
 import type { ReferenceLevel } from "./reference-level.ts";
+import { rememberedBy } from "./remembered.ts";
 import { isJudgeable, misfitAt, type Subject } from "./subject.ts";
 
 /** A gauge fits when its misfit is below this, or below so many times that of sound gauges. House rule. */
@@ -36,6 +38,8 @@ const PLACE_OVER_HOURS = 2;
 const LEAST_DISTANCE_KM = 4;
 /** Wet steps from which the likeness with another place, of many hundred, is no chance. */
 const PLACE_WET_STEPS = 6;
+/** Levels at which changes are looked for: a tenth of a decibel is finer than any of them can tell. */
+const LEVELS_PER_DB = 10;
 /** How near to the factor of a mistaken unit a gauge must be, dB; farther for one that is small beside the radar's own error. */
 const NEAR_UNIT_DB = 1.5;
 const NEAR_LARGE_UNIT_DB = 2.5;
@@ -87,11 +91,30 @@ export function accountOf(subject: Subject, reference: ReferenceLevel, { field }
   if (steps === undefined || !judgeable) return { ...base, ...nothing, reason: undefined };
   const factor = bestFactor(steps, ratioDb, levelDb);
   if (misfit < FITS_WELL) return { ...base, ...nothing, factor, reason: undefined };
-  const silent = longestSilence(steps, levelDb);
-  const clock = wholeHours(bestClock(steps, levelDb));
-  const place = field === undefined ? undefined : bestPlace(steps, field, levelDb);
+  const { silent, clock, place } = changesOf(
+    steps,
+    field,
+    Math.round(levelDb * LEVELS_PER_DB) / LEVELS_PER_DB,
+  );
   const all = { ...base, factor, silent, clock, place };
   return { ...all, reason: reasonOf(all, reference) };
+}
+
+/** What is looked for at great cost, by the level of the place. */
+type Changes = Pick<Account, "silent" | "clock" | "place">;
+
+const changesKnown = rememberedBy((_: Aligned) => new Map<number, Changes>());
+
+/** What would make a gauge fit: worked out once for each level. */
+function changesOf(steps: Aligned, field: FieldSamples | undefined, levelDb: number): Changes {
+  const known = changesKnown(steps);
+  const changes = known.get(levelDb) ?? {
+    silent: longestSilence(steps, levelDb),
+    clock: wholeHours(bestClock(steps, levelDb)),
+    place: field === undefined ? undefined : bestPlace(steps, field, levelDb),
+  };
+  known.set(levelDb, changes);
+  return changes;
 }
 
 function wholeHours(best: ShiftedClock | undefined): ShiftedClock | undefined {

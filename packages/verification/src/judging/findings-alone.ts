@@ -6,6 +6,7 @@ import type { CauseName, CheckName, Finding } from "../verdict.ts";
 import type { Account } from "./account.ts";
 import { findLateRelease, findOddResolution, findRepeatedValue, findTestTips } from "./alone.ts";
 import { distanceKm } from "./neighbours.ts";
+import { rememberedBy } from "./remembered.ts";
 import { mm, span, utc } from "./words.ts";
 
 /** Readings on end of one depth from which a line is flat rather than a value repeated. */
@@ -75,7 +76,7 @@ export function findingsAlone(
     const sentence = `${rowFaults.duplicateRows} rows of its files give an instant twice and count once.`;
     add("duplicates", "duplicate", { rows: rowFaults.duplicateRows }, sentence);
   }
-  const twin = twinOf(evidence, gauges, window);
+  const twin = twinOf(evidence, gauges);
   if (twin !== undefined) {
     const sentence = `All its ${twin.readings} readings with rain are those of gauge ${twin.of.series.id} of network ${twin.of.series.network}.`;
     add("duplicates", "duplicate", { sameReadings: twin.readings }, sentence);
@@ -148,14 +149,13 @@ function wasDry(
 function twinOf(
   gauge: GaugeEvidence,
   gauges: readonly GaugeEvidence[],
-  window: Interval,
 ): { readonly of: GaugeEvidence; readonly readings: number } | undefined {
-  const own = wetReadings(gauge, window);
+  const own = wetReadings(gauge);
   if (own.size < TWIN_READINGS || [...own.values()].reduce((sum, depth) => sum + depth, 0) < TWIN_MM)
     return undefined;
   for (const other of gauges) {
     if (other === gauge) return undefined;
-    const theirs = wetReadings(other, window);
+    const theirs = wetReadings(other);
     if (theirs.size !== own.size) continue;
     if ([...own].every(([endEpochMs, depth]) => theirs.get(endEpochMs) === depth)) {
       return { of: other, readings: own.size };
@@ -164,13 +164,11 @@ function twinOf(
   return undefined;
 }
 
-function wetReadings({ series }: GaugeEvidence, window: Interval): Map<number, number> {
+/** All readings with rain by their ends: a copy is one before and after the window too. */
+const wetReadings = rememberedBy(({ series }: GaugeEvidence): Map<number, number> => {
   const readings = new Map<number, number>();
   for (let i = 0; i < series.depthMm.length; i++) {
-    const endEpochMs = series.endEpochMs[i];
-    if (series.depthMm[i] > 0 && endEpochMs > window.startEpochMs && endEpochMs <= window.endEpochMs) {
-      readings.set(endEpochMs, series.depthMm[i]);
-    }
+    if (series.depthMm[i] > 0) readings.set(series.endEpochMs[i], series.depthMm[i]);
   }
   return readings;
-}
+});

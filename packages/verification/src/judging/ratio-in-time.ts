@@ -1,5 +1,6 @@
 import type { Pair } from "@rainreckon/core";
 import { decibels, fromDecibels } from "../numbers.ts";
+import { rememberedBy } from "./remembered.ts";
 import type { Subject } from "./subject.ts";
 
 /** Rain rates above and below which heavy and light rain are compared, mm/h; and steps of each. House rule. */
@@ -8,7 +9,9 @@ const LIGHT_MM_PER_HOUR = 8;
 const LEAST_STEPS = 4;
 
 /** How much less a gauge reads beside the radar in heavy rain than in light rain; the ratio of sums of either, in decibels. */
-export function rateDependence({ steps }: Subject): { differenceDb: number; heavySteps: number } | undefined {
+export const rateDependence = rememberedBy(rateDifference);
+
+function rateDifference({ steps }: Subject): { differenceDb: number; heavySteps: number } | undefined {
   if (steps === undefined) return undefined;
   const hours = steps.stepMs / 3_600_000;
   const heavy = { gaugeMm: 0, radarMm: 0, count: 0 };

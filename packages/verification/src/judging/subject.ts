@@ -4,6 +4,7 @@ import { decibels, fromDecibels } from "../numbers.ts";
 import { findImpossibleReading, findSpike, type ReadingFinding } from "../reading-checks.ts";
 import { type Aligned, aligned, gaugeInWindow } from "./aligned.ts";
 import { type Misfit, misfit } from "./misfit.ts";
+import { rememberedBy } from "./remembered.ts";
 
 /** Rain on either side from which a gauge can be judged by the radar. House rule. */
 export const JUDGE_MM = 3;
@@ -28,7 +29,17 @@ export function isJudgeable({ plain }: Subject): boolean {
   return Math.max(plain.gaugeMm, plain.expectedMm) >= JUDGE_MM && plain.wetSteps >= LEAST_WET_STEPS;
 }
 
+const subjectsOf = rememberedBy((_: GaugeEvidence) => new Map<string, Subject>());
+
 export function subjectOf(evidence: GaugeEvidence, window: Interval): Subject {
+  const known = subjectsOf(evidence);
+  const key = `${window.startEpochMs} ${window.endEpochMs}`;
+  const subject = known.get(key) ?? freshSubject(evidence, window);
+  known.set(key, subject);
+  return subject;
+}
+
+function freshSubject(evidence: GaugeEvidence, window: Interval): Subject {
   const { series, whole, radar } = evidence;
   const impossible = findImpossibleReading(series, whole);
   const spike = findSpike(series, whole, radar);
