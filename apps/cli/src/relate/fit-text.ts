@@ -95,7 +95,7 @@ function notes(result: RelationFitResult): string[] {
   const { source, pairs, fits, cap, offered } = result;
   const lines = [
     "R/G is the sum of rates, radar over gauge; error the root mean square in mm/h. Both on the pairs that were fitted: at other gauges they are larger (relate rank).",
-    `Intervals: ${pairs.drawn}, drawn with replacement; coefficients move together, so no corner of both is meant.`,
+    `Intervals by drawing with replacement: ${pairs.drawn}. A and b move together: not every corner of both intervals is meant.`,
   ];
   const pivot = fits.find(({ name }) => name === (offered?.name ?? "bias-free"));
   if (pairs.pivotRateMmPerHour !== null && pivot?.pivotDbz != null) {
@@ -112,9 +112,12 @@ function notes(result: RelationFitResult): string[] {
     );
   }
   if (cap.shareAbove !== null) {
-    const what = source.kind === "pairs" ? "of the pairs" : "of the rain, by gates,";
+    const share = decimals(100 * cap.shareAbove, 1);
+    const level = `${decimals(cap.dbz, 1)} dBZ, where the cap cuts; fits know no cap`;
     lines.push(
-      `${decimals(100 * cap.shareAbove, 1)} % ${what} lie at or above ${decimals(cap.dbz, 1)} dBZ, where the cap cuts; fits know no cap.`,
+      source.kind === "pairs"
+        ? `${share} % of the pairs lie at or above ${level}.`
+        : `${share} % of the rain comes from gates at or above ${level}.`,
     );
   }
   for (const { reason, count } of source.leftOut.slice(0, 4)) {

@@ -51,7 +51,8 @@ export function fitPairsOf(
     const capped = made(gauge.echo.integral((one) => (one >= capDbz ? rootOf(one) : 0)));
     for (const [k, pair] of all.entries()) {
       const commonHours = (pair.commonFraction * (pair.endEpochMs - pair.startEpochMs)) / 3_600_000;
-      const why = pair.used ? whyDoubtful(pair.radarMm, doubtful[k]?.radarMm) : pair.reason;
+      const isDoubtful = pair.used && hasDoubtfulEcho(pair.radarMm, doubtful[k]?.radarMm);
+      const why = isDoubtful ? DOUBTFUL_ECHO : pair.reason;
       if (why !== "") {
         reasons.set(why, (reasons.get(why) ?? 0) + 1);
         continue;
@@ -89,9 +90,16 @@ export function fitPairsOf(
   };
 }
 
-function whyDoubtful(root: number, doubtfulRoot: number | undefined): string {
-  if (!(root > 0) || !((doubtfulRoot ?? 0) > MOST_DOUBTFUL * root)) return "";
-  return "hail, melting snow or snow had a part in the echo";
+/** Why a pair says nothing of a relation for rain. */
+const DOUBTFUL_ECHO = "hail, melting snow or snow had a part in the echo";
+
+/**
+ * Whether too much of a pair's rain comes from hail, melting snow or snow.
+ *
+ * @param all - an integral of its echo; `doubtful` the same over such gates alone
+ */
+export function hasDoubtfulEcho(all: number, doubtful: number | undefined): boolean {
+  return all > 0 && (doubtful ?? 0) > MOST_DOUBTFUL * all;
 }
 
 /** Decibels, with -Infinity for 0: observed, below detection. */

@@ -48,7 +48,8 @@ export const relationRankSchema = z.strictObject({
     intervalMinutes: z.number(),
     gaugeCount: z.number(),
     gaugesNotTrusted: z.number(),
-    pairCount: z.number(),
+    pairCount: z.number().describe("wet pairs that relations are held against"),
+    pairsOfHailOrSnow: z.number().describe("left out there, since no relation for rain can meet them"),
     meanGaugeMm: z.number(),
     remarks: z.array(z.string()),
   }),
@@ -58,6 +59,7 @@ export const relationRankSchema = z.strictObject({
   relations: rankings.describe("under the cap of the plan"),
   caps: z.strictObject({
     relation: z.string(),
+    pairCount: z.number().describe("wet pairs, those with hail too"),
     atCap: z
       .array(z.strictObject({ cap: z.string(), gatesShare: z.number() }))
       .describe("share of the rain over the gauges from gates at or above each cap, uncapped"),

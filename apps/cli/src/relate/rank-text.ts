@@ -10,6 +10,10 @@ type Row = Rankings["alone"]["rows"][number];
 /** Ranked relations and caps for people, in 80 columns. */
 export function rankText(result: RelationRankResult, terminal: Terminal): string {
   const { source, plan, relations } = result;
+  const hail =
+    source.pairsOfHailOrSnow === 0
+      ? ""
+      : `; ${counted(source.pairsOfHailOrSnow, "pair")} with hail, melting snow or snow left out`;
   const order = result.order === "alone" ? "alone" : "afterBias";
   const untrusted =
     source.gaugesNotTrusted === 0 ? "" : `; ${counted(source.gaugesNotTrusted, "gauge")} not trusted`;
@@ -19,13 +23,13 @@ export function rankText(result: RelationRankResult, terminal: Terminal): string
     ),
     ...wrapped(`  ${source.name}, ${source.start} to ${source.end}`),
     ...wrapped(
-      `  mean gauge depth of a pair ${fixedDecimals(source.meanGaugeMm, 2)} mm; cap ${plan.cap} throughout`,
+      `  mean gauge depth of a pair ${fixedDecimals(source.meanGaugeMm, 2)} mm; cap ${plan.cap} throughout${hail}`,
     ),
     "",
     table("relation", relations, order),
     "",
     ...wrapped(
-      `  = not told from the best of its column: the ${Math.round(100 * levelOf(relations))} % interval of the difference, by drawing gauges, reaches 0. R/G is radar over gauge; errors are root mean squares of pairs in mm and per cent of the mean gauge depth.`,
+      `  = not told from the best of its column: the ${Math.round(100 * levelOf(relations))} % interval of the difference, by drawing gauges, reaches down to 2 % of the best error. R/G is radar over gauge; errors are root mean squares of pairs in mm and per cent of the mean gauge depth.`,
     ),
     ...wrapped(
       "  After bias: each gauge's depths times gauge/radar of the other gauges, each relation with its own factor. What stays is mostly b: A, the calibration of the radar and the factor cannot be told apart.",
@@ -82,15 +86,16 @@ function levelOf({ alone }: Rankings): number {
 
 function verdict(rankings: Rankings, order: keyof Rankings, own: string, noun: string): string[] {
   const { rows, best, chosen, choiceErrorMm, chosenInFolds } = rankings[order];
+  const level = Math.round(100 * levelOf(rankings));
   const rivals = rows.filter(({ toldApart }) => !toldApart).length;
   const words = order === "alone" ? "as they are" : "after bias";
   const lines = [
     chosen === best && rivals === 1
       ? `Best ${words}: ${best}, told from all others.`
-      : `Best ${words}: ${best}; ${rivals} of ${rows.length} are not told from it, and the difference is noise.`,
+      : `Best ${words}: ${best}; ${rivals - 1} of the others ${rivals === 2 ? "is" : "are"} as good within 2 % and noise.`,
     chosen === own
-      ? `The plan's ${noun}, ${own}, may stay: nothing here is surely better.`
-      : `${chosen} is chosen: the plan's ${noun}, ${own}, is surely worse.`,
+      ? `The plan's ${noun}, ${own}, may stay: what is better here may be so by chance.`
+      : `${chosen} is chosen: the plan's ${noun}, ${own}, is worse by more than chance (${level} %).`,
   ];
   const reason = rows[0]?.interval.reason;
   if (reason !== undefined) lines.push(`No difference can be judged: ${reason}.`);
@@ -117,7 +122,9 @@ function capWords({ caps, plan }: RelationRankResult, order: keyof Rankings): st
   return [
     table("cap", caps.ranks, order),
     "",
-    ...wrapped(`  With ${caps.relation}. Rain from gates at or above each cap: ${shares.join(", ")}.`),
+    ...wrapped(
+      `  With ${caps.relation}. Pairs with hail count here: ${caps.ranks.alone.rows.length} caps on ${counted(caps.pairCount, "pair")}. Rain from gates at or above each: ${shares.join(", ")}.`,
+    ),
     "",
     ...verdict(caps.ranks, order, plan.cap, "cap").flatMap(wrapped),
     "",

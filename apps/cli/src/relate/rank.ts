@@ -12,6 +12,7 @@ import { RANK_RULE, type Ranking, type RelationRanks, rankRelations } from "@rai
 import type { LeftOutLog } from "../ui/left-out.ts";
 import { decimals } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
+import { hasDoubtfulEcho } from "./measured-pairs.ts";
 import { type MeasuredRun, measuredRun, pairIntervals, pairsWith, trustedGauges } from "./measured-run.ts";
 import { planConversion } from "./plan-conversion.ts";
 import type { RelationRankResult } from "./rank-schema.ts";
@@ -71,11 +72,11 @@ export async function rankOf(
     ...asked.map((one) => candidateOf(one, own.cap)).filter(({ name }) => name !== ofPlan.name),
   ];
   const ranks = new Ranker(measured, options.intervalMinutes, own.minRateMmPerHour);
-  const relations = ranks.rank(candidates, [ofPlan.name, DEFAULT_RELATION]);
+  const { ranks: relations, doubtfulCount } = ranks.rank(candidates, [ofPlan.name, DEFAULT_RELATION], "rain");
   const caps = uniqueCaps([own.cap, ...options.caps]).map(
     (cap): Candidate => ({ name: capName(cap), relation: own.relation, cap }),
   );
-  const ofCaps = ranks.rank(caps, [capName(own.cap)]);
+  const { ranks: ofCaps } = ranks.rank(caps, [capName(own.cap)], "everything");
   const { pairCount, gaugeCount, meanGaugeMm } = relations;
   return {
     format: "rainreckon-relation-rank-1",
@@ -88,6 +89,7 @@ export async function rankOf(
       gaugeCount,
       gaugesNotTrusted: measured.gauges.length - trustedGauges(measured).length,
       pairCount,
+      pairsOfHailOrSnow: doubtfulCount,
       meanGaugeMm,
       remarks: [...measured.remarks],
     },
@@ -97,10 +99,10 @@ export async function rankOf(
     relations: rankingsOf(relations, candidates),
     caps: {
       relation: ofPlan.name,
-      atCap: caps.map(({ name, relation, cap }) => ({
-        cap: name,
-        gatesShare: ranks.shareAtCap(relation, cap),
-      })),
+      pairCount: ofCaps.pairCount,
+      atCap: caps
+        .map(({ name, relation, cap }) => ({ cap: name, gatesShare: ranks.shareAtCap(relation, cap) }))
+        .sort((one, other) => other.gatesShare - one.gatesShare),
       ranks: rankingsOf(ofCaps, caps),
     },
   };
@@ -137,18 +139,37 @@ class Ranker {
     this.intervalMinutes = first === undefined ? 0 : (first.endEpochMs - first.startEpochMs) / 60_000;
   }
 
-  /** @throws InputError where no trusted gauge has a wet pair */
-  rank(candidates: readonly Candidate[], preferred: readonly string[]): RelationRanks {
+  /**
+   * @param of - "rain" leaves out pairs with hail, melting snow or snow, which no relation for rain can meet
+   * @throws InputError where no trusted gauge has a wet pair
+   */
+  rank(
+    candidates: readonly Candidate[],
+    preferred: readonly string[],
+    of: "rain" | "everything",
+  ): { readonly ranks: RelationRanks; readonly doubtfulCount: number } {
     const gaugeMm: number[] = [];
     const gaugeOf: number[] = [];
     const radarMm: number[][] = candidates.map(() => []);
     const gauges = trustedGauges(this.#measured);
+    let doubtfulCount = 0;
     for (const [g, gauge] of gauges.entries()) {
-      for (const [c, { relation, cap }] of candidates.entries()) {
-        const settings = this.#settings(relation, cap);
-        const depth = gauge.echo.integral((dbz) => gateRate(dbz, settings).rate);
-        for (const pair of pairsWith(this.#measured, gauge, depth, this.#intervals)) {
-          if (!pair.used) continue;
+      const pairsOf = (candidate: Candidate, doubtfulOnly = false) => {
+        const settings = this.#settings(candidate.relation, candidate.cap);
+        const depth = gauge.echo.integral((dbz) => gateRate(dbz, settings).rate, doubtfulOnly);
+        return pairsWith(this.#measured, gauge, depth, this.#intervals);
+      };
+      // By the first candidate for all, so that all are held against the same pairs.
+      const first = candidates[0] as Candidate;
+      const doubtful = pairsOf(first, true);
+      const counts = pairsOf(first).map(({ used, radarMm: all }, k) => {
+        if (!used || of === "everything" || !hasDoubtfulEcho(all, doubtful[k]?.radarMm)) return used;
+        doubtfulCount++;
+        return false;
+      });
+      for (const [c, candidate] of candidates.entries()) {
+        for (const [k, pair] of pairsOf(candidate).entries()) {
+          if (counts[k] !== true) continue;
           radarMm[c]?.push(pair.radarMm);
           if (c > 0) continue;
           gaugeMm.push(pair.gaugeMm);
@@ -162,13 +183,13 @@ class Ranker {
     );
     if (!isWet) {
       throw new InputError(
-        "no trusted gauge has a pair with rain on either side",
+        "no trusted gauge has a pair with rain on either side, and without hail or snow",
         displayText(this.#measured.target, 200),
         "take a window with rain, and see gauges.csv for why gauges are not trusted",
         { kind: "no-input" },
       );
     }
-    return rankRelations({
+    const ranks = rankRelations({
       gaugeMm: Float64Array.from(gaugeMm),
       gaugeOf: Uint32Array.from(gaugeOf),
       gaugeCount: gauges.length,
@@ -177,6 +198,7 @@ class Ranker {
       thresholdMm: pairs.thresholdMm,
       bootstrap,
     });
+    return { ranks, doubtfulCount };
   }
 
   /** Share of the uncapped rain over trusted gauges that comes from gates at or above a cap. */

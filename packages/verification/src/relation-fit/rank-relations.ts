@@ -39,7 +39,7 @@ export interface RankedRelation {
   /** errorMm minus that of the best, with its interval. */
   readonly moreThanBestMm: number;
   readonly interval: ScoreInterval;
-  /** Whether the gauges tell it from the best: the interval lies above 0. */
+  /** Whether the gauges tell it from the best: the whole interval lies above 2 % of the best error. */
   readonly toldApart: boolean;
 }
 
@@ -64,8 +64,11 @@ export interface RelationRanks {
 
 /** The rule of the choice in words, for people. */
 export const RANK_RULE =
-  "the smallest root mean square error of pair depths at held-out gauges; of those that the gauges do not tell apart " +
-  "from it, the plan's, then the default, else the smallest error";
+  "the smallest root mean square error of pair depths at held-out gauges; of those that are not worse by more than 2 % " +
+  "and chance, the plan's, then the default, else the smallest error";
+
+/** What is within this share of the best error is as good, however sure the difference. House rule. */
+const AS_GOOD_WITHIN = 0.02;
 
 /** Up to so many gauges each stands outside the choice alone; beyond, in as many groups. */
 const MOST_FOLDS = 30;
@@ -222,8 +225,8 @@ function judge(
           reason: `fewer than ${MIN_BOOTSTRAP_UNITS} gauges hold pairs`,
         }
       : limitsOf(differences[k], bootstrap.level);
-    // One without a figure is no rival; rounding is no difference.
-    const toldApart = Number.isNaN(errorMm) || interval.low > 1e-9;
+    // One without a figure is no rival; rounding is no difference, even from a best error of 0.
+    const toldApart = Number.isNaN(errorMm) || interval.low > AS_GOOD_WITHIN * best.errorMm + 1e-9;
     return { errors, errorMm, moreThanBestMm: errorMm - best.errorMm, interval, toldApart };
   });
 }

@@ -29,11 +29,12 @@ export function drawingOf({ gaugeOf, timeOf, blockLength }: PairUnits): Drawing 
       reason: `fewer than ${MIN_BOOTSTRAP_UNITS} gauges and fewer than ${MIN_BOOTSTRAP_UNITS} blocks of time hold pairs`,
     };
   }
-  const drawn = [
-    ...(gauges ? [`${gaugeCount} gauges`] : []),
-    ...(times ? [`${blockCount} blocks of time`] : []),
+  const few = (noun: string) => `${noun} are too few to draw`;
+  const words = [
+    gauges ? `${gaugeCount} gauges` : few("gauges"),
+    times ? `${blockCount} blocks of time` : few("blocks of time"),
   ];
-  return { gauges, times, words: drawn.join(" and ") };
+  return { gauges, times, words: words.join(", ") };
 }
 
 /**
