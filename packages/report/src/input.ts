@@ -50,14 +50,19 @@ export type CrossValidationStatement =
 /** How a method of adjustment was picked; errors are at gauges held out in turn, mm, NaN where there is none. */
 export interface MethodChoiceStatement {
   readonly rule: string;
+  /** Which gauges make a cluster. */
+  readonly clusterRule: string;
   /** Title of the method that was picked. */
   readonly chosen: string;
-  /** Error of the whole procedure at gauges that had no part in the choice. */
+  /** Error of the whole procedure at gauges that had no part in the choice, held out one by one and by clusters. */
   readonly outerErrorMm: number;
+  readonly outerClusterErrorMm: number;
   readonly candidates: readonly {
     readonly title: string;
     readonly errorMm: number;
     readonly meanErrorMm: number;
+    /** Root mean square at gauges held out with their whole cluster. */
+    readonly clusterErrorMm: number;
     /** How often it was picked without some of the gauges. */
     readonly chosenInFolds: number;
     readonly notes: readonly string[];

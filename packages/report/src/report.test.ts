@@ -114,12 +114,14 @@ test("without gauges, catchments, layers and scores the page says what is missin
 });
 
 test("a choice among methods shows its table, its rule, and the error that had no part in it", () => {
-  const candidate = { errorMm: 4.4, meanErrorMm: -0.1, chosenInFolds: 3, notes: [] };
+  const candidate = { errorMm: 4.4, meanErrorMm: -0.1, clusterErrorMm: 6.6, chosenInFolds: 3, notes: [] };
   const text = renderWith({
     methodChoice: {
       rule: "the smallest error",
+      clusterRule: "the five nearest",
       chosen: "conditional merging",
       outerErrorMm: 5.2,
+      outerClusterErrorMm: 7.3,
       candidates: [
         { ...candidate, title: "conditional merging" },
         { ...candidate, title: "gauges alone", errorMm: Number.NaN, notes: ["no figure at 2 gauges"] },
@@ -128,7 +130,9 @@ test("a choice among methods shows its table, its rule, and the error that had n
   });
   expect(text).toContain("Picked: conditional merging. The rule: the smallest error.");
   expect(text).toMatch(/had no part in the choice either, the error is 5\.2 mm/);
-  expect(text).toMatch(/conditional merging 4\.4 .0\.1 3/);
+  expect(text).toMatch(/and 7\.3 mm where all gauges near by are held out too/);
+  expect(text).toContain("Clusters: the five nearest");
+  expect(text).toMatch(/conditional merging 4\.4 .0\.1 6\.6 3/);
   expect(text).toContain("no figure at 2 gauges");
   expect(words(page)).not.toContain("Ways to adjust");
 });

@@ -98,9 +98,10 @@ export const scoresSchema = z.strictObject({
   methodChoice: z
     .strictObject({
       rule: z.string().min(1),
+      clusterRule: z.string().min(1).describe("which gauges make a cluster"),
       chosen: z.string().min(1),
       outer: z
-        .strictObject({ errorMm: figure, meanErrorMm: figure, gaugeCount: count })
+        .strictObject({ errorMm: figure, meanErrorMm: figure, clusterErrorMm: figure, gaugeCount: count })
         .describe("at gauges that had no part in the choice: the error to quote"),
       candidates: z.array(
         z.strictObject({
@@ -108,6 +109,9 @@ export const scoresSchema = z.strictObject({
           title: z.string().min(1),
           errorMm: figure.describe("root mean square error of window depths at held-out gauges"),
           meanErrorMm: figure.describe("mean error, adjusted minus gauge"),
+          clusterErrorMm: figure.describe(
+            "root mean square error at gauges held out with their whole cluster",
+          ),
           gaugeCount: count,
           chosenInFolds: count.describe("how often it was picked without some of the gauges"),
           notes: z.array(z.string()).describe("where a simpler way stood in"),
@@ -132,20 +136,26 @@ export interface ScoresDocumentInput {
   readonly methodChoice?: MethodChoiceTable;
 }
 
+/** Errors of window depths at held-out gauges, mm: root mean square and mean one by one, root mean square by clusters. */
+export interface ChoiceErrors {
+  readonly errorMm: number;
+  readonly meanErrorMm: number;
+  readonly clusterErrorMm: number;
+  readonly gaugeCount: number;
+}
+
 /** Candidates with their errors at gauges held out in turn, mm. */
 export interface MethodChoiceTable {
   readonly rule: string;
+  readonly clusterRule: string;
   readonly chosen: string;
-  readonly outer: { readonly errorMm: number; readonly meanErrorMm: number; readonly gaugeCount: number };
-  readonly candidates: readonly {
+  readonly outer: ChoiceErrors;
+  readonly candidates: readonly (ChoiceErrors & {
     readonly name: string;
     readonly title: string;
-    readonly errorMm: number;
-    readonly meanErrorMm: number;
-    readonly gaugeCount: number;
     readonly chosenInFolds: number;
     readonly notes: readonly string[];
-  }[];
+  })[];
 }
 
 /**
@@ -183,19 +193,18 @@ export function scoresDocument(input: ScoresDocumentInput): ScoresDocument {
 }
 
 function plainChoice({
-  rule,
-  chosen,
-  outer,
   candidates,
+  outer,
+  ...words
 }: MethodChoiceTable): NonNullable<ScoresDocument["methodChoice"]> {
-  const plainErrors = <T extends { readonly errorMm: number; readonly meanErrorMm: number }>(errors: T) => ({
+  const plainErrors = <T extends ChoiceErrors>(errors: T) => ({
     ...errors,
     errorMm: finite(errors.errorMm),
     meanErrorMm: finite(errors.meanErrorMm),
+    clusterErrorMm: finite(errors.clusterErrorMm),
   });
   return {
-    rule,
-    chosen,
+    ...words,
     outer: plainErrors(outer),
     candidates: candidates.map((candidate) => ({ ...plainErrors(candidate), notes: [...candidate.notes] })),
   };

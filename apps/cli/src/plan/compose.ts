@@ -110,7 +110,10 @@ export function composePlan(
       series: byDefault("PT5M", "step of catchments and gauges"),
     }),
     adjustment: mapNode({
-      method: byDefault("mean-field-bias", "by-cross-validation picks one; none; the README names all"),
+      method: byDefault(
+        "by-cross-validation",
+        "or a method by its name, mean-field-bias say; none; the README names all",
+      ),
       minGauges: byDefault(5, "trusted gauges, at least 5"),
       minGaugeSumMm: byDefault(10, "mm summed over them, at least 10"),
       factorLimits: inline(byDefault([0.1, 10], "gauge over radar; beyond them nothing is adjusted")),

@@ -331,7 +331,7 @@ export const planSchema = z.strictObject({
   adjustment: z
     .strictObject({
       /** A method by name, or the one that meets held-out gauges best. */
-      method: z.enum([...METHOD_NAMES, "by-cross-validation"]).default("mean-field-bias"),
+      method: z.enum([...METHOD_NAMES, "by-cross-validation"]).default("by-cross-validation"),
       minGauges: z.number().int().min(5).default(5),
       minGaugeSumMm: z.number().min(10).default(10),
       factorLimits: z.tuple([z.number().positive(), z.number().positive()]).default([0.1, 10]),

@@ -1,5 +1,5 @@
 import { durationMs, isohyetLevels, isohyets, volumeM3 } from "@rainreckon/accumulation";
-import { CHOICE_RULE, METHOD_TITLES, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
+import { CHOICE_RULE, CLUSTER_RULE, METHOD_TITLES, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   type CsvColumn,
@@ -370,10 +370,12 @@ export async function writeScores(sources: OutputSources): Promise<void> {
       : {
           methodChoice: {
             rule: CHOICE_RULE,
+            clusterRule: CLUSTER_RULE,
             chosen: choice.chosen,
             outer: {
               errorMm: choice.validation.errorMm,
               meanErrorMm: choice.validation.meanErrorMm,
+              clusterErrorMm: choice.clusterValidation.errorMm,
               gaugeCount: choice.validation.gaugeCount,
             },
             candidates: choice.candidates.map((candidate) => ({
@@ -406,7 +408,8 @@ function adjustmentLines({ adjustment, choice }: Comparison): string[] {
   }
   if (choice !== undefined) {
     lines.push(
-      `The method was picked by cross-validation: ${CHOICE_RULE}. The doubts about gauges were not made anew in the folds.`,
+      `The method was picked by cross-validation: ${CHOICE_RULE}. Clusters: ${CLUSTER_RULE}.`,
+      "Where gauges are held out the others are judged anew, as if those were not there.",
       "The error that is published comes from gauges that had no part in the choice; scores.json holds the table.",
     );
   }

@@ -1,5 +1,5 @@
 import { type CellFractions, durationMs } from "@rainreckon/accumulation";
-import { CHOICE_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
+import { CHOICE_RULE, CLUSTER_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
 import { RELATIONS } from "@rainreckon/core";
 import { displayText } from "@rainreckon/formats";
 import type {
@@ -97,8 +97,10 @@ export function reportInput(sources: ReportSources): ReportInput {
       : {
           methodChoice: {
             rule: CHOICE_RULE,
+            clusterRule: CLUSTER_RULE,
             chosen: METHOD_TITLES[choice.chosen],
             outerErrorMm: choice.validation.errorMm,
+            outerClusterErrorMm: choice.clusterValidation.errorMm,
             candidates: choice.candidates.map(({ name, ...candidate }) => ({
               ...candidate,
               title: METHOD_TITLES[name],
