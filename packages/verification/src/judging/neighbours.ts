@@ -18,7 +18,10 @@ export interface NeighbourIndices {
   readonly standsOut: boolean;
   /** 0.6745 (x - median) / MAD; NaN where all agree. */
   readonly madZ: number;
-  /** Beside the mean weighted by 1/d², over the weighted standard deviation, at least 1 mm. */
+  /** Mean and standard deviation of the neighbours, weighted by 1/d². */
+  readonly buddyMean: number;
+  readonly buddySpread: number;
+  /** How far x is from that mean, over that deviation or 1 mm, whichever is more. */
   readonly buddyZ: number;
 }
 
@@ -49,6 +52,8 @@ export function neighbourIndices(
     quartileIndex: range > 0 ? off / range : Number.NaN,
     standsOut: range > 0 ? off > STANDS_OUT * range : off > ABSOLUTE_FLOOR_MM,
     madZ: mad > 0 ? (0.6745 * (x - median)) / mad : Number.NaN,
+    buddyMean: mean,
+    buddySpread: Math.sqrt(variance),
     buddyZ: (x - mean) / Math.max(SPREAD_FLOOR_MM, Math.sqrt(variance)),
   };
 }

@@ -38,7 +38,9 @@ export interface MassBreak {
   readonly slopeAfter: number;
   /** What later values have to be multiplied by to be brought to the earlier level. */
   readonly correction: number;
-  /** Two-sample t statistic (equal variances) of the ratios before and after. */
+  /** Means of the single ratios and their two-sample t statistic (equal variances). */
+  readonly meanBefore: number;
+  readonly meanAfter: number;
   readonly t: number;
 }
 
@@ -64,11 +66,14 @@ export function massBreak(
   const mean = (of: readonly number[]) => sum(of) / of.length;
   const squares = (of: readonly number[]) => sum(of.map((value) => (value - mean(of)) ** 2));
   const variance = (squares(before) + squares(after)) / (values.length - 2);
+  const t = (mean(before) - mean(after)) / Math.sqrt(variance * (1 / before.length + 1 / after.length));
   return {
     slopeBefore,
     slopeAfter,
     correction: slopeBefore / slopeAfter,
-    t: (mean(before) - mean(after)) / Math.sqrt(variance * (1 / before.length + 1 / after.length)),
+    meanBefore: mean(before),
+    meanAfter: mean(after),
+    t,
   };
 }
 
