@@ -28,7 +28,6 @@ export {
   type MeanFieldBias,
   type MeanFieldBiasOptions,
   meanFieldBias,
-  NO_TOTAL_STANDARD_ERROR,
   type RefusedBias,
 } from "./mean-field-bias.ts";
 export {
@@ -41,5 +40,29 @@ export {
 } from "./methods.ts";
 export { radarVariogram } from "./radar-variogram.ts";
 export type { TrustRule } from "./trials.ts";
+export {
+  type ErrorInTime,
+  type IntervalResidual,
+  intervalFactor,
+  intervalLogDeviation,
+  learnErrorInTime,
+} from "./uncertainty/error-in-time.ts";
+export {
+  type EchoQuality,
+  type ErrorModel,
+  type ErrorPlace,
+  type ErrorPrior,
+  type HeldOutResidual,
+  logSpread,
+} from "./uncertainty/error-model.ts";
+export {
+  type AreaCells,
+  areaRange,
+  type DepthRange,
+  intervalRange,
+  pointRange,
+} from "./uncertainty/intervals.ts";
+export { learnErrors } from "./uncertainty/learn-errors.ts";
+export { pointToCellVariance, TIP_ROUNDING } from "./uncertainty/point-to-cell.ts";
 export { VARIOGRAM_SHAPES, type VariogramModel, type VariogramShape } from "./variogram-model.ts";
 export { type GaugePlaces, type GaugeReading, type WindowGauge, windowGauges } from "./window-gauges.ts";

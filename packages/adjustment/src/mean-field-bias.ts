@@ -50,9 +50,6 @@ export interface RefusedBias extends FactorBasis {
 
 export type MeanFieldBias = AppliedBias | RefusedBias;
 
-/** Why `adjusted_total_standard_error` is absent beside a mean-field bias. */
-export const NO_TOTAL_STANDARD_ERROR = "no error model of adjusted cells is built";
-
 /**
  * A factor gauge/radar from sums, within limits.
  *

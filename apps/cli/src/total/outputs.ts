@@ -1,5 +1,5 @@
 import { durationMs, isohyetLevels, isohyets, volumeM3 } from "@rainreckon/accumulation";
-import { CHOICE_RULE, CLUSTER_RULE, METHOD_TITLES, NO_TOTAL_STANDARD_ERROR } from "@rainreckon/adjustment";
+import { CHOICE_RULE, CLUSTER_RULE, METHOD_TITLES } from "@rainreckon/adjustment";
 import { gaugeKey, type Pair } from "@rainreckon/core";
 import {
   type CsvColumn,
@@ -39,6 +39,8 @@ import {
 import { sourceIds } from "./job.ts";
 import { rangeOf3x3, shareOfDepth } from "./place-planes.ts";
 import type { PreparedRun } from "./prepare.ts";
+import { rangesOfRows, standardErrorPlane, type Uncertainty } from "./uncertainty.ts";
+import { uncertaintyLines, uncertaintyWords } from "./uncertainty-words.ts";
 import type { UnitStore } from "./unit-store.ts";
 
 /** What every writer of an output needs. */
@@ -49,6 +51,7 @@ export interface OutputSources {
   readonly store: UnitStore;
   /** The adjusted total; undefined where there is no adjustment. */
   readonly adjustedTotalMm: Float32Array | undefined;
+  readonly uncertainty: Uncertainty;
   readonly cautions: readonly string[];
   /** Where a file is to be written. */
   readonly draft: (file: string) => string;
@@ -56,14 +59,17 @@ export interface OutputSources {
 
 /** `totals.nc`: planes of the window, and the depth of each interval, written one at a time. */
 export async function writeTotals(sources: OutputSources): Promise<void> {
-  const { run, total, comparison, store, adjustedTotalMm } = sources;
+  const { run, total, comparison, store, adjustedTotalMm, uncertainty } = sources;
   const { planes } = total;
+  const standardErrorMm =
+    adjustedTotalMm !== undefined && uncertainty.known ? standardErrorPlane(uncertainty) : undefined;
   const { adjustment } = comparison;
   const companions = shownCompanions(total);
   const V = TOTALS_VARIABLES;
   const variables: TotalsVariable[] = [
     V.radar_total,
     ...(adjustedTotalMm === undefined ? [] : [V.adjusted_total]),
+    ...(standardErrorMm === undefined ? [] : [V.adjusted_total_standard_error]),
     V.observed_fraction,
     V.bridged_fraction,
     V.edge_fraction,
@@ -98,12 +104,15 @@ export async function writeTotals(sources: OutputSources): Promise<void> {
       status: run.loaded.plan.status,
       run_digest: run.runDigest,
       adjustment: adjustmentAttribute(adjustment),
-      depths_not_given: `adjusted_total_standard_error: ${NO_TOTAL_STANDARD_ERROR}`,
+      uncertainty: uncertainty.known
+        ? uncertaintyWords(uncertainty).join(" ")
+        : `not told: ${uncertainty.reason}`,
     },
   });
   try {
     file.writeField2d("radar_total", planes.totalMm);
     if (adjustedTotalMm !== undefined) file.writeField2d("adjusted_total", adjustedTotalMm);
+    if (standardErrorMm !== undefined) file.writeField2d("adjusted_total_standard_error", standardErrorMm);
     file.writeField2d("observed_fraction", planes.observedFraction);
     file.writeField2d("bridged_fraction", planes.bridgedFraction);
     file.writeField2d("edge_fraction", planes.edgeFraction);
@@ -212,7 +221,7 @@ export async function writeCatchments(sources: OutputSources): Promise<void> {
     [
       text("catchment_id", ({ place }) => place.id),
       text("name", ({ place }) => place.name),
-      ...depthColumns(minObserved),
+      ...depthColumns(sources),
       number("max_cell_mm", 3, ({ figure }) => figure.maxCellMm),
       number("area_km2", 3, ({ place }) => place.areaKm2),
       number("volume_m3", 0, ({ place, figure }) =>
@@ -236,7 +245,7 @@ export async function writeAssets(sources: OutputSources): Promise<void> {
     [
       text("asset_id", ({ place }) => place.id),
       text("name", ({ place }) => place.name),
-      ...depthColumns(run.loaded.plan.rain.minObserved),
+      ...depthColumns(sources),
       number("min_3x3_mm", 3, (row) => rangeOf(row)?.leastMm),
       number("max_3x3_mm", 3, (row) => rangeOf(row)?.mostMm),
       number("lon_deg", 6, ({ place }) => place.lonDeg),
@@ -248,8 +257,10 @@ export async function writeAssets(sources: OutputSources): Promise<void> {
 }
 
 /** What is told of the depth of any place, from its start to the share observed. */
-function depthColumns(minObserved: number): CsvColumn<PlaceFigure<unknown>>[] {
-  const { text, number } = columnsOf<PlaceFigure<unknown>>();
+function depthColumns({ run, uncertainty }: OutputSources): CsvColumn<PlaceFigure<FigurePlace>>[] {
+  const { minObserved } = run.loaded.plan.rain;
+  const { text, number } = columnsOf<PlaceFigure<FigurePlace>>();
+  const rangeOf = rangesOfRows(run, uncertainty);
   const none = Number.NaN;
   const whole = (figure: ArealFigure, mm: number) => (figure.observedFraction >= minObserved ? mm : none);
   return [
@@ -261,8 +272,8 @@ function depthColumns(minObserved: number): CsvColumn<PlaceFigure<unknown>>[] {
     number("radar_mm", 3, ({ figure }) => whole(figure, figure.radarMm)),
     number("adjusted_mm", 3, ({ figure }) => whole(figure, figure.adjustedMm)),
     number("gauges_only_mm", 3, ({ figure }) => figure.gaugesOnlyMm),
-    number("p10_mm", 3, () => none),
-    number("p90_mm", 3, () => none),
+    number("p10_mm", 3, (row) => whole(row.figure, rangeOf(row)?.p10Mm ?? none)),
+    number("p90_mm", 3, (row) => whole(row.figure, rangeOf(row)?.p90Mm ?? none)),
     number("observed_fraction", 4, ({ figure }) => figure.observedFraction),
   ];
 }
@@ -488,9 +499,7 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "Adjustment",
     ...adjustmentLines(comparison).map((line) => `  ${line}`),
     "",
-    "Columns without a method yet, therefore empty",
-    "  p10_mm, p90_mm      an error model of areal depths is not built",
-    `  adjusted_total_standard_error is not in totals.nc: ${NO_TOTAL_STANDARD_ERROR}.`,
+    ...uncertaintyLines(sources.uncertainty),
     "",
     "Verdicts in gauges.csv",
     "  use, use with care, leave out, too little rain to judge; a gauge that is left out shapes nothing. The cause says",
