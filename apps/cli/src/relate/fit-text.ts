@@ -123,8 +123,9 @@ function notes(result: RelationFitResult): string[] {
   for (const { reason, count } of source.leftOut.slice(0, 4)) {
     lines.push(`Left out: ${counted(count, source.kind === "pairs" ? "row" : "pair")}, ${reason}.`);
   }
-  for (const { title, warnings, reason } of fits) {
-    for (const warning of warnings) lines.push(`Mind, ${title}: ${warning}.`);
+  for (const { title, name, warnings, reason } of fits) {
+    // Those of fits that nobody will use are in the JSON.
+    if (name === offered?.name) lines.push(...warnings.map((warning) => `Mind, ${title}: ${warning}.`));
     if (reason !== undefined) lines.push(`No relation by ${title}: ${reason}.`);
   }
   lines.push(...source.remarks.map((remark) => `Mind: ${remark}.`));

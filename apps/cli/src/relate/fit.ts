@@ -1,12 +1,4 @@
-import {
-  type CapSetting,
-  InputError,
-  RELATIONS,
-  resolveCap,
-  type ScoreInterval,
-  type ZrRelation,
-  zrRelation,
-} from "@rainreckon/core";
+import { type CapSetting, InputError, RELATIONS, resolveCap, type ScoreInterval } from "@rainreckon/core";
 import { displayText, readZrPairs } from "@rainreckon/formats";
 import {
   type BootstrapSettings,
@@ -18,18 +10,18 @@ import {
   type PowerLaw,
   pickPairs,
   type RelationError,
-  type RelationFit,
   type RelationFitName,
   relationError,
   type ZrPairs,
 } from "@rainreckon/verification";
 import type { LeftOutLog } from "../ui/left-out.ts";
-import { counted, isoUtc } from "../ui/numbers.ts";
+import { isoUtc } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import type { RelationFitResult } from "./fit-schema.ts";
 import { FIT_TITLES, fitWarnings } from "./fit-words.ts";
 import { type FitPairs, fitPairsOf, settledPairs } from "./measured-pairs.ts";
 import { measuredRun } from "./measured-run.ts";
+import { offeredOf } from "./offered-fit.ts";
 import { ofRain, planConversion } from "./plan-conversion.ts";
 import { type NamedRelation, relationsByName } from "./relation-table.ts";
 
@@ -265,46 +257,6 @@ function resultOf(
     doubts: fitted.doubts.map(({ kind, words }) => ({ kind, words })),
     offered: offeredOf(fitted, source, options.method),
   };
-}
-
-function offeredOf(
-  fitted: FittedRelations,
-  source: RelationFitResult["source"],
-  method: RelationFitName | undefined,
-): RelationFitResult["offered"] {
-  const name = method ?? fitted.offered;
-  const fit = fitted.fits.find((one) => one.name === name);
-  if (fit === undefined || !(fit.a > 0 && fit.b > 0)) return null;
-  const law: ZrRelation = zrRelation(rounded(fit.a), rounded(fit.b), sourceWords(fit, fitted, source));
-  const why =
-    method !== undefined
-      ? "asked for with --method"
-      : name === "bias-free"
-        ? "it keeps the sum of rain with the smallest error, and the pairs tell A from b"
-        : "the pairs cannot tell A from b: b is held, and A keeps the sum of rain";
-  return {
-    name: fit.name,
-    a: law.a,
-    b: law.b,
-    why,
-    planLine: `relation: { a: ${law.a}, b: ${law.b}, source: ${JSON.stringify(law.source)} }`,
-  };
-}
-
-function sourceWords(
-  fit: RelationFit,
-  { cover }: FittedRelations,
-  { kind, gaugeCount, intervalMinutes, start, end }: RelationFitResult["source"],
-): string {
-  const gauges = gaugeCount === null ? "" : ` of ${counted(gaugeCount, "gauge")}`;
-  const span = kind === "pairs" || start === null || end === null ? "" : `, ${start} to ${end}`;
-  const length = intervalMinutes === null ? "" : ` over ${intervalMinutes} min`;
-  return `fitted to ${counted(cover.eitherCount, "pair")}${gauges}${length}${span}; ${FIT_TITLES[fit.name]}`;
-}
-
-/** Three figures: more would claim what no pairs hold. */
-function rounded(value: number): number {
-  return Number(value.toPrecision(3));
 }
 
 function finite(value: number | undefined): number | null {

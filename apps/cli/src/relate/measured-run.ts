@@ -18,6 +18,7 @@ import type { LeftOutLog } from "../ui/left-out.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { type PlaceEcho, PlaceTracer } from "./place-echo.ts";
+import { whatIsLeftAside } from "./plan-conversion.ts";
 
 /** A gauge with the reflectivity over it. */
 export interface MeasuredGauge {
@@ -73,7 +74,7 @@ export async function measuredRun(
     kind: isFolder ? "run" : "plan",
     target,
     run: lean,
-    remarks,
+    remarks: [...remarks, ...whatIsLeftAside(run.loaded.plan)],
     gauges: lean.gauges.gauges.map((gauge, g) => ({
       gauge,
       verdict: verdicts[g] as GaugeVerdict,

@@ -21,6 +21,29 @@ export function planConversion(plan: Plan): PlanConversion {
   return { relation: ofRain(named(source.relation)), cap: source.cap, minRateMmPerHour };
 }
 
+/** What of a plan's way to rain has no part where one relation and one cap stand for all of it, in sentences. */
+export function whatIsLeftAside({ radars, grids, echo }: Plan): string[] {
+  const used = radars.filter(({ use }) => use);
+  const remarks: string[] = [];
+  const ways = new Set(
+    [...used, ...grids.filter(({ quantity }) => quantity === "reflectivity")].map(({ relation, cap }) =>
+      JSON.stringify([relation, cap]),
+    ),
+  );
+  if (ways.size > 1) {
+    remarks.push(
+      `the sources of the plan have different relations or caps: those of ${used[0]?.id ?? grids[0]?.id} stand for all`,
+    );
+  }
+  if (used.some(({ periods }) => periods.length > 0)) {
+    remarks.push("the plan has other relations for parts of the window: they have no part here");
+  }
+  if (echo.rate.convective !== undefined || echo.rate.stratiform !== undefined) {
+    remarks.push("the plan has relations for showers and widespread rain: they have no part here");
+  }
+  return remarks;
+}
+
 function named(relation: PlanRadar["relation"]): NamedRelation {
   if (typeof relation === "string") return findRelation(relation);
   return {

@@ -29,7 +29,7 @@ export function rankText(result: RelationRankResult, terminal: Terminal): string
     table("relation", relations, order),
     "",
     ...wrapped(
-      `  = not told from the best of its column: the ${Math.round(100 * levelOf(relations))} % interval of the difference, by drawing gauges, reaches down to 2 % of the best error. R/G is radar over gauge; errors are root mean squares of pairs in mm and per cent of the mean gauge depth.`,
+      `  * best of its column, = not told from it: the ${Math.round(100 * levelOf(relations))} % interval of the difference, by drawing gauges, reaches down to 2 % of the best error. R/G is radar over gauge; errors are root mean squares of pairs in mm and per cent of the mean gauge depth.`,
     ),
     ...wrapped(
       "  After bias: each gauge's depths times gauge/radar of the other gauges, each relation with its own factor. What stays is mostly b: A, the calibration of the radar and the factor cannot be told apart.",
@@ -48,7 +48,7 @@ function table(head: string, rankings: Rankings, order: keyof Rankings): string 
   const other = (name: string, mode: keyof Rankings) =>
     rankings[mode].rows.find((row) => row.name === name) as Row;
   const cells = (row: Row, best: string) => [
-    `${fixedDecimals(row.errorMm, 2)}${row.toldApart || row.name === best ? " " : "="}`,
+    `${fixedDecimals(row.errorMm, 2)}${row.name === best ? "*" : row.toldApart ? " " : "="}`,
     fixedDecimals(row.errorPercent, 0),
   ];
   return textTable(
@@ -123,7 +123,7 @@ function capWords({ caps, plan }: RelationRankResult, order: keyof Rankings): st
     table("cap", caps.ranks, order),
     "",
     ...wrapped(
-      `  With ${caps.relation}. Pairs with hail count here: ${caps.ranks.alone.rows.length} caps on ${counted(caps.pairCount, "pair")}. Rain from gates at or above each: ${shares.join(", ")}.`,
+      `  With ${caps.relation}. Pairs with hail count here: ${counted(caps.pairCount, "wet pair")} in all. Rain from gates at or above each: ${shares.join(", ")}.`,
     ),
     "",
     ...verdict(caps.ranks, order, plan.cap, "cap").flatMap(wrapped),

@@ -67,9 +67,11 @@ export async function rankOf(
   const { plan } = measured.run.loaded;
   const own = planConversion(plan);
   const ofPlan: Candidate = { name: own.relation.name, relation: own.relation, cap: own.cap };
+  // Each name once, the plan's way first.
   const candidates = [
-    ofPlan,
-    ...asked.map((one) => candidateOf(one, own.cap)).filter(({ name }) => name !== ofPlan.name),
+    ...new Map(
+      [ofPlan, ...asked.map((one) => candidateOf(one, own.cap))].map((one) => [one.name, one]),
+    ).values(),
   ];
   const ranks = new Ranker(measured, options.intervalMinutes, own.minRateMmPerHour);
   const { ranks: relations, doubtfulCount } = ranks.rank(candidates, [ofPlan.name, DEFAULT_RELATION], "rain");
