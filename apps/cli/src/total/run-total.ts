@@ -32,6 +32,7 @@ import {
   writeScores,
   writeTotals,
 } from "./outputs.ts";
+import { type OverrideEffect, overrideCautions, overrideEffects } from "./override-effects.ts";
 import { type PreparedRun, prepareRun } from "./prepare.ts";
 import { reportInput } from "./report-input.ts";
 import { MANIFEST, openRunFolder, RUN_LOG } from "./run-folder.ts";
@@ -112,7 +113,8 @@ export async function runTotal(
     ? sumAdjusted(run, total, comparison.adjustment, store)
     : undefined;
   const district = districtFigure({ run, total, comparison, adjustedTotalMm });
-  const cautions = runCautions(run, total, comparison, district);
+  const overrides = overrideEffects(run, total, store, bestMm(district));
+  const cautions = [...runCautions(run, total, comparison, district), ...overrideCautions(overrides)];
   const sources: OutputSources = {
     run,
     total,
@@ -150,7 +152,7 @@ export async function runTotal(
   await writeReadme(sources, [...files, "README.txt", MANIFEST, RUN_LOG]);
   files.push("README.txt");
 
-  const manifest = await manifestOf(sources, files, log.all, district);
+  const manifest = await manifestOf(sources, files, log.all, district, overrides);
   await writeJson(folder.draft(MANIFEST), manifest as JsonValue);
   await writeJson(folder.draft(RUN_LOG), {
     startedAt,
@@ -192,6 +194,7 @@ async function manifestOf(
   files: readonly string[],
   notices: readonly Manifest["notices"][number][],
   district: ArealFigure,
+  overrides: readonly OverrideEffect[],
 ): Promise<Manifest> {
   const outputs = await Promise.all(
     files.toSorted().map(async (file) => ({
@@ -227,6 +230,7 @@ async function manifestOf(
       gridCellsCapped: total.counts.gridCellsCapped,
       gauges: comparison.gauges.length,
       gaugesUsed: comparison.gauges.filter(({ whole }) => whole.used).length,
+      gaugesWithCare: comparison.gauges.filter(({ verdict }) => verdict.verdict === "use with care").length,
       gaugesDoubted: comparison.gauges.filter(({ verdict }) => verdict.verdict === "leave out").length,
       pairs: comparison.pairs.length,
       pairsUsed: comparison.before.usedCount,
@@ -263,6 +267,11 @@ async function manifestOf(
           observedFraction: figure.observedFraction,
         };
       }),
+      overrides: overrides.map((effect) => ({
+        ...effect,
+        districtMm: known(effect.districtMm),
+        withoutMm: known(effect.withoutMm),
+      })),
       cautions: [...cautions, ...STANDING_CAUTIONS],
     },
     echo: manifestEcho(sources),
