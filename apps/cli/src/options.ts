@@ -220,6 +220,15 @@ export const flags = {
     new Option("--workers <n>", "number of processors to use; the results are the same to the byte")
       .argParser(through(wholeNumber(1, 64)))
       .default(1),
+  members: () =>
+    new Option(
+      "--members <n>",
+      "write so many equally likely fields of the depth too, which spread as its error does: members/*.nc and members_catchments.csv",
+    )
+      .argParser(through(wholeNumber(0, 1000)))
+      .default(0),
+  despiteSpace: () =>
+    new Option("--despite-space", "write members even where they may take more disk than is free"),
   rate: () =>
     new Option(
       "--rate",

@@ -47,6 +47,7 @@ export {
   intervalLogDeviation,
   learnErrorInTime,
 } from "./uncertainty/error-in-time.ts";
+export { drawMember, type ErrorMember, type MemberInput } from "./uncertainty/error-member.ts";
 export {
   type EchoQuality,
   type ErrorModel,

@@ -39,6 +39,7 @@ export {
   type PairInput,
   type RadarSteps,
 } from "./pairs.ts";
+export { uniformStream } from "./random.ts";
 export { type RatioStandardError, ratioStandardError } from "./ratio-error.ts";
 export type { Doubt } from "./relation-fit/fit-doubts.ts";
 export {

@@ -27,6 +27,8 @@ interface TotalFlags {
   readonly force?: boolean;
   readonly strict?: boolean;
   readonly rate?: boolean;
+  readonly members: number;
+  readonly despiteSpace?: boolean;
 }
 
 /** `total PLAN --out DIR`: the main job. */
@@ -39,6 +41,7 @@ export function registerTotal(program: Command): void {
       "rainreckon total plan.yaml --out run",
       "rainreckon total plan.yaml --out run --dry-run",
       "rainreckon total plan.yaml --out run --workers 2 --strict",
+      "rainreckon total plan.yaml --out run --members 20",
       "rainreckon total plan.yaml --out map --rate",
     ],
   )
@@ -47,6 +50,8 @@ export function registerTotal(program: Command): void {
     .addOption(flags.workers())
     .addOption(flags.moveAside())
     .addOption(flags.strict())
+    .addOption(flags.members())
+    .addOption(flags.despiteSpace())
     .addOption(flags.rate());
   addSchemaFlag(command, totalSchema);
   command.action(async (plan: string, options: TotalFlags) => {
@@ -67,6 +72,8 @@ export function registerTotal(program: Command): void {
         workers: options.workers,
         force: options.force === true,
         dryRun: options.dryRun === true,
+        members: options.members,
+        despiteSpace: options.despiteSpace === true,
       },
       terminal,
     );

@@ -1,6 +1,7 @@
 import { durationMs } from "@rainreckon/accumulation";
 import {
   type CrossValidation,
+  type FieldAdjuster,
   fieldAdjuster,
   type LearnedMethod,
   learnMethod,
@@ -130,19 +131,28 @@ export function settingsOf(run: PreparedRun, total: AssembledRun): MethodSetting
   };
 }
 
+/** What adjusts the intervals of a run; the field is made here, once. */
+export function adjusterOf(
+  run: PreparedRun,
+  total: AssembledRun,
+  adjustment: AppliedAdjustment,
+): FieldAdjuster {
+  return fieldAdjuster(adjustment.learned, {
+    grid: run.grid,
+    totalMm: total.planes.totalMm,
+    rangeKm: (cell) => rangeAt(run, total, cell),
+    share: adjustment.share,
+  });
+}
+
 /** Adjusted depths of the intervals, in time order, from what the units left on disk. */
 export function* adjustedIntervals(
   run: PreparedRun,
   total: AssembledRun,
   adjustment: AppliedAdjustment,
   store: UnitStore,
+  adjuster: FieldAdjuster = adjusterOf(run, total, adjustment),
 ): Generator<Float32Array> {
-  const adjuster = fieldAdjuster(adjustment.learned, {
-    grid: run.grid,
-    totalMm: total.planes.totalMm,
-    rangeKm: (cell) => rangeAt(run, total, cell),
-    share: adjustment.share,
-  });
   let k = 0;
   for (const job of run.jobs) {
     for (const { depthMm } of store.load(job).intervals) {

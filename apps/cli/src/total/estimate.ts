@@ -1,3 +1,4 @@
+import { megabytes, memberBytes } from "./members.ts";
 import type { PreparedRun } from "./prepare.ts";
 
 /** What a run would take; rough, from counts alone. */
@@ -10,6 +11,8 @@ export interface RunEstimate {
   readonly units: number;
   readonly memoryMb: number;
   readonly diskMb: number;
+  /** The most that members take beside that. */
+  readonly membersMb: number;
   readonly minutes: number;
 }
 
@@ -19,7 +22,7 @@ const SECONDS_PER_ROUND = 0.03;
 const BASE_MEMORY_MB = 200;
 
 /** Estimates hours, memory, disk and minutes of a run before anything is decoded. */
-export function estimate(run: PreparedRun): RunEstimate {
+export function estimate(run: PreparedRun, members: number): RunEstimate {
   const cells = run.grid.nx * run.grid.ny;
   const sourceCount = run.shape.radars.length + run.shape.grids.length;
   const rounds = [...run.shape.radars, ...run.shape.grids].reduce(
@@ -41,6 +44,7 @@ export function estimate(run: PreparedRun): RunEstimate {
     units: run.jobs.length,
     memoryMb: Math.ceil(BASE_MEMORY_MB + (cells * bytesPerCell) / 1e6),
     diskMb: Math.ceil(storedBytes / 1e6),
+    membersMb: megabytes(memberBytes(run, members)),
     minutes: Math.max(
       1,
       Math.ceil((rounds * (SECONDS_PER_ROUND + (cells / 1e6) * SECONDS_PER_ROUND_AND_MCELL)) / 60),

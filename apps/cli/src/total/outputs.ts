@@ -143,7 +143,8 @@ function adjustmentAttribute(adjustment: Adjustment): string {
   return Number.isNaN(factor) ? title : `${title}, factor ${factor.toPrecision(6)} (gauge/radar)`;
 }
 
-function lonLatOf({ grid, map }: PreparedRun): (index: number) => { lonDeg: number; latDeg: number } {
+/** Longitude and latitude of a cell's centre. */
+export function lonLatOf({ grid, map }: PreparedRun): (index: number) => { lonDeg: number; latDeg: number } {
   return (index) => {
     const column = index % grid.nx;
     const row = (index - column) / grid.nx;

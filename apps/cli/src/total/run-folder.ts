@@ -21,6 +21,18 @@ export const MANIFEST = "manifest.json";
 /** The one file that may differ from run to run. */
 export const RUN_LOG = "run-log.json";
 
+/** Kind of the notice that members could not be drawn. */
+export const MEMBERS_LEFT_OUT = "members left out";
+
+/** Members of a run stand in a folder of their own, numbered from 1. */
+const MEMBER_FILE = /^members\/member_\d+\.nc$/;
+
+/** A run as a folder knows it: what it is made from, and how many members it has. */
+export interface RunAsked {
+  readonly runDigest: string;
+  readonly members: number;
+}
+
 /** What a folder holds when a run comes to it. */
 export type FolderState = "new" | "unfinished" | "finished";
 
@@ -45,12 +57,13 @@ export interface RunFolder {
  *
  * @throws InputError (usage) where the folder holds something else, or cannot be written
  */
-export function openRunFolder(folder: string, runDigest: string, force: boolean): RunFolder {
-  const state = stateOf(folder, runDigest);
+export function openRunFolder(folder: string, asked: RunAsked, force: boolean): RunFolder {
+  const { runDigest } = asked;
+  const state = stateOf(folder, asked);
   if (typeof state !== "string") {
     if (!force) throw state;
     const movedTo = moveAside(folder);
-    return { ...openRunFolder(folder, runDigest, false), movedTo };
+    return { ...openRunFolder(folder, asked, false), movedTo };
   }
   const scratch = path.join(folder, UNFINISHED);
   const run: RunFolder = {
@@ -60,7 +73,10 @@ export function openRunFolder(folder: string, runDigest: string, force: boolean)
     draft: (file) => path.join(scratch, "out", file),
     publish(files) {
       const ordered = [...files.filter((file) => file !== MANIFEST), MANIFEST];
-      for (const file of ordered) renameSync(run.draft(file), path.join(folder, file));
+      for (const file of ordered) {
+        makeFolder(path.dirname(path.join(folder, file)));
+        renameSync(run.draft(file), path.join(folder, file));
+      }
       rmSync(scratch, { recursive: true, force: true });
     },
   };
@@ -88,7 +104,7 @@ export function isUnfinished(folder: string): boolean {
   return existsSync(path.join(folder, UNFINISHED)) && !existsSync(path.join(folder, MANIFEST));
 }
 
-function stateOf(folder: string, runDigest: string): FolderState | InputError {
+function stateOf(folder: string, { runDigest, members }: RunAsked): FolderState | InputError {
   const stat = lstatSync(folder, { throwIfNoEntry: false });
   if (stat === undefined) return "new";
   const refuse = (what: string, fix: string) => new InputError(what, folder, fix, { kind: "usage" });
@@ -105,12 +121,21 @@ function stateOf(folder: string, runDigest: string): FolderState | InputError {
       );
     }
     const changed = found.data.outputs.find(
-      ({ file, sha256 }) => file !== RUN_LOG && hashOf(path.join(folder, path.basename(file))) !== sha256,
+      ({ file, sha256 }) => file !== RUN_LOG && hashOf(outputPath(folder, file)) !== sha256,
     );
     if (changed !== undefined) {
       return refuse(
         `the run in this folder is the same, but its ${changed.file} was changed or removed since`,
         "add --force to move it aside and make it again",
+      );
+    }
+    const there = found.data.outputs.filter(({ file }) => MEMBER_FILE.test(file)).length;
+    // Where nothing tells of errors there are none, however many are asked for, and a notice says so.
+    const refused = found.data.notices.some(({ kind }) => kind === MEMBERS_LEFT_OUT);
+    if (members > 0 && there !== members && !refused) {
+      return refuse(
+        `the run in this folder is the same, but has ${there} members`,
+        "choose another --out, or add --force to move it aside and make it again",
       );
     }
     return "finished";
@@ -127,6 +152,11 @@ function stateOf(folder: string, runDigest: string): FolderState | InputError {
     "this folder holds other files",
     "choose another --out, or add --force to move the whole folder aside",
   );
+}
+
+/** Where an output of a manifest lies: nowhere but in the run's own folder, whatever the manifest says. */
+function outputPath(folder: string, file: string): string {
+  return path.join(folder, MEMBER_FILE.test(file) ? file : path.basename(file));
 }
 
 /** Makes a folder and what lies above it. Node's own way to do so never ends where a file system refuses with ENOENT, as /proc does. */

@@ -8,7 +8,7 @@ import { CHECKS_FILE, checkDocument } from "../check/document.ts";
 import type { Manifest } from "../manifest.ts";
 import { loadPlan } from "../plan/load.ts";
 import { leftOutLog } from "../ui/left-out.ts";
-import { counted } from "../ui/numbers.ts";
+import { counted, countText } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { version } from "../version.ts";
@@ -21,6 +21,7 @@ import { estimate, type RunEstimate } from "./estimate.ts";
 import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
 import { LEARNED, learnBeforehand, learnsBeforehand, writeLearnedOf } from "./learned-run.ts";
+import { megabytes, memberBytes, refuseMembersBeyondDisk, writeMembers } from "./members.ts";
 import {
   type OutputSources,
   writeAssets,
@@ -35,7 +36,7 @@ import {
 import { type OverrideEffect, overrideCautions, overrideEffects } from "./override-effects.ts";
 import { type PreparedRun, prepareRun } from "./prepare.ts";
 import { reportInput } from "./report-input.ts";
-import { MANIFEST, openRunFolder, RUN_LOG } from "./run-folder.ts";
+import { MANIFEST, MEMBERS_LEFT_OUT, openRunFolder, RUN_LOG } from "./run-folder.ts";
 import { learnUncertainty } from "./uncertainty.ts";
 import { workUnits } from "./work.ts";
 
@@ -44,6 +45,10 @@ export interface TotalOptions {
   readonly workers: number;
   readonly force: boolean;
   readonly dryRun: boolean;
+  /** How many equally likely fields are written; 0 for none. */
+  readonly members: number;
+  /** Whether they are written though the disk may not hold them. */
+  readonly despiteSpace: boolean;
 }
 
 /** What a run came to, for the terminal and for --json. */
@@ -78,11 +83,20 @@ export async function runTotal(
   if (options.dryRun) {
     log.finish();
     return {
-      outcome: { kind: "dry run", run: planned, estimate: estimate(planned) },
+      outcome: { kind: "dry run", run: planned, estimate: estimate(planned, options.members) },
       noticeCount: log.count,
     };
   }
-  const folder = openRunFolder(path.resolve(options.out), planned.runDigest, options.force);
+  if (options.members > 0) {
+    if (!options.despiteSpace) refuseMembersBeyondDisk(planned, options.members, options.out);
+    const most = countText(megabytes(memberBytes(planned, options.members)));
+    terminal.note(`${counted(options.members, "member")} will take up to ${most} MB`);
+  }
+  const folder = openRunFolder(
+    path.resolve(options.out),
+    { runDigest: planned.runDigest, members: options.members },
+    options.force,
+  );
   if (folder.movedTo !== undefined) {
     terminal.note(`what was in that folder was moved to ${path.relative(process.cwd(), folder.movedTo)}`);
   }
@@ -115,13 +129,14 @@ export async function runTotal(
   const district = districtFigure({ run, total, comparison, adjustedTotalMm });
   const overrides = overrideEffects(run, total, store, bestMm(district));
   const cautions = [...runCautions(run, total, comparison, district), ...overrideCautions(overrides)];
+  const uncertainty = learnUncertainty(run, total, comparison, adjustedTotalMm);
   const sources: OutputSources = {
     run,
     total,
     comparison,
     store,
     adjustedTotalMm,
-    uncertainty: learnUncertainty(run, total, comparison, adjustedTotalMm),
+    uncertainty,
     cautions: cautions.map((caution) => caution.text),
     draft: folder.draft,
   };
@@ -149,6 +164,19 @@ export async function runTotal(
     "report.html",
     ...(learnsBeforehand(run) ? [LEARNED] : []),
   ];
+  if (options.members > 0) {
+    if (uncertainty.known) {
+      const bar = progressBar(terminal, options.members, "members");
+      files.push(...(await writeMembers(sources, uncertainty, options.members, bar)));
+      bar.end();
+    } else {
+      log.add(MEMBERS_LEFT_OUT, {
+        what: uncertainty.reason,
+        where: "--members",
+        fix: "members need gauges that tell of errors",
+      });
+    }
+  }
   await writeReadme(sources, [...files, "README.txt", MANIFEST, RUN_LOG]);
   files.push("README.txt");
 

@@ -14,12 +14,13 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     return `${displayText(folder)} holds this run already, finished and unchanged: nothing was done.`;
   }
   if (outcome.kind === "dry run") {
-    const { hours, scanFiles, rounds, gauges, catchments, units, memoryMb, diskMb, minutes } =
+    const { hours, scanFiles, rounds, gauges, catchments, units, memoryMb, diskMb, membersMb, minutes } =
       outcome.estimate;
     return [
       `This run would take about ${counted(minutes, "minute")} on one core, ${countText(memoryMb)} MB of memory and ${countText(diskMb)} MB of disk:`,
       `  ${hours} h, ${counted(scanFiles, "scan file")}, ${counted(rounds, "round")} in ${counted(units, "unit")} of work`,
       `  ${counted(gauges, "gauge")}, ${counted(catchments, "catchment")}, ${run.grid.nx} × ${run.grid.ny} cells of ${run.grid.cellM} m`,
+      ...(membersMb === 0 ? [] : [`  members: up to ${countText(membersMb)} MB of disk beside that`]),
       "Nothing was written.",
     ].join("\n");
   }

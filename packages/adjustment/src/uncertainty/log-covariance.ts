@@ -4,7 +4,7 @@ import type { ErrorModel } from "./error-model.ts";
  * Share of the variance that all places have in common: a factor, or a mean of residuals, is off everywhere alike.
  * Some 27 gauges know a mean to within a fifth of their own spread, which is a share of 0.04. House rule.
  */
-const COMMON_SHARE = 0.05;
+export const COMMON_SHARE = 0.05;
 
 /**
  * Correlation of the errors that residuals show at a distance: an exponential one, and what all places have in
@@ -12,11 +12,6 @@ const COMMON_SHARE = 0.05;
  */
 export function errorCorrelation({ rangeKm }: ErrorModel, distanceKm: number): number {
   return COMMON_SHARE + (1 - COMMON_SHARE) * Math.exp(-distanceKm / rangeKm);
-}
-
-/** The part of {@link errorCorrelation} that is the same everywhere. */
-export function commonShare(): number {
-  return COMMON_SHARE;
 }
 
 /**
