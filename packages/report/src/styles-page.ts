@@ -11,9 +11,9 @@ button:not(:disabled):hover{border-color:var(--accent);color:var(--accent)}
 .map-block>select{font-size:.9rem}
 .map-stage{position:relative;touch-action:pan-y;cursor:crosshair;border-radius:4px}
 .map-stage svg.map{position:relative}
-.map-stage .catchments .outline{pointer-events:all;cursor:pointer}
-.map-stage .gauge,.map-stage .radar,.map-stage .asset,svg.scatter [data-place]{cursor:pointer}
-.map-stage .gauge.left-out,.scatter .gauge.left-out{pointer-events:bounding-box}
+.map-stage svg *,svg.scatter text{pointer-events:none}
+.map-stage [data-place],.map-stage [data-place] *{pointer-events:all;cursor:pointer}
+svg.scatter [data-place]{cursor:pointer}
 .map-canvas{position:absolute}
 .map-cursor{fill:none;stroke:#14171a;stroke-width:1.6;paint-order:stroke;pointer-events:none}
 .map-tip{position:absolute;pointer-events:none;background:#14181b;color:#fff;font-size:.82rem;line-height:1.3;padding:3px 8px;border-radius:4px;white-space:pre;z-index:1}
@@ -31,6 +31,7 @@ button:not(:disabled):hover{border-color:var(--accent);color:var(--accent)}
 .time-bar .play{min-width:5em}
 .time-bar input{flex:1 1 140px;min-width:100px;accent-color:#1d5a6e}
 .time-words{flex:1 0 100%;font-size:.88rem}
+.hit.hit{fill:transparent;stroke:none}
 .asset{fill:#fff;stroke:#14171a;stroke-width:1.6}
 .asset .dot{fill:#14171a;stroke:none}
 .map .asset-label{font-size:11px;fill:#1c2227;paint-order:stroke;stroke:#fff;stroke-width:3px;stroke-opacity:.85}

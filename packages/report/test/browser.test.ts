@@ -1,55 +1,23 @@
 import { execFileSync } from "node:child_process";
-import { mkdtempSync, rmSync, writeFileSync } from "node:fs";
-import { tmpdir } from "node:os";
 import { join } from "node:path";
-import { pathToFileURL } from "node:url";
-import { type Browser, chromium, type Page } from "playwright-core";
+import type { Page } from "playwright-core";
 import { afterAll, beforeAll, describe, expect, test } from "vitest";
-import { renderReport } from "../src/index.ts";
-import { hostile } from "./hostile.ts";
+import { BROWSER_WANTED, FOREIGN_WANTED, ReportBrowser } from "./browser-kit.ts";
 import { inventedInput } from "./invented-input.ts";
 
-const wanted = process.env.RAINRECKON_BROWSER === "1";
-const foreign = process.env.RAINRECKON_FOREIGN_TOOLS === "1";
-
-describe.skipIf(!wanted)("in Chromium (skipped without RAINRECKON_BROWSER=1)", () => {
-  let browser: Browser;
-  let folder: string;
+describe.skipIf(!BROWSER_WANTED)("in Chromium (skipped without RAINRECKON_BROWSER=1)", () => {
+  let browser: ReportBrowser;
 
   beforeAll(async () => {
-    folder = mkdtempSync(join(tmpdir(), "report-page-"));
-    writeFileSync(join(folder, "plain.html"), renderReport(inventedInput()));
-    writeFileSync(join(folder, "hostile.html"), renderReport(hostile(inventedInput())));
-    browser = await chromium.launch({
-      executablePath: "/usr/bin/chromium",
-      args: ["--no-sandbox", "--disable-gpu", "--disable-background-networking"],
-    });
+    browser = await ReportBrowser.start();
   });
 
-  afterAll(async () => {
-    await browser?.close();
-    rmSync(folder, { recursive: true });
-  });
-
-  /** Opens a page and writes down whatever it says on the console and asks of the network. */
-  async function open(name: string, width: number, colorScheme: "light" | "dark") {
-    const page = await browser.newPage({ viewport: { width, height: 900 }, colorScheme });
-    const complaints: string[] = [];
-    const requests: string[] = [];
-    page.on("console", (message) => complaints.push(message.text()));
-    page.on("pageerror", (error) => complaints.push(error.message));
-    page.on("request", (request) => {
-      if (!request.url().startsWith("data:image/png")) requests.push(request.url());
-    });
-    const url = pathToFileURL(join(folder, name)).href;
-    await page.goto(url);
-    return { page, complaints, requests, url };
-  }
+  afterAll(() => browser?.stop());
 
   test.each(["plain.html", "hostile.html"])(
-    "%s: no script, no complaint, no request, no sideways scroll, in any light or width",
+    "%s: no complaint, no request, nobody else's script, no sideways scroll, in any light or width",
     async (name) => {
-      const { page, complaints, requests, url } = await open(name, 390, "light");
+      const { page, complaints, requests, url } = await browser.open(name, { width: 390 });
       for (const colorScheme of ["light", "dark"] as const) {
         await page.emulateMedia({ colorScheme });
         for (const width of [390, 768, 1280, 1600]) {
@@ -61,78 +29,93 @@ describe.skipIf(!wanted)("in Chromium (skipped without RAINRECKON_BROWSER=1)", (
           ]);
         }
       }
+      // Everything that can be picked is shown once: what is in its texts stays text.
+      for (const key of ["c1", "g4", "g5", "r0", "a0"]) {
+        await page.locator("#find-place").selectOption(key);
+        expect(await page.locator(".place-head h3").isVisible()).toBe(true);
+      }
       expect(await page.evaluate("window.broken")).toBeUndefined();
-      expect(await page.evaluate("document.scripts.length")).toBe(0);
+      expect(await page.evaluate("document.scripts.length")).toBe(2);
       expect(complaints).toEqual([]);
       expect(requests).toEqual([url]);
       // The page is there to be seen: a style that hides it did not get in.
       expect(await page.locator("h1").isVisible()).toBe(true);
-      await page.close();
+      await page.context().close();
     },
   );
 
-  test("dark and light differ on the page, not on the map's paper", async () => {
-    const { page } = await open("plain.html", 1280, "light");
-    const colours = async (colorScheme: "light" | "dark") => {
-      await page.emulateMedia({ colorScheme });
-      const of = (selector: string) =>
-        page.evaluate(
-          `getComputedStyle(document.querySelector(${JSON.stringify(selector)})).backgroundColor`,
-        );
-      return { page: await of("body"), map: await of(".map-sheet") };
-    };
-    const light = await colours("light");
-    const dark = await colours("dark");
-    expect(dark.page).not.toBe(light.page);
-    expect(dark.map).toBe(light.map);
-    await page.close();
-  });
-
-  test("the buttons change the layer and its legend without any script", async () => {
-    const { page } = await open("plain.html", 1280, "light");
+  test("without script the page stands whole: buttons change the layer, and no dead control is shown", async () => {
+    const { page } = await browser.open("plain.html", { javaScriptEnabled: false });
     const visible = async () => ({
       legends: await page.locator(".legend:visible h3").allTextContents(),
-      layers: await page.evaluate(
-        "[...document.querySelectorAll('.layer')].map((g) => getComputedStyle(g).display !== 'none')",
-      ),
+      layers: await page
+        .locator(".layer:visible")
+        .evaluateAll((all) => all.map((g) => g.getAttribute("class"))),
     });
-    expect(await visible()).toEqual({
-      legends: ["Adjusted totalmm"],
-      layers: [false, true, false, false, false],
-    });
+    expect(await visible()).toEqual({ legends: ["Adjusted totalmm"], layers: ["layer layer-1"] });
     await page.getByLabel("Who spoke").check();
-    expect(await visible()).toEqual({ legends: ["Who spoke"], layers: [false, false, false, false, true] });
-    await page.close();
+    expect(await visible()).toEqual({ legends: ["Who spoke"], layers: ["layer layer-4"] });
+    expect(await page.locator("button, select").count()).toBe(0);
+    await page.context().close();
   });
 
   test("a gauge stands over the pixel of its cell, as the browser lays them out", async () => {
-    const { page } = await open("plain.html", 1280, "light");
+    const { page } = await browser.open("plain.html", { javaScriptEnabled: false });
     const place = await pixelUnderGauge(page, 7);
     const { grid, gauges } = inventedInput();
     expect(place).toEqual({
       column: Math.floor((gauges[7].xM - grid.westM) / grid.cellM),
       row: Math.floor((grid.northM - gauges[7].yM) / grid.cellM),
     });
-    await page.close();
+    await page.context().close();
   });
 
-  test.skipIf(!foreign)(
-    "every printed page has run and status at its foot (needs RAINRECKON_FOREIGN_TOOLS=1)",
-    async () => {
-      const { page } = await open("plain.html", 1280, "dark");
-      const file = join(folder, "report.pdf");
+  describe.skipIf(!FOREIGN_WANTED)("on paper (needs RAINRECKON_FOREIGN_TOOLS=1)", () => {
+    async function printed(
+      javaScriptEnabled: boolean,
+      act?: (page: Page) => Promise<void>,
+    ): Promise<string[]> {
+      const { page } = await browser.open("plain.html", { javaScriptEnabled, colorScheme: "dark" });
+      await act?.(page);
+      const file = join(browser.folder, `report-${javaScriptEnabled}.pdf`);
       await page.pdf({ path: file, preferCSSPageSize: true });
-      const pages = execFileSync("pdftotext", ["-layout", file, "-"], { encoding: "utf8" })
-        .split("\f")
-        .slice(0, -1);
+      await page.context().close();
+      return execFileSync("pdftotext", ["-layout", file, "-"], { encoding: "utf8" }).split("\f").slice(0, -1);
+    }
+
+    test("every page has run and status at its foot, and the map is on the first", async () => {
+      const pages = await printed(true);
       expect(pages.length).toBeGreaterThan(4);
       for (const [i, text] of pages.entries()) {
         expect(text).toContain("Provisional: run 4be1c07a9d3f5526");
         expect(text).toContain(`Page ${i + 1} of ${pages.length}`);
       }
-      await page.close();
-    },
-  );
+      expect(pages[0]).toContain("km east");
+      expect(pages[0]).toContain("not observed");
+    });
+
+    test("the script takes no word away from the paper, adds no control, and a chosen place is printed", async () => {
+      const words = (pages: readonly string[]) =>
+        new Set(
+          pages
+            .join(" ")
+            .replace(/Page \d+ of \d+/g, "")
+            .split(/\s+/),
+        );
+      const still = words(await printed(false));
+      const live = await printed(true);
+      const heard = words(live);
+      expect([...still].filter((word) => !heard.has(word))).toEqual([]);
+      for (const control of ["Play", "Copy", "inch", "More layers", "Look at"]) {
+        expect(live.join(" ")).not.toContain(control);
+      }
+      const chosen = await printed(true, async (page) => {
+        await page.locator("#find-place").selectOption("g4");
+      });
+      expect(chosen.join(" ")).toContain("Gauge R05");
+      expect(chosen.join(" ")).toContain("silent gauge");
+    });
+  });
 });
 
 /** Column and row of the picture's pixel that lies under the middle of a gauge's mark. */
