@@ -63,15 +63,17 @@ export function meanRainShare(gauges: readonly WindowGauge[]): RainShare {
   };
 }
 
-/** Depth that a method gives at a gauge over the time of its pairs, mm. */
+/** Depth that a method gives at the very point of a gauge over the time of its pairs, mm. */
 export function pairedDepthAt(learned: LearnedMethod, place: PairedPlace): number {
   if (learned.kind === "field") {
     const windowMm = fieldAt(learned, place);
     const { radarMm, radarTotalMm, coverage } = place;
     return windowMm * (radarTotalMm > 0 ? radarMm / radarTotalMm : coverage);
   }
+  const { radarTotalMm, radarPointTotalMm } = place;
+  const toPoint = radarTotalMm > 0 ? radarPointTotalMm / radarTotalMm : 1;
   return place.readings.reduce(
-    (sum, reading) => sum + reading.radarMm * learned.factorAt(middle(reading)),
+    (sum, reading) => sum + toPoint * reading.radarMm * learned.factorAt(middle(reading)),
     0,
   );
 }

@@ -66,7 +66,7 @@ export function crossValidate(
     errorMm,
     meanErrorMm: mean(errors),
     errorPercent: meanGaugeMm > 0 ? (100 * errorMm) / meanGaugeMm : Number.NaN,
-    errorBeforeMm: rootMeanSquare(judged.map(({ gauge }) => gauge.radarMm - gauge.gaugeMm)),
+    errorBeforeMm: rootMeanSquare(judged.map(({ gauge }) => gauge.radarPointMm - gauge.gaugeMm)),
     gaugeCount: judged.length,
     withoutFigure: gauges.length - judged.length,
   };

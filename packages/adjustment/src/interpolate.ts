@@ -1,9 +1,10 @@
+import { stretched } from "./anisotropy.ts";
 import { fitVariogram } from "./fit-variogram.ts";
 import { inverseDistance } from "./inverse-distance.ts";
 import { krigingSystem } from "./kriging.ts";
 import { localKriging } from "./local-kriging.ts";
 import { type Places, sampleVariogram } from "./sample-variogram.ts";
-import type { VariogramModel, VariogramShape } from "./variogram-model.ts";
+import type { Anisotropy, VariogramModel, VariogramShape } from "./variogram-model.ts";
 
 /** Fewer places than this tell too little of a variogram: that of the radar field stands in. House rule. */
 export const OWN_VARIOGRAM_FROM = 8;
@@ -13,7 +14,7 @@ const LOCAL_FROM = 100;
 const PAIRS_PER_BIN = 10;
 const BIN_LIMITS = [4, 12] as const;
 /** Share of the longest distance up to which pairs are used. Common practice. */
-const CUTOFF_SHARE = 0.5;
+export const CUTOFF_SHARE = 0.5;
 
 /** A value anywhere in the plane. */
 export type Interpolant = (xKm: number, yKm: number) => number;
@@ -27,7 +28,7 @@ export interface VariogramSettings {
 
 /**
  * The variogram of values at places: fitted to them where there are enough, else that of the radar field
- * scaled to their variance.
+ * scaled to their variance. Where the radar field keeps together longer along one direction, so do the values.
  *
  * The fit weights a bin by its pairs over the square of its distance, which is practice and not theory; the
  * range lies between the first bin and the longest distance.
@@ -52,15 +53,21 @@ export function variogramOf(
       partialSill: radarVariogram.partialSill * variance,
     };
   }
-  return fitted(places, values, shape);
+  return fitted(places, values, shape, radarVariogram?.anisotropy);
 }
 
-/** A variogram fitted to the values themselves; undefined where they do not vary. */
+/**
+ * A variogram fitted to the values themselves; undefined where they do not vary.
+ *
+ * @param anisotropy - by which distances are measured
+ */
 export function fitted(
-  places: Places,
+  at: Places,
   values: ArrayLike<number>,
   shape: VariogramShape,
+  anisotropy?: Anisotropy,
 ): VariogramModel | undefined {
+  const places = stretched(at, anisotropy);
   const longestKm = longestDistanceKm(places);
   if (!(longestKm > 0)) return undefined;
   const pairCount = (values.length * (values.length - 1)) / 2;
@@ -70,14 +77,15 @@ export function fitted(
   const bins = sampleVariogram(places, values, { binKm: cutoffKm / binCount, cutoffKm });
   const nearest = bins[0]?.distanceKm;
   if (nearest === undefined) return undefined;
-  return fitVariogram(bins, {
+  const model = fitVariogram(bins, {
     shape,
     weight: "pairs over distance squared",
     rangeLimitsKm: [nearest, longestKm],
   });
+  return model === undefined || anisotropy === undefined ? model : { ...model, anisotropy };
 }
 
-function longestDistanceKm({ xKm, yKm }: Places): number {
+export function longestDistanceKm({ xKm, yKm }: Places): number {
   let longest = 0;
   for (let i = 0; i < xKm.length; i++)
     for (let j = 0; j < i; j++) {

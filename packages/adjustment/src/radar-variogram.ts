@@ -1,5 +1,6 @@
 import type { Grid } from "@rainreckon/core";
-import { fitted } from "./interpolate.ts";
+import { anisotropyOf } from "./anisotropy.ts";
+import { CUTOFF_SHARE, fitted, longestDistanceKm } from "./interpolate.ts";
 import type { VariogramModel, VariogramShape } from "./variogram-model.ts";
 
 /** About so many cells stand for the field. */
@@ -7,7 +8,7 @@ const SAMPLE_CELLS = 500;
 
 /**
  * The variogram of a radar field, with a sill of 1: what stands in where gauges are too few to have one of
- * their own. Cells are taken at even steps, so that it is the same on every run.
+ * their own, and says along which direction values keep together, if any. Cells are taken at even steps, so that it is the same on every run.
  *
  * @param totalMm - shape [ny, nx]; NaN is not observed
  * @returns undefined where the field does not vary
@@ -30,7 +31,9 @@ export function radarVariogram(
       values.push(value);
     }
   }
-  const model = fitted({ xKm, yKm }, values, shape);
+  const places = { xKm, yKm };
+  const anisotropy = anisotropyOf(places, values, shape, CUTOFF_SHARE * longestDistanceKm(places));
+  const model = fitted(places, values, shape, anisotropy);
   const sill = model === undefined ? 0 : model.nugget + model.partialSill;
   if (model === undefined || !(sill > 0)) return undefined;
   return { ...model, nugget: model.nugget / sill, partialSill: model.partialSill / sill };
