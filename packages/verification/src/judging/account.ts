@@ -14,7 +14,7 @@ import {
 } from "./alternatives.ts";
 import type { ReferenceLevel } from "./reference-level.ts";
 import { rememberedBy } from "./remembered.ts";
-import { isJudgeable, misfitAt, type Subject } from "./subject.ts";
+import { isJudgeable, JUDGE_MM, misfitAt, type Subject } from "./subject.ts";
 
 /** A gauge fits when its misfit is below this, or below so many times that of sound gauges. House rule. */
 const FITS = 5;
@@ -25,6 +25,8 @@ const FITS_WELL = 3;
 const BETTER = 3;
 const MUCH_BETTER = 8;
 const GOOD_USUAL = 5;
+/** What tips and the radar's own error leave by themselves: even where sound gauges fit better, this is a good fit. */
+const CHANCE = 1;
 /** Rain that must be missed before silence is a fault, mm. */
 const MISSED_MM = 1;
 /** Shift of a clock that counts: less is a matter of how rain drifts below the beam. */
@@ -88,7 +90,14 @@ export function accountOf(subject: Subject, reference: ReferenceLevel, { field }
   const judgeable = isJudgeable(subject);
   const base = { subject, judgeable, levelDb, misfit };
   const nothing = { factor: undefined, clock: undefined, place: undefined, silent: undefined };
-  if (steps === undefined || !judgeable) return { ...base, ...nothing, reason: undefined };
+  if (steps === undefined) return { ...base, ...nothing, reason: undefined };
+  if (!judgeable) {
+    const clock = misfit >= FITS ? wholeHours(bestClock(steps, levelDb)) : undefined;
+    if (clock === undefined || !isClockAlone(clock, misfit, reference)) {
+      return { ...base, ...nothing, reason: undefined };
+    }
+    return { ...base, ...nothing, judgeable: true, clock, reason: { kind: "clock", clock } };
+  }
   const factor = bestFactor(steps, ratioDb, levelDb);
   if (misfit < FITS_WELL) return { ...base, ...nothing, factor, reason: undefined };
   const { silent, clock, place } = changesOf(
@@ -141,7 +150,7 @@ function reasonOf(account: Omit<Account, "reason">, reference: ReferenceLevel): 
   const fits = misfit < Math.max(FITS, FITS_USUAL * usualMisfit);
   const most = Math.min(
     misfit / (fits ? MUCH_BETTER : BETTER),
-    fits ? usualMisfit : GOOD_USUAL * usualMisfit,
+    fits ? usualMisfit : Math.max(CHANCE, GOOD_USUAL * usualMisfit),
   );
   const reasons: { readonly misfit: number; readonly reason: Reason | undefined }[] = [];
   if (silent !== undefined && silent.missedMm >= MISSED_MM) {
@@ -178,6 +187,24 @@ function reasonOf(account: Omit<Account, "reason">, reference: ReferenceLevel): 
 function isOwnFactor(subject: Subject, { offsetDb }: OtherFactor, reference: ReferenceLevel): boolean {
   if (Math.abs(offsetDb) < USUAL_SPREADS * reference.spreadDb(subject)) return false;
   return offsetDb < 0 || decibels(subject.plain.gaugeMm / reference.medianMm) >= OWN_SHARE * offsetDb;
+}
+
+/**
+ * Whether a shift by whole hours explains a gauge that has too little rain beside the radar as its stamps stand, since they
+ * put most of its rain outside the window.
+ */
+function isClockAlone(
+  { minutesLate, fit, misfit }: ShiftedClock,
+  asItStands: number,
+  reference: ReferenceLevel,
+) {
+  return (
+    minutesLate !== 0 &&
+    minutesLate % HOUR_MINUTES === 0 &&
+    Math.min(fit.gaugeMm, fit.expectedMm) >= JUDGE_MM &&
+    fit.wetSteps >= PLACE_WET_STEPS &&
+    misfit <= Math.min(asItStands / BETTER, GOOD_USUAL * reference.usualMisfit)
+  );
 }
 
 function isBeatenBy(clock: ShiftedClock, place: OtherPlace | undefined): boolean {

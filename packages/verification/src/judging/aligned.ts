@@ -26,6 +26,9 @@ const ODD_SHARE = 0.05;
 export interface Aligned {
   readonly evidence: GaugeEvidence;
   readonly stepMs: number;
+  readonly startEpochMs: number;
+  /** The radar's base step with which the window begins. */
+  readonly firstBase: number;
   /** Steps of the window. */
   readonly count: number;
   /** Steps of `gaugeMm` before the window. */
@@ -51,6 +54,7 @@ export function aligned(evidence: GaugeEvidence, window: Interval): Aligned | un
   const stepMs = perStep * radar.stepMs;
   const count = Math.floor((window.endEpochMs - window.startEpochMs) / stepMs);
   if (count < 1) return undefined;
+  const firstBase = Math.round((window.startEpochMs - radar.startEpochMs) / radar.stepMs);
   const lead = Math.ceil(MOST_LAG_MS / stepMs);
   const steps = gaugeSteps(series, window.startEpochMs - lead * stepMs, stepMs, count + 2 * lead);
   const gaugeMm = steps.depthMm.map((mm, k) => (steps.observedFraction[k] >= WHOLE ? mm : Number.NaN));
@@ -60,9 +64,16 @@ export function aligned(evidence: GaugeEvidence, window: Interval): Aligned | un
     count,
     lead,
     gaugeMm,
-    radarMm: radarOnSteps(evidence, perStep, count, 0),
-    tipMm: quantumMm(series.depthMm) ?? Math.max(series.resolutionMm ?? 0, USUAL_TIP_MM),
+    radarMm: radarOnSteps(evidence, perStep, count, firstBase),
+    firstBase,
+    startEpochMs: window.startEpochMs,
+    tipMm: quantumMm(series.depthMm) ?? Math.max(series.resolutionMm ?? 0, usualTipMm(series.depthMm)),
   };
+}
+
+/** A tip as most gauges have, where readings tell of none; but what has written less can tell less. */
+function usualTipMm(depthMm: ArrayLike<number>): number {
+  return Array.from(depthMm).reduce((least, mm) => (mm > 0 && mm < least ? mm : least), USUAL_TIP_MM);
 }
 
 /**
@@ -112,10 +123,15 @@ export function radarOnSteps(
 }
 
 /** Depths of a place of the field on the steps of a gauge. */
-export function fieldOnSteps(depthMm: ArrayLike<number>, perStep: number, count: number): Float64Array {
+export function fieldOnSteps(
+  depthMm: ArrayLike<number>,
+  perStep: number,
+  count: number,
+  firstBase: number,
+): Float64Array {
   const depths = new Float64Array(count);
   for (let step = 0; step < count; step++) {
-    for (let k = 0; k < perStep; k++) depths[step] += depthMm[step * perStep + k];
+    for (let k = 0; k < perStep; k++) depths[step] += depthMm[firstBase + step * perStep + k];
   }
   return depths;
 }
