@@ -3,6 +3,7 @@ import { createHash } from "node:crypto";
 import { jsonForScript, pageData } from "./data/page-data.ts";
 import type { ReportInput } from "./input.ts";
 import { classLayers } from "./map/layer.ts";
+import { mapFrame, mapSize } from "./map/map.ts";
 import pageScript from "./page/main.ts?bundled";
 import { catchmentSection, relationSection } from "./sections/catchments.ts";
 import { echoSection } from "./sections/echo.ts";
@@ -54,7 +55,9 @@ const DIGEST_DIGITS = 16;
  */
 export function renderReport(input: ReportInput): string {
   const footer = footerText(input);
-  const style = styleSheet(input.layers.filter(({ group }) => group === undefined).length, footer);
+  const map = mapSize(mapFrame(input.grid));
+  const buttons = input.layers.filter(({ group }) => group === undefined).length;
+  const style = styleSheet(buttons, footer, map.width / map.height);
   const policy = `default-src 'none'; img-src data:; style-src 'sha256-${sha256(style)}'; script-src 'sha256-${sha256(pageScript)}'; base-uri 'none'; form-action 'none'`;
   const classed = classLayers(input.layers, input.grid.nx, input.grid.ny);
   const sections = SECTIONS.map((section) => ({ ...section, markup: section.write(input) })).filter(

@@ -7,13 +7,15 @@ import { SCRIPTED } from "./styles-page.ts";
  *
  * @param layerCount - number of map layers with a button, each with a rule that shows it when that is chosen
  * @param printFooter - text at the foot of every printed page; see {@link cssString}
+ * @param mapAspect - width of the map through its height: on paper it is kept low enough for the first page
  */
-export function styleSheet(layerCount: number, printFooter: string): string {
+export function styleSheet(layerCount: number, printFooter: string, mapAspect: number): string {
   const shown = Array.from({ length: layerCount }, (_, i) => i);
   return `${BASE}
 ${shown.map((i) => `#show-${i}:checked~.map-body .layer-${i}`).join(",")}{display:revert}
 ${SCRIPTED}
 ${PRINT}
+@media print{.map-sheet{width:min(100%,${Math.round(PRINTED_MAP_MM * mapAspect)}mm)}}
 @page{size:A4;margin:16mm 15mm 20mm;@bottom-left{content:${cssString(printFooter)};font:8pt ${FONT};color:#444;border-top:.5pt solid #999;padding-top:2mm;vertical-align:top;width:82%}@bottom-right{content:"Page " counter(page) " of " counter(pages);font:8pt ${FONT};color:#444;border-top:.5pt solid #999;padding-top:2mm;vertical-align:top;width:18%}}`;
 }
 
@@ -27,6 +29,9 @@ export function cssString(text: string): string {
   );
   return `"${escaped.join("")}"`;
 }
+
+/** What the opening leaves of an A4 page with four cautions of two lines. */
+const PRINTED_MAP_MM = 118;
 
 const FONT = `system-ui,-apple-system,"Segoe UI",Roboto,"Helvetica Neue",Arial,sans-serif`;
 
@@ -208,6 +213,7 @@ const PRINT = `@media print{:root,:root[data-theme]{color-scheme:light;--page:#f
 body{font-size:9.5pt;line-height:1.4;-webkit-print-color-adjust:exact;print-color-adjust:exact}
 header,main{max-width:none;padding:0}
 header{padding-top:0}
+.small,figcaption,.key,.lead{font-size:8.5pt}
 footer,.contents,.map-block>legend,.map-block>input,.map-block>label,details{display:none}
 section{margin-top:22pt}
 h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
@@ -217,7 +223,7 @@ h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
 .trust div:first-child{border-left:0}
 .trust b{font-size:11pt}
 .cautions{padding:6pt 10pt;margin-top:9pt;break-inside:avoid}
-#map{margin-top:10pt;break-inside:avoid}
+#map{margin-top:10pt}.map-sheet,.map-side{break-inside:avoid}
 .lead,.key,caption,thead,tbody tr:first-child{break-after:avoid}
 p,li{break-inside:avoid}
 .map-body{grid-template-columns:minmax(0,1fr) 112pt;gap:10pt;margin-top:2pt}

@@ -268,6 +268,7 @@ describe.skipIf(!BROWSER_WANTED)("the living page in Chromium (skipped without R
   test("inches everywhere and back: headline, tables, legend, map, charts", async () => {
     const everything = () => page.evaluate("document.body.innerText");
     await pointAt(70, 40);
+    await page.mouse.move(0, 0);
     await page.locator("#find-place").selectOption("c1");
     const before = await everything();
     await page.getByLabel("inch").check();
