@@ -100,8 +100,8 @@ const SHARE_FIXED: Expected = { value: 0.4, spread: 0.2, low: 0, high: 0.9 };
 const GAUGE_HELP_KM = 40;
 
 /** Sweeps of the search over all unknowns, and golden sections in each. */
-const SWEEPS = 12;
-const SECTIONS = 24;
+const SWEEPS = 10;
+const SECTIONS = 18;
 const GOLDEN = (Math.sqrt(5) - 1) / 2;
 
 /** Typical values where no residual tells. */
@@ -243,11 +243,22 @@ function gaugeLack(distanceKm: number): number {
 function leastBetween(low: number, high: number, cost: (value: number) => number): number {
   let from = low;
   let to = high;
+  let a = to - GOLDEN * (to - from);
+  let b = from + GOLDEN * (to - from);
+  let costA = cost(a);
+  let costB = cost(b);
   for (let k = 0; k < SECTIONS; k++) {
-    const a = to - GOLDEN * (to - from);
-    const b = from + GOLDEN * (to - from);
-    if (cost(a) <= cost(b)) to = b;
-    else from = a;
+    if (costA <= costB) {
+      to = b;
+      [b, costB] = [a, costA];
+      a = to - GOLDEN * (to - from);
+      costA = cost(a);
+    } else {
+      from = a;
+      [a, costA] = [b, costB];
+      b = from + GOLDEN * (to - from);
+      costB = cost(b);
+    }
   }
   return (from + to) / 2;
 }

@@ -130,6 +130,6 @@ export function intervalRange(
 ): DepthRange {
   const spread = window.logSpread * intervalFactor(time, hours);
   const shift = (window.meanMm + OFFSET_MM) / (windowMm + OFFSET_MM);
-  const mean = (depthMm + OFFSET_MM) * shift * Math.exp((spread ** 2 - window.logSpread ** 2) / 2);
+  const mean = (depthMm + OFFSET_MM) * shift;
   return logNormalRange(mean, mean ** 2 * Math.expm1(spread ** 2));
 }
