@@ -407,8 +407,11 @@ export const flags = {
   outFolder: () => new Option("-o, --out <dir>", "the folder to write into").makeOptionMandatory(),
   overwrite: () => new Option("--force", "write over files that are there"),
   seriesOf: () =>
-    new Option("--of <places>", "whose depths: the mean over each catchment, or the cell of each asset")
-      .choices(["catchments", "assets"])
+    new Option(
+      "--of <places>",
+      "whose depths: the mean over each catchment, the cell of each asset, or each member's catchments",
+    )
+      .choices(["catchments", "assets", "members"])
       .default("catchments"),
   step: () =>
     new Option(

@@ -30,7 +30,7 @@ beforeAll(async () => {
   writeIn(scratch, "assets.csv", ASSETS);
   const assets = "{ file: assets.csv, columns: { id: id, name: name, x: lon, y: lat } }";
   const plan = writeIn(scratch, "plan.yaml", planText({ assets }));
-  const { status, stderr } = await inProcess(["total", plan, "--out", RUN]);
+  const { status, stderr } = await inProcess(["total", plan, "--out", RUN, "--members", "2"]);
   if (status !== 0) throw new Error(stderr);
 });
 
@@ -90,6 +90,15 @@ describe("series", () => {
     await exported("series", RUN, "-o", at("assets.csv"), "--of", "assets", "--value", "radar");
     const [first] = csvRows(at("assets.csv"));
     expect(Math.abs(Number(first!["007_mm"]) / STEP_MM - 1)).toBeLessThan(0.08);
+  });
+
+  test("members have a column each, over the intervals of the maps", async () => {
+    const { stdout } = await exported("series", RUN, "-o", at("members.csv"), "--of", "members");
+    expect(stdout).toContain("1 step of 1 h, 2 series of members");
+    const [row] = csvRows(at("members.csv"));
+    const table = csvRows(path.join(RUN, "members_catchments.csv"));
+    expect(Object.values(row!).slice(1)).toEqual(table.map(({ depth_mm }) => depth_mm));
+    expect(Object.keys(row!).slice(1)).toEqual(["A_member_001_mm", "A_member_002_mm"]);
   });
 
   test("inches are millimetres over 25.4, and best is what was adjusted", async () => {

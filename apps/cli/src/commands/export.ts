@@ -1,6 +1,7 @@
 import type { Command } from "commander";
 import { addCommand, addSchemaFlag, printJson } from "../command.ts";
 import { type ExportReport, exportSchema } from "../export/schema.ts";
+import type { SeriesOf } from "../export/series.ts";
 import { flags } from "../options.ts";
 import { type Terminal, terminalOf } from "../ui/terminal.ts";
 
@@ -10,7 +11,7 @@ interface CommonFlags {
 }
 
 interface SeriesFlags extends CommonFlags {
-  readonly of: "catchments" | "assets";
+  readonly of: SeriesOf;
   readonly step?: string;
   readonly as: "depth" | "rate";
   readonly value: "best" | "radar" | "adjusted";

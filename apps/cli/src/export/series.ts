@@ -11,11 +11,14 @@ const MM_PER_INCH = 25.4;
 const HOUR_MS = 3_600_000;
 const DAY_MS = 24 * HOUR_MS;
 
+/** Whose depths: those of members are the catchments', as each member has them. */
+export type SeriesOf = "catchments" | "assets" | "members";
+
 /** How a model wants its series. */
 export interface SeriesAsked {
   readonly file: string;
   readonly replace: boolean;
-  readonly of: "catchments" | "assets";
+  readonly of: SeriesOf;
   /** Length of a step; that of the run's series where left out. */
   readonly step?: string;
   readonly as: "depth" | "rate";
@@ -27,6 +30,21 @@ export interface SeriesAsked {
   readonly units: "mm" | "in";
 }
 
+/** The table that holds each, and how a row names its place. */
+const TABLES: Readonly<
+  Record<
+    SeriesOf,
+    { readonly file: string; readonly idOf: (row: Readonly<Record<string, string>>) => string }
+  >
+> = {
+  catchments: { file: "catchments.csv", idOf: (row) => row.catchment_id ?? "" },
+  assets: { file: "assets.csv", idOf: (row) => row.asset_id ?? "" },
+  members: {
+    file: "members_catchments.csv",
+    idOf: (row) => `${row.catchment_id}_member_${(row.member ?? "").padStart(3, "0")}`,
+  },
+};
+
 const COLUMN = { best: "depth_mm", radar: "radar_mm", adjusted: "adjusted_mm" } as const;
 const DECIMALS = { mm: 3, in: 5 } as const;
 
@@ -37,8 +55,8 @@ const DECIMALS = { mm: 3, in: 5 } as const;
  * @throws InputError (kind "usage") where the run has no such places, or the step fits no day
  */
 export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promise<ExportReport> {
-  const steps = stepsOf(run);
-  const stepMs = asked.step === undefined ? durationMs(run.plan.intervals.series) : durationMs(asked.step);
+  const steps = stepsOf(run, asked.of);
+  const stepMs = durationMs(asked.step ?? stepLength(run, asked.of));
   if (!(DAY_MS % stepMs === 0))
     throw new InputError(
       `${asked.step} does not divide a day`,
@@ -92,7 +110,7 @@ export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promis
     rows: wanted.length,
     missing,
     says: [
-      `${counted(wanted.length, "step")} of ${lengthText(stepMs)}, ${counted(series.length, asked.of.slice(0, -1))}, ${asked.as === "rate" ? `mean rate in ${asked.units}/h` : `depth in ${asked.units}`} (${COLUMN[asked.value]} of ${asked.of}.csv)`,
+      `${counted(wanted.length, "step")} of ${lengthText(stepMs)}, ${counted(series.length, asked.of === "members" ? "series of a member" : asked.of.slice(0, -1), asked.of === "members" ? "series of members" : asked.of)}, ${asked.as === "rate" ? `mean rate in ${asked.units}/h` : `depth in ${asked.units}`} (${asked.of === "members" ? "" : `${COLUMN[asked.value]} of `}${TABLES[asked.of].file})`,
       `stamped at the ${asked.stamp} of the step, ${asked.offsetMinutes === 0 ? "UTC" : `UTC${offsetText(asked.offsetMinutes)}`}`,
       missing === 0
         ? "no step is missing"
@@ -101,11 +119,17 @@ export async function exportSeries(run: FinishedRun, asked: SeriesAsked): Promis
   };
 }
 
-/** The steps of the run's series. */
-function stepsOf({ plan }: FinishedRun): Interval[] {
-  const window = { startEpochMs: Date.parse(plan.window.from), endEpochMs: Date.parse(plan.window.to) };
-  const stepMs = durationMs(plan.intervals.series);
-  return cutWindow(window, stepMs, window.startEpochMs % stepMs);
+/** Members are drawn for the intervals of the maps; places have shorter steps. */
+function stepLength({ plan }: FinishedRun, of: SeriesOf): string {
+  return of === "members" ? plan.intervals.grids : plan.intervals.series;
+}
+
+/** The steps of a table. */
+function stepsOf(run: FinishedRun, of: SeriesOf): Interval[] {
+  const { window: asked, intervals } = run.plan;
+  const window = { startEpochMs: Date.parse(asked.from), endEpochMs: Date.parse(asked.to) };
+  const anchor = window.startEpochMs % durationMs(intervals.series);
+  return cutWindow(window, durationMs(stepLength(run, of)), anchor);
 }
 
 /** Whole steps by the clock of the offset that hold the window: the first and last may reach beyond it. */
@@ -124,15 +148,16 @@ async function depthsById(
   { of, value }: SeriesAsked,
 ): Promise<ReadonlyMap<string, Float64Array>> {
   const stepAt = new Map(steps.map(({ startEpochMs }, k) => [startEpochMs, k]));
-  const idColumn = of === "assets" ? "asset_id" : "catchment_id";
+  const { file, idOf } = TABLES[of];
+  const column = of === "members" ? "depth_mm" : COLUMN[value];
   const byId = new Map<string, Float64Array>();
-  for (const row of await tableOf(run, `${of}.csv`)) {
-    const id = row[idColumn] ?? "";
+  for (const row of await tableOf(run, file)) {
+    const id = idOf(row);
     const k = stepAt.get(Date.parse(row.start ?? ""));
     const depths = byId.get(id) ?? new Float64Array(steps.length).fill(Number.NaN);
     byId.set(id, depths);
     if (k !== undefined && Date.parse(row.end ?? "") === steps[k]!.endEpochMs)
-      depths[k] = numberOf(row[COLUMN[value]]);
+      depths[k] = numberOf(row[column]);
   }
   return byId;
 }
