@@ -4,9 +4,6 @@ import type { Moment } from "./model/radar.ts";
 /** How stored numbers stand for physical ones: all of a moment but its values. */
 export type MomentCoding = Omit<Moment, "stored">;
 
-/** Codes that 16 bits hold. */
-const TWO_BYTE_CODES = 65_536;
-
 /**
  * The physical value of one stored number, in dBZ where the moment is a reflectivity.
  *
@@ -40,26 +37,43 @@ export function checkCoding(coding: MomentCoding, where: string): void {
  * All values of a moment as physical numbers; for a reflectivity dBZ.
  *
  * @param where - file and dataset, for the message
- * @returns shape as stored; NaN for nodata, -Infinity for undetect
+ * @param belowDetection - what stands for undetect: NaN where the moment means nothing there
+ * @returns shape as stored; NaN for nodata
  * @throws InputError as {@link checkCoding}
  */
-export function momentValues(moment: Moment, where: string): Float32Array {
+export function momentValues(
+  moment: Moment,
+  where: string,
+  belowDetection: number = Number.NEGATIVE_INFINITY,
+): Float32Array {
   checkCoding(moment, where);
   const { stored } = moment;
-  // A table of 65,536 entries would cost more than a small sweep of 16-bit codes.
-  if (stored instanceof Uint16Array && stored.length < TWO_BYTE_CODES) {
-    const values = new Float32Array(stored.length);
-    for (let i = 0; i < values.length; i++) values[i] = momentValue(stored[i] as number, moment);
-    return values;
-  }
-  if (stored instanceof Uint8Array || stored instanceof Uint16Array) {
-    return lookUp(
-      stored,
-      tabulate(stored, (code) => momentValue(code, moment)),
-    );
-  }
   const coding = codingAsStored(moment);
-  return Float32Array.from(stored as Float64Array, (value) => momentValue(value, coding));
+  const physical = (number: number): number => {
+    const value = momentValue(number, coding);
+    return value === Number.NEGATIVE_INFINITY ? belowDetection : value;
+  };
+  if (stored instanceof Uint8Array) return lookUp(stored, tabulate(stored, physical));
+  if (stored instanceof Uint16Array) return scaled(stored, coding, belowDetection);
+  return Float32Array.from(stored as Float64Array, physical);
+}
+
+/** As `momentValue`, in a loop of nothing but numbers: a table of 65,536 entries would cost more than most sweeps. */
+function scaled(
+  stored: Uint16Array,
+  { gain, offset, nodata, undetect }: MomentCoding,
+  belowDetection: number,
+): Float32Array {
+  // NaN is equal to no code.
+  const [missing, below] = [nodata ?? Number.NaN, undetect ?? Number.NaN];
+  const values = new Float32Array(stored.length);
+  for (let i = 0; i < values.length; i++) {
+    const code = stored[i] as number;
+    const value = code * gain + offset;
+    if (code === missing || value === Number.POSITIVE_INFINITY) values[i] = Number.NaN;
+    else values[i] = code === below || value === Number.NEGATIVE_INFINITY ? belowDetection : value;
+  }
+  return values;
 }
 
 /** The coding with its special codes as the array can hold them: a 32-bit -9999.9 is not the 64-bit one. */

@@ -5,6 +5,7 @@ import {
   type GateRatesOfSweep,
   gateRate,
   gateRates,
+  type MeasuredEcho,
   markBit,
   type PolarEcho,
   PROFILE_BAND_M,
@@ -57,7 +58,12 @@ export class EchoWork {
    * @param echo - is worked on in place
    * @param above - the sweep above, as measured
    */
-  rain(echo: PolarEcho, above: PolarEcho | undefined, lookup: PolarLookup, relation: ZrRelation): WorkedRain {
+  rain(
+    echo: PolarEcho,
+    above: MeasuredEcho | undefined,
+    lookup: PolarLookup,
+    relation: ZrRelation,
+  ): WorkedRain {
     const { grid, variants } = this.#shape;
     this.#chain.correct(echo, above);
     const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;

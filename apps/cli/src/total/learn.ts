@@ -52,6 +52,8 @@ import { lookupShelf } from "./lookup-shelf.ts";
 export const ROUNDS_LEARNED = 48;
 /** Of those, every so many-th is read a third time, once the loss in rain is settled. */
 const THIRD_READING_EVERY = 2;
+/** Moments that the first reading is about, beside the reflectivity. */
+const FIRST_READING = ["VRADH", "RHOHV", "PHIDP"];
 /** Terrain farther away than this stands in no beam that speaks for the ground. */
 const TERRAIN_REACH_M = 250_000;
 /** Sweeps of a round, from the lowest, that are compared with those of another radar. */
@@ -169,10 +171,11 @@ function learnStill(pupils: readonly Pupil[], instants: readonly LearningInstant
     for (const { rounds } of instants) {
       const round = rounds.get(radar);
       if (round === undefined) continue;
-      forEachEcho(radar, round, (echo) => {
+      const take = (echo: PolarEcho) => {
         if (settings.screening !== undefined) staticEcho.add(echo);
         systemPhase.add(echo);
-      });
+      };
+      forEachEcho(radar, round, take, FIRST_READING);
     }
     const phase = systemPhase.finish();
     one.known = {

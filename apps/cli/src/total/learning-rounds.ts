@@ -1,4 +1,4 @@
-import type { PolarEcho } from "@rainreckon/core";
+import type { MeasuredEcho, PolarEcho } from "@rainreckon/core";
 import type { JobRadar, JobRound } from "./job.ts";
 import { RoundEchoes } from "./round-echoes.ts";
 
@@ -62,13 +62,18 @@ function nearestRound({ rounds, time }: JobRadar, epochMs: number): JobRound | u
   return best;
 }
 
-/** Every sweep of a round that decodes, lowest first; a unit of work tells of those that do not. */
+/**
+ * Every sweep of a round that decodes, lowest first; a unit of work tells of those that do not.
+ *
+ * @param wanted - moments beside the reflectivity; all where left out
+ */
 export function forEachEcho(
   radar: JobRadar,
   round: JobRound,
-  take: (echo: PolarEcho, above: PolarEcho | undefined) => void,
+  take: (echo: PolarEcho, above: MeasuredEcho | undefined) => void,
+  wanted?: readonly string[],
 ): void {
-  const echoes = new RoundEchoes(radar, round, () => {});
+  const echoes = new RoundEchoes(radar, round, () => {}, wanted);
   try {
     for (const sweep of round.sweeps) {
       try {

@@ -17,7 +17,7 @@ import { type BlockageSettings, correctBlockage, joinBlockage } from "./blockage
 import { terrainBlockage } from "./blockage/terrain-blockage.ts";
 import type { TerrainRays } from "./blockage/terrain-model.ts";
 import type { ConsistencyEstimate } from "./calibration/consistency-learner.ts";
-import { addEffect, type PolarEcho } from "./polar-echo.ts";
+import { addEffect, type MeasuredEcho, type PolarEcho } from "./polar-echo.ts";
 import { correctProfile, type ProfileReport, type ProfileSettings } from "./profile/correct-profile.ts";
 import type { LearnedProfile } from "./profile/learned-profile.ts";
 import type { LearnedDropNumber } from "./rain-rate/drop-number.ts";
@@ -112,7 +112,7 @@ export class EchoChain {
    *
    * @param above - the sweep above, as measured; undefined where there is none
    */
-  correct(echo: PolarEcho, above: PolarEcho | undefined): EchoReport {
+  correct(echo: PolarEcho, above: MeasuredEcho | undefined): EchoReport {
     const { offsetDb, screening, blockage, gas, attenuation, profile } = this.#settings;
     const learned = this.#learned;
     const screened =

@@ -97,29 +97,42 @@ export function markBit(mark: Mark): number {
 /** ODIM names of the moments that screening and correction can use, beside the reflectivity. */
 export const ECHO_MOMENTS = ["TH", "VRADH", "WRADH", "ZDR", "RHOHV", "PHIDP", "KDP"] as const;
 
+/** What a sweep above another is asked for: its echo as it was measured. */
+export type MeasuredEcho = Pick<PolarEcho, "header" | "azimuthDeg" | "measuredDbz">;
+
 /**
- * Takes a decoded sweep into work.
+ * A decoded sweep's reflectivity alone.
  *
  * @param reflectivity - the moment that rain is made from
  * @param where - file and dataset, for messages
  * @returns undefined where the sweep has no such moment
  * @throws InputError as `momentValues`
  */
-export function polarEcho(sweep: Sweep, reflectivity: string, where: string): PolarEcho | undefined {
-  const values = (quantity: string, undetect: number): Float32Array | undefined => {
+export function measuredEcho(sweep: Sweep, reflectivity: string, where: string): MeasuredEcho | undefined {
+  const moment = sweep.moments.get(reflectivity);
+  if (moment === undefined) return undefined;
+  return { header: sweep, azimuthDeg: sweep.azimuthDeg, measuredDbz: momentValues(moment, where) };
+}
+
+/**
+ * Takes a decoded sweep into work. Parameters and errors as of {@link measuredEcho}.
+ *
+ * @param measured - its reflectivity, where it is at hand already
+ * @returns undefined where the sweep has no such moment
+ */
+export function polarEcho(
+  sweep: Sweep,
+  reflectivity: string,
+  where: string,
+  measured: MeasuredEcho | undefined = measuredEcho(sweep, reflectivity, where),
+): PolarEcho | undefined {
+  if (measured === undefined) return undefined;
+  const { measuredDbz } = measured;
+  const values = (quantity: string, belowDetection: number): Float32Array | undefined => {
     const moment = sweep.moments.get(quantity);
-    if (moment === undefined) return undefined;
-    const physical = momentValues(moment, where);
     // Only a reflectivity has a meaning below detection.
-    if (Number.isNaN(undetect)) {
-      for (let i = 0; i < physical.length; i++) {
-        if (physical[i] === Number.NEGATIVE_INFINITY) physical[i] = Number.NaN;
-      }
-    }
-    return physical;
+    return moment === undefined ? undefined : momentValues(moment, where, belowDetection);
   };
-  const measuredDbz = values(reflectivity, Number.NEGATIVE_INFINITY);
-  if (measuredDbz === undefined) return undefined;
   const gates = measuredDbz.length;
   return {
     header: sweep,

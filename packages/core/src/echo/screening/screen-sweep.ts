@@ -1,4 +1,4 @@
-import { type PolarEcho, SCREENS, type Screen, screenBit } from "../polar-echo.ts";
+import { type MeasuredEcho, type PolarEcho, SCREENS, type Screen, screenBit } from "../polar-echo.ts";
 import { type Evidence, weighEvidence } from "./evidence.ts";
 import { fillFromNeighbours } from "./fill.ts";
 import { screenFilteredPower } from "./filtered-power.ts";
@@ -25,7 +25,7 @@ import { screenVerticalGradient } from "./vertical-gradient.ts";
  */
 export function screenSweep(
   echo: PolarEcho,
-  above: PolarEcho | undefined,
+  above: MeasuredEcho | undefined,
   learned: LearnedStaticEcho | undefined,
   settings: ScreeningSettings,
 ): ScreeningReport {

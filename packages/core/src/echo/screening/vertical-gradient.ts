@@ -1,5 +1,5 @@
 import { beamHeightM, effectiveRadiusM } from "../../beam.ts";
-import { type PolarEcho, screenBit } from "../polar-echo.ts";
+import { type MeasuredEcho, screenBit } from "../polar-echo.ts";
 import type { Evidence } from "./evidence.ts";
 import { nearestRay, type SweepView } from "./sweep-view.ts";
 
@@ -25,7 +25,7 @@ const LEAST_DBZ = 5;
  */
 export function screenVerticalGradient(
   view: SweepView,
-  above: PolarEcho,
+  above: MeasuredEcho,
   { strong, weak }: Evidence,
 ): boolean {
   const bit = screenBit("vertical-gradient");
@@ -76,7 +76,7 @@ export function screenVerticalGradient(
 }
 
 /** Of each gate the one above it; -1 from where on none is close enough. */
-function gatesOver({ gateCount, heightM, echo }: SweepView, above: PolarEcho): Int32Array {
+function gatesOver({ gateCount, heightM, echo }: SweepView, above: MeasuredEcho): Int32Array {
   const over = new Int32Array(gateCount).fill(-1);
   const { firstGateCentreM, gateLengthM, elevationDeg, gateCount: countAbove } = above.header;
   if (!(elevationDeg > echo.header.elevationDeg)) return over;

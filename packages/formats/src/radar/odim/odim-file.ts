@@ -201,6 +201,7 @@ class OdimFile implements ScanFile {
   readonly leftOut: readonly InputError[];
   readonly #file: Hdf5File;
   readonly #sweeps: readonly StoredSweep[];
+  readonly #rays = new Map<StoredSweep, SortedRays>();
 
   constructor(
     file: Hdf5File,
@@ -236,7 +237,7 @@ class OdimFile implements ScanFile {
       throw new RangeError(`there is no sweep ${index}; ${this.#file.path} has ${this.#sweeps.length}`);
     }
     const wanted = (quantities ?? sweep.header.quantities).map((quantity) => momentNamed(sweep, quantity));
-    const rays = raysOf(this.#file, sweep);
+    const rays = this.#raysOf(sweep);
     const moments = new Map<string, Moment>();
     for (const moment of wanted) {
       moments.set(moment.quantity, readMoment(this.#file, moment, sweep.levels, sweep.header, rays.fileRow));
@@ -257,6 +258,16 @@ class OdimFile implements ScanFile {
 
   close(): void {
     this.#file.close();
+  }
+
+  /** Moments of a sweep may be asked for one after the other: its rays are put in order once. */
+  #raysOf(sweep: StoredSweep): SortedRays {
+    let rays = this.#rays.get(sweep);
+    if (rays === undefined) {
+      rays = raysOf(this.#file, sweep);
+      this.#rays.set(sweep, rays);
+    }
+    return rays;
   }
 }
 
