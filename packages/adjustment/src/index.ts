@@ -21,6 +21,7 @@ export {
 } from "./choose-method.ts";
 export { type CrossValidation, crossValidatedPairs, type HeldOutGauge } from "./cross-validation.ts";
 export { CLUSTER_RULE } from "./folds.ts";
+export { dominanceNote, type GaugeCounts, whyNoGauge } from "./footing.ts";
 export {
   type AppliedBias,
   type FactorBasis,

@@ -27,6 +27,8 @@ describe("what a method must give back", () => {
     "brandes",
     "kriging-multiplicative",
     "kriging-external-drift",
+    "kriging-bayesian",
+    "combined",
   ] as const)("%s: one factor everywhere is found everywhere", (name) => {
     const learned = learnMethod(name, proportional, SETTINGS);
     for (const [x, y, radarMm] of [
@@ -60,6 +62,33 @@ describe("what a method must give back", () => {
         expect(depth(learned, xKm, yKm, radarMm)).toBeCloseTo(gaugeMm, 9);
     },
   );
+
+  // By construction: the exponent of a relation that is off bends depths by a power; gauges between 6 and 19 mm show it.
+  test("Bayesian kriging follows a power of the radar depth, and not beyond the gauges", () => {
+    const bent = network(40, (radarMm) => 1.2 * radarMm ** 0.9);
+    const learned = learnMethod("kriging-bayesian", bent, SETTINGS);
+    for (const radarMm of [8, 12, 16]) {
+      expect(Math.abs(depth(learned, 50, 50, radarMm) / (1.2 * radarMm ** 0.9) - 1)).toBeLessThan(0.03);
+    }
+    const most = Math.max(...bent.map((gauge) => gauge.radarMm));
+    const ratio = (radarMm: number) => depth(learned, 50, 50, radarMm) / radarMm;
+    expect(ratio(10 * most)).toBeCloseTo(ratio(most), 12);
+  });
+
+  // By construction: the factor doubles from west to east, smoothly.
+  test("Bayesian kriging follows a factor that changes smoothly", () => {
+    const factor = (x: number) => 1 + x / 100;
+    const gauges = network(60, (radarMm, x) => radarMm * factor(x));
+    const learned = learnMethod("kriging-bayesian", gauges, SETTINGS);
+    for (const x of [20, 50, 80])
+      expect(Math.abs(depth(learned, x, 50, 10) / (10 * factor(x)) - 1)).toBeLessThan(0.03);
+  });
+
+  test("the combination is the mean of its parts", () => {
+    const gauges = network(15, (radarMm, x) => radarMm * (1 + x / 150));
+    const of = (name: MethodName) => depth(learnMethod(name, gauges, SETTINGS), 33, 44, 9);
+    expect(of("combined")).toBeCloseTo((of("brandes") + of("kriging-bayesian")) / 2, 12);
+  });
 
   test("gauges alone do not look at the radar", () => {
     const learned = learnMethod("gauges-alone", proportional, SETTINGS);
@@ -140,6 +169,8 @@ describe("stated fallbacks", () => {
       network(6, (mm) => mm).map((gauge) => ({ ...gauge, complete: false })),
       `no gauge with a whole window: ${BIAS}`,
     ],
+    ["kriging-bayesian", "too few ratios", network(4, (mm) => mm), `4 ratios, 5 needed: ${BIAS}`],
+    ["combined", "too few ratios for one part", network(4, (mm) => mm), `4 ratios, 5 needed: ${BIAS}`],
     ["brandes", "no ratios", network(6, () => 0.1), `fewer than 2 ratios: ${BIAS}`],
     ["log-mean-bias", "no ratios", network(6, () => 0.1), `no gauge and radar both wet: ${BIAS}`],
   ];

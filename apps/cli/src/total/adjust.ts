@@ -1,6 +1,7 @@
 import { durationMs } from "@rainreckon/accumulation";
 import {
   type CrossValidation,
+  dominanceNote,
   type FieldAdjuster,
   fieldAdjuster,
   type LearnedMethod,
@@ -17,6 +18,7 @@ import {
   validateChoice,
   validateMethod,
   type WindowGauge,
+  whyNoGauge,
 } from "@rainreckon/adjustment";
 import { cellCentre, type Pair } from "@rainreckon/core";
 import { geodesicInverse } from "@rainreckon/mosaic";
@@ -50,6 +52,8 @@ export type Adjustment = AppliedAdjustment | { readonly applied: false; readonly
 /** What adjusting came to. */
 export interface AdjustmentResult {
   readonly adjustment: Adjustment;
+  /** The gauges that are trusted when all are known. */
+  readonly trusted: readonly WindowGauge[];
   /** Undefined where the plan names the method, or nothing could be chosen from. */
   readonly choice: ValidatedChoice | undefined;
   /** Depth by the gauges alone at a place, mm; undefined where they do not allow it. */
@@ -74,16 +78,20 @@ export function adjust(
 ): AdjustmentResult {
   const { plan } = run.loaded;
   const { method, minGauges, minGaugeSumMm, factorLimits } = plan.adjustment;
+  const gauges = trust(all);
   const refused = (reason: string): AdjustmentResult => ({
     adjustment: { applied: false, reason },
+    trusted: gauges,
     choice: undefined,
     gaugesOnlyMm: undefined,
   });
   // The floors are the same for all methods: too few gauges, or too little rain, to say anything by.
   const floors = meanFieldBias(pairs, { minGauges, minGaugeSumMm, factorLimits });
-  if (!floors.applied) return refused(method === "none" ? "switched off in the plan" : floors.reason);
+  const placed = run.gauges.gauges.length;
+  const noGauge = whyNoGauge({ placed, paired: all.length, trusted: gauges.length });
+  if (!floors.applied)
+    return refused(method === "none" ? "switched off in the plan" : (noGauge ?? floors.reason));
   const settings = settingsOf(run, total);
-  const gauges = trust(all);
   const alone = learnMethod("gauges-alone", gauges, settings);
   const gaugesOnlyMm =
     alone.kind === "field" ? (xKm: number, yKm: number) => alone.depthMm(xKm, yKm, 0, Number.NaN) : undefined;
@@ -92,10 +100,11 @@ export function adjust(
   const name = choice?.chosen ?? (method === "by-cross-validation" ? "mean-field-bias" : method);
   if (name === "none") {
     const reason = "no method met held-out gauges better than the radar as it is";
-    return { adjustment: { applied: false, reason }, choice, gaugesOnlyMm };
+    return { adjustment: { applied: false, reason }, trusted: gauges, choice, gaugesOnlyMm };
   }
   const learned = learnMethod(name, gauges, settings);
   const { validation, clusterValidation } = choice ?? validateMethod(name, all, settings, trust);
+  const dominance = dominanceNote(gauges);
   const byBias = name === "mean-field-bias";
   return {
     adjustment: {
@@ -105,12 +114,13 @@ export function adjust(
       gaugeCount: gauges.length,
       factor: learned.kind === "factor" && learned.constant ? learned.factorAt(0) : Number.NaN,
       unlimitedFactor: byBias && floors.clipped ? floors.unlimitedFactor : undefined,
-      notes: learned.notes,
+      notes: dominance === undefined ? learned.notes : [...learned.notes, dominance],
       learned,
       share: meanRainShare(gauges),
       crossValidation: validation,
       clusterValidation,
     },
+    trusted: gauges,
     choice,
     gaugesOnlyMm,
   };
