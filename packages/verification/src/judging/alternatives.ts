@@ -60,7 +60,7 @@ export function bestFactor(steps: Aligned, ratioDb: number, levelDb: number): Ot
 
 /** The shift of its clock under which a gauge fits best; steps of five minutes where the radar has them. */
 export function bestClock(
-  { evidence, gaugeMm, stepMs, lead, tipMm }: Aligned,
+  { evidence, gaugeMm, stepMs, lead, firstBase, tipMm }: Aligned,
   levelDb: number,
 ): ShiftedClock | undefined {
   const perStep = Math.round(stepMs / evidence.radar.stepMs);
@@ -68,7 +68,7 @@ export function bestClock(
   let best: Omit<ShiftedClock, "wholeHours"> | undefined;
   const wholeHours: ShiftedClock[] = [];
   for (let shift = -most; shift <= most; shift++) {
-    const radarMm = radarOnSteps(evidence, perStep, gaugeMm.length, -lead * perStep - shift);
+    const radarMm = radarOnSteps(evidence, perStep, gaugeMm.length, firstBase - lead * perStep - shift);
     const found = alternative(gaugeMm, radarMm, levelDb, tipMm);
     if (found === undefined) continue;
     const minutesLate = (shift * evidence.radar.stepMs) / 60_000;
@@ -89,7 +89,7 @@ export function bestPlace(steps: Aligned, field: FieldSamples, levelDb: number):
     const northKm = field.yKm[place] - yKm;
     const distanceKm = Math.hypot(eastKm, northKm);
     if (distanceKm > FARTHEST_KM) continue;
-    const radarMm = fieldOnSteps(field.depthMm[place], perStep, steps.count);
+    const radarMm = fieldOnSteps(field.depthMm[place], perStep, steps.count, steps.firstBase);
     const found = alternative(gaugeMm, radarMm, levelDb, steps.tipMm, observedSteps(steps.gaugeMm));
     if (found === undefined || (best !== undefined && found.misfit >= best.misfit)) continue;
     best = { ...found, eastKm, northKm, distanceKm };
@@ -120,7 +120,7 @@ export function longestSilence(steps: Aligned, levelDb: number): SilentFrom | un
   while (end < steps.count && gaugeMm[end] === 0) end++;
   const expectedMm = steps.radarMm.map((mm, k) => (k >= first && k < end ? 0 : mm));
   const rest = misfit(gaugeMm, expectedMm, factor, steps.tipMm);
-  const { startEpochMs } = steps.evidence.radar;
+  const { startEpochMs } = steps;
   return {
     misfit: rest.wetSteps === 0 ? 0 : rest.perStep,
     fit: rest,

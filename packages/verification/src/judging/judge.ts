@@ -13,6 +13,7 @@ import { causeOfReason } from "./cause-of-reason.ts";
 import { findingsAlone } from "./findings-alone.ts";
 import { findingsBeside } from "./findings-beside.ts";
 import { type NetworkFault, networkFaults } from "./networks.ts";
+import { withPartialReasons } from "./parts.ts";
 import { ASK_DB, radarSide } from "./radar-side.ts";
 import { type ReferenceLevel, referenceLevel } from "./reference-level.ts";
 import { JUDGE_MM, subjectOf } from "./subject.ts";
@@ -59,7 +60,8 @@ const ONE_SHOWER_SHARE = 0.75;
 export function judgeGauges(gauges: readonly GaugeEvidence[], context: JudgeContext): GaugeVerdict[] {
   const subjects = gauges.map((gauge) => subjectOf(gauge, context.window));
   const reference = referenceLevel(subjects);
-  const accounts = subjects.map((subject) => accountOf(subject, reference, context));
+  const whole = subjects.map((subject) => accountOf(subject, reference, context));
+  const accounts = withPartialReasons(whole, gauges, context);
   const faults = new Map(networkFaults(accounts).map((fault) => [fault.network, fault]));
   const networks = new Set(gauges.map(({ series }) => series.network));
   const isRadarsClock =

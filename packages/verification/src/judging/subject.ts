@@ -41,8 +41,8 @@ export function subjectOf(evidence: GaugeEvidence, window: Interval): Subject {
 
 function freshSubject(evidence: GaugeEvidence, window: Interval): Subject {
   const { series, whole, radar } = evidence;
-  const impossible = findImpossibleReading(series, whole);
-  const spike = findSpike(series, whole, radar);
+  const impossible = findImpossibleReading(series, window);
+  const spike = findSpike(series, window, radar);
   const raw = aligned(evidence, window);
   const steps = raw === undefined ? undefined : without(raw, [impossible, spike], window);
   const plain =
