@@ -120,7 +120,7 @@ describe("where the radar is wrong over a sound gauge, the gauge is used and the
 });
 
 describe("parts of a long window", () => {
-  const LONG = { seed: 5, hours: 72, gauges: 6, field: false };
+  const LONG = { seed: 5, hours: 96, gauges: 6, field: false };
   const day = 24 * 12;
 
   test("a clock that is an hour late from the second day on", () => {
@@ -133,7 +133,7 @@ describe("parts of a long window", () => {
     expect(verdict.cause).toMatchObject({ name: "clock-off", minutesLate: 60 });
   });
 
-  test("a gauge that stood still for one day of three", () => {
+  test("a gauge that stood still for one day of four", () => {
     const still = (g: number, mm: Float64Array) =>
       g === 3 && mm.fill(0, LEAD_STEPS + day, LEAD_STEPS + 2 * day);
     expect(only(judged({ ...LONG, spoil: still }), "g3").cause?.name).toBe("dies-part-way");
