@@ -26,6 +26,7 @@ export type {
   ChangedSetting,
   CrossValidationStatement,
   DepthFigure,
+  DepthRangeFigure,
   EchoStatement,
   GaugeRole,
   GeographicLattice,

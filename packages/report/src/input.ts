@@ -13,6 +13,12 @@ export interface DepthFigure {
   readonly reason?: string;
 }
 
+/** One true depth in ten lies below the first bound, one above the second, mm. */
+export interface DepthRangeFigure {
+  readonly p10Mm: number;
+  readonly p90Mm: number;
+}
+
 /** Something that could change the figure, in words that stand alone. */
 export interface Caution {
   /** The caution that the relation was nobody's choice always leads. */
@@ -164,6 +170,7 @@ export interface ReportAsset {
   /** Of the cell that holds it. */
   readonly depth?: DepthFigure;
   /** Shallowest and deepest of the nine cells about it, mm. */
+  readonly range?: DepthRangeFigure;
   readonly nineCells?: { readonly leastMm: number; readonly mostMm: number };
   readonly series?: Hyetograph;
 }
@@ -189,7 +196,7 @@ export interface ReportCatchment {
   readonly maxCell: DepthFigure;
   readonly areaKm2: number;
   /** Bounds of the depth; absent where there is no error model. */
-  readonly range?: { readonly p10Mm: number; readonly p90Mm: number };
+  readonly range?: DepthRangeFigure;
 }
 
 /** Depths per step of one side: shape [stepCount] each; depth over the observed part, NaN where none was. */
@@ -293,6 +300,7 @@ export interface ReportInput {
     readonly place: string;
     readonly depth: DepthFigure;
     readonly basis: "radar" | "adjusted";
+    readonly range?: DepthRangeFigure;
   };
   readonly adjustment: AdjustmentStatement;
   readonly crossValidation: CrossValidationStatement;
@@ -300,6 +308,8 @@ export interface ReportInput {
   readonly methodChoice?: MethodChoiceStatement;
   /** Most important first. */
   readonly cautions: readonly Caution[];
+  /** What the bounds of depths rest on and how far they reach, in sentences; empty or absent where there are none. */
+  readonly howSure?: readonly string[];
   readonly grid: Grid;
   /** In the order of their buttons. The first one is shown, or the one named here. */
   readonly layers: readonly MapLayer[];

@@ -36,6 +36,8 @@ import { rangeOf3x3 } from "./place-planes.ts";
 import type { PreparedRun } from "./prepare.ts";
 import { reportMap } from "./report-map.ts";
 import { areaHyetograph, gaugeHyetograph } from "./report-series.ts";
+import { areaRanges, cellRange, type Uncertainty } from "./uncertainty.ts";
+import { uncertaintyWords } from "./uncertainty-words.ts";
 import type { UnitStore } from "./unit-store.ts";
 
 interface ReportSources {
@@ -46,6 +48,7 @@ interface ReportSources {
   readonly adjustedTotalMm: Float32Array | undefined;
   readonly notices: readonly ManifestNotice[];
   readonly store: UnitStore;
+  readonly uncertainty: Uncertainty;
 }
 
 /** Assets that the report's map shows; assets.csv has them all. */
@@ -78,6 +81,7 @@ export function reportInput(sources: ReportSources): ReportInput {
       place: run.catchments.length > 0 ? "The catchments together" : "The map",
       depth: figure(district, bestMm(district)),
       basis: adjustment.applied ? "adjusted" : "radar",
+      ...rangeOf(run.district, sources),
     },
     adjustment: adjustment.applied
       ? {
@@ -109,6 +113,7 @@ export function reportInput(sources: ReportSources): ReportInput {
           },
         }),
     cautions,
+    howSure: sources.uncertainty.known ? uncertaintyWords(sources.uncertainty) : [],
     ...reportMap(sources),
     assets: run.assets.slice(0, MOST_ASSETS).map((asset, k) => assetOf(asset, k, figure, sources)),
     assetsLeftOut: Math.max(0, run.assets.length - MOST_ASSETS),
@@ -133,6 +138,7 @@ export function reportInput(sources: ReportSources): ReportInput {
         ...(adjustment.applied ? { adjusted: figure(areal, areal.adjustedMm) } : {}),
         maxCell: { ...figure(areal, areal.maxCellMm), atCap: peakAtCap(catchment.cells, total.sum) },
         areaKm2: catchment.areaKm2,
+        ...rangeOf(catchment.cells, sources),
       };
     }),
     gaugeHyetographs: comparison.gauges.map((gauge, g) => gaugeHyetograph(gauge, g, sources)),
@@ -206,6 +212,24 @@ function reportGauge(compared: ComparedGauge, comparison: Comparison): ReportGau
   };
 }
 
+/** Bounds of the depth of an area; none where nothing tells of errors. */
+function rangeOf(
+  area: PreparedRun["district"],
+  { run, uncertainty }: ReportSources,
+): Pick<ReportCatchment, "range"> {
+  return uncertainty.known ? boundsOf(areaRanges(run, uncertainty, area).window) : {};
+}
+
+function boundsOf({
+  p10Mm,
+  p90Mm,
+}: {
+  readonly p10Mm: number;
+  readonly p90Mm: number;
+}): Pick<ReportCatchment, "range"> {
+  return Number.isFinite(p10Mm) && Number.isFinite(p90Mm) ? { range: { p10Mm, p90Mm } } : {};
+}
+
 /** An asset: the figures of its cell, and the range of the nine cells about it. */
 function assetOf(
   asset: PreparedRun["assets"][number],
@@ -224,6 +248,7 @@ function assetOf(
     yM,
     depth: figure(areal, bestMm(areal)),
     ...(around === undefined ? {} : { nineCells: around }),
+    ...(sources.uncertainty.known ? boundsOf(cellRange(sources.uncertainty, asset.cell, bestMm(areal))) : {}),
     series: areaHyetograph(asset, run.catchments.length + k, areal.adjustedMm, sources),
   };
 }

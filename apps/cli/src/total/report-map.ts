@@ -12,11 +12,15 @@ import { COMPANIONS, tollName } from "./companions.ts";
 import { screenedDepthMm } from "./echo-account.ts";
 import type { FigureSources } from "./figures.ts";
 import type { PreparedRun } from "./prepare.ts";
+import { standardErrorPlane, type Uncertainty } from "./uncertainty.ts";
 import type { UnitStore } from "./unit-store.ts";
+
+/** What the map is made from. */
+type MapSources = FigureSources & { readonly store: UnitStore; readonly uncertainty: Uncertainty };
 
 /** All that the report's map shows. */
 export function reportMap(
-  sources: FigureSources & { readonly store: UnitStore },
+  sources: MapSources,
 ): Pick<ReportInput, "grid" | "layers" | "shownLayerId" | "frames" | "lattice"> {
   const { run, adjustedTotalMm } = sources;
   return {
@@ -28,7 +32,7 @@ export function reportMap(
   };
 }
 
-function layersOf({ run, total, adjustedTotalMm }: FigureSources): MapLayer[] {
+function layersOf({ run, total, adjustedTotalMm, uncertainty }: MapSources): MapLayer[] {
   const { planes } = total;
   const layers: MapLayer[] = [];
   if (adjustedTotalMm !== undefined) {
@@ -70,6 +74,16 @@ function layersOf({ run, total, adjustedTotalMm }: FigureSources): MapLayer[] {
       values: loudestByCell(total),
     },
   );
+  if (uncertainty.known) {
+    layers.push({
+      quantity: "depthMm",
+      scale: "error",
+      id: "standard-error",
+      label: "Standard error",
+      what: `Standard error of the ${adjustedTotalMm === undefined ? "radar" : "adjusted"} total of each single cell, mm. Errors of neighbours are alike: a mean over an area is not much surer than its cells.`,
+      values: standardErrorPlane(uncertainty),
+    });
+  }
   const screened = screenedDepthMm(total);
   if (screened.some((mm) => mm > 0)) {
     layers.push({
@@ -173,12 +187,7 @@ function companionLayers({ planes }: AssembledRun): MapLayer[] {
 }
 
 /** The depth of every interval, thinned as it is read: they are never all in memory at full size. */
-function framesOf({
-  run,
-  total,
-  comparison,
-  store,
-}: FigureSources & { readonly store: UnitStore }): FrameSeries[] {
+function framesOf({ run, total, comparison, store }: MapSources): FrameSeries[] {
   const { adjustment } = comparison;
   const radar = new FrameStack("radar-total", run.grid, run.intervals.length);
   let k = 0;

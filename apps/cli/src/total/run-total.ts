@@ -20,7 +20,7 @@ import { echoAccount, wordsByRadar } from "./echo-account.ts";
 import { estimate, type RunEstimate } from "./estimate.ts";
 import { type ArealFigure, bestMm, districtFigure, headlineUnderRelations, windowFigure } from "./figures.ts";
 import { inputsAfterWork } from "./inputs-after-work.ts";
-import { LEARNED, learnBeforehand, learnsBeforehand, writeLearnedOf } from "./learned-run.ts";
+import { LEARNED, learnOnce, learnsBeforehand, writeLearnedOf } from "./learned-run.ts";
 import { megabytes, memberBytes, refuseMembersBeyondDisk, writeMembers } from "./members.ts";
 import {
   type OutputSources,
@@ -36,7 +36,7 @@ import {
 import { type OverrideEffect, overrideCautions, overrideEffects } from "./override-effects.ts";
 import { type PreparedRun, prepareRun } from "./prepare.ts";
 import { reportInput } from "./report-input.ts";
-import { MANIFEST, MEMBERS_LEFT_OUT, openRunFolder, RUN_LOG } from "./run-folder.ts";
+import { MANIFEST, MEMBERS_LEFT_OUT, noticeCountOf, openRunFolder, RUN_LOG } from "./run-folder.ts";
 import { learnUncertainty } from "./uncertainty.ts";
 import { workUnits } from "./work.ts";
 
@@ -102,11 +102,11 @@ export async function runTotal(
   }
   if (folder.state === "finished") {
     log.finish();
-    return { outcome: { kind: "already there", run: planned }, noticeCount: log.count };
+    return { outcome: { kind: "already there", run: planned }, noticeCount: noticeCountOf(folder.folder) };
   }
   const indexedMs = performance.now() - started;
 
-  const taught = await learnBeforehand(planned, log);
+  const taught = await learnOnce(planned, log, folder.learnedFile);
   if (learnsBeforehand(taught)) await writeLearnedOf(taught, folder.draft(LEARNED));
   const learnedMs = performance.now() - started;
   const progress = progressBar(terminal, taught.jobs.length, "units of work");
@@ -149,7 +149,7 @@ export async function runTotal(
   await writeScores(sources);
   await writeJson(folder.draft(CHECKS_FILE), checkDocument(run, comparison) as JsonValue);
   const report = renderReport(
-    reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all, store }),
+    reportInput({ run, total, comparison, cautions, adjustedTotalMm, notices: log.all, store, uncertainty }),
   );
   await writeText(folder.draft("report.html"), report);
   const files = [

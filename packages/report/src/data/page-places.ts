@@ -8,7 +8,7 @@ import type {
   ReportGauge,
   ReportInput,
 } from "../input.ts";
-import { depthWords, isPartial } from "../text/figures.ts";
+import { depthWords, isPartial, rangeWords } from "../text/figures.ts";
 import { plainText } from "../text/html.ts";
 import { areaText, mmText, percentText, ratioText } from "../text/numbers.ts";
 import type { PagePlace, PageSeries } from "./contract.ts";
@@ -131,7 +131,7 @@ function catchmentPlace(catchment: ReportCatchment, index: number, input: Report
       ...fact("Depth", words(depth)),
       ...(range === undefined
         ? []
-        : fact("8 in 10 chances between", `${mmText(range.p10Mm)} and ${mmText(range.p90Mm)} mm (p10–p90)`)),
+        : fact("In 8 cases of 10 between", `${rangeWords(range, " and ")} mm (p10–p90)`)),
       ...fact("Observed, of area and time", percentText(depth.observedFraction)),
       ...fact("Radar alone", words(radar)),
       ...(adjusted === undefined ? [] : fact("Adjusted", words(adjusted))),
@@ -144,7 +144,7 @@ function catchmentPlace(catchment: ReportCatchment, index: number, input: Report
 }
 
 function assetPlace(
-  { id, name, xM, yM, depth, nineCells }: ReportAsset,
+  { id, name, xM, yM, depth, range, nineCells }: ReportAsset,
   index: number,
   minObserved: number,
 ): PagePlace {
@@ -152,6 +152,9 @@ function assetPlace(
     ...plainPlace(`a${index}`, "asset", id, name, xM, yM),
     facts: [
       ...(depth === undefined ? [] : fact("Depth of its cell", depthWords(depth, minObserved))),
+      ...(range === undefined
+        ? []
+        : fact("In 8 cases of 10 between", `${rangeWords(range, " and ")} mm (p10–p90)`)),
       ...(nineCells === undefined
         ? []
         : fact("The nine cells about it", `${mmText(nineCells.leastMm)} to ${mmText(nineCells.mostMm)} mm`)),
@@ -161,6 +164,7 @@ function assetPlace(
       "A single cell of the map is less certain than a mean over a catchment.",
       ...marksOf(depth, minObserved),
     ],
+    ...(range === undefined ? {} : { range: [range.p10Mm, range.p90Mm] as const }),
   };
 }
 

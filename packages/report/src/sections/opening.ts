@@ -1,6 +1,6 @@
 import { ROLE_WORDS } from "../charts/marks.ts";
 import type { Caution, ReportInput } from "../input.ts";
-import { depthInText, missing } from "../text/figures.ts";
+import { depthInText, missing, rangeWords } from "../text/figures.ts";
 import { html, type Markup } from "../text/html.ts";
 import { counted, countText, mmText, percentText, ratioText } from "../text/numbers.ts";
 import { windowWords } from "../text/times.ts";
@@ -27,7 +27,7 @@ export function titleBlock(input: ReportInput): Markup {
 
 /** The one sentence that the report is for. */
 export function headlineSentence(input: ReportInput): Markup {
-  const { place, depth, basis } = input.headline;
+  const { place, depth, basis, range } = input.headline;
   const words = windowWords(input.window, input.zone);
   const when = words.localIsUtc
     ? html`${words.utc} UTC`
@@ -35,7 +35,7 @@ export function headlineSentence(input: ReportInput): Markup {
   const wettest = wettestCatchment(input);
   const share = html`<span class="aside">(${percentText(depth.observedFraction)} observed, ${
     basis === "adjusted" ? "radar adjusted to gauges" : "radar alone"
-  })</span>`;
+  }${range !== undefined && html`; in 8 cases of 10 between ${rangeWords(range, " and ")}\u00a0mm`})</span>`;
   const fell = Number.isFinite(depth.mm)
     ? html`${place} received <strong>${depthInText(depth, input.minObserved)}</strong> of rain ${share}`
     : html`How much rain fell on ${place} is not known ${missing(depth.reason ?? "nothing was observed")} ${share}`;

@@ -1,4 +1,4 @@
-import type { DepthFigure } from "../input.ts";
+import type { DepthFigure, DepthRangeFigure } from "../input.ts";
 import { html, type Markup } from "./html.ts";
 import { atLeastText, mmText, percentText } from "./numbers.ts";
 
@@ -34,6 +34,11 @@ export function depthCell(figure: DepthFigure, minObserved: number): Markup {
   return html`${partial ? html`<span title="${why}">${atLeastText(figure.mm)}</span>` : mmText(figure.mm)}${
     figure.atCap === true && html` <span class="mark" title="a capped rain rate went into it">at cap</span>`
   }`;
+}
+
+/** Bounds of a depth as plain words, without the unit. */
+export function rangeWords({ p10Mm, p90Mm }: DepthRangeFigure, between = " to "): string {
+  return `${mmText(p10Mm)}${between}${mmText(p90Mm)}`;
 }
 
 /** The same as plain words with the unit, and with the reason where it is missing. */
