@@ -164,6 +164,8 @@ describe("a folder in which nearly everything that can be wrong is wrong", () =>
     expect(result.status).toBe(1);
     expect(result.stdout).toMatch(/^at least \d+\.\d mm over all catchments together/m);
     expect(total(path.join(folder, "plan.yaml"), "run").status).toBe(0);
+    // The run is there already: what was left out in making it still counts.
+    expect(total(path.join(folder, "plan.yaml"), "run", ["--strict"]).status).toBe(1);
   });
 
   test("what is missing is not dry: the minutes of spoilt scans are not observed", () => {

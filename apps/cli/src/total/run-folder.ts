@@ -12,6 +12,7 @@ import {
 import path from "node:path";
 import { InputError } from "@rainreckon/core";
 import { manifestSchema } from "../manifest.ts";
+import { lockFolder, refuseHeld } from "./run-lock.ts";
 
 /** Where an unfinished run keeps its units and its outputs until all are whole. */
 const UNFINISHED = ".unfinished";
@@ -41,6 +42,8 @@ export interface RunFolder {
   readonly state: FolderState;
   readonly folder: string;
   readonly unitsFolder: string;
+  /** Under which what was learned is kept for a run that is taken up again. */
+  readonly learnedFile: string;
   /** Where what was in the folder before went, under `force`. */
   readonly movedTo?: string;
   /** Path under which an output is made. */
@@ -55,13 +58,14 @@ export interface RunFolder {
  * A folder with an unfinished run of the same digest is resumed; a finished one of the same digest is left
  * as it is; anything else is refused, or moved aside under `force`. Nothing is ever deleted but scratch.
  *
- * @throws InputError (usage) where the folder holds something else, or cannot be written
+ * @throws InputError (usage) where the folder holds something else, cannot be written, or another process works on it
  */
 export function openRunFolder(folder: string, asked: RunAsked, force: boolean): RunFolder {
   const { runDigest } = asked;
   const state = stateOf(folder, asked);
   if (typeof state !== "string") {
     if (!force) throw state;
+    refuseHeld(path.join(folder, UNFINISHED));
     const movedTo = moveAside(folder);
     return { ...openRunFolder(folder, asked, false), movedTo };
   }
@@ -70,6 +74,7 @@ export function openRunFolder(folder: string, asked: RunAsked, force: boolean): 
     state,
     folder,
     unitsFolder: path.join(scratch, "units"),
+    learnedFile: path.join(scratch, "learned"),
     draft: (file) => path.join(scratch, "out", file),
     publish(files) {
       const ordered = [...files.filter((file) => file !== MANIFEST), MANIFEST];
@@ -84,8 +89,10 @@ export function openRunFolder(folder: string, asked: RunAsked, force: boolean): 
   try {
     makeFolder(run.unitsFolder);
     makeFolder(path.join(scratch, "out"));
+    lockFolder(scratch);
     writeFileSync(path.join(scratch, RUN_FILE), `${JSON.stringify({ runDigest })}\n`);
   } catch (cause) {
+    if (cause instanceof InputError) throw cause;
     throw new InputError(
       "this folder cannot be written",
       folder,
@@ -97,6 +104,12 @@ export function openRunFolder(folder: string, asked: RunAsked, force: boolean): 
     );
   }
   return run;
+}
+
+/** How much was left out, doubted or assumed by the finished run that a folder holds. */
+export function noticeCountOf(folder: string): number {
+  const { notices } = manifestSchema.parse(readJson(path.join(folder, MANIFEST)));
+  return notices.reduce((sum, { count }) => sum + count, 0);
 }
 
 /** True where a folder holds a run that has not come to its end. */
