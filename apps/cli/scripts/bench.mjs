@@ -2,6 +2,7 @@
 // What the steps from echo to rain cost: `npm run bench -- chain [--storm FOLDER]`, the demo's storm, made there once.
 // And the chain from echo to rain held against the truth: `npm run bench -- ablation [--worlds …] [--seeds …]`;
 // ways to adjust against the same truth: `npm run bench -- adjustment [--worlds …] [--seeds …]`;
+// p10 to p90 of depths against the same truth: `npm run bench -- coverage [--worlds …] [--seeds …]`;
 // verdicts on gauges against what was planted in them: `npm run bench -- faults [--worlds …] [--seeds …]`.
 import { spawnSync } from "node:child_process";
 import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from "node:fs";
@@ -18,7 +19,8 @@ const wanted = process.argv.slice(2);
 const ablation = wanted[0] === "ablation";
 const faults = wanted[0] === "faults";
 const adjustment = wanted[0] === "adjustment";
-const onWorlds = ablation || faults || adjustment;
+const coverage = wanted[0] === "coverage";
+const onWorlds = ablation || faults || adjustment || coverage;
 const asked = (name) => wanted.length === 0 || (!onWorlds && wanted.includes(name));
 for (const built of onWorlds ? [generator] : [program, generator]) {
   if (!existsSync(built))
@@ -108,6 +110,7 @@ const keptScans = {
 if (ablation) await (await bundled("apps/cli/bench/ablation.ts", [keptScans]))(wanted.slice(1), generator);
 if (faults) await (await bundled("apps/cli/bench/faults.ts"))(wanted.slice(1), generator);
 if (adjustment) await (await bundled("apps/cli/bench/adjustment.ts"))(wanted.slice(1), generator);
+if (coverage) await (await bundled("apps/cli/bench/coverage.ts"))(wanted.slice(1), generator);
 
 const median = (values) => values.toSorted((a, b) => a - b)[Math.floor(values.length / 2)];
 

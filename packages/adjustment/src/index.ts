@@ -47,6 +47,7 @@ export {
   intervalFactor,
   intervalLogDeviation,
   learnErrorInTime,
+  varianceOfMean,
 } from "./uncertainty/error-in-time.ts";
 export { drawMember, type ErrorMember, type MemberInput } from "./uncertainty/error-member.ts";
 export {
