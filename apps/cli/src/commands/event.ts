@@ -1,6 +1,7 @@
 import { InputError } from "@rainreckon/core";
 import type { Command } from "commander";
 import { addCommand, addSchemaFlag, printJson } from "../command.ts";
+import type { EventAsked } from "../event/event.ts";
 import { eventSchema } from "../event/schema.ts";
 import type { LonLat } from "../explain/places-asked.ts";
 import { flags } from "../options.ts";
@@ -25,6 +26,9 @@ interface EventFlags {
   readonly csv?: boolean;
   readonly html?: boolean;
   readonly out?: string;
+  readonly bundle?: string;
+  readonly licence?: readonly string[];
+  readonly preparedBy?: string;
 }
 
 const WORDS = `
@@ -53,6 +57,7 @@ export function registerEvent(program: Command): void {
       "rainreckon event run --catchment SM-01 --frequency ddf.csv --areal-reduction arf.csv",
       "rainreckon event run --assets assets.csv --frequency ddf.csv --html --out pages",
       'rainreckon event run --at "51.20N 4.10E" --durations 5,15,60 --json',
+      "rainreckon event run --asset PS-07 --frequency ddf.csv --bundle ps-07.tar.gz",
       "rainreckon event run --gauge saltwater/SW-03 --dry-time PT3H --threshold-mm 2",
     ],
   );
@@ -73,6 +78,9 @@ export function registerEvent(program: Command): void {
     flags.eventCsv(),
     flags.pages(),
     flags.pagesFolder(),
+    flags.bundleFile(),
+    flags.licence(),
+    flags.preparedBy(),
     flags.planOfRun(),
   ])
     command.addOption(option);
@@ -86,31 +94,51 @@ export function registerEvent(program: Command): void {
       });
     }
     const { eventsOfRun } = await import("../event/event.ts");
-    const outcome = await eventsOfRun(
-      folder,
-      {
-        catchments: options.catchment ?? [],
-        assets: options.asset ?? [],
-        gauges: options.gauge ?? [],
-        points: options.at ?? [],
-        assetsFile: options.assets,
-        frequencyFile: options.frequency,
-        arealReductionFile: options.arealReduction,
-        shownAs: options.asSeries,
-        dryTimeMs: options.dryTime,
-        thresholdMm: options.thresholdMm,
-        durationsMs: options.durations,
-        clockAligned: options.clockAligned === true,
-        fromGrid: options.fromGrid === true,
-        plan: options.plan,
-      },
-      terminal,
-    );
+    if ((options.html === true) !== (options.out !== undefined)) {
+      throw new InputError(
+        "--html and --out go together",
+        "command line, rainreckon event",
+        "add --html --out DIR",
+        { kind: "usage" },
+      );
+    }
+    if (options.bundle === undefined && (options.licence ?? options.preparedBy) !== undefined) {
+      throw new InputError(
+        "these words belong to a bundle",
+        "--licence, --prepared-by",
+        "add --bundle FILE",
+        {
+          kind: "usage",
+        },
+      );
+    }
+    const asked: EventAsked = {
+      catchments: options.catchment ?? [],
+      assets: options.asset ?? [],
+      gauges: options.gauge ?? [],
+      points: options.at ?? [],
+      assetsFile: options.assets,
+      frequencyFile: options.frequency,
+      arealReductionFile: options.arealReduction,
+      shownAs: options.asSeries,
+      dryTimeMs: options.dryTime,
+      thresholdMm: options.thresholdMm,
+      durationsMs: options.durations,
+      clockAligned: options.clockAligned === true,
+      fromGrid: options.fromGrid === true,
+      plan: options.plan,
+    };
+    const outcome = await eventsOfRun(folder, asked, terminal);
     const { report } = outcome;
     if (options.out !== undefined) {
       const { writePages } = await import("../event/pages.ts");
       const files = await writePages(outcome, options.out);
       terminal.note(`${counted(files.length, "page")} in ${options.out}: begin with ${files[0]}`);
+    }
+    if (options.bundle !== undefined) {
+      const { writeBundle } = await import("../event/bundle.ts");
+      const { bundle: file, licence: licences = [], preparedBy } = options;
+      await writeBundle(outcome, asked, { file, licences, preparedBy }, terminal);
     }
     if (options.csv === true) {
       const { eventCsv } = await import("../event/event-csv.ts");

@@ -42,7 +42,7 @@ export function eventDetails(event: EventAccount): string[] {
   return [
     ...(event.p10Mm === null || event.p90Mm === null
       ? []
-      : [`p10 to p90 ${depthText(event.p10Mm)} to ${depthText(event.p90Mm)} mm, at its widest`]),
+      : [`p10 to p90 ${depthText(event.p10Mm)} to ${depthText(event.p90Mm)} mm`]),
     `observed ${shareText(event.observedFraction)}`,
     ...(event.mayBeginEarlier ? ["may have begun before the window"] : []),
     ...(event.mayEndLater ? ["may go on after it"] : []),

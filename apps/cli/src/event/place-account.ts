@@ -14,7 +14,7 @@ import {
 } from "@rainreckon/accumulation";
 import { isoUtc } from "../ui/numbers.ts";
 import { comparisonNotes, type Frequency, periodOf } from "./frequency-told.ts";
-import { isLowerBound, type PlaceSeries } from "./place-series.ts";
+import { type DepthEnds, isLowerBound, NO_ENDS, type PlaceSeries } from "./place-series.ts";
 import type { EventAccount, Peak, PlaceReport } from "./schema.ts";
 
 const MINUTE_MS = 60_000;
@@ -80,7 +80,7 @@ function eventAccount(
     start: isoUtc(startEpochMs),
     end: isoUtc(endEpochMs),
     depthMm: event.depthMm,
-    ...intervalOf(place, steps),
+    ...place.rangeOf(steps, event.depthMm),
     observedFraction: event.observedFraction,
     lowerBound: isLowerBound(event),
     atCap: event.atCap,
@@ -106,7 +106,14 @@ function peaksOf(place: PlaceSeries, asked: AccountAsked, sharing?: StepRange): 
     if ("reason" in found) return noPeak(found, areaKm2);
     const range = stepsOf(best, found);
     const radar = depthOfSteps({ ...best, depthMm: place.radarMm }, range);
-    return peakOf(found, best, areaKm2, known(radar.depthMm), intervalOf(place, range), asked.frequency);
+    return peakOf(
+      found,
+      best,
+      areaKm2,
+      known(radar.depthMm),
+      place.rangeOf(range, found.depthMm),
+      asked.frequency,
+    );
   });
 }
 
@@ -116,7 +123,6 @@ function gaugeAccount(
   asked: AccountAsked,
 ): NonNullable<PlaceReport["gauge"]> {
   const whole = depthOfSteps(readings, { from: 0, to: readings.depthMm.length });
-  const none = { p10Mm: null, p90Mm: null };
   return {
     verdict,
     depthMm: known(whole.depthMm),
@@ -125,7 +131,7 @@ function gaugeAccount(
       // A gauge is a point: the least area that can be written is far below any table's.
       "reason" in found
         ? noPeak(found, POINT_KM2)
-        : { ...peakOf(found, readings, 0, null, none, asked.frequency), areaKm2: POINT_KM2 },
+        : { ...peakOf(found, readings, 0, null, NO_ENDS, asked.frequency), areaKm2: POINT_KM2 },
     ),
   };
 }
@@ -149,7 +155,7 @@ function peakOf(
   { stepMs }: RainSeries,
   areaKm2: number,
   radarMm: number | null,
-  interval: { readonly p10Mm: number | null; readonly p90Mm: number | null },
+  interval: DepthEnds,
   frequency: Frequency | undefined,
 ): Peak {
   const { durationMs, depthMm } = found;
@@ -199,23 +205,6 @@ function noPeak({ durationMs, reason }: NoMaximum, areaKm2: number): Peak {
 function stepsOf({ startEpochMs, stepMs }: RainSeries, found: DurationMaximum): StepRange {
   const from = Math.round((found.startEpochMs - startEpochMs) / stepMs);
   return { from, to: from + Math.round(found.durationMs / stepMs) };
-}
-
-/**
- * The interval of a sum of steps: the sum of their own ends, as if the errors of all steps went together. That is the
- * widest it can be; where a step with rain has none, there is none.
- */
-function intervalOf(
-  { best, p10Mm, p90Mm }: PlaceSeries,
-  { from, to }: StepRange,
-): { readonly p10Mm: number | null; readonly p90Mm: number | null } {
-  let [low, high] = [0, 0];
-  for (let k = from; k < to; k++) {
-    if (!(best.depthMm[k] > 0)) continue;
-    low += p10Mm[k];
-    high += p90Mm[k];
-  }
-  return Number.isNaN(low + high) ? { p10Mm: null, p90Mm: null } : { p10Mm: low, p90Mm: high };
 }
 
 function known(value: number): number | null {

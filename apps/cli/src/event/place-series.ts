@@ -1,6 +1,14 @@
-import type { RainSeries } from "@rainreckon/accumulation";
+import type { RainSeries, StepRange } from "@rainreckon/accumulation";
 import type { GaugeInput } from "../total/gauges.ts";
 import type { PlaceReport } from "./schema.ts";
+
+/** One in ten truths lies below the one, one in ten above the other. */
+export interface DepthEnds {
+  readonly p10Mm: number | null;
+  readonly p90Mm: number | null;
+}
+
+export const NO_ENDS: DepthEnds = { p10Mm: null, p90Mm: null };
 
 /** A place with its rain by steps, wherever the steps come from. */
 export interface PlaceSeries {
@@ -15,10 +23,10 @@ export interface PlaceSeries {
   readonly exact: boolean | null;
   /** The figure to use. */
   readonly best: RainSeries;
-  /** Shapes [steps]; NaN where not known. */
+  /** Shape [steps]; NaN where not known. */
   readonly radarMm: Float64Array;
-  readonly p10Mm: Float64Array;
-  readonly p90Mm: Float64Array;
+  /** How sure the depth of some steps is; all null where the run does not say. */
+  readonly rangeOf: (steps: StepRange, depthMm: number) => DepthEnds;
   readonly window: Omit<PlaceReport["window"], "lowerBound">;
   /** With its own readings, in the same steps. */
   readonly gauge:

@@ -2,6 +2,7 @@ import { mkdtempSync, rmSync } from "node:fs";
 import { tmpdir } from "node:os";
 import path from "node:path";
 import type { RainSeries } from "@rainreckon/accumulation";
+import type { Interval } from "@rainreckon/core";
 import { readTotals } from "@rainreckon/formats";
 import { gaugeSteps } from "@rainreckon/verification";
 import { type OpenedRun, openRun } from "../explain/open-run.ts";
@@ -11,10 +12,11 @@ import { cellAsArea, type PlacedAsset } from "../total/assets.ts";
 import { bestMm, type FigureSources, isAtCap, placeFigures } from "../total/figures.ts";
 import { rangeOf3x3 } from "../total/place-planes.ts";
 import type { PreparedRun } from "../total/prepare.ts";
+import { cellRange, learnUncertainty, type Uncertainty } from "../total/uncertainty.ts";
 import { progressBar } from "../ui/progress.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import { groupedBy } from "./grouped.ts";
-import type { PlaceSeries } from "./place-series.ts";
+import { type DepthEnds, NO_ENDS, type PlaceSeries } from "./place-series.ts";
 
 /** A point that the run holds no steps of. */
 export type NewPlace = PlacedAsset & Pick<PlaceSeries, "kind"> & { readonly gauge: AskedPoint["gauge"] };
@@ -57,12 +59,14 @@ export async function remadeSeries(
   const remade = await madeAgain(withPlaces(opened, places), terminal);
   const stored = await readTotals(opened.totalsFile, ["radar_total", "adjusted_total"]);
   const sources: FigureSources = { ...remade, run: remade.opened.run };
+  const { total, comparison, adjustedTotalMm } = remade;
+  const uncertainty = learnUncertainty(sources.run, total, comparison, adjustedTotalMm);
   const series: PlaceSeries[] = [];
   const figures = placeFigures(places, opened.run.catchments.length, sources);
   const perPlace = groupedBy(figures, ({ place }) => place);
   for (const place of places) {
     const own = perPlace.get(place) ?? [];
-    series.push(seriesOf(place, own, sources, remade, stored));
+    series.push(seriesOf(place, own, sources, remade, stored, uncertainty));
   }
   return { places: series, remarks: opened.remarks };
 }
@@ -95,6 +99,7 @@ function seriesOf(
   { run, total, adjustedTotalMm, comparison }: FigureSources,
   remade: RemadeRun,
   stored: ReadonlyMap<string, Float32Array>,
+  uncertainty: Uncertainty,
 ): PlaceSeries {
   const count = run.steps.length;
   const startEpochMs = run.window.startEpochMs;
@@ -115,8 +120,7 @@ function seriesOf(
         radarMm: known(figure.radarMm),
         adjustedMm: known(figure.adjustedMm),
         gaugesOnlyMm: known(figure.gaugesOnlyMm),
-        p10Mm: null,
-        p90Mm: null,
+        ...endsOf(uncertainty, place.cell, bestMm(figure)),
         observedFraction: figure.observedFraction,
         atCap: isAtCap(figure),
         volumeM3: null,
@@ -148,8 +152,11 @@ function seriesOf(
     exact: same("radar_total", remade.total.planes.totalMm) && same("adjusted_total", remade.adjustedTotalMm),
     best,
     radarMm,
-    p10Mm: new Float64Array(count).fill(Number.NaN),
-    p90Mm: new Float64Array(count).fill(Number.NaN),
+    rangeOf: ({ from, to }, depthMm) =>
+      endsOf(uncertainty, place.cell, depthMm, {
+        startEpochMs: startEpochMs + from * run.stepMs,
+        endEpochMs: startEpochMs + to * run.stepMs,
+      }),
     window,
     gauge:
       place.gauge === undefined
@@ -164,6 +171,13 @@ function seriesOf(
           },
     notes: [],
   };
+}
+
+/** The range of a depth at a cell, of the window or of a span of it. */
+function endsOf(uncertainty: Uncertainty, cell: number, depthMm: number, span?: Interval): DepthEnds {
+  if (!uncertainty.known) return NO_ENDS;
+  const { p10Mm, p90Mm } = cellRange(uncertainty, cell, depthMm, span);
+  return Number.isNaN(p10Mm + p90Mm) ? NO_ENDS : { p10Mm, p90Mm };
 }
 
 function known(value: number): number | null {

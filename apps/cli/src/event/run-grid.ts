@@ -7,7 +7,7 @@ import type { FinishedRun } from "../export/finished-run.ts";
 import type { PlacedAsset } from "../total/assets.ts";
 import { rangeOf3x3 } from "../total/place-planes.ts";
 import { gridMap } from "../total/prepare.ts";
-import type { PlaceSeries } from "./place-series.ts";
+import { NO_ENDS, type PlaceSeries } from "./place-series.ts";
 
 /** Most values of depths on a grid that are held at once. */
 const MOST_VALUES = 400_000_000;
@@ -94,7 +94,6 @@ export function gridSeries(
     observedFraction: depthMm.map((mm) => (Number.isNaN(mm) ? 0 : observed)),
     atCap: Uint8Array.from(depthMm, (mm) => (atCap && mm > 0 ? 1 : 0)),
   };
-  const none = depthMm.map(() => Number.NaN);
   const known = (mm: number) => (Number.isNaN(mm) ? null : mm);
   return {
     kind: place.kind,
@@ -108,8 +107,7 @@ export function gridSeries(
     exact: null,
     best,
     radarMm: Float64Array.from(radarMm, (layer) => layer[cell] as number),
-    p10Mm: none,
-    p90Mm: none,
+    rangeOf: () => NO_ENDS,
     window: {
       depthMm: known(totalMm[cell]),
       radarMm: known(radarTotalMm[cell]),

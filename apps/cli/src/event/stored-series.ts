@@ -5,6 +5,7 @@ import { type FinishedRun, numberOf, tableOf } from "../export/finished-run.ts";
 import { nearest } from "../text/nearest.ts";
 import { groupedBy } from "./grouped.ts";
 import type { PlaceSeries } from "./place-series.ts";
+import { storedRange } from "./stored-range.ts";
 
 type Row = Readonly<Record<string, string>>;
 
@@ -76,6 +77,11 @@ function seriesOfRows(
   const least = known(window?.min_3x3_mm);
   const most = known(window?.max_3x3_mm);
   const areaKm2 = kind === "catchment" ? numberOf(window?.area_km2) : plan.grid.cellM ** 2 / 1e6;
+  const windowEnds = {
+    depthMm: numberOf(window?.depth_observed_mm),
+    p10Mm: numberOf(window?.p10_mm),
+    p90Mm: numberOf(window?.p90_mm),
+  };
   const best: RainSeries = { startEpochMs, stepMs, depthMm, observedFraction, atCap };
   return {
     kind,
@@ -89,8 +95,7 @@ function seriesOfRows(
     exact: null,
     best,
     radarMm,
-    p10Mm,
-    p90Mm,
+    rangeOf: storedRange(best, { p10Mm, p90Mm }, windowEnds),
     window: {
       depthMm: known(window?.depth_observed_mm),
       radarMm: known(window?.radar_mm),

@@ -8,12 +8,9 @@ export interface ChangedSetting {
   readonly defaultValue: string;
 }
 
-/**
- * Settings of a plan that differ from what they would be had nobody written them.
- * Values that have no default (title, window, files, grid …) are not settings in this sense.
- */
-export function changedSettings(plan: Plan): ChangedSetting[] {
-  const bare = planSchema.parse({
+/** What a plan would be had nobody written any setting: what has no default (title, window, files, grid …) stays. */
+function bareOf(plan: Plan): Plan {
+  return planSchema.parse({
     title: plan.title,
     window: { from: plan.window.from, to: plan.window.to },
     scans: plan.scans,
@@ -32,6 +29,43 @@ export function changedSettings(plan: Plan): ChangedSetting[] {
     })),
     grid: plan.grid,
   });
+}
+
+/**
+ * A plan with all settings at their defaults, over the same window, places, gauges and files. What files and sites are
+ * like is no setting: it stays.
+ */
+export function standardPlan(plan: Plan): Plan {
+  const bare = bareOf(plan);
+  const { reference, author, status, window, gauges, catchments, assets } = plan;
+  const { terrain } = plan.echo.blockage;
+  return {
+    ...bare,
+    reference,
+    author,
+    status,
+    window,
+    gauges,
+    radars: bare.radars.map((radar, k) => ({ ...plan.radars[k], ...radar })),
+    grids: bare.grids.map(({ medianStepMinutes: _, maxGapMinutes: __, ...grids }, k) => ({
+      ...plan.grids[k],
+      ...grids,
+    })),
+    echo: {
+      ...bare.echo,
+      blockage: { ...bare.echo.blockage, ...(terrain === undefined ? {} : { terrain }) },
+    },
+    ...(catchments === undefined ? {} : { catchments }),
+    ...(assets === undefined ? {} : { assets }),
+  };
+}
+
+/**
+ * Settings of a plan that differ from what they would be had nobody written them.
+ * Values that have no default (title, window, files, grid …) are not settings in this sense.
+ */
+export function changedSettings(plan: Plan): ChangedSetting[] {
+  const bare = bareOf(plan);
   const changed: ChangedSetting[] = [];
   const walk = (value: unknown, standard: unknown, path: string): void => {
     if (standard === undefined) return;

@@ -14,5 +14,6 @@ export type { MapReference } from "./map-reference.ts";
 export { createTotalsFile, type TotalsFile, type TotalsSpec } from "./netcdf.ts";
 export { type ParquetColumn, writeParquet } from "./parquet.ts";
 export { openTotalsLayers, readTotals, type TotalsLayers } from "./read-totals.ts";
+export { type ArchiveEntry, writeTarGz } from "./tar.ts";
 export { sha256OfFile, writeText } from "./text.ts";
 export { TOTALS_VARIABLES, type TotalsVariable } from "./totals-variables.ts";
