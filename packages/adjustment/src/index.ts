@@ -48,7 +48,6 @@ export {
   intervalLogDeviation,
   learnErrorInTime,
   varianceOfMean,
-  varianceOfMean,
 } from "./uncertainty/error-in-time.ts";
 export { drawMember, type ErrorMember, type MemberInput } from "./uncertainty/error-member.ts";
 export {
