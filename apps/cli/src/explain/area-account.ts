@@ -1,5 +1,6 @@
 import { bestMm, catchmentFigures, type PlaceFigure } from "../total/figures.ts";
 import { sourceIds } from "../total/job.ts";
+import { areaRanges } from "../total/uncertainty.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import type { AdjustedBy } from "./adjusted-by.ts";
 import type { AreaTracer } from "./area-tracer.ts";
@@ -7,6 +8,7 @@ import { finite } from "./gate-account.ts";
 import type { AskedArea } from "./places-asked.ts";
 import { isInside, type RemadeRun, spanText } from "./remade-run.ts";
 import type { AreaAccount } from "./schema.ts";
+import { sureOf } from "./sure.ts";
 
 /** Decimals of the depths in catchments.csv. */
 const STORED_DECIMALS = 3;
@@ -66,6 +68,9 @@ export function areaAccount(
       spanRadarMm: runningMm,
       depthObservedMm: finite(depthObservedMm),
       storedDepthObservedMm: storedDepth,
+      sure: sureOf(
+        remade.uncertainty.known ? areaRanges(run, remade.uncertainty, catchment.cells).window : undefined,
+      ),
       exact:
         asWritten(depthObservedMm) === storedDepth &&
         steps.every(

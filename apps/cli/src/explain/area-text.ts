@@ -2,6 +2,7 @@ import { displayText } from "@rainreckon/formats";
 import { decimals, fixedDecimals } from "../ui/numbers.ts";
 import { textTable } from "../ui/table.ts";
 import type { AreaAccount, Explanation } from "./schema.ts";
+import { sureLines } from "./sure.ts";
 import { adjustmentLines, CHAIN, clockOf, headLines, right } from "./text-words.ts";
 
 /** Rows of scans and of steps that are shown. */
@@ -101,6 +102,7 @@ export function areaText(area: AreaAccount, explanation: Explanation): string {
     "",
     "The end: the window's row of catchments.csv",
     `  radar ${fixedDecimals(end.radarMm, 3)} mm${end.adjustedMm === null ? "" : `, adjusted ${fixedDecimals(end.adjustedMm, 3)} mm`}; stored ${end.storedDepthObservedMm ?? "–"} mm`,
+    ...sureLines(end.sure),
     end.exact
       ? "  The same to the last digit written: the account ends on what is stored."
       : "  NOT THE SAME: this account does not end on what is stored.",

@@ -1,5 +1,6 @@
 import { cellCentre, gaugeKey, type Interval } from "@rainreckon/core";
 import { gaugeDepth } from "@rainreckon/verification";
+import { cellRange } from "../total/uncertainty.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import type { AdjustedBy } from "./adjusted-by.ts";
 import type { CellAccount, MetScan } from "./cell-tracer.ts";
@@ -7,6 +8,7 @@ import { finite } from "./gate-account.ts";
 import type { AskedPoint } from "./places-asked.ts";
 import { isInside, type RemadeRun, spanText } from "./remade-run.ts";
 import type { PartAccount, PointAccount } from "./schema.ts";
+import { sureOf } from "./sure.ts";
 
 /** The account of one cell: what a run told of it, cut to the span, with what DIR holds beside it. */
 export function pointAccount(
@@ -149,6 +151,11 @@ function endOf(
     ...figures,
     partsMm: met.parts.length === 0 ? null : Math.fround(sumOf(byInterval)),
     spanRadarMm: inSpan.length === 0 ? null : sumOf(inSpan.map(({ depthMm }) => depthMm)),
+    sure: sureOf(
+      remade.uncertainty.known
+        ? cellRange(remade.uncertainty, cell, remade.uncertainty.totalMm[cell] ?? Number.NaN)
+        : undefined,
+    ),
     exact:
       figures.radarMm === figures.storedRadarMm &&
       figures.adjustedMm === figures.storedAdjustedMm &&

@@ -3,6 +3,7 @@ import { displayText } from "@rainreckon/formats";
 import { decimals, fixedDecimals, placeText } from "../ui/numbers.ts";
 import { textTable } from "../ui/table.ts";
 import type { Explanation, PartAccount, PointAccount, ScanAccount } from "./schema.ts";
+import { sureLines } from "./sure.ts";
 import { adjustmentLines, CHAIN, clockOf, headLines, instant, range, right } from "./text-words.ts";
 
 /** Scans shown in full; of more, the first, the last and those that add most. */
@@ -224,6 +225,7 @@ function endLines({
   partsMm,
   adjustedMm,
   storedAdjustedMm,
+  sure,
   exact,
   what,
 }: PointAccount["end"]): string[] {
@@ -235,6 +237,7 @@ function endLines({
     ...(adjustedMm === null && storedAdjustedMm === null
       ? []
       : [`  adjusted  ${full(adjustedMm)}; stored ${full(storedAdjustedMm)}`]),
+    ...sureLines(sure),
     exact
       ? "  The same to the last bit: the account ends on what is stored."
       : "  NOT THE SAME: this account does not end on what is stored.",

@@ -5,6 +5,7 @@ import { type AssembledRun, assemble } from "../total/assemble.ts";
 import type { UnitTrace } from "../total/job.ts";
 import type { PreparedRun } from "../total/prepare.ts";
 import { runUnit } from "../total/run-unit.ts";
+import { learnUncertainty, type Uncertainty } from "../total/uncertainty.ts";
 import { unitStore } from "../total/unit-store.ts";
 import { isoUtc } from "../ui/numbers.ts";
 import { progressBar } from "../ui/progress.ts";
@@ -19,6 +20,7 @@ export interface RemadeRun {
   readonly comparison: Comparison;
   /** Shape [cells]; undefined where there is no adjustment. */
   readonly adjustedTotalMm: Float32Array | undefined;
+  readonly uncertainty: Uncertainty;
   /** Shape [intervals][cells]: adjusted depth at some cells, by flat index. */
   readonly adjustedAt: (interval: number, cell: number) => number;
   /** Radar depth of an interval at a cell, as the units leave it. */
@@ -65,12 +67,14 @@ export async function remake(
   const adjusted: Float32Array[] = [];
   if (adjustment.applied)
     for (const depthMm of adjustedIntervals(lean, total, adjustment, store)) adjusted.push(pick(depthMm));
+  const adjustedTotalMm = adjustment.applied ? sumAdjusted(lean, total, adjustment, store) : undefined;
   return {
     opened: { ...opened, run: lean },
     span,
     total,
     comparison,
-    adjustedTotalMm: adjustment.applied ? sumAdjusted(lean, total, adjustment, store) : undefined,
+    adjustedTotalMm,
+    uncertainty: learnUncertainty(lean, total, comparison, adjustedTotalMm),
     adjustedAt: at(adjusted),
     radarAt: at(radar),
     stored,

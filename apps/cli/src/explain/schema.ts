@@ -104,6 +104,11 @@ const intervalSchema = z.strictObject({
   gaugeMm: known,
 });
 
+const sureSchema = z
+  .strictObject({ standardErrorMm: z.number(), p10Mm: z.number(), p90Mm: z.number() })
+  .nullable()
+  .describe("how sure the figure to use is; null where nothing tells");
+
 const endSchema = z.strictObject({
   what: z.string().describe("the figure that the account ends on"),
   radarMm: known,
@@ -112,6 +117,7 @@ const endSchema = z.strictObject({
   spanRadarMm: known.describe("radar depth of the span that is accounted for"),
   adjustedMm: known,
   storedAdjustedMm: known,
+  sure: sureSchema,
   exact: z.boolean().describe("every figure made again is the stored one to the last bit"),
 });
 
@@ -218,6 +224,7 @@ const areaSchema = z.strictObject({
     spanRadarMm: z.number().describe("radar depth of the span that is accounted for"),
     depthObservedMm: known.describe("the figure to use, from the part observed"),
     storedDepthObservedMm: z.string().nullable().describe("depth_observed_mm of catchments.csv, as written"),
+    sure: sureSchema,
     exact: z.boolean(),
   }),
   adjustment: adjustmentSchema,

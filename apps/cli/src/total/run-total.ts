@@ -37,7 +37,7 @@ import { type OverrideEffect, overrideCautions, overrideEffects } from "./overri
 import { type PreparedRun, prepareRun } from "./prepare.ts";
 import { reportInput } from "./report-input.ts";
 import { MANIFEST, MEMBERS_LEFT_OUT, noticeCountOf, openRunFolder, RUN_LOG } from "./run-folder.ts";
-import { learnUncertainty } from "./uncertainty.ts";
+import { areaRanges, learnUncertainty } from "./uncertainty.ts";
 import { workUnits } from "./work.ts";
 
 export interface TotalOptions {
@@ -218,7 +218,7 @@ function seconds(ms: number): number {
 }
 
 async function manifestOf(
-  { run, total, comparison, adjustedTotalMm, draft, cautions }: OutputSources,
+  { run, total, comparison, adjustedTotalMm, uncertainty, draft, cautions }: OutputSources,
   files: readonly string[],
   notices: readonly Manifest["notices"][number][],
   district: ArealFigure,
@@ -235,6 +235,10 @@ async function manifestOf(
   const known = (value: number): number | null => (Number.isFinite(value) ? value : null);
   const { adjustment } = comparison;
   const sources = { run, total, comparison, adjustedTotalMm };
+  const boundsOf = (area: PreparedRun["district"]) => {
+    const range = uncertainty.known ? areaRanges(run, uncertainty, area).window : undefined;
+    return { p10Mm: known(range?.p10Mm ?? Number.NaN), p90Mm: known(range?.p90Mm ?? Number.NaN) };
+  };
   return {
     format: "rainreckon-manifest-1",
     version: version(),
@@ -272,6 +276,7 @@ async function manifestOf(
       districtMm: known(bestMm(district)),
       districtRadarMm: known(district.radarMm),
       districtAdjustedMm: known(district.adjustedMm),
+      ...boundsOf(run.district),
       observedFraction: district.observedFraction,
       cappedFraction: district.cappedFraction,
       factorGaugeOverRadar: known(adjustment.applied ? adjustment.factor : Number.NaN),
@@ -292,6 +297,7 @@ async function manifestOf(
           id: catchment.id,
           name: catchment.name,
           mm: known(bestMm(figure)),
+          ...boundsOf(catchment.cells),
           observedFraction: figure.observedFraction,
         };
       }),

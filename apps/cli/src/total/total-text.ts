@@ -36,7 +36,11 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
   const place = run.catchments.length > 0 ? "all catchments together" : "the whole map";
   const minutesSeen = Math.round((observed * (endEpochMs - startEpochMs)) / 6000) / 10;
   const minutes = Math.round((endEpochMs - startEpochMs) / 60_000);
-  const catchments = headline.catchments as { name: string; mm: number | null; observedFraction: number }[];
+  const catchments = headline.catchments as (Bounds & {
+    readonly name: string;
+    readonly mm: number | null;
+    readonly observedFraction: number;
+  })[];
   const width = Math.max(0, ...catchments.map(({ name }) => displayText(name).length));
   const error =
     headline.crossValidatedErrorMm === null
@@ -54,12 +58,12 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
     terminal.strong(
       headline.districtMm === null
         ? `no depth: nothing of ${place} was observed`
-        : `${atLeast}${depthText(headline.districtMm as number)} mm over ${place} (${basis})`,
+        : `${atLeast}${depthText(headline.districtMm as number)} mm${atLeast === "" ? boundsText(headline as unknown as Bounds) : ""} over ${place} (${basis})`,
     ),
     `  observed ${minutesSeen} of ${minutes} minutes on average (${fixedDecimals(100 * observed, 0)} %)`,
     ...catchments.map(
-      ({ name, mm, observedFraction }) =>
-        `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${depthText(mm).padStart(6)} mm`,
+      ({ name, mm, observedFraction, ...bounds }) =>
+        `  ${displayText(name).padEnd(width)}  ${observedFraction < minObserved ? "≥" : " "}${depthText(mm).padStart(6)} mm${observedFraction < minObserved ? "" : boundsText(bounds)}`,
     ),
     "",
     counts.gauges === 0
@@ -78,6 +82,18 @@ export function totalText(outcome: TotalOutcome, folder: string, terminal: Termi
       ? [`(${counted(outcome.resumedUnits, "unit")} of work was there from before)`]
       : []),
   ].join("\n");
+}
+
+/** Bounds of a headline figure; null where nothing tells. */
+interface Bounds {
+  readonly p10Mm: number | null;
+  readonly p90Mm: number | null;
+}
+
+/** Eight chances in ten lie between p10 and p90. */
+function boundsText({ p10Mm, p90Mm }: Bounds): string {
+  if (p10Mm === null || p90Mm === null) return "";
+  return ` (p10–p90 ${depthText(p10Mm)}–${depthText(p90Mm)})`;
 }
 
 /** What was done to the echo, in one line; nothing where nothing was. */
