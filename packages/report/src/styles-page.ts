@@ -7,8 +7,8 @@ button:not(:disabled):hover{border-color:var(--accent);color:var(--accent)}
 .page-tools legend{float:left;padding:0;margin-right:12px}
 .page-tools label{display:flex;align-items:center;gap:5px;min-height:26px}
 .page-tools input{margin:0;accent-color:var(--accent)}
-.map-block>.more-layers{margin-right:4px}
-.map-block>select{font-size:.9rem}
+.choice{display:inline-flex;align-items:center;gap:6px;margin:0 18px 2px 0;font-size:.9rem;max-width:100%}
+.choice input{margin:0;accent-color:var(--accent)}
 .map-stage{position:relative;touch-action:pan-y;cursor:crosshair;border-radius:4px}
 .map-stage svg.map{position:relative}
 .map-stage svg *,svg.scatter text{pointer-events:none}
@@ -65,5 +65,5 @@ svg.scatter [data-place]{cursor:pointer}
 [aria-sort=ascending] .sort-sign::after{content:"\\2191";opacity:1}
 [aria-sort=descending] .sort-sign::after{content:"\\2193";opacity:1}
 @media (min-width:1081px){.scripted .places-legend{columns:2;column-gap:16px}.scripted .map-side>p{margin-bottom:0}.scripted .map-body{grid-template-columns:minmax(0,1fr) 392px;grid-template-rows:auto auto auto}.scripted .map-sheet{grid-row:1/3}.scripted .place-panel{grid-column:2;grid-row:2/4}.scripted .place-rain{grid-column:1;grid-row:3}}
-@media (max-width:560px){.page-tools{justify-content:flex-start;margin-top:-6px}.page-tools fieldset{flex:1 0 100%}.map-block>select{display:block;width:100%;margin-top:4px}.map-block>.more-layers{margin:6px 0 0}.place-facts div{grid-template-columns:1fr;gap:0}.readout{padding:0 6px}.time-bar{padding:8px 6px}}
-@media print{.page-tools,.time-bar button,.time-bar input,.hint,.finder,.place-head button,.table-tools,.sort-sign,.map-cursor,.map-tip,.readout,.map-block>select,.place-rain details{display:none}.time-bar{border:0;margin:0;padding:2pt 0 0}.place-panel{break-inside:avoid;margin-top:6pt}.place-panel:not(:has(.place-head)){display:none}.place-panel,.place-rain{grid-column:1/-1!important;grid-row:auto!important}.place-rain{break-inside:avoid;margin-top:6pt}.sort{display:contents}.time-words{font-size:8.5pt}.series-words{min-height:0}.live-legend ul{columns:1}.live-legend li{font-size:7.5pt;line-height:1.35;gap:5pt}.place-facts{font-size:8.5pt}}`;
+@media (max-width:560px){.page-tools{justify-content:flex-start;margin-top:-6px}.page-tools fieldset{flex:1 0 100%}.choice{display:flex;min-height:28px;flex-wrap:wrap}.choice select{flex:1 1 100%}.place-facts div{grid-template-columns:1fr;gap:0}.readout{padding:0 6px}.time-bar{padding:8px 6px}}
+@media print{.page-tools,.time-bar button,.time-bar input,.hint,.finder,.place-head button,.table-tools,.sort-sign,.map-cursor,.map-tip,.readout,.choice,.place-rain details{display:none}.time-bar{border:0;margin:0;padding:2pt 0 0}.place-panel{break-inside:avoid;margin-top:6pt}.place-panel:not(:has(.place-head)){display:none}.place-panel,.place-rain{grid-column:1/-1!important;grid-row:auto!important}.place-rain{break-inside:avoid;margin-top:6pt}.sort{display:contents}.time-words{font-size:8.5pt}.series-words{min-height:0}.live-legend ul{columns:1}.live-legend li{font-size:7.5pt;line-height:1.35;gap:5pt}.place-facts{font-size:8.5pt}}`;

@@ -287,7 +287,7 @@ describe.skipIf(!BROWSER_WANTED)("the living page in Chromium (skipped without R
     expect(await words(page.locator(".live-legend h3"))).toBe("Adjusted totalin");
     expect(await words(readout)).toMatch(/Adjusted total: 1\.\d\d in/);
     expect(await words(page.locator(".place-panel"))).toContain("1.52 in (at cap)");
-    expect(await words(page.locator(".place-rain"))).toContain("in in 5 minutes");
+    expect(await words(page.locator(".place-rain"))).toContain("in per 5 minutes");
     // What is left says how the page holds its numbers, and what a millimetre is.
     const left = (await words(page.locator("main"))).replace("by steps of 0.1 mm", "");
     expect(left).not.toMatch(/\d mm(?! is one litre)\b/);

@@ -18,6 +18,11 @@ export function layerControls(data: PageData, store: Store): void {
     list.append(el("optgroup", { label: group }, ...options));
   }
   for (const [at, input] of buttons.entries()) {
+    // Without script they must stand beside the map, as its siblings; with it a button keeps to its words.
+    const words = need(`label[for=${input.id}]`, block);
+    const pair = el("span", { class: "choice" });
+    input.before(pair);
+    pair.append(input, words);
     input.addEventListener("change", () => {
       if (input.checked) store.set({ layer: main[at] });
     });
@@ -26,10 +31,8 @@ export function layerControls(data: PageData, store: Store): void {
     if (list.value !== "") store.set({ layer: Number(list.value) });
   });
   if (groups.length > 0) {
-    need(".map-body", block).before(
-      el("label", { for: "more-layers", class: "more-layers" }, "More layers "),
-      list,
-    );
+    const label = el("label", { for: "more-layers" }, "More layers");
+    need(".map-body", block).before(el("span", { class: "choice" }, label, list));
   }
   const show = ({ layer }: Choice) => {
     for (const [at, input] of buttons.entries()) input.checked = main[at] === layer;

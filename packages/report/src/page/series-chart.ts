@@ -62,7 +62,7 @@ export function seriesChart(series: PageSeries, settings: ChartSettings): Series
     "svg",
     { class: "chart series", viewBox: `0 0 ${width} ${HEIGHT}`, "aria-hidden": "true" },
     ...bands,
-    axis(yDepth, deepest * 1.05, TOP, `${unit} in ${minutes} minutes`, width),
+    axis(yDepth, deepest * 1.05, TOP, `${unit} per ${minutes} minutes`, width),
     axis(ySum, highest * 1.05, SUMS_TOP, `${unit} since the start`, width),
     svg(
       "g",
