@@ -216,6 +216,7 @@ export {
   type GateRatesOfSweep,
   gateRateAccount,
   gateRates,
+  gateRatesUnder,
   RATE_METHODS,
   type RateCounts,
   type RateMethod,

@@ -1,4 +1,4 @@
-import type { CellLookup, GateRates } from "./rate-layer.ts";
+import type { CellLookup, GateRates, VariantRates } from "./rate-layer.ts";
 
 // From gates to cells. Each loop is a function of its own over plain arrays: it runs for every sweep, and is compiled
 // early and once.
@@ -76,7 +76,7 @@ export function gatherCapped(
  */
 export function gatherVariant(
   { cells, start, gates }: CellLookup,
-  { codes, rateMmPerHour }: GateRates,
+  { codes, rateMmPerHour }: VariantRates,
   { own, count }: OwnCells,
   rate: Float32Array,
   dryTogether: boolean,

@@ -26,6 +26,7 @@ export {
   type GateRates,
   type RateLayer,
   RateLayerBuilder,
+  type VariantRates,
 } from "./rate-layer.ts";
 export { type SiteCells, siteCells } from "./site-cells.ts";
 export {

@@ -61,6 +61,20 @@ describe("RateLayerBuilder", () => {
     expect(builder.finish().rateMmPerHour[0]).toBeCloseTo(25.68, 2);
   });
 
+  test("gates asked for under other relations are those of headline cells that nobody has spoken for", () => {
+    const low = lookupOf([[0, 1], [2], [3], []], 300);
+    const high = lookupOf([[0], [1, 2], [2], [4]], 900);
+    const headline = new RateLayerBuilder(4, Int32Array.of(1, 3), 1);
+    expect([...headline.headlineGates(low)]).toEqual([2]);
+    const all = new RateLayerBuilder(4, Int32Array.of(0, 1, 2, 3), 1);
+    expect([...all.headlineGates(low)]).toEqual([0, 1, 2, 3]);
+    for (const builder of [headline, all]) {
+      builder.add(low, perGate([1, 2, Number.NaN, 4]), [perGate([1, 2, Number.NaN, 4])], 0);
+    }
+    expect([...headline.headlineGates(high)]).toEqual([1, 2, 4]);
+    expect([...all.headlineGates(high)]).toEqual([1, 2, 4]);
+  });
+
   test("the lowest sweep that observed speaks; the next fills only what is still not observed", () => {
     const builder = new RateLayerBuilder(3, new Int32Array(), 0);
     const low = lookupOf([[0], [1], []], 300);

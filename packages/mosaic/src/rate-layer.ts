@@ -61,6 +61,9 @@ export interface GateRates {
   readonly companions?: readonly (Float32Array | undefined)[] | undefined;
 }
 
+/** Gate values under another relation; only its rates are asked for. */
+export type VariantRates = Pick<GateRates, "codes" | "rateMmPerHour">;
+
 /** Rain rate of one radar in one round, on the grid. Shapes [ny * nx] unless said otherwise. */
 export interface RateLayer {
   /** Mid-times of the sweeps that spoke: a cell's instant is sweepMidEpochMs[slot[cell]]. */
@@ -139,14 +142,28 @@ export class RateLayerBuilder {
     return false;
   }
 
+  /** Gates of a sweep that may be asked for under other relations: those of the headline's cells that nobody has spoken for. */
+  headlineGates({ cells, start, gates }: CellLookup): Int32Array {
+    const asked = new Int32Array(gates.length);
+    let count = 0;
+    for (let at = 0; at < cells.length; at++) {
+      const cell = cells[at];
+      const isHeadline = this.#headlineAt === undefined || this.#headlineAt[cell] >= 0;
+      if (!isHeadline || !Number.isNaN(this.#rate[cell])) continue;
+      for (let k = start[at]; k < start[at + 1]; k++) asked[count++] = gates[k];
+    }
+    return asked.subarray(0, count);
+  }
+
   /**
    * Adds a sweep; sweeps come in ascending elevation.
    *
    * @param gates - its gate values under the relation in use
-   * @param variants - its gate values under each other relation, same coding; a gate speaks under all or under none
+   * @param variants - its gate values under each other relation, same coding; a gate speaks under all or under none.
+   *   Only those of {@link headlineGates} are looked at
    * @returns number of cells it speaks for
    */
-  add(lookup: CellLookup, gates: GateRates, variants: readonly GateRates[], midEpochMs: number): number {
+  add(lookup: CellLookup, gates: GateRates, variants: readonly VariantRates[], midEpochMs: number): number {
     const slotIndex = this.#mids.length;
     const rate = this.#rate;
     if (this.#room.length < lookup.cells.length) this.#room = new Int32Array(lookup.cells.length);

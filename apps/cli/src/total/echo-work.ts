@@ -2,9 +2,9 @@ import {
   EchoChain,
   firstScreenOf,
   type GateRateSettings,
-  type GateRatesOfSweep,
   gateRate,
   gateRates,
+  gateRatesUnder,
   type MeasuredEcho,
   markBit,
   type PolarEcho,
@@ -16,7 +16,13 @@ import {
   SCREENS,
   type ZrRelation,
 } from "@rainreckon/core";
-import { type GateRates, type PolarLookup, rainTypeOfGates, trustIn } from "@rainreckon/mosaic";
+import {
+  type GateRates,
+  type PolarLookup,
+  rainTypeOfGates,
+  trustIn,
+  type VariantRates,
+} from "@rainreckon/mosaic";
 import { COMPANIONS, companionIndex, tollName } from "./companions.ts";
 import type { JobEcho, JobRadar, RatesMade, UnitCounts } from "./job.ts";
 import type { LayerShape } from "./round-layers.ts";
@@ -24,7 +30,7 @@ import type { LayerShape } from "./round-layers.ts";
 /** What a worked sweep says, by gate: under the relation in use, and under each other one. */
 export interface WorkedRain {
   readonly gates: GateRates;
-  readonly others: readonly GateRates[];
+  readonly others: readonly VariantRates[];
   readonly made: RatesMade;
 }
 
@@ -57,23 +63,29 @@ export class EchoWork {
   /**
    * @param echo - is worked on in place
    * @param above - the sweep above, as measured
+   * @param headlineGates - those that are asked for under other relations
    */
   rain(
     echo: PolarEcho,
     above: MeasuredEcho | undefined,
     lookup: PolarLookup,
     relation: ZrRelation,
+    headlineGates: Int32Array,
   ): WorkedRain {
     const { grid, variants } = this.#shape;
     this.#chain.correct(echo, above);
     const type = this.#echo.rainType ? rainTypeOfGates(lookup, grid, echo.dbz) : undefined;
     this.#chain.bringDown(echo, type);
-    const { rateMmPerHour, capped, method, ...factors } = this.#rates(echo, type, relation, true);
+    const inUse = this.#method(relation, echo.header.wavelengthM, true);
+    const { rateMmPerHour, capped, method, compared, ...factors } = gateRates(
+      echo,
+      type,
+      inUse.settings,
+      inUse.tables,
+    );
     const companions = this.#companions(echo, relation);
-    const trust = trustOf(echo);
-    const beside = { codes: undefined, trust };
     return {
-      gates: { rateMmPerHour, capped, ...beside, companions },
+      gates: { codes: undefined, rateMmPerHour, capped, trust: trustOf(echo), companions },
       made: {
         method,
         dropSizeFactor: factors.dropSizeFactor,
@@ -82,9 +94,10 @@ export class EchoWork {
       },
       others: variants.map((variant) => {
         // The relation in use is mostly one of those that the headline is asked under.
-        if (this.#isAlone && sameRelation(variant, relation)) return { rateMmPerHour, capped, ...beside };
-        const other = this.#rates(echo, type, variant, false);
-        return { rateMmPerHour: other.rateMmPerHour, capped: other.capped, ...beside };
+        if (this.#isAlone && sameRelation(variant, relation)) return { codes: undefined, rateMmPerHour };
+        const { settings, tables } = this.#method(variant, echo.header.wavelengthM, false);
+        const other = gateRatesUnder(echo, type, settings, tables, headlineGates, compared);
+        return { codes: undefined, rateMmPerHour: other };
       }),
     };
   }
@@ -120,14 +133,13 @@ export class EchoWork {
     return { relation, cap: resolveCap(cap, relation), minRateMmPerHour, offsetDb: 0 };
   }
 
-  #rates(
-    echo: PolarEcho,
-    type: Uint8Array | undefined,
+  /** How echo becomes rain under a relation. */
+  #method(
     relation: ZrRelation,
+    wavelengthM: number | undefined,
     isInUse: boolean,
-  ): GateRatesOfSweep {
+  ): { readonly settings: GateRateSettings; readonly tables: RateTables } {
     const { a, b, phase } = relation;
-    const { wavelengthM } = echo.header;
     const key = [a, b, phase, wavelengthM, isInUse].join();
     const { cap, minRateMmPerHour } = this.#radar;
     const { convective, stratiform, polarimetric } = this.#echo.rate;
@@ -144,7 +156,7 @@ export class EchoWork {
       tables = rateTables(settings, wavelengthM, this.#echo.learned);
       this.#tables.set(key, tables);
     }
-    return gateRates(echo, type, settings, tables);
+    return { settings, tables };
   }
 
   /** In the order of COMPANIONS; undefined where 0 everywhere. */
@@ -155,11 +167,7 @@ export class EchoWork {
     }
     list[companionIndex("two_way_loss")] = echo.twoWayLossDb;
     list[companionIndex("blocked_fraction")] = echo.blockedFraction;
-    list[companionIndex("filled_fraction")] = shareOf(echo.marks, BITS.filled);
-    list[companionIndex("hail_fraction")] = shareOf(echo.marks, BITS.hail);
-    list[companionIndex("melting_fraction")] = shareOf(echo.marks, BITS.melting);
-    list[companionIndex("snow_fraction")] = shareOf(echo.marks, BITS.snow);
-    list[companionIndex("convective_fraction")] = shareOf(echo.marks, BITS.convective);
+    sharesOf(echo.marks, list);
     this.#tolls(echo, relation, list);
     return list;
   }
@@ -206,15 +214,25 @@ function countProfile({ header, dbz, effectsDb }: PolarEcho, { profileBands }: U
   }
 }
 
-/** 1 where a bit is set, else 0; undefined where it is set nowhere. */
-function shareOf(marks: Uint16Array, bit: number): Float32Array | undefined {
-  let share: Float32Array | undefined;
-  for (let gate = 0; gate < marks.length; gate++) {
-    if (((marks[gate] as number) & bit) === 0) continue;
-    share ??= new Float32Array(marks.length);
-    share[gate] = 1;
+/** Companions that are 1 where a gate bears a mark, else 0. */
+const SHARES = (["filled", "hail", "melting", "snow", "convective"] as const).map((mark) => ({
+  bit: BITS[mark],
+  companion: companionIndex(`${mark}_fraction`),
+}));
+
+/** Puts them into the list of companions where any gate bears the mark. */
+function sharesOf(marks: Uint16Array, list: (Float32Array | undefined)[]): void {
+  const asked = SHARES.reduce((bits, { bit }) => bits | bit, 0);
+  let met = 0;
+  for (let gate = 0; gate < marks.length; gate++) met |= marks[gate] as number;
+  if ((met & asked) === 0) return;
+  for (const { bit, companion } of SHARES) {
+    if ((met & bit) === 0) continue;
+    const share = new Float32Array(marks.length);
+    for (let gate = 0; gate < marks.length; gate++)
+      if (((marks[gate] as number) & bit) !== 0) share[gate] = 1;
+    list[companion] = share;
   }
-  return share;
 }
 
 /** How far each gate is to be trusted for what was lost on the way; undefined where nothing was. */
@@ -222,9 +240,16 @@ function trustOf({ blockedFraction, twoWayLossDb }: PolarEcho): Float32Array | u
   if (blockedFraction === undefined && twoWayLossDb === undefined) return undefined;
   const length = (blockedFraction ?? twoWayLossDb)?.length ?? 0;
   const trust = new Float32Array(length);
+  let [blocked, loss, last] = [Number.NaN, Number.NaN, Number.NaN];
   for (let gate = 0; gate < length; gate++) {
     // Not known is taken for nothing: a weight of NaN would silence the gate.
-    trust[gate] = trustIn(blockedFraction?.[gate] || 0, twoWayLossDb?.[gate] || 0);
+    const [share, lossDb] = [blockedFraction?.[gate] || 0, twoWayLossDb?.[gate] || 0];
+    // Between showers nothing changes from gate to gate, and powers are slow.
+    if (share !== blocked || lossDb !== loss) {
+      [blocked, loss] = [share, lossDb];
+      last = trustIn(share, lossDb);
+    }
+    trust[gate] = last;
   }
   return trust;
 }

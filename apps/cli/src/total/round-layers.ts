@@ -1,5 +1,11 @@
 import type { Grid, PolarEcho, ZrRelation } from "@rainreckon/core";
-import { type GateRates, type PolarLookup, type RateLayer, RateLayerBuilder } from "@rainreckon/mosaic";
+import {
+  type GateRates,
+  type PolarLookup,
+  type RateLayer,
+  RateLayerBuilder,
+  type VariantRates,
+} from "@rainreckon/mosaic";
 import { COMPANIONS } from "./companions.ts";
 import { EchoWork } from "./echo-work.ts";
 import type { JobRadar, JobRound, JobSweep, RatesMade, SweepFault, UnitCounts, UnitTrace } from "./job.ts";
@@ -10,7 +16,7 @@ import { RoundEchoes } from "./round-echoes.ts";
 /** What one sweep says, by gate: under the relation in use, and under each other one. */
 interface SweepRain {
   readonly gates: GateRates;
-  readonly others: readonly GateRates[];
+  readonly others: readonly VariantRates[];
   readonly gateCount: number;
   /** Both undefined where the stored numbers went straight to rain. */
   readonly echo: PolarEcho | undefined;
@@ -84,7 +90,9 @@ export class RoundLayers {
     const lookup = lookupShelf(this.#shape.grid, this.#radar).forSweep(echoes.shape(sweep));
     if (!builder.canFill(lookup)) return 0;
     const rain =
-      this.#echoes === undefined ? this.#plainRain(echoes, sweep) : this.#rain(echoes, sweep, lookup);
+      this.#echoes === undefined
+        ? this.#plainRain(echoes, sweep)
+        : this.#rain(builder, echoes, sweep, lookup);
     if (rain === undefined) return 0;
     const filled = builder.add(lookup, rain.gates, rain.others, sweep.midEpochMs);
     this.#trace?.sweep?.({
@@ -120,7 +128,12 @@ export class RoundLayers {
     };
   }
 
-  #rain(echoes: RoundEchoes, sweep: JobSweep, lookup: PolarLookup): SweepRain | undefined {
+  #rain(
+    builder: RateLayerBuilder,
+    echoes: RoundEchoes,
+    sweep: JobSweep,
+    lookup: PolarLookup,
+  ): SweepRain | undefined {
     const echo = echoes.echo(sweep);
     if (echo === undefined || this.#echoes === undefined) return undefined;
     const { gates, others, made } = this.#echoes.rain(
@@ -128,6 +141,7 @@ export class RoundLayers {
       echoes.above(sweep),
       lookup,
       this.#rates.relationAt(sweep.midEpochMs),
+      builder.headlineGates(lookup),
     );
     return { gates, others, gateCount: echo.dbz.length, echo, made };
   }

@@ -1,5 +1,5 @@
 import type { PolarEcho } from "../polar-echo.ts";
-import { bandLaws, rateOfKdp } from "./estimators.ts";
+import { bandLaws, type KdpLaw, rateOfKdp } from "./estimators.ts";
 import { hailShare, mayBeHail } from "./hail.ts";
 import { isLiquid, MomentReader } from "./moment-reader.ts";
 import { ramp } from "./ramp.ts";
@@ -69,6 +69,27 @@ function forEachCompared(
   }
 }
 
+/** Gates in which Z and KDP are compared, whatever the relation; shapes [compared gates]. */
+export interface ComparedGates {
+  readonly gates: readonly number[];
+  readonly areaKm2: readonly number[];
+  /** R(KDP) times the area, mm/h km2. */
+  readonly rainByKdp: readonly number[];
+}
+
+/** @param law - of the radar's band */
+export function comparedGates(echo: PolarEcho, reader: MomentReader, law: KdpLaw): ComparedGates {
+  const gates: number[] = [];
+  const areas: number[] = [];
+  const rainByKdp: number[] = [];
+  forEachCompared(echo, reader, (areaKm2, gate, kdp) => {
+    gates.push(gate);
+    areas.push(areaKm2);
+    rainByKdp.push(areaKm2 * rateOfKdp(kdp, law));
+  });
+  return { gates, areaKm2: areas, rainByKdp };
+}
+
 /**
  * Factor on every rate from Z that makes the sweep's rain agree with its KDP, where KDP tells more rain by more than
  * the shape of drops explains: many small drops, as in warm rain, echo less for the same rain.
@@ -79,24 +100,26 @@ function forEachCompared(
  * The papers are from memory, and the thresholds are ours.
  *
  * @param rainType - numbers of `RAIN_TYPE`, or undefined for one relation everywhere
+ * @param compared - of the same sweep; undefined where the band has no law
  * @returns 1 or more: what the run has learned where the sweep has no KDP; 1 where nothing is known, or the band has no law
  */
 export function dropNumberFactor(
-  echo: PolarEcho,
+  { dbz }: PolarEcho,
   rainType: Uint8Array | undefined,
-  tables: RateTables,
-  reader: MomentReader,
+  { byType, dropNumberRatio }: RateTables,
+  compared: ComparedGates | undefined,
 ): number {
-  const { laws, byType, dropNumberRatio } = tables;
-  if (laws === undefined) return 1;
+  if (compared === undefined) return 1;
   const prior =
     dropNumberRatio === undefined ? PRIOR_KM2_MM_PER_HOUR.relation : PRIOR_KM2_MM_PER_HOUR.learned;
   let byZ = prior;
   let byKdp = prior * (dropNumberRatio ?? 1);
-  forEachCompared(echo, reader, (areaKm2, gate, kdp) => {
-    byZ += areaKm2 * rateOfZ(echo.dbz[gate], byType[rainType?.[gate] ?? 0]);
-    byKdp += areaKm2 * rateOfKdp(kdp, laws.kdp);
-  });
+  const { gates, areaKm2, rainByKdp } = compared;
+  for (let k = 0; k < gates.length; k++) {
+    const gate = gates[k];
+    byZ += areaKm2[k] * rateOfZ(dbz[gate], byType[rainType?.[gate] ?? 0]);
+    byKdp += rainByKdp[k];
+  }
   return factorOfRatio(Math.max(0, byKdp) / byZ);
 }
 

@@ -1,6 +1,7 @@
 import type { ZrRelation } from "../../zr-relation.ts";
 import { markBit, type PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
+import type { ComparedGates } from "./drop-number.ts";
 import { isLiquid } from "./moment-reader.ts";
 import { neighboursOfHail } from "./neighbours-of-hail.ts";
 import { RateBlender, type RateParts } from "./rate-blender.ts";
@@ -44,6 +45,8 @@ export interface GateRatesOfSweep {
   /** A further one, see `dropNumberFactor`. */
   readonly dropNumberFactor: number;
   readonly counts: RateCounts;
+  /** What {@link gateRatesUnder} can take over. */
+  readonly compared: ComparedGates | undefined;
   /** What the settings ask for and the sweep does not have, by name. */
   readonly lacking: readonly string[];
 }
@@ -96,6 +99,7 @@ export function gateRates(
     dropSizeFactor: tables.dropSizeFactor,
     dropNumberFactor: blender.dropNumberFactor,
     counts: emptyCounts(),
+    compared: blender.compared,
     lacking: lackingMoments(echo, settings, tables),
   };
   putRainUnderHail(echo, blender, first);
@@ -110,6 +114,51 @@ export function gateRates(
   }
   count(out, marks);
   return out;
+}
+
+/**
+ * Rates of some gates of the same sweep under another relation, as {@link gateRates} would make them; nothing is marked.
+ *
+ * @param settings - the same but for the relation
+ * @param gates - that are asked for; one may stand in it twice
+ * @param compared - as the rates under the first relation have it
+ * @returns mm/h, shape [rayCount * gateCount]; NaN where not observed or not asked for
+ */
+export function gateRatesUnder(
+  echo: PolarEcho,
+  rainType: Uint8Array | undefined,
+  settings: GateRateSettings,
+  tables: RateTables,
+  gates: Int32Array,
+  compared?: ComparedGates,
+  specificAttenuationDbPerKm?: Float32Array,
+): Float32Array {
+  const { dbz } = echo;
+  const blender = new RateBlender(echo, rainType, settings, tables, specificAttenuationDbPerKm, compared);
+  const { parts } = blender;
+  const rateMmPerHour = new Float32Array(dbz.length).fill(Number.NaN);
+  let besideHail: RatesBesideHail | undefined;
+  for (let k = 0; k < gates.length; k++) {
+    const gate = gates[k];
+    if (!(dbz[gate] > Number.NEGATIVE_INFINITY)) {
+      if (dbz[gate] === Number.NEGATIVE_INFINITY) rateMmPerHour[gate] = 0;
+      continue;
+    }
+    blender.blend(gate);
+    // As a gate's rate is kept between the two passes.
+    const share = Math.fround(parts.hailShare);
+    let rate = Math.fround(parts.rainRate);
+    if (share > 0) {
+      let underHail = blender.kdpRateUnderHail(gate);
+      if (Number.isNaN(underHail)) {
+        besideHail ??= ratesBesideHail(echo, blender);
+        underHail = neighboursOfHail(echo, besideHail.rateMmPerHour, besideHail.hail, gate);
+      }
+      rate = Math.fround((1 - share) * rate + share * underHail);
+    }
+    rateMmPerHour[gate] = rate < settings.minRateMmPerHour ? 0 : rate;
+  }
+  return rateMmPerHour;
 }
 
 /** How the rate of one gate came about; with `settings.minRateMmPerHour` all that its last step needs. */

@@ -1,7 +1,7 @@
 import { CUSTOMARY_CAP_MM_PER_HOUR } from "../../cap.ts";
 import type { PolarEcho } from "../polar-echo.ts";
 import { RAIN_TYPE } from "../rain-type/steiner.ts";
-import { dropNumberFactor } from "./drop-number.ts";
+import { type ComparedGates, comparedGates, dropNumberFactor } from "./drop-number.ts";
 import { Z_ZDR_CORRELATION, Z_ZDR_FROM_ZDR_DB } from "./drop-size.ts";
 import { rateOfAttenuation, rateOfKdp, rateOfKdpZdr, rateOfZZdr } from "./estimators.ts";
 import { hailShare, mayBeHail } from "./hail.ts";
@@ -57,6 +57,8 @@ export class RateBlender {
   readonly dropNumberFactor: number;
   /** Whether hail can be told at all. */
   readonly seesHail: boolean;
+  /** What another relation's blender of the same sweep can take over. */
+  readonly compared: ComparedGates | undefined;
   readonly parts: RateParts = {
     zRate: 0,
     zCapped: false,
@@ -87,6 +89,7 @@ export class RateBlender {
     settings: GateRateSettings,
     tables: RateTables,
     attenuation: Float32Array | undefined,
+    compared?: ComparedGates,
   ) {
     this.#echo = echo;
     this.#rainType = rainType;
@@ -100,8 +103,11 @@ export class RateBlender {
       polarimetric === undefined || tables.laws === undefined
         ? Number.POSITIVE_INFINITY
         : Math.min(27, Z_ZDR_DBZ.from, ATTENUATION_DBZ.from);
-    const byNumber =
-      polarimetric?.dropNumber === true ? dropNumberFactor(echo, rainType, tables, this.#reader) : 1;
+    const followsNumber = polarimetric?.dropNumber === true && tables.laws !== undefined;
+    this.compared = followsNumber
+      ? (compared ?? comparedGates(echo, this.#reader, tables.laws.kdp))
+      : undefined;
+    const byNumber = dropNumberFactor(echo, rainType, tables, this.compared);
     // Many drops are small drops: what their size has raised already is not raised again.
     this.dropNumberFactor = Math.max(1, byNumber / Math.max(1, tables.dropSizeFactor));
     const unusual = ramp(byNumber, 1, Z_ZDR_MOST_FACTOR);
