@@ -174,6 +174,12 @@ describe("200 cells drawn by lot, in one pass", () => {
         Math.abs(rateMmPerHour! / (10 ** (dbz! / 10) / 200) ** (1 / 1.6) - 1) > 1e-4,
     );
     expect(otherRates).toEqual([]);
+    // Scans of reflectivity alone: neither the size nor the number of drops is known.
+    const swept = points.flatMap(({ scans }) => scans.filter((scan) => scan.dropSizeFactor !== null));
+    expect(swept.length).toBeGreaterThan(100);
+    expect(
+      swept.filter(({ dropSizeFactor, dropNumberFactor }) => dropSizeFactor !== 1 || dropNumberFactor !== 1),
+    ).toEqual([]);
   });
 
   test("the radar whose plan says +1 dB has it in every echo, the other none", () => {
