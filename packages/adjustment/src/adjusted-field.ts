@@ -26,7 +26,7 @@ export interface AdjustedFieldInput {
  *
  * A factor multiplies each interval by its value in the middle of it. A field is made once, for the window,
  * and the shape of each cell in time is kept: an interval is its radar depth times adjusted over radar depth
- * of the window. Where the radar saw nothing all window long but the method puts rain, that rain is spread
+ * of the window; unless intervals are learned by themselves. Where the radar saw nothing all window long but the method puts rain, that rain is spread
  * over the intervals as the gauges' mean was.
  */
 export function fieldAdjuster(learned: LearnedMethod, input: AdjustedFieldInput): FieldAdjuster {
@@ -56,6 +56,14 @@ export function fieldAdjuster(learned: LearnedMethod, input: AdjustedFieldInput)
   }
   return {
     interval(interval, radarMm) {
+      const own = learned.ofInterval?.(interval);
+      if (own !== undefined) {
+        return radarMm.map((depth, cell) => {
+          if (Number.isNaN(depth)) return Number.NaN;
+          const { xM, yM } = cellCentre(grid, cell);
+          return own(xM / 1000, yM / 1000, depth, learned.usesRange ? rangeKm(cell) : Number.NaN);
+        });
+      }
       const part = share(interval);
       return radarMm.map((depth, cell) => depth * ratio[cell] + added[cell] * part);
     },

@@ -66,6 +66,7 @@ export function meanRainShare(gauges: readonly WindowGauge[]): RainShare {
 /** Depth that a method gives at the very point of a gauge over the time of its pairs, mm. */
 export function pairedDepthAt(learned: LearnedMethod, place: PairedPlace): number {
   if (learned.kind === "field") {
+    if (learned.ofInterval !== undefined) return readingsDepthAt(learned, place, place.readings);
     const windowMm = fieldAt(learned, place);
     const { radarMm, radarTotalMm, coverage } = place;
     return windowMm * (radarTotalMm > 0 ? radarMm / radarTotalMm : coverage);
@@ -76,6 +77,22 @@ export function pairedDepthAt(learned: LearnedMethod, place: PairedPlace): numbe
     (sum, reading) => sum + toPoint * reading.radarMm * learned.factorAt(middle(reading)),
     0,
   );
+}
+
+/** Depth over some readings by a method that learns intervals by themselves: each by its own, or by the window's. */
+function readingsDepthAt(
+  learned: Extract<LearnedMethod, { kind: "field" }>,
+  place: PairedPlace,
+  readings: PairedPlace["readings"],
+): number {
+  const { xKm, yKm, rangeKm, radarTotalMm, radarPointTotalMm } = place;
+  const toPoint = radarTotalMm > 0 ? radarPointTotalMm / radarTotalMm : 1;
+  const windowRatio = radarTotalMm > 0 ? fieldAt(learned, place) / radarTotalMm : 0;
+  return readings.reduce((sum, reading) => {
+    const part = learned.ofInterval?.(reading);
+    const { radarMm } = reading;
+    return sum + (part === undefined ? radarMm * windowRatio : part(xKm, yKm, radarMm * toPoint, rangeKm));
+  }, 0);
 }
 
 function fieldAt(
@@ -99,15 +116,17 @@ export function spanDepthAt(
   share: RainShare,
 ): number {
   if (Number.isNaN(radarMm)) return Number.NaN;
-  if (learned.kind === "field") {
-    const windowMm = fieldAt(learned, place);
-    return place.radarTotalMm > 0 ? (radarMm * windowMm) / place.radarTotalMm : windowMm * share(span);
-  }
-  // Over several intervals: the factors weighted by what the radar saw in each.
+  // Over several intervals: what each comes to, weighted by what the radar saw in it.
   const inside = place.readings.filter(
     ({ startEpochMs, endEpochMs }) => startEpochMs >= span.startEpochMs && endEpochMs <= span.endEpochMs,
   );
   const seenMm = inside.reduce((sum, reading) => sum + reading.radarMm, 0);
+  if (learned.kind === "field") {
+    if (learned.ofInterval !== undefined && seenMm > 0)
+      return (radarMm * readingsDepthAt(learned, place, inside)) / seenMm;
+    const windowMm = fieldAt(learned, place);
+    return place.radarTotalMm > 0 ? (radarMm * windowMm) / place.radarTotalMm : windowMm * share(span);
+  }
   if (learned.constant || !(seenMm > 0)) return radarMm * learned.factorAt(middle(span));
   const adjustedMm = inside.reduce(
     (sum, reading) => sum + reading.radarMm * learned.factorAt(middle(reading)),

@@ -10,6 +10,7 @@ import {
 import { inverseDistance } from "./inverse-distance.ts";
 import { kalmanBias } from "./kalman-bias.ts";
 import { krigingSystem } from "./kriging.ts";
+import { type IntervalDepth, overIntervals } from "./over-intervals.ts";
 import { rangeFactor, rangePolynomial } from "./range-factor.ts";
 import { splitMismatch } from "./residuals.ts";
 import { lengthFromSpacing, twoPassFactor } from "./two-pass-factor.ts";
@@ -68,6 +69,8 @@ export interface MethodSettings extends VariogramSettings {
   /** The window, and the intervals that pairs are made over: the clock of the Kalman filter. */
   readonly window: Interval;
   readonly pairIntervalMs: number;
+  /** Whether fields are learned once for the window, or anew for each interval that pairs are made over. */
+  readonly over?: "window" | "intervals";
   readonly kalman: { readonly memory: number; readonly variance: number; readonly pairVariance: number };
 }
 
@@ -86,6 +89,8 @@ export type LearnedMethod = { readonly notes: readonly string[] } & (
       readonly usesRange: boolean;
       /** Depth of the window at a place, mm, never negative; NaN where the radar's is NaN. */
       readonly depthMm: (xKm: number, yKm: number, radarMm: number, rangeKm: number) => number;
+      /** Where intervals are learned by themselves: the depth of one of them; undefined where the window speaks for it. */
+      readonly ofInterval?: (span: Interval) => IntervalDepth | undefined;
     }
 );
 
@@ -116,6 +121,11 @@ export function learnMethod(
   gauges: readonly WindowGauge[],
   settings: MethodSettings,
 ): LearnedMethod {
+  if (settings.over === "intervals") {
+    return overIntervals(gauges, settings.window, settings.pairIntervalMs, (some) =>
+      learnMethod(name, some, { ...settings, over: "window" }),
+    );
+  }
   const notes: string[] = [];
   const instead = (reason: string): LearnedMethod => ({
     ...constantFactor(ratioOfSums(gauges, settings)),

@@ -329,14 +329,22 @@ function zoneFaults(plan: Plan): PlanFault[] {
   );
 }
 
-function limitFaults(plan: Plan): PlanFault[] {
-  const [low, high] = plan.adjustment.factorLimits;
-  if (low < high) return [];
-  return [
-    {
+function limitFaults({ adjustment, pairs, intervals }: Plan): PlanFault[] {
+  const faults: PlanFault[] = [];
+  const [low, high] = adjustment.factorLimits;
+  if (!(low < high)) {
+    faults.push({
       path: ["adjustment", "factorLimits"],
       what: "the lower limit is not below the upper",
       fix: "write them as [0.1, 10]",
-    },
-  ];
+    });
+  }
+  if (adjustment.over === "intervals" && durationMs(pairs.interval) !== durationMs(intervals.grids)) {
+    faults.push({
+      path: ["adjustment", "over"],
+      what: `the adjustment works on intervals, but pairs are of ${pairs.interval} and maps of ${intervals.grids}`,
+      fix: "make pairs.interval and intervals.grids the same, or write over: window",
+    });
+  }
+  return faults;
 }

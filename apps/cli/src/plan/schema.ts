@@ -332,6 +332,8 @@ export const planSchema = z.strictObject({
     .strictObject({
       /** A method by name, or the one that meets held-out gauges best. */
       method: z.enum([...METHOD_NAMES, "by-cross-validation"]).default("by-cross-validation"),
+      /** Fields are learned once for the window, with the radar's shape in time, or anew for each interval of the pairs. */
+      over: z.enum(["window", "intervals"]).default("window"),
       minGauges: z.number().int().min(5).default(5),
       minGaugeSumMm: z.number().min(10).default(10),
       factorLimits: z.tuple([z.number().positive(), z.number().positive()]).default([0.1, 10]),

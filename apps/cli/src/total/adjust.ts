@@ -136,6 +136,7 @@ export function settingsOf(run: PreparedRun, total: AssembledRun): MethodSetting
     shape: adjustment.variogram,
     radarVariogram: radarVariogram(run.grid, total.planes.totalMm, adjustment.variogram),
     window: run.window,
+    over: adjustment.over,
     pairIntervalMs: durationMs(pairs.interval),
     kalman: adjustment.kalman,
   };

@@ -414,7 +414,9 @@ function adjustmentLines({ adjustment, choice }: Comparison): string[] {
       `Adjusted depths are made by ${adjustment.title}, from ${adjustment.gaugeCount} trusted gauges.`,
       adjustment.learned.kind === "factor"
         ? "The factor is the same everywhere."
-        : "It works on the depth of the window; each cell keeps the radar's shape in time, and where the radar saw nothing the gauges' mean shape.",
+        : adjustment.learned.ofInterval !== undefined
+          ? "It works on each interval of the maps by itself."
+          : "It works on the depth of the window; each cell keeps the radar's shape in time, and where the radar saw nothing the gauges' mean shape.",
       ...adjustment.notes.map((note) => `In it: ${note}.`),
     );
   }
