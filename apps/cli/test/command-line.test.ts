@@ -83,6 +83,7 @@ describe.each([
   ["survey"],
   ["plan"],
   ["total"],
+  ["event"],
   ["compare"],
   ["relate", "table"],
   ["relate", "fit"],
