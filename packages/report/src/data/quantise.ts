@@ -43,7 +43,7 @@ export function quantise(
       at += 1;
     }
   }
-  const data = Buffer.from(deflateSync(bytes, { level: 9 })).toString("base64");
+  const data = Buffer.from(deflateSync(bytes)).toString("base64");
   return { nx, ny, block, step, offset, count: fields.length, data };
 }
 
