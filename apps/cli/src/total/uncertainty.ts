@@ -82,13 +82,14 @@ export function learnUncertainty(
   });
   const totalMm = adjustedTotalMm ?? total.planes.totalMm;
   const qualityAt = echoQuality(run, total);
+  const toNearest = distanceToNearest(gauges);
   const spread = new Float32Array(totalMm.length).fill(Number.NaN);
   for (let cell = 0; cell < totalMm.length; cell++) {
     if (Number.isNaN(totalMm[cell])) continue;
     const { xM, yM } = cellCentre(run.grid, cell);
     spread[cell] = logSpread(model, {
       depthMm: totalMm[cell],
-      gaugeDistanceKm: nearestKm(gauges, xM / 1000, yM / 1000),
+      gaugeDistanceKm: toNearest(xM / 1000, yM / 1000),
       quality: qualityAt(cell),
     });
   }
@@ -185,9 +186,11 @@ function echoQuality(run: PreparedRun, total: AssembledRun): (cell: number) => E
   return (cell) => {
     const screenedMm = tolls.reduce((sum, toll) => sum + (toll?.[cell] || 0), 0);
     const wholeMm = screenedMm + (planes.totalMm[cell] || 0);
+    const beamHeightM = planes.beamHeightAslM[cell] ?? Number.NaN;
     return {
-      beamHeightM: planes.beamHeightAslM[cell] ?? Number.NaN,
-      rangeKm: rangeAt(run, total, cell),
+      beamHeightM,
+      // Asked only where the height is not known: a geodesic for each cell of a large map would take long.
+      rangeKm: beamHeightM > 0 ? Number.NaN : rangeAt(run, total, cell),
       lossDb: loss?.[cell] ?? Number.NaN,
       blockedFraction: blocked?.[cell] ?? Number.NaN,
       screenedFraction: wholeMm > 0 ? screenedMm / wholeMm : 0,
@@ -278,13 +281,23 @@ function gaugeErrorVariance(run: PreparedRun): (held: HeldOutGauge, depthMm: num
 }
 
 function nearestKm(gauges: readonly Pick<HeldOutGauge, "gauge">[], xKm: number, yKm: number): number {
-  let nearest = Number.POSITIVE_INFINITY;
-  for (const { gauge } of gauges) {
-    const dx = gauge.xKm - xKm;
-    const dy = gauge.yKm - yKm;
-    nearest = Math.min(nearest, dx * dx + dy * dy);
-  }
-  return Math.sqrt(nearest);
+  return distanceToNearest(gauges)(xKm, yKm);
+}
+
+/** Distance to the nearest of some gauges, km; Infinity where there is none. */
+function distanceToNearest(
+  gauges: readonly Pick<HeldOutGauge, "gauge">[],
+): (xKm: number, yKm: number) => number {
+  const x = Float64Array.from(gauges, ({ gauge }) => gauge.xKm);
+  const y = Float64Array.from(gauges, ({ gauge }) => gauge.yKm);
+  return (xKm, yKm) => {
+    let nearest = Number.POSITIVE_INFINITY;
+    for (let i = 0; i < x.length; i++) {
+      const squared = (x[i] - xKm) ** 2 + (y[i] - yKm) ** 2;
+      if (squared < nearest) nearest = squared;
+    }
+    return Math.sqrt(nearest);
+  };
 }
 
 /** Side of the square that each gauge has to itself in the rectangle around all, km. */
