@@ -35,11 +35,11 @@ export interface ValidatedChoice extends MethodChoice {
 
 /**
  * Where every choice starts. House rule, from tuning storms 1 to 10: some thirty gauges cannot tell methods apart that
- * differ by less than a quarter, and picking the least error among them all did worse than never picking.
+ * differ by less than a third, and picking the least error among them all did worse than never picking.
  */
 const START: MethodName = "combined";
 /** Another leads only where both of its errors are smaller by this share. House rule, from the same storms. */
-const LEADS_BY = 0.25;
+const LEADS_BY = 1 / 3;
 /** Two methods do as well as each other where both errors are within this share, or within rounding. House rules. */
 const AS_GOOD_WITHIN = 0.005;
 const ROUNDING_MM = 1e-3;
@@ -49,7 +49,7 @@ const CHOICE_ALONE_UP_TO = 30;
 
 /** The rule in words, for people. */
 export const CHOICE_RULE =
-  "the mean of Brandes' factors and Bayesian kriging, unless another method meets gauges better by a quarter, both those held out in turn and those held out with their whole cluster: then the best of these; of methods that do as well, the simplest";
+  "the mean of Brandes' factors and Bayesian kriging, unless another method meets gauges better by a third, both those held out in turn and those held out with their whole cluster: then the best of these; of methods that do as well, the simplest";
 
 /**
  * Cross-validates one method; verdicts on gauges, variograms, factors and fallbacks are made anew in every fold.
