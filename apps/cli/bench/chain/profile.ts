@@ -23,6 +23,7 @@ const STEPS: ReadonlyMap<string, string> = new Map([
   ["rainTypeOfGates", "rain type"],
   ["correctProfile", "vertical profile"],
   ["gateRates", "rain rate"],
+  ["gateRatesUnder", "rain rate, other relations"],
   ["#companions", "companions and tolls"],
   ["trustOf", "companions and tolls"],
   ["count", "counts"],

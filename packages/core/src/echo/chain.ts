@@ -96,7 +96,8 @@ export class EchoChain {
   readonly #learned: LearnedEcho;
   readonly #radiusM: number;
   readonly #gas: GasLosses | undefined;
-  readonly #blockage = new Map<string, Float32Array | undefined>();
+  /** By geometry, the one asked for first first. */
+  readonly #blockage: { readonly of: Geometry; readonly fraction: Float32Array | undefined }[] = [];
 
   /** @throws RangeError where the air of the settings cannot be */
   constructor(settings: EchoSettings, learned: LearnedEcho) {
@@ -157,8 +158,8 @@ export class EchoChain {
   #blockedFraction(echo: PolarEcho): Float32Array | undefined {
     const { terrain, blockage } = this.#learned;
     if (terrain === undefined && blockage === undefined) return undefined;
-    const key = geometryKey(echo);
-    if (this.#blockage.has(key)) return this.#blockage.get(key);
+    const known = this.#blockage.find(({ of }) => isSameGeometry(of, echo));
+    if (known !== undefined) return known.fraction;
     const { header, azimuthDeg } = echo;
     const sweep = {
       elevationDeg: header.elevationDeg,
@@ -172,9 +173,8 @@ export class EchoChain {
     const byTerrain = terrain === undefined ? undefined : terrainBlockage(terrain, sweep, this.#radiusM);
     const { fraction } = joinBlockage(sweep, byTerrain, blockage);
     const found = fraction.some((share) => share > 0) ? fraction : undefined;
-    if (this.#blockage.size >= KEPT_GEOMETRIES)
-      this.#blockage.delete(this.#blockage.keys().next().value as string);
-    this.#blockage.set(key, found);
+    if (this.#blockage.length >= KEPT_GEOMETRIES) this.#blockage.shift();
+    this.#blockage.push({ of: geometryOf(echo), fraction: found });
     return found;
   }
 }
@@ -184,7 +184,22 @@ function alreadyGivenBack({ gasAttenuationDbPerKm }: SweepHeader): boolean | und
   return gasAttenuationDbPerKm === undefined ? undefined : gasAttenuationDbPerKm > 0;
 }
 
-function geometryKey({ header, azimuthDeg }: PolarEcho): string {
-  const { elevationDeg, gateCount, firstGateCentreM, gateLengthM }: SweepHeader = header;
-  return [elevationDeg, gateCount, firstGateCentreM, gateLengthM, azimuthDeg.join()].join("|");
+/** What places the gates of a sweep: numbers alone, since a header may hold all that was decoded with it. */
+type Geometry = Pick<SweepHeader, "elevationDeg" | "gateCount" | "firstGateCentreM" | "gateLengthM"> &
+  Pick<PolarEcho, "azimuthDeg">;
+
+function geometryOf({ header, azimuthDeg }: PolarEcho): Geometry {
+  const { elevationDeg, gateCount, firstGateCentreM, gateLengthM } = header;
+  return { elevationDeg, gateCount, firstGateCentreM, gateLengthM, azimuthDeg };
+}
+
+function isSameGeometry(one: Geometry, { header, azimuthDeg }: PolarEcho): boolean {
+  return (
+    one.elevationDeg === header.elevationDeg &&
+    one.gateCount === header.gateCount &&
+    one.firstGateCentreM === header.firstGateCentreM &&
+    one.gateLengthM === header.gateLengthM &&
+    one.azimuthDeg.length === azimuthDeg.length &&
+    one.azimuthDeg.every((azimuth, ray) => azimuth === azimuthDeg[ray])
+  );
 }

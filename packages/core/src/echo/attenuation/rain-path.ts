@@ -20,7 +20,14 @@ const MOST_RAIN_DBZ = 53;
 class PowerTable {
   readonly #powers: Float64Array;
 
-  constructor(exponent: number, mostDbz: number) {
+  /** The table of an exponent, made once: a run has one or two. */
+  static of(exponent: number): PowerTable {
+    const known = POWER_TABLES.get(exponent) ?? new PowerTable(exponent, MOST_RAIN_DBZ);
+    POWER_TABLES.set(exponent, known);
+    return known;
+  }
+
+  private constructor(exponent: number, mostDbz: number) {
     this.#powers = Float64Array.from({ length: TABLE_STEPS }, (_, step) =>
       step === 0 ? 0 : zMm6PerM3(Math.min(mostDbz, step / 10 + TABLE_LOW_DBZ)) ** exponent,
     );
@@ -34,6 +41,7 @@ class PowerTable {
 }
 const TABLE_LOW_DBZ = -40;
 const TABLE_STEPS = 1300;
+const POWER_TABLES = new Map<number, PowerTable>();
 
 /** 1 where echo is no rain, so that its loss does not follow from its Z: hail, melting snow, snow. */
 export function notRain(echo: PolarEcho, settings: AttenuationSettings): Uint8Array {
@@ -72,7 +80,7 @@ export function shareOutByZphi(
 ): void {
   const { dbz } = echo;
   const { gateCount } = echo.header;
-  const table = new PowerTable(settings.zphiExponent, MOST_RAIN_DBZ);
+  const table = PowerTable.of(settings.zphiExponent);
   const before = new Float64Array(gateCount);
   const enoughDb = alpha * settings.leastPathPhaseDeg;
   for (let from = 0; from < dbz.length; from += gateCount) {
@@ -149,7 +157,7 @@ export function lossByReflectivity(
   const { dbz, header } = echo;
   const { gateCount, gateLengthM, firstGateCentreM } = header;
   const law = attenuationLawOfWavelength(header.wavelengthM as number, settings.relation);
-  const table = new PowerTable(law.exponent, MOST_RAIN_DBZ);
+  const table = PowerTable.of(law.exponent);
   const perGate = (factor * law.coefficient * gateLengthM) / 1000;
   for (let from = 0; from < dbz.length; from += gateCount) {
     let last = Number.NaN;
