@@ -191,11 +191,17 @@ function rates({ subject, reason }: Account, accounts: readonly Account[]): Find
   };
 }
 
+/** Gauges whose mean is the reference of a double-mass curve, the nearest ones: common practice is several. */
+const MASS_NEIGHBOURS = 20;
+
 function doubleMass({ subject, reason }: Account, accounts: readonly Account[]): Finding | undefined {
   if (reason !== undefined) return undefined;
   const others = accounts
     .filter((other) => other.subject !== subject && other.reason === undefined)
-    .map((other) => other.subject.evidence.byInterval);
+    .map(({ subject: { evidence } }) => ({ evidence, km: distanceKm(subject.evidence, evidence) }))
+    .sort((one, other) => one.km - other.km)
+    .slice(0, MASS_NEIGHBOURS)
+    .map(({ evidence }) => evidence.byInterval);
   const found = doubleMassBreak(subject.evidence.byInterval, others);
   if (found === undefined) return undefined;
   const { factor, breakEpochMs, t } = found;
