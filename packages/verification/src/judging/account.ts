@@ -112,17 +112,21 @@ export function accountOf(subject: Subject, reference: ReferenceLevel, { field }
 /** What is looked for at great cost, by the level of the place. */
 type Changes = Pick<Account, "silent" | "clock" | "place">;
 
-const changesKnown = rememberedBy((_: Aligned) => new Map<number, Changes>());
+const changesKnown = rememberedBy(
+  (_: Aligned) => new Map<number, Changes & { readonly field: FieldSamples | undefined }>(),
+);
 
 /** What would make a gauge fit: worked out once for each level. */
 function changesOf(steps: Aligned, field: FieldSamples | undefined, levelDb: number): Changes {
-  const known = changesKnown(steps);
-  const changes = known.get(levelDb) ?? {
+  const known = changesKnown(steps).get(levelDb);
+  if (known !== undefined && known.field === field) return known;
+  const changes = {
+    field,
     silent: longestSilence(steps, levelDb),
     clock: wholeHours(bestClock(steps, levelDb)),
     place: field === undefined ? undefined : bestPlace(steps, field, levelDb),
   };
-  known.set(levelDb, changes);
+  changesKnown(steps).set(levelDb, changes);
   return changes;
 }
 
