@@ -65,8 +65,8 @@ export const CIFELLI_2011_Z_ZDR: ZZdrLaw = {
 };
 
 /**
- * Geometric mean of the two laws of S band: that of 2005 makes 0.8 to 1.1 times the rain of that of 2011, and nothing says
- * which holds. House rule.
+ * Geometric mean of the two laws of S band: in rain of the usual drops that of 2005 makes 0.8 to 1.1 times the rain of that
+ * of 2011, and nothing says which holds. House rule.
  */
 export const MEAN_Z_ZDR: ZZdrLaw = {
   coefficient: Math.sqrt(RYZHKOV_2005_Z_ZDR.coefficient * CIFELLI_2011_Z_ZDR.coefficient),
@@ -115,8 +115,8 @@ export const RYZHKOV_2014_S_10C: AttenuationRateLaw = {
 /**
  * All of it at S band: it follows the size of drops, which changes R(Z) by 40 % either way from storm to storm. In
  * eight storms with known rain (one radar, loss given back) it took the error of the total from 1.0-5.4 mm to 0.8-2.8.
- * At C band, where ZDR must first be freed of its loss and big drops resonate, it made the total wetter by a tenth and
- * more, and has no part; X band was not tried. House rule.
+ * At C band, where big drops resonate, its law made 1.1 to 1.6 times the true rain from 34 dBZ up, though ZDR was well
+ * freed of its loss, and has no part; X band was not tried. House rule.
  */
 const ZDR_SHARE = { S: 1, others: 0 } as const;
 
