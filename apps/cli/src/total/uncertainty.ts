@@ -300,11 +300,14 @@ function distanceToNearest(
   };
 }
 
-/** Side of the square that each gauge has to itself in the rectangle around all, km. */
+/** Side of the square that each gauge has to itself in the rectangle around all, km; on a line, their distance. */
 function meanSpacingKm(gauges: readonly HeldOutGauge[]): number {
-  const x = gauges.map(({ gauge }) => gauge.xKm);
-  const y = gauges.map(({ gauge }) => gauge.yKm);
-  const area = (Math.max(...x) - Math.min(...x)) * (Math.max(...y) - Math.min(...y));
+  const extent = (of: (gauge: HeldOutGauge["gauge"]) => number) => {
+    const values = gauges.map(({ gauge }) => of(gauge));
+    return Math.max(...values) - Math.min(...values);
+  };
+  const [width, height] = [extent(({ xKm }) => xKm), extent(({ yKm }) => yKm)];
+  const area = Math.max(width * height, Math.max(width, height) ** 2 / gauges.length);
   return Math.max(1, Math.sqrt(area / gauges.length));
 }
 
