@@ -247,6 +247,72 @@ describe("one asymmetric wet pattern lies at its place on Earth", () => {
   });
 });
 
+describe("what the report's page is told", () => {
+  interface Stored {
+    nx: number;
+    ny: number;
+    block: number;
+    step: number;
+    offset: number;
+    count: number;
+    data: string;
+  }
+  interface Told {
+    map: {
+      nx: number;
+      ny: number;
+      lattice: { across: number; down: number; lonDeg: number[]; latDeg: number[] };
+    };
+    layers: {
+      id: string;
+      group: string;
+      field: Stored;
+      frames?: { intervals: number[][]; fields: Stored };
+    }[];
+  }
+  const told = (): Told => {
+    const report = readFileSync(path.join(run, "report.html"), "utf8");
+    return JSON.parse(/id="report-data">(.*?)<\/script>/s.exec(report)![1]!) as Told;
+  };
+
+  /** Values of all fields, read as the page's contract says: differences along rows, low bytes before high ones. */
+  function valuesOf({ nx, ny, step, offset, count, data }: Stored): number[] {
+    const bytes = inflateSync(Buffer.from(data, "base64"));
+    const all = nx * ny * count;
+    let left = 0;
+    return Array.from({ length: all }, (_, at) => {
+      left = ((at % nx === 0 ? 0 : left) + bytes[at]! + 256 * bytes[all + at]!) % 65_536;
+      return left === 0 ? Number.NaN : offset + (left - 1) * step;
+    });
+  }
+
+  test("the total lies in its cells, and its one hour is the total", () => {
+    const layer = told().layers.find(({ id }) => id === "radar-total")!;
+    const total = valuesOf(layer.field);
+    const depth = array("radar_total");
+    for (const [cell, mm] of total.entries()) {
+      if (Number.isNaN(depth[cell])) expect(mm).toBeNaN();
+      else expect(Math.abs(mm - depth[cell]!)).toBeLessThanOrEqual(0.0501);
+    }
+    expect(layer.frames?.intervals).toEqual([[FROM, FROM + HOUR_MS]]);
+    expect(valuesOf(layer.frames!.fields)).toEqual(total);
+  });
+
+  test("corners of the lattice lie on Earth where the grid does", () => {
+    const { map } = told();
+    const lon = array("lon");
+    const lat = array("lat");
+    const { across, lonDeg, latDeg } = map.lattice;
+    // The middle of the grid is a corner of the lattice and of four cells: their mean, to the last digit kept.
+    const corner = (map.lattice.down / 2) * (across + 1) + across / 2;
+    const [column, row] = [map.nx / 2, map.ny / 2];
+    const around = [row - 1, row].flatMap((r) => [column - 1, column].map((c) => r * map.nx + c));
+    const mean = (of: ArrayLike<number>) => around.reduce((sum, cell) => sum + of[cell]!, 0) / 4;
+    expect(Math.abs(lonDeg[corner]! - mean(lon))).toBeLessThan(2e-4);
+    expect(Math.abs(latDeg[corner]! - mean(lat))).toBeLessThan(2e-4);
+  });
+});
+
 /** What a program of other people prints. */
 function tool(name: string, args: readonly string[], input?: string): string {
   const { stdout, status, stderr, error } = spawnSync(name, args, {

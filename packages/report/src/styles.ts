@@ -214,7 +214,7 @@ body{font-size:9.5pt;line-height:1.4;-webkit-print-color-adjust:exact;print-colo
 header,main{max-width:none;padding:0}
 header{padding-top:0}
 .small,figcaption,.key,.lead{font-size:8.5pt}
-footer,.contents,.map-block>legend,.map-block>input,.map-block>label,details{display:none}
+footer,.contents,.screen-only,.map-block>legend,.map-block>input,.map-block>label,details{display:none}
 section{margin-top:22pt}
 h1{font-size:17pt}h2{font-size:13pt;break-after:avoid}h3{break-after:avoid}
 .headline{font-size:12.5pt;margin:10pt 0}
@@ -242,5 +242,5 @@ p,li{break-inside:avoid}
 thead{display:table-header-group}
 table{font-size:8.5pt}
 th,td,caption{padding:3pt 8pt 3pt 0}
-.words{min-width:13ch}.scores th[scope=row],.scores td{min-width:0}
+.words{min-width:11ch}.evidence{width:46%}.scores th[scope=row],.scores td{min-width:0}
 .glossary{grid-template-columns:1fr 1fr}}`;

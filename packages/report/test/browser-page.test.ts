@@ -341,6 +341,7 @@ describe.skipIf(!BROWSER_WANTED)("the living page in Chromium (skipped without R
       const results = (await page.evaluate(
         "axe.run(document, { resultTypes: ['violations'] })",
       )) as AxeResults;
+      expect(results.passes.length).toBeGreaterThan(20);
       expect(
         results.violations.map(({ id, impact, nodes }) => [
           impact,

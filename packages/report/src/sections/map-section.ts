@@ -22,7 +22,7 @@ export function mapSection(input: ReportInput, classed: readonly ClassedLayer[])
       html`<input type="radio" name="map-layer" id="show-${index}"${index === shown && html` checked`}><label for="show-${index}">${layer.label}</label>`,
   )}<div class="map-body"><div class="map-sheet">${svgMap(input, layers)}</div><div class="map-side">${layers.map(
     (drawn, index) => legend(drawn, index),
-  )}${placesLegend(input)}${mapNotes(input, layers)}</div></div></fieldset></section>`;
+  )}${placesLegend(input)}${mapNotes(input, layers)}</div></div></fieldset><noscript><p class="small screen-only">Where its script may run, this page shows further layers, each interval, values at a place, and tables that sort and copy.</p></noscript></section>`;
 }
 
 function legend(drawn: DrawnLayer, index: number): Markup {
