@@ -375,6 +375,10 @@ describe("rain seen in part", () => {
     const place = placeOf(await event(partial, "--asset", "PS-07"), "PS-07");
     expect(peak(place, 10)).toMatchObject({ lowerBound: false, observedFraction: 1 });
     expect(peak(place, 60)).toMatchObject({ lowerBound: true });
+    // The tables leave a depth out that was seen to two thirds; the lower bound is still the adjusted one.
+    const adjusted = manifestOf(partial).headline.adjustmentMethod !== null;
+    expect(place.figure).toBe(adjusted ? "adjusted" : "radar");
+    expect(place.window).toMatchObject({ lowerBound: true, adjustedMm: null });
     expect(peak(place, 60).observedFraction).toBeCloseTo(40 / 60, 1);
     expect(place.events[0]).toMatchObject({ unseenSteps: 4, lowerBound: true });
     const { stdout } = await inProcess(["event", partial, "--asset", "PS-07"]);

@@ -3,7 +3,7 @@ import { tmpdir } from "node:os";
 import path from "node:path";
 import { writeCsv } from "@rainreckon/formats";
 import { expect, test } from "vitest";
-import { ownCsvRows } from "./own-csv.ts";
+import { ownCsvRows, ownCsvStream } from "./own-csv.ts";
 
 test("reads what the writer writes, cell for cell", async () => {
   const folder = mkdtempSync(path.join(tmpdir(), "rainreckon-csv-"));
@@ -30,4 +30,18 @@ test("reads what the writer writes, cell for cell", async () => {
     { id: "'=1+1", name: "", depth_mm: "0.00" },
   ]);
   rmSync(folder, { recursive: true });
+});
+
+test("line by line the same rows come, an empty last cell among them", async () => {
+  const text = 'id,name,share\n"a,1","say ""so""",\nb,,0.5\n';
+  async function* lines() {
+    yield* text.trimEnd().split("\n");
+  }
+  const rows: Record<string, string>[] = [];
+  for await (const row of ownCsvStream(lines())) rows.push(row);
+  expect(rows).toEqual(ownCsvRows(text));
+  expect(rows).toEqual([
+    { id: "a,1", name: 'say "so"', share: "" },
+    { id: "b", name: "", share: "0.5" },
+  ]);
 });

@@ -11,6 +11,17 @@ export function ownCsvRows(text: string): Record<string, string>[] {
     .map((cells) => Object.fromEntries(header.map((name, index) => [name, cells[index] ?? ""])));
 }
 
+/** Rows of such a table from its lines, one at a time: no cell of ours holds a line break. */
+export async function* ownCsvStream(lines: AsyncIterable<string>): AsyncGenerator<Record<string, string>> {
+  let header: readonly string[] | undefined;
+  for await (const line of lines) {
+    // With its line end, so that an empty last cell is one.
+    const cells = cellsOf(`${line}\n`)[0] ?? [];
+    if (header === undefined) header = cells;
+    else yield Object.fromEntries(header.map((name, index) => [name, cells[index] ?? ""]));
+  }
+}
+
 function cellsOf(text: string): string[][] {
   const lines: string[][] = [];
   let line: string[] = [];

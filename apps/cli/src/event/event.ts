@@ -21,7 +21,7 @@ import { placesAsked, remadeSeries } from "./remade-series.ts";
 import { ruleOf } from "./rule.ts";
 import { gridSeries, openRunGrid, type RunGrid } from "./run-grid.ts";
 import type { EventReport } from "./schema.ts";
-import { storedPlaces } from "./stored-series.ts";
+import { storedSeries } from "./stored-series.ts";
 
 const MINUTE_MS = 60_000;
 
@@ -226,8 +226,6 @@ async function seriesAsked(
   asked: EventAsked,
   terminal: Terminal,
 ): Promise<{ readonly series: PlaceSeries[]; readonly remarks: readonly string[] }> {
-  const catchments = await storedPlaces(run, "catchment");
-  const assets = await storedPlaces(run, "asset");
   const { points, gauges, assetsFile } = asked;
   const named = asked.catchments.length + asked.assets.length + points.length + gauges.length;
   // A table of points of its own takes the place of the plan's; with --asset, one point of it.
@@ -239,8 +237,8 @@ async function seriesAsked(
     });
   const all = named === 0 && fromFile === undefined;
   const stored = [
-    ...(all ? catchments.ids : asked.catchments).map((id) => catchments.seriesOf(id)),
-    ...(all ? assets.ids : fromFile === undefined ? asked.assets : []).map((id) => assets.seriesOf(id)),
+    ...(await storedSeries(run, "catchment", all ? "all" : asked.catchments)),
+    ...(await storedSeries(run, "asset", all ? "all" : fromFile === undefined ? asked.assets : [])),
   ];
   const count = (ofFile?.length ?? 0) + points.length + gauges.length;
   if (count === 0) return { series: stored, remarks: [] };
