@@ -58,6 +58,7 @@ svg.scatter [data-place]{cursor:pointer}
 .series-cursor{stroke:var(--ink);stroke-width:1;fill:none}
 .series .band{fill:var(--accent);fill-opacity:.14}
 .range{stroke:var(--ink);stroke-width:1.5;fill:none}
+.table-home{min-width:0}
 .table-tools{display:flex;flex-wrap:wrap;align-items:center;gap:6px;margin:0 0 6px;font-size:.8rem;color:var(--soft)}
 .table-tools button{padding:1px 8px;min-height:26px}
 .sort{border:0;background:none;padding:0;min-height:24px;font:inherit;color:inherit;text-align:inherit;border-radius:2px}

@@ -241,6 +241,21 @@ describe.skipIf(!BROWSER_WANTED)("the living page in Chromium (skipped without R
     expect(await column()).toEqual(before);
   });
 
+  test("the table stays beside its charts, with its tools above it", async () => {
+    const boxOf = async (selector: string) => {
+      const box = await page.locator(selector).first().boundingBox();
+      if (box === null) throw new Error(`${selector} is not shown`);
+      return box;
+    };
+    const chart = await boxOf("#gauges-radar figure");
+    const tools = await boxOf("#gauges-radar .table-tools");
+    const table = await boxOf("#gauges-radar .scroll");
+    expect(table.x).toBeGreaterThanOrEqual(chart.x + chart.width);
+    expect(table.x).toBeCloseTo(tools.x, 0);
+    expect(table.y).toBeGreaterThanOrEqual(tools.y + tools.height);
+    expect(table.y).toBeLessThan(chart.y + chart.height);
+  });
+
   test("tables copy as CSV and TSV: plain numbers, marks in a column of their own, missing empty with its reason", async () => {
     const section = page.locator("#catchments");
     await section.getByRole("button", { name: "Copy as CSV" }).click();

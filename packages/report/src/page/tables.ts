@@ -17,15 +17,17 @@ export function tableTools(table: HTMLTableElement, holder: Element): void {
       });
     });
   const caption = table.caption?.textContent ?? "this table";
-  holder.before(
-    el(
-      "div",
-      { class: "table-tools", role: "group", "aria-label": `Copy: ${caption}` },
-      copy("CSV", ","),
-      copy("TSV", "\t"),
-      said,
-    ),
+  const tools = el(
+    "div",
+    { class: "table-tools", role: "group", "aria-label": `Copy: ${caption}` },
+    copy("CSV", ","),
+    copy("TSV", "\t"),
+    said,
   );
+  // The table and its tools take the place that the table had, in a grid too.
+  const home = el("div", { class: "table-home" });
+  holder.replaceWith(home);
+  home.append(tools, holder);
 }
 
 function sortable(
