@@ -60,8 +60,9 @@ export function bayesianLogFactor(
   );
   const isLarge = n > WEIGHED_UP_TO;
   const sample = isLarge ? thinned(factors, WEIGHED_UP_TO) : factors;
+  const alike = RANGES.map((range) => correlations(sample.places, range * spacingKm));
   const weighed = models.flatMap((model) => {
-    const solved = solve(sample, model, spacingKm);
+    const solved = solve(sample, model, alike[RANGES.indexOf(model.range)]);
     return solved === undefined ? [] : [{ model, solved }];
   });
   const most = Math.max(...weighed.map(({ solved }) => solved.logLikelihood));
@@ -71,7 +72,7 @@ export function bayesianLogFactor(
   const sum = likely.reduce((total, { weight }) => total + weight, 0);
   const kept = isLarge
     ? likely.slice(0, 1).flatMap(({ model }) => {
-        const solved = solve(factors, model, spacingKm);
+        const solved = solve(factors, model, correlations(factors.places, model.range * spacingKm));
         return solved === undefined ? [] : [{ model, solved, weight: 1 }];
       })
     : likely.filter(({ weight }) => weight > LEAST_SHARE * sum);
@@ -116,19 +117,29 @@ function gaussianSum({ xKm, yKm }: Places, dual: Float64Array, rangeKm: number):
   };
 }
 
-/** One model: its restricted likelihood, its mean and its duals; undefined where its system is singular. */
-function solve(factors: LogFactors, model: Model, spacingKm: number): Solved | undefined {
-  const { xKm, yKm } = factors.places;
-  const { logFactor, logRadar, errorVariance } = factors;
-  const n = logFactor.length;
-  const middle = meanOf(Array.from(logRadar));
-  const scale = -1 / (model.range * spacingKm) ** 2;
-  const lower = new Float64Array(n * n);
+/** Of places under one range, lower triangle; shape [n, n]. The models of a range share it. */
+function correlations({ xKm, yKm }: Places, rangeKm: number): Float64Array {
+  const n = xKm.length;
+  const matrix = new Float64Array(n * n);
   for (let i = 0; i < n; i++) {
     for (let j = 0; j <= i; j++) {
       const squared = (xKm[i] - xKm[j]) ** 2 + (yKm[i] - yKm[j]) ** 2;
+      matrix[i * n + j] = Math.exp(-squared / (rangeKm * rangeKm));
+    }
+  }
+  return matrix;
+}
+
+/** One model: its restricted likelihood, its mean and its duals; undefined where its system is singular. */
+function solve(factors: LogFactors, model: Model, alike: Float64Array): Solved | undefined {
+  const { logFactor, logRadar, errorVariance } = factors;
+  const n = logFactor.length;
+  const middle = meanOf(Array.from(logRadar));
+  const lower = new Float64Array(n * n);
+  for (let i = 0; i < n; i++) {
+    for (let j = 0; j <= i; j++) {
       lower[i * n + j] =
-        model.deviation ** 2 * Math.exp(scale * squared) +
+        model.deviation ** 2 * alike[i * n + j] +
         SLOPE_DEVIATION ** 2 * (logRadar[i] - middle) * (logRadar[j] - middle);
     }
     lower[i * n + i] += errorVariance[i] + model.nugget ** 2;

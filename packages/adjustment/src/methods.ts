@@ -99,7 +99,7 @@ const RANGE_FROM = 8;
 const DRIFT_FROM = 8;
 const BAYESIAN_FROM = 5;
 /** What `combined` is the mean of: one spreads factors by distance alone, the other by what the gauges say of them. */
-const COMBINED = ["brandes", "kriging-bayesian"] as const;
+export const COMBINED = ["brandes", "kriging-bayesian"] as const;
 /** Smallest error of a gauge's depth, mm: half a tip of 0.2 mm. House rule. */
 const LEAST_ERROR_MM = 0.1;
 /** Radar depth at which a mismatch turns from absolute to relative, mm. House rule. */
@@ -203,16 +203,8 @@ export function learnMethod(
         radarMm > 0 ? radarMm * limited(Math.exp(log(x, y, Math.log(radarMm))), settings.factorLimits) : 0,
       );
     }
-    case "combined": {
-      // Two sound forecasts that err in different ways are worth more together, and equal weights do as well as
-      // fitted ones (Bates & Granger 1969, Operational Research Quarterly 20, 451-468).
-      const parts = COMBINED.map((part) => learnMethod(part, gauges, settings));
-      for (const part of parts) notes.push(...part.notes);
-      return field(
-        (x, y, radarMm, rangeKm) =>
-          parts.reduce((sum, part) => sum + windowDepthMm(part, x, y, radarMm, rangeKm), 0) / parts.length,
-      );
-    }
+    case "combined":
+      return combined(COMBINED.map((part) => learnMethod(part, gauges, settings)));
     case "gauges-alone": {
       if (places.length === 0) return instead("no gauge with a whole window");
       const depth = gaugesAlone(places, settings, (note) => notes.push(note));
@@ -353,6 +345,22 @@ function interpolant(
   const at = placesOf(places);
   if (!kriged) return (x, y) => inverseDistance(at, values, 2, x, y);
   return krigedOr(at, values, errorVariance, variogramOf(at, values, settings), (note) => notes.push(note));
+}
+
+/**
+ * The mean of what `COMBINED` have learned. Two sound forecasts that err in different ways are worth more together, and
+ * equal weights do as well as fitted ones (Bates & Granger 1969, Operational Research Quarterly 20, 451-468).
+ */
+export function combined(parts: readonly LearnedMethod[]): LearnedMethod {
+  return {
+    kind: "field",
+    usesRange: false,
+    notes: parts.flatMap((part) => part.notes),
+    depthMm: (x, y, radarMm, rangeKm) =>
+      Number.isNaN(radarMm)
+        ? Number.NaN
+        : parts.reduce((sum, part) => sum + windowDepthMm(part, x, y, radarMm, rangeKm), 0) / parts.length,
+  };
 }
 
 /** Depth of the window by one of the parts of a combination, whose factors, if it has fallen back on one, are constant. */

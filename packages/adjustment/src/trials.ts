@@ -1,5 +1,12 @@
 import { meanRainShare, pairedDepthAt, type RainShare } from "./at-gauge.ts";
-import { type LearnedMethod, learnMethod, type MethodName, type MethodSettings } from "./methods.ts";
+import {
+  COMBINED,
+  combined,
+  type LearnedMethod,
+  learnMethod,
+  type MethodName,
+  type MethodSettings,
+} from "./methods.ts";
 import type { WindowGauge } from "./window-gauges.ts";
 
 /**
@@ -50,11 +57,23 @@ export class Trials {
     return known;
   }
 
+  /** A combination is made of what its parts have learned already. */
+  #learn(
+    name: MethodName,
+    trusted: readonly WindowGauge[],
+    learn: (part: MethodName) => LearnedMethod,
+  ): LearnedMethod {
+    const isOfWindow = this.#settings.over !== "intervals";
+    return name === "combined" && isOfWindow
+      ? combined(COMBINED.map(learn))
+      : learnMethod(name, trusted, this.#settings);
+  }
+
   #trial(heldOut: ReadonlySet<number>): Trial {
     const trusted = this.#trust(this.gauges.filter((_, i) => !heldOut.has(i)));
     const learned = new Map<MethodName, LearnedMethod>();
     const learn = (name: MethodName): LearnedMethod => {
-      const known = learned.get(name) ?? learnMethod(name, trusted, this.#settings);
+      const known = learned.get(name) ?? this.#learn(name, trusted, learn);
       learned.set(name, known);
       return known;
     };
