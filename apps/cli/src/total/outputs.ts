@@ -502,7 +502,10 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "Adjustment",
     ...adjustmentLines(comparison).map((line) => `  ${line}`),
     "",
-    ...uncertaintyLines(sources.uncertainty),
+    ...uncertaintyLines(
+      sources.uncertainty,
+      files.some((file) => file.startsWith("members/")),
+    ),
     "",
     "Verdicts in gauges.csv",
     "  use, use with care, leave out, too little rain to judge; a gauge that is left out shapes nothing. The cause says",

@@ -10,8 +10,12 @@ export function uncertaintyWords({ model, time }: KnownUncertainty): string[] {
   ];
 }
 
-/** How sure depths are, for people who have only the files. */
-export function uncertaintyLines(uncertainty: Uncertainty): string[] {
+/**
+ * How sure depths are, for people who have only the files.
+ *
+ * @param withMembers - whether the run has members
+ */
+export function uncertaintyLines(uncertainty: Uncertainty, withMembers: boolean): string[] {
   if (!uncertainty.known) {
     return [
       "How sure",
@@ -26,6 +30,13 @@ export function uncertaintyLines(uncertainty: Uncertainty): string[] {
     "                      nothing of time or area that was not observed, nor of rain that no gauge and no scan met.",
     "  adjusted_total_standard_error (totals.nc)  of the depth of each single cell, mm; errors of cells side by side are",
     "                      alike, so the error of an area is not to be had by dividing by the root of its cells.",
+    ...(withMembers
+      ? [
+          "  members/*.nc        fields of depth by interval, each as likely as any other to be the true one: they spread as the",
+          "                      standard error says, and are alike in cells side by side. What is dry stays dry in all of them.",
+          "                      members_catchments.csv holds the depth of each catchment, member and interval.",
+        ]
+      : []),
     ...uncertaintyWords(uncertainty).map((line) => `  ${line}`),
   ];
 }
