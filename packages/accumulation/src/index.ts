@@ -42,7 +42,6 @@ export {
   type RainEvent,
   type RainEvents,
   rainEvents,
-  stepsWithin,
 } from "./rain-events.ts";
 export {
   allSteps,

@@ -1,6 +1,6 @@
 import { expect, test } from "vitest";
 import { type DurationMaximum, durationMaxima } from "./depth-duration.ts";
-import { type EventRule, rainEvents, stepsWithin } from "./rain-events.ts";
+import { type EventRule, rainEvents } from "./rain-events.ts";
 import { antecedentDepth, depthOfSteps, type RainSeries } from "./rain-series.ts";
 
 const NO = Number.NaN;
@@ -116,9 +116,4 @@ test("antecedent rain counts what lies before the series as not seen", () => {
     atCap: false,
   });
   expect(antecedentDepth(series([1, 2]), 0, 4 * STEP_MS)).toMatchObject({ depthMm: NO, observedFraction: 0 });
-});
-
-test("only whole steps lie within a span", () => {
-  const of = series([1, 1, 1, 1]);
-  expect(stepsWithin(of, { startEpochMs: 1, endEpochMs: 3 * STEP_MS + 1 })).toEqual({ from: 1, to: 3 });
 });

@@ -1,4 +1,3 @@
-import type { Interval } from "@rainreckon/core";
 import { depthOfSteps, type RainSeries, type SpanDepth, type StepRange } from "./rain-series.ts";
 
 /** What makes an event. */
@@ -84,12 +83,4 @@ export function rainEvents(series: RainSeries, rule: EventRule): RainEvents {
     });
   }
   return { events, dropped };
-}
-
-/** The steps of a series that lie wholly in a span of time. */
-export function stepsWithin(series: RainSeries, span: Interval): StepRange {
-  const count = series.depthMm.length;
-  const from = Math.ceil((span.startEpochMs - series.startEpochMs) / series.stepMs - 1e-9);
-  const to = Math.floor((span.endEpochMs - series.startEpochMs) / series.stepMs + 1e-9);
-  return { from: Math.min(count, Math.max(0, from)), to: Math.max(0, Math.min(count, to)) };
 }
