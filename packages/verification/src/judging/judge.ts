@@ -140,6 +140,9 @@ function decide(
   });
   for (const [check, verdict] of DECISIVE) {
     const finding = of(check);
+    // Steady rain in a mistaken unit repeats itself too: then its factor explains all of it.
+    const isSteady = check === "flat line" || check === "repeated value";
+    if (isSteady && (account.reason?.kind === "unit" || account.reason?.kind === "blocked")) continue;
     if (finding?.numbers.settled === 0) return by(verdict, likelyCause(finding.speaksFor), finding.sentence);
   }
   const isDead = account.reason?.kind === "silent" && account.reason.silent.wholeWindow;
