@@ -218,8 +218,10 @@ function heldOutResiduals(
       gaugeMm: gauge.gaugeMm,
       depthMm: crossValidatedMm,
       gaugeDistanceKm: nearestKm(others, gauge.xKm, gauge.yKm),
+      // A field is asked at the gauge's very point, a factor of its cell.
       gaugeVarianceMm2:
-        errorVariance(held, gauge.gaugeMm) + pointToCellVariance(run.grid, total.planes.totalMm, cell),
+        errorVariance(held, gauge.gaugeMm) +
+        (learned.kind === "field" ? 0 : pointToCellVariance(run.grid, total.planes.totalMm, cell)),
       quality: qualityAt(cell),
     };
   });

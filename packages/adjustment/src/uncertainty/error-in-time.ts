@@ -40,6 +40,9 @@ export function intervalLogDeviation(
 /** What stands where nothing tells. House rules. */
 const LASTING_SHARE = 0.5;
 const HOURS = 1;
+/** Memories that are tried, the longest first: hourly sums cannot tell a long one from what lasts. */
+const TRIED_HOURS = [HOURS, 0.5, 0.25, 0.1];
+const LEAST_LASTING = 0.05;
 /** So many residuals count as much as what is expected. House rule. */
 const EXPECTED_COUNTS_AS = 20;
 /** Median of the square of a standard normal variable. */
@@ -69,11 +72,15 @@ export function learnErrorInTime(
   const usual = intervalFactor(expected, intervalHours) ** 2;
   const weight = shares.length / (shares.length + EXPECTED_COUNTS_AS);
   const ratio = Math.exp(weight * Math.log(told) + (1 - weight) * Math.log(usual));
-  // ratio = (l + (1 - l) f(interval)) / (l + (1 - l) f(window)), solved for l.
-  const short = varianceOfMean(intervalHours / HOURS);
-  const long = varianceOfMean(windowHours / HOURS);
-  const above = short - ratio * long;
-  return { ...expected, lastingShare: Math.min(1, Math.max(0.05, above / (above + ratio - 1))) };
+  for (const hours of TRIED_HOURS) {
+    // ratio = (l + (1 - l) f(interval)) / (l + (1 - l) f(window)), solved for l.
+    const above = varianceOfMean(intervalHours / hours) - ratio * varianceOfMean(windowHours / hours);
+    const lastingShare = above / (above + ratio - 1);
+    // Deviations too large for this memory ask for less than nothing that lasts: a shorter one is tried.
+    if (above > 0 && lastingShare >= LEAST_LASTING)
+      return { lastingShare: Math.min(1, lastingShare), hours, windowHours };
+  }
+  return { lastingShare: LEAST_LASTING, hours: TRIED_HOURS[TRIED_HOURS.length - 1], windowHours };
 }
 
 /** By what the spread of the window is multiplied to have that of an interval. */
