@@ -54,9 +54,11 @@ async function writeScans(folder: string): Promise<void> {
   }
 }
 
+const GAUGE_IDS = ["G1", "G2", "G3", "G4", "G5", "G6", "G7", "G8"];
+
 /** Eight gauges of one network, and one of another that has an id of the first. */
 function writeGauges(folder: string): void {
-  const ids = ["G1", "G2", "G3", "G4", "G5", "G6", "G7", "G8"];
+  const ids = GAUGE_IDS;
   const readings = (names: readonly string[]) =>
     names.flatMap((id, g) =>
       Array.from({ length: 24 }, (_, k) => {
@@ -103,6 +105,17 @@ export async function writeShowers(folder: string): Promise<string> {
         "[{ id: zzwes, medianRoundMinutes: 5, maxGapMinutes: 12.5 }, { id: zzeas, medianRoundMinutes: 5, maxGapMinutes: 12.5, offsetDb: 1 }]",
       gauges: `${network("net")}${network("far")}`,
       adjustment: "{ method: idw-additive }",
+      // Readings drawn by lot agree with no radar: they are used because a person says so.
+      overrides: JSON.stringify(
+        [...GAUGE_IDS.map((gauge) => ["net", gauge]), ["far", "G1"]].map(([net, gauge]) => ({
+          network: net,
+          gauge,
+          verdict: "use",
+          reason: "drawn by lot",
+          by: "the test",
+          date: "2031-06-02",
+        })),
+      ),
     }),
   );
 }

@@ -78,7 +78,8 @@ export class AdjustedBy {
         gaugeId: gauge.gaugeId,
         distanceKm: finite(distanceKm),
         gaugeMm: gauge.gaugeMm,
-        radarMm: gauge.radarMm,
+        // What interpolates compares with the radar at the gauge's very point.
+        radarMm: adjustment.learned.kind === "field" ? gauge.radarPointMm : gauge.radarMm,
         weight: adjustment.method === "mean-field-bias" && radarSumMm > 0 ? gauge.radarMm / radarSumMm : null,
         mmPerMm: finite(this.#figure(more, gauges, figure) - adjustedMm),
         withoutMm: finite(
