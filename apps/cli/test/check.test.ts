@@ -152,5 +152,14 @@ describe("the words", () => {
     expect(trustSentence(made, [])).toBe(
       "The radar shows 117 % more than 6 gauges in use, and four in five of them lie within 8 % of that.",
     );
+    const [radar] = (await checked(RUN)).radars;
+    const level = { name: "radar-level", blame: "radar" as const, words: "radar: level" };
+    const doubted = ["A", "B"].map((radarId) => ({
+      ...radar!,
+      radarId,
+      verdict: "use with care" as const,
+      cause: level,
+    }));
+    expect(trustSentence(made, doubted)).toMatch(/8 % of that; doubt A and B: level\.$/);
   });
 });

@@ -2,6 +2,7 @@ import { displayText } from "@rainreckon/formats";
 import { counted, depthText, fixedDecimals, localText, utcText } from "../ui/numbers.ts";
 import type { Terminal } from "../ui/terminal.ts";
 import type { CheckDocument, CheckedGauge, CheckedRadar } from "./schema.ts";
+import { radarCauseWords } from "./trust.ts";
 
 /** What fits on a screen of 80 columns and 24 lines with the line of the prompt. */
 const WIDTH = 80;
@@ -85,8 +86,14 @@ function radarLines(radar: CheckedRadar): string[] {
     ratio === null
       ? "no ratio to gauges"
       : `radar/gauge ${percent(ratio)} (${percent(low)} to ${percent(high)}) at ${counted(gauges, "gauge")}`;
-  const words = radar.cause === null ? SHORT[radar.verdict] : `${SHORT[radar.verdict]}: ${radar.cause.words}`;
-  return [cut(`radar ${displayText(radar.radarId)}: ${words}; ${numbers}`, WIDTH)];
+  const words = radarCauseWords(radar.cause);
+  const cause = words === "" ? "" : `; ${words}`;
+  return [
+    cut(
+      `radar ${displayText(radar.radarId)}: ${SHORT[radar.verdict]}; ${numbers}${displayText(cause)}`,
+      WIDTH,
+    ),
+  ];
 }
 
 function windowWords({ window: { start, end, zone } }: CheckDocument): string {

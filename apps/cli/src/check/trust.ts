@@ -26,10 +26,22 @@ export function trustSentence(gauges: readonly CheckedGauge[], radars: readonly 
   const usual = strays[Math.min(strays.length - 1, Math.floor(0.8 * strays.length))] as number;
   const off = Math.round(100 * (ratio - 1));
   const level = off === 0 ? "as much as" : `${Math.abs(off)} % ${off > 0 ? "more" : "less"} than`;
-  const doubted = radars.filter(({ verdict }) => verdict === "leave out" || verdict === "use with care");
-  const doubt =
-    doubted.length === 0
-      ? ""
-      : `; doubt ${doubted.map(({ radarId, cause }) => `${radarId}${cause === null ? "" : ` (${cause.words})`}`).join(", ")}`;
-  return `The radar shows ${level} ${counted(sound.length, "gauge")} in use, and four in five of them lie within ${Math.round(100 * usual)} % of that${doubt}.`;
+  return `The radar shows ${level} ${counted(sound.length, "gauge")} in use, and four in five of them lie within ${Math.round(100 * usual)} % of that${doubtWords(radars)}.`;
+}
+
+/** Radars in doubt, those of one cause together. */
+function doubtWords(radars: readonly CheckedRadar[]): string {
+  const byCause = new Map<string, string[]>();
+  for (const { radarId, verdict, cause } of radars) {
+    if (verdict !== "leave out" && verdict !== "use with care") continue;
+    const words = radarCauseWords(cause);
+    byCause.set(words, [...(byCause.get(words) ?? []), radarId]);
+  }
+  const parts = [...byCause].map(([words, ids]) => `${ids.join(" and ")}${words === "" ? "" : `: ${words}`}`);
+  return parts.length === 0 ? "" : `; doubt ${parts.join("; ")}`;
+}
+
+/** A cause beside the name of its radar, which need not be called one again. */
+export function radarCauseWords(cause: CheckedRadar["cause"]): string {
+  return cause?.words.replace(/^radar: /, "") ?? "";
 }

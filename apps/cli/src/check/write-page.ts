@@ -3,6 +3,7 @@ import { type CheckBias, checkPage } from "@rainreckon/report";
 import { STANDING_CAUTIONS } from "../total/cautions.ts";
 import { localText, utcText } from "../ui/numbers.ts";
 import type { CheckDocument, CheckedRadar } from "./schema.ts";
+import { radarCauseWords } from "./trust.ts";
 
 /** Writes a check as one offline page. */
 export async function writeCheckPage(file: string, check: CheckDocument): Promise<void> {
@@ -34,7 +35,7 @@ export async function writeCheckPage(file: string, check: CheckDocument): Promis
       radars: check.radars.map((radar) => ({
         radar: radar.radarId,
         verdict: radar.verdict,
-        cause: radar.cause?.words ?? "",
+        cause: radarCauseWords(radar.cause),
         sentence: radar.sentence,
         groups: groupsOf(radar),
       })),
