@@ -41,6 +41,7 @@ export type {
   ReportGauge,
   ReportInput,
   ReportRadar,
+  ReportRadarVerdict,
   ReportScore,
   ReportScores,
   StepSeries,

@@ -160,6 +160,15 @@ export interface ReportGauge {
   readonly reason?: string;
 }
 
+/** What the gauges in use and its neighbours make of a radar. */
+export interface ReportRadarVerdict {
+  readonly radarId: string;
+  readonly verdict: string;
+  /** Empty where nothing asks for one. */
+  readonly cause: string;
+  readonly sentence: string;
+}
+
 /** A point that figures are asked for. */
 export interface ReportAsset {
   readonly id: string;
@@ -323,6 +332,7 @@ export interface ReportInput {
   readonly assetsLeftOut?: number;
   readonly radars: readonly ReportRadar[];
   readonly gauges: readonly ReportGauge[];
+  readonly radarVerdicts?: readonly ReportRadarVerdict[];
   readonly catchments: readonly ReportCatchment[];
   readonly gaugeHyetographs: readonly Hyetograph[];
   readonly catchmentHyetographs: readonly Hyetograph[];

@@ -137,6 +137,13 @@ test("a choice among methods shows its table, its rule, and the error that had n
   expect(words(page)).not.toContain("Ways to adjust");
 });
 
+test("a radar has its verdict below those of the gauges; without any there is no head for it", () => {
+  const section = (page: string) => /<section id="gauges"[\s\S]*?<\/section>/.exec(page)?.[0] ?? "";
+  const input = inventedInput();
+  expect(section(renderReport(input))).toContain("It has 0.85 times the rain of 20 trusted gauges.");
+  expect(section(renderReport({ ...input, radarVerdicts: [] }))).not.toContain("<h3>Radars</h3>");
+});
+
 test("scores are sentences with radar/gauge said, their count, and their intervals", () => {
   const text = words(page);
   expect(text).toContain(

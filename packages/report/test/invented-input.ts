@@ -472,6 +472,14 @@ export function inventedInput(): ReportInput {
     assets: [{ id: "P7", name: "Pumping station", xM: 9500, yM: 9500 }],
     radars,
     gauges: allGauges,
+    radarVerdicts: [
+      {
+        radarId: radars[0].id,
+        verdict: "use with care",
+        cause: "level of the whole radar",
+        sentence: "It has 0.85 times the rain of 20 trusted gauges.",
+      },
+    ],
     catchments: allCatchments,
     gaugeHyetographs: allGauges.map((gauge, i) =>
       hyetograph(gauge.id, `${gauge.id} ${gauge.network}`, [

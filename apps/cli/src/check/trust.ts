@@ -42,6 +42,6 @@ function doubtWords(radars: readonly CheckedRadar[]): string {
 }
 
 /** A cause beside the name of its radar, which need not be called one again. */
-export function radarCauseWords(cause: CheckedRadar["cause"]): string {
+export function radarCauseWords(cause: { readonly words: string } | null | undefined): string {
   return cause?.words.replace(/^radar: /, "") ?? "";
 }

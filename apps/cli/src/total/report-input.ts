@@ -13,6 +13,7 @@ import type {
   ReportScore,
 } from "@rainreckon/report";
 import type { ScoreTable } from "@rainreckon/verification";
+import { radarCauseWords } from "../check/trust.ts";
 import type { ManifestNotice } from "../manifest.ts";
 import type { PlanRadar } from "../plan/schema.ts";
 import { countText, lengthText } from "../ui/numbers.ts";
@@ -127,6 +128,12 @@ export function reportInput(sources: ReportSources): ReportInput {
         run.shape.grids.map(({ id }) => ({ id, xM: Number.NaN, yM: Number.NaN, name: "gridded rain" })),
       ),
     gauges: comparison.gauges.map((gauge) => reportGauge(gauge, comparison)),
+    radarVerdicts: comparison.radars.map(({ radarId, verdict, cause, sentence }) => ({
+      radarId,
+      verdict,
+      cause: radarCauseWords(cause),
+      sentence,
+    })),
     catchments: run.catchments.map((catchment): ReportCatchment => {
       const areal = windowFigure(catchment.cells, sources);
       return {

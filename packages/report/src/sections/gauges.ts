@@ -1,7 +1,7 @@
 import { swatch } from "../charts/hatch.ts";
 import { gaugeMark, ROLE_WORDS } from "../charts/marks.ts";
 import { type ScatterPoint, scatterWords, svgScatter } from "../charts/scatter.ts";
-import type { ReportGauge, ReportInput } from "../input.ts";
+import type { ReportGauge, ReportInput, ReportRadarVerdict } from "../input.ts";
 import { missing, orMissing } from "../text/figures.ts";
 import { html, type Markup } from "../text/html.ts";
 import { counted, mmText, percentText, ratioText } from "../text/numbers.ts";
@@ -87,7 +87,15 @@ export function verdictSection(input: ReportInput): Markup {
   return html`<section id="gauges" aria-labelledby="verdict-heading"><h2 id="verdict-heading">Gauges: verdict, cause, evidence</h2><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each gauge"><table><caption>Doubted gauges first</caption><thead><tr><th scope="col">Gauge</th><th scope="col">Part</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th><th scope="col">Radar</th><th scope="col" class="number">Range km</th><th scope="col" class="number">Time shared</th></tr></thead><tbody>${sorted.map(
     (gauge) =>
       html`<tr>${gaugeHead(gauge)}${roleCell(gauge)}<td>${gauge.verdict}</td><td class="words">${wordsOrDash(causeOf(gauge), "no cause was found or looked for")}</td><td class="words evidence">${wordsOrDash(gauge.evidence, "no evidence was recorded")}</td><td class="name">${wordsOrDash(gauge.radarId ?? "", "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.rangeKm ?? Number.NaN, (km) => String(Math.round(km)), "no radar observed this gauge")}</td><td class="number">${orMissing(gauge.commonFraction, percentText, reasonFor(gauge))}</td></tr>`,
-  )}</tbody></table></div></section>`;
+  )}</tbody></table></div>${radarVerdicts(input.radarVerdicts ?? [])}</section>`;
+}
+
+function radarVerdicts(radars: readonly ReportRadarVerdict[]): Markup | false {
+  if (radars.length === 0) return false;
+  return html`<h3>Radars</h3><div class="scroll" role="region" tabindex="0" aria-label="Verdict on each radar"><table><caption>By the gauges in use and by each other</caption><thead><tr><th scope="col">Radar</th><th scope="col">Verdict</th><th scope="col">Likely cause</th><th scope="col">Evidence</th></tr></thead><tbody>${radars.map(
+    ({ radarId, verdict, cause, sentence }) =>
+      html`<tr><th scope="row"><span class="id">${radarId}</span></th><td>${verdict}</td><td class="words">${wordsOrDash(cause, "no cause was found or looked for")}</td><td class="words evidence">${sentence}</td></tr>`,
+  )}</tbody></table></div>`;
 }
 
 /** The cause that was found; for a gauge without one, why it could not take part. */
