@@ -59,23 +59,36 @@ export function bestFactor(steps: Aligned, ratioDb: number, levelDb: number): Ot
 }
 
 /** The shift of its clock under which a gauge fits best; steps of five minutes where the radar has them. */
-export function bestClock(
-  { evidence, gaugeMm, stepMs, lead, firstBase, tipMm }: Aligned,
-  levelDb: number,
-): ShiftedClock | undefined {
-  const perStep = Math.round(stepMs / evidence.radar.stepMs);
-  const most = Math.floor(MOST_LAG_MS / evidence.radar.stepMs);
+export function bestClock(steps: Aligned, levelDb: number): ShiftedClock | undefined {
+  const baseMs = steps.evidence.radar.stepMs;
+  const most = Math.floor(MOST_LAG_MS / baseMs);
   let best: Omit<ShiftedClock, "wholeHours"> | undefined;
   const wholeHours: ShiftedClock[] = [];
   for (let shift = -most; shift <= most; shift++) {
-    const radarMm = radarOnSteps(evidence, perStep, gaugeMm.length, firstBase - lead * perStep - shift);
-    const found = alternative(gaugeMm, radarMm, levelDb, tipMm);
+    const minutesLate = (shift * baseMs) / 60_000;
+    const found = underClock(steps, levelDb, minutesLate);
     if (found === undefined) continue;
-    const minutesLate = (shift * evidence.radar.stepMs) / 60_000;
     if (minutesLate % 60 === 0 && shift !== 0) wholeHours.push({ ...found, minutesLate, wholeHours: [] });
     if (best === undefined || found.misfit < best.misfit) best = { ...found, minutesLate };
   }
   return best === undefined ? undefined : { ...best, wholeHours };
+}
+
+/**
+ * How well a gauge fits if its stamps are so many minutes late, in whole steps of the radar.
+ *
+ * @returns undefined where such a shift leaves too little to compare
+ */
+export function underClock(
+  { evidence, gaugeMm, stepMs, lead, firstBase, tipMm }: Aligned,
+  levelDb: number,
+  minutesLate: number,
+): Alternative | undefined {
+  const baseMs = evidence.radar.stepMs;
+  const perStep = Math.round(stepMs / baseMs);
+  const shift = Math.round((minutesLate * 60_000) / baseMs);
+  const radarMm = radarOnSteps(evidence, perStep, gaugeMm.length, firstBase - lead * perStep - shift);
+  return alternative(gaugeMm, radarMm, levelDb, tipMm);
 }
 
 /** The place of the field at which a gauge fits best. */
