@@ -69,12 +69,12 @@ describe("radar alone, without gauges or catchments", () => {
     );
     const { headline } = manifestOf(run);
     expect(headline).toMatchObject({ districtAdjustedMm: null, crossValidatedErrorMm: null, catchments: [] });
-    expect(headline.adjustmentReason).toMatch(/0 trusted gauges/);
+    expect(headline.adjustmentReason).toBe("no gauge with readings stands on the grid");
     expect(headline.cautions).toEqual(
       expect.arrayContaining(["There are no gauges beside this total: nothing checks it."]),
     );
     expect(readFileSync(path.join(run, "README.txt"), "utf8")).toMatch(
-      /There are no adjusted depths: 0 trusted gauges/,
+      /There are no adjusted depths: no gauge with readings stands on the grid/,
     );
     for (const table of ["catchments.csv", "pairs.csv", "gauges.csv"]) {
       expect(csvRows(path.join(run, table))).toEqual([]);
