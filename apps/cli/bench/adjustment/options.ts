@@ -1,43 +1,12 @@
-import os from "node:os";
-import path from "node:path";
 import { parseArgs } from "node:util";
-import { seedsOf } from "../ablation/options.ts";
+import { WORLD_FLAGS, type WorldOptions, worldOptions, worldUsage } from "../shared/world-options.ts";
 import { ADJUSTMENT_WORLDS } from "./worlds.ts";
 
-export interface AdjustmentOptions {
-  readonly worlds: readonly string[];
-  readonly seeds: readonly number[];
-  readonly cache: string;
-  /** A file of results: what it holds is not measured again. */
-  readonly results: string | undefined;
-}
-
 export const USAGE = `npm run bench -- adjustment [--worlds a,b] [--seeds 1-2,5] [--cache DIR] [--results FILE]
-  --worlds A,B   ${ADJUSTMENT_WORLDS.join(", ")}   [all of them]
-  --seeds LIST   1 to 10 are for tuning, 11 to 30 for reporting   [1]
-  --cache DIR    where worlds are made and kept; RAINRECKON_WORLDS says it too   [a folder in the temp folder]
-  --results FILE a line of JSON for each world and seed; what this state of the code measured before is not measured again`;
+${worldUsage(ADJUSTMENT_WORLDS)}`;
 
 /** @throws Error with the usage where the words make no sense */
-export function adjustmentOptions(args: readonly string[]): AdjustmentOptions {
-  const { values } = parseArgs({
-    args: [...args],
-    options: {
-      worlds: { type: "string" },
-      seeds: { type: "string", default: "1" },
-      cache: { type: "string" },
-      results: { type: "string" },
-    },
-  });
-  const worlds = values.worlds?.split(",") ?? ADJUSTMENT_WORLDS;
-  const stray = worlds.find((world) => !ADJUSTMENT_WORLDS.includes(world));
-  if (stray !== undefined) throw new Error(`no world ${stray}\n${USAGE}`);
-  return {
-    worlds,
-    seeds: seedsOf(values.seeds),
-    cache: path.resolve(
-      values.cache ?? process.env.RAINRECKON_WORLDS ?? path.join(os.tmpdir(), "rainreckon-worlds"),
-    ),
-    results: values.results,
-  };
+export function adjustmentOptions(args: readonly string[]): WorldOptions {
+  const { values } = parseArgs({ args: [...args], options: WORLD_FLAGS });
+  return worldOptions(values, ADJUSTMENT_WORLDS, USAGE);
 }
