@@ -81,7 +81,7 @@ export function classTable(done: readonly Covered[]): string {
   const distances = [0, 2, 4, 8, Number.POSITIVE_INFINITY];
   const far = distances.slice(0, -1).map((from, k) =>
     row(
-      `points ${from} km and more from a gauge, to ${distances[k + 1]}`,
+      `points from ${from} km of a gauge on${k + 1 < distances.length - 1 ? `, to ${distances[k + 1]} km` : ""}`,
       points.filter(({ gaugeKm }) => gaugeKm >= from && gaugeKm < distances[k + 1]),
     ),
   );
