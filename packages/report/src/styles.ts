@@ -30,8 +30,8 @@ export function cssString(text: string): string {
   return `"${escaped.join("")}"`;
 }
 
-/** What the opening leaves of an A4 page with four cautions of two lines. */
-const PRINTED_MAP_MM = 118;
+/** What the opening leaves of an A4 page with cells of trust of five lines and four cautions. */
+const PRINTED_MAP_MM = 102;
 
 const FONT = `system-ui,-apple-system,"Segoe UI",Roboto,"Helvetica Neue",Arial,sans-serif`;
 

@@ -509,7 +509,7 @@ export async function writeReadme(sources: OutputSources, files: readonly string
     "",
     "Verdicts in gauges.csv",
     "  use, use with care, leave out, too little rain to judge; a gauge that is left out shapes nothing. The cause says",
-    "  whose a difference is: the gauge's, its whole network's, the radar's, or nobody's. The rule: apps/cli/docs/faults.md.",
+    "  whose a difference is: the gauge's, its whole network's, the radar's, or nobody's.",
     "",
     "Cautions",
     ...sources.cautions.map((caution) => `  - ${displayText(caution, 600)}`),
