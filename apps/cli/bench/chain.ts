@@ -7,22 +7,12 @@ import { learnBeforehand } from "../src/total/learned-run.ts";
 import { type PreparedRun, prepareRun } from "../src/total/prepare.ts";
 import { runUnit } from "../src/total/run-unit.ts";
 import { leftOutLog } from "../src/ui/left-out.ts";
-import type { Terminal } from "../src/ui/terminal.ts";
+import { SILENT } from "./ablation/run-variant.ts";
 import { cpuSecondsOf, sharesOf } from "./chain/profile.ts";
 
 /** The full chain from echo to rain may take so many times as long for a volume as the plain one. */
 const ALLOWED_RATIO = 3;
 const REPEATS = 3;
-
-const SILENT: Terminal = {
-  json: false,
-  quiet: true,
-  debug: false,
-  live: false,
-  result: () => undefined,
-  note: () => undefined,
-  strong: (text) => text,
-};
 
 /**
  * What all steps from echo to rain cost, against what a run costs without any of them, in one process and on the same

@@ -1,10 +1,10 @@
-import { createHash } from "node:crypto";
 import { ticks } from "d3-array";
 import { scaleLinear, scaleLog } from "d3-scale";
 import { interpolateViridis } from "d3-scale-chromatic";
 import { area, line } from "d3-shape";
-import { html, Markup } from "../text/html.ts";
+import { html, type Markup } from "../text/html.ts";
 import { svgNumber } from "../text/numbers.ts";
+import { chartPage } from "./chart-page.ts";
 
 /** One radar of a budget chart. Shapes [ranges]; NaN where nothing is known. */
 export interface BudgetCurve {
@@ -88,20 +88,7 @@ export function svgBudget(id: string, chart: BudgetChart): Markup {
 
 /** A whole page that holds the chart and nothing from elsewhere. */
 export function budgetPage(chart: BudgetChart): string {
-  const style = "body{margin:24px;background:#fff}svg{max-width:100%;height:auto}";
-  const hash = createHash("sha256").update(style).digest("base64");
-  return html`<!doctype html>
-<html lang="en">
-<head>
-<meta charset="utf-8">
-<meta http-equiv="Content-Security-Policy" content="default-src 'none'; style-src 'sha256-${hash}'; base-uri 'none'; form-action 'none'">
-<meta name="viewport" content="width=device-width, initial-scale=1">
-<title>${chart.title}</title>
-<style>${new Markup(style)}</style>
-</head>
-<body>${svgBudget("budget", chart)}</body>
-</html>
-`.text;
+  return chartPage(chart.title, svgBudget("budget", chart));
 }
 
 function panelTitle(words: string, sub: string, top: number): Markup {

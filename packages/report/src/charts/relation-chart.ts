@@ -1,8 +1,8 @@
-import { createHash } from "node:crypto";
 import { scaleLinear, scaleLog } from "d3-scale";
 import { interpolateViridis } from "d3-scale-chromatic";
-import { html, Markup } from "../text/html.ts";
+import { html, type Markup } from "../text/html.ts";
 import { svgNumber } from "../text/numbers.ts";
+import { chartPage } from "./chart-page.ts";
 
 /** A power law Z = A R^b on a chart. */
 export interface RelationLine {
@@ -112,18 +112,5 @@ function figure(value: number): string {
 
 /** A whole page that holds the chart and nothing from elsewhere. */
 export function relationPage(chart: RelationChart): string {
-  const style = "body{margin:24px;background:#fff}svg{max-width:100%;height:auto}";
-  const hash = createHash("sha256").update(style).digest("base64");
-  return html`<!doctype html>
-<html lang="en">
-<head>
-<meta charset="utf-8">
-<meta http-equiv="Content-Security-Policy" content="default-src 'none'; style-src 'sha256-${hash}'; base-uri 'none'; form-action 'none'">
-<meta name="viewport" content="width=device-width, initial-scale=1">
-<title>${chart.title}</title>
-<style>${new Markup(style)}</style>
-</head>
-<body>${svgRelations("relations", chart)}</body>
-</html>
-`.text;
+  return chartPage(chart.title, svgRelations("relations", chart));
 }
